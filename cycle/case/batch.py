@@ -1,0 +1,91 @@
+"""Arrays for the number inputs of one case."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from typing import TYPE_CHECKING
+
+from cycle.case.case import Case
+from cycle.case.rules import bounds
+from cycle.errors import CaseError, Fault, UnitError, shown
+from cycle.quantities import INPUT, INPUTS, Input
+from cycle.units import format_number, read
+
+if TYPE_CHECKING:
+    from cycle.arrays import Array, ArrayLike, Flags
+
+
+def check_batch(case: Case, values: Mapping[str, ArrayLike | str]) -> tuple[Case, dict[str, Array]]:
+    """A case and arrays for some of its number inputs, validated.
+
+    Parameters: case; values, key of a number input -> array of any shape, number (SI) or text with a unit. A member of a group
+    replaces the group, as in `Case.replace`.
+    Returns: the case with the first element of each array as its own value, so that its choices hold for the batch; and
+    key -> float64 array (SI, own shape, not broadcast) for these keys and for those that follow them.
+    Errors: CaseError with every fault: not a number input, not numeric, empty, NaN, infinite or out of bounds.
+    """
+    file = case.path or case.name
+    arrays: dict[str, Array] = {}
+    faults: list[Fault] = []
+    for key, given in values.items():
+        array, fault = _array(file, key, given)
+        if fault is not None:
+            faults.append(fault)
+        elif array is not None:
+            arrays[key] = array
+    if faults:
+        raise CaseError(faults)
+    chosen = case.replace({key: float(array.flat[0]) for key, array in arrays.items()})
+    for entry in INPUTS:
+        if entry.follows in arrays and entry.key in chosen.numbers and entry.key not in chosen.given:
+            arrays[entry.key] = arrays[entry.follows]
+    return chosen, arrays
+
+
+def _array(file: str, key: str, given: ArrayLike | str) -> tuple[Array | None, Fault | None]:
+    import numpy as np
+
+    entry = INPUT.get(key)
+    if entry is None or entry.kind != "number":
+        text = "not an input that takes numbers" if entry else "unknown key"
+        return None, Fault(file, key, text, shown(given), "the key of a number input")
+    try:
+        array = np.array(read(given, entry.unit) if isinstance(given, str) else given)
+        if array.dtype.kind not in "iuf":
+            return None, Fault(file, key, "not numbers", shown(given), bounds(entry))
+    except (UnitError, ValueError) as error:
+        text = error.text if isinstance(error, UnitError) else "not an array of numbers"
+        return None, Fault(file, key, text, shown(given), bounds(entry))
+    numbers = array.astype(np.float64)
+    return numbers, _array_fault(file, entry, numbers)
+
+
+def _array_fault(file: str, entry: Input, array: Array) -> Fault | None:
+    import numpy as np
+
+    if array.size == 0:
+        return Fault(file, entry.key, "no values", "an empty array", bounds(entry))
+    wrong = ~np.isfinite(array) | _outside(entry, array)
+    if not wrong.any():
+        return None
+    first = int(np.flatnonzero(wrong)[0])
+    value = float(array.flat[first])
+    what = "not a finite number" if not np.isfinite(value) else "out of bounds"
+    place = f" at index {first}" if array.ndim else ""
+    number = format_number(value, 8) if np.isfinite(value) else str(value)
+    return Fault(file, entry.key, f"{what}{place}", number, bounds(entry))
+
+
+def _outside(entry: Input, array: Array) -> Flags:
+    import numpy as np
+
+    outside = np.zeros(array.shape, dtype=np.bool_)
+    for limit, beyond in (
+        (entry.lower, np.less),
+        (entry.above, np.less_equal),
+        (entry.upper, np.greater),
+        (entry.below, np.greater_equal),
+    ):
+        if limit is not None:
+            outside |= beyond(array, limit)
+    return outside

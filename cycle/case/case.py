@@ -1,0 +1,201 @@
+"""The case: what the user asks for, validated, in SI and frozen."""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Mapping
+from dataclasses import dataclass, field, fields
+from types import MappingProxyType
+from typing import Any
+
+from cycle.case import checking, edits, rules
+from cycle.errors import CaseError, Fault, shown
+from cycle.quantities import GROUP, GROUPS, INPUT, INPUTS, Group, Input
+
+Value = float | str | bool | Mapping[str, float] | None
+
+
+@dataclass(frozen=True, slots=True)
+class Stamp:
+    """State of a file when it was read or written. digest: SHA-256 of its bytes; mtime: seconds since the epoch."""
+
+    digest: str
+    mtime: float
+
+
+@dataclass(frozen=True, slots=True)
+class Stated:
+    """One input as a case has it. value: SI; given: the case states it, else it is a default; spelled: as written."""
+
+    input: Input
+    value: Value
+    given: bool
+    spelled: object
+    group: str | None
+
+
+def _frozen(data: object) -> Any:
+    """Read-only view of nested plain data."""
+    if isinstance(data, Mapping):
+        return MappingProxyType({name: _frozen(part) for name, part in data.items()})
+    return tuple(_frozen(part) for part in data) if isinstance(data, (list, tuple)) else data
+
+
+def thawed(data: object) -> Any:
+    """Plain dicts and lists again of what a case holds read-only.
+
+    Parameters: data, a mapping, tuple or plain value of a case. Returns: an independent copy.
+    """
+    if isinstance(data, Mapping):
+        return {name: thawed(part) for name, part in data.items()}
+    return [thawed(part) for part in data] if isinstance(data, (list, tuple)) else data
+
+
+@dataclass(frozen=True, slots=True)
+class Case:
+    """One validated case. Made by `load`, `loads` and `replace`; every mapping is read-only.
+
+    numbers: SI values of all number inputs that apply and have a value; choices: choice inputs, groups (name -> tag) and
+    "start"; texts, fractions: the other kinds; studies: plain data; given: keys that are stated, the others are defaults;
+    applicable: keys that mean something here; spelled: values as written; text: the TOML the case came from. Equality
+    looks at the content, not at name, path or spelling.
+    """
+
+    title: str
+    notes: str
+    numbers: Mapping[str, float]
+    choices: Mapping[str, str]
+    texts: Mapping[str, str]
+    fractions: Mapping[str, float]
+    studies: Mapping[str, Mapping[str, Any]]
+    given: frozenset[str]
+    applicable: frozenset[str] = field(compare=False)
+    name: str = field(default="-", compare=False)
+    path: str | None = field(default=None, compare=False)
+    stamp: Stamp | None = field(default=None, compare=False)
+    text: str = field(default="", compare=False, repr=False)
+    spelled: Mapping[str, object] = field(default_factory=dict, compare=False, repr=False)
+
+    def __reduce__(self) -> tuple[Callable[[dict[str, Any]], Case], tuple[dict[str, Any]]]:
+        return _restore, ({f.name: thawed(getattr(self, f.name)) for f in fields(self)},)
+
+    def replace(self, changes: Mapping[str, object]) -> Case:
+        """The case with other values, validated again.
+
+        Parameters: changes, key -> number (SI), text with a unit, choice, True, table of mole fractions, or None to remove
+        the key; "title" and "notes" too. A member of a group replaces the group; entry.* replaces flight and inlet, and the
+        other way round; keys that lose their meaning and are not named in the changes are dropped.
+        Returns: a new Case. Errors: CaseError with every fault.
+        """
+        if not changes:
+            return self
+        heads = {name: edits.plain(changes[name]) for name in ("title", "notes") if changes.get(name) is not None}
+        dropped = {name for name in ("title", "notes") if name in changes and changes[name] is None}
+        kept = {name: getattr(self, name) for name in ("title", "notes") if name not in dropped}
+        rest = {key: value for key, value in changes.items() if key not in ("title", "notes")}
+        spelled = edits.changed(self.spelled, rest) if rest else self.spelled
+        document = {"format": checking.FORMAT, "study": thawed(self.studies), **kept, **heads, **checking.nest(thawed(spelled))}
+        return build(document, self.name, self.path, self.stamp, self.text)
+
+    def applies(self, key: str) -> bool:
+        """Whether an input means something in this case. Parameters: key. Returns: True or False."""
+        return key in self.applicable
+
+    def value(self, key: str) -> Value:
+        """Value of an input, or tag of a group.
+
+        Parameters: key, an input, a group or "start". Returns: SI number, text, True for a flag, mole fractions; None where
+        it is absent or does not apply. Errors: KeyError for an unknown key.
+        """
+        if key in GROUP or key == "start":
+            return self.choices.get(key)
+        return _VALUES[INPUT[key].kind](self, key)
+
+    def inputs(self) -> list[Stated]:
+        """Inputs that apply, in declared order; optional ones without a value are among them, with value None."""
+        return [self._stated(entry) for entry in INPUTS if self._shown(entry.key)]
+
+    def groups(self) -> list[Group]:
+        """Groups that apply, in declared order."""
+        return [group for group in GROUPS if group.name in self.choices]
+
+    def alternatives(self, group: str) -> tuple[str, ...]:
+        """Tags of a group that may be chosen in this case. Parameters: group, its name. Errors: KeyError for an unknown one."""
+        return rules.alternatives(GROUP[group], self.choices)
+
+    def switch(self, group: str, tag: str, value: object = None) -> Case:
+        """The case with another member of a group.
+
+        Parameters: group, its name; tag, of a member or the default that is none; value, of the member's key (number in SI or
+        text), key -> value where there are several, None for a flag or the default.
+        Returns: a new Case. Errors: CaseError with every fault; KeyError for an unknown group.
+        """
+        declared = GROUP[group]
+        members = [m for m in declared.members if m.tag == tag]
+        if not members:
+            return self._switch_off(declared, tag)
+        keys = members[0].keys
+        if isinstance(value, Mapping) and INPUT[keys[0]].kind != "fractions":
+            return self.replace(value)
+        if value is None and len(keys) == 1 and INPUT[keys[0]].kind == "flag":
+            value = True
+        if value is None or len(keys) > 1:
+            raise self._fault(keys[0], f"no value for {tag}", shown(value), " and ".join(keys))
+        return self.replace({keys[0]: value})
+
+    def _switch_off(self, group: Group, tag: str) -> Case:
+        if tag != group.default:
+            raise self._fault(group.name, "unknown choice", shown(tag), ", ".join(self.alternatives(group.name)))
+        return self.replace({key: None for key in rules.keys_of(group)})
+
+    def _fault(self, key: str, text: str, given: str, allowed: str) -> CaseError:
+        return CaseError([Fault(self.path or self.name, key, text, given, allowed)])
+
+    def _shown(self, key: str) -> bool:
+        if key not in self.applicable:
+            return False
+        chosen = [g for g in rules.groups_of().get(key, ()) if g.name in self.choices]
+        return all(any(m.tag == self.choices[g.name] for m in g.members if key in rules.reach(m)) for g in chosen)
+
+    def _stated(self, entry: Input) -> Stated:
+        groups = [g.name for g in rules.groups_of().get(entry.key, ()) if g.name in self.choices]
+        group = groups[-1] if groups else None
+        return Stated(entry, self.value(entry.key), entry.key in self.given, self.spelled.get(entry.key), group)
+
+
+_VALUES: dict[str, Callable[[Case, str], Value]] = {
+    "number": lambda case, key: case.numbers.get(key),
+    "choice": lambda case, key: case.choices.get(key),
+    "text": lambda case, key: case.texts.get(key),
+    "flag": lambda case, key: True if key in case.given else None,
+    "fractions": lambda case, key: case.fractions or None,
+}
+
+
+def _restore(state: dict[str, Any]) -> Case:
+    return Case(**{name: _frozen(value) if isinstance(value, Mapping) else value for name, value in state.items()})
+
+
+def build(document: Mapping[str, Any], name: str, path: str | None = None, stamp: Stamp | None = None, text: str = "") -> Case:
+    """A case from the tables of a case file.
+
+    Parameters: document, nested plain tables with "format"; name, of the case; path and stamp of its file; text, its TOML.
+    Returns: the validated Case. Errors: CaseError with every fault.
+    """
+    content = checking.examine(document, path or name)
+    spelled = checking.flatten(document)
+    return Case(
+        content.title,
+        content.notes,
+        MappingProxyType(content.numbers),
+        MappingProxyType(content.choices),
+        MappingProxyType(content.texts),
+        MappingProxyType(content.fractions),
+        _frozen(document.get("study", {})),
+        frozenset(spelled),
+        content.applicable,
+        name,
+        path,
+        stamp,
+        text,
+        _frozen(spelled),
+    )

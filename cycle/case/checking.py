@@ -1,0 +1,245 @@
+"""A case file's tables to its content, with every fault as one line in the trade's words."""
+
+from __future__ import annotations
+
+import difflib
+from collections.abc import Callable, Iterator, Mapping
+from dataclasses import dataclass, replace
+from typing import TYPE_CHECKING, Any
+
+from cycle.case.rules import JOINT_RULES, Facts, Resolved, bounds, resolve
+from cycle.errors import MOST_FAULTS, CaseError, Fault, shown
+from cycle.quantities import INPUT, INPUTS, LATER, SECTIONS, Input
+
+if TYPE_CHECKING:
+    from cycle.case.schema import Problem
+
+FORMAT = 1
+"""Format of the case files that this program reads and writes."""
+DEEPEST = 32
+_TOP = ("format", "title", "notes", *SECTIONS, "study")
+
+
+@dataclass(frozen=True, slots=True)
+class Content:
+    """What a sound case holds; the fields are those of `cycle.case.Case`."""
+
+    title: str
+    notes: str
+    numbers: dict[str, float]
+    choices: dict[str, str]
+    texts: dict[str, str]
+    fractions: dict[str, float]
+    applicable: frozenset[str]
+
+
+def flatten(document: Mapping[str, Any]) -> dict[str, object]:
+    """Keys of the input tables with their values as written; "section.name" -> value."""
+    return {
+        f"{section}.{name}": value
+        for section in SECTIONS
+        if isinstance(table := document.get(section), Mapping)
+        for name, value in table.items()
+    }
+
+
+def nest(flat: Mapping[str, object]) -> dict[str, Any]:
+    """Tables from "section.name" keys; keys without a point stay at the top."""
+    document: dict[str, Any] = {}
+    for key, value in flat.items():
+        section, point, name = key.partition(".")
+        if point:
+            table = document.setdefault(section, {})
+            table[name] = value
+        else:
+            document[key] = value
+    return document
+
+
+def depth(value: object) -> int:
+    """Levels of tables and arrays inside a value."""
+    deepest, level, layer = 0, 0, [value]
+    while layer:
+        deepest = level
+        inner: list[object] = []
+        for item in layer:
+            inner.extend(item.values() if isinstance(item, Mapping) else item if isinstance(item, list) else ())
+        layer, level = inner, level + 1
+    return deepest
+
+
+def examine(document: Mapping[str, Any], file: str) -> Content:
+    """Content of a case file.
+
+    Parameters: document, nested tables as TOML gives them, with "format"; file, the name that messages use.
+    Returns: Content. Errors: CaseError with every fault.
+    """
+    faults = _format(document)
+    if not faults:
+        content, faults = _examine(document)
+        if content is not None:
+            return content
+    raise CaseError(replace(fault, file=file) for fault in faults)
+
+
+def json_schema() -> dict[str, Any]:
+    """JSON Schema (2020-12) of a case file, with units, bounds, defaults and meanings, as plain data."""
+    from cycle.case.schema import json_schema as made
+
+    return made()
+
+
+def _format(document: Mapping[str, Any]) -> list[Fault]:
+    allowed = f"format = {FORMAT}"
+    given = document.get("format")
+    if given is None:
+        return [Fault("", "format", "the file does not say which format it is in", "none", allowed)]
+    if isinstance(given, int) and not isinstance(given, bool) and given > FORMAT:
+        return [Fault("", "format", f"format {shown(given)} is newer than this program ({FORMAT})", shown(given), allowed)]
+    if given is not FORMAT and (isinstance(given, bool) or given != FORMAT or not isinstance(given, int)):
+        return [Fault("", "format", "unknown format", shown(given), allowed)]
+    if depth(document) > DEEPEST:
+        return [Fault("", "", "tables or arrays are nested too deeply", f"{depth(document)} levels", f"{DEEPEST} levels")]
+    return []
+
+
+def _examine(document: Mapping[str, Any]) -> tuple[Content | None, list[Fault]]:
+    from cycle.case.schema import check
+
+    known, later = _take_later(document)
+    values, problems = check(known)
+    faults = [*later.values(), *_single(problems)]
+    bad = frozenset({*later, *(".".join(p.where[:2]) for p in problems)})
+    tables = [name for name in SECTIONS if name in document]
+    given = {key: value for key, value in flatten(document).items() if key in INPUT}
+    resolved = resolve(given, bad, tables)
+    # a table that is no table hides what it holds: what is missing from it cannot be told
+    hidden = {p.where[0] for p in problems if len(p.where) == 1}
+    faults.extend(f for f in resolved.faults if f.key.split(".")[0] not in hidden)
+    facts = Facts(resolved.choices, values)
+    faults.extend(fault for rule in JOINT_RULES for fault in rule(facts))
+    if faults:
+        return None, faults
+    return _content(values, resolved), []
+
+
+def _content(values: Mapping[str, Any], resolved: Resolved) -> Content:
+    numbers: dict[str, float] = {}
+    for entry in INPUTS:
+        if entry.kind == "number" and entry.key in resolved.applicable:
+            value = values.get(entry.key, numbers.get(entry.follows, entry.default))
+            if value is not None:
+                numbers[entry.key] = float(value)
+    fractions = dict(values.get("air.mole_fractions", {}))
+    total = sum(fractions.values())
+    return Content(
+        values["title"],
+        values["notes"],
+        numbers,
+        {name: tag for name, tag in resolved.choices.items() if tag is not None},
+        {i.key: values[i.key] for i in INPUTS if i.kind == "text" and i.key in values},
+        {name: value / total for name, value in fractions.items()},
+        resolved.applicable,
+    )
+
+
+def _take_later(document: Mapping[str, Any]) -> tuple[dict[str, Any], dict[str, Fault]]:
+    """The document without what a later version will know, and a fault for each of those."""
+    known = {name: dict(part) if isinstance(part, Mapping) else part for name, part in document.items()}
+    found: dict[str, Fault] = {}
+    for entry, line in LATER.items():
+        key, _, tag = entry.partition("=")
+        section, _, name = key.partition(".")
+        table = known.get(section)
+        if not name and section in known:
+            known.pop(section)
+            found[section] = Fault("", section, line)
+        elif isinstance(table, dict) and name in table and (not tag or table[name] == tag):
+            table.pop(name)
+            found[key] = Fault("", key, line)
+    return known, found
+
+
+def _single(problems: list[Problem]) -> Iterator[Fault]:
+    for problem in problems[: 4 * MOST_FAULTS]:
+        yield _WORDS.get(problem.kind, _wrong_type)(problem, ".".join(problem.where))
+
+
+def _unknown(problem: Problem, key: str) -> Fault:
+    if len(problem.where) == 1:
+        names = list(_TOP)
+        allowed = f"title, notes, study, or the tables {', '.join(SECTIONS)}"
+    else:
+        names = [i.name for i in INPUTS if i.section == problem.where[0]]
+        allowed = ", ".join(names)
+    near = difflib.get_close_matches(problem.where[-1], names, 1, 0.6)
+    elsewhere = [i.key for i in INPUTS if i.name == problem.where[-1]]
+    hint = near[0] if near else elsewhere[0] if elsewhere else ""
+    text = "unknown key" + (f" (did you mean {hint}?)" if hint else "")
+    return Fault("", key, text, shown(problem.given), allowed)
+
+
+def _unit(problem: Problem, key: str) -> Fault:
+    return Fault("", key, problem.context["text"], shown(problem.given), problem.context["allowed"])
+
+
+def _out_of_bounds(problem: Problem, key: str) -> Fault:
+    entry = INPUT.get(key)
+    return Fault("", key, "out of bounds", _given_number(problem.given, entry), bounds(entry) if entry else "at least 0, at most 1")
+
+
+def _given_number(given: object, entry: Input | None) -> str:
+    if entry is None or not isinstance(given, str):
+        return shown(given)
+    from cycle.units import format_number, read, si_unit
+
+    return f"{shown(given)}, which is {format_number(read(given, entry.unit), 6)} {si_unit(entry.unit)}".rstrip()
+
+
+def _choice(problem: Problem, key: str) -> Fault:
+    if key in INPUT and INPUT[key].kind == "flag":
+        return Fault("", key, "can only be true; leave it out otherwise", shown(problem.given), "true")
+    if len(problem.where) > 2:
+        from cycle.case.schema import SPECIES
+
+        return Fault("", key, "unknown species", shown(problem.given), ", ".join(SPECIES))
+    choices = INPUT[key].choices
+    near = difflib.get_close_matches(problem.given, choices, 1, 0.6) if isinstance(problem.given, str) else []
+    return Fault("", key, "unknown choice" + (f" (did you mean {near[0]}?)" if near else ""), shown(problem.given), ", ".join(choices))
+
+
+def _wrong_type(problem: Problem, key: str) -> Fault:
+    return Fault("", key, "wrong type", shown(problem.given), _EXPECTED.get(problem.kind) or bounds(INPUT[key]))
+
+
+def _length(problem: Problem, key: str) -> Fault:
+    limit = problem.context.get("max_length", problem.context.get("min_length"))
+    given = f"{len(problem.given)} characters" if isinstance(problem.given, str) else shown(problem.given)
+    allowed = bounds(INPUT[key]) if key in INPUT else f"at most {limit} characters"
+    return Fault("", key, "wrong length", given, allowed)
+
+
+def _study_name(problem: Problem, key: str) -> Fault:
+    return Fault("", key, "no name for a study", shown(problem.where[-1]), "1 to 64 letters, digits, - and _")
+
+
+_EXPECTED = {
+    "string_type": "text",
+    "model_type": "a table",
+    "dict_type": "a table",
+    "float_type": "a number from 0 to 1",
+    "finite_number": "a finite number",
+}
+_WORDS: dict[str, Callable[[Problem, str], Fault]] = {
+    "extra_forbidden": _unknown,
+    "unit": _unit,
+    "greater_than": _out_of_bounds,
+    "greater_than_equal": _out_of_bounds,
+    "less_than": _out_of_bounds,
+    "less_than_equal": _out_of_bounds,
+    "literal_error": _choice,
+    "string_too_long": _length,
+    "string_too_short": _length,
+    "too_short": _length,
+    "string_pattern_mismatch": _study_name,
+}

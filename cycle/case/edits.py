@@ -1,0 +1,88 @@
+"""What an edit does to the keys of a case: groups are replaced whole, keys that lose their meaning go."""
+
+from __future__ import annotations
+
+from collections.abc import Iterable, Mapping
+
+from cycle.case.rules import ENTRY_TABLES, FLIGHT_TABLES, groups_of, keys_of, reach, resolve
+from cycle.quantities import INPUT, Group, Member
+from cycle.units import respell
+
+
+def plain(value: object) -> object:
+    """A value as plain Python data: numpy scalars and subclasses of float or str become float, int, bool or str.
+
+    Parameters: value, anything. Returns: plain data where the value is data, the value itself otherwise.
+    """
+    item = getattr(value, "item", None)
+    if callable(item) and getattr(value, "ndim", 1) == 0:
+        return item()
+    if isinstance(value, Mapping):
+        return {str(name): plain(part) for name, part in value.items()}
+    if isinstance(value, (list, tuple)):
+        return [plain(part) for part in value]
+    for kind in (bool, int, float, str):
+        if isinstance(value, kind):
+            return value if type(value) is kind else kind(value)
+    return value
+
+
+def _target(group: Group, touched: set[str], given: Mapping[str, object]) -> Member:
+    """The member that an edit means: the one that covers most of its keys, the present one among equals."""
+
+    def rank(member: Member) -> tuple[int, bool, int]:
+        there = any(key in given for key in member.keys)
+        return len(touched.intersection(reach(member))), there, len(touched.intersection(member.keys))
+
+    return max(group.members, key=rank)
+
+
+def _replaced_by(touched: set[str], given: Mapping[str, object]) -> set[str]:
+    """Keys that the touched ones push out."""
+    out: set[str] = set()
+    for group in {g.name: g for key in touched for g in groups_of().get(key, ())}.values():
+        inside = touched.intersection(keys_of(group))
+        out.update(set(keys_of(group)).difference(reach(_target(group, inside, given)), touched))
+    sections = {key.split(".")[0] for key in touched}
+    if not sections.isdisjoint(ENTRY_TABLES) and sections.isdisjoint(FLIGHT_TABLES):
+        out.update(key for key in given if key.split(".")[0] in FLIGHT_TABLES)
+    elif not sections.isdisjoint(FLIGHT_TABLES) and sections.isdisjoint(ENTRY_TABLES):
+        out.update(key for key in given if key.split(".")[0] in ENTRY_TABLES)
+    return out
+
+
+def without_unused(spelled: Mapping[str, object], kept: Iterable[str] = ()) -> dict[str, object]:
+    """Keys that mean something together.
+
+    Parameters: spelled, key -> value as written; kept, keys that stay whatever they mean. Returns: the rest of them.
+    """
+    left = dict(spelled)
+    stays = set(kept)
+    while True:
+        drop = [key for key in resolve(left).unused if key not in stays]
+        if not drop:
+            return left
+        for key in drop:
+            del left[key]
+
+
+def _respelled(key: str, value: object, old: object) -> object:
+    if key in INPUT and INPUT[key].kind == "number" and isinstance(value, (int, float)) and not isinstance(value, bool):
+        return respell(value, old, INPUT[key].unit) if abs(value) < float("inf") else value
+    return value
+
+
+def changed(spelled: Mapping[str, object], changes: Mapping[str, object]) -> dict[str, object]:
+    """The keys after an edit.
+
+    Parameters: spelled, key -> value as written; changes, key -> new value, None to remove the key.
+    Returns: key -> value as written, in the old order with new keys behind. Nothing is validated here.
+    """
+    new = {key: plain(value) for key, value in changes.items() if value is not None}
+    removed = {key for key, value in changes.items() if value is None}
+    touched = {key for key in new if key in INPUT}
+    out = removed | _replaced_by(touched, spelled)
+    left = {key: value for key, value in spelled.items() if key not in out}
+    for key, value in new.items():
+        left[key] = _respelled(key, value, spelled.get(key))
+    return without_unused(left, touched)

@@ -1,0 +1,209 @@
+"""Case files: bounded reading, saving that keeps the user's comments, order and spelling."""
+
+from __future__ import annotations
+
+import hashlib
+import os
+import re
+import stat
+import tomllib
+from contextlib import suppress
+from pathlib import Path
+from typing import Any
+
+from cycle.case.case import Case, Stamp, build
+from cycle.errors import CaseError, Fault, FileChanged, shown
+
+LARGEST = 1 << 20
+"""Bytes read of a case file at most."""
+_CHAIN = re.compile(r"(?<![\w\"'-])(?:[\w\"'-]++[ \t]*+\.[ \t]*+){32}")
+_POSITION = re.compile(r" \(at (?:line (\d+), column (\d+)|end of document)\)$")
+_SETTING = re.compile(r"\s*([A-Za-z0-9_.-]{1,80})\s*=\s*(.*?)\s*", re.DOTALL)
+
+
+def load(path: str | os.PathLike[str]) -> Case:
+    """Read and validate a case file.
+
+    Parameters: path, of a regular file of at most 1 MiB. Returns: the Case, with its path, text and stamp.
+    Errors: CaseError with every fault, also where the file cannot be read.
+    """
+    name = os.fspath(path)
+    data, mtime = _read(name)
+    text = _decode(data, name)
+    stamp = Stamp(hashlib.sha256(data).hexdigest(), mtime)
+    return build(parse(text, name), Path(name).stem, name, stamp, text)
+
+
+def loads(text: str | bytes, name: str = "-") -> Case:
+    """Validate the text of a case.
+
+    Parameters: text, TOML of at most 1 MiB, bytes as UTF-8; name, for messages. Returns: the Case, without a path.
+    Errors: CaseError with every fault.
+    """
+    data = text.encode("utf-8", "surrogatepass") if isinstance(text, str) else text
+    if len(data) > LARGEST:
+        raise _one(name, "too large", f"more than {LARGEST} bytes", f"at most {LARGEST} bytes")
+    decoded = _decode(data, name)
+    return build(parse(decoded, name), name, None, None, decoded)
+
+
+def read_setting(text: str) -> tuple[str, object]:
+    """Key and value of a setting such as "flight.altitude=27 km".
+
+    Parameters: text, KEY=VALUE; VALUE is read as a TOML value, and as bare text where it is none.
+    Returns: key and value for `Case.replace`. Errors: CaseError where there is no key or no value.
+    """
+    match = _SETTING.fullmatch(text) if len(text) <= 1000 else None
+    if match is None or not match.group(2):
+        raise _one("setting", "not a setting", shown(text), "section.key=VALUE, such as flight.mach=7.5 or flight.altitude=27 km")
+    key, value = match.groups()
+    try:
+        return key, tomllib.loads(f"value = {value}")["value"]
+    except (ValueError, RecursionError):
+        return key, value
+
+
+def parse(text: str, file: str) -> dict[str, Any]:
+    """Tables of TOML text.
+
+    Parameters: text; file, the name that messages use. Returns: nested plain data. Errors: CaseError with line and column.
+    """
+    if not text.strip():
+        raise _one(file, "the file is empty", "nothing", "a case; ductwalk new writes one")
+    # a chain of thousands of dotted names costs the reader quadratic time and memory
+    if _CHAIN.search(text):
+        raise _one(file, "names are nested too deeply", "more than 32 names joined by points", "32")
+    try:
+        return tomllib.loads(text)
+    except RecursionError:
+        raise _one(file, "tables or arrays are nested too deeply", "hundreds of levels", "32 levels") from None
+    except ValueError as error:
+        raise CaseError([_syntax(str(error), text, file)]) from None
+
+
+def _syntax(message: str, text: str, file: str) -> Fault:
+    found = _POSITION.search(message)
+    lines = text.split("\n")
+    if found is None:
+        return Fault(file, "", f"not TOML: {message}")
+    line = int(found[1]) if found[1] else len(lines)
+    column = int(found[2]) if found[2] else len(lines[-1]) + 1
+    quoted = lines[line - 1] if line <= len(lines) else ""
+    what = message[: found.start()]
+    return Fault(file, "", f"not TOML: {what[:1].lower()}{what[1:]}", shown(quoted), "", line, column)
+
+
+def _one(file: str, text: str, given: str = "", allowed: str = "") -> CaseError:
+    return CaseError([Fault(file, "", text, given, allowed)])
+
+
+def _trouble(file: str, doing: str, error: OSError) -> CaseError:
+    return _one(file, f"cannot be {doing}: {(error.strerror or str(error)).lower()}")
+
+
+def _read(name: str) -> tuple[bytes, float]:
+    """Bytes and modification time of a regular file."""
+    try:
+        handle = os.open(name, os.O_RDONLY | os.O_NONBLOCK | os.O_CLOEXEC)
+        with os.fdopen(handle, "rb") as stream:
+            status = os.fstat(handle)
+            if not stat.S_ISREG(status.st_mode):
+                what = "a directory" if stat.S_ISDIR(status.st_mode) else "a device or pipe"
+                raise _one(name, "not a case file", what, "a file, or - for standard input")
+            data = stream.read(LARGEST + 1)
+    except OSError as error:
+        raise _trouble(name, "read", error) from None
+    except ValueError:
+        raise _one(name, "no name of a file", shown(name), "a path") from None
+    if len(data) > LARGEST:
+        raise _one(name, "too large", f"{max(status.st_size, len(data))} bytes", f"at most {LARGEST} bytes")
+    return data, status.st_mtime
+
+
+def _decode(data: bytes, file: str) -> str:
+    try:
+        return data.decode("utf-8-sig")
+    except UnicodeDecodeError as error:
+        line = data.count(b"\n", 0, error.start) + 1
+        column = error.start - data.rfind(b"\n", 0, error.start)
+        raise CaseError([Fault(file, "", "not UTF-8 text", f"byte 0x{data[error.start]:02x}", "UTF-8", line, column)]) from None
+
+
+def _stamp(path: str) -> Stamp | None:
+    """Stamp of a file as it is now, None where there is none."""
+    try:
+        with open(path, "rb") as stream:
+            return Stamp(hashlib.file_digest(stream, "sha256").hexdigest(), os.fstat(stream.fileno()).st_mtime)
+    except FileNotFoundError:
+        return None
+    except OSError as error:
+        raise _trouble(path, "read", error) from None
+
+
+def _refuse_changed(target: str, path: str, expect: Stamp | None, ours: str) -> bool:
+    """FileChanged where the disk does not hold what is expected; else whether the file exists."""
+    there = _stamp(target)
+    if there is None:
+        return False
+    if expect is None or there.digest != expect.digest:
+        raise FileChanged(path, ours, _read(target)[0].decode("utf-8", "replace"))
+    return True
+
+
+def save(case: Case, path: str | os.PathLike[str], expect: Stamp | None = None) -> Stamp:
+    """Write a case to a file, keeping comments, order and spelling of all that did not change.
+
+    Parameters: case; path, a link is followed to its target; expect, the stamp of the file when it was last read or written,
+    None for a new file. A file that has vanished is written anew from the text the case came from.
+    Returns: the new stamp. Errors: FileChanged (nothing written) where the file on disk is not the one expected; CaseError
+    where it cannot be written, with the old file untouched.
+    """
+    from cycle.case.document import edited
+
+    name = os.fspath(path)
+    target = os.path.realpath(name)
+    exists = _refuse_changed(target, name, expect, edited(case.text, case))
+    base = _decode(_read(target)[0], name) if exists else case.text
+    text = edited(base, case)
+    again = build(parse(text, name), case.name, name)
+    if again != case:
+        raise _one(name, "not saved: the text would not read back as the same case; save under another name")
+    data = text.encode("utf-8")
+    if len(data) > LARGEST:
+        raise _one(name, "not saved: too large", f"{len(data)} bytes", f"at most {LARGEST} bytes")
+    try:
+        return _write(target, data, name, expect, text)
+    except OSError as error:
+        raise _trouble(name, "written", error) from None
+
+
+def _write(target: str, data: bytes, name: str, expect: Stamp | None, text: str) -> Stamp:
+    """Replace a file in one step: a new one beside it, flushed to the disk, then renamed."""
+    beside = os.path.join(os.path.dirname(target), f".{os.path.basename(target)[:200]}.{os.getpid()}.tmp")
+    handle = os.open(beside, os.O_WRONLY | os.O_CREAT | os.O_EXCL | os.O_CLOEXEC, 0o666)
+    try:
+        with os.fdopen(handle, "wb") as stream:
+            with suppress(FileNotFoundError):
+                os.fchmod(handle, stat.S_IMODE(os.stat(target).st_mode))
+            stream.write(data)
+            stream.flush()
+            os.fsync(handle)
+            mtime = os.fstat(handle).st_mtime
+        _refuse_changed(target, name, expect, text)
+        os.replace(beside, target)
+    except BaseException:
+        with suppress(FileNotFoundError):
+            os.unlink(beside)
+        raise
+    _flush_directory(os.path.dirname(target))
+    return Stamp(hashlib.sha256(data).hexdigest(), mtime)
+
+
+def _flush_directory(directory: str) -> None:
+    """Make the rename last through a power cut, where the file system can."""
+    with suppress(OSError):
+        handle = os.open(directory, os.O_RDONLY | os.O_DIRECTORY)
+        try:
+            os.fsync(handle)
+        finally:
+            os.close(handle)

@@ -1,0 +1,120 @@
+"""The text of a new case: every key with unit, bounds, default and meaning, ready to solve."""
+
+from __future__ import annotations
+
+import textwrap
+
+from cycle.case.checking import FORMAT
+from cycle.case.rules import bounds
+from cycle.quantities import GROUPS, INPUT, INPUTS, SECTIONS, Group, Input
+
+_WIDTH = 100
+
+_FLIGHT: dict[str, str] = {
+    "flight.mach": "8.0",
+    "flight.dynamic_pressure": '"50 kPa"',
+    "gas.model": '"equilibrium"',
+    "inlet.kinetic_energy_efficiency": "0.975",
+    "inlet.pressure_ratio": "60.0",
+    "inlet.chemistry": '"frozen"',
+    "fuel.name": '"hydrogen"',
+    "fuel.temperature": '"300 K"',
+    "combustor.process": '"constant-area"',
+    "combustor.equivalence_ratio": "0.6",
+    "combustor.burnt_fraction": "0.92",
+    "nozzle.chemistry": '"shifting"',
+    "nozzle.exit_area_over_capture": "1.5",
+    "nozzle.velocity_coefficient": "0.985",
+    "engine.capture_area": '"0.4 m^2"',
+}
+_ENTRY: dict[str, str] = {
+    "entry.station": '"3"',
+    "entry.mach": "2.6",
+    "entry.pressure": '"100 kPa"',
+    "entry.temperature": '"1100 K"',
+    "entry.area": '"60 cm^2"',
+    "gas.model": '"equilibrium"',
+    "fuel.name": '"hydrogen"',
+    "fuel.temperature": '"300 K"',
+    "combustor.process": '"constant-area"',
+    "combustor.equivalence_ratio": "0.25",
+    "combustor.burnt_fraction": "0.9",
+}
+_VALUES = {"flight": _FLIGHT, "entry": _ENTRY}
+_TITLES = {"flight": "New case: a hydrogen scramjet", "entry": "New case: a direct-connect hydrogen burner"}
+_HEAD = """\
+# A case for ductwalk. The figures are invented, for demonstration; replace them by your own.
+# A value is a number in SI or text with a unit, such as "27 km", "1500 psf" or "15 deg".
+# A line that begins with # is not read; take the # away to use it. Where several keys say the same
+# thing, exactly one of them is given.
+"""
+
+
+def template(start: str = "flight") -> str:
+    """Text of a new case, with every key in it: those of the example in force, the others as comments.
+
+    Parameters: start, "flight" for an engine in flight, "entry" for a direct-connect rig.
+    Returns: TOML that loads as it is. Errors: KeyError for another start.
+    """
+    values = _VALUES[start]
+    parts = [f'{_HEAD}\nformat = {FORMAT}\ntitle = "{_TITLES[start]}"\nnotes = ""\n']
+    parts.extend(_section(section, values) for section in SECTIONS)
+    return "\n".join(parts) + _STUDY
+
+
+_STUDY = """
+# A study varies inputs; any number of them may stand here.
+# [study.burner]
+# outputs = ["specific_impulse", "thrust"]
+# [[study.burner.vary]]
+# input = "combustor.equivalence_ratio"
+# from = 0.2
+# to = 0.6
+# points = 41
+"""
+
+
+def _section(section: str, values: dict[str, str]) -> str:
+    entries = [i for i in INPUTS if i.section == section]
+    used = any(i.key in values for i in entries)
+    groups = [_comment(_group_words(g)) for g in GROUPS if g.name.split(".")[0] == section]
+    lines = [f"{'' if used else '# '}[{section}]", *groups, *(_entry(i, values) for i in entries)]
+    return "\n".join(lines) + "\n"
+
+
+def _group_words(group: Group) -> str:
+    ways = " | ".join(" + ".join(INPUT[k].name for k in m.keys) for m in group.members)
+    how = "exactly one of" if group.required else "at most one of"
+    default = f"; {group.default} when none is given" if group.default else ""
+    return f"{group.meaning}: {how} {ways}{default}"
+
+
+def _comment(text: str) -> str:
+    return textwrap.fill(text, _WIDTH, initial_indent="# ", subsequent_indent="#   ", break_long_words=False, break_on_hyphens=False)
+
+
+def _entry(entry: Input, values: dict[str, str]) -> str:
+    symbol = f"{entry.symbol}: " if entry.symbol else ""
+    only = "".join(f" Only with {name} = {' or '.join(tags)}." for name, tags in entry.when if name != "start")
+    words = f"{symbol}{entry.meaning} [{bounds(entry)}; {_default(entry)}]{only}"
+    line = f"{entry.name} = {values[entry.key]}" if entry.key in values else f"# {entry.name} = {_sample(entry)}"
+    return f"{_comment(words)}\n{line}"
+
+
+def _default(entry: Input) -> str:
+    if entry.default is not None:
+        return f"default {entry.default}"
+    if entry.follows:
+        return f"default that of {entry.follows}"
+    return "no default"
+
+
+def _sample(entry: Input) -> str:
+    """A value as it would be written; "..." where there is no default to show."""
+    if entry.kind == "flag":
+        return "true"
+    if entry.kind == "fractions":
+        return "{ N2 = 0.62, O2 = 0.21, H2O = 0.17 }"
+    if entry.default is None:
+        return "..."
+    return f'"{entry.default}"' if isinstance(entry.default, str) else str(entry.default)

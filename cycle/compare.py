@@ -1,0 +1,110 @@
+"""Walks side by side: headline figures, stations and inputs, and how each differs from the first."""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Callable, Iterable, Mapping, Sequence
+from dataclasses import dataclass
+from typing import Any
+
+from cycle.quantities import INPUTS, OUTPUTS, Input, Output
+from cycle.record import Json
+
+Value = float | str | bool | None
+
+
+@dataclass(frozen=True, slots=True)
+class Side:
+    """One walk to compare. name: of its case or file; walk: its record; version and species_data: what computed it."""
+
+    name: str
+    walk: Json
+    version: str
+    species_data: str
+
+
+@dataclass(frozen=True, slots=True)
+class Figure:
+    """An output on every side; values in SI, nan where a side has none. station: "" for a figure of the engine."""
+
+    output: Output
+    station: str
+    values: tuple[float, ...]
+
+    def changes(self) -> tuple[float, ...]:
+        """Relative difference of every side from the first, nan where either has no value or the first is zero."""
+        first = self.values[0]
+        return tuple((v - first) / abs(first) if first else math.nan for v in self.values)
+
+
+@dataclass(frozen=True, slots=True)
+class Setting:
+    """An input that is not the same on every side; None where a side does not use it."""
+
+    input: Input
+    values: tuple[Value | Mapping[str, float], ...]
+
+
+@dataclass(frozen=True, slots=True)
+class Comparison:
+    """What `compare` found. headline and stations hold every figure that any side has; settings only those that differ;
+    notes: sentences on what limits the comparison."""
+
+    sides: tuple[Side, ...]
+    headline: tuple[Figure, ...]
+    stations: tuple[Figure, ...]
+    settings: tuple[Setting, ...]
+    notes: tuple[str, ...]
+
+
+def compare(sides: Sequence[Side]) -> Comparison:
+    """Set two or more walks side by side; the first is the one the others are measured against.
+
+    sides: walks of one point, solved here or read back. Raises ValueError for fewer than two.
+    """
+    if len(sides) < 2:
+        raise ValueError("a comparison needs two walks or more")
+    outputs = [o for o in OUTPUTS if o.where == "performance"]
+    headline = _figures(outputs, "", [side.walk["performance"] for side in sides])
+    stations: list[Figure] = []
+    figures = [o for o in OUTPUTS if o.where == "station"]
+    for name in station_names(sides):
+        stations += _figures(figures, name, [side.walk["stations"].get(name, {}) for side in sides])
+    return Comparison(tuple(sides), tuple(headline), tuple(stations), _settings(sides), tuple(_notes(sides)))
+
+
+def station_names(sides: Iterable[Side]) -> tuple[str, ...]:
+    """Stations that any side has, in the order of the flow."""
+    names = {name for side in sides for name in side.walk["stations"]}
+    return tuple(sorted(names, key=lambda n: (int(n) if n.isdigit() else math.inf, n)))
+
+
+def _figures(outputs: Iterable[Output], station: str, tables: Sequence[Json]) -> list[Figure]:
+    rows = (Figure(o, station, tuple(_figure(table.get(o.key)) for table in tables)) for o in outputs)
+    return [row for row in rows if not all(math.isnan(v) for v in row.values)]
+
+
+def _figure(value: Any) -> float:
+    return math.nan if value is None else float(value)
+
+
+def _settings(sides: Sequence[Side]) -> tuple[Setting, ...]:
+    rows = (Setting(i, tuple(s.walk["case"].get(i.section, {}).get(i.name) for s in sides)) for i in INPUTS)
+    return tuple(row for row in rows if any(v != row.values[0] for v in row.values))
+
+
+def _notes(sides: Sequence[Side]) -> Iterable[str]:
+    if len({s.version for s in sides}) > 1:
+        yield "The walks were computed by different versions: " + _each(sides, lambda s: s.version) + "."
+    if len({s.species_data for s in sides}) > 1:
+        yield "The walks were computed with different species data: " + _each(sides, lambda s: s.species_data[:12]) + "."
+    modes = {(s.walk["status"], s.walk["mode"]) for s in sides}
+    if len(modes) > 1:
+        yield "The walks differ in status or mode: " + _each(sides, lambda s: f"{s.walk['status']}, {s.walk['mode']}") + "."
+    for side in sides:
+        if side.walk["status"] != "solved":
+            yield f"{side.name} has no solution: {side.walk.get('reason') or side.walk['status']}"
+
+
+def _each(sides: Sequence[Side], say: Callable[[Side], str]) -> str:
+    return "; ".join(f"{side.name}: {say(side)}" for side in sides)

@@ -1,0 +1,134 @@
+"""The emitted figures of each station, and the bridge from a march to the audit."""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Mapping
+
+import numpy as np
+
+from cycle.account import spread
+from cycle.arrays import Array, Codes
+from cycle.audit import Crossing, Emitted
+from cycle.flowpath.stream import Stream
+from cycle.gas.constant import ConstantGas
+from cycle.walk import March, Record
+
+_STATE = (
+    "pressure", "temperature", "density", "sound_speed", "enthalpy", "entropy", "gamma_frozen", "isentropic_exponent",
+    "specific_heat", "molar_mass",
+)  # fmt: skip
+
+
+def viscosity(temperature: Array) -> Array:
+    """Dynamic viscosity of air, Pa s (N,), by Sutherland's law; U.S. Standard Atmosphere 1976, eq. 51."""
+    mu: Array = 1.458e-6 * temperature**1.5 / (temperature + 110.4)
+    return mu
+
+
+def _dynamic_pressure(s: Stream) -> Array:
+    return 0.5 * s.state.density * s.velocity**2
+
+
+_OWN: dict[str, Callable[[Stream], Array]] = {
+    "velocity": lambda s: s.velocity,
+    "mach": lambda s: s.mach,
+    "total_enthalpy": lambda s: s.total_enthalpy,
+    "area": lambda s: s.area,
+    "mass_flow": lambda s: s.mass_flow,
+    "stream_thrust": lambda s: s.stream_thrust,
+    "dynamic_pressure": _dynamic_pressure,
+    "unit_reynolds_number": lambda s: s.flux / viscosity(s.state.temperature),
+}
+
+
+def cheap(stream: Stream) -> dict[str, Callable[[], Array]]:
+    """Station figures that need no further state, of the stream's own points."""
+    own = {name: (lambda f=f: f(stream)) for name, f in _OWN.items()}
+    return {name: (lambda n=name: getattr(stream.state, n)) for name in _STATE} | own
+
+
+def fractions(stream: Stream) -> Array:
+    """Mole fractions (S, N)."""
+    moles = stream.state.moles
+    return moles / moles.sum(0) if moles.shape[0] else moles
+
+
+def _station(record: Record, points: Codes) -> dict[str, Array]:
+    stream = record.taken(points).stream
+    figures = {name: make() for name, make in cheap(stream).items()}
+    figures["axial_factor"] = stream.axial_factor
+    if isinstance(stream.gas, ConstantGas):
+        figures["gas_constant"] = stream.gas.gas_constant
+    return figures
+
+
+def audited_points(march: March) -> Codes:
+    """The solved points; where there are none, those that came furthest."""
+    if march.solved.size or not march.records:
+        return march.solved
+    return march.records[-1].index
+
+
+def emitted(march: March, performance: Mapping[str, Array]) -> Emitted:
+    """All emitted figures of the points to audit, detached from the solver."""
+    points = audited_points(march)
+    records = march.stations()
+    stations = {name: _station(r, points) for name, r in records.items()}
+    x = {name: fractions(r.taken(points).stream) for name, r in records.items()}
+    headline = {k: v[points] for k, v in performance.items()} if march.solved.size else {}
+    return Emitted(stations, x, march.setting.table, _crossings(march, points), headline)
+
+
+def _crossings(march: March, points: Codes) -> list[Crossing]:
+    nothing = np.zeros(points.size)
+    changed: Array | None = None
+    found: list[Crossing] = []
+    for record in march.records:
+        process = record.taken(points).process
+        if process.name == "gas change":
+            gas = record.taken(points).stream.gas
+            changed = gas.cp if isinstance(gas, ConstantGas) else None
+        if process.start == process.end:
+            continue
+        booking = process.booking
+        if booking is None:
+            found.append(
+                Crossing(process.name, process.start, process.end, nothing, nothing, nothing, nothing, nothing, {}, False, True, changed)
+            )
+        else:
+            energy = booking.fuel_flow * booking.fuel_enthalpy - booking.wall_heat
+            impulse = booking.fuel_impulse - booking.friction + booking.wall_force
+            found.append(
+                Crossing(
+                    process.name, process.start, process.end, booking.mass_added, energy, impulse, _fuel_entropy(march, points),
+                    booking.wall_heat, _fuel_atoms(march), process.solves_momentum, False, changed,
+                )
+            )  # fmt: skip
+        changed = None
+    return found
+
+
+def _fuel_atoms(march: March) -> dict[str, float]:
+    fuel = march.setting.fuel
+    return {} if fuel is None else {e: n / fuel.molar_mass for e, n in fuel.atoms.items()}
+
+
+def _fuel_entropy(march: March, points: Codes) -> Array:
+    """Entropy of the fuel at its supply pressure, or at the burner's where that is not given, J/(kg K)."""
+    setting = march.setting.take(points)
+    if setting.fuel is None or setting.constant_gamma:
+        return np.full(points.size, np.nan)
+    p = march.stations()["3"].taken(points).stream.state.pressure
+    supply = setting["fuel.supply_pressure"] if setting.has("fuel.supply_pressure") else p
+    return setting.fuel.entropy(setting["fuel.temperature"], supply)
+
+
+def station_sources(march: March, name: str, record: Record) -> dict[str, Callable[[], Array]]:
+    """Figures of a station over all points of the march, NaN where a point did not reach it."""
+    first = march.records[0]
+    sources = {k: (lambda make=make: spread(march, record.index, make())) for k, make in cheap(record.stream).items()}
+
+    def ratio() -> Array:
+        return spread(march, record.index, record.stream.area / first.taken(record.index).stream.area)
+
+    return sources | {"area_ratio": ratio}

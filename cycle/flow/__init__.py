@@ -1,0 +1,1 @@
+"""Laws of one-dimensional compressible flow: no engine in them."""

@@ -1,0 +1,87 @@
+"""Normal and oblique shocks in any gas: mass, momentum and energy across the front, no constant specific heat.
+
+Rankine-Hugoniot relations, e.g. NACA Report 1135 (1953), for the closed constant-gamma forms that start the iteration.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+
+from cycle.arrays import Array, Flags
+from cycle.flow import roots, shocks
+from cycle.gas.base import Gas
+from cycle.gas.state import State
+
+
+@dataclass(frozen=True, slots=True)
+class Front:
+    """State behind a shock, the speed there m/s (N,), the wave angle rad (N,), and whether the shock exists."""
+
+    state: State
+    velocity: Array
+    angle: Array
+    attached: Flags
+
+
+def normal_shock(gas: Gas, before: State, velocity: Array) -> Front:
+    """Normal shock in a stream of `velocity` m/s (N,); no shock where it is not supersonic."""
+    rho, g = before.density, before.isentropic_exponent
+    mach2 = (velocity / before.sound_speed) ** 2
+    flux = rho * velocity
+    impulse = before.pressure + flux * velocity
+    total = before.enthalpy + 0.5 * velocity**2
+    with np.errstate(all="ignore"):
+        volume = ((g - 1.0) * mach2 + 2.0) / ((g + 1.0) * np.maximum(mach2, 1.0)) / rho
+        guess = gas.at("hp", total - 0.5 * (flux * volume) ** 2, impulse - flux**2 * volume)
+        state = gas.at("momentum", impulse, flux, total, flux, start=guess)
+        behind = flux / state.density
+    real = (mach2 > 1.0) & (behind <= state.sound_speed * (1.0 + 1e-6))
+    return Front(
+        state.flagged((mach2 > 1.0) & ~real), behind, np.full_like(velocity, 0.5 * np.pi), mach2 > 1.0
+    )
+
+
+def _turning(gas: Gas, before: State, velocity: Array, angle: Array) -> tuple[Array, Front]:
+    """Deflection rad that a wave at `angle` gives, and the flow behind it."""
+    normal = normal_shock(gas, before, velocity * np.sin(angle))
+    along = velocity * np.cos(angle)
+    turned = angle - np.arctan2(normal.velocity, along)
+    return turned, Front(normal.state, np.hypot(normal.velocity, along), angle, normal.attached)
+
+
+def largest_turning(gas: Gas, before: State, velocity: Array) -> tuple[Array, Array]:
+    """Detachment: the largest deflection rad (N,) of an attached shock and its wave angle rad (N,).
+
+    Golden section about the constant-gamma angle; the maximum is flat, so 1e-4 in angle is 1e-8 in deflection.
+    """
+    mach = np.maximum(velocity / before.sound_speed, 1.0 + 1e-9)
+    centre = shocks.detachment(mach, before.isentropic_exponent).wave_angle
+    low = np.maximum(centre - 0.25, np.arcsin(1.0 / mach) + 1e-9)
+    high = np.minimum(centre + 0.25, 0.5 * np.pi)
+    angle = roots.peak(lambda b: _turning(gas, before, velocity, b)[0], low, high, 1e-4)
+    return _turning(gas, before, velocity, angle)[0], angle
+
+
+def oblique_shock(gas: Gas, before: State, velocity: Array, deflection: Array, strong: bool = False) -> Front:
+    """Oblique shock that turns the stream by `deflection` rad (N,); weak branch unless `strong`.
+
+    Not attached where the stream is subsonic or the deflection exceeds the largest one of this gas; the state there
+    must not be used. The wave angle is a root between the Mach angle (or the normal) and the detachment angle.
+    """
+    mach = velocity / before.sound_speed
+    with np.errstate(all="ignore"):
+        most, at_most = largest_turning(gas, before, velocity)
+        attached = (mach > 1.0) & (deflection <= most) & (deflection >= 0.0)
+        edge = (
+            np.full_like(mach, 0.5 * np.pi)
+            if strong
+            else np.arcsin(np.minimum(1.0, 1.0 / mach)) * (1.0 + 1e-12)
+        )
+        angle = roots.bracketed(
+            lambda b: _turning(gas, before, velocity, b)[0] - deflection, edge, at_most, 1e-14
+        )
+    angle = np.where(attached & np.isfinite(angle), angle, at_most)
+    front = _turning(gas, before, velocity, angle)[1]
+    return Front(front.state, front.velocity, angle, attached)

@@ -1,0 +1,1 @@
+"""Components of the flowpath: stream in, stream out."""

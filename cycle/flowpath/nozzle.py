@@ -1,0 +1,152 @@
+"""Nozzle: a choked throat where there is one, then expansion to a pressure or an area, with its losses."""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from dataclasses import replace
+
+import numpy as np
+
+from cycle.arrays import Array, Flags
+from cycle.flow import states
+from cycle.flowpath.setting import Setting
+from cycle.flowpath.stream import Process, Step, Stream, status_of, stream
+from cycle.gas.state import State
+
+
+def nozzle_gas(burnt: Stream, setting: Setting) -> Stream:
+    """The burnt stream with the gas that expands: of kept composition where the nozzle is frozen."""
+    if setting.choices.get("nozzle.chemistry") != "frozen":
+        return burnt
+    gas = burnt.gas.frozen(burnt.state)
+    return replace(burnt, gas=gas, state=gas.at("tp", burnt.state.temperature, burnt.state.pressure))
+
+
+def throat(burnt: Stream, setting: Setting) -> Step:
+    """Station 4 to 5: isentropic to Mach 1, the throat sized to pass the flow. A supersonic stream does not fit."""
+    with np.errstate(all="ignore"):
+        state = states.sonic(burnt.gas, burnt.total_enthalpy, burnt.state.entropy, burnt.state)
+        u = states.velocity(burnt.total_enthalpy, state)
+    out = stream(burnt.gas, state, u, burnt.mass_flow)
+    figures = {"burner_exit_over_throat": burnt.area / out.area}
+    return Step(out, Process("throat", "4", "5", figures), status_of(state, (burnt.mach > 1.0 + 1e-9, "throat-mismatch")))
+
+
+def divergence_factor(setting: Setting) -> Array:
+    """Axial share of the exit momentum, (N,). Farokhi, Aircraft Propulsion, examples 5.8 and 5.9."""
+    if setting.choices["nozzle.divergence"] == "divergence_factor":
+        return setting["nozzle.divergence_factor"]
+    return _SHAPE[setting.choices["nozzle.divergence_shape"]](setting["nozzle.divergence_angle"])
+
+
+_SHAPE: dict[str, Callable[[Array], Array]] = {
+    "conical": lambda a: 0.5 * (1.0 + np.cos(a)),
+    "planar": lambda a: np.sinc(a / np.pi),
+}
+
+
+def _by_velocity(entering: Stream, setting: Setting, ideal: State) -> Array:
+    """u10 = c u_s at the same pressure: enthalpy behind the loss, J/kg."""
+    kinetic = entering.total_enthalpy - ideal.enthalpy
+    return entering.total_enthalpy - setting["nozzle.velocity_coefficient"] ** 2 * kinetic
+
+
+def _by_static(entering: Stream, setting: Setting, ideal: State) -> Array:
+    """Drop over the isentropic drop from the static state. Heiser and Pratt (1994), from memory."""
+    h = entering.state.enthalpy
+    return h - setting["nozzle.expansion_efficiency"] * (h - ideal.enthalpy)
+
+
+def _by_total(entering: Stream, setting: Setting, ideal: State) -> Array:
+    """Drop over the isentropic drop from the total state."""
+    h = entering.total_enthalpy
+    return h - setting["nozzle.expansion_efficiency_from_total"] * (h - ideal.enthalpy)
+
+
+_QUALITY: dict[str, Callable[[Stream, Setting, State], Array]] = {
+    "velocity_coefficient": _by_velocity,
+    "expansion_efficiency": _by_static,
+    "expansion_efficiency_from_total": _by_total,
+}
+
+
+def _lossless(setting: Setting) -> bool:
+    quality = setting.choices["nozzle.quality"]
+    return bool(np.all(setting[f"nozzle.{quality}"] == 1.0))
+
+
+def _expanded(entering: Stream, setting: Setting, pressure: Array, start: State) -> State:
+    """State at `pressure` (N,) behind the real expansion."""
+    ideal = entering.gas.at("sp", entering.state.entropy, pressure, start=start)
+    if _lossless(setting):
+        return ideal
+    h = _QUALITY[setting.choices["nozzle.quality"]](entering, setting, ideal)
+    return entering.gas.at("hp", h, pressure, start=ideal)
+
+
+def _to_area(entering: Stream, setting: Setting, area: Array) -> tuple[State, Flags]:
+    """Supersonic state that fills `area` (N,): closed isentropic first, then the pressure that keeps the mass flow."""
+    critical = states.sonic(entering.gas, entering.total_enthalpy, entering.state.entropy, entering.state)
+    flux = entering.mass_flow / area
+    fast = np.ones(area.shape, np.bool_)
+    state, passes = states.at_flux(entering.gas, entering.total_enthalpy, entering.state.entropy, flux, fast, critical)
+    if _lossless(setting):
+        return state, passes
+    ln_p = np.log(state.pressure)
+    slope, before, at = np.ones_like(ln_p), None, None
+    done = ~passes
+    for _ in range(40):
+        state = _expanded(entering, setting, np.exp(ln_p), state)
+        u = states.velocity(entering.total_enthalpy, state)
+        miss = np.log(state.density * u / flux)
+        if before is None or at is None:
+            mach2 = (u / state.sound_speed) ** 2
+            slope = (1.0 - 1.0 / mach2) / state.isentropic_exponent
+        else:
+            secant = (miss - before) / (ln_p - at)
+            slope = np.where(np.isfinite(secant) & (secant > 0.05), secant, slope)
+        step = np.clip(np.where(miss == 0.0, 0.0, -miss / slope), -1.0, 1.0)
+        done |= np.abs(step) < 1e-13
+        if done.all():
+            break
+        before, at = np.where(done, before if before is not None else miss, miss), np.where(done, at if at is not None else ln_p, ln_p)
+        ln_p = np.where(done, ln_p, ln_p + step)
+        done |= np.abs(miss) < 3e-14
+    return state.flagged(~done), passes
+
+
+def _area_over_capture(entering: Stream, setting: Setting) -> Array:
+    return setting["nozzle.exit_area_over_capture"] * setting["engine.capture_area"]
+
+
+def _area_ratio(entering: Stream, setting: Setting) -> Array:
+    return setting["nozzle.exit_area_ratio"] * entering.area
+
+
+_AREA: dict[str, Callable[[Stream, Setting], Array]] = {
+    "exit_area_over_capture": _area_over_capture,
+    "exit_area_ratio": _area_ratio,
+}
+
+
+def nozzle(entering: Stream, setting: Setting, ambient: Array) -> Step:
+    """Station 4 or 5 to 10.
+
+    ambient: Pa (N,), where the expansion is ideal. Not solved: under-expanded where the exit asked for lies upstream of
+    the entry, throat-mismatch where a subsonic stream meets no throat.
+    """
+    end = setting.choices["nozzle.exit"]
+    with np.errstate(all="ignore"):
+        if end in _AREA:
+            area = _AREA[end](entering, setting)
+            state, passes = _to_area(entering, setting, area)
+            upstream = ~passes | (area < entering.area * (1.0 - 1e-9))
+        else:
+            p = ambient if end == "ideal" else setting["nozzle.exit_pressure"]
+            state = _expanded(entering, setting, p, entering.state)
+            upstream = p > entering.state.pressure * (1.0 + 1e-9)
+        u = states.velocity(entering.total_enthalpy, state)
+    slow = (entering.mach < 1.0 - 1e-9) & (setting.choices["nozzle.throat"] == "none")
+    out = Stream(entering.gas, state, u, entering.mass_flow, np.broadcast_to(divergence_factor(setting), u.shape))
+    start = "5" if setting.choices["nozzle.throat"] == "sized" else "4"
+    return Step(out, Process("nozzle", start, "10"), status_of(state, (slow, "throat-mismatch"), (upstream, "under-expanded")))

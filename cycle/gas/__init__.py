@@ -1,0 +1,1 @@
+"""Gas models: constant gamma, frozen composition, equilibrium, behind the same verbs."""

@@ -1,0 +1,189 @@
+"""A gas in chemical equilibrium: composition follows temperature and pressure."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from typing import TYPE_CHECKING, Self
+
+import numpy as np
+
+from cycle.arrays import Array, Codes, Flags
+from cycle.constants import GAS_CONSTANT, REFERENCE_PRESSURE
+from cycle.gas.base import Gas
+from cycle.gas.closures import CLOSURES
+from cycle.gas.elimination import dot, product, solve_systems
+from cycle.gas.frozen import FrozenGas, complete_products, per_mole
+from cycle.gas.kernel import Kernel, kernel_of
+from cycle.gas.newton import POOL, Columns, iterate
+from cycle.gas.species import SpeciesTable, range_of
+from cycle.gas.start import Guess, absent, first_temperature_pressure
+from cycle.gas.state import NOT_CONVERGED, OUT_OF_RANGE, State
+
+if TYPE_CHECKING:
+    from cycle.gas.fuels import Fuel
+
+TRACE = 1e-300
+
+
+@dataclass(frozen=True, eq=False)
+class Solution:
+    """Converged unknowns z, m, ln T, ln p (K + 3, N), flags and iteration counts (N,)."""
+
+    unknowns: Array
+    converged: Flags
+    iterations: Codes
+
+
+class EquilibriumGas(Gas):
+    """Atoms free to react, and inert species beside them.
+
+    table: the species; basis: (K, N) mol/kg, the reacting atoms as moles of basis species, a shortage of oxygen as a
+    negative amount of O2; inert: (I, N) mol/kg. Condensed carbon is not a species: see `carbon_activity`.
+    """
+
+    def __init__(self, table: SpeciesTable, basis: Array, inert: Array) -> None:
+        self.table = table
+        # A balance that cancels to rounding is an absent element, not a trace of one.
+        self.basis = np.where(np.abs(basis) < 1e-12, 0.0, basis)
+        self.inert = inert
+        self.species = table.names
+
+    @property
+    def size(self) -> int:
+        return int(self.basis.shape[1])
+
+    def take(self, index: Codes | Flags) -> Self:
+        return type(self)(self.table, self.basis[:, index], self.inert[:, index])
+
+    def frozen(self, state: State) -> FrozenGas:
+        return FrozenGas(self.table, state.moles)
+
+    def reacting(self) -> EquilibriumGas:
+        """This gas itself."""
+        return self
+
+    def complete(self) -> FrozenGas:
+        """The products of complete combustion of the same atoms: see `complete_products`."""
+        return complete_products(self.table, self.basis, self.inert)
+
+    def fuelled(self, fuel: Fuel, ratio: Array, burnt: Array) -> EquilibriumGas:
+        """The burnt fraction of the fuel joins the reacting atoms, however rich; the rest is inert vapour.
+
+        ValueError where the table was not made for this fuel.
+        """
+        supplied = ratio / per_mole(self.table, fuel)
+        basis = self.basis + self.table.fuel_in_basis[:, None] * (burnt * supplied)
+        inert = self.inert.copy()
+        inert[-1] += (1.0 - burnt) * supplied
+        return EquilibriumGas(self.table, basis / (1.0 + ratio), inert / (1.0 + ratio))
+
+    def _at(self, kind: str, targets: tuple[Array, ...], start: State | None) -> State:
+        return self.state_of(self.solve(kind, *targets, start=start))
+
+    def solve(self, kind: str, *targets: Array, start: State | None = None) -> Solution:
+        """The iteration behind `at`, with its counts; targets (N,). A start that leads nowhere is dropped, unless it
+        chooses the branch."""
+        found = self._iterate(kind, np.stack(targets), start)
+        if start is None or CLOSURES[kind].branched or found.converged.all():
+            return found
+        lost = np.flatnonzero(~found.converged)
+        again = self.take(lost)._iterate(kind, np.stack(targets)[:, lost], None)
+        found.unknowns[:, lost], found.converged[lost] = again.unknowns, again.converged
+        found.iterations[lost] += again.iterations
+        return found
+
+    def _iterate(self, kind: str, targets: Array, start: State | None) -> Solution:
+        kernel = kernel_of(self.table)
+        usable = np.isfinite(targets).all(0) & np.isfinite(self.basis).all(0) & np.isfinite(self.inert).all(0)
+        if start is not None:
+            usable &= np.isfinite(start.temperature) & np.isfinite(start.pressure)
+        where = np.flatnonzero(usable)
+        unknowns = np.full((kernel.basis + 3, self.size), np.nan)
+        converged, counts = np.zeros(self.size, bool), np.zeros(self.size, np.int64)
+        if where.size:
+            first = FirstGuess(kernel, kind, self.take(where), targets[:, where], None if start is None else start.take(where))
+            with np.errstate(all="ignore"):
+                unknowns[:, where], converged[where], counts[where] = iterate(kernel, kind, where.size, first)
+        return Solution(unknowns, converged, counts)
+
+    def state_of(self, found: Solution) -> State:
+        """Properties of a solution with their analytic derivatives; points without one are flagged."""
+        chunks = [slice(low, low + POOL) for low in range(0, max(self.size, 1), POOL)]
+        with np.errstate(all="ignore"):
+            parts = [_properties(self.table, found.unknowns[:, c], self.basis[:, c], self.inert[:, c]) for c in chunks]
+            columns = parts[0] if len(parts) == 1 else [np.concatenate(c, axis=-1) for c in zip(*parts, strict=True)]
+            code = range_of(columns[0])
+            lost = ~found.converged | ~np.isfinite(columns[3] * columns[5])
+        code = np.where(lost & ((code != OUT_OF_RANGE) | np.isnan(columns[0])), NOT_CONVERGED, code)
+        return State(*columns[:-1], code, columns[-1])
+
+
+class FirstGuess:
+    """Makes the first columns of a slice of points: from a start where it serves, from complete combustion otherwise."""
+
+    def __init__(self, kernel: Kernel, kind: str, gas: EquilibriumGas, targets: Array, start: State | None) -> None:
+        self.kernel, self.kind, self.gas, self.targets, self.start = kernel, kind, gas, targets, start
+
+    def __call__(self, points: slice) -> Columns:
+        basis, inert, targets = self.gas.basis[:, points], self.gas.inert[:, points], self.targets[:, points]
+        named = dict(zip(CLOSURES[self.kind].targets, targets, strict=True))
+        guess = Guess(self.kernel, basis, inert)
+        if self.start is None:
+            T, ln_p = first_temperature_pressure(self.kind, guess, named)
+        else:
+            T = named.get("temperature", self.start.temperature[points])
+            ln_p = np.log(named.get("pressure", self.start.pressure[points]) / REFERENCE_PRESSURE)
+        z, m, ln_n = guess.composition(T, ln_p)
+        if self.start is not None and self.start.potentials is not None:
+            self._warm(points, ln_p, z, m, ln_n)
+        unknowns = np.vstack([z, m, np.log(T), ln_p, ln_n])
+        mixing = -(inert * np.log(np.maximum(inert, TRACE))).sum(0)
+        return Columns(unknowns, np.vstack([basis, absent(self.kernel, basis), inert, mixing, targets]))
+
+    def _warm(self, points: slice, ln_p: Array, z: Array, m: Array, ln_n: Array) -> None:
+        """Take over the composition of the start, except where an element has appeared since."""
+        assert self.start is not None and self.start.potentials is not None
+        before = self.start.potentials[:, points]
+        same = ((before > -500.0) == (z > -500.0)).all(0) & np.isfinite(before).all(0)
+        moles = self.start.moles[: self.kernel.table.reacting, points]
+        z[:, same] = before[:, same]
+        ln_n[:, same] = np.log(np.maximum(moles, TRACE))[:, same]
+        total = moles.sum(0) + self.gas.inert[:, points].sum(0)
+        m[same] = (np.log(total) - ln_p)[same]
+
+
+def _properties(table: SpeciesTable, unknowns: Array, basis: Array, inert: Array) -> tuple[Array, ...]:
+    """State fields in order, `range` left out, potentials last (Gordon and McBride, NASA RP-1311, section 2.5-2.6, in
+    these variables)."""
+    kernel = kernel_of(table)
+    k = kernel.basis
+    z, m, ln_T, ln_p = unknowns[:k], unknowns[k], unknowns[k + 1], unknowns[k + 2]
+    T, p = np.exp(ln_T), REFERENCE_PRESSURE * np.exp(ln_p)
+    th = kernel.thermo(T)
+    ln_n = product(kernel.nu, z) + m
+    ln_n[k:] -= th.g
+    n = np.exp(ln_n)
+    amounts, total = np.concatenate([basis, inert]), np.exp(m + ln_p)
+    matrix = product(kernel.pairs, n)
+    matrix[: k * (k + 2) : k + 2] += absent(kernel, basis)
+    matrix[-1] -= total
+    nh = n[k:] * th.h
+    pull = kernel.formed @ nh
+    response = np.zeros((k + 1, 2, T.size))
+    np.negative(pull, out=response[:, 0])
+    response[k, 1] = total
+    solve_systems(matrix.reshape(k + 1, k + 1, -1), response)
+    formed = nh.sum(0)
+    RT, R = GAS_CONSTANT * T, GAS_CONSTANT
+    h = formed + dot(amounts, th.base_h)
+    mixing = (inert * np.log(np.maximum(inert, TRACE))).sum(0)
+    s = formed + dot(amounts, th.base_s) - dot(basis, z) + inert.sum(0) * m - mixing
+    cp_frozen = dot(amounts, th.base_cp) + dot(n[k:], th.cp)
+    cp = cp_frozen + dot(nh, th.h) + dot(pull, response[:, 0])
+    v_T, v_p = 1.0 + response[k, 0], response[k, 1]
+    exponent = -1.0 / (v_p + v_T * v_T * total / cp)
+    gas_constant = total * R
+    return (
+        T, p, p / (total * RT), h * RT, s * R, np.sqrt(exponent * gas_constant * T), exponent,
+        cp_frozen / (cp_frozen - total), cp * R, 1.0 / total, v_T, v_p, np.concatenate([n, inert]), z,
+    )  # fmt: skip

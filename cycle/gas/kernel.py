@@ -1,0 +1,83 @@
+"""What the equilibrium of one species table needs, prepared once: reactions from the basis and the reduced system.
+
+Notation of the equilibrium modules. The unknowns of a point are, for the basis species k,
+
+    z_k = ln(partial pressure of k / 1 bar),   m = ln(sum of moles) - ln(p / 1 bar),   ln T,   ln p,
+
+and ln n_j of every reacting species (mol/kg). In equilibrium ln n_j = sum_k nu_jk z_k + m - g_j(T), with nu_jk moles of
+basis species k in one mole of j and g_j = dG_j / RT of its formation from the basis. Amounts b_k of the basis species
+and the inert amounts are given: sum_j nu_jk n_j = b_k, sum_j n_j + inert = (p / 1 bar) e^m.
+"""
+
+from __future__ import annotations
+
+import itertools
+from dataclasses import dataclass
+from functools import lru_cache
+
+import numpy as np
+
+from cycle.arrays import Array
+from cycle.gas.elimination import product
+from cycle.gas.species import SpeciesTable, temperature_functions
+
+
+@dataclass(frozen=True, eq=False)
+class Thermo:
+    """Dimensionless quantities at N temperatures.
+
+    g, h, cp: of forming each non-basis reacting species from the basis, per RT or R, (reacting - K, N);
+    base_cp, base_h, base_s: of the basis and then the inert species, (K + inert, N).
+    """
+
+    g: Array
+    h: Array
+    cp: Array
+    base_cp: Array
+    base_h: Array
+    base_s: Array
+
+
+@dataclass(frozen=True, eq=False)
+class Kernel:
+    """nu (reacting, K); pairs ((K+1)^2, reacting): n_j times these sums gives the reduced matrix; weights (K+1,
+    reacting): [nu, 1] transposed; formed: weights of the non-basis species; rows: factors behind `Thermo`, whose
+    fields are its `parts`; formation: the rows of g alone."""
+
+    table: SpeciesTable
+    nu: Array
+    pairs: Array
+    weights: Array
+    formed: Array
+    rows: Array
+    formation: Array
+    parts: tuple[slice, ...]
+
+    @property
+    def basis(self) -> int:
+        """Number K of basis species."""
+        return self.table.basis
+
+    def thermo(self, temperature: Array, functions: Array | None = None, out: Array | None = None) -> Thermo:
+        """All of `Thermo` at temperature K (N,); functions (17, N) and out (rows, N) are reused where given."""
+        p = product(self.rows, temperature_functions(temperature, functions), out)
+        return Thermo(*(p[part] for part in self.parts))
+
+    def formation_energy(self, temperature: Array) -> Array:
+        """g of the non-basis species only, (reacting - K, N)."""
+        return product(self.formation, temperature_functions(temperature))
+
+
+@lru_cache(maxsize=64)
+def kernel_of(table: SpeciesTable) -> Kernel:
+    """The kernel of a table, built once."""
+    k, reacting = table.basis, table.reacting
+    formation = [(rows[:reacting] - table.in_basis @ rows[:k])[k:] for rows in (table.h, table.s, table.cp)]
+    h, s, cp = formation
+    base = np.r_[0:k, reacting : len(table.names)]
+    rows = np.vstack([h - s, h, cp, table.cp[base], table.h[base], table.s[base]])
+    weights = np.vstack([table.in_basis.T, np.ones(reacting)])
+    pairs = (weights[:, None] * weights[None, :]).reshape((k + 1) ** 2, reacting)
+    ends = np.cumsum([0, *[reacting - k] * 3, *[len(base)] * 3])
+    parts = tuple(slice(a, b) for a, b in itertools.pairwise(ends))
+    return Kernel(table, table.in_basis, pairs, weights, weights[:, k:].copy(), rows, (h - s).copy(), parts)

@@ -1,0 +1,208 @@
+"""How far the walk is from what ends it, and which input moves it away.
+
+A margin is (allowed - actual)/allowed, with the sign reversed for a lower limit: positive is safe. What the case lacks
+the data for reads "not assessed" and is never shown as fine.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, replace
+
+import numpy as np
+
+from cycle.account import spread
+from cycle.arrays import Array
+from cycle.flow import roots
+from cycle.flowpath import combustor
+from cycle.flowpath.setting import Setting
+from cycle.flowpath.stream import SOLVED
+from cycle.gas.species import HIGHEST, LOWEST
+from cycle.walk import March
+
+NEAR = 0.1
+"""Margin below which a limit is called near; common practice."""
+
+DISSOCIATION = 2200.0
+"""Temperature above which a gas without dissociation is out of its range, K; common practice."""
+
+
+@dataclass(frozen=True, slots=True)
+class Limit:
+    """One limit of N points: actual and allowed figure (N,), margin (N,), NaN where not assessed.
+
+    upper: whether `allowed` is an upper limit. restore: what would give margin back; input: the case key to go to.
+    """
+
+    key: str
+    label: str
+    actual: Array
+    allowed: Array
+    unit: str
+    upper: bool
+    restore: str
+    input: str
+    missing: str = ""
+
+    @property
+    def margin(self) -> Array:
+        """(allowed - actual)/allowed, sign reversed for a lower limit."""
+        with np.errstate(all="ignore"):
+            room = (self.allowed - self.actual) / np.abs(self.allowed)
+        return room if self.upper else -room
+
+
+def state_of(margin: float) -> str:
+    """ok, near, over, or not assessed."""
+    if np.isnan(margin):
+        return "not assessed"
+    if margin < 0.0:
+        return "over"
+    return "near" if margin < NEAR else "ok"
+
+
+def limits(walked: March, largest_heat: float | None = None) -> tuple[Limit, ...]:
+    """All limits of a march, in fixed order. largest_heat: the heat input at which the burner chokes, where known."""
+    flight = _flight(walked) if walked.named("flight") is not None else ()
+    return (*flight, *_burner(walked), _choking(walked, largest_heat), *_hot(walked), *_nozzle(walked), *_NOT_YET(walked))
+
+
+def _at(walked: March, station: str, figure: str) -> Array:
+    record = walked.stations().get(station)
+    if record is None:
+        return np.full(walked.setting.size, np.nan)
+    return spread(walked, record.index, getattr(record.stream.state, figure))
+
+
+def _flight(walked: March) -> tuple[Limit, ...]:
+    setting, record = walked.setting, walked.records[0]
+    q = spread(walked, record.index, 0.5 * record.stream.state.density * record.stream.velocity**2)
+    place = setting.choices["flight.place"]
+    key = {"altitude": "flight.altitude", "dynamic_pressure": "flight.dynamic_pressure", "pressure": "flight.pressure"}[place]
+    return (
+        Limit("corridor_low", "flight corridor, lowest q", q, setting["limits.dynamic_pressure_low"], "pressure", False,
+              "fly lower or faster", key),
+        Limit("corridor_high", "flight corridor, highest q", q, setting["limits.dynamic_pressure_high"], "pressure", True,
+              "fly higher or slower", key),
+    )  # fmt: skip
+
+
+def _inlet_key(setting: Setting) -> str:
+    end = setting.choices.get("inlet.end")
+    return "entry.pressure" if end is None else f"inlet.{end}"
+
+
+def _burner(walked: March) -> tuple[Limit, ...]:
+    setting = walked.setting
+    key = _inlet_key(setting)
+    entry = key == "entry.pressure"
+    hotter = "raise the entry temperature" if entry else "compress more or fly faster"
+    denser = "raise the entry pressure" if entry else "compress more or fly lower"
+    return (
+        Limit("ignition_temperature", "self-ignition, T3", _at(walked, "3", "temperature"), setting["limits.ignition_temperature"],
+              "temperature", False, hotter, "entry.temperature" if entry else key),
+        Limit("ignition_pressure", "self-ignition, p3", _at(walked, "3", "pressure"), setting["limits.ignition_pressure"],
+              "pressure", False, denser, key),
+    )  # fmt: skip
+
+
+_HEAT_WORDS = {
+    "equivalence_ratio": ("equivalence ratio", "ratio"),
+    "fuel_air_ratio": ("fuel-air ratio", "ratio"),
+    "exit_total_temperature": ("exit total temperature", "temperature"),
+}
+
+
+def heat_key(setting: Setting) -> str:
+    """The case key that says the heat."""
+    return f"combustor.{setting.choices['combustor.heat']}"
+
+
+def heat_words(setting: Setting) -> tuple[str, str]:
+    """Label and dimension of the heat input."""
+    return _HEAT_WORDS[setting.choices["combustor.heat"]]
+
+
+def _choking(walked: March, largest: float | None) -> Limit:
+    setting, key = walked.setting, heat_key(walked.setting)
+    label, unit = heat_words(setting)
+    allowed = np.full(setting.size, np.nan if largest is None else largest)
+    missing = "no choking within the range of the input" if largest is not None and np.isnan(largest) else "solved for one point only"
+    less = "less heat, a faster burner entry (less compression), or a larger burner area"
+    return Limit("thermal_choking", f"thermal choking, {label}", setting[key], allowed, unit, True, less, key, missing)
+
+
+def _hot(walked: March) -> tuple[Limit, ...]:
+    setting = walked.setting
+    found = [_at(walked, name, "temperature") for name in walked.stations()]
+    hottest, coldest = np.fmax.reduce(found), np.fmin.reduce(found)
+    key = heat_key(setting)
+    missing = "limits.gas_temperature is not given"
+    rows = [
+        Limit("gas_temperature", "gas temperature", hottest, setting.get("limits.gas_temperature", np.nan), "temperature", True,
+              "less heat or less compression", key, missing),
+    ]  # fmt: skip
+    whole = np.ones(setting.size)
+    if setting.choices["gas.model"] != "equilibrium":
+        rows.append(Limit("model_range", "gas without dissociation", hottest, DISSOCIATION * whole, "temperature", True,
+                          "use gas.model = equilibrium", "gas.model"))  # fmt: skip
+    if not setting.constant_gamma:
+        rows += [
+            Limit("data_high", "species data, highest T", hottest, HIGHEST * whole, "temperature", True, "less heat", key),
+            Limit("data_low", "species data, lowest T", coldest, LOWEST * whole, "temperature", False, "a warmer day or exit", "flight.altitude"),
+        ]  # fmt: skip
+    return tuple(rows)
+
+
+def _nozzle(walked: March) -> tuple[Limit, ...]:
+    if walked.named("flight") is None or walked.setting.choices["nozzle.exit"] == "absent":
+        return ()
+    setting = walked.setting
+    ratio = _at(walked, "10", "pressure") / _at(walked, "0", "pressure")
+    key = f"nozzle.{setting.choices['nozzle.exit']}"
+    return (Limit("nozzle_separation", "nozzle separation, p10/p0", ratio, setting["limits.nozzle_separation"], "ratio", False,
+                  "a smaller exit or a higher exit pressure", key),)  # fmt: skip
+
+
+def _NOT_YET(walked: March) -> tuple[Limit, ...]:
+    nothing = np.full(walked.setting.size, np.nan)
+    lacking = (
+        ("start", "inlet start", "needs the internal contraction"),
+        ("separation", "shock separation in the inlet", "needs inlet geometry"),
+        ("isolator_length", "isolator length", "needs an isolator"),
+    )
+    inlet = lacking if walked.named("flight") is not None else lacking[2:]
+    return tuple(Limit(k, label, nothing, nothing, "ratio", True, why, "", why) for k, label, why in inlet)
+
+
+_SCAN = 25
+
+
+def largest_heat(walked: March, ceiling: float) -> float:
+    """Largest heat input of one point before the burner chokes.
+
+    walked: a march of one point that reached the burner. ceiling: end of the search, SI. NaN where nothing chokes below
+    it. The room left before choking is scanned over the input in one batch; its first change of sign is then a root.
+    """
+    entry = walked.stations()["3"]
+    before = combustor.burner_gas(entry.stream, walked.setting)
+    key = heat_key(walked.setting)
+    # below the entering total temperature there is no heat to add
+    floor = ceiling / 4.0 if walked.setting.choices["combustor.heat"] == "exit_total_temperature" else 0.0
+
+    def room(values: Array) -> Array:
+        points = np.zeros(values.size, np.int64)
+        many = walked.setting.take(points)
+        return combustor.choking_room(before.take(points), replace(many, numbers={**many.numbers, key: values}))
+
+    tried = np.linspace(floor, ceiling, _SCAN)
+    left = room(tried)
+    choked = np.flatnonzero(left < 0.0)
+    if not choked.size or choked[0] == 0 or not left[choked[0] - 1] >= 0.0:
+        return np.nan
+    low, high = tried[choked[0] - 1], tried[choked[0]]
+    return float(roots.bracketed(room, np.array([low]), np.array([high]), 1e-9)[0])
+
+
+def is_solved(walked: March) -> bool:
+    """Whether every point has a solution."""
+    return bool(np.all(walked.status == SOLVED))

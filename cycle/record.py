@@ -1,0 +1,274 @@
+"""A walk as plain data: the JSON of `solve`, and the stored form that other sessions read back."""
+
+from __future__ import annotations
+
+import json
+import math
+import os
+import stat
+import tempfile
+from collections.abc import Iterable, Mapping
+from dataclasses import dataclass
+from datetime import UTC, datetime
+from pathlib import Path
+from typing import TYPE_CHECKING, Any
+
+from cycle.errors import CaseError, Fault
+from cycle.quantities import INPUTS, OUTPUTS, SECTIONS
+from cycle.units import si_unit
+
+if TYPE_CHECKING:
+    from cycle.case import Case
+    from cycle.walk import Walk
+
+FORMAT = 1
+KIND = "stored walk"
+LARGEST_FILE = 16 * 1024 * 1024
+"""Bytes of the largest stored file that is read."""
+
+Json = dict[str, Any]
+
+_STATION_KEYS = tuple(o.key for o in OUTPUTS if o.where == "station")
+_PERFORMANCE_KEYS = tuple(o.key for o in OUTPUTS if o.where == "performance")
+_PARTS: dict[str, type] = {
+    "case": dict, "status": str, "mode": str, "stations": dict, "performance": dict, "losses": list, "limits": list,
+    "audit": dict, "referee": dict, "units": dict, "reasons": dict,
+}  # fmt: skip
+
+
+def record(walk: Walk, referee: bool = False) -> Json:
+    """The walk of one point as plain data of the JSON contract: long names, SI, null with a reason instead of NaN.
+
+    walk: of shape (). referee: also recompute the states by the referee (slow).
+    """
+    reasons: dict[str, str] = {}
+    performance = {key: _number(getattr(walk.performance, key)) for key in _PERFORMANCE_KEYS}
+    reasons |= {f"performance.{k}": walk.why_not(k) for k, v in performance.items() if v is None}
+    stations = {name: _station(station) for name, station in walk.station.items()}
+    reasons |= {f"stations.{n}": walk.reason for n, station in walk.station.items() if not station.has_value}
+    for name in ("losses", "exergy"):
+        if not getattr(walk, name):
+            reasons[name] = walk.why_not(name)
+    return {
+        "format": FORMAT,
+        "case": case_record(walk.case),
+        "defaults": [i.input.key for i in walk.case.inputs() if not i.given and i.value is not None],
+        "status": str(walk.status),
+        "mode": str(walk.mode),
+        "reason": str(walk.reason),
+        "failed_process": str(walk.failed_process),
+        "stations": stations,
+        "processes": [_process(p) for p in walk.processes],
+        "performance": performance,
+        "potentials": [_row(r) for r in walk.potentials],
+        "losses": [_row(r) for r in walk.losses],
+        "exergy": [_row(r) for r in walk.exergy],
+        "limits": [_limit(limit) for limit in walk.limits],
+        "audit": _audit(walk),
+        "referee": _referee(walk, referee),
+        "units": {o.key: si_unit(o.unit) for o in OUTPUTS} | {i.key: si_unit(i.unit) for i in INPUTS if i.kind == "number"},
+        "reasons": reasons,
+    }
+
+
+def refused(name: str, faults: Iterable[Fault]) -> Json:
+    """What stands in the JSON of `solve` for an input that is no case: status "bad-input" and its faults as text."""
+    return {"format": FORMAT, "name": name, "case": None, "status": "bad-input", "faults": [str(f) for f in faults]}
+
+
+def case_record(case: Case) -> Json:
+    """The case as solved: its tables with every applicable input, defaults included, numbers in SI.
+
+    Returns a mapping of the shape of a case file, which is itself a valid case once written as TOML.
+    """
+    tables: Json = {"format": FORMAT, "title": case.title}
+    if case.notes:
+        tables["notes"] = case.notes
+    for stated in case.inputs():
+        if stated.value is not None:
+            value = dict(stated.value) if isinstance(stated.value, Mapping) else stated.value
+            tables.setdefault(stated.input.section, {})[stated.input.name] = value
+    return tables
+
+
+def _number(value: Any) -> float | None:
+    number = float(value)
+    return number if math.isfinite(number) else None
+
+
+def _station(station: Any) -> Json:
+    values: Json = {key: _number(getattr(station, key)) for key in _STATION_KEYS}
+    values["mole_fractions"] = {name: _number(x) for name, x in station.mole_fractions.items()}
+    return values
+
+
+def _process(process: Any) -> Json:
+    figures = {key: _number(value) for key, value in process.figures.items()}
+    return {"name": process.name, "label": process.label, "start": process.start, "end": process.end, "figures": figures}
+
+
+def _row(row: Any) -> Json:
+    return {"key": row.key, "label": row.label, "value": _number(row.value), "unit": si_unit(row.unit), "note": row.note}
+
+
+def _limit(limit: Any) -> Json:
+    numbers = {key: _number(getattr(limit, key)) for key in ("actual", "allowed", "margin")}
+    words = {"state": limit.state, "restore": limit.restore, "input": limit.input}
+    return {"key": limit.key, "label": limit.label, "unit": si_unit(limit.unit), **numbers, **words}
+
+
+def _residual(residual: Any) -> Json:
+    return {"law": residual.law, "where": residual.where, "value": _number(residual.value)}
+
+
+def _audit(walk: Walk) -> Json:
+    rows = [_residual(r) for r in walk.audit.rows]
+    return {"ok": bool(walk.audit.ok), "worst": _residual(walk.audit.worst) if rows else None, "rows": rows}
+
+
+def _referee(walk: Walk, asked: bool) -> Json:
+    if not asked:
+        return {"asked": False, "words": "not asked"}
+    referee = walk.referee()
+    return {"asked": True, "words": referee.words, "worst": _number(referee.worst), "rows": [_row(r) for r in referee.rows]}
+
+
+def stored(walk: Walk, version: str, referee: bool = False) -> Json:
+    """The stored form of a walk of one point: its record with the case's text, version, species-data hash and date (UTC)."""
+    from cycle.gas.species import data_hash
+
+    return {
+        "format": FORMAT,
+        "kind": KIND,
+        "name": walk.case.name,
+        "version": version,
+        "species_data": data_hash(),
+        "date": datetime.now(UTC).isoformat(timespec="seconds"),
+        "case_text": walk.case.text,
+        "walk": record(walk, referee),
+    }
+
+
+def dumps(data: Json | list[Json]) -> str:
+    """JSON text, indented, ASCII, never with NaN; ends with a line end."""
+    return json.dumps(data, indent=1, allow_nan=False) + "\n"
+
+
+@dataclass(frozen=True, slots=True)
+class Stored:
+    """A stored walk read back. file: where it stood; name: of its case; walk: its record."""
+
+    file: str
+    name: str
+    version: str
+    species_data: str
+    date: str
+    case_text: str
+    walk: Json
+
+
+def is_stored(content: bytes) -> bool:
+    """Whether a file's content is meant as stored walks (JSON) rather than as a case (TOML)."""
+    start = content.lstrip()[:1]
+    return start == b"{" or (start == b"[" and content.lstrip()[1:].lstrip()[:1] == b"{")
+
+
+def read_stored(content: bytes, file: str) -> tuple[Stored, ...]:
+    """Stored walks in the content of a file.
+
+    content: bytes as read; file: the name for messages. Returns one or more.
+    Raises CaseError where the content is not JSON, not a stored walk, or of a newer format.
+    """
+    if len(content) > LARGEST_FILE:
+        raise _fault(file, "", "too large for stored walks", f"{len(content)} bytes", f"{LARGEST_FILE} bytes")
+    try:
+        data = json.loads(content, parse_constant=_no_constant)
+    except (ValueError, RecursionError) as error:
+        raise _fault(file, "", f"not a stored walk: {str(error) or 'nested too deeply'}") from error
+    found = data if isinstance(data, list) else [data]
+    if not found:
+        raise _fault(file, "", "holds no stored walk")
+    return tuple(_stored(item, file) for item in found)
+
+
+def _no_constant(text: str) -> float:
+    raise ValueError(f"{text} is not a number")
+
+
+def _stored(item: Any, file: str) -> Stored:
+    if not isinstance(item, dict) or item.get("kind") != KIND:
+        raise _fault(file, "kind", "not a stored walk", allowed=repr(KIND))
+    if item.get("format") != FORMAT:
+        raise _fault(file, "format", "not a format of stored walks that this version reads", repr(item.get("format"))[:40], "1")
+    words = ("name", "version", "species_data", "date", "case_text")
+    for key in words:
+        if not isinstance(item.get(key), str):
+            raise _fault(file, key, "not a stored walk: text is missing")
+    walk = item.get("walk")
+    if not isinstance(walk, dict):
+        raise _fault(file, "walk", "not a stored walk: this part is missing")
+    for key, kind in _PARTS.items():
+        if not isinstance(walk.get(key), kind):
+            raise _fault(file, f"walk.{key}", "not a stored walk: this part is missing or of the wrong kind")
+    _check_figures(walk, file)
+    name, version, species_data, date, case_text = (item[key] for key in words)
+    return Stored(file, name, version, species_data, date, case_text, walk)
+
+
+def _check_figures(walk: Json, file: str) -> None:
+    """Refuse a record whose figures are neither numbers nor null."""
+    for name, station in walk["stations"].items():
+        if not isinstance(station, dict):
+            raise _fault(file, f"walk.stations.{name}", "not a stored walk: no table of figures")
+    tables = {f"walk.stations.{n}": (s, _STATION_KEYS) for n, s in walk["stations"].items()}
+    for where, (table, keys) in (tables | {"walk.performance": (walk["performance"], _PERFORMANCE_KEYS)}).items():
+        for key in keys:
+            if not _is_figure(table.get(key)):
+                raise _fault(file, f"{where}.{key}", "neither a number nor null", repr(table.get(key))[:40])
+    if not all(isinstance(table, dict) for key, table in walk["case"].items() if key in SECTIONS):
+        raise _fault(file, "walk.case", "not the tables of a case")
+
+
+def _is_figure(value: Any) -> bool:
+    return value is None or (isinstance(value, int | float) and not isinstance(value, bool) and math.isfinite(value))
+
+
+def _fault(file: str, key: str, text: str, given: str = "", allowed: str = "") -> CaseError:
+    return CaseError((Fault(file, key, text, given, allowed),))
+
+
+def write(path: str | os.PathLike[str], text: str) -> None:
+    """Write a file whole or not at all: a temporary file beside it, synced, then put in its place.
+
+    A link is followed to its target; what is no regular file (a device, a pipe) is written directly.
+    Raises CaseError where the file cannot be written; an existing one is then untouched.
+    """
+    target = Path(path).resolve()
+    try:
+        if target.exists() and not stat.S_ISREG(target.stat().st_mode):
+            target.write_text(text, encoding="utf-8")
+            return
+        _replace(target, text)
+    except OSError as error:
+        raise _fault(str(path), "", f"cannot be written: {error.strerror or error}") from error
+
+
+def _replace(target: Path, text: str) -> None:
+    mode = stat.S_IMODE(target.stat().st_mode) if target.exists() else 0o666 & ~_umask()
+    handle, name = tempfile.mkstemp(dir=target.parent, prefix="." + target.name, suffix=".part")
+    try:
+        with os.fdopen(handle, "w", encoding="utf-8") as file:
+            file.write(text)
+            file.flush()
+            os.fsync(file.fileno())
+        os.chmod(name, mode)
+        os.replace(name, target)
+    except OSError:
+        os.unlink(name)
+        raise
+
+
+def _umask() -> int:
+    mask = os.umask(0)
+    os.umask(mask)
+    return mask

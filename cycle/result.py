@@ -1,0 +1,414 @@
+"""`solve` and the `Walk` it gives back: the public face of the model."""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Mapping
+from dataclasses import dataclass
+from functools import cached_property
+from typing import TYPE_CHECKING, Any
+
+import numpy as np
+
+from cycle import account, audit, emit, limits
+from cycle.account import spread, usable
+from cycle.arrays import Array, ArrayLike
+from cycle.figures import Figures, Station, shaped
+from cycle.flow import states
+from cycle.flowpath.setting import FIXED_IN_BATCH, setting
+from cycle.flowpath.stream import SOLVED, STATUS_NAMES
+from cycle.gas.state import State
+from cycle.quantities import INPUT, OUTPUTS, STATUSES
+from cycle.walk import March, Record, march
+
+if TYPE_CHECKING:
+    from cycle.case import Case
+    from cycle.gas.referee import Report
+
+PERFORMANCE = tuple(o.key for o in OUTPUTS if o.where == "performance")
+
+
+@dataclass(frozen=True, slots=True)
+class Row:
+    """One line of an account: key, label, value (float, or array in the batch's shape), dimension of its unit."""
+
+    key: str
+    label: str
+    value: Any
+    unit: str
+
+
+@dataclass(frozen=True, slots=True)
+class Limit:
+    """One limit; margin positive is safe. state: ok, near, over or "not assessed" (array of these in a batch).
+
+    restore: what gives margin back, or why it is not assessed; input: the case key to go to, or "".
+    """
+
+    key: str
+    label: str
+    actual: Any
+    allowed: Any
+    margin: Any
+    state: Any
+    unit: str
+    upper: bool
+    restore: str
+    input: str
+
+
+@dataclass(frozen=True, slots=True)
+class Process:
+    """One process of the walk: name, label, stations, figures by key."""
+
+    name: str
+    label: str
+    start: str
+    end: str
+    figures: Mapping[str, Any]
+
+
+@dataclass(frozen=True, slots=True)
+class Residual:
+    """One audited law at one place; value: the relative residual."""
+
+    law: str
+    where: str
+    value: Any
+
+
+@dataclass(frozen=True, slots=True)
+class Audit:
+    """All residuals; ok where the worst of them is below the limit 1e-9 (for a batch: of all its points)."""
+
+    ok: bool
+    rows: tuple[Residual, ...]
+    worst: Residual
+
+
+_LABELS = {
+    "inlet": "inlet", "isolator": "isolator", "gas change": "gas change", "burner": "burner", "frozen chemistry": "frozen chemistry",
+    "throat": "throat", "nozzle": "nozzle",
+}  # fmt: skip
+
+
+class Walk:
+    """A solved case: stations, processes, accounts, limits, audit. Dear figures are computed when first asked for."""
+
+    def __init__(self, case: Case, walked: March, shape: tuple[int, ...]) -> None:
+        self.case, self.march, self.shape = case, walked, shape
+
+    @property
+    def size(self) -> int:
+        """Number of points."""
+        return self.march.setting.size
+
+    def _words(self, words: list[str]) -> Any:
+        return words[0] if self.shape == () else np.array(words, dtype=object).reshape(self.shape)
+
+    @property
+    def status(self) -> Any:
+        """A key of `quantities.STATUSES`; an object array of them for a batch."""
+        return self._words([STATUS_NAMES[i] for i in self.march.status])
+
+    @property
+    def mode(self) -> Any:
+        """The mode found, a key of `quantities.MODES`; an object array for a batch."""
+        found = np.full(self.size, "none", dtype=object)
+        if self.march.chain[0] == "entry":
+            found[self.march.solved] = "rig"
+        else:
+            fast = self.march.setting.choices.get("nozzle.throat") == "none"
+            found[self.march.solved] = "scramjet" if fast else "ramjet-critical"
+        return self._words(list(found))
+
+    @property
+    def failed_process(self) -> Any:
+        """Name of the process without a solution, "" where all have one."""
+        return self._words([self.march.chain[i] if i >= 0 else "" for i in self.march.failed])
+
+    @property
+    def reason(self) -> Any:
+        """Why there is no solution, and what would restore it; "" where there is one."""
+        return self._words([self._reason(i) for i in range(self.size)])
+
+    def _reason(self, point: int) -> str:
+        code = self.march.status[point]
+        if code == SOLVED:
+            return ""
+        name = STATUS_NAMES[code]
+        words = f"{self.march.chain[self.march.failed[point]]}: {STATUSES[name]}"
+        if name == "choked" and self.shape == ():
+            label, _ = limits.heat_words(self.march.setting)
+            if np.isfinite(self._largest):
+                return f"{words}; largest {label} here {self._largest:.4g}"
+        return words
+
+    @cached_property
+    def _records(self) -> dict[str, Record]:
+        return self.march.stations()
+
+    @cached_property
+    def _totals(self) -> dict[str, State]:
+        return account.totals(self.march, tuple(self._records)) if self._records else {}
+
+    @cached_property
+    def _potentials(self) -> list[Array]:
+        return account.potentials(self.march)
+
+    @cached_property
+    def _critical(self) -> dict[str, State]:
+        found = {}
+        for name, record in self._records.items():
+            s = record.stream
+            found[name] = states.sonic(s.gas, s.total_enthalpy, s.state.entropy, s.state)
+        return found
+
+    @cached_property
+    def station(self) -> dict[str, Station]:
+        """Station name -> figures, along the stream; a station exists if any point reached it."""
+        return {name: self._station(name, record) for name, record in self._records.items()}
+
+    def _station(self, name: str, record: Record) -> Station:
+        index = record.index
+        sources = emit.station_sources(self.march, name, record)
+
+        def total(field: str) -> Callable[[], Array]:
+            return lambda: spread(self.march, index, usable(self._totals[name], getattr(self._totals[name], field)))
+
+        def critical(field: str) -> Callable[[], Array]:
+            return lambda: spread(self.march, index, usable(self._critical[name], getattr(self._critical[name], field)))
+
+        def over_critical() -> Array:
+            sonic = self._critical[name]
+            return spread(self.march, index, usable(sonic, sonic.density * sonic.sound_speed / record.stream.flux))
+
+        def potential() -> Array:
+            at = next(i for i, r in enumerate(self.march.records) if r is record)
+            return self._potentials[at] if self._potentials else np.full(self.size, np.nan)
+
+        sources |= {
+            "total_pressure": total("pressure"),
+            "total_temperature": total("temperature"),
+            "critical_pressure": critical("pressure"),
+            "critical_temperature": critical("temperature"),
+            "critical_area_ratio": over_critical,
+            "thrust_potential": potential,
+        }
+        order = {o.key: sources[o.key] for o in OUTPUTS if o.where == "station" and o.key in sources}
+
+        def fractions() -> dict[str, Array]:
+            x = emit.fractions(record.stream)
+            return {species: spread(self.march, index, x[j]) for j, species in enumerate(record.stream.gas.species)}
+
+        return Station(order, self.shape, fractions)
+
+    @cached_property
+    def processes(self) -> tuple[Process, ...]:
+        """What each component did, in order along the stream."""
+        return tuple(
+            Process(r.process.name, _LABELS[r.process.name], r.process.start, r.process.end, Figures(self._done(i), self.shape))
+            for i, r in enumerate(self.march.records)
+            if i > 0
+        )
+
+    def _done(self, position: int) -> dict[str, Callable[[], Array]]:
+        record = self.march.records[position]
+        before = self.march.records[position - 1].taken(record.index).stream.state
+        after = record.stream.state
+        names = (record.process.start, record.process.end)
+
+        def on(values: Callable[[], Array]) -> Callable[[], Array]:
+            return lambda: spread(self.march, record.index, values())
+
+        def total_ratio() -> Array:
+            first, last = self._totals[names[0]], self._totals[names[1]]
+            first = first.take(np.searchsorted(self._records[names[0]].index, record.index))
+            last = last.take(np.searchsorted(self._records[names[1]].index, record.index))
+            return usable(first, usable(last, last.pressure / first.pressure))
+
+        sources = {
+            "total_pressure_ratio": on(total_ratio),
+            "pressure_ratio": on(lambda: after.pressure / before.pressure),
+            "temperature_ratio": on(lambda: after.temperature / before.temperature),
+            "entropy_rise": on(lambda: after.entropy - before.entropy),
+        }
+        if self._has_potential:
+            sources["thrust_potential_change"] = lambda: self._potentials[position] - self._potentials[position - 1]
+        own = {k: (lambda v=v: spread(self.march, record.index, v)) for k, v in record.process.figures.items()}
+        booking = record.process.booking
+        if booking is not None:
+            own |= {k: (lambda k=k: spread(self.march, record.index, getattr(booking, k))) for k in booking.__slots__}
+        return sources | own
+
+    @property
+    def _has_potential(self) -> bool:
+        return self.march.chain[0] == "flight"
+
+    @cached_property
+    def _performance(self) -> dict[str, Array]:
+        return account.performance(self.march)
+
+    @cached_property
+    def performance(self) -> Figures:
+        """The headline figures; NaN where one has no value (`why_not` says why)."""
+        nothing = np.full(self.size, np.nan)
+
+        def source(key: str) -> Callable[[], Array]:
+            if key == "total_temperature_rise_efficiency":
+                return lambda: account.temperature_rise_efficiency(self.march, self._totals)
+            return lambda: self._performance.get(key, nothing)
+
+        return Figures({key: source(key) for key in PERFORMANCE}, self.shape)
+
+    def why_not(self, key: str) -> str:
+        """Why a figure of `performance`, or "losses" or "exergy", has no value; "" where it has one."""
+        if key in ("losses", "exergy"):
+            found = self.losses if key == "losses" else self.exergy
+            return "" if found else self._no_rows(key)
+        value = self.performance[key]
+        if np.all(np.isfinite(value)):
+            return ""
+        if self.shape == () and self.status != "solved":
+            return f"no solution: {self.status}"
+        return self._no_figure(key)
+
+    def _no_figure(self, key: str) -> str:
+        choices = self.march.setting.choices
+        if self.march.chain[0] == "entry" and key != "stream_thrust_gain":
+            return "a rig has no flight thrust"
+        if key in ("throat_area", "burner_exit_over_throat"):
+            return "the engine has no throat"
+        if key == "stream_thrust_gain":
+            return "for a rig only"
+        if key in ("equivalence_ratio", "stoichiometric_ratio") and choices["fuel.identity"] == "heating_value":
+            return "the fuel has no formula"
+        if key == "total_temperature_rise_efficiency" and not account.one_pair(self.march):
+            return "several constant-gamma pairs have no common datum"
+        return "no fuel" if np.any(self._performance["fuel_flow"] == 0.0) else "a state it needs is out of range"
+
+    def _no_rows(self, key: str) -> str:
+        if not self.march.solved.size:
+            return "no solution"
+        if self.march.chain[0] == "entry":
+            return "a rig has no flight thrust"
+        if not account.one_pair(self.march):
+            return "several constant-gamma pairs have no common datum"
+        if key == "exergy":
+            return "needs fuel.supply_pressure and the fuel's standard entropy"
+        return "a state it needs is out of range"
+
+    def _rows(self, rows: tuple[account.Row, ...]) -> tuple[Row, ...]:
+        if any(np.isnan(r.value[self.march.solved]).all() for r in rows if self.march.solved.size):
+            return ()
+        return tuple(Row(r.key, r.label, shaped(r.value, self.shape), r.unit) for r in rows)
+
+    @cached_property
+    def potentials(self) -> tuple[Row, ...]:
+        """Where the thrust potential went: the rows before the last sum to the last, the thrust."""
+        return self._rows(account.potential_rows(self.march, self._potentials))
+
+    @cached_property
+    def losses(self) -> tuple[Row, ...]:
+        """Ideal thrust, what each process lost in order, thrust; () where not assessed (`why_not("losses")`)."""
+        return self._rows(account.losses(self.march, self._totals, self._potentials))
+
+    @cached_property
+    def exergy(self) -> tuple[Row, ...]:
+        """Exergy brought, then where it went; () where not assessed (`why_not("exergy")`)."""
+        return self._rows(account.exergy(self.march))
+
+    @cached_property
+    def _largest(self) -> float:
+        key = limits.heat_key(self.march.setting)
+        bound = INPUT[key]
+        assert bound.upper is not None
+        if "3" not in self._records:
+            return np.nan
+        return limits.largest_heat(self.march, min(bound.upper, _SEARCH[key]))
+
+    def largest_heat(self) -> float:
+        """Largest value of the heat input before thermal choking, SI; NaN where nothing chokes. One point only."""
+        if self.shape != ():
+            raise ValueError("largest_heat is solved for one point")
+        return self._largest
+
+    @cached_property
+    def limits(self) -> tuple[Limit, ...]:
+        """All limits with their margins; for one point the largest heat before choking is solved for."""
+        largest = self._largest if self.shape == () else None
+        return tuple(self._limit(row) for row in limits.limits(self.march, largest))
+
+    def _limit(self, row: limits.Limit) -> Limit:
+        margin = row.margin
+        state = self._words([limits.state_of(float(m)) for m in margin])
+        unassessed = bool(np.all(np.isnan(margin)))
+        words = row.missing or "no value at this station" if unassessed else row.restore
+        return Limit(
+            row.key, row.label, shaped(row.actual, self.shape), shaped(row.allowed, self.shape), shaped(margin, self.shape), state,
+            row.unit, row.upper, words, row.input,
+        )  # fmt: skip
+
+    def emitted(self) -> audit.Emitted:
+        """The figures that the audit reads, of the solved points."""
+        return emit.emitted(self.march, self._performance)
+
+    @cached_property
+    def audit(self) -> Audit:
+        """Residuals of mass, momentum, energy, elements and second law, recomputed from the emitted figures."""
+        return self.judge(self.emitted())
+
+    def judge(self, emitted: audit.Emitted) -> Audit:
+        """The audit of given figures: of this walk's own, or of changed ones in a test of the audit."""
+        points = emit.audited_points(self.march)
+        if not points.size:
+            nothing = Residual("nothing emitted", "", 0.0)
+            return Audit(True, (), nothing)
+        found = audit.check(emitted)
+        worst = max(found, key=lambda r: float(np.max(r.value)) if np.all(np.isfinite(r.value)) else np.inf)
+        rows = tuple(Residual(r.law, r.where, shaped(spread(self.march, points, r.value), self.shape)) for r in found)
+        top = float(np.max(worst.value))
+        return Audit(top <= audit.LIMIT, rows, Residual(worst.law, worst.where, top))
+
+    def referee(self) -> Report:
+        """The states of this walk recomputed by Cantera from their (h, p) or (s, p); slow. Empty at constant gamma."""
+        from cycle.gas.referee import report
+
+        return report(self.march)
+
+
+_SEARCH = {"combustor.equivalence_ratio": 3.0, "combustor.fuel_air_ratio": 0.5, "combustor.exit_total_temperature": 5000.0}
+"""Where the search for the largest heat ends, SI."""
+
+
+def solve(case: Case, changes: Mapping[str, ArrayLike] | None = None) -> Walk:
+    """Walk a case, or a batch of it.
+
+    changes: arrays (SI) for any numeric inputs by key, broadcast together; figures of the walk then have that shape. A
+    member of an exactly-one-of group replaces the group. Raises CaseError for unknown keys and values out of bounds; a
+    point without a solution never raises: see `Walk.status`.
+    """
+    arrays: Mapping[str, Array] = {}
+    if changes:
+        from cycle.case import check_batch
+
+        case, arrays = check_batch(case, changes)
+        _same_fuel(case, arrays)
+    shape = np.broadcast_shapes(*(a.shape for a in arrays.values()))
+    size = int(np.prod(shape, dtype=int))
+    flat = {k: np.ascontiguousarray(np.broadcast_to(a, shape)).reshape(size) for k, a in arrays.items()}
+    asked = setting(case.numbers, case.choices, case.texts, case.fractions, flat, size)
+    return Walk(case, march(asked), shape)
+
+
+def _same_fuel(case: Case, arrays: Mapping[str, Array]) -> None:
+    from cycle.errors import CaseError, Fault
+
+    if case.choices["fuel.identity"] != "formula":
+        return
+    faults = [
+        Fault(case.name, key, "what a fuel of your own is cannot vary within a batch", "several values", "one value")
+        for key in FIXED_IN_BATCH
+        if key in arrays and np.ptp(arrays[key]) != 0.0
+    ]
+    if faults:
+        raise CaseError(tuple(faults))

@@ -1,0 +1,96 @@
+"""Small invented cases and the command as a real process."""
+
+from __future__ import annotations
+
+import os
+import subprocess
+import sys
+from pathlib import Path
+
+ROOT = Path(__file__).resolve().parents[2]
+
+COMMAND = (sys.executable, "-W", "error", "-m", "tui.commands")
+
+QUICK = """\
+format = 1
+title = "invented constant-gamma scramjet"
+
+[flight]
+mach = 8.0
+dynamic_pressure = "50 kPa"
+
+[gas]
+model = "constant-gamma"
+fuel_energy = "neglected"
+
+[inlet]
+kinetic_energy_efficiency = 0.975
+temperature_ratio = 4.0
+
+[fuel]
+heating_value = "120 MJ/kg"
+
+[combustor]
+fuel_air_ratio = 0.010
+
+[nozzle]
+ideal = true
+"""
+"""Solves in an instant and needs no thermochemistry."""
+
+CHOKED = QUICK.replace("fuel_air_ratio = 0.010", "fuel_air_ratio = 0.06")
+HOT = """\
+format = 1
+title = "invented hydrogen scramjet"
+
+[flight]
+mach = 8.0
+dynamic_pressure = "50 kPa"
+
+[inlet]
+kinetic_energy_efficiency = 0.975
+pressure_ratio = 60.0
+
+[fuel]
+name = "hydrogen"
+supply_pressure = "5 MPa"
+
+[combustor]
+process = "constant-pressure"
+equivalence_ratio = 0.6
+burnt_fraction = 0.92
+
+[nozzle]
+exit_area_over_capture = 1.5
+velocity_coefficient = 0.985
+
+[engine]
+capture_area = "0.4 m^2"
+"""
+
+
+def environment(folder: Path, **more: str) -> dict[str, str]:
+    """The environment of a child: the package found from anywhere, its state in `folder`."""
+    kept = {k: v for k, v in os.environ.items() if k not in ("NO_COLOR", "TERM", "COLUMNS")}
+    return {**kept, "PYTHONPATH": str(ROOT), "XDG_STATE_HOME": str(folder / "state"), "COLUMNS": "80", **more}
+
+
+def run(folder: Path, *arguments: str, text: str | None = None, **env: str) -> subprocess.CompletedProcess[str]:
+    """The command as a process in `folder`, with `text` on standard input (a pipe, never a terminal)."""
+    return subprocess.run(
+        [*COMMAND, *arguments],
+        input=text or "",
+        capture_output=True,
+        text=True,
+        cwd=folder,
+        env=environment(folder, **env),
+        timeout=60,
+        check=False,
+    )
+
+
+def written(folder: Path, **cases: str) -> Path:
+    """Case files NAME.toml in `folder`; returns the folder."""
+    for name, text in cases.items():
+        (folder / f"{name}.toml").write_text(text, encoding="utf-8")
+    return folder

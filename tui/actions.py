@@ -1,0 +1,55 @@
+"""Every action of the main screen, declared once: bindings, the line of keys and the help screen follow from here."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+
+@dataclass(frozen=True, slots=True)
+class Action:
+    """One thing a user can ask for.
+
+    name: the handler is `do_<name>` of the screen, and the id that a keymap uses; keys: names of keys; shown: the keys
+    as printed; label: a word or two for the line of keys, "" to leave it out there; help: one line.
+    """
+
+    name: str
+    keys: tuple[str, ...]
+    shown: str
+    label: str
+    help: str
+    group: str
+
+
+WALK, EDIT, COMPARE, FILE, PROGRAM = "walking", "editing", "comparing", "case file", "program"
+
+ACTIONS: tuple[Action, ...] = (
+    Action("upstream", ("left",), "left", "", "one station upstream, in the table and in the inputs", WALK),
+    Action("downstream", ("right",), "right", "", "one station downstream, in the table and in the inputs", WALK),
+    Action("up", ("up",), "up", "", "the row above, or the input before", WALK),
+    Action("down", ("down",), "down", "", "the row below, or the next input", WALK),
+    Action("page_up", ("pageup",), "PgUp", "", "rows of the table a page up", WALK),
+    Action("page_down", ("pagedown",), "PgDn", "", "rows of the table a page down", WALK),
+    Action("first", ("home",), "Home", "", "the first station", WALK),
+    Action("last", ("end",), "End", "", "the last station", WALK),
+    Action("focus", ("tab", "shift+tab"), "Tab", "inputs", "between the table and the inputs of the component in hand", WALK),
+    Action("edit", ("enter",), "Enter", "edit", "open the input in hand; a choice goes on to its next one", EDIT),
+    Action("cycle", ("space",), "Space", "", "next choice of the input in hand", EDIT),
+    Action("more", ("plus", "equals_sign"), "+", "", "one step up, by the step declared for the input", EDIT),
+    Action("less", ("minus",), "-", "step", "one step down", EDIT),
+    Action("ways", ("o",), "o", "other way", "say the same by another quantity; the walk keeps its value", EDIT),
+    Action("default", ("delete",), "Del", "", "take the value back: the default holds, or none", EDIT),
+    Action("undo", ("u",), "u", "undo", "take back the last edit, without end", EDIT),
+    Action("redo", ("U", "shift+u"), "U", "redo", "bring back an edit taken back", EDIT),
+    Action("pin", ("p",), "p", "pin", "pin this walk: changes are shown against it", COMPARE),
+    Action("view", ("v",), "v", "change", "cells as figures, as change against the pin, as change in percent", COMPARE),
+    Action("why", ("w",), "w", "limits", "limits by margin and what restores them, audit, referee, thrust", COMPARE),
+    Action("referee", ("r",), "r", "referee", "ask an independent equilibrium code about the states", COMPARE),
+    Action("units", ("t",), "t", "units", "SI or US customary", COMPARE),
+    Action("save", ("s",), "s", "save", "save the case; comments and order of the file stay", FILE),
+    Action("save_as", ("S", "shift+s"), "S", "", "save under another name", FILE),
+    Action("redraw", ("ctrl+l",), "Ctrl-L", "", "paint the whole screen afresh", PROGRAM),
+    Action("suspend", ("ctrl+z",), "Ctrl-Z", "", "suspend to the shell; fg comes back", PROGRAM),
+    Action("help", ("question_mark", "f1"), "?", "keys", "this list of keys", PROGRAM),
+    Action("leave", ("q", "ctrl+q"), "q", "leave", "leave; unsaved work is kept and offered next time", PROGRAM),
+)  # fmt: skip

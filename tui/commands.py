@@ -1,0 +1,265 @@
+"""The batch command: what a line typed in a shell does, and with which exit status it ends.
+
+Only what reads the command line is imported at the top, so that help and version come at once.
+"""
+
+from __future__ import annotations
+
+import argparse
+import difflib
+import os
+import sys
+from collections.abc import Callable, Iterable, Sequence
+from typing import NoReturn
+
+from cycle.errors import CaseError, DuctwalkError, Fault
+from tui import crash
+from tui.output import STANDARD_INPUT, emit, load_case, prepare_streams, shipped_case, tell
+
+PROGRAM = "ductwalk"
+BAD_INPUT, INTERRUPTED = 2, 130
+LATER = ("study", "optimise", "report", "fix-geometry")
+"""Commands that are planned and refused in this version."""
+
+_CASE = "case file (TOML), or - for standard input"
+
+
+class UsageError(DuctwalkError):
+    """The command line cannot be understood; its text says why and what comes near."""
+
+
+class _Parser(argparse.ArgumentParser):
+    """A parser whose faults are one line and say which option was probably meant."""
+
+    def __init__(self, **options: object) -> None:
+        super().__init__(**{**options, "allow_abbrev": False})  # type: ignore[arg-type]
+
+    def error(self, message: str) -> NoReturn:
+        raise UsageError(f"{self.prog}: {message}; see {self.prog} --help")
+
+    def options(self) -> list[str]:
+        """Every option of this parser."""
+        return [name for action in self._actions for name in action.option_strings]
+
+
+def _one_of(*names: str) -> Callable[[str], str]:
+    def read(text: str) -> str:
+        if text in names:
+            return text
+        raise argparse.ArgumentTypeError(f"{text!r} is none of {', '.join(names)}{_near(text, names)}")
+
+    return read
+
+
+def _near(given: str, names: Iterable[str]) -> str:
+    found = difflib.get_close_matches(given[:80], list(names), 1, 0.6)
+    return f"; did you mean {found[0]}?" if found else ""
+
+
+def _units(parser: argparse.ArgumentParser) -> None:
+    parser.add_argument("--units", type=_one_of("si", "us"), default="si", metavar="si|us", help="units of the output")
+
+
+def _solve_options(parser: argparse.ArgumentParser) -> None:
+    parser.add_argument("cases", nargs="+", metavar="CASE", help=_CASE)
+    parser.add_argument(
+        "--set", action="append", default=[], metavar="SECTION.KEY=VALUE",
+        help="change an input, units allowed; takes the place of other ways to say the same; repeatable",
+    )  # fmt: skip
+    forms = ("text", "json", "csv", "markdown")
+    parser.add_argument("--format", type=_one_of(*forms), default="text", metavar="|".join(forms), help="form of the output")
+    _units(parser)
+    parser.add_argument("--referee", action="store_true", help="recompute the states independently (slow) and show the deviation")
+    parser.add_argument("-o", dest="output", metavar="FILE", help="store the walks with case, version and species-data hash")
+
+
+def _check_options(parser: argparse.ArgumentParser) -> None:
+    parser.add_argument("cases", nargs="+", metavar="CASE", help=_CASE)
+
+
+def _new_options(parser: argparse.ArgumentParser) -> None:
+    parser.add_argument("--rig", action="store_true", help="a direct-connect rig instead of a flight engine")
+    parser.add_argument("-o", dest="output", metavar="FILE", help="write a new file instead of standard output")
+
+
+def _schema_options(parser: argparse.ArgumentParser) -> None:
+    """`schema` has no options."""
+
+
+def _explain_options(parser: argparse.ArgumentParser) -> None:
+    parser.add_argument("quantity", metavar="QUANTITY", help="long name, symbol or label of an output or input")
+    parser.add_argument("case", nargs="?", metavar="CASE", help="case whose numbers go into the equation")
+
+
+def _compare_options(parser: argparse.ArgumentParser) -> None:
+    parser.add_argument("cases", nargs="+", metavar="CASE", help="case files or stored walks; the first is the reference")
+    _units(parser)
+
+
+def _solve(options: argparse.Namespace) -> int:
+    from tui.solve import run
+
+    return run(options)
+
+
+def _check(options: argparse.Namespace) -> int:
+    status = 0
+    for name in options.cases:
+        try:
+            load_case(name)
+        except CaseError as error:
+            tell(str(error))
+            status = BAD_INPUT
+        else:
+            emit(f"{name}: ok\n")
+    return status
+
+
+def _new(options: argparse.Namespace) -> int:
+    from cycle.case import template
+
+    text = template("entry" if options.rig else "flight")
+    if not options.output:
+        emit(text)
+        return 0
+    try:
+        with open(options.output, "x", encoding="utf-8") as file:
+            file.write(text)
+    except OSError as error:
+        raise CaseError((Fault(options.output, "", f"cannot be written: {error.strerror}"),)) from error
+    tell(f"written: {options.output}")
+    return 0
+
+
+def _schema(options: argparse.Namespace) -> int:
+    from cycle.case import json_schema
+    from cycle.record import dumps
+
+    emit(dumps(json_schema()))
+    return 0
+
+
+def _explain(options: argparse.Namespace) -> int:
+    from tui.explaining import run
+
+    return run(options)
+
+
+def _compare(options: argparse.Namespace) -> int:
+    from tui.comparing import run
+
+    return run(options)
+
+
+Options = Callable[[argparse.ArgumentParser], None]
+COMMANDS: dict[str, tuple[str, Options, Callable[[argparse.Namespace], int]]] = {
+    "solve": ("solve cases and print their walks", _solve_options, _solve),
+    "compare": ("set cases or stored walks side by side", _compare_options, _compare),
+    "explain": ("meaning, equation and source of a quantity, with a case's numbers", _explain_options, _explain),
+    "check": ("validate cases without solving them", _check_options, _check),
+    "new": ("print a new case with every key explained", _new_options, _new),
+    "schema": ("print the JSON Schema of case files", _schema_options, _schema),
+}
+"""Command -> its line of help, its options, what it does."""
+
+_EPILOG = """\
+exit status: 0 solved; 1 internal error; 2 bad input; 3 no solution;
+4 audit failed; for several cases the highest."""
+
+
+def parser() -> _Parser:
+    """The parser of the whole command line."""
+    top = _Parser(
+        prog=PROGRAM,
+        usage=f"{PROGRAM} [CASE]\n       {PROGRAM} COMMAND ...",
+        description="Ramjet and scramjet cycle analysis. With a CASE or nothing the screen opens.",
+        epilog=_EPILOG,
+        formatter_class=argparse.RawDescriptionHelpFormatter,
+    )
+    top.add_argument("--version", action="store_true", help="print the version")
+    commands = top.add_subparsers(dest="command", metavar="COMMAND", title="commands", prog=PROGRAM, parser_class=_Parser)
+    for name, (line, options, _) in COMMANDS.items():
+        options(commands.add_parser(name, help=line, description=line[0].upper() + line[1:] + "."))
+    return top
+
+
+def _version() -> int:
+    import cycle
+
+    emit(f"{PROGRAM} {cycle.__version__}\n")
+    return 0
+
+
+def _parsed(arguments: Sequence[str]) -> int:
+    top = parser()
+    options, extra = top.parse_known_args(arguments)
+    if extra:
+        known = _options_of(top, options.command)
+        raise UsageError(f"{PROGRAM}: {extra[0]!r} is not understood{_near(extra[0].split('=')[0], known)}; see {PROGRAM} --help")
+    if options.version:
+        return _version()
+    return COMMANDS[options.command][2](options)
+
+
+def _options_of(top: _Parser, command: str | None) -> list[str]:
+    if command is None:
+        return top.options()
+    own = _Parser(prog=command)
+    COMMANDS[command][1](own)
+    return own.options()
+
+
+def _screen(name: str | None) -> int:
+    """Open the screen on a case, or print the walk where there is no terminal to draw on."""
+    path = name or shipped_case()
+    if _has_terminal() and path != STANDARD_INPUT:
+        from tui.app import run
+
+        return run(path)
+    tell(f"no screen here; to open it run '{PROGRAM} {path}' in a terminal (TERM other than dumb)")
+    return _parsed(["solve", path])
+
+
+def _has_terminal() -> bool:
+    both = all(stream is not None and stream.isatty() for stream in (sys.stdin, sys.stdout))
+    return both and os.environ.get("TERM", "") not in ("dumb", "unknown")
+
+
+def _dispatch(arguments: Sequence[str]) -> int:
+    first = arguments[0] if arguments else None
+    if first in LATER:
+        raise UsageError(f"{PROGRAM}: {first} is not in this version")
+    if first in COMMANDS or (first is not None and first.startswith("-") and first != STANDARD_INPUT):
+        return _parsed(arguments)
+    if first is None or (len(arguments) == 1 and _is_path(first)):
+        return _screen(first)
+    if _is_path(first):
+        raise UsageError(f"{PROGRAM}: the screen takes one case and no options; for options use {PROGRAM} solve {first} ...")
+    raise UsageError(f"{PROGRAM}: no command or file is called {first!r}{_near(first, [*COMMANDS, *LATER])}; see {PROGRAM} --help")
+
+
+def _is_path(name: str) -> bool:
+    return name == STANDARD_INPUT or name.endswith(".toml") or os.sep in name or os.path.exists(name)
+
+
+def main(argv: Sequence[str] | None = None) -> int:
+    """Run the command line.
+
+    argv: the arguments, those of the process where None. Returns the exit status: 0 solved, 2 bad input, 3 no solution,
+    4 audit failed, 130 interrupted. A defect raises; as a process it leaves a crash file, one line, and status 1.
+    """
+    if argv is None:
+        crash.install()
+    prepare_streams()
+    try:
+        return _dispatch(sys.argv[1:] if argv is None else argv)
+    except DuctwalkError as error:
+        tell(str(error))
+        return BAD_INPUT
+    except KeyboardInterrupt:
+        tell("interrupted")
+        return INTERRUPTED
+
+
+if __name__ == "__main__":
+    sys.exit(main())

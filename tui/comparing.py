@@ -1,0 +1,117 @@
+"""The command `compare`: cases and stored walks side by side."""
+
+from __future__ import annotations
+
+import argparse
+import math
+from collections.abc import Iterable
+
+import cycle
+from cycle.case import loads
+from cycle.compare import Comparison, Figure, Setting, Side, compare, station_names
+from cycle.errors import CaseError, DuctwalkError
+from cycle.gas.species import data_hash
+from cycle.quantities import Output
+from cycle.record import LARGEST_FILE, is_stored, read_stored, record
+from cycle.units import format_number
+from tui.output import emit, read_content, tell
+from tui.solve import AUDIT_FAILED, BAD_INPUT, NO_SOLUTION, SOLVED
+from tui.tables import Block, Heading, Lines, Table, as_text
+from tui.text import CAUTION, figure, input_text, named, unit_label
+
+_LETTERS = "ABCDEFGHIJKLMNOPQRSTUVWXYZ"
+LEAST_CHANGE = 5e-6
+"""Relative change that a table of percentages shows as more than zero."""
+
+
+def run(options: argparse.Namespace) -> int:
+    """Compare the walks of the command line; returns the highest exit status of them."""
+    sides: list[Side] = []
+    faulty = False
+    for name in options.cases:
+        try:
+            sides += read_sides(name)
+        except CaseError as error:
+            tell(str(error))
+            faulty = True
+    if faulty:
+        return BAD_INPUT
+    if not 2 <= len(sides) <= len(_LETTERS):
+        raise DuctwalkError(f"compare takes 2 to {len(_LETTERS)} walks: {len(sides)} given")
+    emit(as_text(comparison_blocks(compare(sides), options.units)))
+    return max(_status(side) for side in sides)
+
+
+def read_sides(name: str) -> list[Side]:
+    """The walks of a file: stored ones as they are, a case after solving it. Raises CaseError."""
+    content = read_content(name, LARGEST_FILE)
+    if is_stored(content):
+        return [Side(f"{s.name} ({name})", s.walk, s.version, s.species_data) for s in read_stored(content, name)]
+    walk = cycle.solve(loads(content, name))
+    return [Side(name, record(walk), cycle.__version__, data_hash())]
+
+
+def _status(side: Side) -> int:
+    if side.walk["status"] != "solved":
+        return NO_SOLUTION
+    return SOLVED if side.walk["audit"].get("ok") is True else AUDIT_FAILED
+
+
+def comparison_blocks(found: Comparison, system: str) -> list[Block]:
+    """The comparison as blocks. system: "si" or "us"."""
+    letters = _LETTERS[: len(found.sides)]
+    blocks: list[Block] = [Heading("Comparison", 1), Table(("", "walk", "title", "mode"), tuple(_legend(found)), left=(1, 2, 3))]
+    blocks += [Lines(found.notes)] if found.notes else []
+    blocks += [Heading("Inputs that differ"), _settings(found.settings, letters, system)]
+    blocks += [Heading("Performance"), _headline(found.headline, letters, system)]
+    for i in range(1, len(found.sides)):
+        blocks += [Heading(f"Stations: change from A to {letters[i]}, %"), _station_changes(found, i)]
+    return [*blocks, Heading("Caution"), Lines((CAUTION,))]
+
+
+def _legend(found: Comparison) -> Iterable[tuple[str, ...]]:
+    for letter, side in zip(_LETTERS, found.sides, strict=False):
+        mode = side.walk["mode"] if side.walk["status"] == "solved" else side.walk["status"]
+        yield letter, side.name, str(side.walk["case"].get("title", "")), mode
+
+
+def _settings(settings: Iterable[Setting], letters: str, system: str) -> Block:
+    rows = []
+    for setting in settings:
+        entry = setting.input
+        name = named(entry.key, entry.unit, system, entry.key) if entry.kind == "number" else entry.key
+        rows.append((name, *(input_text(entry, value, system) for value in setting.values)))
+    return Table(("", *letters), tuple(rows)) if rows else Lines(("none",))
+
+
+def _headline(figures: Iterable[Figure], letters: str, system: str) -> Block:
+    heads = [head for letter in letters for head in ((letter,) if letter == "A" else (letter, f"{letter} - A, %"))]
+    rows = []
+    for row in figures:
+        cells = [cell for i in range(len(letters)) for cell in _cells(row, i, system)]
+        rows.append((row.output.label, unit_label(row.output.unit, system, row.output.key), *cells))
+    return Table(("", "unit", *heads), tuple(rows), left=(1,))
+
+
+def _cells(row: Figure, i: int, system: str) -> tuple[str, ...]:
+    value = figure(row.values[i], row.output.unit, system, row.output.key)
+    return (value,) if i == 0 else (value, percent(row.changes()[i]))
+
+
+def _station_changes(found: Comparison, i: int) -> Block:
+    names = station_names(found.sides)
+    table: dict[Output, dict[str, float]] = {}
+    for row in found.stations:
+        table.setdefault(row.output, {})[row.station] = row.changes()[i]
+    rows = [(o.label, *(percent(changes.get(n, math.nan)) for n in names)) for o, changes in table.items()]
+    shown = tuple(row for row in rows if any(cell not in ("-", "0") for cell in row[1:]))
+    return Table(("station", *names), shown) if shown else Lines(("none",))
+
+
+def percent(change: float) -> str:
+    """A relative change in percent with its sign; "0" below what is worth showing, "-" for NaN."""
+    if math.isnan(change):
+        return "-"
+    if abs(change) < LEAST_CHANGE:
+        return "0"
+    return ("+" if change > 0 else "") + format_number(100.0 * change, 3)

@@ -1,0 +1,197 @@
+"""What the screen needs of a solved walk, taken out in the worker thread as plain numbers.
+
+Some figures of a station are computed when first asked for; asking here keeps that work off the thread that paints.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Callable, Mapping
+from dataclasses import dataclass
+from typing import TYPE_CHECKING, Any
+
+from cycle.quantities import OUTPUTS
+
+if TYPE_CHECKING:
+    from cycle.case import Case
+
+STATION_KEYS = tuple(o.key for o in OUTPUTS if o.where == "station")
+PERFORMANCE_KEYS = tuple(o.key for o in OUTPUTS if o.where == "performance")
+STATIONS = ("0", "2", "3", "4", "5", "10")
+NAN = float("nan")
+
+
+@dataclass(frozen=True, slots=True)
+class Passage:
+    """One process of the walk: name, label, station where it starts and ends, and its figures in SI."""
+
+    name: str
+    label: str
+    start: str
+    end: str
+    figures: Mapping[str, float]
+
+
+@dataclass(frozen=True, slots=True)
+class Share:
+    """One row of an account: label, value in SI, dimension."""
+
+    label: str
+    value: float
+    unit: str
+
+
+@dataclass(frozen=True, slots=True)
+class Margin:
+    """One limit: label, state ("ok", "near", "over", "not assessed"), relative margin (positive is safe), actual and
+    allowed value in SI, their dimension, what restores it, and the input to go to."""
+
+    label: str
+    state: str
+    margin: float
+    actual: float
+    allowed: float
+    unit: str
+    restore: str
+    input: str
+
+
+@dataclass(frozen=True, slots=True)
+class Figures:
+    """A walk of one point as plain numbers (SI, nan where there is no value). altitude: that of the ambient pressure
+    in the standard atmosphere, m. `walk` is the walk itself, for the referee and for later questions."""
+
+    status: str
+    mode: str
+    reason: str
+    failed: str
+    stations: Mapping[str, Mapping[str, float]]
+    fractions: Mapping[str, Mapping[str, float]]
+    performance: Mapping[str, float]
+    why_not: Mapping[str, str]
+    passages: tuple[Passage, ...]
+    potentials: tuple[Share, ...]
+    limits: tuple[Margin, ...]
+    audit_ok: bool
+    audit: str
+    altitude: float
+    walk: Any
+
+    @property
+    def solved(self) -> bool:
+        """Whether every process has a solution."""
+        return self.status == "solved"
+
+    def at(self, station: str, key: str) -> float:
+        """A figure of a station, nan where there is none."""
+        return self.stations.get(station, {}).get(key, NAN)
+
+
+def _audit_words(walk: Any) -> str:
+    worst = walk.audit.worst
+    return f"worst residual {worst.value:.1e}, {worst.law}, {worst.where}" if worst is not None else "nothing to audit"
+
+
+def _altitude(pressure: float) -> float:
+    from cycle.atmosphere import altitude_of_pressure
+
+    return float(altitude_of_pressure(pressure))
+
+
+def take(walk: Any) -> Figures:
+    """Plain numbers of a walk of one point.
+
+    Parameters: walk, a `cycle.Walk` of shape (). Returns: `Figures`.
+    """
+    stations = {s: {k: float(getattr(walk.station[s], k)) for k in STATION_KEYS} for s in STATIONS if s in walk.station}
+    performance = {k: float(getattr(walk.performance, k)) for k in PERFORMANCE_KEYS}
+    return Figures(
+        status=str(walk.status),
+        mode=str(walk.mode),
+        reason=str(walk.reason),
+        failed=str(walk.failed_process),
+        stations=stations,
+        fractions={s: {x: float(v) for x, v in walk.station[s].mole_fractions.items()} for s in stations},
+        performance=performance,
+        why_not={k: str(walk.why_not(k)) for k, v in performance.items() if v != v},
+        passages=tuple(
+            Passage(p.name, p.label, p.start, p.end, {k: float(v) for k, v in p.figures.items()}) for p in walk.processes
+        ),
+        potentials=tuple(Share(r.label, float(r.value), r.unit) for r in walk.potentials),
+        limits=tuple(
+            Margin(m.label, m.state, float(m.margin), float(m.actual), float(m.allowed), m.unit, m.restore, m.input)
+            for m in walk.limits
+        ),
+        audit_ok=bool(walk.audit.ok),
+        audit=_audit_words(walk),
+        altitude=_altitude(stations.get("0", {}).get("pressure", NAN)),
+        walk=walk,
+    )
+
+
+def solve(case: Case) -> Figures:
+    """Solve a case and take its figures. Call it in the worker thread: the model is imported here."""
+    import cycle
+
+    return take(cycle.solve(case))
+
+
+def referee(figures: Figures) -> str:
+    """The referee's words on a walk. Slow; call it in the worker thread.
+
+    Returns: one line: the largest disagreement, or why there is none to tell.
+    """
+    opinion = figures.walk.referee()
+    return str(opinion.words) if opinion else "has no say at constant gamma"
+
+
+Present = Callable[[Figures], float]
+
+
+def _first(key: str) -> Present:
+    return lambda f: f.at("0", key)
+
+
+def _over(key: str, end: str, start: str) -> Present:
+    return lambda f: f.at(end, key) / start_value if (start_value := f.at(start, key)) else NAN
+
+
+def _inverse_area(f: Figures) -> float:
+    ratio = f.at("2", "area_ratio")
+    return 1.0 / ratio if ratio else NAN
+
+
+def _entry(key: str) -> Present:
+    return lambda f: next(iter(f.stations.values()), {}).get(key, NAN)
+
+
+def _exit_area_ratio(f: Figures) -> float:
+    inlet = f.at("5", "area") if "5" in f.stations else f.at("4", "area")
+    return f.at("10", "area") / inlet if inlet else NAN
+
+
+PRESENT: dict[str, Present] = {
+    "flight.mach": _first("mach"),
+    "flight.altitude": lambda f: f.altitude,
+    "flight.speed": _first("velocity"),
+    "flight.dynamic_pressure": _first("dynamic_pressure"),
+    "flight.pressure": _first("pressure"),
+    "flight.temperature": _first("temperature"),
+    "inlet.temperature_ratio": _over("temperature", "2", "0"),
+    "inlet.pressure_ratio": _over("pressure", "2", "0"),
+    "inlet.total_pressure_recovery": _over("total_pressure", "2", "0"),
+    "inlet.exit_mach": lambda f: f.at("2", "mach"),
+    "inlet.contraction_ratio": _inverse_area,
+    "combustor.equivalence_ratio": lambda f: f.performance["equivalence_ratio"],
+    "combustor.fuel_air_ratio": lambda f: f.performance["fuel_air_ratio"],
+    "combustor.exit_total_temperature": lambda f: f.at("4", "total_temperature"),
+    "combustor.exit_area_ratio": _over("area", "4", "3"),
+    "combustor.exit_mach": lambda f: f.at("4", "mach"),
+    "combustor.exit_area_over_throat": lambda f: f.performance["burner_exit_over_throat"],
+    "nozzle.exit_area_over_capture": lambda f: f.at("10", "area_ratio") * f.performance["captured_mass_fraction"],
+    "nozzle.exit_pressure": lambda f: f.at("10", "pressure"),
+    "nozzle.exit_area_ratio": _exit_area_ratio,
+    "fuel.heating_value": lambda f: f.performance["heating_value"],
+    "entry.area": _entry("area"),
+    "entry.mass_flow": _entry("mass_flow"),
+}
+"""Input key -> its value in a solved walk, where the walk knows it; it fills another way of saying the same."""

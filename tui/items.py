@@ -1,0 +1,216 @@
+"""The inputs of the component in hand: which ones a station owns, how each value is written, what an edit of one is."""
+
+from __future__ import annotations
+
+import re
+from dataclasses import dataclass
+from typing import TYPE_CHECKING
+
+from cycle.quantities import GROUP, INPUT, Group, Input
+from cycle.units import format_number, respell, show
+from tui.session import Change, Entry, Session, columns_of
+
+if TYPE_CHECKING:
+    from cycle.case import Case, Stated
+
+OWNED: dict[str, tuple[str, ...]] = {
+    "2": ("inlet", "isolator"),
+    "3": ("inlet", "isolator"),
+    "4": ("fuel", "combustor"),
+    "5": ("nozzle",),
+    "10": ("nozzle",),
+}
+"""Station -> tables of the case file that belong to the component that ends there. The first station owns the rest."""
+
+FIRST = ("flight", "entry", "air", "gas", "engine")
+LIMITS = {
+    "limits.ignition_temperature": "4",
+    "limits.ignition_pressure": "4",
+    "limits.gas_temperature": "4",
+    "limits.nozzle_separation": "10",
+}
+"""Thresholds of limits -> the station where they bind; the others belong to the first station."""
+
+_NUMBER = re.compile(r"\s*([-+]?(?:\d+\.?\d*|\.\d+)(?:[eE][-+]?\d+)?)\s*(.*?)\s*\Z", re.DOTALL)
+
+
+@dataclass(frozen=True, slots=True)
+class Item:
+    """One line of the inputs. key: the input's key, or a group's name where none of its ways is given; group: the name
+    of the group it belongs to; written: its value as shown; default: whether the value is one."""
+
+    key: str
+    label: str
+    written: str
+    default: bool
+    group: str | None = None
+    input: Input | None = None
+    value: object = None
+    spelled: object = None
+
+
+def _owner(key: str, columns: tuple[str, ...]) -> tuple[str, ...]:
+    """Stations whose inputs hold `key`."""
+    section = key.split(".")[0]
+    if section in FIRST:
+        return columns[:1]
+    if section == "limits":
+        home = LIMITS.get(key, columns[0])
+        return (home,) if home in columns else columns[-1:]
+    owners = tuple(s for s in columns[1:] if section in OWNED[s])
+    return owners or columns[-1:]
+
+
+def written(stated: Stated, system: str) -> str:
+    """A value as the user wrote it, else in the display unit; "-" where an optional one is absent."""
+    value = stated.value
+    if stated.input.kind == "fractions":
+        return f"given, {len(value)} species" if isinstance(value, dict) and value else "standard"
+    if value is None:
+        return "-"
+    if isinstance(value, bool):
+        return "yes" if value else "no"
+    if not isinstance(value, int | float):
+        return str(value)
+    if system == "si" and isinstance(stated.spelled, str):
+        return " ".join(stated.spelled.split())
+    shown, unit = show(float(value), stated.input.unit, system, stated.input.key)
+    return f"{format_number(shown, 6)} {unit}".strip()
+
+
+def _of_group(case: Case, group: Group) -> Item | None:
+    """A line for a group none of whose ways is given, so that a way can be chosen."""
+    tag = str(case.value(group.name))
+    if tag in (m.tag for m in group.members):
+        return None
+    return Item(group.name, group.meaning, tag, True, group.name)
+
+
+def items(session: Session) -> tuple[Item, ...]:
+    """The inputs that belong to the station under the cursor, in declared order; () before the case is read."""
+    case = session.case
+    if case is None:
+        return ()
+    columns = columns_of(case)
+    out = [
+        Item(s.input.key, s.input.label, written(s, session.system), not s.given, s.group, s.input, s.value, s.spelled)
+        for s in case.inputs()
+        if session.station in _owner(s.input.key, columns)
+    ]
+    for group in case.groups():
+        if session.station in _owner(group.name, columns) and (extra := _of_group(case, group)) is not None:
+            out.append(extra)
+    return tuple(out)
+
+
+def in_hand(session: Session) -> Item | None:
+    """The input in hand at the station under the cursor: the one last chosen there, else the first."""
+    here = items(session)
+    chosen = session.inputs.get(session.station)
+    return next((i for i in here if i.key == chosen), here[0] if here else None)
+
+
+def unit_of(text: str) -> str:
+    """The unit in a written value, "" where there is none."""
+    match = _NUMBER.match(text)
+    return match.group(2) if match else ""
+
+
+def entry_for(item: Item, session: Session) -> Entry:
+    """A field open on an input, its present value in it."""
+    spec = item.input
+    if spec is not None and spec.kind == "fractions":
+        given = item.value if isinstance(item.value, dict) else {}
+        text = ", ".join(f"{name} {share:.6g}" for name, share in given.items())
+    else:
+        text = "" if item.written == "-" else item.written
+    return Entry(item.key, text, len(text), bare_unit(item, session.system))
+
+
+def bare_unit(item: Item, system: str) -> str:
+    """The unit that a bare number typed into the field of an input is in: the one it is shown in."""
+    if item.input is None or item.input.kind != "number":
+        return ""
+    if item.written != "-":
+        return unit_of(item.written)
+    return show(1.0, item.input.unit, system, item.key)[1]
+
+
+def typed(entry: Entry) -> object:
+    """What a field says, as a case takes it: None where it is empty, a bare number in the unit shown, else the text."""
+    text = " ".join(entry.text.split())
+    if not text:
+        return None
+    kind = INPUT[entry.key].kind
+    if kind == "fractions":
+        return _fractions(text)
+    match = _NUMBER.match(text) if kind == "number" else None
+    if match is None or match.group(2):
+        return text
+    return f"{text} {entry.unit}" if entry.unit else float(text)
+
+
+def _fractions(text: str) -> object:
+    """Mole fractions from "N2 0.7, O2 0.3"; the text itself where it is not that, for the case to refuse."""
+    pairs = [part.replace("=", " ").split() for part in text.split(",")]
+    try:
+        return {name: float(share) for name, share in pairs}
+    except ValueError:
+        return text
+
+
+def change_of(entry: Entry) -> Change:
+    """The edit that committing a field asks for."""
+    value = typed(entry)
+    if entry.switch is not None:
+        return {"switch": [*entry.switch, value]}
+    return {"set": {entry.key: value}}
+
+
+def stepped(item: Item, sign: int) -> tuple[float | str | None, str]:
+    """The value one declared step on, held at a bound.
+
+    Parameters: item, a number with a value; sign, +1 or -1. Returns: (new value in SI, or as text in the user's own
+    unit; None at a bound), (words for a bound).
+    """
+    spec = item.input
+    assert spec is not None and isinstance(item.value, int | float)
+    old = float(item.value)
+    new = float(f"{old + sign * spec.step:.12g}")
+    words = ""
+    if spec.upper is not None and new > spec.upper:
+        new, words = spec.upper, "at its upper bound"
+    if spec.lower is not None and new < spec.lower:
+        new, words = spec.lower, "at its lower bound"
+    outside = (spec.above is not None and new <= spec.above) or (spec.below is not None and new >= spec.below)
+    if outside or new == old:
+        return None, words or "a step further is out of bounds"
+    like = respell(new, item.spelled, spec.unit)
+    match = _NUMBER.match(like) if isinstance(like, str) and not words else None
+    return f"{float(match.group(1)):.6g} {match.group(2)}" if match else new, words
+
+
+def next_choice(item: Item, sign: int) -> str:
+    """The choice after (or before) the present one, around the end."""
+    spec = item.input
+    assert spec is not None
+    present = spec.choices.index(str(item.value)) if item.value in spec.choices else -1
+    return spec.choices[(present + sign) % len(spec.choices)]
+
+
+def way_label(group: str, tag: str) -> str:
+    """Words for one way of a group: the labels of its inputs, or the tag of a default that has none."""
+    member = next((m for m in GROUP[group].members if m.tag == tag), None)
+    return " and ".join(INPUT[k].label for k in member.keys) if member else tag.replace("-", " ")
+
+
+def bounds(spec: Input, system: str) -> str:
+    """Bounds and step of a number in words, in the display unit."""
+    if spec.kind != "number":
+        return ""
+    low = spec.lower if spec.lower is not None else spec.above
+    high = spec.upper if spec.upper is not None else spec.below
+    shown = [format_number(show(v, spec.unit, system, spec.key)[0], 4) for v in (low, high) if v is not None]
+    unit = show(0.0, spec.unit, system, spec.key)[1]
+    step = show(spec.step, spec.unit, system, spec.key)[0] - show(0.0, spec.unit, system, spec.key)[0]
+    return f"{' to '.join(shown)} {unit}".strip() + f", step {format_number(step, 3)}"

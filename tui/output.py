@@ -1,0 +1,88 @@
+"""Where the batch command reads cases and writes results: standard input, standard output, standard error."""
+
+from __future__ import annotations
+
+import contextlib
+import os
+import sys
+from pathlib import Path
+from typing import TYPE_CHECKING, TextIO
+
+from cycle.errors import CaseError, Fault
+
+if TYPE_CHECKING:
+    from cycle.case import Case
+
+STANDARD_INPUT = "-"
+LARGEST_CASE = 1024 * 1024
+"""Bytes of a case that are read from standard input."""
+
+
+def shipped_case() -> str:
+    """Path of the invented case that comes with the program."""
+    return str(Path(__file__).resolve().parent.parent / "cases" / "saltmarsh.toml")
+
+
+def prepare_streams() -> None:
+    """Let no character stop the output: what the stream's encoding lacks is written escaped."""
+    for stream in (sys.stdout, sys.stderr):
+        if hasattr(stream, "reconfigure"):
+            stream.reconfigure(errors="backslashreplace")
+
+
+def emit(text: str) -> bool:
+    """Write results to standard output at once.
+
+    Returns False where nobody reads any more (a closed pipe or stream). Raises CaseError where they cannot be written.
+    """
+    if sys.stdout is None:
+        return False
+    try:
+        sys.stdout.write(text)
+        sys.stdout.flush()
+    except BrokenPipeError:
+        _discard(sys.stdout)
+        return False
+    except OSError as error:
+        _discard(sys.stdout)
+        raise CaseError((Fault("standard output", "", f"cannot be written: {error.strerror}"),)) from error
+    return True
+
+
+def tell(text: str) -> None:
+    """Write a line to standard error; nothing happens where it is closed."""
+    if sys.stderr is None:
+        return
+    try:
+        print(text, file=sys.stderr, flush=True)
+    except OSError:
+        _discard(sys.stderr)
+
+
+def _discard(stream: TextIO) -> None:
+    """Send the rest of a broken stream nowhere, so that closing it at exit raises nothing."""
+    with contextlib.suppress(OSError), open(os.devnull, "wb") as nowhere:
+        os.dup2(nowhere.fileno(), stream.fileno())
+
+
+def read_content(name: str, largest: int = LARGEST_CASE) -> bytes:
+    """Content of a file, or of standard input for "-": at most `largest` bytes and one more, so that too much is seen.
+
+    Raises CaseError where it cannot be read.
+    """
+    try:
+        if name != STANDARD_INPUT:
+            with open(name, "rb") as file:
+                return file.read(largest + 1)
+        if sys.stdin is None:
+            raise CaseError((Fault("standard input", "", "is closed"),))
+        return sys.stdin.buffer.read(largest + 1)
+    except OSError as error:
+        raise CaseError((Fault(name, "", f"cannot be read: {error.strerror}"),)) from error
+
+
+def load_case(name: str) -> Case:
+    """The case of a file, or of standard input for "-". Raises CaseError with all its faults."""
+    from cycle.case import load, loads
+
+    return loads(read_content(name), "standard input") if name == STANDARD_INPUT else load(name)

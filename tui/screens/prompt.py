@@ -1,0 +1,76 @@
+"""A question answered by one line of text, such as the name of a file."""
+
+from __future__ import annotations
+
+from textual import events
+from textual.app import ComposeResult
+from textual.screen import Screen
+
+from tui import keying
+from tui.line import BOLD, CURSOR, DIM, OVER, PLAIN, clean, fit, line
+from tui.session import Entry
+from tui.widgets.sheet import Sheet
+
+
+class Prompt(Screen[str]):
+    """Asks for one line. Gives the text, "" where it was left.
+
+    Parameters: question; text, what stands in the field at first; fault, why an earlier answer was refused.
+    """
+
+    CSS = "Prompt { layout: vertical; } #prompt { height: 1fr; }"
+
+    def __init__(self, question: str, text: str, fault: str = "") -> None:
+        super().__init__()
+        self._question, self._fault = question, fault
+        self._entry = Entry("", text, len(text), fresh=False)
+
+    def compose(self) -> ComposeResult:
+        """One sheet."""
+        yield Sheet(id="prompt")
+
+    def on_mount(self) -> None:
+        """First paint."""
+        self.call_after_refresh(self.paint)
+
+    def on_resize(self) -> None:
+        """Paint for the new size."""
+        self.call_after_refresh(self.paint)
+
+    def paint(self) -> None:
+        """The question, the field, what went wrong, the keys."""
+        sheet = self.query_one("#prompt", Sheet)
+        wide = max(4, sheet.size.width)
+        entry = self._entry
+        start = max(0, entry.caret - wide + 3)
+        text = clean(entry.text)
+        seen = (text + " ")[start : start + wide - 1]
+        at = entry.caret - start
+        sheet.show(
+            [
+                line((fit(self._question, wide), BOLD)),
+                line(seen[:at], (seen[at : at + 1] or " ", CURSOR), seen[at + 1 :]),
+                line((fit(clean(self._fault), wide), OVER if self._fault else PLAIN)),
+                line((fit("Enter takes it; Escape leaves", wide), DIM)),
+            ]
+        )
+
+    def on_key(self, event: events.Key) -> None:
+        """Type, take or leave."""
+        if event.key in ("ctrl+z", "ctrl+l"):
+            return
+        event.stop()
+        if event.key == "escape":
+            self.dismiss("")
+        elif event.key == "enter":
+            if self._entry.text.strip():
+                self.dismiss(self._entry.text.strip())
+        else:
+            self._entry = keying.press(self._entry, event.key, event.character)
+            self.paint()
+
+    def on_paste(self, event: events.Paste) -> None:
+        """Put pasted text in at the caret."""
+        event.stop()
+        self._entry = keying.insert(self._entry, event.text)
+        self.paint()

@@ -1,0 +1,199 @@
+"""The state of the screen: frozen. An edit makes a new session, undo is the list of cases before it.
+
+Nothing here knows Textual. The functions take a session and return one, or raise `cycle.errors.CaseError` with the
+reasons why an edit is no case.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from dataclasses import dataclass, field, replace
+from typing import TYPE_CHECKING, Any, Literal
+
+from tui.figures import PERFORMANCE_KEYS, STATIONS, Figures
+
+if TYPE_CHECKING:
+    from cycle.case import Case
+
+Change = dict[str, Any]
+"""What a user asked of a case, as plain data: {"set": {key: value}} or {"switch": [group, tag, value]}."""
+
+VIEWS = ("figures", "change against the pin", "change against the pin, %")
+SYSTEMS = ("si", "us")
+
+
+@dataclass(frozen=True, slots=True)
+class Pin:
+    """A pinned walk: the words that name it, its case and its figures."""
+
+    label: str
+    case: Case
+    figures: Figures
+
+
+@dataclass(frozen=True, slots=True)
+class Past:
+    """One entry of the undo list: the case as it was and the words for the edit that left it."""
+
+    case: Case
+    words: str
+
+
+@dataclass(frozen=True, slots=True)
+class Entry:
+    """A field being typed in: the input's key, text, caret position, the unit a bare number is in, whether the next
+    character types over all, the group tag that a commit switches to ("" for none), and the words of a fault."""
+
+    key: str
+    text: str
+    caret: int
+    unit: str = ""
+    fresh: bool = True
+    switch: tuple[str, str] | None = None
+    fault: str = ""
+
+
+@dataclass(frozen=True, slots=True)
+class Session:
+    """Everything the screen shows. generation: number of the case's latest change; solved: the generation that
+    `figures` belong to; good: the last walk with a solution; saved: the case as it stands in the file."""
+
+    path: str
+    case: Case | None = None
+    saved: Case | None = None
+    stamp: Any = None
+    generation: int = 0
+    solved: int = -1
+    figures: Figures | None = None
+    good: Figures | None = None
+    pin: Pin | None = None
+    past: tuple[Past, ...] = ()
+    future: tuple[Past, ...] = ()
+    focus: Literal["table", "inputs"] = "table"
+    station: str = "0"
+    row: int = 0
+    inputs: Mapping[str, str] = field(default_factory=dict)
+    entry: Entry | None = None
+    system: Literal["si", "us"] = "si"
+    view: int = 0
+    referee: str = ""
+    note: str = "reading the case ..."
+    faults: tuple[str, ...] = ()
+
+    @property
+    def failed(self) -> bool:
+        """Whether the newest solved case has no solution."""
+        return self.figures is not None and not self.figures.solved
+
+    @property
+    def unsaved(self) -> bool:
+        """Whether the case differs from the one in the file."""
+        return self.case is not None and self.case != self.saved
+
+
+def apply(case: Case, change: Change) -> Case:
+    """The case with a change made.
+
+    Parameters: case; change, {"set": {key: value}} or {"switch": [group, tag, value]}. Errors: CaseError.
+    """
+    if "switch" in change:
+        group, tag, value = change["switch"]
+        return case.switch(group, tag, value)
+    return case.replace(change["set"])
+
+
+def loaded(session: Session, case: Case, stamp: Any) -> Session:
+    """The session with the case of the file, nothing undone yet."""
+    start = columns_of(case)[0]
+    return replace(session, case=case, saved=case, stamp=stamp, generation=session.generation + 1, station=start, note="")
+
+
+def _with_case(session: Session, case: Case, note: str) -> Session:
+    station = session.station if session.station in columns_of(case) else columns_of(case)[0]
+    return replace(
+        session,
+        case=case,
+        generation=session.generation + 1,
+        station=station,
+        entry=None,
+        referee="",
+        note=note,
+        faults=(),
+    )
+
+
+def edited(session: Session, change: Change, words: str) -> Session:
+    """The session after an edit. Errors: CaseError, the session as it was stays good."""
+    assert session.case is not None
+    case = apply(session.case, change)
+    if case == session.case:
+        return replace(session, entry=None, note="")
+    past = (*session.past, Past(session.case, words))
+    return replace(_with_case(session, case, ""), past=past, future=())
+
+
+def undone(session: Session) -> Session:
+    """The session before its last edit; the same one with a note where there is none."""
+    if not session.past or session.case is None:
+        return replace(session, note="nothing to undo")
+    last = session.past[-1]
+    back = _with_case(session, last.case, f"undone: {last.words}")
+    return replace(back, past=session.past[:-1], future=(*session.future, Past(session.case, last.words)))
+
+
+def redone(session: Session) -> Session:
+    """The session with the last undone edit made again; the same one with a note where there is none."""
+    if not session.future or session.case is None:
+        return replace(session, note="nothing to redo")
+    next_ = session.future[-1]
+    forward = _with_case(session, next_.case, f"redone: {next_.words}")
+    return replace(forward, past=(*session.past, Past(session.case, next_.words)), future=session.future[:-1])
+
+
+def with_figures(session: Session, generation: int, figures: Figures) -> Session:
+    """The session with a walk that came back; a stale one (not of the newest generation) changes nothing."""
+    if generation != session.generation or session.case is None:
+        return session
+    good = figures if figures.solved else session.good
+    pin = session.pin or (Pin("as loaded", session.case, figures) if figures.solved else None)
+    note = "" if session.note.startswith("solving") else session.note
+    return replace(session, figures=figures, solved=generation, good=good, pin=pin, note=note)
+
+
+def pinned(session: Session) -> Session:
+    """The session with its present walk pinned."""
+    if session.case is None or session.figures is None or session.solved != session.generation:
+        return replace(session, note="no walk of these inputs to pin yet")
+    if not session.figures.solved:
+        return replace(session, note="a case without a solution cannot be pinned")
+    label = session.past[-1].words if session.past else "as loaded"
+    return replace(session, pin=Pin(label, session.case, session.figures), note="pinned: changes are against this walk")
+
+
+def toggled(session: Session) -> Session:
+    """The session in the other unit system."""
+    return replace(session, system="us" if session.system == "si" else "si", entry=None, note="")
+
+
+def columns_of(case: Case | None) -> tuple[str, ...]:
+    """Stations that a walk of the case has when it is solved; the ones of a flight case where there is none yet."""
+    if case is None:
+        return ("0", "2", "3", "4", "10")
+    entry = case.value("entry.station") if case.choices.get("start") == "entry" else None
+    first = "0" if entry is None else str(entry)
+    last = "4" if case.choices.get("nozzle.exit") == "absent" else "10"
+    throat = case.value("nozzle.throat") == "sized"
+    return tuple(
+        s for s in STATIONS if int(first) <= int(s) <= int(last) and (s != "5" or throat)
+    )
+
+
+def performance_keys(session: Session) -> tuple[str, ...]:
+    """Headline figures of the case: those of a flight, or of a rig."""
+    rig = session.case is not None and session.case.choices.get("start") == "entry"
+    keys = (
+        ("stream_thrust_gain", "fuel_flow", "equivalence_ratio", "total_temperature_rise_efficiency")
+        if rig
+        else ("thrust", "specific_impulse", "specific_thrust", "overall_efficiency")
+    )
+    return tuple(k for k in keys if k in PERFORMANCE_KEYS)

@@ -1,0 +1,218 @@
+"""A walk in plain words and tables."""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Callable, Iterable, Mapping
+from typing import TYPE_CHECKING, Any
+
+from cycle.quantities import MODES, OUTPUTS, STATUSES, Input, Output
+from cycle.units import display_unit, format_number, show
+from tui.tables import Block, Heading, Lines, Table
+
+if TYPE_CHECKING:
+    from cycle.case import Stated
+    from cycle.walk import Walk
+
+CAUTION = "Preliminary-design estimate; not for hardware, flight-safety or certification decisions without independent verification."
+LEAST_SHOWN = 1e-4
+"""Mole fraction from which on a species has a row."""
+
+_PROCESS_FIGURES: tuple[tuple[str, str, str], ...] = (
+    ("total_pressure_ratio", "total-pressure ratio", "ratio"),
+    ("pressure_ratio", "pressure ratio", "ratio"),
+    ("temperature_ratio", "temperature ratio", "ratio"),
+    ("entropy_rise", "entropy rise", "specific heat"),
+    ("thrust_potential_change", "change of thrust potential", "force"),
+)
+
+
+def figure(value: float, dimension: str, system: str, key: str = "") -> str:
+    """A value of SI `dimension` as a number in the unit of `system` ("si" or "us"), without the unit."""
+    return format_number(show(float(value), dimension, system, key)[0])
+
+
+def unit_label(dimension: str, system: str, key: str = "") -> str:
+    """The unit in which `figure` shows, "" for a ratio."""
+    return display_unit(dimension, system, key).label
+
+
+def with_unit(value: float, dimension: str, system: str, key: str = "") -> str:
+    """A value with its unit, as in a sentence."""
+    return f"{figure(value, dimension, system, key)} {unit_label(dimension, system, key)}".strip()
+
+
+def named(label: str, dimension: str, system: str, key: str = "") -> str:
+    """A row's name with the unit behind a comma."""
+    unit = unit_label(dimension, system, key)
+    return f"{label}, {unit}" if unit else label
+
+
+def walk_blocks(walk: Walk, system: str, referee: bool) -> list[Block]:
+    """Everything the walk of one point says, as blocks.
+
+    walk: of shape (). system: "si" or "us". referee: whether the referee's line is asked for.
+    """
+    parts: tuple[Callable[[Walk, str], Iterable[Block]], ...] = (
+        _opening, _headline, _stations, _composition, _processes, _potentials, _losses, _exergy, _limits,
+    )  # fmt: skip
+    blocks = [block for part in parts for block in part(walk, system)]
+    return [*blocks, *_checks(walk, referee), *_inputs(walk, system), Heading("Caution"), Lines((CAUTION,))]
+
+
+def headline_words(walk: Walk) -> str:
+    """One sentence: the mode found, or why there is no solution."""
+    if walk.status == "solved":
+        return f"Solved. Mode {walk.mode}: {MODES[walk.mode]}."
+    failed = f" in the {walk.failed_process}" if walk.failed_process else ""
+    return f"NO SOLUTION, {walk.status}{failed}: {walk.reason or STATUSES[walk.status]}"
+
+
+def _opening(walk: Walk, system: str) -> Iterable[Block]:
+    yield Heading(walk.case.title, 1)
+    yield Lines((f"Case {walk.case.name}; gas model {walk.case.choices['gas.model']}.", headline_words(walk)))
+    if walk.case.notes:
+        yield Lines((f"Notes: {' '.join(walk.case.notes.split())}",))
+
+
+def _headline(walk: Walk, system: str) -> Iterable[Block]:
+    outputs = [o for o in OUTPUTS if o.where == "performance"]
+    values = {o.key: float(getattr(walk.performance, o.key)) for o in outputs}
+    known = [o for o in outputs if math.isfinite(values[o.key])]
+    yield Heading("Performance")
+    if known:
+        rows = ((o.label, o.symbol, figure(values[o.key], o.unit, system, o.key), unit_label(o.unit, system, o.key)) for o in known)
+        yield Table(("", "symbol", "value", "unit"), tuple(rows), left=(1, 3))
+    yield Lines(tuple(_missing(walk, [o for o in outputs if o not in known])))
+
+
+def _missing(walk: Walk, outputs: Iterable[Output]) -> Iterable[str]:
+    """One sentence a reason, naming the figures that lack a value for it."""
+    reasons: dict[str, list[str]] = {}
+    for output in outputs:
+        reasons.setdefault(walk.why_not(output.key), []).append(output.label)
+    return (f"No value for {', '.join(labels)}: {reason}" for reason, labels in reasons.items())
+
+
+def reached_through(walk: Walk) -> dict[str, str]:
+    """Station name -> the label of the process that ends there; the first station is where the stream enters."""
+    labels = {p.end: p.label for p in walk.processes if p.start != p.end}
+    first = "flight" if walk.case.choices["start"] == "flight" else "entry"
+    return {name: labels.get(name, first if i == 0 else "") for i, name in enumerate(walk.station)}
+
+
+def _stations(walk: Walk, system: str) -> Iterable[Block]:
+    reached = reached_through(walk)
+    rows = [("station", *walk.station)]
+    for output in (o for o in OUTPUTS if o.where == "station"):
+        values = [float(getattr(s, output.key)) for s in walk.station.values()]
+        if any(math.isfinite(v) for v in values):
+            cells = (figure(v, output.unit, system, output.key) for v in values)
+            rows.append((named(output.label, output.unit, system, output.key), *cells))
+    yield Heading("Stations")
+    yield Table(("reached through", *reached.values()), tuple(rows))
+
+
+def _composition(walk: Walk, system: str) -> Iterable[Block]:
+    names = dict.fromkeys(x for s in walk.station.values() for x in s.mole_fractions)
+    rows = []
+    for name in names:
+        values = [float(s.mole_fractions.get(name, math.nan)) for s in walk.station.values()]
+        if any(v >= LEAST_SHOWN for v in values):
+            rows.append((name, *("-" if math.isnan(v) else format_number(v) if v >= LEAST_SHOWN else "0.0" for v in values)))
+    if rows:
+        yield Heading(f"Mole fractions ({LEAST_SHOWN:g} and more)")
+        yield Table(("station", *walk.station), tuple(rows))
+
+
+def _processes(walk: Walk, system: str) -> Iterable[Block]:
+    rows = [("stations", *(f"{p.start} to {p.end}" for p in walk.processes))]
+    for key, label, unit in _PROCESS_FIGURES:
+        cells = (figure(p.figures.get(key, math.nan), unit, system) for p in walk.processes)
+        rows.append((named(label, unit, system), *cells))
+    if walk.processes:
+        yield Heading("What each process did")
+        yield Table(("process", *(p.label for p in walk.processes)), tuple(rows))
+
+
+def _rows(rows: Iterable[Any], system: str) -> Table:
+    cells = ((r.label, figure(r.value, r.unit, system), unit_label(r.unit, system), r.note) for r in rows)
+    return Table(("", "value", "unit", "note"), tuple(cells), left=(2,), wrapped=3)
+
+
+def _potentials(walk: Walk, system: str) -> Iterable[Block]:
+    if walk.potentials:
+        yield Heading("Where the thrust comes from and goes (changes of thrust potential)")
+        yield _rows(walk.potentials, system)
+
+
+def _assessed(title: str, name: str) -> Callable[[Walk, str], Iterable[Block]]:
+    def part(walk: Walk, system: str) -> Iterable[Block]:
+        rows = getattr(walk, name)
+        yield Heading(title)
+        yield _rows(rows, system) if rows else Lines((f"Not assessed: {walk.why_not(name)}",))
+
+    return part
+
+
+_losses = _assessed("Losses against the ideal engine", "losses")
+_exergy = _assessed("Exergy", "exergy")
+
+
+def _limits(walk: Walk, system: str) -> Iterable[Block]:
+    ordered = sorted(walk.limits, key=lambda limit: (math.isnan(limit.margin), limit.margin))
+    yield Heading("Limits, least margin first")
+    yield Lines(tuple(limit_words(limit, system) for limit in ordered) or ("none apply",))
+
+
+def limit_words(limit: Any, system: str) -> str:
+    """A limit as a sentence: its state, what is, what is allowed, the margin, and what would restore it."""
+    if limit.state == "not assessed":
+        return f"not assessed: {limit.label}. {limit.restore}".rstrip(" .") + "."
+    state = limit.state.upper() if limit.state == "over" else limit.state
+    actual, allowed = (with_unit(v, limit.unit, system) for v in (limit.actual, limit.allowed))
+    return f"{state}: {limit.label} {actual}, allowed {allowed}, margin {100 * limit.margin:+.1f} %. {limit.restore}".rstrip()
+
+
+def _checks(walk: Walk, referee: bool) -> Iterable[Block]:
+    sentences = [audit_words(walk)]
+    if referee:
+        sentences.append(f"Referee: {walk.referee().words}")
+    yield Heading("Audit")
+    yield Lines(tuple(sentences))
+
+
+def audit_words(walk: Walk) -> str:
+    """The audit as a sentence with its worst residual."""
+    audit = walk.audit
+    if not audit.rows:
+        return "Audit: nothing to check, no process was solved."
+    worst = audit.worst
+    verdict = "ok" if audit.ok else "FAILED"
+    return f"Audit {verdict}: largest relative residual {float(worst.value):.1e} ({worst.law}, {worst.where}), allowed 1e-9."
+
+
+def _inputs(walk: Walk, system: str) -> Iterable[Block]:
+    stated = [s for s in walk.case.inputs() if s.value is not None]
+    yield Heading("Inputs as solved (d: default, not stated in the case)")
+    yield Table(("", "value", "unit", ""), tuple(_input_row(s, system) for s in stated), left=(2, 3))
+
+
+def _input_row(stated: Stated, system: str) -> tuple[str, str, str, str]:
+    entry, mark = stated.input, "" if stated.given else "d"
+    return entry.key, input_text(entry, stated.value, system), _input_unit(entry, system), mark
+
+
+def _input_unit(entry: Input, system: str) -> str:
+    return unit_label(entry.unit, system, entry.key) if entry.kind == "number" else ""
+
+
+def input_text(entry: Input, value: Any, system: str) -> str:
+    """The value of an input without its unit: a number, a word, yes or no, or fractions; "-" for None."""
+    if value is None:
+        return "-"
+    if entry.kind == "number":
+        return figure(value, entry.unit, system, entry.key)
+    if isinstance(value, Mapping):
+        return ", ".join(f"{name} {format_number(x)}" for name, x in value.items())
+    return ("yes" if value else "no") if isinstance(value, bool) else str(value)

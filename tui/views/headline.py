@@ -1,0 +1,121 @@
+"""The lines on top: the case, the headline figures with their change against the pin, the pin, the limits in words."""
+
+from __future__ import annotations
+
+import os
+
+from cycle.quantities import MODES, OUTPUT
+from cycle.units import show
+from tui.figures import Figures, Margin
+from tui.line import BOLD, DIM, NEAR, OVER, PLAIN, Line, clean, fit, line, width, wrap
+from tui.session import Session, performance_keys
+from tui.views.numbers import difference, figure, unit
+
+NAMES = {
+    "specific_impulse": "Isp",
+    "specific_thrust": "per kg air",
+    "overall_efficiency": "overall",
+    "stream_thrust_gain": "stream-thrust gain",
+    "total_temperature_rise_efficiency": "temperature rise",
+    "equivalence_ratio": "phi",
+}
+"""Short names of headline figures; the others go by their label."""
+
+
+def lines(session: Session, columns: int, height: int) -> list[Line]:
+    """Four lines and a rule; fewer where the height is less."""
+    if session.case is None:
+        first = line((fit(clean(f"ductwalk  {os.path.basename(session.path) or 'new case'}"), columns), BOLD))
+        return [first, *(line(fit(clean(f), columns)) for f in session.faults)][:height]
+    body = [_title(session, columns), *_figures(session, columns), _limits(session, columns)]
+    if height < len(body) + 1:
+        return [body[i] for i in (1, 3, 0, 2)[:height]] if height < 4 else body
+    return [*body, line(("-" * columns, DIM))]
+
+
+def _title(session: Session, columns: int) -> Line:
+    case, found = session.case, session.figures
+    assert case is not None
+    right = _flight(session, found) if found is not None else ""
+    mark = " *" if session.unsaved else ""
+    room = columns - width(right) - len(mark) - 2
+    left = fit(clean(case.title or case.name), max(room, 8)) + mark
+    gap = max(2, columns - width(left) - width(right))
+    return line((left, BOLD), " " * gap, right)
+
+
+def _flight(session: Session, found: Figures) -> str:
+    first = next(iter(found.stations), "0")
+    state = found.stations.get(first, {})
+    parts = [f"M {figure('mach', state.get('mach', float('nan')), session.system, 3)}"]
+    key = "dynamic_pressure" if first == "0" else "pressure"
+    label = OUTPUT[key].symbol
+    parts.append(f"{label} {figure(key, state.get(key, float('nan')), session.system, 3)} {unit(key, session.system)}")
+    if first == "0" and session.case is not None and session.case.value("flight.place") != "pressure":
+        shown, label = show(found.altitude, "length", session.system, "flight.altitude")
+        parts.append(f"z {shown:.1f} {label}")
+    return "  ".join([*parts, found.mode if found.mode in MODES and found.solved else "-"])
+
+
+def _figures(session: Session, columns: int) -> list[Line]:
+    found = session.figures
+    if found is None:
+        return [line("first walk not solved yet"), line("")]
+    if not found.solved:
+        stale = "; figures in ( ) as of the previous inputs" if session.good is not None else ""
+        words = wrap(clean(f"NO SOLUTION: {found.reason or found.status}{stale}").split(), columns)
+        return [line((w, OVER)) for w in words[:2]] + [line("")] * (2 - len(words[:2]))
+    return [_headline(session, found, columns), _against(session, columns)]
+
+
+def _headline(session: Session, found: Figures, columns: int) -> Line:
+    pieces: list[tuple[str, bool]] = []
+    for key in performance_keys(session):
+        value = found.performance[key]
+        name = NAMES.get(key, "thrust" if key == "thrust" else OUTPUT[key].label)
+        words = f"{name} {figure(key, value, session.system)} {unit(key, session.system)}".rstrip()
+        change = ""
+        if session.pin is not None and session.pin.figures is not found:
+            change = f" {difference(key, value, session.pin.figures.performance[key], session.system)}"
+        if sum(len(p) + 1 for p, _ in pieces) + len(words) + len(change) > columns:
+            break
+        pieces += [(words, True), (change.strip() + " ", False)] if change else [(words + " ", True)]
+    out: list[tuple[str, bool]] = []
+    for text, strong in pieces:
+        out.append((text + " ", strong))
+    return line(*((t, BOLD if strong else PLAIN) for t, strong in out))
+
+
+def _against(session: Session, columns: int) -> Line:
+    pin, found = session.pin, session.figures
+    assert found is not None
+    left = f"vs pin: {clean(pin.label)}" if pin is not None else "nothing pinned"
+    rig = session.case is not None and session.case.choices.get("start") == "entry"
+    right = f"{'' if rig else 'uninstalled; spill drag not assessed'}   {session.system.upper()}".strip()
+    left = fit(left, max(columns - len(right) - 2, 10))
+    return line(left, " " * max(2, columns - width(left) - len(right)), right)
+
+
+def audit_words(found: Figures) -> str:
+    """The audit in a word or two."""
+    return "audit ok" if found.audit_ok else "AUDIT FAILED"
+
+
+def _names(margins: tuple[Margin, ...], state: str) -> str:
+    return ", ".join(m.label for m in margins if m.state == state)
+
+
+def _limits(session: Session, columns: int) -> Line:
+    """Over, near and not assessed limits in words, the audit, the referee; long lists are counted, not cut."""
+    found = session.figures
+    if found is None:
+        return line("limits not assessed yet")
+    over, near = _names(found.limits, "over"), _names(found.limits, "near")
+    unknown = _names(found.limits, "not assessed")
+    count = sum(m.state == "not assessed" for m in found.limits)
+    tail = [audit_words(found), f"referee {clean(session.referee) or 'not asked'}"]
+    full = [f"OVER {over}" if over else "none over", f"near: {near or 'none'}", f"not assessed: {unknown or 'none'}", *tail]
+    counts = [full[0], full[1], f"not assessed: {count}", audit_words(found), f"referee {'asked' if session.referee else 'not asked'}"]
+    words = full if len(" | ".join(full)) <= columns else counts
+    style = OVER if over or not found.audit_ok else NEAR if near else PLAIN
+    return line((fit(clean(" | ".join(words)), columns), style))

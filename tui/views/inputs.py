@@ -1,0 +1,134 @@
+"""The inputs of the component in hand, the answer line below them, and the line of keys."""
+
+from __future__ import annotations
+
+from rich.style import Style
+
+from cycle.quantities import OUTPUT
+from tui.actions import ACTIONS
+from tui.items import Item, bounds, in_hand, items, way_label
+from tui.line import BOLD, CURSOR, DIM, OVER, PLAIN, UNDERLINE, Line, Piece, clean, fit, line, width, wrap
+from tui.session import Entry, Session
+from tui.views.table import ROWS
+
+NARROWEST = 38
+"""Columns that one input needs for its label, its value and its mark."""
+
+
+def per_row(wide: int) -> int:
+    """Inputs side by side in a width."""
+    return max(1, wide // NARROWEST)
+
+
+def lines(session: Session, wide: int, height: int) -> list[Line]:
+    """Inputs down the first column, then the next, scrolled so that the one in hand is in sight."""
+    here, hand = items(session), in_hand(session)
+    if not here:
+        words = "no inputs of its own" if session.case is not None else ""
+        return [line((words, DIM))]
+    across = min(per_row(wide), -(-len(here) // max(1, height)))
+    deep = min(height, -(-len(here) // across))
+    start = _start(here, hand, across * deep, deep)
+    seen = here[start : start + across * deep]
+    column = (wide - (across - 1) * 3) // across
+    column = min(column, 52)
+    out = []
+    for y in range(deep):
+        pieces: list[Piece] = []
+        for x in range(across):
+            if (n := x * deep + y) < len(seen):
+                pieces += [(" | ", DIM)] if x else []
+                pieces += _item(session, seen[n], seen[n] is hand or seen[n] == hand, column)
+        out.append(tuple(pieces))
+    return out
+
+
+def _start(here: tuple[Item, ...], hand: Item | None, page: int, deep: int) -> int:
+    """First input shown: whole columns are skipped until the one in hand is in sight."""
+    at = here.index(hand) if hand in here else 0
+    start = 0
+    while at >= start + page:
+        start += deep
+    return start
+
+
+def _item(session: Session, item: Item, chosen: bool, column: int) -> list[Piece]:
+    held = chosen and session.focus == "inputs"
+    entry = session.entry if chosen and session.entry is not None else None
+    mark = ">" if held else " "
+    if entry is not None:
+        return _field(item, entry, column)
+    value = clean(item.written)
+    room = column - 1 - 2 - min(width(value), 18) - 1
+    value = fit(value, column - 3 - min(room, 12))
+    flag = " d" if item.default else "  "
+    label = fit(item.label, column - 4 - width(value)).ljust(column - 3 - width(value))
+    return [(mark, PLAIN), (label, BOLD if held else PLAIN), (value, CURSOR if held else PLAIN), (flag, DIM)]
+
+
+def _field(item: Item, entry: Entry, column: int) -> list[Piece]:
+    """A field open in place: the caret reversed, the whole text underlined; what does not fit scrolls."""
+    room = max(6, min(24, column - 10))
+    label = fit(entry_label(item, entry), column - room - 2).ljust(column - room - 1)
+    text = clean(entry.text) + " "
+    start = max(0, entry.caret - room + 2)
+    seen = text[start : start + room].ljust(room)
+    at = entry.caret - start
+    style = CURSOR if entry.fresh and entry.text else UNDERLINE
+    caret = seen[at] if at < len(seen) else " "
+    fault: list[Piece] = [("!", OVER)] if entry.fault else [(">", PLAIN)]
+    return [*fault, (label, BOLD), (seen[:at], style), (caret, CURSOR), (seen[at + 1 :], UNDERLINE)]
+
+
+def entry_label(item: Item, entry: Entry) -> str:
+    """Label of an open field: the input's, or that of the other way that a commit switches to."""
+    return way_label(*entry.switch) if entry.switch is not None else item.label
+
+
+def answer(session: Session, wide: int, height: int) -> list[Line]:
+    """What the program says: a fault, a note, else the meaning of the input or of the row in hand."""
+    words, style = _words(session)
+    return [line((part, style)) for part in wrap(clean(words).split(), wide)[:height]]
+
+
+def _words(session: Session) -> tuple[str, Style]:
+    if session.entry is not None and session.entry.fault:
+        return session.entry.fault, OVER
+    if session.faults:
+        return session.faults[0], OVER
+    if session.note:
+        return session.note, BOLD
+    if session.focus == "table":
+        return _row_words(session), PLAIN
+    return _input_words(session), PLAIN
+
+
+def _row_words(session: Session) -> str:
+    spec = OUTPUT[ROWS[session.row]]
+    return f"{spec.label}: {spec.meaning}"
+
+
+def _input_words(session: Session) -> str:
+    hand = in_hand(session)
+    if hand is None:
+        return ""
+    other = "; o: another way to say it" if hand.group is not None else ""
+    if hand.input is None:
+        return f"{hand.label}: {hand.written}{other}"
+    limits = bounds(hand.input, session.system)
+    return f"{hand.input.meaning.rstrip('.')}{'; ' + limits if limits else ''}{other}"
+
+
+def keys(session: Session, wide: int, height: int) -> list[Line]:
+    """The line of keys; inside a field, what closes it."""
+    if session.entry is not None:
+        unit = f"; a bare number is in {session.entry.unit}" if session.entry.unit else ""
+        return [line((fit(f"Enter commits  Escape leaves it as it was{unit}", wide), DIM))]
+    words = [f"{a.shown} {a.label}" for a in ACTIONS if a.label]
+    order = sorted(words, key=lambda w: w.split(" ", 1)[0] not in ("?", "q"))
+    room, kept = wide, set()
+    for word in order:
+        if len(word) + 2 <= room + 2:
+            kept.add(word)
+            room -= len(word) + 2
+    return [line((fit("  ".join(w for w in words if w in kept), wide), DIM))]

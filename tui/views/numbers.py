@@ -1,0 +1,44 @@
+"""Figures and their changes as text, in the unit system of the session."""
+
+from __future__ import annotations
+
+from cycle.quantities import OUTPUT
+from cycle.units import format_number, show
+
+
+def unit(key: str, system: str) -> str:
+    """Display unit of an output, "" where it has none."""
+    spec = OUTPUT[key]
+    return show(1.0, spec.unit, system, key)[1]
+
+
+def figure(key: str, value: float, system: str, digits: int = 4) -> str:
+    """An output in its display unit, without the unit; "-" where there is no value."""
+    return format_number(show(value, OUTPUT[key].unit, system, key)[0], digits)
+
+
+def difference(key: str, value: float, base: float, system: str, digits: int = 3) -> str:
+    """Change of an output against a base, signed, in its display unit; "-" where either has no value."""
+    spec = OUTPUT[key]
+    change = show(value, spec.unit, system, key)[0] - show(base, spec.unit, system, key)[0]
+    if change != change:
+        return "-"
+    # below the noise of the solution a change is none
+    scale = max(abs(value), abs(base))
+    if scale == 0.0 or abs(value - base) <= 1e-9 * scale:
+        return "+0"
+    return f"{'+' if change > 0 else ''}{format_number(change, digits)}"
+
+
+def percent(value: float, base: float) -> str:
+    """Change against a base in percent, signed; "-" where there is none to tell."""
+    if value != value or base != base or base == 0.0:
+        return "-"
+    change = 100.0 * (value - base) / abs(base)
+    return "+0" if abs(change) < 5e-8 else f"{'+' if change > 0 else ''}{format_number(change, 3)}"
+
+
+def quantity(value: float, dimension: str, system: str, digits: int = 4, key: str = "") -> str:
+    """A value with its display unit."""
+    shown, label = show(value, dimension, system, key)
+    return f"{format_number(shown, digits)} {label}".strip() if shown == shown else "-"

@@ -1,0 +1,167 @@
+"""The station table: rows are quantities, columns are stations, processes label the columns where they end."""
+
+from __future__ import annotations
+
+from cycle.quantities import OUTPUT
+from tui.figures import NAN, STATION_KEYS, STATIONS, Figures, Passage
+from tui.line import BOLD, CURSOR, DIM, PLAIN, Line, Piece, clean, fit, line
+from tui.session import VIEWS, Session, columns_of
+from tui.views.numbers import difference, figure, percent, quantity, unit
+
+LEADING = (
+    "mach",
+    "pressure",
+    "temperature",
+    "velocity",
+    "total_pressure",
+    "total_temperature",
+    "area_ratio",
+    "stream_thrust",
+    "thrust_potential",
+)
+ROWS = (*LEADING, *(k for k in STATION_KEYS if k not in LEADING))
+"""Rows of the table in order; the leading ones fit the smallest terminal that shows the whole screen."""
+
+NAMES = {"mach": "Mach", "area_ratio": "area / A0", "thrust_potential": "potential"}
+SYMBOLS = ("pressure", "temperature", "velocity", "total_pressure", "total_temperature")
+LABEL, LEAST, MOST = 21, 9, 12
+
+
+def columns(session: Session) -> tuple[str, ...]:
+    """Stations of the table: those of the case, and any more that its walk has."""
+    have = {*columns_of(session.case), *(session.figures.stations if session.figures else ())}
+    return tuple(s for s in STATIONS if s in have)
+
+
+def label(key: str, system: str) -> str:
+    """Name and display unit of a row."""
+    name = OUTPUT[key].symbol if key in SYMBOLS else NAMES.get(key, OUTPUT[key].label)
+    dimension = unit(key, system)
+    return f"{name}, {dimension}" if dimension else name
+
+
+def passage_at(found: Figures | None, station: str) -> Passage | None:
+    """The process that ends at a station."""
+    return next((p for p in reversed(found.passages) if p.end == station), None) if found is not None else None
+
+
+def _reached(session: Session, station: str) -> str:
+    passage = passage_at(session.figures, station) or passage_at(session.good, station)
+    if passage is not None:
+        return clean(passage.label)
+    first = station == columns(session)[0]
+    rig = session.case is not None and session.case.choices.get("start") == "entry"
+    return ("entry" if rig else "flight") if first and session.case is not None else ""
+
+
+def _shown_columns(session: Session, room: int) -> tuple[tuple[str, ...], int]:
+    """Stations that fit beside the labels with the one in hand among them, and the width of each."""
+    every = columns(session)
+    fit_in = max(1, min(len(every), room // LEAST))
+    at = every.index(session.station) if session.station in every else 0
+    start = max(0, min(at - fit_in // 2, len(every) - fit_in))
+    return every[start : start + fit_in], max(1, min(MOST, room // fit_in))
+
+
+def first_row(session: Session, height: int) -> int:
+    """The first row shown, so that the one under the cursor is in sight."""
+    body = max(1, height - 2)
+    if session.row < body:
+        return 0
+    return min(session.row - body + 1, max(0, len(ROWS) - body))
+
+
+def lines(session: Session, wide: int, height: int) -> list[Line]:
+    """Two lines of heads and as many rows as the height allows."""
+    shown, column = _shown_columns(session, wide - min(LABEL, wide // 2))
+    room = min(LABEL, wide // 2)
+    top = first_row(session, height)
+    keys = ROWS[top : top + max(0, height - 2)]
+    where = f"station   rows {top + 1}-{top + len(keys)}/{len(ROWS)}" if len(keys) < len(ROWS) else "station"
+    if session.view:
+        where = VIEWS[session.view].replace("against the pin", "vs pin")
+    heads: list[Line] = [
+        line(("reached through".ljust(room), DIM), *((_head(_reached(session, s), column), DIM) for s in shown)),
+        line((fit(where, room).ljust(room), PLAIN), *_stations(session, shown, column)),
+    ]
+    return [*heads, *(_row(session, i + top, k, shown, column, room) for i, k in enumerate(keys))][:height]
+
+
+def _head(text: str, column: int) -> str:
+    return fit(text, column - 1).rjust(column)
+
+
+def _stations(session: Session, shown: tuple[str, ...], column: int) -> list[Piece]:
+    pieces: list[Piece] = []
+    for s in shown:
+        if s == session.station:
+            text = f"[ {s} ]"
+            pieces += [(" " * max(0, column - len(text)), PLAIN), (text, CURSOR)]
+        else:
+            pieces.append((s.rjust(column), BOLD))
+    return pieces
+
+
+def _row(session: Session, index: int, key: str, shown: tuple[str, ...], column: int, room: int) -> Line:
+    here = session.focus == "table" and index == session.row
+    pieces: list[Piece] = [(fit(label(key, session.system), room - 1).ljust(room), BOLD if here else PLAIN)]
+    for s in shown:
+        text, style = _cell(session, key, s)
+        text = fit(text, column - 1)
+        if here and s == session.station:
+            pieces += [(" " * (column - len(text)), PLAIN), (text, CURSOR)]
+        else:
+            pieces.append((text.rjust(column), style))
+    return tuple(pieces)
+
+
+def _cell(session: Session, key: str, station: str) -> Piece:
+    """Text of a cell; a value of the last good walk stands dimmed in parentheses where the present one has none."""
+    found = session.figures
+    if found is None:
+        return "", PLAIN
+    value = found.at(station, key)
+    if station not in found.stations and session.failed and session.good is not None:
+        stale = figure(key, session.good.at(station, key), session.system)
+        return (f"({stale})" if stale != "-" else "-"), DIM
+    return _viewed(session, key, station, value), PLAIN
+
+
+def _viewed(session: Session, key: str, station: str, value: float) -> str:
+    if session.view == 0 or session.failed:
+        return figure(key, value, session.system)
+    base = session.pin.figures.at(station, key) if session.pin is not None else NAN
+    return difference(key, value, base, session.system) if session.view == 1 else percent(value, base)
+
+
+def process_line(session: Session, wide: int, height: int) -> list[Line]:
+    """One line on the process that led to the station in hand: what it cost."""
+    found = session.figures
+    passage = passage_at(found, session.station)
+    if found is None:
+        return [line(("-" * wide, DIM))]
+    if passage is None:
+        lost = session.failed and session.station not in found.stations
+        words = "- not reached by these inputs " if lost else "- the stream as it arrives "
+        return [line((words.ljust(wide, "-")[:wide], DIM))]
+    parts = [f"- {passage.start} to {passage.end}, {clean(passage.label)}: {_costs(passage, session.system)}"]
+    return [line(fit(" | ".join(parts) + " ", wide).ljust(wide, "-"))]
+
+
+COSTS = (
+    ("total_pressure_ratio", "pt ratio", "ratio", ""),
+    ("thrust_potential_change", "potential", "force", "+"),
+    ("entropy_rise", "entropy", "specific heat", "+"),
+    ("temperature_ratio", "T ratio", "ratio", ""),
+    ("choking_margin", "to choking", "ratio", "+"),
+)
+"""Figures of a process on its line: key, words, dimension, sign."""
+
+
+def _costs(passage: Passage, system: str) -> str:
+    out = []
+    for key, words, dimension, sign in COSTS:
+        value = passage.figures.get(key, NAN)
+        if value == value:
+            out.append(f"{words} {sign if value >= 0 else ''}{quantity(value, dimension, system)}")
+    return " | ".join(out)
