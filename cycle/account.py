@@ -14,13 +14,14 @@ import numpy as np
 
 from cycle.arrays import Array, Codes
 from cycle.constants import STANDARD_GRAVITY
+from cycle.flow import states
 from cycle.flowpath import combustor
 from cycle.flowpath.stream import Stream
 from cycle.gas.base import Gas
 from cycle.gas.constant import ConstantGas
 from cycle.gas.equilibrium import EquilibriumGas
 from cycle.gas.frozen import FrozenGas
-from cycle.gas.join import Request, solve_together
+from cycle.gas.join import Request, apply_together, solve_together
 from cycle.gas.state import State
 from cycle.walk import March, Record, case_gas
 
@@ -55,6 +56,16 @@ def totals(march: March, names: tuple[str, ...]) -> dict[str, State]:
         for r in (records[n] for n in names)
     ]
     return dict(zip(names, solve_together("hs", requests), strict=True))
+
+
+def criticals(march: March, names: tuple[str, ...]) -> dict[str, State]:
+    """Sonic state of the stream at each of the stations `names`, of the points that reached it."""
+    records = march.stations()
+    requests = [
+        Request(r.stream.gas, (r.stream.total_enthalpy, r.stream.state.entropy), r.stream.state)
+        for r in (records[n] for n in names)
+    ]
+    return dict(zip(names, apply_together(states.sonic, requests), strict=True))
 
 
 def thrust(march: March) -> Array:

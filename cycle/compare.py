@@ -12,6 +12,11 @@ from cycle.record import Json
 
 Value = float | str | bool | None
 
+DATUM = ("enthalpy", "total_enthalpy", "entropy", "thrust_potential")
+"""Figures whose zero is a convention or whose value at the first station is zero: compared by difference, not by ratio."""
+
+_GAS_DATUM = DATUM[:3]
+
 
 @dataclass(frozen=True, slots=True)
 class Side:
@@ -31,9 +36,16 @@ class Figure:
     station: str
     values: tuple[float, ...]
 
+    @property
+    def relative(self) -> bool:
+        """Whether a ratio of two values means anything."""
+        return self.output.key not in DATUM
+
     def changes(self) -> tuple[float, ...]:
-        """Relative difference of every side from the first, nan where either has no value or the first is zero."""
+        """Difference of every side from the first: over the first where `relative`, else in SI; nan where there is none."""
         first = self.values[0]
+        if not self.relative:
+            return tuple(v - first for v in self.values)
         return tuple((v - first) / abs(first) if first else math.nan for v in self.values)
 
 
@@ -47,7 +59,8 @@ class Setting:
 
 @dataclass(frozen=True, slots=True)
 class Comparison:
-    """What `compare` found. headline and stations hold every figure that any side has; settings only those that differ;
+    """What `compare` found. headline and stations hold every figure that any side has
+    (but for enthalpy and entropy where the gas models have different datums); settings only those that differ;
     notes: sentences on what limits the comparison."""
 
     sides: tuple[Side, ...]
@@ -67,10 +80,15 @@ def compare(sides: Sequence[Side]) -> Comparison:
     outputs = [o for o in OUTPUTS if o.where == "performance"]
     headline = _figures(outputs, "", [side.walk["performance"] for side in sides])
     stations: list[Figure] = []
-    figures = [o for o in OUTPUTS if o.where == "station"]
+    figures = [o for o in OUTPUTS if o.where == "station" and not (o.key in _GAS_DATUM and _datums(sides) > 1)]
     for name in station_names(sides):
         stations += _figures(figures, name, [side.walk["stations"].get(name, {}) for side in sides])
     return Comparison(tuple(sides), tuple(headline), tuple(stations), _settings(sides), tuple(_notes(sides)))
+
+
+def _datums(sides: Iterable[Side]) -> int:
+    """How many enthalpy and entropy datums there are: constant gamma has its own."""
+    return len({side.walk["case"].get("gas", {}).get("model") == "constant-gamma" for side in sides})
 
 
 def station_names(sides: Iterable[Side]) -> tuple[str, ...]:
@@ -98,6 +116,8 @@ def _notes(sides: Sequence[Side]) -> Iterable[str]:
         yield "The walks were computed by different versions: " + _each(sides, lambda s: s.version) + "."
     if len({s.species_data for s in sides}) > 1:
         yield "The walks were computed with different species data: " + _each(sides, lambda s: s.species_data[:12]) + "."
+    if _datums(sides) > 1:
+        yield "Enthalpy and entropy are not compared: constant gamma has a datum of its own."
     modes = {(s.walk["status"], s.walk["mode"]) for s in sides}
     if len(modes) > 1:
         yield "The walks differ in status or mode: " + _each(sides, lambda s: f"{s.walk['status']}, {s.walk['mode']}") + "."

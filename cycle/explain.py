@@ -15,7 +15,7 @@ from cycle.quantities import GROUPS, INPUTS, MODES, OUTPUTS, STATUSES, Group, In
 from cycle.units import si_unit
 
 if TYPE_CHECKING:
-    from cycle.walk import Walk
+    from cycle.result import Walk
 
 CONSTANTS: dict[str, tuple[float, str, str]] = {
     "g0": (STANDARD_GRAVITY, "m/s2", "standard gravity"),
@@ -115,10 +115,17 @@ def find(name: str) -> tuple[Entry, ...]:
         found = tuple(entry for entry in _ENTRIES if name.strip() and way(entry, name))
         if found:
             return found
-    names = {n.lower(): n for entry in _ENTRIES for n in (_label(entry), _symbol(entry), _key(entry)) if n}
-    names |= {_key(i).split(".")[1]: _key(i) for i in INPUTS}
-    near = difflib.get_close_matches(name.strip().lower().replace(" ", "_")[:80], names, 3, 0.6)
-    raise UnknownQuantityError(name, tuple(dict.fromkeys(names[n] for n in near)))
+    raise UnknownQuantityError(name, _nearest(name))
+
+
+def _nearest(name: str) -> tuple[str, ...]:
+    """Keys of entries with a name close to `name`, the closest first."""
+    keys: dict[str, str] = {}
+    for entry in _ENTRIES:
+        for known in (_key(entry).split(".")[-1], _label(entry), _symbol(entry), _key(entry)):
+            keys.setdefault(_long(known), _key(entry))
+    near = difflib.get_close_matches(_long(name)[:80], [n for n in keys if n], 3, 0.7)
+    return tuple(dict.fromkeys(keys[n] for n in near))
 
 
 def related(entry: Entry) -> tuple[Entry, ...]:

@@ -19,7 +19,7 @@ from cycle.units import si_unit
 
 if TYPE_CHECKING:
     from cycle.case import Case
-    from cycle.walk import Walk
+    from cycle.result import Walk
 
 FORMAT = 1
 KIND = "stored walk"
@@ -108,12 +108,12 @@ def _process(process: Any) -> Json:
 
 
 def _row(row: Any) -> Json:
-    return {"key": row.key, "label": row.label, "value": _number(row.value), "unit": si_unit(row.unit), "note": row.note}
+    return {"key": row.key, "label": row.label, "value": _number(row.value), "unit": si_unit(row.unit)}
 
 
 def _limit(limit: Any) -> Json:
     numbers = {key: _number(getattr(limit, key)) for key in ("actual", "allowed", "margin")}
-    words = {"state": limit.state, "restore": limit.restore, "input": limit.input}
+    words = {"upper": limit.upper, "state": limit.state, "restore": limit.restore, "input": limit.input}
     return {"key": limit.key, "label": limit.label, "unit": si_unit(limit.unit), **numbers, **words}
 
 

@@ -13,7 +13,6 @@ from cycle import account, audit, emit, limits
 from cycle.account import spread, usable
 from cycle.arrays import Array, ArrayLike
 from cycle.figures import Figures, Station, shaped
-from cycle.flow import states
 from cycle.flowpath.setting import FIXED_IN_BATCH, setting
 from cycle.flowpath.stream import SOLVED, STATUS_NAMES
 from cycle.gas.state import State
@@ -157,11 +156,7 @@ class Walk:
 
     @cached_property
     def _critical(self) -> dict[str, State]:
-        found = {}
-        for name, record in self._records.items():
-            s = record.stream
-            found[name] = states.sonic(s.gas, s.total_enthalpy, s.state.entropy, s.state)
-        return found
+        return account.criticals(self.march, tuple(self._records)) if self._records else {}
 
     @cached_property
     def station(self) -> dict[str, Station]:

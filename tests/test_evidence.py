@@ -33,7 +33,7 @@ def test_nothing_that_only_memory_holds_is_classed_higher() -> None:
 
 
 def test_an_unknown_topic_is_named_in_the_error() -> None:
-    with pytest.raises(ValueError, match="no evidence on topic 'z'; topics: a2?, "):
+    with pytest.raises(ValueError, match=r"no evidence on topic 'z'; topics: a2?, "):
         evidence.checks("z")
 
 

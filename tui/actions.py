@@ -10,7 +10,8 @@ class Action:
     """One thing a user can ask for.
 
     name: the handler is `do_<name>` of the screen, and the id that a keymap uses; keys: names of keys; shown: the keys
-    as printed; label: a word or two for the line of keys, "" to leave it out there; help: one line.
+    as printed; label: a word or two for the line of keys, "" to leave it out there; rank: which go first where the line is
+    short; help: one line.
     """
 
     name: str
@@ -19,6 +20,7 @@ class Action:
     label: str
     help: str
     group: str
+    rank: int = 2
 
 
 WALK, EDIT, COMPARE, FILE, PROGRAM = "walking", "editing", "comparing", "case file", "program"
@@ -32,24 +34,24 @@ ACTIONS: tuple[Action, ...] = (
     Action("page_down", ("pagedown",), "PgDn", "", "rows of the table a page down", WALK),
     Action("first", ("home",), "Home", "", "the first station", WALK),
     Action("last", ("end",), "End", "", "the last station", WALK),
-    Action("focus", ("tab", "shift+tab"), "Tab", "inputs", "between the table and the inputs of the component in hand", WALK),
-    Action("edit", ("enter",), "Enter", "edit", "open the input in hand; a choice goes on to its next one", EDIT),
+    Action("focus", ("tab", "shift+tab"), "Tab", "inputs", "between the table and the inputs of the component in hand", WALK, 1),
+    Action("edit", ("enter",), "Enter", "edit", "open the input in hand; a choice goes on to its next one", EDIT, 1),
     Action("cycle", ("space",), "Space", "", "next choice of the input in hand", EDIT),
-    Action("more", ("plus", "equals_sign"), "+", "", "one step up, by the step declared for the input", EDIT),
-    Action("less", ("minus",), "-", "step", "one step down", EDIT),
+    Action("more", ("plus", "equals_sign"), "+ -", "step", "one step up, by the step declared for the input", EDIT, 1),
+    Action("less", ("minus",), "-", "", "one step down", EDIT),
     Action("ways", ("o",), "o", "other way", "say the same by another quantity; the walk keeps its value", EDIT),
     Action("default", ("delete",), "Del", "", "take the value back: the default holds, or none", EDIT),
-    Action("undo", ("u",), "u", "undo", "take back the last edit, without end", EDIT),
+    Action("undo", ("u",), "u", "undo", "take back the last edit, without end", EDIT, 1),
     Action("redo", ("U", "shift+u"), "U", "redo", "bring back an edit taken back", EDIT),
-    Action("pin", ("p",), "p", "pin", "pin this walk: changes are shown against it", COMPARE),
+    Action("pin", ("p",), "p", "pin", "pin this walk: changes are shown against it", COMPARE, 1),
     Action("view", ("v",), "v", "change", "cells as figures, as change against the pin, as change in percent", COMPARE),
     Action("why", ("w",), "w", "limits", "limits by margin and what restores them, audit, referee, thrust", COMPARE),
     Action("referee", ("r",), "r", "referee", "ask an independent equilibrium code about the states", COMPARE),
     Action("units", ("t",), "t", "units", "SI or US customary", COMPARE),
-    Action("save", ("s",), "s", "save", "save the case; comments and order of the file stay", FILE),
+    Action("save", ("s",), "s", "save", "save the case; comments and order of the file stay", FILE, 1),
     Action("save_as", ("S", "shift+s"), "S", "", "save under another name", FILE),
     Action("redraw", ("ctrl+l",), "Ctrl-L", "", "paint the whole screen afresh", PROGRAM),
     Action("suspend", ("ctrl+z",), "Ctrl-Z", "", "suspend to the shell; fg comes back", PROGRAM),
-    Action("help", ("question_mark", "f1"), "?", "keys", "this list of keys", PROGRAM),
-    Action("leave", ("q", "ctrl+q"), "q", "leave", "leave; unsaved work is kept and offered next time", PROGRAM),
+    Action("help", ("question_mark", "f1"), "?", "keys", "this list of keys", PROGRAM, 0),
+    Action("leave", ("q", "ctrl+q"), "q", "leave", "leave; unsaved work is kept and offered next time", PROGRAM, 0),
 )  # fmt: skip

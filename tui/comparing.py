@@ -8,12 +8,12 @@ from collections.abc import Iterable
 
 import cycle
 from cycle.case import loads
-from cycle.compare import Comparison, Figure, Setting, Side, compare, station_names
+from cycle.compare import DATUM, Comparison, Figure, Setting, Side, compare, station_names
 from cycle.errors import CaseError, DuctwalkError
 from cycle.gas.species import data_hash
 from cycle.quantities import Output
 from cycle.record import LARGEST_FILE, is_stored, read_stored, record
-from cycle.units import format_number
+from cycle.units import display_unit, format_number
 from tui.output import emit, read_content, tell
 from tui.solve import AUDIT_FAILED, BAD_INPUT, NO_SOLUTION, SOLVED
 from tui.tables import Block, Heading, Lines, Table, as_text
@@ -65,7 +65,7 @@ def comparison_blocks(found: Comparison, system: str) -> list[Block]:
     blocks += [Heading("Inputs that differ"), _settings(found.settings, letters, system)]
     blocks += [Heading("Performance"), _headline(found.headline, letters, system)]
     for i in range(1, len(found.sides)):
-        blocks += [Heading(f"Stations: change from A to {letters[i]}, %"), _station_changes(found, i)]
+        blocks += [Heading(f"Stations: change from A to {letters[i]}, % or in the unit named"), _station_changes(found, i, system)]
     return [*blocks, Heading("Caution"), Lines((CAUTION,))]
 
 
@@ -98,14 +98,29 @@ def _cells(row: Figure, i: int, system: str) -> tuple[str, ...]:
     return (value,) if i == 0 else (value, percent(row.changes()[i]))
 
 
-def _station_changes(found: Comparison, i: int) -> Block:
+def _station_changes(found: Comparison, i: int, system: str) -> Block:
     names = station_names(found.sides)
-    table: dict[Output, dict[str, float]] = {}
+    table: dict[Output, dict[str, str]] = {}
     for row in found.stations:
-        table.setdefault(row.output, {})[row.station] = row.changes()[i]
-    rows = [(o.label, *(percent(changes.get(n, math.nan)) for n in names)) for o, changes in table.items()]
+        table.setdefault(row.output, {})[row.station] = _change(row, i, system)
+    rows = [(_change_name(o, system), *(cells.get(n, "-") for n in names)) for o, cells in table.items()]
     shown = tuple(row for row in rows if any(cell not in ("-", "0") for cell in row[1:]))
     return Table(("station", *names), shown) if shown else Lines(("none",))
+
+
+def _change_name(output: Output, system: str) -> str:
+    return named(output.label, output.unit, system, output.key) if output.key in DATUM else output.label
+
+
+def _change(row: Figure, i: int, system: str) -> str:
+    change = row.changes()[i]
+    if row.relative:
+        return percent(change)
+    size = max(abs(value) for value in row.values if not math.isnan(value))
+    if abs(change) <= LEAST_CHANGE * size:
+        return "0"
+    text = format_number(change / display_unit(row.output.unit, system, row.output.key).factor, 3)
+    return "+" + text if change > 0.0 else text
 
 
 def percent(change: float) -> str:

@@ -16,7 +16,7 @@ from tui.tables import Block, Heading, Lines, Table, as_text
 from tui.text import input_text
 
 if TYPE_CHECKING:
-    from cycle.walk import Walk
+    from cycle.result import Walk
 
 _DIGITS = 6
 

@@ -113,13 +113,10 @@ def take(walk: Any) -> Figures:
         fractions={s: {x: float(v) for x, v in walk.station[s].mole_fractions.items()} for s in stations},
         performance=performance,
         why_not={k: str(walk.why_not(k)) for k, v in performance.items() if v != v},
-        passages=tuple(
-            Passage(p.name, p.label, p.start, p.end, {k: float(v) for k, v in p.figures.items()}) for p in walk.processes
-        ),
+        passages=tuple(Passage(p.name, p.label, p.start, p.end, {k: float(v) for k, v in p.figures.items()}) for p in walk.processes),
         potentials=tuple(Share(r.label, float(r.value), r.unit) for r in walk.potentials),
         limits=tuple(
-            Margin(m.label, m.state, float(m.margin), float(m.actual), float(m.allowed), m.unit, m.restore, m.input)
-            for m in walk.limits
+            Margin(m.label, m.state, float(m.margin), float(m.actual), float(m.allowed), m.unit, m.restore, m.input) for m in walk.limits
         ),
         audit_ok=bool(walk.audit.ok),
         audit=_audit_words(walk),

@@ -214,3 +214,13 @@ def bounds(spec: Input, system: str) -> str:
     unit = show(0.0, spec.unit, system, spec.key)[1]
     step = show(spec.step, spec.unit, system, spec.key)[0] - show(0.0, spec.unit, system, spec.key)[0]
     return f"{' to '.join(shown)} {unit}".strip() + f", step {format_number(step, 3)}"
+
+
+def describe(before: Case, after: Case, change: Change, system: str) -> str:
+    """Words for an edit: the input's label with its old and new value, or the way a group is said now."""
+    if "switch" in change:
+        group, tag, _ = change["switch"]
+        return f"{GROUP[group].meaning} by {way_label(group, tag)}"
+    key = next(iter(change["set"]))
+    old, new = (next((written(s, system) for s in c.inputs() if s.input.key == key), "-") for c in (before, after))
+    return f"{INPUT[key].label} {old} -> {new}"

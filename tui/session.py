@@ -122,11 +122,9 @@ def _with_case(session: Session, case: Case, note: str) -> Session:
     )
 
 
-def edited(session: Session, change: Change, words: str) -> Session:
-    """The session after an edit. Errors: CaseError, the session as it was stays good."""
-    assert session.case is not None
-    case = apply(session.case, change)
-    if case == session.case:
+def edited(session: Session, case: Case, words: str) -> Session:
+    """The session after an edit that gave `case`; words: what the undo list says of it."""
+    if session.case is None or case == session.case:
         return replace(session, entry=None, note="")
     past = (*session.past, Past(session.case, words))
     return replace(_with_case(session, case, ""), past=past, future=())
@@ -183,9 +181,7 @@ def columns_of(case: Case | None) -> tuple[str, ...]:
     first = "0" if entry is None else str(entry)
     last = "4" if case.choices.get("nozzle.exit") == "absent" else "10"
     throat = case.value("nozzle.throat") == "sized"
-    return tuple(
-        s for s in STATIONS if int(first) <= int(s) <= int(last) and (s != "5" or throat)
-    )
+    return tuple(s for s in STATIONS if int(first) <= int(s) <= int(last) and (s != "5" or throat))
 
 
 def performance_keys(session: Session) -> tuple[str, ...]:

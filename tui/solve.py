@@ -21,7 +21,7 @@ from tui.tables import as_markdown, as_text
 from tui.text import audit_words, headline_words, walk_blocks
 
 if TYPE_CHECKING:
-    from cycle.walk import Walk
+    from cycle.result import Walk
 
 SOLVED, BAD_INPUT, NO_SOLUTION, AUDIT_FAILED = 0, 2, 3, 4
 

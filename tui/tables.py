@@ -73,7 +73,7 @@ class Lines:
 
     def text(self) -> list[str]:
         """Lines of at most 80 columns."""
-        return [line for sentence in self.sentences for line in wrap(sentence, WIDTH, _INDENT)]
+        return [_INDENT + line for sentence in self.sentences for line in wrap(sentence, WIDTH - len(_INDENT), _INDENT)]
 
     def markdown(self) -> list[str]:
         """Lines of Markdown."""
@@ -100,8 +100,9 @@ class Table:
             widths[self.wrapped] = min(max(widths[self.wrapped], 1), max(room, _NARROWEST))
         gap = 2 if len(_blocks(widths, 2)) == 1 else 1
         lines: list[str] = []
+        shown = table if any(self.header) else table[1:]
         for block in _blocks(widths, gap):
-            lines += ([""] if lines else []) + [line for row in table for line in self._lines(row, widths, block, gap)]
+            lines += ([""] if lines else []) + [line for row in shown for line in self._lines(row, widths, block, gap)]
         return lines
 
     def markdown(self) -> list[str]:
@@ -114,8 +115,11 @@ class Table:
         return column == 0 or column in self.left or column == self.wrapped
 
     def _cells(self) -> list[list[str]]:
-        limits = [10 * WIDTH if i == self.wrapped else _LONGEST_CELL for i in range(len(self.header))]
-        return [[clip(plain(c), n) for c, n in zip(row, limits, strict=True)] for row in (self.header, *self.rows)]
+        whole = [[plain(cell) for cell in row] for row in (self.header, *self.rows)]
+        natural = sum(max(columns(row[i]) for row in whole) for i in range(len(self.header)) if i != self.wrapped)
+        if natural + len(_INDENT) + 2 * len(self.header) + _NARROWEST <= WIDTH:
+            return whole
+        return [[c if i == self.wrapped else clip(c, _LONGEST_CELL) for i, c in enumerate(row)] for row in whole]
 
     def _lines(self, row: Sequence[str], widths: Sequence[int], block: Sequence[int], gap: int) -> list[str]:
         split = {i: wrap(row[i], widths[i]) if i == self.wrapped else [row[i]] for i in block}

@@ -6,15 +6,15 @@ import math
 from collections.abc import Callable, Iterable, Mapping
 from typing import TYPE_CHECKING, Any
 
-from cycle.quantities import MODES, OUTPUTS, STATUSES, Input, Output
+from cycle.quantities import MODES, OUTPUTS, Input, Output
 from cycle.units import display_unit, format_number, show
 from tui.tables import Block, Heading, Lines, Table
 
 if TYPE_CHECKING:
     from cycle.case import Stated
-    from cycle.walk import Walk
+    from cycle.result import Walk
 
-CAUTION = "Preliminary-design estimate; not for hardware, flight-safety or certification decisions without independent verification."
+CAUTION = "Preliminary-design estimate; not for hardware or flight-safety decisions."
 LEAST_SHOWN = 1e-4
 """Mole fraction from which on a species has a row."""
 
@@ -64,8 +64,7 @@ def headline_words(walk: Walk) -> str:
     """One sentence: the mode found, or why there is no solution."""
     if walk.status == "solved":
         return f"Solved. Mode {walk.mode}: {MODES[walk.mode]}."
-    failed = f" in the {walk.failed_process}" if walk.failed_process else ""
-    return f"NO SOLUTION, {walk.status}{failed}: {walk.reason or STATUSES[walk.status]}"
+    return f"NO SOLUTION, {walk.status}: {walk.reason}"
 
 
 def _opening(walk: Walk, system: str) -> Iterable[Block]:
@@ -83,7 +82,8 @@ def _headline(walk: Walk, system: str) -> Iterable[Block]:
     if known:
         rows = ((o.label, o.symbol, figure(values[o.key], o.unit, system, o.key), unit_label(o.unit, system, o.key)) for o in known)
         yield Table(("", "symbol", "value", "unit"), tuple(rows), left=(1, 3))
-    yield Lines(tuple(_missing(walk, [o for o in outputs if o not in known])))
+    missing = tuple(_missing(walk, [o for o in outputs if o not in known])) if walk.status == "solved" else ("no solution",)
+    yield Lines(missing)
 
 
 def _missing(walk: Walk, outputs: Iterable[Output]) -> Iterable[str]:
@@ -136,8 +136,8 @@ def _processes(walk: Walk, system: str) -> Iterable[Block]:
 
 
 def _rows(rows: Iterable[Any], system: str) -> Table:
-    cells = ((r.label, figure(r.value, r.unit, system), unit_label(r.unit, system), r.note) for r in rows)
-    return Table(("", "value", "unit", "note"), tuple(cells), left=(2,), wrapped=3)
+    cells = ((r.label, figure(r.value, r.unit, system), unit_label(r.unit, system)) for r in rows)
+    return Table(("", "value", "unit"), tuple(cells), left=(2,))
 
 
 def _potentials(walk: Walk, system: str) -> Iterable[Block]:
@@ -166,12 +166,16 @@ def _limits(walk: Walk, system: str) -> Iterable[Block]:
 
 
 def limit_words(limit: Any, system: str) -> str:
-    """A limit as a sentence: its state, what is, what is allowed, the margin, and what would restore it."""
+    """A limit as a sentence: its state, what is, what is allowed, the margin, and where it matters what would restore it."""
     if limit.state == "not assessed":
-        return f"not assessed: {limit.label}. {limit.restore}".rstrip(" .") + "."
-    state = limit.state.upper() if limit.state == "over" else limit.state
+        return f"not assessed: {limit.label}: {limit.restore}"
     actual, allowed = (with_unit(v, limit.unit, system) for v in (limit.actual, limit.allowed))
-    return f"{state}: {limit.label} {actual}, allowed {allowed}, margin {100 * limit.margin:+.1f} %. {limit.restore}".rstrip()
+    bound = "at most" if limit.upper else "at least"
+    words = f"{_STATES[limit.state]}: {limit.label}: {actual}, {bound} {allowed}, margin {100 * limit.margin:+.1f} %"
+    return words if limit.state == "ok" else f"{words}; to restore it: {limit.restore}"
+
+
+_STATES = {"ok": "ok", "near": "near", "over": "OVER"}
 
 
 def _checks(walk: Walk, referee: bool) -> Iterable[Block]:

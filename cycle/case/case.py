@@ -145,7 +145,7 @@ class Case:
     def _switch_off(self, group: Group, tag: str) -> Case:
         if tag != group.default:
             raise self._fault(group.name, "unknown choice", shown(tag), ", ".join(self.alternatives(group.name)))
-        return self.replace({key: None for key in rules.keys_of(group)})
+        return self.replace(dict.fromkeys(rules.keys_of(group)))
 
     def _fault(self, key: str, text: str, given: str, allowed: str) -> CaseError:
         return CaseError([Fault(self.path or self.name, key, text, given, allowed)])

@@ -10,6 +10,7 @@ from typing import TYPE_CHECKING, Any
 from cycle.case.rules import JOINT_RULES, Facts, Resolved, bounds, resolve
 from cycle.errors import MOST_FAULTS, CaseError, Fault, shown
 from cycle.quantities import INPUT, INPUTS, LATER, SECTIONS, Input
+from cycle.units import format_number, read, si_unit
 
 if TYPE_CHECKING:
     from cycle.case.schema import Problem
@@ -191,8 +192,6 @@ def _out_of_bounds(problem: Problem, key: str) -> Fault:
 def _given_number(given: object, entry: Input | None) -> str:
     if entry is None or not isinstance(given, str):
         return shown(given)
-    from cycle.units import format_number, read, si_unit
-
     return f"{shown(given)}, which is {format_number(read(given, entry.unit), 6)} {si_unit(entry.unit)}".rstrip()
 
 

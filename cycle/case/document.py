@@ -69,9 +69,9 @@ def _leaves(data: Mapping[str, Any]) -> dict[Path, Any]:
 
 def _wanted(case: Case, old: Mapping[Path, Any]) -> dict[Path, Any]:
     data: dict[str, Any] = {"format": FORMAT}
-    for name, value, default in (("title", case.title, "untitled"), ("notes", case.notes, "")):
-        if value != default or (name,) in old:
-            data[name] = value
+    for name, text, default in (("title", case.title, "untitled"), ("notes", case.notes, "")):
+        if text != default or (name,) in old:
+            data[name] = text
     for key, value in case.spelled.items():
         section, _, name = key.partition(".")
         data.setdefault(section, {})[name] = thawed(value)

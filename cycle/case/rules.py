@@ -9,6 +9,7 @@ from graphlib import TopologicalSorter
 
 from cycle.errors import Fault
 from cycle.quantities import GROUP, GROUPS, INPUT, INPUTS, Group, Input, Member
+from cycle.units import format_number, si_unit
 
 When = tuple[tuple[str, tuple[str, ...]], ...]
 Choices = Mapping[str, str | None]
@@ -114,14 +115,24 @@ def _names(members: Iterable[Member]) -> str:
     return ", ".join(" + ".join(INPUT[k].name for k in m.keys) for m in members)
 
 
-def _one_of(group: Group, choices: Choices) -> str:
-    tags = alternatives(group, choices)
-    how = "exactly one of" if group.required else "at most one of"
-    return f"{how} {_names(m for m in group.members if m.tag in tags)}"
-
-
-def _section(group: Group) -> str:
+def section_of(group: Group) -> str:
+    """Table of the case file that holds a group's keys."""
     return group.name.split(".")[0]
+
+
+def _one_of(group: Group, members: Iterable[Member]) -> str:
+    return f"{'exactly' if group.required else 'at most'} one of {_names(members)}"
+
+
+def ways(group: Group) -> str:
+    """One line that says what a group is for and by which keys it may be given."""
+    default = f"; {group.default} when none is given" if group.default else ""
+    return f"{group.meaning}: {_one_of(group, group.members)}{default}"
+
+
+def _allowed(group: Group, choices: Choices) -> str:
+    tags = alternatives(group, choices)
+    return _one_of(group, [m for m in group.members if m.tag in tags])
 
 
 def _resolve_group(group: Group, given: Mapping[str, object], choices: Choices) -> tuple[str | None, list[Fault]]:
@@ -130,14 +141,14 @@ def _resolve_group(group: Group, given: Mapping[str, object], choices: Choices) 
     if len(present) > 1:
         keys = [INPUT[k].name for m in present for k in m.keys if k in given]
         text = f"{group.meaning} is stated more than once"
-        return None, [Fault("", _section(group), text, ", ".join(dict.fromkeys(keys)), _one_of(group, choices))]
+        return None, [Fault("", section_of(group), text, ", ".join(dict.fromkeys(keys)), _allowed(group, choices))]
     if present:
         return present[0].tag, _missing_partners(present[0], given)
     if group.default is not None:
         return group.default, []
     if undecided or not group.required:
         return None, []
-    return None, [Fault("", _section(group), f"{group.meaning} is not stated", "none", _one_of(group, choices))]
+    return None, [Fault("", section_of(group), f"{group.meaning} is not stated", "none", _allowed(group, choices))]
 
 
 def _missing_partners(member: Member, given: Mapping[str, object]) -> list[Fault]:
@@ -261,8 +272,6 @@ def _wanted(name: str, allowed: tuple[str, ...]) -> str:
 
 def bounds(entry: Input) -> str:
     """What an input may be, in words: choices, or bounds with the SI unit."""
-    from cycle.units import format_number, si_unit
-
     if entry.kind != "number":
         return _KINDS[entry.kind] if entry.kind in _KINDS else ", ".join(entry.choices)
     limits = (("above", entry.above), ("at least", entry.lower), ("below", entry.below), ("at most", entry.upper))

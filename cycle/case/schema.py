@@ -13,9 +13,9 @@ from pydantic.json_schema import JsonSchemaValue
 from pydantic_core import CoreSchema, PydanticCustomError
 
 from cycle.case.checking import FORMAT
-from cycle.case.rules import bounds
+from cycle.case.rules import bounds, section_of, ways
 from cycle.errors import UnitError
-from cycle.quantities import GROUPS, INPUT, INPUTS, SECTIONS, Input
+from cycle.quantities import GROUPS, INPUTS, SECTIONS, Input
 from cycle.units import LONGEST, UNITS, read
 
 SPECIES = ("N2", "O2", "Ar", "CO2", "CO", "H2O", "H2", "OH", "H", "O", "N", "NO", "NO2", "N2O", "CH4")
@@ -62,9 +62,8 @@ def _reader(dimension: str) -> Any:
 
 
 def _number(entry: Input) -> Any:
-    limits = {"gt": entry.above, "ge": entry.lower, "lt": entry.below, "le": entry.upper}
-    given = {name: limit for name, limit in limits.items() if limit is not None}
-    return Annotated[float, Field(**given), _reader(entry.unit), _Quantity(entry.unit)]  # type: ignore[arg-type]
+    field = Field(gt=entry.above, ge=entry.lower, lt=entry.below, le=entry.upper)
+    return Annotated[float, field, _reader(entry.unit), _Quantity(entry.unit)]
 
 
 def _choice(entry: Input) -> Any:
@@ -102,12 +101,7 @@ def _field(entry: Input) -> Any:
 
 
 def _section_words(section: str) -> str:
-    words = []
-    for group in GROUPS:
-        if group.name.split(".")[0] == section:
-            how = "exactly one of" if group.required else "at most one of"
-            words.append(f"{group.meaning}: {how} {', '.join(' + '.join(INPUT[k].name for k in m.keys) for m in group.members)}.")
-    return " ".join(words) or f"Table [{section}]."
+    return " ".join(f"{ways(group)}." for group in GROUPS if section_of(group) == section) or f"Table [{section}]."
 
 
 def _section(section: str) -> type[BaseModel]:

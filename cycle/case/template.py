@@ -5,8 +5,8 @@ from __future__ import annotations
 import textwrap
 
 from cycle.case.checking import FORMAT
-from cycle.case.rules import bounds
-from cycle.quantities import GROUPS, INPUT, INPUTS, SECTIONS, Group, Input
+from cycle.case.rules import bounds, section_of, ways
+from cycle.quantities import GROUPS, INPUTS, SECTIONS, Input
 
 _WIDTH = 100
 
@@ -77,16 +77,9 @@ _STUDY = """
 def _section(section: str, values: dict[str, str]) -> str:
     entries = [i for i in INPUTS if i.section == section]
     used = any(i.key in values for i in entries)
-    groups = [_comment(_group_words(g)) for g in GROUPS if g.name.split(".")[0] == section]
+    groups = [_comment(ways(g)) for g in GROUPS if section_of(g) == section]
     lines = [f"{'' if used else '# '}[{section}]", *groups, *(_entry(i, values) for i in entries)]
     return "\n".join(lines) + "\n"
-
-
-def _group_words(group: Group) -> str:
-    ways = " | ".join(" + ".join(INPUT[k].name for k in m.keys) for m in group.members)
-    how = "exactly one of" if group.required else "at most one of"
-    default = f"; {group.default} when none is given" if group.default else ""
-    return f"{group.meaning}: {how} {ways}{default}"
 
 
 def _comment(text: str) -> str:

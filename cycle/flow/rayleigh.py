@@ -114,11 +114,12 @@ def mach_from_total_temperature(ratio: ArrayLike, gamma: ArrayLike, supersonic: 
     Source: Shapiro (1953), ch. 7: the ratio is a quadratic in M^2, solved without cancellation.
     """
     tau, g = operands(ratio, gamma)
-    tau = np.where(tau <= 1.0, tau, np.nan)
+    least = hypersonic_total_temperature_ratio(g) if supersonic else -np.inf
+    tau = np.where((tau > least) & (tau <= 1.0), tau, np.nan)
     root = (g + 1.0) * np.sqrt(1.0 - tau)
     with np.errstate(divide="ignore", invalid="ignore"):
         square = tau / (g + 1.0 - tau * g - root if supersonic else g + 1.0 - tau * g + root)
-        return np.sqrt(np.where((square >= 0.0) & np.isfinite(square), square, np.nan))
+        return np.sqrt(square)
 
 
 def mach_from_pressure(ratio: ArrayLike, gamma: ArrayLike) -> Array:

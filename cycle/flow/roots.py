@@ -60,13 +60,15 @@ def bracketed(function: Valued, lower: ArrayLike, upper: ArrayLike, tolerance: f
     """Root inside a bracket when the slope is not known: inverse quadratic steps, bisection where they fail.
 
     function: x (N,) -> value (N,), of opposite sign (or zero) at `lower` and `upper`. lower, upper: (N,).
-    tolerance: half-width of the final bracket relative to the root, 1.
+    tolerance: half-width of the final bracket relative to the root, 1 (a root at zero: relative to `tolerance`
+    times the first bracket).
     Returns (N,), the root; NaN without a change of sign or where an input is NaN.
     Source: T. R. Chandrupatla, Advances in Engineering Software 28 (1997) 145.
     """
     a, b = _common(upper, lower)
     fa, fb = function(a), function(b)
     c, fc = a, fa
+    smallest = tolerance * np.abs(a - b)
     fraction = np.full(a.shape, 0.5)
     signed = np.sign(fa) * np.sign(fb) <= 0.0
     done = ~signed
@@ -81,7 +83,7 @@ def bracketed(function: Valued, lower: ArrayLike, upper: ArrayLike, tolerance: f
         nearer = np.abs(fa) < np.abs(fb)
         best, least = np.where(nearer, a, b), np.where(nearer, fa, fb)
         root = np.where(done, root, best)
-        allowed = tolerance * np.abs(best) / np.abs(b - c)
+        allowed = tolerance * np.maximum(np.abs(best), smallest) / np.abs(b - c)
         done = done | (allowed > 0.5) | (least == 0.0) | (a == b)
         if done.all():
             break

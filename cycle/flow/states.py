@@ -88,3 +88,18 @@ def at_flux(
         slow = velocity(total_enthalpy, state) <= state.sound_speed * (1.0 + 1e-6)
     passes = flux <= limit * (1.0 + 1e-10)
     return state.flagged(passes & ~np.where(supersonic, fast, slow), NOT_CONVERGED), passes
+
+
+def expanded_to_flux(gas: Gas, total_enthalpy: Array, entropy: Array, flux: Array, before: State) -> State:
+    """Supersonic state (N,) where the stream (ht, s), sonic or supersonic in `before`, has widened to `flux` kg/(s m2).
+
+    The flux must not exceed that of `before`; no sonic state is needed. Start as in `at_flux`.
+    """
+    g = before.isentropic_exponent
+    mach = np.maximum(velocity(total_enthalpy, before) / before.sound_speed, 1.0)
+    ratio = isentropic.area_ratio(mach, g) * before.density * velocity(total_enthalpy, before) / flux
+    wide = isentropic.supersonic_mach(np.maximum(ratio, 1.0), g)
+    relative = (1.0 + 0.5 * (g - 1.0) * wide**2) / (1.0 + 0.5 * (g - 1.0) * mach**2)
+    with np.errstate(all="ignore"):
+        guess = gas.at("sp", entropy, before.pressure * relative ** (-g / (g - 1.0)), start=before)
+        return gas.at("flux", entropy, total_enthalpy, flux, start=guess)

@@ -36,12 +36,15 @@ def _composition(setting: Setting, T: Array, p: Array) -> Mapping[str, Array | f
     return moist
 
 
-def entering_gas(setting: Setting, T: Array, p: Array) -> Gas:
-    """The gas that enters: at constant gamma the compression pair, else the air of the case at T, p (N,)."""
+def _air(setting: Setting, T: Array, p: Array, model: str) -> Gas:
     if setting.table is None:
         return ConstantGas(setting["gas.cp_compression"], setting["gas.gas_constant"])
-    model = setting.choices.get("inlet.chemistry", setting.choices["gas.model"])
     return air_gas(setting.table, _composition(setting, T, p), model, setting.size)
+
+
+def entering_gas(setting: Setting, T: Array, p: Array) -> Gas:
+    """The gas that enters: at constant gamma the compression pair, else the air of the case at T, p (N,)."""
+    return _air(setting, T, p, setting.choices.get("inlet.chemistry", setting.choices["gas.model"]))
 
 
 def _speed(setting: Setting, state: State) -> Array:
@@ -64,12 +67,15 @@ def _at_altitude(setting: Setting) -> tuple[Array, Array]:
 
 
 def _at_dynamic_pressure(setting: Setting) -> tuple[Array, Array]:
-    """Altitude where rho u^2/2 is the one asked for; secant in altitude from an isothermal guess."""
+    """Altitude where rho u^2/2 is the one asked for; secant in altitude from an isothermal guess.
+
+    Standard air is too cold to react, so the search holds its composition in any gas model.
+    """
     asked = setting["flight.dynamic_pressure"]
 
     def excess(z: Array) -> Array:
         T, p = _standard(setting, z)
-        state = entering_gas(setting, T, p).at("tp", T, p)
+        state = _air(setting, T, p, "frozen").at("tp", T, p)
         return np.log(0.5 * state.density * _speed(setting, state) ** 2 / asked)
 
     top = np.full(setting.size, 86e3)

@@ -7,7 +7,7 @@ from dataclasses import replace
 
 import numpy as np
 
-from cycle.arrays import Array, Flags
+from cycle.arrays import Array
 from cycle.flow import states
 from cycle.flowpath.setting import Setting
 from cycle.flowpath.stream import Process, Step, Stream, status_of, stream
@@ -84,35 +84,29 @@ def _expanded(entering: Stream, setting: Setting, pressure: Array, start: State)
     return entering.gas.at("hp", h, pressure, start=ideal)
 
 
-def _to_area(entering: Stream, setting: Setting, area: Array) -> tuple[State, Flags]:
-    """Supersonic state that fills `area` (N,): closed isentropic first, then the pressure that keeps the mass flow."""
-    critical = states.sonic(entering.gas, entering.total_enthalpy, entering.state.entropy, entering.state)
-    flux = entering.mass_flow / area
-    fast = np.ones(area.shape, np.bool_)
-    state, passes = states.at_flux(entering.gas, entering.total_enthalpy, entering.state.entropy, flux, fast, critical)
+def _to_area(entering: Stream, setting: Setting, area: Array) -> State:
+    """Supersonic state that fills `area` (N,), not below the entering one: isentropic first, then the pressure at which
+    the real expansion keeps the mass flow, by Newton and then secant in ln p."""
+    flux = np.minimum(entering.mass_flow / area, entering.flux)
+    state = states.expanded_to_flux(entering.gas, entering.total_enthalpy, entering.state.entropy, flux, entering.state)
     if _lossless(setting):
-        return state, passes
+        return state
     ln_p = np.log(state.pressure)
-    slope, before, at = np.ones_like(ln_p), None, None
-    done = ~passes
+    at, before, slope = ln_p, np.full_like(ln_p, np.nan), np.ones_like(ln_p)
+    done = np.zeros(ln_p.shape, np.bool_)
     for _ in range(40):
         state = _expanded(entering, setting, np.exp(ln_p), state)
         u = states.velocity(entering.total_enthalpy, state)
         miss = np.log(state.density * u / flux)
-        if before is None or at is None:
-            mach2 = (u / state.sound_speed) ** 2
-            slope = (1.0 - 1.0 / mach2) / state.isentropic_exponent
-        else:
-            secant = (miss - before) / (ln_p - at)
-            slope = np.where(np.isfinite(secant) & (secant > 0.05), secant, slope)
-        step = np.clip(np.where(miss == 0.0, 0.0, -miss / slope), -1.0, 1.0)
-        done |= np.abs(step) < 1e-13
+        secant = (miss - before) / (ln_p - at)
+        isentropic = (1.0 - (state.sound_speed / u) ** 2) / state.isentropic_exponent
+        slope = np.where(np.isfinite(secant) & (secant > 0.05), secant, np.where(np.isfinite(before), slope, isentropic))
+        done |= np.abs(miss) < 1e-13
         if done.all():
             break
-        before, at = np.where(done, before if before is not None else miss, miss), np.where(done, at if at is not None else ln_p, ln_p)
-        ln_p = np.where(done, ln_p, ln_p + step)
-        done |= np.abs(miss) < 3e-14
-    return state.flagged(~done), passes
+        before, at = np.where(done, before, miss), np.where(done, at, ln_p)
+        ln_p = np.where(done, ln_p, ln_p + np.clip(-miss / slope, -1.0, 1.0))
+    return state.flagged(~done)
 
 
 def _area_over_capture(entering: Stream, setting: Setting) -> Array:
@@ -139,8 +133,8 @@ def nozzle(entering: Stream, setting: Setting, ambient: Array) -> Step:
     with np.errstate(all="ignore"):
         if end in _AREA:
             area = _AREA[end](entering, setting)
-            state, passes = _to_area(entering, setting, area)
-            upstream = ~passes | (area < entering.area * (1.0 - 1e-9))
+            state = _to_area(entering, setting, area)
+            upstream = area < entering.area * (1.0 - 1e-9)
         else:
             p = ambient if end == "ideal" else setting["nozzle.exit_pressure"]
             state = _expanded(entering, setting, p, entering.state)

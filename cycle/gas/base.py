@@ -88,9 +88,11 @@ class FixedGas(Gas):
 
     @property
     def size(self) -> int:
+        """Number of points N."""
         return int(self.gas_constant.shape[0])
 
     def frozen(self, state: State) -> Gas:
+        """This gas itself."""
         return self
 
     def _at(self, kind: str, targets: tuple[Array, ...], start: State | None) -> State:
@@ -103,7 +105,7 @@ class FixedGas(Gas):
             T = named["volume"] * p / self.gas_constant
         with np.errstate(all="ignore"):
             ln_T, ln_p, done = self._iterate(kind, np.log(T), np.log(p), targets)
-            return self._state(np.exp(ln_T), np.exp(ln_p), done)
+            return self._state(np.where(done, np.exp(ln_T), np.nan), np.exp(ln_p), done)
 
     def _iterate(self, kind: str, ln_T: Array, ln_p: Array, targets: tuple[Array, ...]) -> tuple[Array, Array, Flags]:
         closure, R = CLOSURES[kind], self.gas_constant

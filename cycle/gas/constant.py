@@ -29,18 +29,23 @@ class ConstantGas(FixedGas):
 
     @property
     def composition(self) -> Array:  # type: ignore[override]
+        """No species: (0, N)."""
         return np.empty((0, self.size))
 
     def caloric(self, temperature: Array) -> tuple[Array, Array, Array]:
+        """h = cp T, s and cp: see the class."""
         return self.cp * temperature, self.cp * np.log(temperature / REFERENCE_TEMPERATURE), self.cp
 
     def range_of(self, temperature: Array) -> Codes:
+        """Inside everywhere."""
         return inside_everywhere(temperature)
 
     def take(self, index: Codes | Flags) -> Self:
+        """The gas of the chosen points."""
         return type(self)(self.cp[index], self.gas_constant[index])
 
     def fuelled(self, fuel: Fuel, ratio: Array, burnt: Array) -> Gas:
+        """This gas itself: a change of heat capacity is `with_cp`."""
         return self
 
     def with_cp(self, cp: Array) -> ConstantGas:

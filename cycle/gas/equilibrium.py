@@ -17,7 +17,7 @@ from cycle.gas.kernel import Kernel, kernel_of
 from cycle.gas.newton import POOL, Columns, iterate
 from cycle.gas.species import SpeciesTable, range_of
 from cycle.gas.start import Guess, absent, first_temperature_pressure
-from cycle.gas.state import NOT_CONVERGED, OUT_OF_RANGE, State
+from cycle.gas.state import NOT_CONVERGED, State, state_from
 
 if TYPE_CHECKING:
     from cycle.gas.fuels import Fuel
@@ -50,12 +50,15 @@ class EquilibriumGas(Gas):
 
     @property
     def size(self) -> int:
+        """Number of points N."""
         return int(self.basis.shape[1])
 
     def take(self, index: Codes | Flags) -> Self:
+        """The gas of the chosen points."""
         return type(self)(self.table, self.basis[:, index], self.inert[:, index])
 
     def frozen(self, state: State) -> FrozenGas:
+        """A gas that keeps the composition of `state` from here on."""
         return FrozenGas(self.table, state.moles)
 
     def reacting(self) -> EquilibriumGas:
@@ -111,11 +114,11 @@ class EquilibriumGas(Gas):
         chunks = [slice(low, low + POOL) for low in range(0, max(self.size, 1), POOL)]
         with np.errstate(all="ignore"):
             parts = [_properties(self.table, found.unknowns[:, c], self.basis[:, c], self.inert[:, c]) for c in chunks]
-            columns = parts[0] if len(parts) == 1 else [np.concatenate(c, axis=-1) for c in zip(*parts, strict=True)]
-            code = range_of(columns[0])
+            columns = [np.concatenate(c, axis=-1) for c in zip(*parts, strict=True)]
             lost = ~found.converged | ~np.isfinite(columns[3] * columns[5])
-        code = np.where(lost & ((code != OUT_OF_RANGE) | np.isnan(columns[0])), NOT_CONVERGED, code)
-        return State(*columns[:-1], code, columns[-1])
+        code = np.where(lost, NOT_CONVERGED, range_of(columns[0]))
+        *fields, potentials = columns
+        return state_from([*fields, code, potentials])
 
 
 class FirstGuess:

@@ -15,7 +15,6 @@ from cycle.gas.species import SpeciesTable, range_of, temperature_functions
 
 if TYPE_CHECKING:
     from cycle.gas.equilibrium import EquilibriumGas
-
     from cycle.gas.fuels import Fuel
 
 
@@ -43,14 +42,17 @@ class FrozenGas(FixedGas):
         return R * (table.h.T @ moles), R * (table.s.T @ moles), R * (table.cp.T @ moles)
 
     def caloric(self, temperature: Array) -> tuple[Array, Array, Array]:
+        """h J/kg, s at 1 bar and this composition J/(kg K), cp J/(kg K) at T (N,)."""
         f = temperature_functions(temperature)
         h, s, cp = ((factors * f).sum(0) for factors in self._factors)
         return h * temperature, s + self._mixing, cp
 
     def range_of(self, temperature: Array) -> Codes:
+        """Range code of each temperature (N,): see `species.range_of`."""
         return range_of(temperature)
 
     def take(self, index: Codes | Flags) -> Self:
+        """The gas of the chosen points."""
         return type(self)(self.table, self.composition[:, index])
 
     def fuelled(self, fuel: Fuel, ratio: Array, burnt: Array) -> FrozenGas:

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Callable, Sequence
 from dataclasses import dataclass
 from functools import singledispatch
 
@@ -56,8 +56,12 @@ def _joined_states(parts: Sequence[State | None]) -> State | None:
     return State(*columns)  # type: ignore[arg-type]
 
 
-def solve_together(kind: str, requests: Sequence[Request]) -> list[State]:
-    """States of all requests, in their order; those of one gas model are solved as one batch.
+Law = Callable[..., State]
+"""A law of one gas: (gas, *targets, start) -> state of its points."""
+
+
+def apply_together(law: Law, requests: Sequence[Request]) -> list[State]:
+    """`law` for all requests, in their order; those of one gas model are solved as one batch.
 
     All gases of one model must share their species table, as the stations of a walk do.
     """
@@ -67,10 +71,15 @@ def solve_together(kind: str, requests: Sequence[Request]) -> list[State]:
         group = [requests[i] for i in where]
         gas = group[0].gas if len(group) == 1 else _joined(group[0].gas, [r.gas for r in group])
         targets = [np.concatenate(columns) for columns in zip(*(r.targets for r in group), strict=True)]
-        state = gas.at(kind, *targets, start=_joined_states([r.start for r in group]))
+        state = law(gas, *targets, start=_joined_states([r.start for r in group]))
         low = 0
         for i in where:
             high = low + requests[i].gas.size
             found[i] = state.take(np.arange(low, high))
             low = high
     return [s for s in found if s is not None]
+
+
+def solve_together(kind: str, requests: Sequence[Request]) -> list[State]:
+    """States of all requests by the closure `kind`, in their order, one batch a gas model."""
+    return apply_together(lambda gas, *targets, start: gas.at(kind, *targets, start=start), requests)

@@ -111,9 +111,10 @@ class Step:
         k, inert = self.kernel.basis, self.kernel.table.inert
         end = 2 * k + inert
         T = np.exp(u[k + 1])
+        total: Array = np.exp(u[k] + u[k + 2])
         return View(
             u[:k], u[k], u[k + 1], u[k + 2], u[k + 3 :], c[:k], c[k : 2 * k], np.concatenate([c[:k], c[2 * k : end]]),
-            c[2 * k : end].sum(0), c[end], tuple(c[end + 1 :]), T, np.exp(u[k] + u[k + 2]),
+            c[2 * k : end].sum(0), c[end], tuple(c[end + 1 :]), T, total,
             self.kernel.thermo(T, self.functions, self.thermo),
         )  # fmt: skip
 
@@ -143,7 +144,7 @@ class Step:
         """Right-hand sides of the responses to ln T and ln p; the pull of ln T on the balances is returned."""
         k = self.kernel.basis
         np.multiply(self.n[k:], at.thermo.h, out=self.nh)
-        pull = np.matmul(self.kernel.formed, self.nh)
+        pull: Array = np.matmul(self.kernel.formed, self.nh)
         np.negative(pull, out=self.right[:, 1])
         if self.sides > 2:
             self.right[:k, 2] = 0.0
@@ -225,12 +226,12 @@ def iterate(kernel: Kernel, kind: str, points: int, prepare: Callable[[slice], C
         if not finished.size:
             continue
         who = live[finished]
-        result[:, who] = pool.unknowns[: k + 3, finished]
+        result[:, who] = np.where(done[finished], pool.unknowns[: k + 3, finished], np.nan)
         converged[who], counts[who] = done[finished], age[finished]
         refilled = queue.refill(pool, live, finished)
         age[finished[:refilled]] = 0
         waiting[finished[refilled:]] = False
-        left = np.count_nonzero(waiting)
+        left = int(np.count_nonzero(waiting))
         if 0 < left < 0.7 * waiting.size:
             keep = np.flatnonzero(waiting)
             pool, live, age, waiting = pool.keep(keep), live[keep], age[keep], waiting[keep]

@@ -24,8 +24,8 @@ from cycle.gas.state import State
 if TYPE_CHECKING:
     from cycle.gas.base import Gas
 
-TOLERANCE = 1e-12
-"""Relative tolerance asked of Cantera's equilibrium solver."""
+ATTEMPTS = (("vcs", 1e-12), ("element_potential", 1e-12), ("vcs", 1e-9))
+"""Cantera's solvers and relative tolerances, in turn until one succeeds."""
 
 SOUND_STEP = 1e-3
 """Half-width in ln p of the central difference for the equilibrium sound speed; its error is about the square."""
@@ -48,7 +48,7 @@ class Recomputed:
 @dataclass(frozen=True)
 class Deviation:
     """Largest differences over the points compared: temperature K, mole_fraction, sound_speed (relative), and how many
-    points were compared and how many were left out (flagged, below 200 K, or not solved by the referee)."""
+    points were compared in full and how many were not (flagged, below 200 K, or not solved by the referee)."""
 
     temperature: float
     mole_fraction: float
@@ -110,12 +110,12 @@ def _present(gas: FrozenGas | EquilibriumGas, point: int) -> tuple[int, ...]:
 
 
 def _equilibrate(gas: Any, kind: str) -> bool:
-    """Equilibrate in place with two of Cantera's solvers in turn; false where neither succeeds."""
+    """Equilibrate in place; false where no attempt succeeds."""
     import cantera as ct
 
-    for solver in ("vcs", "element_potential"):
+    for solver, tolerance in ATTEMPTS:
         try:
-            gas.equilibrate(kind, solver=solver, rtol=TOLERANCE, max_steps=1000)
+            gas.equilibrate(kind, solver=solver, rtol=tolerance, max_steps=1000)
         except ct.CanteraError:
             continue
         return True
@@ -146,8 +146,8 @@ def recompute(gas: Gas, state: State, kind: str = "hp", points: Codes | None = N
     if not isinstance(gas, (FrozenGas, EquilibriumGas)):
         raise TypeError("the referee knows frozen and equilibrium gases only")
     chosen = np.arange(gas.size) if points is None else points
-    found = Recomputed(*(np.full(chosen.size, np.nan) for _ in range(2)), np.full((len(gas.species), chosen.size), np.nan),
-                       np.full(chosen.size, np.nan))  # fmt: skip
+    nothing = np.full((len(gas.species) + 3, chosen.size), np.nan)
+    found = Recomputed(nothing[0], nothing[1], nothing[3:], nothing[2])
     comparable = state.good & (state.temperature >= LOWEST)
     for to, i in enumerate(chosen):
         if comparable[i]:
@@ -177,16 +177,17 @@ def deviation(gas: Gas, state: State, kind: str = "hp", points: Codes | None = N
     """Largest differences between a state and what `recompute` finds; same parameters."""
     chosen = np.arange(gas.size) if points is None else points
     found, ours = recompute(gas, state, kind, points), state.take(chosen)
-    there = np.isfinite(found.temperature)
     x = ours.moles / ours.moles.sum(0)
-
-    def largest(difference: Array) -> float:
-        return float(np.max(np.abs(difference[..., there]), initial=0.0))
-
+    complete = np.isfinite(found.temperature) & np.isfinite(found.sound_speed)
     return Deviation(
-        largest(found.temperature - ours.temperature), largest(found.mole_fractions - x),
-        largest(found.sound_speed / ours.sound_speed - 1.0), int(there.sum()), int((~there).sum()),
+        _largest(found.temperature - ours.temperature), _largest(found.mole_fractions - x),
+        _largest(found.sound_speed / ours.sound_speed - 1.0), int(complete.sum()), int((~complete).sum()),
     )  # fmt: skip
+
+
+def _largest(difference: Array) -> float:
+    """Largest magnitude of the finite entries, 0 if there is none."""
+    return float(np.max(np.abs(difference[np.isfinite(difference)]), initial=0.0))
 
 
 def burner(

@@ -9,7 +9,7 @@ from collections.abc import Callable
 
 import numpy as np
 
-from cycle.arrays import Array
+from cycle.arrays import Array, Flags
 from cycle.constants import GAS_CONSTANT, REFERENCE_PRESSURE
 from cycle.gas.elimination import product
 from cycle.gas.kernel import Kernel
@@ -75,7 +75,8 @@ class Guess:
     def ln_pressure(self, temperature: Array, entropy: Array) -> Array:
         """ln(p / 1 bar) of the frozen mixture at T K and s J/(kg K)."""
         s0 = ((self.kernel.table.s[self.rows].T @ self.amounts) * temperature_functions(temperature)).sum(0)
-        return (s0 + self.entropy_of_mixing() - entropy / GAS_CONSTANT) / self.total
+        ln_p: Array = (s0 + self.entropy_of_mixing() - entropy / GAS_CONSTANT) / self.total
+        return ln_p
 
     def composition(self, temperature: Array, ln_p: Array) -> tuple[Array, Array, Array]:
         """z (K, N), m (N,) and ln n (reacting, N) at T K and ln(p / 1 bar)."""
@@ -115,13 +116,12 @@ class Guess:
         return np.where(self.basis[oxygen] < 0.0, np.minimum(rich, dissociated), np.maximum(free, dissociated))
 
 
-def absent(kernel: Kernel, basis: Array) -> Array:
+def absent(kernel: Kernel, basis: Array) -> Flags:
     """(K, N) true where a basis species' own element is not there; never O2, whose amount is a signed balance."""
-    gone = basis <= 0.0
+    gone: Flags = basis <= 0.0
     if "O2" in kernel.table.names[: kernel.basis]:
         gone[kernel.table.index["O2"]] = False
-    flags: Array = gone
-    return flags
+    return gone
 
 
 def _from_enthalpy(guess: Guess, named: dict[str, Array]) -> Array:
@@ -135,7 +135,8 @@ def _from_entropy(guess: Guess, named: dict[str, Array]) -> Array:
 
 
 def _from_volume(guess: Guess, named: dict[str, Array]) -> Array:
-    return np.clip(named["volume"] * named["pressure"] / (GAS_CONSTANT * guess.total), 300.0, 5000.0)
+    T: Array = np.clip(named["volume"] * named["pressure"] / (GAS_CONSTANT * guess.total), 300.0, 5000.0)
+    return T
 
 
 def _given(guess: Guess, named: dict[str, Array]) -> Array:

@@ -2,7 +2,9 @@
 
 from __future__ import annotations
 
+from collections.abc import Iterable
 from dataclasses import dataclass, fields, replace
+from typing import Any
 
 import numpy as np
 
@@ -46,7 +48,7 @@ class State:
 
     def take(self, index: Codes | Flags) -> State:
         """The state of the chosen points, in their order."""
-        return State(*(None if v is None else v[..., index] for v in self.values()))
+        return state_from(None if v is None else v[..., index] for v in self.values())
 
     def values(self) -> tuple[Array | None, ...]:
         """All fields in declaration order."""
@@ -57,19 +59,24 @@ class State:
         return replace(self, range=np.where(bad & (self.range <= EXTRAPOLATED), code, self.range))
 
 
+def state_from(columns: Iterable[Any]) -> State:
+    """A state from its fields in declaration order."""
+    return State(*columns)
+
+
 def merge(mask: Flags, first: State, second: State) -> State:
     """Points of `first` where `mask`, of `second` elsewhere; both hold all N points."""
-    return State(*(None if a is None or b is None else np.where(mask, a, b) for a, b in zip(first.values(), second.values(), strict=True)))
+    both = zip(first.values(), second.values(), strict=True)
+    return state_from(None if a is None or b is None else np.where(mask, a, b) for a, b in both)
 
 
 def scatter(state: State, index: Codes, part: State) -> State:
     """`state` with the points `index` replaced by those of `part`, in order."""
-    columns = []
-    for whole, new in zip(state.values(), part.values(), strict=True):
-        if whole is None or new is None:
-            columns.append(None)
-            continue
-        copy = np.array(whole)
-        copy[..., index] = new
-        columns.append(copy)
-    return State(*columns)  # type: ignore[arg-type]
+    both = zip(state.values(), part.values(), strict=True)
+    return state_from(None if a is None or b is None else _replaced(a, index, b) for a, b in both)
+
+
+def _replaced(whole: Array, index: Codes, new: Array) -> Array:
+    copy = np.array(whole)
+    copy[..., index] = new
+    return copy

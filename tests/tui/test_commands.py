@@ -50,7 +50,7 @@ def test_bad_input_ends_with_2_and_says_file_and_key(tmp_path: Path) -> None:
 def test_no_solution_ends_with_3_and_says_why_and_what_restores_it(tmp_path: Path) -> None:
     done = run(written(tmp_path, choked=CHOKED), "solve", "choked.toml")
     assert done.returncode == 3
-    assert "NO SOLUTION, choked in the burner" in done.stdout
+    assert "NO SOLUTION, choked: burner: " in done.stdout
     assert "largest" in done.stderr
     assert done.stderr.count("\n") == 1
 

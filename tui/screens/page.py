@@ -75,10 +75,7 @@ class Page(Screen[str]):
         sheet.show([head, *shown, *choices, *padding, line((fit(keys, wide), DIM))])
 
     def _choices(self, wide: int) -> list[Line]:
-        return [
-            line((fit(f" {a.key}  {clean(a.words)}", wide), CURSOR if i == self._at else PLAIN))
-            for i, a in enumerate(self._answers)
-        ]
+        return [line((fit(f" {a.key}  {clean(a.words)}", wide), CURSOR if i == self._at else PLAIN)) for i, a in enumerate(self._answers)]
 
     def on_key(self, event: events.Key) -> None:
         """Move, answer or leave."""

@@ -12,6 +12,7 @@ from tui.session import Session, performance_keys
 from tui.views.numbers import difference, figure, unit
 
 NAMES = {
+    "thrust": "thrust",
     "specific_impulse": "Isp",
     "specific_thrust": "per kg air",
     "overall_efficiency": "overall",
@@ -69,21 +70,23 @@ def _figures(session: Session, columns: int) -> list[Line]:
 
 
 def _headline(session: Session, found: Figures, columns: int) -> Line:
-    pieces: list[tuple[str, bool]] = []
-    for key in performance_keys(session):
-        value = found.performance[key]
-        name = NAMES.get(key, "thrust" if key == "thrust" else OUTPUT[key].label)
-        words = f"{name} {figure(key, value, session.system)} {unit(key, session.system)}".rstrip()
-        change = ""
-        if session.pin is not None and session.pin.figures is not found:
-            change = f" {difference(key, value, session.pin.figures.performance[key], session.system)}"
-        if sum(len(p) + 1 for p, _ in pieces) + len(words) + len(change) > columns:
+    """The figures with their changes, in words where they fit, else by symbols."""
+    keys = performance_keys(session)
+    for digits, by_name in ((3, True), (2, True), (2, False)):
+        pairs = [_figure(session, found, key, digits, by_name) for key in keys]
+        if sum(len(words) + len(change) + 2 for words, change in pairs) - 2 <= columns:
             break
-        pieces += [(words, True), (change.strip() + " ", False)] if change else [(words + " ", True)]
-    out: list[tuple[str, bool]] = []
-    for text, strong in pieces:
-        out.append((text + " ", strong))
-    return line(*((t, BOLD if strong else PLAIN) for t, strong in out))
+    return line(*(piece for words, change in pairs for piece in ((words, BOLD), (change + "  ", PLAIN))))
+
+
+def _figure(session: Session, found: Figures, key: str, digits: int, by_name: bool) -> tuple[str, str]:
+    """One headline figure in words, and its change against the pin with a blank before it."""
+    value, system = found.performance[key], session.system
+    name = NAMES.get(key, OUTPUT[key].label) if by_name else OUTPUT[key].symbol
+    words = f"{name} {figure(key, value, system)} {unit(key, system)}".rstrip()
+    if session.pin is None or session.pin.figures is found:
+        return words, ""
+    return words, f" {difference(key, value, session.pin.figures.performance[key], system, digits)}"
 
 
 def _against(session: Session, columns: int) -> Line:
@@ -113,9 +116,11 @@ def _limits(session: Session, columns: int) -> Line:
     over, near = _names(found.limits, "over"), _names(found.limits, "near")
     unknown = _names(found.limits, "not assessed")
     count = sum(m.state == "not assessed" for m in found.limits)
-    tail = [audit_words(found), f"referee {clean(session.referee) or 'not asked'}"]
-    full = [f"OVER {over}" if over else "none over", f"near: {near or 'none'}", f"not assessed: {unknown or 'none'}", *tail]
-    counts = [full[0], full[1], f"not assessed: {count}", audit_words(found), f"referee {'asked' if session.referee else 'not asked'}"]
-    words = full if len(" | ".join(full)) <= columns else counts
+    asked = clean(session.referee) or "not asked"
+    first = f"OVER {over}" if over else "none over"
+    full = [first, f"near: {near or 'none'}", f"not assessed: {unknown or 'none'}", audit_words(found), f"referee {asked}"]
+    short = [first, *([f"near: {near or 'none'}"] if near or not over else []), f"not assessed: {count}", audit_words(found)]
+    short.append(f"referee {'asked' if session.referee else asked}")
+    words = full if len(" | ".join(full)) <= columns else short
     style = OVER if over or not found.audit_ok else NEAR if near else PLAIN
     return line((fit(clean(" | ".join(words)), columns), style))

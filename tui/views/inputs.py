@@ -31,7 +31,7 @@ def lines(session: Session, wide: int, height: int) -> list[Line]:
     start = _start(here, hand, across * deep, deep)
     seen = here[start : start + across * deep]
     column = (wide - (across - 1) * 3) // across
-    column = min(column, 52)
+    column = min(column, 46)
     out = []
     for y in range(deep):
         pieces: list[Piece] = []
@@ -88,7 +88,10 @@ def entry_label(item: Item, entry: Entry) -> str:
 def answer(session: Session, wide: int, height: int) -> list[Line]:
     """What the program says: a fault, a note, else the meaning of the input or of the row in hand."""
     words, style = _words(session)
-    return [line((part, style)) for part in wrap(clean(words).split(), wide)[:height]]
+    parts = wrap(clean(words).split(), wide)
+    if len(parts) > height > 0:
+        parts = [*parts[: height - 1], fit(" ".join(parts[height - 1 :]), wide)]
+    return [line((part, style)) for part in parts[:height]]
 
 
 def _words(session: Session) -> tuple[str, Style]:
@@ -112,11 +115,11 @@ def _input_words(session: Session) -> str:
     hand = in_hand(session)
     if hand is None:
         return ""
-    other = "; o: another way to say it" if hand.group is not None else ""
+    other = "o: another way to say it" if hand.group is not None else ""
     if hand.input is None:
-        return f"{hand.label}: {hand.written}{other}"
+        return f"{hand.label}: {hand.written}; {other}"
     limits = bounds(hand.input, session.system)
-    return f"{hand.input.meaning.rstrip('.')}{'; ' + limits if limits else ''}{other}"
+    return "; ".join(words for words in (limits, other, hand.input.meaning) if words)
 
 
 def keys(session: Session, wide: int, height: int) -> list[Line]:
@@ -124,11 +127,10 @@ def keys(session: Session, wide: int, height: int) -> list[Line]:
     if session.entry is not None:
         unit = f"; a bare number is in {session.entry.unit}" if session.entry.unit else ""
         return [line((fit(f"Enter commits  Escape leaves it as it was{unit}", wide), DIM))]
-    words = [f"{a.shown} {a.label}" for a in ACTIONS if a.label]
-    order = sorted(words, key=lambda w: w.split(" ", 1)[0] not in ("?", "q"))
-    room, kept = wide, set()
-    for word in order:
-        if len(word) + 2 <= room + 2:
-            kept.add(word)
-            room -= len(word) + 2
-    return [line((fit("  ".join(w for w in words if w in kept), wide), DIM))]
+    room, kept = wide + 2, set()
+    for action in sorted((a for a in ACTIONS if a.label), key=lambda a: a.rank):
+        size = len(action.shown) + len(action.label) + 3
+        if size <= room:
+            kept.add(action.name)
+            room -= size
+    return [line((fit("  ".join(f"{a.shown} {a.label}" for a in ACTIONS if a.name in kept), wide), DIM))]

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from cycle.quantities import OUTPUT
 from tui.figures import NAN, STATION_KEYS, STATIONS, Figures, Passage
-from tui.line import BOLD, CURSOR, DIM, PLAIN, Line, Piece, clean, fit, line
+from tui.line import BOLD, CURSOR, DIM, PLAIN, Line, Piece, clean, fit, line, wrap
 from tui.session import VIEWS, Session, columns_of
 from tui.views.numbers import difference, figure, percent, quantity, unit
 
@@ -142,10 +142,10 @@ def process_line(session: Session, wide: int, height: int) -> list[Line]:
         return [line(("-" * wide, DIM))]
     if passage is None:
         lost = session.failed and session.station not in found.stations
-        words = "- not reached by these inputs " if lost else "- the stream as it arrives "
-        return [line((words.ljust(wide, "-")[:wide], DIM))]
-    parts = [f"- {passage.start} to {passage.end}, {clean(passage.label)}: {_costs(passage, session.system)}"]
-    return [line(fit(" | ".join(parts) + " ", wide).ljust(wide, "-"))]
+        words = "not reached by these inputs" if lost else "the stream as it arrives"
+        return [line((fit(words, wide), DIM))]
+    head = f"{passage.start} to {passage.end}, {clean(passage.label)}: "
+    return [line(fit(head + wrap(_costs(passage, session.system), wide - len(head), " | ")[0], wide))]
 
 
 COSTS = (
@@ -158,10 +158,10 @@ COSTS = (
 """Figures of a process on its line: key, words, dimension, sign."""
 
 
-def _costs(passage: Passage, system: str) -> str:
+def _costs(passage: Passage, system: str) -> list[str]:
     out = []
     for key, words, dimension, sign in COSTS:
         value = passage.figures.get(key, NAN)
         if value == value:
             out.append(f"{words} {sign if value >= 0 else ''}{quantity(value, dimension, system)}")
-    return " | ".join(out)
+    return out or ["no figures"]

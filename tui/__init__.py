@@ -1,0 +1,1 @@
+"""Everything a terminal shows: the batch command and the interactive screen."""

@@ -1,0 +1,135 @@
+"""What every part of the main screen shares: the session, how it is changed, solved and painted."""
+
+from __future__ import annotations
+
+from dataclasses import replace
+from time import monotonic
+
+from textual.screen import Screen
+from textual.timer import Timer
+
+from cycle.errors import CaseError
+from tui import figures, items, session
+from tui.engine import Engine
+from tui.journal import Journal
+from tui.session import Change, Session
+
+PAINT_EVERY = 0.25
+"""Seconds between two paints while a step key is held."""
+
+PATIENCE = 0.1
+"""Seconds that a step waits for its walk before it is painted without."""
+
+SLOW = 0.5
+"""Seconds after which a solve is announced."""
+
+
+def fault_words(error: CaseError) -> tuple[str, ...]:
+    """Faults of an edit in words, without the file's name."""
+    out = []
+    for fault in error.faults:
+        parts = [f"given {fault.given}" if fault.given else "", f"allowed {fault.allowed}" if fault.allowed else ""]
+        told = "; ".join(p for p in parts if p)
+        out.append(f"{fault.key}: {fault.text}{': ' + told if told else ''}")
+    return tuple(out)
+
+
+class Desk(Screen[None], inherit_bindings=False):
+    """The session and the ways to change it. The parts of the main screen are made from this one."""
+
+    def __init__(self, path: str, engine: Engine, journal: Journal) -> None:
+        super().__init__()
+        self.session = Session(path)
+        self.engine = engine
+        self.journal = journal
+        self._rapid = False
+        self._painted = 0.0
+        self._later: Timer | None = None
+        self._slow: Timer | None = None
+
+    def paint(self) -> None:
+        """Paint the session. The main screen says how."""
+        raise NotImplementedError
+
+    def put(self, new: Session) -> None:
+        """Take a session and paint it at once."""
+        self.session = new
+        self.paint_now()
+
+    def paint_now(self) -> None:
+        """Paint, and forget a paint that waits."""
+        if self._later is not None:
+            self._later.stop()
+            self._later = None
+        self._painted = monotonic()
+        self.paint()
+
+    def _paint_within(self, seconds: float) -> None:
+        if self._later is None:
+            self._later = self.set_timer(seconds, self.paint_now)
+
+    def change(self, change: Change, rapid: bool = False) -> bool:
+        """Make an edit: a new session, a record in the journal, a solve. A refused edit puts its faults into the open
+        field or on the answer line and changes nothing else.
+
+        Parameters: change, see `tui.session`; rapid, whether it may come many times a second. Returns: whether it held.
+        """
+        old = self.session.case
+        if old is None:
+            return False
+        try:
+            case = session.apply(old, change)
+        except CaseError as error:
+            self._refused(fault_words(error))
+            return False
+        words = items.describe(old, case, change, self.session.system)
+        self.adopt(session.edited(self.session, case, words), {"edit": change}, rapid)
+        return True
+
+    def _refused(self, faults: tuple[str, ...]) -> None:
+        entry = self.session.entry
+        if entry is not None:
+            self.put(replace(self.session, entry=replace(entry, fault=" | ".join(faults), fresh=False)))
+        else:
+            self.put(replace(self.session, faults=faults))
+
+    def adopt(self, new: Session, record: dict[str, object], rapid: bool = False) -> None:
+        """Take a session whose case changed: journal it, solve it, paint it."""
+        changed = new.generation != self.session.generation
+        self.session = new
+        if changed:
+            self.journal.append(record)
+            self.solve()
+        self._rapid = rapid and changed
+        if self._rapid:
+            self._paint_within(max(PATIENCE, self._painted + PAINT_EVERY - monotonic()))
+        else:
+            self.paint_now()
+
+    def solve(self) -> None:
+        """Ask the worker for the walk of the present case."""
+        case = self.session.case
+        if case is None:
+            return
+        self.engine.solve(self.session.generation, lambda: figures.solve(case))
+        if self._slow is not None:
+            self._slow.stop()
+        self._slow = self.set_timer(SLOW, self._announce)
+
+    def _announce(self) -> None:
+        if self.session.solved != self.session.generation and not self.session.note:
+            self.put(replace(self.session, note="solving ... the figures are of the inputs before"))
+
+    def came(self, generation: int, found: figures.Figures) -> None:
+        """Take a walk that the worker solved; a stale one is dropped. While a key is held, paints are spaced."""
+        new = session.with_figures(self.session, generation, found)
+        if new is self.session:
+            return
+        self.session = new
+        if self._slow is not None:
+            self._slow.stop()
+        wait = self._painted + PAINT_EVERY - monotonic()
+        if self._rapid and wait > 0.0:
+            self._paint_within(wait)
+        else:
+            self.paint_now()

@@ -1,0 +1,212 @@
+"""The main screen: the station table as the way around, the inputs of the component in hand below it."""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from dataclasses import replace
+from typing import ClassVar
+
+from textual import events
+from textual.app import ComposeResult
+from textual.binding import Binding, BindingType
+from textual.containers import Horizontal
+
+from cycle.errors import CaseError, FileChanged
+from tui import figures, items, session
+from tui.actions import ACTIONS
+from tui.engine import Result
+from tui.screens import telling
+from tui.screens.editing import Editing
+from tui.screens.filing import Filing
+from tui.screens.page import Page
+from tui.session import VIEWS
+from tui.views import headline, inputs, side, table
+from tui.widgets.panel import Panel
+
+NEEDS_NO_CASE = ("leave", "help", "suspend", "redraw", "units")
+
+
+class MainScreen(Editing, Filing, inherit_bindings=False):
+    """Renders the session and sends every action to its handler `do_<name>`."""
+
+    BINDINGS: ClassVar[list[BindingType]] = [
+        Binding(",".join(a.keys), f"do('{a.name}')", a.help, show=bool(a.label), id=a.name) for a in ACTIONS
+    ]
+    HORIZONTAL_BREAKPOINTS: ClassVar[list[tuple[int, str]]] = [(0, "-narrow"), (112, "-wide")]
+    VERTICAL_BREAKPOINTS: ClassVar[list[tuple[int, str]]] = [(0, "-tiny"), (12, "-short"), (24, "-plain"), (34, "-tall")]
+    CSS = """
+    MainScreen { layout: vertical; }
+    #middle { height: 1fr; }
+    #side { width: 40; display: none; }
+    .-wide #side { display: block; }
+    #headline { height: 5; } #process { height: 1; } #inputs { height: 5; } #answer { height: 1; } #keys { height: 1; }
+    .-tall #inputs { height: 9; } .-tall #answer { height: 2; }
+    .-short #headline { height: 3; } .-short #inputs { height: 3; } .-short #keys { display: none; }
+    .-tiny #headline { height: 1; } .-tiny #inputs { height: 1; }
+    .-tiny #keys { display: none; } .-tiny #process { display: none; }
+    """
+
+    def compose(self) -> ComposeResult:
+        """One panel a view."""
+        yield Panel("headline", headline.lines)
+        with Horizontal(id="middle"):
+            yield Panel("table", table.lines)
+            yield Panel("side", side.lines)
+        yield Panel("process", table.process_line)
+        yield Panel("inputs", inputs.lines)
+        yield Panel("answer", inputs.answer)
+        yield Panel("keys", inputs.keys)
+
+    def on_mount(self) -> None:
+        """The empty frame first, then the worker, which imports the model."""
+        self.call_after_refresh(self._begin)
+
+    def _begin(self) -> None:
+        self.paint_now()
+        self.call_after_refresh(self._start)
+
+    def _start(self) -> None:
+        self.engine.start()
+        self.read_case()
+
+    def paint(self) -> None:
+        """Every panel shows its part of the session and repaints what changed."""
+        for panel in self.query(Panel):
+            panel.render_session(self.session)
+
+    def on_panel_resized(self) -> None:
+        """A panel has a new size."""
+        self.paint()
+
+    def came_back(self, result: Result) -> None:
+        """Take what the worker gave, by the kind of the job. An error that no handler expects is a defect: raised."""
+        if result.error is not None and not isinstance(result.error, EXPECTED.get(result.kind, ())):
+            raise result.error
+        HANDLERS[result.kind](self, result)
+
+    def walked(self, result: Result) -> None:
+        """A solve came back."""
+        self.came(result.generation, result.value)
+
+    def refereed(self, result: Result) -> None:
+        """The referee's words came back."""
+        if result.generation == self.session.generation:
+            self.put(replace(self.session, referee=result.value, note=f"referee: {result.value}"))
+
+    def action_do(self, name: str) -> None:
+        """Run an action of `tui.actions`."""
+        if self.session.case is not None or name in NEEDS_NO_CASE:
+            self.session = replace(self.session, note="", faults=()) if self.session.case is not None else self.session
+            handler: Callable[[], None] = getattr(self, f"do_{name}")
+            handler()
+        elif name == "edit":
+            self.read_case()
+
+    def _walk(self, steps: int) -> None:
+        columns = table.columns(self.session)
+        at = columns.index(self.session.station) if self.session.station in columns else 0
+        self.put(replace(self.session, station=columns[max(0, min(at + steps, len(columns) - 1))]))
+
+    def do_upstream(self) -> None:
+        """One station upstream."""
+        self._walk(-1)
+
+    def do_downstream(self) -> None:
+        """One station downstream."""
+        self._walk(1)
+
+    def do_first(self) -> None:
+        """The first station."""
+        self._walk(-len(table.ROWS))
+
+    def do_last(self) -> None:
+        """The last station."""
+        self._walk(len(table.ROWS))
+
+    def _move(self, steps: int) -> None:
+        if self.session.focus == "table":
+            self.put(replace(self.session, row=max(0, min(self.session.row + steps, len(table.ROWS) - 1))))
+            return
+        here, hand = items.items(self.session), items.in_hand(self.session)
+        if hand is not None:
+            at = max(0, min(here.index(hand) + steps, len(here) - 1))
+            self.put(replace(self.session, inputs={**self.session.inputs, self.session.station: here[at].key}))
+
+    def do_up(self) -> None:
+        """The row or input before."""
+        self._move(-1)
+
+    def do_down(self) -> None:
+        """The next row or input."""
+        self._move(1)
+
+    def do_page_up(self) -> None:
+        """Rows a page up."""
+        self._move(-self._page())
+
+    def do_page_down(self) -> None:
+        """Rows a page down."""
+        self._move(self._page())
+
+    def _page(self) -> int:
+        return max(1, self.query_one("#table", Panel).size.height - 2)
+
+    def do_focus(self) -> None:
+        """Between the table and the inputs."""
+        self.put(replace(self.session, focus="inputs" if self.session.focus == "table" else "table"))
+
+    def do_pin(self) -> None:
+        """Pin the present walk."""
+        self.put(session.pinned(self.session))
+
+    def do_view(self) -> None:
+        """Next view of the cells."""
+        view = (self.session.view + 1) % len(VIEWS)
+        self.put(replace(self.session, view=view, note=f"cells: {VIEWS[view]}"))
+
+    def do_units(self) -> None:
+        """The other unit system."""
+        self.put(session.toggled(self.session))
+
+    def do_referee(self) -> None:
+        """Ask the referee about the present walk."""
+        found = self.session.figures
+        if found is None or not found.solved or self.session.solved != self.session.generation:
+            self.put(replace(self.session, note="no solved walk of these inputs to referee"))
+            return
+        self.engine.do("referee", self.session.generation, lambda: figures.referee(found))
+        self.put(replace(self.session, referee="asked ...", note="referee asked ..."))
+
+    def do_why(self) -> None:
+        """The page of limits, audit and accounts."""
+        self.app.push_screen(Page("Limits, audit and where the thrust went", telling.limits(self.session)))
+
+    def do_help(self) -> None:
+        """The page of keys."""
+        self.app.push_screen(Page("Keys", telling.keys()))
+
+    def do_redraw(self) -> None:
+        """Paint everything afresh."""
+        self.refresh(layout=True)
+
+    def do_suspend(self) -> None:
+        """Suspend to the shell; the journal is on disk already."""
+        self.app.action_suspend_process()
+
+    def on_click(self, event: events.Click) -> None:
+        """A click on the table or the inputs brings the focus there (the mouse is off over SSH)."""
+        if event.widget is not None and event.widget.id in ("table", "inputs"):
+            self.put(replace(self.session, focus="table" if event.widget.id == "table" else "inputs"))
+
+
+HANDLERS: dict[str, Callable[[MainScreen, Result], None]] = {
+    "read": MainScreen.was_read,
+    "replay": MainScreen.was_replayed,
+    "write": MainScreen.was_written,
+    "solve": MainScreen.walked,
+    "referee": MainScreen.refereed,
+}
+"""Kind of a job -> what takes its result."""
+
+EXPECTED: dict[str, tuple[type[BaseException], ...]] = {"read": (CaseError,), "write": (CaseError, FileChanged)}
+"""Kind of a job -> errors that its handler tells the user about."""

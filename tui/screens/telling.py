@@ -1,0 +1,67 @@
+"""Pages of words: the keys, and the limits with what restores them."""
+
+from __future__ import annotations
+
+from tui.actions import ACTIONS
+from tui.figures import Figures, Margin
+from tui.line import BOLD, Line, clean, line
+from tui.screens.page import Body, text_body
+from tui.session import Session
+from tui.views.numbers import quantity
+from tui.views.side import STYLE, by_margin, margin_words
+
+
+def keys() -> Body:
+    """All actions by group, from their declarations."""
+    groups = dict.fromkeys(a.group for a in ACTIONS)
+
+    def body(wide: int) -> list[Line]:
+        out: list[Line] = []
+        for group in groups:
+            out.append(line((group, BOLD)))
+            out += text_body([f"  {a.shown:<7} {a.help}" for a in ACTIONS if a.group == group])(wide)
+        return [*out, line(""), *text_body([_FIELD, _MARKS])(wide)]
+
+    return body
+
+
+_FIELD = (
+    "In a field: type a value with or without its unit (85 kft, 1500 psf, 2.5 MJ/kg); a bare number is in the unit "
+    "shown. Enter commits, Escape leaves the value as it was. An empty field takes an optional value back."
+)
+_MARKS = "d marks a default. Values in ( ) are of the previous inputs. Not assessed is never fine."
+
+
+def _limit(limit: Margin, system: str) -> list[str]:
+    actual = quantity(limit.actual, limit.unit, system)
+    allowed = quantity(limit.allowed, limit.unit, system)
+    told = [f"{limit.label}: {margin_words(limit)}; {actual} against {allowed}"]
+    return told + ([f"    {limit.restore}"] if limit.restore else [])
+
+
+def limits(session: Session) -> Body:
+    """Limits with the least margin first, the audit, the referee, and where the thrust potential went."""
+
+    def body(wide: int) -> list[Line]:
+        found = session.figures
+        if found is None:
+            return [line("no walk yet")]
+        out: list[Line] = []
+        for limit in by_margin(found):
+            told = text_body(_limit(limit, session.system))(wide)
+            out += [tuple((text, STYLE[limit.state]) for text, _ in row) for row in told]
+        return out + text_body(_accounts(found, session))(wide)
+
+    return body
+
+
+def _accounts(found: Figures, session: Session) -> list[str]:
+    out = ["", f"audit {'ok' if found.audit_ok else 'FAILED'}: {found.audit}"]
+    out.append(f"referee: {clean(session.referee) or 'not asked; r asks'}")
+    if found.reason:
+        out += ["", f"no solution: {found.reason}"]
+    if found.potentials:
+        out += ["", "where the thrust potential went"]
+        out += [f"  {r.label}: {quantity(r.value, r.unit, session.system)}" for r in found.potentials]
+    missing = [f"  {key}: {why}" for key, why in found.why_not.items() if why]
+    return out + (["", "figures without a value", *missing] if missing else [])
