@@ -84,6 +84,9 @@ def performance(march: March) -> dict[str, Array]:
     setting, points = march.setting, march.solved
     nothing = np.full(setting.size, np.nan)
     found = {"stoichiometric_ratio": setting.stoichiometric_ratio, "heating_value": setting.heating_value}
+    flight = march.named("flight")
+    if flight is not None and "altitude" in flight.process.figures:
+        found["altitude"] = spread(march, flight.index, flight.process.figures["altitude"])
     burner = march.named("burner")
     if burner is None:
         return found
@@ -108,7 +111,7 @@ def performance(march: March) -> dict[str, Array]:
     out, free = nozzle.taken(points).stream, march.records[0].taken(points).stream
     with np.errstate(all="ignore"):
         heat = fuel * setting.heating_value
-        gain = out.mass_flow * (out.axial_factor * out.velocity) ** 2 - free.mass_flow * free.velocity**2
+        gain = out.mass_flow * out.velocity**2 - free.mass_flow * free.velocity**2
         thermal = spread(march, points, gain) / (2.0 * heat)
         overall = force * spread(march, points, free.velocity) / heat
         q = 0.5 * free.state.density * free.velocity**2
@@ -255,8 +258,8 @@ def temperature_rise_efficiency(march: March, total: Mapping[str, State]) -> Arr
     full = gas.at("hp", h, after.pressure, start=after)
     with np.errstate(all="ignore"):
         rise = (after.temperature - before.temperature) / (full.temperature - before.temperature)
-    fuel = burner.process.figures["fuel_air_ratio"] > 0.0
-    return spread(march, points, np.where(full.good & after.good & before.good & fuel, rise, np.nan))
+    warms = full.temperature > before.temperature
+    return spread(march, points, np.where(full.good & after.good & before.good & warms, rise, np.nan))
 
 
 @dataclass(frozen=True, slots=True)

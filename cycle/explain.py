@@ -124,8 +124,10 @@ def _nearest(name: str) -> tuple[str, ...]:
     for entry in _ENTRIES:
         for known in (_key(entry).split(".")[-1], _label(entry), _symbol(entry), _key(entry)):
             keys.setdefault(_long(known), _key(entry))
-    near = difflib.get_close_matches(_long(name)[:80], [n for n in keys if n], 3, 0.7)
-    return tuple(dict.fromkeys(keys[n] for n in near))
+    given = _long(name)[:80]
+    holding = [n for n in keys if len(given) > 2 and given in n]
+    near = difflib.get_close_matches(given, [n for n in keys if n], 3, 0.6)
+    return tuple(dict.fromkeys(keys[n] for n in [*near, *holding]))[:3]
 
 
 def related(entry: Entry) -> tuple[Entry, ...]:
@@ -153,7 +155,8 @@ def _number(entry: Output, walk: Walk, where: str) -> Number:
     value = float(getattr(walk.station[where] if where else walk.performance, entry.key))
     if not math.isfinite(value):
         return Number(where, math.nan, walk.reason if where else walk.why_not(entry.key), "", ())
-    found = {s: _term(s, walk, where) for s in formula.symbols(entry.equation)}
+    entering = entry.equation.partition(" at ")[2] or entry.equation
+    found = {s: _term(s, walk, where) for s in formula.symbols(entering)}
     terms = tuple(t for t in found.values() if t is not None and math.isfinite(t.value))
     return Number(where, value, "", _worked(entry, value, terms), terms)
 

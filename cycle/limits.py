@@ -97,11 +97,15 @@ def _burner(walked: March) -> tuple[Limit, ...]:
     entry = key == "entry.pressure"
     hotter = "raise the entry temperature" if entry else "compress more or fly faster"
     denser = "raise the entry pressure" if entry else "compress more or fly lower"
+    record = walked.stations().get("3")
+    fast = np.full(setting.size, np.nan) if record is None else spread(walked, record.index, record.stream.mach)
+    held = np.where(fast > 1.0, 1.0, np.nan)
+    missing = "a subsonic burner has its flameholder" if np.any(fast <= 1.0) else ""
     return (
-        Limit("ignition_temperature", "self-ignition, T3", _at(walked, "3", "temperature"), setting["limits.ignition_temperature"],
-              "temperature", False, hotter, "entry.temperature" if entry else key),
-        Limit("ignition_pressure", "self-ignition, p3", _at(walked, "3", "pressure"), setting["limits.ignition_pressure"],
-              "pressure", False, denser, key),
+        Limit("ignition_temperature", "self-ignition, T3", held * _at(walked, "3", "temperature"), setting["limits.ignition_temperature"],
+              "temperature", False, hotter, "entry.temperature" if entry else key, missing),
+        Limit("ignition_pressure", "self-ignition, p3", held * _at(walked, "3", "pressure"), setting["limits.ignition_pressure"],
+              "pressure", False, denser, key, missing),
     )  # fmt: skip
 
 

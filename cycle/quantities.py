@@ -359,6 +359,8 @@ OUTPUTS: tuple[Output, ...] = (
            "temperature"),
     Output("critical_area_ratio", "A/A*", "area over critical", "Area over that of the sonic state of this stream.",
            equation="rho* a* / (rho u)"),
+    Output("altitude", "z", "altitude", "Geometric altitude in the standard atmosphere.", "length", "performance",
+           source="NOAA-S/T 76-1562"),
     Output("thrust", "F", "uninstalled thrust", "Positive forward; fuel momentum is internal.", "force", "performance",
            "(m u + p A)10 - (m u + p A)0 - p0 (A10 - A0)"),
     Output("specific_thrust", "F/m0", "specific thrust", "Uninstalled thrust per captured air flow.", "specific thrust", "performance", "F / m0"),

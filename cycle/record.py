@@ -6,15 +6,16 @@ import json
 import math
 import os
 import stat
-import tempfile
-from collections.abc import Iterable, Mapping
+import sys
+from collections.abc import Callable, Iterable, Mapping
+from contextlib import suppress
 from dataclasses import dataclass
 from datetime import UTC, datetime
 from pathlib import Path
 from typing import TYPE_CHECKING, Any
 
 from cycle.errors import CaseError, Fault
-from cycle.quantities import INPUTS, OUTPUTS, SECTIONS
+from cycle.quantities import INPUTS, OUTPUTS
 from cycle.units import si_unit
 
 if TYPE_CHECKING:
@@ -225,12 +226,31 @@ def _check_figures(walk: Json, file: str) -> None:
         for key in keys:
             if not _is_figure(table.get(key)):
                 raise _fault(file, f"{where}.{key}", "neither a number nor null", repr(table.get(key))[:40])
-    if not all(isinstance(table, dict) for key, table in walk["case"].items() if key in SECTIONS):
-        raise _fault(file, "walk.case", "not the tables of a case")
+    _check_inputs(walk["case"], file)
+
+
+def _check_inputs(case: Json, file: str) -> None:
+    """Refuse a case whose tables hold anything but numbers where numbers belong and words elsewhere."""
+    for entry in INPUTS:
+        table = case.get(entry.section, {})
+        if not isinstance(table, dict):
+            raise _fault(file, f"walk.case.{entry.section}", "not a table of a case")
+        value = table.get(entry.name)
+        if value is not None and not _KINDS[entry.kind](value):
+            raise _fault(file, f"walk.case.{entry.key}", f"no {entry.kind}", repr(value)[:40])
 
 
 def _is_figure(value: Any) -> bool:
-    return value is None or (isinstance(value, int | float) and not isinstance(value, bool) and math.isfinite(value))
+    return value is None or (isinstance(value, int | float) and not isinstance(value, bool) and abs(value) <= sys.float_info.max)
+
+
+_KINDS: dict[str, Callable[[Any], bool]] = {
+    "number": _is_figure,
+    "choice": lambda value: isinstance(value, str),
+    "text": lambda value: isinstance(value, str),
+    "flag": lambda value: isinstance(value, bool),
+    "fractions": lambda value: isinstance(value, dict) and all(_is_figure(x) and x is not None for x in value.values()),
+}
 
 
 def _fault(file: str, key: str, text: str, given: str = "", allowed: str = "") -> CaseError:
@@ -254,21 +274,16 @@ def write(path: str | os.PathLike[str], text: str) -> None:
 
 
 def _replace(target: Path, text: str) -> None:
-    mode = stat.S_IMODE(target.stat().st_mode) if target.exists() else 0o666 & ~_umask()
-    handle, name = tempfile.mkstemp(dir=target.parent, prefix="." + target.name, suffix=".part")
+    beside = target.with_name(f".{target.name[:200]}.{os.getpid()}.part")
+    handle = os.open(beside, os.O_WRONLY | os.O_CREAT | os.O_EXCL | os.O_CLOEXEC, 0o666)
     try:
         with os.fdopen(handle, "w", encoding="utf-8") as file:
+            with suppress(FileNotFoundError):
+                os.fchmod(handle, stat.S_IMODE(target.stat().st_mode))
             file.write(text)
             file.flush()
-            os.fsync(file.fileno())
-        os.chmod(name, mode)
-        os.replace(name, target)
-    except OSError:
-        os.unlink(name)
-        raise
-
-
-def _umask() -> int:
-    mask = os.umask(0)
-    os.umask(mask)
-    return mask
+            os.fsync(handle)
+        os.replace(beside, target)
+    finally:
+        with suppress(FileNotFoundError):
+            os.unlink(beside)

@@ -271,15 +271,22 @@ class Walk:
         choices = self.march.setting.choices
         if self.march.chain[0] == "entry" and key != "stream_thrust_gain":
             return "a rig has no flight thrust"
+        if key == "altitude":
+            return "pressure and temperature are given, not a place in the standard atmosphere"
+        if key == "total_temperature_rise_efficiency":
+            return self._no_rise()
         if key in ("throat_area", "burner_exit_over_throat"):
             return "the engine has no throat"
         if key == "stream_thrust_gain":
             return "for a rig only"
         if key in ("equivalence_ratio", "stoichiometric_ratio") and choices["fuel.identity"] == "heating_value":
             return "the fuel has no formula"
-        if key == "total_temperature_rise_efficiency" and not account.one_pair(self.march):
-            return "several constant-gamma pairs have no common datum"
         return "no fuel" if np.any(self._performance["fuel_flow"] == 0.0) else "a state it needs is out of range"
+
+    def _no_rise(self) -> str:
+        if not account.one_pair(self.march):
+            return "several constant-gamma pairs have no common datum"
+        return "complete burning would not raise the total temperature"
 
     def _no_rows(self, key: str) -> str:
         if not self.march.solved.size:

@@ -178,8 +178,9 @@ def _find(label: str, given: str, dimension: str) -> Unit:
     homes = [home for home, table in UNITS.items() if label in table or _canonical(label) in table]
     if homes:
         raise _refuse(f"{name} is a unit of {homes[0]}, not of {dimension}", given, dimension)
-    near = [u for u in units if u.lower() == label.lower()] or difflib.get_close_matches(label, list(units), 1, 0.6)
-    hint = f" (did you mean {near[0]}?)" if near and near[0] else ""
+    lower = {unit_label.lower(): unit_label for unit_label in units if unit_label}
+    near = difflib.get_close_matches(label.lower(), list(lower), 1, 0.6)
+    hint = f" (did you mean {lower[near[0]]}?)" if near else ""
     raise _refuse(f"unknown unit {name}{hint}", given, dimension)
 
 

@@ -62,7 +62,9 @@ def assert_met(check: Check, computed: Mapping[str, float]) -> None:
     assert not missing, f"{check.id}: nothing computed for {sorted(missing)}"
     for key, expected in check.expected.items():
         found = float(computed[key]) / _TO_SI.get(expected.unit, 1.0)
-        assert abs(found - expected.value) <= expected.tolerance * _SLACK, (
+        # the program evaluates NASA polynomials, for which some checks state an allowance of their own
+        allowed = expected.polynomial_tolerance or expected.tolerance
+        assert abs(found - expected.value) <= allowed * _SLACK, (
             f"{check.id}: {key} = {found:.10g} {expected.unit}, expected {expected.value:.10g} "
-            f"within {expected.tolerance:.3g} ({check.tolerance_basis}); source: {check.source}"
+            f"within {allowed:.3g} ({check.tolerance_basis}); source: {check.source}"
         )

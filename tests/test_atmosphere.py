@@ -41,6 +41,14 @@ def test_kinetic_temperature_at_86_km() -> None:
     assert abs(float(atm.atmosphere(86000.0).temperature) - 186.87) <= 0.005
 
 
+def test_molar_mass_falls_ever_faster_from_80_km() -> None:
+    # lighter gases take over steadily: a slip in one row of the table would show as a kink backwards
+    z = np.arange(79500.0, 86001.0, 500.0)
+    ratio = atm.atmosphere(z).temperature / atm.molecular_scale_temperature(z)
+    assert ratio[0] == ratio[1] == 1.0
+    assert np.all(np.diff(ratio, n=2) < 1e-12)
+
+
 def test_agrees_with_the_icao_layers_of_ambiance() -> None:
     z = np.linspace(0.0, 80000.0, 81)
     other, air = ambiance.Atmosphere(z), atm.atmosphere(z)

@@ -46,19 +46,24 @@ class DuctwalkApp(App[None], inherit_bindings=False):
         self.path = path
         self.defect: Exception | None = None
         self._attributes = attributes
+        self.main: MainScreen | None = None
         self.engine = Engine(lambda result: self.post_message(self.Came(result)))
         self.journal = Journal(path)
 
+    def get_default_screen(self) -> MainScreen:
+        """The main screen is the first one painted."""
+        self.main = MainScreen(self.path, self.engine, self.journal)
+        return self.main
+
     def on_mount(self) -> None:
-        """Guard against ends nobody asked for, then show the main screen."""
+        """Guard against ends nobody asked for."""
         if not self.is_headless:
             leaving.guard(lambda code: self.exit(return_code=code), self._attributes)
-        self.main = MainScreen(self.path, self.engine, self.journal)
-        self.push_screen(self.main)
 
     def on_ductwalk_app_came(self, message: Came) -> None:
         """Hand a result to the main screen."""
-        self.main.came_back(message.result)
+        if self.main is not None:
+            self.main.came_back(message.result)
 
     def _handle_exception(self, error: Exception) -> None:
         # The caller of `run` writes the crash file; a traceback with all locals over the user's terminal helps nobody.

@@ -14,6 +14,9 @@ from typing import Any
 
 Job = Callable[[], Any]
 
+DROPPED = ("solve", "assess")
+"""Kinds of which only the newest job counts, in the order they are taken up."""
+
 
 @dataclass(frozen=True, slots=True)
 class Result:
@@ -27,7 +30,7 @@ class Result:
 
 
 class Engine:
-    """A worker thread with one place for the newest solve and a queue for jobs that must not be dropped.
+    """A worker thread with one place for the newest job of each kind that may be dropped, and a queue for the others.
 
     Parameters: post, called in the worker with each `Result`.
     """
@@ -35,44 +38,40 @@ class Engine:
     def __init__(self, post: Callable[[Result], object]) -> None:
         self._post = post
         self._change = threading.Condition()
-        self._newest: tuple[int, Job] | None = None
+        self._newest: dict[str, tuple[int, Job] | None] = dict.fromkeys(DROPPED)
         self._queue: deque[tuple[str, int, Job]] = deque()
-        self._working = False
         self._thread = threading.Thread(target=self._run, name="engine", daemon=True)
 
     def start(self) -> None:
         """Start the thread; call it after the first paint."""
         self._thread.start()
 
-    def solve(self, generation: int, job: Job) -> None:
-        """Ask for a solve; one that waits and has not begun is replaced."""
+    def newest(self, kind: str, generation: int, job: Job) -> None:
+        """Ask for a job of a kind in `DROPPED`; one of that kind that waits and has not begun is replaced."""
         with self._change:
-            self._newest = (generation, job)
+            self._newest[kind] = (generation, job)
             self._change.notify()
 
     def do(self, kind: str, generation: int, job: Job) -> None:
-        """Ask for a job that is never dropped; jobs run in the order asked, before a waiting solve."""
+        """Ask for a job that is never dropped; jobs run in the order asked, before those that may be dropped."""
         with self._change:
             self._queue.append((kind, generation, job))
             self._change.notify()
 
-    @property
-    def busy(self) -> bool:
-        """Whether a job runs or waits."""
-        with self._change:
-            return self._working or self._newest is not None or bool(self._queue)
+    def _waiting(self) -> str | None:
+        return next((kind for kind in DROPPED if self._newest[kind] is not None), None)
 
     def _next(self) -> tuple[str, int, Job]:
         with self._change:
-            self._working = False
-            self._change.wait_for(lambda: self._newest is not None or self._queue)
-            self._working = True
+            self._change.wait_for(lambda: self._queue or self._waiting())
             if self._queue:
                 return self._queue.popleft()
-            assert self._newest is not None
-            generation, job = self._newest
-            self._newest = None
-            return "solve", generation, job
+            kind = self._waiting()
+            assert kind is not None
+            job = self._newest[kind]
+            assert job is not None
+            self._newest[kind] = None
+            return kind, *job
 
     def _run(self) -> None:
         while True:

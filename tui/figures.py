@@ -6,7 +6,7 @@ Some figures of a station are computed when first asked for; asking here keeps t
 from __future__ import annotations
 
 from collections.abc import Callable, Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import TYPE_CHECKING, Any
 
 from cycle.quantities import OUTPUTS
@@ -15,6 +15,10 @@ if TYPE_CHECKING:
     from cycle.case import Case
 
 STATION_KEYS = tuple(o.key for o in OUTPUTS if o.where == "station")
+DEAR = ("critical_pressure", "critical_temperature", "critical_area_ratio")
+"""Figures of a station that cost about as much as a solve; they come with the assessment."""
+
+QUICK = tuple(k for k in STATION_KEYS if k not in DEAR)
 PERFORMANCE_KEYS = tuple(o.key for o in OUTPUTS if o.where == "performance")
 STATIONS = ("0", "2", "3", "4", "5", "10")
 NAN = float("nan")
@@ -43,7 +47,7 @@ class Share:
 @dataclass(frozen=True, slots=True)
 class Margin:
     """One limit: label, state ("ok", "near", "over", "not assessed"), relative margin (positive is safe), actual and
-    allowed value in SI, their dimension, what restores it, and the input to go to."""
+    allowed value in SI, their dimension, whether it is an upper limit, what restores it, and the input to go to."""
 
     label: str
     state: str
@@ -51,6 +55,7 @@ class Margin:
     actual: float
     allowed: float
     unit: str
+    upper: bool
     restore: str
     input: str
 
@@ -58,7 +63,8 @@ class Margin:
 @dataclass(frozen=True, slots=True)
 class Figures:
     """A walk of one point as plain numbers (SI, nan where there is no value). altitude: that of the ambient pressure
-    in the standard atmosphere, m. `walk` is the walk itself, for the referee and for later questions."""
+    in the standard atmosphere, m. `walk` is the walk itself, for the referee and for later questions. assessed: whether
+    limits, audit and the dear figures are those of this walk; until then they are of the walk before, or absent."""
 
     status: str
     mode: str
@@ -70,11 +76,12 @@ class Figures:
     why_not: Mapping[str, str]
     passages: tuple[Passage, ...]
     potentials: tuple[Share, ...]
-    limits: tuple[Margin, ...]
-    audit_ok: bool
-    audit: str
     altitude: float
     walk: Any
+    limits: tuple[Margin, ...] = ()
+    audit_ok: bool = False
+    audit: str = ""
+    assessed: bool = False
 
     @property
     def solved(self) -> bool:
@@ -102,7 +109,7 @@ def take(walk: Any) -> Figures:
 
     Parameters: walk, a `cycle.Walk` of shape (). Returns: `Figures`.
     """
-    stations = {s: {k: float(getattr(walk.station[s], k)) for k in STATION_KEYS} for s in STATIONS if s in walk.station}
+    stations = {s: {k: float(getattr(walk.station[s], k)) for k in QUICK} for s in STATIONS if s in walk.station}
     performance = {k: float(getattr(walk.performance, k)) for k in PERFORMANCE_KEYS}
     return Figures(
         status=str(walk.status),
@@ -115,14 +122,35 @@ def take(walk: Any) -> Figures:
         why_not={k: str(walk.why_not(k)) for k, v in performance.items() if v != v},
         passages=tuple(Passage(p.name, p.label, p.start, p.end, {k: float(v) for k, v in p.figures.items()}) for p in walk.processes),
         potentials=tuple(Share(r.label, float(r.value), r.unit) for r in walk.potentials),
-        limits=tuple(
-            Margin(m.label, m.state, float(m.margin), float(m.actual), float(m.allowed), m.unit, m.restore, m.input) for m in walk.limits
-        ),
-        audit_ok=bool(walk.audit.ok),
-        audit=_audit_words(walk),
         altitude=_altitude(stations.get("0", {}).get("pressure", NAN)),
         walk=walk,
     )
+
+
+def assess(figures: Figures) -> Figures:
+    """The figures with limits, audit and the dear figures of their walk. Call it in the worker thread."""
+    walk = figures.walk
+    dear = {s: {k: float(getattr(walk.station[s], k)) for k in DEAR} for s in figures.stations}
+    return replace(
+        figures,
+        stations={s: {**known, **dear[s]} for s, known in figures.stations.items()},
+        limits=tuple(
+            Margin(m.label, m.state, float(m.margin), float(m.actual), float(m.allowed), m.unit, bool(m.upper), m.restore, m.input)
+            for m in walk.limits
+        ),
+        audit_ok=bool(walk.audit.ok),
+        audit=_audit_words(walk),
+        assessed=True,
+    )
+
+
+def carried(figures: Figures, before: Figures | None) -> Figures:
+    """Figures not assessed yet with the assessment of the walk before, so that a fast one does not flicker."""
+    if before is None or figures.assessed:
+        return figures
+    dear = {s: {k: before.at(s, k) for k in DEAR} for s in figures.stations}
+    stations = {s: {**known, **dear[s]} for s, known in figures.stations.items()}
+    return replace(figures, stations=stations, limits=before.limits, audit_ok=before.audit_ok, audit=before.audit)
 
 
 def solve(case: Case) -> Figures:

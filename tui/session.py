@@ -10,7 +10,7 @@ from collections.abc import Mapping
 from dataclasses import dataclass, field, replace
 from typing import TYPE_CHECKING, Any, Literal
 
-from tui.figures import PERFORMANCE_KEYS, STATIONS, Figures
+from tui.figures import PERFORMANCE_KEYS, STATIONS, Figures, carried
 
 if TYPE_CHECKING:
     from cycle.case import Case
@@ -19,7 +19,7 @@ Change = dict[str, Any]
 """What a user asked of a case, as plain data: {"set": {key: value}} or {"switch": [group, tag, value]}."""
 
 VIEWS = ("figures", "change against the pin", "change against the pin, %")
-SYSTEMS = ("si", "us")
+SOLVING = "solving ... figures and limits are of the inputs before"
 
 
 @dataclass(frozen=True, slots=True)
@@ -86,6 +86,11 @@ class Session:
         return self.figures is not None and not self.figures.solved
 
     @property
+    def settled(self) -> bool:
+        """Whether the figures shown are those of the case."""
+        return self.figures is not None and self.solved == self.generation
+
+    @property
     def unsaved(self) -> bool:
         """Whether the case differs from the one in the file."""
         return self.case is not None and self.case != self.saved
@@ -148,19 +153,23 @@ def redone(session: Session) -> Session:
     return replace(forward, past=(*session.past, Past(session.case, next_.words)), future=session.future[:-1])
 
 
-def with_figures(session: Session, generation: int, figures: Figures) -> Session:
-    """The session with a walk that came back; a stale one (not of the newest generation) changes nothing."""
+def with_figures(session: Session, generation: int, found: Figures) -> Session:
+    """The session with a walk that came back, or with its assessment; a stale one (not of the newest generation)
+    changes nothing."""
     if generation != session.generation or session.case is None:
         return session
-    good = figures if figures.solved else session.good
-    pin = session.pin or (Pin("as loaded", session.case, figures) if figures.solved else None)
-    note = "" if session.note.startswith("solving") else session.note
-    return replace(session, figures=figures, solved=generation, good=good, pin=pin, note=note)
+    now = carried(found, session.figures)
+    pin = session.pin
+    if now.solved and (pin is None or pin.figures.walk is now.walk):
+        pin = Pin(pin.label if pin is not None else "as loaded", session.case, now)
+    note = "" if session.note == SOLVING else session.note
+    good = now if now.solved else session.good
+    return replace(session, figures=now, solved=generation, good=good, pin=pin, note=note)
 
 
 def pinned(session: Session) -> Session:
     """The session with its present walk pinned."""
-    if session.case is None or session.figures is None or session.solved != session.generation:
+    if session.case is None or session.figures is None or not session.settled:
         return replace(session, note="no walk of these inputs to pin yet")
     if not session.figures.solved:
         return replace(session, note="a case without a solution cannot be pinned")

@@ -71,7 +71,7 @@ def outcome(name: str, changes: dict[str, object]) -> Outcome:
         return Outcome(name, None, error.faults)
     if walk.status != "solved":
         tell(f"{name}: {headline_words(walk)}")
-    elif not walk.audit.ok:
+    if not walk.audit.ok:
         tell(f"{name}: {audit_words(walk)}")
     return Outcome(name, walk)
 

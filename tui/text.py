@@ -18,6 +18,10 @@ CAUTION = "Preliminary-design estimate; not for hardware or flight-safety decisi
 LEAST_SHOWN = 1e-4
 """Mole fraction from which on a species has a row."""
 
+_NOISE = 1e-10
+_LIMIT_FIGURES = {"corridor_low": "dynamic_pressure", "corridor_high": "dynamic_pressure"}
+"""Limits whose figure has a unit of its own among those of its dimension."""
+
 _PROCESS_FIGURES: tuple[tuple[str, str, str], ...] = (
     ("total_pressure_ratio", "total-pressure ratio", "ratio"),
     ("pressure_ratio", "pressure ratio", "ratio"),
@@ -46,6 +50,12 @@ def named(label: str, dimension: str, system: str, key: str = "") -> str:
     """A row's name with the unit behind a comma."""
     unit = unit_label(dimension, system, key)
     return f"{label}, {unit}" if unit else label
+
+
+def settled(values: list[float]) -> list[float]:
+    """The values of one row or account with rounding noise, far below the largest of them, as zero."""
+    largest = max((abs(v) for v in values if math.isfinite(v)), default=0.0)
+    return [0.0 if abs(v) < _NOISE * largest else v for v in values]
 
 
 def walk_blocks(walk: Walk, system: str, referee: bool) -> list[Block]:
@@ -107,7 +117,7 @@ def _stations(walk: Walk, system: str) -> Iterable[Block]:
     for output in (o for o in OUTPUTS if o.where == "station"):
         values = [float(getattr(s, output.key)) for s in walk.station.values()]
         if any(math.isfinite(v) for v in values):
-            cells = (figure(v, output.unit, system, output.key) for v in values)
+            cells = (figure(v, output.unit, system, output.key) for v in settled(values))
             rows.append((named(output.label, output.unit, system, output.key), *cells))
     yield Heading("Stations")
     yield Table(("reached through", *reached.values()), tuple(rows))
@@ -128,7 +138,8 @@ def _composition(walk: Walk, system: str) -> Iterable[Block]:
 def _processes(walk: Walk, system: str) -> Iterable[Block]:
     rows = [("stations", *(f"{p.start} to {p.end}" for p in walk.processes))]
     for key, label, unit in _PROCESS_FIGURES:
-        cells = (figure(p.figures.get(key, math.nan), unit, system) for p in walk.processes)
+        values = settled([float(p.figures.get(key, math.nan)) for p in walk.processes])
+        cells = (figure(v, unit, system) for v in values)
         rows.append((named(label, unit, system), *cells))
     if walk.processes:
         yield Heading("What each process did")
@@ -136,7 +147,9 @@ def _processes(walk: Walk, system: str) -> Iterable[Block]:
 
 
 def _rows(rows: Iterable[Any], system: str) -> Table:
-    cells = ((r.label, figure(r.value, r.unit, system), unit_label(r.unit, system)) for r in rows)
+    rows = tuple(rows)
+    values = settled([float(r.value) for r in rows])
+    cells = ((r.label, figure(v, r.unit, system), unit_label(r.unit, system)) for r, v in zip(rows, values, strict=True))
     return Table(("", "value", "unit"), tuple(cells), left=(2,))
 
 
@@ -169,7 +182,7 @@ def limit_words(limit: Any, system: str) -> str:
     """A limit as a sentence: its state, what is, what is allowed, the margin, and where it matters what would restore it."""
     if limit.state == "not assessed":
         return f"not assessed: {limit.label}: {limit.restore}"
-    actual, allowed = (with_unit(v, limit.unit, system) for v in (limit.actual, limit.allowed))
+    actual, allowed = (with_unit(v, limit.unit, system, _LIMIT_FIGURES.get(limit.key, "")) for v in (limit.actual, limit.allowed))
     bound = "at most" if limit.upper else "at least"
     words = f"{_STATES[limit.state]}: {limit.label}: {actual}, {bound} {allowed}, margin {100 * limit.margin:+.1f} %"
     return words if limit.state == "ok" else f"{words}; to restore it: {limit.restore}"

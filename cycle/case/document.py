@@ -49,7 +49,8 @@ def _apply(document: tomlkit.TOMLDocument, old: Mapping[Path, Any], new: Mapping
             removed.append(path)
         elif not _same(old[path], new[path]):
             _write(body, path, path[-1], new[path])
-    homeless = {path: new[path] for path in added if not _add(body, path, new[path])}
+    leaves = _with_whole_tables({path: new[path] for path in added}, old)
+    homeless = {path: value for path, value in leaves.items() if not _add(body, path, value)}
     for path in removed:
         _remove(body, path)
     return tomlkit.dumps(document) + _new_tables(homeless)
@@ -90,7 +91,23 @@ def _heir(path: Path, added: Iterable[Path]) -> Path | None:
 
 
 def _item(value: Any) -> Item:
+    if isinstance(value, Mapping):
+        table = tomlkit.inline_table()
+        table.update(value)
+        return table
     return tomlkit.string(value, multiline=True) if isinstance(value, str) and "\n" in value else tomlkit.item(value)
+
+
+def _with_whole_tables(added: Mapping[Path, Any], old: Iterable[Path]) -> dict[Path, Any]:
+    """Added leaves, those of a table of mole fractions that is not there yet in one."""
+    there = {path[:2] for path in old if len(path) == 3}
+    found: dict[Path, Any] = {}
+    for path, value in added.items():
+        if len(path) == 3 and path[:2] not in there:
+            found.setdefault(path[:2], {})[path[2]] = value
+        else:
+            found[path] = value
+    return found
 
 
 def _tables(body: Body, names: Path) -> Iterator[tuple[Body, int]]:
@@ -123,8 +140,14 @@ def _write(body: Body, path: Path, name: str, value: Any) -> bool:
     new = _item(value)
     new.trivia.indent, new.trivia.comment_ws = old.trivia.indent, old.trivia.comment_ws
     new.trivia.comment, new.trivia.trail = old.trivia.comment, old.trivia.trail
-    part[index] = (key if key is None or key.key == name else SingleKey(name, sep=key.sep), new)
+    part[index] = (key if key is None or key.key == name else _renamed(key, name), new)
     return True
+
+
+def _renamed(key: Key, name: str) -> Key:
+    """A key spaced like another one."""
+    written = key.as_string()
+    return SingleKey(name, sep=key.sep, original=name + written[len(written.rstrip()) :])
 
 
 def _add(body: Body, path: Path, value: Any) -> bool:
@@ -179,21 +202,7 @@ def _remove(body: Body, path: Path) -> None:
 
 def _new_tables(leaves: Mapping[Path, Any]) -> str:
     """Text of tables that the file does not have yet."""
-    tables: dict[str, dict[str, Any]] = {}
-    for path, value in leaves.items():
-        table = tables.setdefault(path[0], {})
-        if len(path) == 2:
-            table[path[1]] = value
-        else:
-            table.setdefault(path[1], {})[path[2]] = value
-    return "".join(f"\n[{section}]\n{_lines(table)}" for section, table in tables.items())
-
-
-def _lines(table: Mapping[str, Any]) -> str:
-    lines = tomlkit.document()
-    for name, value in table.items():
-        inline = tomlkit.inline_table()
-        if isinstance(value, Mapping):
-            inline.update(value)
-        lines.add(name, inline if isinstance(value, Mapping) else _item(value))
-    return tomlkit.dumps(lines)
+    tables: dict[str, tomlkit.TOMLDocument] = {}
+    for (section, name), value in leaves.items():
+        tables.setdefault(section, tomlkit.document()).add(name, _item(value))
+    return "".join(f"\n[{section}]\n{tomlkit.dumps(lines)}" for section, lines in tables.items())

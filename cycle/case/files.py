@@ -103,14 +103,16 @@ def _trouble(file: str, doing: str, error: OSError) -> CaseError:
 
 def _read(name: str) -> tuple[bytes, float]:
     """Bytes and modification time of a regular file."""
+    allowed = "a file, or - for standard input"
     try:
-        handle = os.open(name, os.O_RDONLY | os.O_NONBLOCK | os.O_CLOEXEC)
-        with os.fdopen(handle, "rb") as stream:
-            status = os.fstat(handle)
+        # without O_NONBLOCK a pipe that nobody writes to would hold the program for ever
+        with open(name, "rb", opener=lambda path, flags: os.open(path, flags | os.O_NONBLOCK)) as stream:
+            status = os.fstat(stream.fileno())
             if not stat.S_ISREG(status.st_mode):
-                what = "a directory" if stat.S_ISDIR(status.st_mode) else "a device or pipe"
-                raise _one(name, "not a case file", what, "a file, or - for standard input")
+                raise _one(name, "not a case file", "a device or pipe", allowed)
             data = stream.read(LARGEST + 1)
+    except IsADirectoryError:
+        raise _one(name, "not a case file", "a directory", allowed) from None
     except OSError as error:
         raise _trouble(name, "read", error) from None
     except ValueError:

@@ -121,7 +121,7 @@ def detachment(mach: ArrayLike, gamma: ArrayLike) -> shocks.Detachment:
     """
     m, g = isentropic.operands(mach, gamma)
     ray = shocks.detachment(m, g).deflection
-    wave_angle = ray
+    wave_angle, step = ray, ray
     for _ in range(_DETACHMENT_ROUNDS):
         wave_angle = _peak_wave(m, ray, g)
         bit = 1.0e-4 * ray
@@ -130,31 +130,30 @@ def detachment(mach: ArrayLike, gamma: ArrayLike) -> shocks.Detachment:
         ray = ray - step
         if not np.any(np.abs(step) > _DETACHMENT_TOLERANCE):
             break
-    return shocks.Detachment(ray, wave_angle)
+    settled = np.abs(step) <= _DETACHMENT_TOLERANCE
+    return shocks.Detachment(np.where(settled, ray, np.nan), np.where(settled, wave_angle, np.nan))
 
 
-def _attached_wave(m: Array, cone: Array, g: Array) -> Array:
-    """A wave angle between the weak and the strong solution; NaN where there is none."""
+def _upper_wave(m: Array, cone: Array, g: Array) -> Array:
+    """A wave angle between the weak and the strong solution, where there are any."""
     wedge = shocks.detachment(m, g)
     # a conical shock turns the stream further behind it, so the wedge's limit is inside the cone's
-    wave_angle = np.where(cone <= wedge.deflection, wedge.wave_angle, np.nan)
+    wave_angle = np.array(wedge.wave_angle)
     beyond = cone > wedge.deflection
-    found = _peak_wave(m[beyond], cone[beyond], g[beyond])
-    attached = _inside(m[beyond], found, cone[beyond], g[beyond]) >= 0.0
-    wave_angle[beyond] = np.where(attached, found, np.nan)
+    wave_angle[beyond] = _peak_wave(m[beyond], cone[beyond], g[beyond])
     return wave_angle
 
 
 def _weak_wave(m: Array, cone: Array, g: Array) -> Array:
-    lowest = mach_angle(m)
-    # a shock inside the cone has no meaning: the search starts outside both
-    lowest = np.maximum(lowest, cone)
-    reach = _attached_wave(m, cone, g) - lowest
+    # the shock lies outside the Mach wave and outside the cone
+    lowest = np.maximum(mach_angle(m), cone)
+    reach = _upper_wave(m, cone, g) - lowest
 
     # the half angle of a weak conical shock goes with the fourth root of its distance from the Mach wave
     def residual(root: Array) -> Array:
         return _inside(m, lowest + reach * root**4, cone, g)
 
+    # a detached cone leaves the residual negative throughout, which has no root: NaN
     root = bracketed(residual, _LEAST_ROOT, np.ones(m.shape), _ROOT_TOLERANCE)
     return lowest + reach * root**4
 

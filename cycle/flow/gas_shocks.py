@@ -45,9 +45,12 @@ def normal_shock(gas: Gas, before: State, velocity: Array) -> Front:
 
 def _turning(gas: Gas, before: State, velocity: Array, angle: Array) -> tuple[Array, Front]:
     """Deflection rad that a wave at `angle` gives, and the flow behind it."""
-    normal = normal_shock(gas, before, velocity * np.sin(angle))
+    across = velocity * np.sin(angle)
+    normal = normal_shock(gas, before, across)
     along = velocity * np.cos(angle)
-    turned = angle - np.arctan2(normal.velocity, along)
+    # a wave this close to a Mach wave turns nothing, and its jump is lost to rounding
+    wave = across < before.sound_speed * (1.0 + 1e-7)
+    turned = np.where(wave, 0.0, angle - np.arctan2(normal.velocity, along))
     return turned, Front(normal.state, np.hypot(normal.velocity, along), angle, normal.attached)
 
 
@@ -77,7 +80,7 @@ def oblique_shock(gas: Gas, before: State, velocity: Array, deflection: Array, s
         edge = (
             np.full_like(mach, 0.5 * np.pi)
             if strong
-            else np.arcsin(np.minimum(1.0, 1.0 / mach)) * (1.0 + 1e-12)
+            else np.arcsin(np.minimum(1.0, 1.0 / mach))
         )
         angle = roots.bracketed(
             lambda b: _turning(gas, before, velocity, b)[0] - deflection, edge, at_most, 1e-14

@@ -63,7 +63,7 @@ def bracketed(function: Valued, lower: ArrayLike, upper: ArrayLike, tolerance: f
     tolerance: half-width of the final bracket relative to the root, 1 (a root at zero: relative to `tolerance`
     times the first bracket).
     Returns (N,), the root; NaN without a change of sign or where an input is NaN.
-    Source: T. R. Chandrupatla, Advances in Engineering Software 28 (1997) 145.
+    Source: T. R. Chandrupatla, Advances in Engineering Software 28 (1997) 145 (from memory).
     """
     a, b = _common(upper, lower)
     fa, fb = function(a), function(b)
@@ -107,7 +107,7 @@ def peak(function: Valued, lower: ArrayLike, upper: ArrayLike, width: float) -> 
     function: x (N,) -> value (N,), one peak between `lower` and `upper`, (N,). width: final interval as a
     fraction of the first, 1; the place of a smooth peak is not known better than about 1e-8 of its scale.
     Returns (N,), the place; NaN where an input is NaN.
-    Source: J. Kiefer, Proceedings of the American Mathematical Society 4 (1953) 502.
+    Source: J. Kiefer, Proceedings of the American Mathematical Society 4 (1953) 502 (from memory).
     """
     low, high = _common(lower, upper)
     left, right = high - _GOLDEN * (high - low), low + _GOLDEN * (high - low)

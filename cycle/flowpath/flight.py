@@ -111,7 +111,9 @@ def flight(setting: Setting) -> Step:
     state = gas.at("tp", T, p)
     u = _speed(setting, state)
     flow = state.density * u * setting["engine.capture_area"]
-    return Step(stream(gas, state, u, flow), Process("flight", "0", "0"), status_of(state, (~placed, "no-altitude")))
+    standard = setting.choices["flight.place"] != "pressure"
+    figures = {"altitude": atmosphere.altitude_of_pressure(p)} if standard else {}
+    return Step(stream(gas, state, u, flow), Process("flight", "0", "0", figures), status_of(state, (~placed, "no-altitude")))
 
 
 def entry(setting: Setting) -> Step:

@@ -128,6 +128,7 @@ class FirstGuess:
         self.kernel, self.kind, self.gas, self.targets, self.start = kernel, kind, gas, targets, start
 
     def __call__(self, points: slice) -> Columns:
+        """Columns of a slice of the points."""
         basis, inert, targets = self.gas.basis[:, points], self.gas.inert[:, points], self.targets[:, points]
         named = dict(zip(CLOSURES[self.kind].targets, targets, strict=True))
         guess = Guess(self.kernel, basis, inert)

@@ -33,6 +33,9 @@ DATA_FILE = Path(__file__).with_name("species.json")
 COLDEST, LOWEST, MIDDLE, HIGHEST = 150.0, 200.0, 1000.0, 6000.0
 """Limits of the data, K: held heat capacity from, polynomials from, joint of the two ranges, end."""
 
+ROUNDING = 1e-12
+"""Relative slack of these limits: T comes out of an iteration in ln T."""
+
 REACTING = (
     "N2", "O2", "CO2", "CO", "H2O", "H2", "OH", "H", "O", "N", "NO", "NO2", "N2O", "HO2", "H2O2",
     "CH4", "NH3", "HCN", "C2H2", "C2H4",
@@ -101,8 +104,9 @@ def temperature_functions(temperature: Array, out: Array | None = None) -> Array
 
 def range_of(temperature: Array) -> Codes:
     """Range code of each temperature (N,), K: inside 200-6000 K, extrapolated down to 150 K, else out of range."""
-    inside = (temperature >= LOWEST) & (temperature <= HIGHEST)
-    held = (temperature >= COLDEST) & (temperature < LOWEST)
+    at_least = 1.0 - ROUNDING
+    inside = (temperature >= LOWEST * at_least) & (temperature <= HIGHEST / at_least)
+    held = (temperature >= COLDEST * at_least) & ~inside & (temperature < LOWEST)
     return np.where(inside, INSIDE, np.where(held, EXTRAPOLATED, OUT_OF_RANGE))
 
 

@@ -114,8 +114,8 @@ def test_one_call_gives_what_its_points_give() -> None:
 
 
 def test_without_a_solution_there_is_no_value() -> None:
-    m = np.array([2.0, 2.0, 2.0, 0.9, np.nan, 1.0])
-    half_angle = np.radians([60.0, 0.0, -5.0, 10.0, 10.0, 10.0])
+    m = np.array([2.0, 2.0, 2.0, 2.0, 0.9, np.nan, 1.0])
+    half_angle = np.radians([60.0, 0.2, 0.0, -5.0, 10.0, 10.0, 10.0])
     for part in cone.cone_flow(m, half_angle, 1.4):
         assert np.isnan(part).all()
     assert np.isnan(cone.detachment(0.9, 1.4).deflection)

@@ -68,6 +68,55 @@ velocity_coefficient = 0.985
 capture_area = "0.4 m^2"
 """
 
+RAMJET = """\
+format = 1
+title = "invented kerosene ramjet"
+
+[flight]
+mach = 3.0
+altitude = "18 km"
+
+[inlet]
+total_pressure_recovery = 0.7
+exit_mach = 0.25
+
+[fuel]
+name = "kerosene"
+
+[combustor]
+process = "pressure-loss"
+pressure_ratio = 0.95
+equivalence_ratio = 0.5
+
+[nozzle]
+throat = "sized"
+ideal = true
+"""
+RIG = """\
+format = 1
+title = "invented direct-connect rig in vitiated air"
+
+[entry]
+station = "3"
+mach = 2.4
+pressure = "100 kPa"
+temperature = "1100 K"
+area = "60 cm^2"
+
+[air]
+mole_fractions = { N2 = 0.6, O2 = 0.21, H2O = 0.19 }
+
+[fuel]
+formula = "C2H4"
+phase = "gas"
+formation_enthalpy = "52.4 kJ/mol"
+vapour_specific_heat = "1.6 kJ/(kg K)"
+
+[combustor]
+process = "constant-pressure"
+equivalence_ratio = 0.2
+"""
+
 
 def environment(folder: Path, **more: str) -> dict[str, str]:
     """The environment of a child: the package found from anywhere, its state in `folder`."""

@@ -11,7 +11,7 @@ from pathlib import Path
 import pytest
 
 from cycle.quantities import OUTPUTS
-from tests.tui.command_support import CHOKED, HOT, QUICK, ROOT, written
+from tests.tui.command_support import CHOKED, HOT, QUICK, RAMJET, RIG, ROOT, written
 from tui.commands import main
 from tui.tables import columns
 
@@ -24,7 +24,7 @@ PARTS = ["format", "case", "status", "mode", "stations", "performance", "losses"
 @pytest.fixture
 def folder(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> Path:
     monkeypatch.chdir(tmp_path)
-    return written(tmp_path, quick=QUICK, hot=HOT, choked=CHOKED)
+    return written(tmp_path, quick=QUICK, hot=HOT, choked=CHOKED, ramjet=RAMJET, rig=RIG)
 
 
 def output(capsys: pytest.CaptureFixture[str], *arguments: str, status: int = 0) -> str:
@@ -56,6 +56,15 @@ def test_text_shows_every_part_of_the_walk(capsys: pytest.CaptureFixture[str], f
     assert burnt.split() == ["combustor.burnt_fraction", "0.92"]
 
 
+@pytest.mark.parametrize("units", ["si", "us"])
+@pytest.mark.parametrize(("name", "mode"), [("ramjet", "ramjet-critical"), ("rig", "rig"), ("hot", "scramjet")])
+def test_every_kind_of_engine_fits_80_columns(capsys: pytest.CaptureFixture[str], folder: Path, name: str, mode: str, units: str) -> None:
+    text = output(capsys, "solve", f"{name}.toml", "--units", units)
+    assert f"Mode {mode}" in text
+    assert max(map(columns, text.splitlines())) <= 80
+    assert "nan" not in text.split()
+
+
 def test_figures_of_the_text_are_those_of_the_json(capsys: pytest.CaptureFixture[str], folder: Path) -> None:
     text = output(capsys, "solve", "quick.toml")
     walk = json.loads(output(capsys, "solve", "quick.toml", "--format", "json"))
@@ -74,7 +83,7 @@ def test_us_units_convert_and_label(capsys: pytest.CaptureFixture[str], folder: 
     assert [float(x) for x in row[2:]] == pytest.approx([1.8 * T for T in kelvin], rel=5e-4)
 
 
-@pytest.mark.parametrize(("name", "status"), [("hot", 0), ("quick", 0), ("choked", 3)])
+@pytest.mark.parametrize(("name", "status"), [("hot", 0), ("quick", 0), ("choked", 3), ("ramjet", 0), ("rig", 0)])
 def test_json_has_the_keys_of_the_contract_and_no_nan(capsys: pytest.CaptureFixture[str], folder: Path, name: str, status: int) -> None:
     text = output(capsys, "solve", f"{name}.toml", "--format", "json", status=status)
     walk = json.loads(text, parse_constant=lambda constant: pytest.fail(f"{constant} in the JSON"))

@@ -12,7 +12,7 @@ from cycle.errors import CaseError
 from tui import figures, items, session
 from tui.engine import Engine
 from tui.journal import Journal
-from tui.session import Change, Session
+from tui.session import SOLVING, Change, Session
 
 PAINT_EVERY = 0.25
 """Seconds between two paints while a step key is held."""
@@ -111,22 +111,27 @@ class Desk(Screen[None], inherit_bindings=False):
         case = self.session.case
         if case is None:
             return
-        self.engine.solve(self.session.generation, lambda: figures.solve(case))
+        self.engine.newest("solve", self.session.generation, lambda: figures.solve(case))
         if self._slow is not None:
             self._slow.stop()
         self._slow = self.set_timer(SLOW, self._announce)
 
     def _announce(self) -> None:
-        if self.session.solved != self.session.generation and not self.session.note:
-            self.put(replace(self.session, note="solving ... the figures are of the inputs before"))
+        found = self.session.figures
+        waits = not self.session.settled or (found is not None and not found.assessed)
+        if waits and not self.session.note:
+            self.put(replace(self.session, note=SOLVING))
 
     def came(self, generation: int, found: figures.Figures) -> None:
-        """Take a walk that the worker solved; a stale one is dropped. While a key is held, paints are spaced."""
+        """Take a walk that the worker solved or assessed; a stale one is dropped. A solved one is assessed next. While
+        a key is held, paints are spaced."""
         new = session.with_figures(self.session, generation, found)
         if new is self.session:
             return
         self.session = new
-        if self._slow is not None:
+        if not found.assessed:
+            self.engine.newest("assess", generation, lambda: figures.assess(found))
+        elif self._slow is not None:
             self._slow.stop()
         wait = self._painted + PAINT_EVERY - monotonic()
         if self._rapid and wait > 0.0:

@@ -114,7 +114,7 @@ class Editing(Desk, inherit_bindings=False):
     def _present(self, key: str) -> float:
         """Value of an input in the present walk, nan where it is not known."""
         found = self.session.figures
-        fresh = found is not None and found.solved and self.session.solved == self.session.generation
+        fresh = found is not None and found.solved and self.session.settled
         return PRESENT[key](found) if fresh and found is not None and key in PRESENT else NAN
 
     def _switch(self, group: str, tag: str | None) -> None:

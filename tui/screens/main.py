@@ -25,6 +25,10 @@ from tui.widgets.panel import Panel
 
 NEEDS_NO_CASE = ("leave", "help", "suspend", "redraw", "units")
 
+WIDTHS: list[tuple[int, str]] | None = [(0, "-narrow"), (112, "-wide")]
+HEIGHTS: list[tuple[int, str]] | None = [(0, "-tiny"), (12, "-short"), (24, "-plain"), (34, "-tall")]
+"""Columns and lines from which the screen has a class of its style sheet."""
+
 
 class MainScreen(Editing, Filing, inherit_bindings=False):
     """Renders the session and sends every action to its handler `do_<name>`."""
@@ -32,10 +36,11 @@ class MainScreen(Editing, Filing, inherit_bindings=False):
     BINDINGS: ClassVar[list[BindingType]] = [
         Binding(",".join(a.keys), f"do('{a.name}')", a.help, show=bool(a.label), id=a.name) for a in ACTIONS
     ]
-    HORIZONTAL_BREAKPOINTS: ClassVar[list[tuple[int, str]]] = [(0, "-narrow"), (112, "-wide")]
-    VERTICAL_BREAKPOINTS: ClassVar[list[tuple[int, str]]] = [(0, "-tiny"), (12, "-short"), (24, "-plain"), (34, "-tall")]
-    CSS = """
-    MainScreen { layout: vertical; }
+    HORIZONTAL_BREAKPOINTS = WIDTHS
+    VERTICAL_BREAKPOINTS = HEIGHTS
+    SCOPED_CSS = False
+    DEFAULT_CSS = """
+    MainScreen { layout: vertical; overflow: hidden; }
     #middle { height: 1fr; }
     #side { width: 40; display: none; }
     .-wide #side { display: block; }
@@ -85,7 +90,7 @@ class MainScreen(Editing, Filing, inherit_bindings=False):
         HANDLERS[result.kind](self, result)
 
     def walked(self, result: Result) -> None:
-        """A solve came back."""
+        """A solve or an assessment came back."""
         self.came(result.generation, result.value)
 
     def refereed(self, result: Result) -> None:
@@ -149,7 +154,8 @@ class MainScreen(Editing, Filing, inherit_bindings=False):
         self._move(self._page())
 
     def _page(self) -> int:
-        return max(1, self.query_one("#table", Panel).size.height - 2)
+        height = self.query_one("#table", Panel).size.height
+        return max(1, height - table.heads(height))
 
     def do_focus(self) -> None:
         """Between the table and the inputs."""
@@ -171,7 +177,7 @@ class MainScreen(Editing, Filing, inherit_bindings=False):
     def do_referee(self) -> None:
         """Ask the referee about the present walk."""
         found = self.session.figures
-        if found is None or not found.solved or self.session.solved != self.session.generation:
+        if found is None or not found.solved or not self.session.settled:
             self.put(replace(self.session, note="no solved walk of these inputs to referee"))
             return
         self.engine.do("referee", self.session.generation, lambda: figures.referee(found))
@@ -204,6 +210,7 @@ HANDLERS: dict[str, Callable[[MainScreen, Result], None]] = {
     "replay": MainScreen.was_replayed,
     "write": MainScreen.was_written,
     "solve": MainScreen.walked,
+    "assess": MainScreen.walked,
     "referee": MainScreen.refereed,
 }
 """Kind of a job -> what takes its result."""

@@ -74,9 +74,15 @@ def _headline(session: Session, found: Figures, columns: int) -> Line:
     keys = performance_keys(session)
     for digits, by_name in ((3, True), (2, True), (2, False)):
         pairs = [_figure(session, found, key, digits, by_name) for key in keys]
-        if sum(len(words) + len(change) + 2 for words, change in pairs) - 2 <= columns:
+        if _length(pairs) <= columns:
             break
+    while len(pairs) > 1 and _length(pairs) > columns:
+        pairs.pop()
     return line(*(piece for words, change in pairs for piece in ((words, BOLD), (change + "  ", PLAIN))))
+
+
+def _length(pairs: list[tuple[str, str]]) -> int:
+    return sum(len(words) + len(change) + 2 for words, change in pairs) - 2
 
 
 def _figure(session: Session, found: Figures, key: str, digits: int, by_name: bool) -> tuple[str, str]:
@@ -111,8 +117,8 @@ def _names(margins: tuple[Margin, ...], state: str) -> str:
 def _limits(session: Session, columns: int) -> Line:
     """Over, near and not assessed limits in words, the audit, the referee; long lists are counted, not cut."""
     found = session.figures
-    if found is None:
-        return line("limits not assessed yet")
+    if found is None or not found.audit:
+        return line("limits and audit not assessed yet")
     over, near = _names(found.limits, "over"), _names(found.limits, "near")
     unknown = _names(found.limits, "not assessed")
     count = sum(m.state == "not assessed" for m in found.limits)

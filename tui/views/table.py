@@ -24,7 +24,7 @@ ROWS = (*LEADING, *(k for k in STATION_KEYS if k not in LEADING))
 
 NAMES = {"mach": "Mach", "area_ratio": "area / A0", "thrust_potential": "potential"}
 SYMBOLS = ("pressure", "temperature", "velocity", "total_pressure", "total_temperature")
-LABEL, LEAST, MOST = 21, 9, 12
+LEAST, MOST = 9, 12
 
 
 def columns(session: Session) -> tuple[str, ...]:
@@ -63,28 +63,33 @@ def _shown_columns(session: Session, room: int) -> tuple[tuple[str, ...], int]:
     return every[start : start + fit_in], max(1, min(MOST, room // fit_in))
 
 
-def first_row(session: Session, height: int) -> int:
-    """The first row shown, so that the one under the cursor is in sight."""
-    body = max(1, height - 2)
+def heads(height: int) -> int:
+    """Lines of heads in a height: the processes are left out where it is short."""
+    return 2 if height > 3 else 1
+
+
+def first_row(session: Session, body: int) -> int:
+    """The first row shown of `body` rows, so that the one under the cursor is in sight."""
     if session.row < body:
         return 0
     return min(session.row - body + 1, max(0, len(ROWS) - body))
 
 
 def lines(session: Session, wide: int, height: int) -> list[Line]:
-    """Two lines of heads and as many rows as the height allows."""
-    shown, column = _shown_columns(session, wide - min(LABEL, wide // 2))
-    room = min(LABEL, wide // 2)
-    top = first_row(session, height)
-    keys = ROWS[top : top + max(0, height - 2)]
+    """Heads and as many rows as the height allows."""
+    room = min(21 if wide < 100 else 28, wide // 2)
+    shown, column = _shown_columns(session, wide - room)
+    body = max(1, height - heads(height))
+    top = first_row(session, body)
+    keys = ROWS[top : top + body]
     where = f"station   rows {top + 1}-{top + len(keys)}/{len(ROWS)}" if len(keys) < len(ROWS) else "station"
     if session.view:
         where = VIEWS[session.view].replace("against the pin", "vs pin")
-    heads: list[Line] = [
+    head: list[Line] = [
         line(("reached through".ljust(room), DIM), *((_head(_reached(session, s), column), DIM) for s in shown)),
         line((fit(where, room).ljust(room), PLAIN), *_stations(session, shown, column)),
     ]
-    return [*heads, *(_row(session, i + top, k, shown, column, room) for i, k in enumerate(keys))][:height]
+    return [*head[-heads(height) :], *(_row(session, i + top, k, shown, column, room) for i, k in enumerate(keys))][:height]
 
 
 def _head(text: str, column: int) -> str:
