@@ -52,8 +52,7 @@ def totals(march: March, names: tuple[str, ...]) -> dict[str, State]:
     """Stagnation state at each of the stations `names`, of the points that reached it."""
     records = march.stations()
     requests = [
-        Request(r.stream.gas, (r.stream.total_enthalpy, r.stream.state.entropy), r.stream.state)
-        for r in (records[n] for n in names)
+        Request(r.stream.gas, (r.stream.total_enthalpy, r.stream.state.entropy), r.stream.state) for r in (records[n] for n in names)
     ]
     return dict(zip(names, solve_together("hs", requests), strict=True))
 
@@ -62,8 +61,7 @@ def criticals(march: March, names: tuple[str, ...]) -> dict[str, State]:
     """Sonic state of the stream at each of the stations `names`, of the points that reached it."""
     records = march.stations()
     requests = [
-        Request(r.stream.gas, (r.stream.total_enthalpy, r.stream.state.entropy), r.stream.state)
-        for r in (records[n] for n in names)
+        Request(r.stream.gas, (r.stream.total_enthalpy, r.stream.state.entropy), r.stream.state) for r in (records[n] for n in names)
     ]
     return dict(zip(names, apply_together(states.sonic, requests), strict=True))
 

@@ -16,6 +16,7 @@ DATUM = ("enthalpy", "total_enthalpy", "entropy", "thrust_potential")
 """Figures whose zero is a convention or whose value at the first station is zero: compared by difference, not by ratio."""
 
 _GAS_DATUM = DATUM[:3]
+_FLOW = ("0", "1", "2", "3", "4", "5", "9", "10")  # stations in the order of the flow
 
 
 @dataclass(frozen=True, slots=True)
@@ -94,7 +95,7 @@ def _datums(sides: Iterable[Side]) -> int:
 def station_names(sides: Iterable[Side]) -> tuple[str, ...]:
     """Stations that any side has, in the order of the flow."""
     names = {name for side in sides for name in side.walk["stations"]}
-    return tuple(sorted(names, key=lambda n: (int(n) if n.isdigit() else math.inf, n)))
+    return tuple(sorted(names, key=lambda n: (_FLOW.index(n) if n in _FLOW else len(_FLOW), n)))
 
 
 def _figures(outputs: Iterable[Output], station: str, tables: Sequence[Json]) -> list[Figure]:
@@ -118,9 +119,6 @@ def _notes(sides: Sequence[Side]) -> Iterable[str]:
         yield "The walks were computed with different species data: " + _each(sides, lambda s: s.species_data[:12]) + "."
     if _datums(sides) > 1:
         yield "Enthalpy and entropy are not compared: constant gamma has a datum of its own."
-    modes = {(s.walk["status"], s.walk["mode"]) for s in sides}
-    if len(modes) > 1:
-        yield "The walks differ in status or mode: " + _each(sides, lambda s: f"{s.walk['status']}, {s.walk['mode']}") + "."
     for side in sides:
         if side.walk["status"] != "solved":
             yield f"{side.name} has no solution: {side.walk.get('reason') or side.walk['status']}"

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Callable, Mapping
+from functools import partial
 
 import numpy as np
 
@@ -43,8 +44,8 @@ _OWN: dict[str, Callable[[Stream], Array]] = {
 
 def cheap(stream: Stream) -> dict[str, Callable[[], Array]]:
     """Station figures that need no further state, of the stream's own points."""
-    own = {name: (lambda f=f: f(stream)) for name, f in _OWN.items()}
-    return {name: (lambda n=name: getattr(stream.state, n)) for name in _STATE} | own
+    state = {name: partial(getattr, stream.state, name) for name in _STATE}
+    return {**state, **{name: partial(f, stream) for name, f in _OWN.items()}}
 
 
 def fractions(stream: Stream) -> Array:

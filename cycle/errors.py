@@ -73,7 +73,7 @@ class CaseError(DuctwalkError):
     def __str__(self) -> str:
         lines = [str(fault) for fault in self.faults[:MOST_FAULTS]]
         if len(self.faults) > MOST_FAULTS:
-            lines.append(f"... and {len(self.faults) - MOST_FAULTS} more")
+            lines.append(f"... and at least {len(self.faults) - MOST_FAULTS} more")
         return "\n".join(lines)
 
 

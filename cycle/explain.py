@@ -184,6 +184,8 @@ def _term(symbol: str, walk: Walk, where: str) -> Term | None:
 
 def _at_station(symbol: str, walk: Walk) -> Term | None:
     names = tuple(walk.station)
+    if not names:
+        return None
     places = {name: name for name in names} | {"_entry": names[0], "_end": names[-1]}
     for suffix in sorted(places, key=len, reverse=True):
         output = _STATION.get(symbol.removesuffix(suffix))

@@ -41,7 +41,9 @@ class Figures(Mapping[str, Any]):
 class Station(Figures):
     """The figures of one station; `mole_fractions` by species, each a float or an array; empty at constant gamma."""
 
-    def __init__(self, source: Mapping[str, Callable[[], Array]], shape: tuple[int, ...], fractions: Callable[[], Mapping[str, Array]]) -> None:
+    def __init__(
+        self, source: Mapping[str, Callable[[], Array]], shape: tuple[int, ...], fractions: Callable[[], Mapping[str, Array]]
+    ) -> None:
         super().__init__(source, shape)
         self._fractions = fractions
 

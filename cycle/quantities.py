@@ -317,9 +317,9 @@ LATER: dict[str, str] = {
     "combustor.burning_theta": "the duct march is not in this version",
     "combustor.wall_temperature": "a wall temperature needs the duct march, which is not in this version; state wall_heat",
     "nozzle.chemistry=frozen-after": "freezing after a station is not in this version; use frozen or shifting",
-    "nozzle.throat_area": "matching a given throat is not in this version; use throat = \"sized\"",
+    "nozzle.throat_area": 'matching a given throat is not in this version; use throat = "sized"',
     "engine.mode=thermal-throat": "engine modes are not in this version; use auto or supersonic",
-    "engine.mode=geometric-throat": "engine modes are not in this version; use auto with nozzle.throat = \"sized\"",
+    "engine.mode=geometric-throat": 'engine modes are not in this version; use auto with nozzle.throat = "sized"',
 }
 """Keys, tables and choices of the file format that this version refuses, with the line that says what to do."""
 

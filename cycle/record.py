@@ -130,8 +130,10 @@ def _audit(walk: Walk) -> Json:
 def _referee(walk: Walk, asked: bool) -> Json:
     if not asked:
         return {"asked": False, "words": "not asked"}
-    referee = walk.referee()
-    return {"asked": True, "words": referee.words, "worst": _number(referee.worst), "rows": [_row(r) for r in referee.rows]}
+    report = walk.referee()
+    figures = ("temperature", "mole_fraction", "sound_speed")
+    rows = [{"where": row.where, **{key: _number(getattr(row, key)) for key in figures}} for row in report.rows]
+    return {"asked": True, "words": report.words, "agrees": report.agrees, "compared": report.compared, "rows": rows}
 
 
 def stored(walk: Walk, version: str, referee: bool = False) -> Json:

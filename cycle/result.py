@@ -9,7 +9,9 @@ from typing import TYPE_CHECKING, Any
 
 import numpy as np
 
-from cycle import account, audit, emit, limits
+from cycle import account, emit
+from cycle import audit as auditing
+from cycle import limits as margins
 from cycle.account import spread, usable
 from cycle.arrays import Array, ArrayLike
 from cycle.figures import Figures, Station, shaped
@@ -21,7 +23,7 @@ from cycle.walk import March, Record, march
 
 if TYPE_CHECKING:
     from cycle.case import Case
-    from cycle.gas.referee import Report
+    from cycle.referee import Report
 
 PERFORMANCE = tuple(o.key for o in OUTPUTS if o.where == "performance")
 
@@ -137,7 +139,7 @@ class Walk:
         name = STATUS_NAMES[code]
         words = f"{self.march.chain[self.march.failed[point]]}: {STATUSES[name]}"
         if name == "choked" and self.shape == ():
-            label, _ = limits.heat_words(self.march.setting)
+            label, _ = margins.heat_words(self.march.setting)
             if np.isfinite(self._largest):
                 return f"{words}; largest {label} here {self._largest:.4g}"
         return words
@@ -321,12 +323,12 @@ class Walk:
 
     @cached_property
     def _largest(self) -> float:
-        key = limits.heat_key(self.march.setting)
+        key = margins.heat_key(self.march.setting)
         bound = INPUT[key]
         assert bound.upper is not None
         if "3" not in self._records:
             return np.nan
-        return limits.largest_heat(self.march, min(bound.upper, _SEARCH[key]))
+        return margins.largest_heat(self.march, min(bound.upper, _SEARCH[key]))
 
     def largest_heat(self) -> float:
         """Largest value of the heat input before thermal choking, SI; NaN where nothing chokes. One point only."""
@@ -338,11 +340,11 @@ class Walk:
     def limits(self) -> tuple[Limit, ...]:
         """All limits with their margins; for one point the largest heat before choking is solved for."""
         largest = self._largest if self.shape == () else None
-        return tuple(self._limit(row) for row in limits.limits(self.march, largest))
+        return tuple(self._limit(row) for row in margins.limits(self.march, largest))
 
-    def _limit(self, row: limits.Limit) -> Limit:
+    def _limit(self, row: margins.Limit) -> Limit:
         margin = row.margin
-        state = self._words([limits.state_of(float(m)) for m in margin])
+        state = self._words([margins.state_of(float(m)) for m in margin])
         unassessed = bool(np.all(np.isnan(margin)))
         words = row.missing or "no value at this station" if unassessed else row.restore
         return Limit(
@@ -350,7 +352,7 @@ class Walk:
             row.unit, row.upper, words, row.input,
         )  # fmt: skip
 
-    def emitted(self) -> audit.Emitted:
+    def emitted(self) -> auditing.Emitted:
         """The figures that the audit reads, of the solved points."""
         return emit.emitted(self.march, self._performance)
 
@@ -359,21 +361,21 @@ class Walk:
         """Residuals of mass, momentum, energy, elements and second law, recomputed from the emitted figures."""
         return self.judge(self.emitted())
 
-    def judge(self, emitted: audit.Emitted) -> Audit:
+    def judge(self, emitted: auditing.Emitted) -> Audit:
         """The audit of given figures: of this walk's own, or of changed ones in a test of the audit."""
         points = emit.audited_points(self.march)
         if not points.size:
             nothing = Residual("nothing emitted", "", 0.0)
             return Audit(True, (), nothing)
-        found = audit.check(emitted)
+        found = auditing.check(emitted)
         worst = max(found, key=lambda r: float(np.max(r.value)) if np.all(np.isfinite(r.value)) else np.inf)
         rows = tuple(Residual(r.law, r.where, shaped(spread(self.march, points, r.value), self.shape)) for r in found)
         top = float(np.max(worst.value))
-        return Audit(top <= audit.LIMIT, rows, Residual(worst.law, worst.where, top))
+        return Audit(top <= auditing.LIMIT, rows, Residual(worst.law, worst.where, top))
 
     def referee(self) -> Report:
         """The states of this walk recomputed by Cantera from their (h, p) or (s, p); slow. Empty at constant gamma."""
-        from cycle.gas.referee import report
+        from cycle.referee import report
 
         return report(self.march)
 

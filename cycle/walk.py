@@ -7,6 +7,7 @@ from __future__ import annotations
 
 from collections.abc import Callable
 from dataclasses import dataclass
+from functools import partial
 
 import numpy as np
 
@@ -118,12 +119,16 @@ def march(setting: Setting) -> March:
     """Walk every point of `setting` as far as it goes."""
     entering = {"flight": flight.flight, "entry": flight.entry}[setting.choices["start"]]
     walked = _Walked(setting)
-    walked.take("flight" if setting.choices["start"] == "flight" else "entry", lambda s: entering(s))
+    walked.take(setting.choices["start"], entering)
     for name, part in _parts(setting):
-        walked.take(name, lambda s, part=part: part(walked.stream, s))
+        walked.take(name, partial(_continue, walked, part))
     if setting.choices["nozzle.exit"] != "absent":
         walked.take("nozzle", lambda s: nozzle.nozzle(walked.stream, s, walked.ambient()))
     return walked.march()
+
+
+def _continue(walked: _Walked, part: Part, setting: Setting) -> Step | None:
+    return part(walked.stream, setting)
 
 
 class _Walked:

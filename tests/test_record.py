@@ -44,6 +44,16 @@ def test_figures_are_those_of_the_walk() -> None:
     assert sum(row["value"] for row in found["potentials"][:-1]) == pytest.approx(walk.performance.thrust, rel=1e-9)
 
 
+def test_the_referee_is_heard_where_asked() -> None:
+    found = record(cycle.solve(cycle.loads(HOT)), referee=True)["referee"]
+    assert (found["asked"], found["agrees"]) == (True, True)
+    assert [row["where"] for row in found["rows"]] == [f"station {name}" for name in ("0", "2", "3", "4", "10")]
+    # The referee's own bar on temperatures: the two solvers differ by their tolerances only.
+    assert all(row["temperature"] < 1e-4 for row in found["rows"])
+    closed = record(cycle.solve(cycle.loads(QUICK)), referee=True)["referee"]
+    assert (closed["compared"], closed["rows"]) == (0, [])
+
+
 def test_defaults_are_listed() -> None:
     defaults = record(cycle.solve(cycle.loads(QUICK)))["defaults"]
     assert "fuel.temperature" in defaults

@@ -8,9 +8,10 @@ from __future__ import annotations
 import argparse
 import difflib
 import os
+import shlex
 import sys
 from collections.abc import Callable, Iterable, Sequence
-from typing import NoReturn
+from typing import Any, NoReturn
 
 from cycle.errors import CaseError, DuctwalkError, Fault
 from tui import crash
@@ -31,8 +32,8 @@ class UsageError(DuctwalkError):
 class _Parser(argparse.ArgumentParser):
     """A parser whose faults are one line and say which option was probably meant."""
 
-    def __init__(self, **options: object) -> None:
-        super().__init__(**{**options, "allow_abbrev": False})  # type: ignore[arg-type]
+    def __init__(self, **options: Any) -> None:
+        super().__init__(allow_abbrev=False, **options)
 
     def error(self, message: str) -> NoReturn:
         raise UsageError(f"{self.prog}: {message}; see {self.prog} --help")
@@ -216,8 +217,10 @@ def _screen(name: str | None) -> int:
         from tui.app import run
 
         return run(path)
-    tell(f"no screen here; to open it run '{PROGRAM} {path}' in a terminal (TERM other than dumb)")
-    return _parsed(["solve", path])
+    status = _parsed(["solve", path])
+    if status != BAD_INPUT and path != STANDARD_INPUT:
+        tell(f"no screen here; to open it run '{PROGRAM} {shlex.quote(path)}' in a terminal (TERM other than dumb)")
+    return status
 
 
 def _has_terminal() -> bool:

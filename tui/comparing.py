@@ -60,7 +60,7 @@ def _status(side: Side) -> int:
 def comparison_blocks(found: Comparison, system: str) -> list[Block]:
     """The comparison as blocks. system: "si" or "us"."""
     letters = _LETTERS[: len(found.sides)]
-    blocks: list[Block] = [Heading("Comparison", 1), Table(("", "walk", "title", "mode"), tuple(_legend(found)), left=(1, 2, 3))]
+    blocks: list[Block] = [Heading("Comparison", 1), Lines(tuple(_legend(found)))]
     blocks += [Lines(found.notes)] if found.notes else []
     blocks += [Heading("Inputs that differ"), _settings(found.settings, letters, system)]
     blocks += [Heading("Performance"), _headline(found.headline, letters, system)]
@@ -69,10 +69,10 @@ def comparison_blocks(found: Comparison, system: str) -> list[Block]:
     return [*blocks, Heading("Caution"), Lines((CAUTION,))]
 
 
-def _legend(found: Comparison) -> Iterable[tuple[str, ...]]:
+def _legend(found: Comparison) -> Iterable[str]:
     for letter, side in zip(_LETTERS, found.sides, strict=False):
         mode = side.walk["mode"] if side.walk["status"] == "solved" else side.walk["status"]
-        yield letter, side.name, str(side.walk["case"].get("title", "")), mode
+        yield f"{letter}: {side.name}: {side.walk['case'].get('title', '')}; {mode}"
 
 
 def _settings(settings: Iterable[Setting], letters: str, system: str) -> Block:

@@ -112,12 +112,13 @@ def _store(path: str, outcomes: Iterable[Outcome], referee: bool) -> None:
 
 def _plain_form(render: Callable[..., str]) -> Callable[[Iterable[Outcome], int, argparse.Namespace], None]:
     def write_form(outcomes: Iterable[Outcome], count: int, options: argparse.Namespace) -> None:
-        for i, found in enumerate(outcomes):
+        gap = ""
+        for found in outcomes:
             if found.walk is None:
                 continue
-            page = render(walk_blocks(found.walk, options.units, options.referee))
-            if not emit(("\n\n" if i else "") + page):
+            if not emit(gap + render(walk_blocks(found.walk, options.units, options.referee))):
                 return
+            gap = "\n\n"
 
     return write_form
 
@@ -141,7 +142,7 @@ def _csv_form(outcomes: Iterable[Outcome], count: int, options: argparse.Namespa
     heads = [f"{o.key} ({label})" if label else o.key for o, (label, _, _) in zip(outputs, units, strict=True)]
     writer.writerow(["case", "status", "mode", "station", *heads, *(f"mole_fraction {x}" for x in species)])
     for name, walk in records:
-        for station, values in walk.get("stations", {"": {}}).items():
+        for station, values in (walk.get("stations") or {"": {}}).items():
             cells = [_cell(values.get(o.key), unit) for o, unit in zip(outputs, units, strict=True)]
             shares = [values.get("mole_fractions", {}).get(x) for x in species]
             writer.writerow([name, walk["status"], walk.get("mode", ""), station, *cells, *shares])

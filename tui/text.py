@@ -194,7 +194,8 @@ _STATES = {"ok": "ok", "near": "near", "over": "OVER"}
 def _checks(walk: Walk, referee: bool) -> Iterable[Block]:
     sentences = [audit_words(walk)]
     if referee:
-        sentences.append(f"Referee: {walk.referee().words}")
+        words = walk.referee().words
+        sentences.append(f"{words[0].upper()}{words[1:]}.")
     yield Heading("Audit")
     yield Lines(tuple(sentences))
 

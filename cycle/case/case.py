@@ -92,6 +92,9 @@ class Case:
         dropped = {name for name in ("title", "notes") if name in changes and changes[name] is None}
         kept = {name: getattr(self, name) for name in ("title", "notes") if name not in dropped}
         rest = {key: value for key, value in changes.items() if key not in ("title", "notes")}
+        strays = [checking.stray(key, value, self.path or self.name) for key, value in rest.items()]
+        if any(strays):
+            raise CaseError(fault for fault in strays if fault)
         spelled = edits.changed(self.spelled, rest) if rest else self.spelled
         document = {"format": checking.FORMAT, "study": thawed(self.studies), **kept, **heads, **checking.nest(thawed(spelled))}
         return build(document, self.name, self.path, self.stamp, self.text)

@@ -180,6 +180,20 @@ def _unknown(problem: Problem, key: str) -> Fault:
     return Fault("", key, text, shown(problem.given), allowed)
 
 
+def stray(key: str, value: object, file: str) -> Fault | None:
+    """The fault of a key that is in no table of inputs, None where it is in one.
+
+    Parameters: key, as "section.name"; value, given with it; file, the name that messages use. Returns: the fault or None.
+    """
+    section, _, name = key.partition(".")
+    if name and (section in SECTIONS or section in LATER):
+        return None
+    keys = {i.key: i.key for i in INPUTS} | {i.name: i.key for i in reversed(INPUTS)}
+    near = difflib.get_close_matches(key, list(keys), 1, 0.6)
+    hint = f" (did you mean {keys[near[0]]}?)" if near else ""
+    return Fault(file, key, f"unknown key{hint}", shown(value), f"table.key, with one of the tables {', '.join(SECTIONS)}")
+
+
 def _unit(problem: Problem, key: str) -> Fault:
     return Fault("", key, problem.context["text"], shown(problem.given), problem.context["allowed"])
 
@@ -208,7 +222,8 @@ def _choice(problem: Problem, key: str) -> Fault:
 
 
 def _wrong_type(problem: Problem, key: str) -> Fault:
-    return Fault("", key, "wrong type", shown(problem.given), _EXPECTED.get(problem.kind) or bounds(INPUT[key]))
+    allowed = bounds(INPUT[key]) if key in INPUT else _EXPECTED.get(problem.kind, "plain text, numbers and tables")
+    return Fault("", key, "wrong type", shown(problem.given), allowed)
 
 
 def _length(problem: Problem, key: str) -> Fault:
@@ -224,10 +239,11 @@ def _study_name(problem: Problem, key: str) -> Fault:
 
 _EXPECTED = {
     "string_type": "text",
+    "string_unicode": "text of Unicode characters",
     "model_type": "a table",
     "dict_type": "a table",
     "float_type": "a number from 0 to 1",
-    "finite_number": "a finite number",
+    "finite_number": "a number from 0 to 1",
 }
 _WORDS: dict[str, Callable[[Problem, str], Fault]] = {
     "extra_forbidden": _unknown,

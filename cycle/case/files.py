@@ -142,14 +142,9 @@ def _stamp(path: str) -> Stamp | None:
         raise _trouble(path, "read", error) from None
 
 
-def _refuse_changed(target: str, path: str, expect: Stamp | None, ours: str) -> bool:
-    """FileChanged where the disk does not hold what is expected; else whether the file exists."""
-    there = _stamp(target)
-    if there is None:
-        return False
-    if expect is None or there.digest != expect.digest:
-        raise FileChanged(path, ours, _read(target)[0].decode("utf-8", "replace"))
-    return True
+def _is_foreign(there: Stamp | None, expect: Stamp | None) -> bool:
+    """Whether a file is not the one expected; no file is nobody's."""
+    return there is not None and (expect is None or there.digest != expect.digest)
 
 
 def save(case: Case, path: str | os.PathLike[str], expect: Stamp | None = None) -> Stamp:
@@ -164,8 +159,10 @@ def save(case: Case, path: str | os.PathLike[str], expect: Stamp | None = None) 
 
     name = os.fspath(path)
     target = os.path.realpath(name)
-    exists = _refuse_changed(target, name, expect, edited(case.text, case))
-    base = _decode(_read(target)[0], name) if exists else case.text
+    there = _stamp(target)
+    if _is_foreign(there, expect):
+        raise FileChanged(name, edited(case.text, case), _read(target)[0].decode("utf-8", "replace"))
+    base = case.text if there is None else _decode(_read(target)[0], name)
     text = edited(base, case)
     again = build(parse(text, name), case.name, name)
     if again != case:
@@ -174,12 +171,12 @@ def save(case: Case, path: str | os.PathLike[str], expect: Stamp | None = None) 
     if len(data) > LARGEST:
         raise _one(name, "not saved: too large", f"{len(data)} bytes", f"at most {LARGEST} bytes")
     try:
-        return _write(target, data, name, expect, text)
+        return _write(target, data, name, expect)
     except OSError as error:
         raise _trouble(name, "written", error) from None
 
 
-def _write(target: str, data: bytes, name: str, expect: Stamp | None, text: str) -> Stamp:
+def _write(target: str, data: bytes, name: str, expect: Stamp | None) -> Stamp:
     """Replace a file in one step: a new one beside it, flushed to the disk, then renamed."""
     beside = os.path.join(os.path.dirname(target), f".{os.path.basename(target)[:200]}.{os.getpid()}.tmp")
     handle = os.open(beside, os.O_WRONLY | os.O_CREAT | os.O_EXCL | os.O_CLOEXEC, 0o666)
@@ -191,7 +188,8 @@ def _write(target: str, data: bytes, name: str, expect: Stamp | None, text: str)
             stream.flush()
             os.fsync(handle)
             mtime = os.fstat(handle).st_mtime
-        _refuse_changed(target, name, expect, text)
+        if _is_foreign(_stamp(target), expect):
+            raise FileChanged(name, data.decode("utf-8"), _read(target)[0].decode("utf-8", "replace"))
         os.replace(beside, target)
     except BaseException:
         with suppress(FileNotFoundError):

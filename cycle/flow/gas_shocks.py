@@ -38,9 +38,7 @@ def normal_shock(gas: Gas, before: State, velocity: Array) -> Front:
         state = gas.at("momentum", impulse, flux, total, flux, start=guess)
         behind = flux / state.density
     real = (mach2 > 1.0) & (behind <= state.sound_speed * (1.0 + 1e-6))
-    return Front(
-        state.flagged((mach2 > 1.0) & ~real), behind, np.full_like(velocity, 0.5 * np.pi), mach2 > 1.0
-    )
+    return Front(state.flagged((mach2 > 1.0) & ~real), behind, np.full_like(velocity, 0.5 * np.pi), mach2 > 1.0)
 
 
 def _turning(gas: Gas, before: State, velocity: Array, angle: Array) -> tuple[Array, Front]:
@@ -77,14 +75,8 @@ def oblique_shock(gas: Gas, before: State, velocity: Array, deflection: Array, s
     with np.errstate(all="ignore"):
         most, at_most = largest_turning(gas, before, velocity)
         attached = (mach > 1.0) & (deflection <= most) & (deflection >= 0.0)
-        edge = (
-            np.full_like(mach, 0.5 * np.pi)
-            if strong
-            else np.arcsin(np.minimum(1.0, 1.0 / mach))
-        )
-        angle = roots.bracketed(
-            lambda b: _turning(gas, before, velocity, b)[0] - deflection, edge, at_most, 1e-14
-        )
+        edge = np.full_like(mach, 0.5 * np.pi) if strong else np.arcsin(np.minimum(1.0, 1.0 / mach))
+        angle = roots.bracketed(lambda b: _turning(gas, before, velocity, b)[0] - deflection, edge, at_most, 1e-14)
     angle = np.where(attached & np.isfinite(angle), angle, at_most)
     front = _turning(gas, before, velocity, angle)[1]
     return Front(front.state, front.velocity, angle, attached)

@@ -67,9 +67,7 @@ def sonic(gas: Gas, total_enthalpy: Array, entropy: Array, start: State) -> Stat
     return at_mach(gas, total_enthalpy, entropy, np.ones_like(entropy), start)
 
 
-def at_flux(
-    gas: Gas, total_enthalpy: Array, entropy: Array, flux: Array, supersonic: Flags, critical: State
-) -> tuple[State, Flags]:
+def at_flux(gas: Gas, total_enthalpy: Array, entropy: Array, flux: Array, supersonic: Flags, critical: State) -> tuple[State, Flags]:
     """State (N,) where the stream (ht, s) passes `flux` kg/(s m2), and whether it can.
 
     supersonic: the branch of each point. critical: the sonic state of the stream. A flux above the critical one has no

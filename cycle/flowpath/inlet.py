@@ -136,5 +136,7 @@ def inlet(flight: Stream, setting: Setting) -> Step:
         u = states.velocity(flight.total_enthalpy, state)
         lost = state.enthalpy >= flight.total_enthalpy
         weak = state.pressure < flight.state.pressure * (1.0 - 1e-9)
-    status = status_of(state, (lost & state.good, "over-compressed"), (~reached, "over-compressed"), (weak & state.good, "under-compressed"))
+    status = status_of(
+        state, (lost & state.good, "over-compressed"), (~reached, "over-compressed"), (weak & state.good, "under-compressed")
+    )
     return Step(stream(flight.gas, state, u, flight.mass_flow), Process("inlet", "0", "2"), status)

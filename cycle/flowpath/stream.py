@@ -55,9 +55,7 @@ class Stream:
 
     def take(self, index: Codes | Flags) -> Stream:
         """The streams of the chosen points."""
-        return Stream(
-            self.gas.take(index), self.state.take(index), self.velocity[index], self.mass_flow[index], self.axial_factor[index]
-        )
+        return Stream(self.gas.take(index), self.state.take(index), self.velocity[index], self.mass_flow[index], self.axial_factor[index])
 
 
 def stream(gas: Gas, state: State, velocity: Array, mass_flow: Array) -> Stream:

@@ -15,7 +15,7 @@ from cycle.gas.elimination import dot, product, solve_systems
 from cycle.gas.frozen import FrozenGas, complete_products, per_mole
 from cycle.gas.kernel import Kernel, kernel_of
 from cycle.gas.newton import POOL, Columns, iterate
-from cycle.gas.species import SpeciesTable, range_of
+from cycle.gas.species import SpeciesTable, listed_rows, range_of, temperature_functions
 from cycle.gas.start import Guess, absent, first_temperature_pressure
 from cycle.gas.state import NOT_CONVERGED, State, state_from
 
@@ -119,6 +119,24 @@ class EquilibriumGas(Gas):
         code = np.where(lost, NOT_CONVERGED, range_of(columns[0]))
         *fields, potentials = columns
         return state_from([*fields, code, potentials])
+
+
+def carbon_activity(table: SpeciesTable, state: State) -> Array:
+    """Activity of solid carbon (graphite) in an equilibrium state, (N,); above 1 soot would form, which no species of
+    the gas stands for, and the state is too optimistic. 0 without carbon; NaN where the state has no potentials.
+
+    From the potentials of CO2 and O2: ln a = ln p_CO2 - ln p_O2 - dG/RT of CO2 -> C + O2, p in bar.
+    """
+    if state.potentials is None:
+        return np.full(state.temperature.shape, np.nan)
+    if "CO2" not in table.names[: table.basis]:
+        return np.zeros(state.temperature.shape)
+    dioxide, oxygen = table.index["CO2"], table.index["O2"]
+    free_energy = {name: rows[0] - rows[1] for name in ("C(gr)", "O2", "CO2") for rows in [listed_rows(name)]}
+    rows = free_energy["C(gr)"] + free_energy["O2"] - free_energy["CO2"]
+    g = rows @ temperature_functions(state.temperature)
+    with np.errstate(over="ignore", invalid="ignore"):
+        return np.exp(state.potentials[dioxide] - state.potentials[oxygen] - g)
 
 
 class FirstGuess:

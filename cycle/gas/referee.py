@@ -58,7 +58,7 @@ class Deviation:
 
 
 def listed_data(species: str) -> tuple[dict[str, float], list[float], list[float]]:
-    """Atoms, lower and upper coefficients of a species as Cantera's nasa_gas.yaml lists it. KeyError if it does not."""
+    """Atoms, lower and upper coefficients of a species as Cantera's files nasa_gas.yaml and nasa_condensed.yaml list it. KeyError if it does not."""
     names: dict[str, str] = species_data()["listed_as"]  # type: ignore[assignment]
     listed = _listing()[names.get(species, species)]
     coefficients = [float(c) for c in listed.thermo.coeffs]
@@ -71,7 +71,8 @@ def listed_data(species: str) -> tuple[dict[str, float], list[float], list[float
 def _listing() -> dict[str, Any]:
     import cantera as ct
 
-    return {species.name: species for species in ct.Species.list_from_file("nasa_gas.yaml")}
+    files = ("nasa_condensed.yaml", "nasa_gas.yaml")
+    return {species.name: species for file in files for species in ct.Species.list_from_file(file)}
 
 
 def _coefficients(h: Array, s: Array, cp: Array) -> list[float]:

@@ -53,7 +53,7 @@ _HELD = slice(0, 3)
 
 @cache
 def species_data() -> dict[str, dict[str, object]]:
-    """The shipped data file: atomic weights (kg/kmol) and, for each species, atoms and the two coefficient rows."""
+    """The shipped data file: atomic weights (kg/kmol) and, for each gas species and graphite, atoms and two coefficient rows."""
     data: dict[str, dict[str, object]] = json.loads(DATA_FILE.read_text(encoding="utf-8"))
     return data
 
@@ -122,8 +122,10 @@ def _range_rows(a: ArrayLike) -> Array:
 
 
 @cache
-def _listed_rows(species: str) -> Array:
-    entry: dict[str, ArrayLike] = species_data()["species"][species]  # type: ignore[assignment]
+def listed_rows(species: str) -> Array:
+    """(3, 17): h/RT, s/R (1 bar) and cp/R of a listed species as factors of `temperature_functions`. NASA TM-4513."""
+    data = species_data()
+    entry: dict[str, ArrayLike] = (data["species"] | data["condensed"])[species]  # type: ignore[assignment]
     low, high = _range_rows(entry["low"]), _range_rows(entry["high"])
     at_joint = temperature_functions(np.array([MIDDLE]))[_HIGH, 0]
     h_gap, s_gap, _ = (low - high) @ at_joint
@@ -135,11 +137,6 @@ def _listed_rows(species: str) -> Array:
     rows = np.hstack([low, high, cold])
     rows.flags.writeable = False
     return rows
-
-
-def listed_rows(species: str) -> Array:
-    """(3, 17): h/RT, s/R (1 bar) and cp/R of a listed species as factors of `temperature_functions`. NASA TM-4513."""
-    return _listed_rows(species)
 
 
 def held_rows(enthalpy: float, entropy: float, specific_heat: float) -> Array:

@@ -124,6 +124,18 @@ def test_replace_title_notes_and_removal(case: Case) -> None:
     assert "title: wrong type: given 3; allowed text" in faults(case.replace, {"title": 3})
 
 
+def test_replace_refuses_what_is_no_input(case: Case) -> None:
+    assert "saltmarsh: mach: unknown key (did you mean flight.mach?): given 7.0; allowed table.key" in faults(case.replace, {"mach": 7.0})
+    assert "study.burner: unknown key" in faults(case.replace, {"study.burner": {}})
+    assert "flight: unknown key" in faults(case.replace, {"flight": {"mach": 7.0}})
+    assert "flight.match: unknown key (did you mean mach?)" in faults(case.replace, {"flight.match": 7.0})
+    assert "isolator: the isolator and its shock train" in faults(case.replace, {"isolator.length": 1.0})
+    assert "title: wrong type" in faults(case.replace, {"title": "\ud800"})
+    assert "flight.mach: not a number" in faults(case.replace, {"flight.mach": np.array([1.0, 2.0])})
+    assert "flight.mach: not a finite number" in faults(case.replace, {"flight.mach": np.float64("nan")})
+    assert "flight.mach: out of bounds" in faults(case.replace, {"flight.mach": "31"})
+
+
 def test_inputs_values_and_switches(case: Case) -> None:
     rows = {s.input.key: s for s in case.inputs()}
     assert rows["flight.dynamic_pressure"].spelled == "50 kPa"

@@ -199,11 +199,9 @@ def test_air_without_fuel() -> None:
 
 
 def test_unburnt_fuel_shares_the_pressure_but_does_not_react() -> None:
-    phi = np.array([1.0])
-    whole, half = reacting("hydrogen", phi), reacting("hydrogen", phi, np.array([0.5]))
+    half = reacting("hydrogen", np.array([1.0]), np.array([0.5]))
     state = half.at("tp", 2200.0, 1e5)
     unburnt = state.moles[-1] / state.moles.sum(0)
-    assert unburnt == pytest.approx(0.5 / (whole.complete().composition[:, 0].sum() + 0.5) * 1.0, rel=1.0)
     assert state.moles[-1] == pytest.approx(half.inert[-1], rel=1e-15)
     # the reacting part is in equilibrium at its own partial pressure
     alone = EquilibriumGas(half.table, half.basis / (1.0 - half.inert[-1] * half.table.molar_mass[-1]), np.vstack([

@@ -12,7 +12,7 @@ from pathlib import Path
 
 import pytest
 
-from tests.tui.command_support import CHOKED, COMMAND, QUICK, environment, run, written
+from tests.tui.command_support import CHOKED, COMMAND, QUICK, ROOT, environment, run, written
 
 HEAVY = ("numpy", "scipy", "cantera", "pydantic", "tomlkit", "textual", "rich")
 
@@ -87,12 +87,10 @@ def test_no_terminal_prints_the_walk_and_says_how_to_open_the_screen(tmp_path: P
     assert done.stderr == "no screen here; to open it run 'ductwalk quick.toml' in a terminal (TERM other than dumb)\n"
 
 
-def test_a_dumb_terminal_gets_the_walk_as_text(tmp_path: Path) -> None:
-    written(tmp_path, quick=QUICK)
+def in_terminal(folder: Path, command: list[str], term: str) -> tuple[int, str]:
+    """Exit status and output of a process whose three streams are a terminal."""
     main, other = pty.openpty()
-    child = subprocess.Popen(
-        [*COMMAND, "quick.toml"], stdin=other, stdout=other, stderr=other, cwd=tmp_path, env=environment(tmp_path, TERM="dumb")
-    )
+    child = subprocess.Popen(command, stdin=other, stdout=other, stderr=other, cwd=folder, env=environment(folder, TERM=term))
     os.close(other)
     said = b""
     while True:
@@ -104,10 +102,27 @@ def test_a_dumb_terminal_gets_the_walk_as_text(tmp_path: Path) -> None:
             break
         said += piece
     os.close(main)
-    assert child.wait(60) == 0
-    assert b"no screen here" in said
-    assert b"Stations" in said
-    assert b"\x1b" not in said
+    return child.wait(60), said.decode()
+
+
+def test_a_dumb_terminal_gets_the_walk_as_text(tmp_path: Path) -> None:
+    status, said = in_terminal(written(tmp_path, quick=QUICK), [*COMMAND, "quick.toml"], "dumb")
+    assert status == 0
+    assert "no screen here" in said
+    assert "Stations" in said
+    assert "\x1b" not in said
+
+
+@pytest.mark.parametrize(("arguments", "path"), [(["quick.toml"], "quick.toml"), ([], str(ROOT / "cases" / "saltmarsh.toml"))])
+def test_a_terminal_opens_the_screen_before_anything_heavy(tmp_path: Path, arguments: list[str], path: str) -> None:
+    code = (
+        "import sys, types\nscreen = types.ModuleType('tui.app')\n"
+        f"screen.run = lambda path: print(path, [m for m in {HEAVY!r} if m in sys.modules]) or 0\n"
+        f"sys.modules['tui.app'] = screen\nsys.argv = ['ductwalk', *{arguments!r}]\n"
+        "from tui.commands import main\nsys.exit(main())"
+    )
+    status, said = in_terminal(written(tmp_path, quick=QUICK), [sys.executable, "-c", code], "xterm")
+    assert (status, said.strip()) == (0, f"{path} []")
 
 
 def test_no_color_changes_nothing_because_there_is_no_colour(tmp_path: Path) -> None:

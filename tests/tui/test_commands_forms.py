@@ -46,7 +46,7 @@ def test_text_shows_every_part_of_the_walk(capsys: pytest.CaptureFixture[str], f
     for words in (
         "uninstalled thrust", "specific impulse", "specific thrust", "overall efficiency", "Stations", "reached through",
         "Where the thrust comes from and goes", "Losses against the ideal engine", "Exergy", "Limits, least margin first", "not assessed:",
-        "Audit ok", "Referee:", "Preliminary-design estimate; not for",
+        "Audit ok", "Referee (Cantera) agrees: ", "Preliminary-design estimate; not for",
     ):  # fmt: skip
         assert words in text
     assert max(map(columns, text.splitlines())) <= 80
@@ -96,6 +96,31 @@ def test_json_has_the_keys_of_the_contract_and_no_nan(capsys: pytest.CaptureFixt
     for name_of, station in walk["stations"].items():
         assert station["pressure"] is not None or walk["reasons"][f"stations.{name_of}"]
     assert set(walk["units"]) >= {*STATION_KEYS, *PERFORMANCE_KEYS}
+
+
+@pytest.mark.parametrize(
+    ("status", "changes"),
+    [
+        ("no-altitude", ["flight.dynamic_pressure=0.001"]),
+        ("over-compressed", ["inlet.pressure_ratio=90000"]),
+        ("choked", ["combustor.process=constant-area", "flight.mach=4"]),
+        ("no-fuel", ["combustor.exit_total_temperature=5900"]),
+        ("mode-refused", ["engine.mode=supersonic", "inlet.exit_mach=0.5"]),
+        ("throat-mismatch", ["nozzle.throat=sized"]),
+        ("stalled", ["combustor.process=constant-pressure", "combustor.friction_area_ratio=5"]),
+    ],
+    ids=lambda value: value if isinstance(value, str) else "",
+)
+def test_every_way_to_fail_is_said_in_every_form(capsys: pytest.CaptureFixture[str], folder: Path, status: str, changes: list[str]) -> None:
+    settings = [word for change in changes for word in ("--set", change)]
+    text = output(capsys, "solve", "hot.toml", *settings, status=3)
+    assert f"NO SOLUTION, {status}: " in text
+    assert max(map(columns, text.splitlines())) <= 80
+    walk = json.loads(output(capsys, "solve", "hot.toml", *settings, "--format", "json", status=3))
+    assert walk["status"] == status
+    assert walk["reason"]
+    rows = output(capsys, "solve", "hot.toml", *settings, "--format", "csv", status=3).splitlines()
+    assert len(rows) == 1 + max(len(walk["stations"]), 1)
 
 
 def test_a_walk_that_fails_keeps_the_stations_before(capsys: pytest.CaptureFixture[str], folder: Path) -> None:

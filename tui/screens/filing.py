@@ -12,9 +12,9 @@ from cycle.errors import CaseError, FileChanged
 from tui import items, journal, session
 from tui.engine import Result
 from tui.journal import Left, Record
-from tui.line import OVER, PLAIN, Line, clean, fit, line
+from tui.line import OVER, PLAIN, Line, clean, line
 from tui.screens.desk import Desk
-from tui.screens.page import Answer, Page
+from tui.screens.page import Answer, Page, text_body
 from tui.screens.prompt import Prompt
 from tui.session import Session
 
@@ -134,7 +134,7 @@ class Filing(Desk, inherit_bindings=False):
             Answer("d", "discard", "discard them for good"),
             Answer("k", "keep", "keep them for later and start from the file"),
         )
-        page = Page("Unsaved work found", lambda wide: [line(fit(t, wide)) for t in told], answers)
+        page = Page("Unsaved work found", text_body(told), answers)
         self.app.push_screen(page, lambda name: self._answered(left, name or "keep"))
 
     def _answered(self, left: Left, name: str) -> None:
@@ -210,13 +210,13 @@ class Filing(Desk, inherit_bindings=False):
             self.do_leave()
 
     def _other(self, changed: FileChanged) -> None:
-        told = ["Another session or editor wrote this file since it was read. It is not overwritten."]
+        told = [f"{changed.path} was written by another session or editor since it was read. It is not overwritten."]
         answers = (
             Answer("o", "other", "save under another name"),
             Answer("d", "difference", "show the difference"),
             Answer("c", "cancel", "cancel; the edits stay here"),
         )
-        page = Page(f"{clean(str(changed.path))} has changed on disk", lambda w: [line(fit(t, w)) for t in told], answers)
+        page = Page("The file has changed on disk", text_body(told), answers)
         self.app.push_screen(page, lambda name: self._chosen(changed, name or "cancel"))
 
     def _chosen(self, changed: FileChanged, name: str) -> None:
@@ -236,7 +236,7 @@ class Filing(Desk, inherit_bindings=False):
         elif self.session.unsaved and self.journal.failure:
             told = [self.journal.failure, "Unsaved edits would be lost."]
             answers = (Answer("s", "stay", "stay"), Answer("l", "leave", "leave and lose them"))
-            page = Page("Leave?", lambda w: [line(fit(t, w)) for t in told], answers)
+            page = Page("Leave?", text_body(told), answers)
             self.app.push_screen(page, lambda name: self.app.exit(return_code=0) if name == "leave" else None)
         elif self.session.unsaved:
             name = self.session.path or "without a name"

@@ -9,7 +9,7 @@ from cycle.units import show
 from tui.figures import Figures, Margin
 from tui.line import BOLD, DIM, NEAR, OVER, PLAIN, Line, clean, fit, line, width, wrap
 from tui.session import Session, performance_keys
-from tui.views.numbers import difference, figure, unit
+from tui.views.numbers import difference, figure, quantity, unit
 
 NAMES = {
     "thrust": "thrust",
@@ -26,8 +26,7 @@ NAMES = {
 def lines(session: Session, columns: int, height: int) -> list[Line]:
     """Four lines and a rule; fewer where the height is less."""
     if session.case is None:
-        first = line((fit(clean(f"ductwalk  {os.path.basename(session.path) or 'new case'}"), columns), BOLD))
-        return [first, *(line(fit(clean(f), columns)) for f in session.faults)][:height]
+        return [line((fit(clean(f"ductwalk  {os.path.basename(session.path) or 'new case'}"), columns), BOLD))]
     body = [_title(session, columns), *_figures(session, columns), _limits(session, columns)]
     if height < len(body) + 1:
         return [body[i] for i in (1, 3, 0, 2)[:height]] if height < 4 else body
@@ -114,19 +113,29 @@ def _names(margins: tuple[Margin, ...], state: str) -> str:
     return ", ".join(m.label for m in margins if m.state == state)
 
 
+def _over(found: Figures, system: str, numbers: bool) -> str:
+    """Limits that are over, with figure and limit where there is room for the numbers."""
+    words = []
+    for m in found.limits:
+        if m.state == "over":
+            against = f" {quantity(m.actual, m.unit, system)} {'>' if m.upper else '<'} {quantity(m.allowed, m.unit, system)}"
+            words.append(m.label + (against if numbers else ""))
+    return f"OVER {', '.join(words)}" if words else "none over"
+
+
 def _limits(session: Session, columns: int) -> Line:
-    """Over, near and not assessed limits in words, the audit, the referee; long lists are counted, not cut."""
+    """Over, near and not assessed limits in words, the audit, the referee; the longest form that fits."""
     found = session.figures
     if found is None or not found.audit:
         return line("limits and audit not assessed yet")
-    over, near = _names(found.limits, "over"), _names(found.limits, "near")
-    unknown = _names(found.limits, "not assessed")
+    near, unknown = _names(found.limits, "near"), _names(found.limits, "not assessed")
+    over = any(m.state == "over" for m in found.limits)
     count = sum(m.state == "not assessed" for m in found.limits)
     asked = clean(session.referee) or "not asked"
-    first = f"OVER {over}" if over else "none over"
-    full = [first, f"near: {near or 'none'}", f"not assessed: {unknown or 'none'}", audit_words(found), f"referee {asked}"]
-    short = [first, *([f"near: {near or 'none'}"] if near or not over else []), f"not assessed: {count}", audit_words(found)]
-    short.append(f"referee {'asked' if session.referee else asked}")
-    words = full if len(" | ".join(full)) <= columns else short
+    full = [f"near: {near or 'none'}", f"not assessed: {unknown or 'none'}", audit_words(found), f"referee {asked}"]
+    near_words = [f"near: {near or 'none'}"] if near or not over else []
+    short = [*near_words, f"not assessed: {count}", audit_words(found), f"referee {'asked' if session.referee else asked}"]
+    forms = [" | ".join([_over(found, session.system, n), *tail]) for tail in (full, short) for n in (True, False)]
+    words = next((form for form in forms if width(form) <= columns), forms[-1])
     style = OVER if over or not found.audit_ok else NEAR if near else PLAIN
-    return line((fit(clean(" | ".join(words)), columns), style))
+    return line((fit(clean(words), columns), style))

@@ -97,7 +97,7 @@ def answer(session: Session, wide: int, height: int) -> list[Line]:
 def _words(session: Session) -> tuple[str, Style]:
     if session.entry is not None and session.entry.fault:
         return session.entry.fault, OVER
-    if session.faults:
+    if session.faults and session.case is not None:
         return session.faults[0], OVER
     if session.note:
         return session.note, BOLD

@@ -76,7 +76,9 @@ def first_row(session: Session, body: int) -> int:
 
 
 def lines(session: Session, wide: int, height: int) -> list[Line]:
-    """Heads and as many rows as the height allows."""
+    """Heads and as many rows as the height allows; what is wrong with a file that is no case."""
+    if session.case is None and session.faults:
+        return [line(part) for fault in session.faults for part in wrap(clean(fault).split(), wide)][:height]
     room = min(21 if wide < 100 else 28, wide // 2)
     shown, column = _shown_columns(session, wide - room)
     body = max(1, height - heads(height))

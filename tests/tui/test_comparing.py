@@ -1,0 +1,67 @@
+"""A stored walk that somebody changed by hand is compared or refused, and never breaks the command."""
+
+from __future__ import annotations
+
+import copy
+import json
+from collections.abc import Iterator
+from typing import Any
+
+import pytest
+from hypothesis import given, settings
+from hypothesis import strategies as st
+
+import cycle
+from cycle.compare import Side, compare
+from cycle.errors import CaseError
+from cycle.record import read_stored, stored
+from tests.tui.command_support import HOT
+from tui.comparing import comparison_blocks, percent
+from tui.tables import as_text, columns
+
+KEPT = stored(cycle.solve(cycle.loads(HOT, "hot")), "1.2.3")
+
+VALUES = st.recursive(
+    st.none() | st.booleans() | st.integers() | st.floats(allow_nan=False, allow_infinity=False) | st.text(max_size=20),
+    lambda inner: st.lists(inner, max_size=2) | st.dictionaries(st.text(max_size=5), inner, max_size=2),
+    max_leaves=4,
+)
+
+
+def places(data: Any, way: tuple[Any, ...] = ()) -> Iterator[tuple[Any, ...]]:
+    """The way to every entry of nested data."""
+    entries = data.items() if isinstance(data, dict) else enumerate(data) if isinstance(data, list) else ()
+    for key, value in entries:
+        yield (*way, key)
+        yield from places(value, (*way, key))
+
+
+PLACES = list(places(KEPT))
+
+
+@settings(deadline=None, max_examples=200)
+@given(st.sampled_from(PLACES), VALUES, st.booleans())
+def test_any_change_is_compared_or_refused(way: tuple[Any, ...], value: Any, drop: bool) -> None:
+    data = copy.deepcopy(KEPT)
+    table: Any = data
+    for step in way[:-1]:
+        table = table[step]
+    if drop:
+        del table[way[-1]]
+    else:
+        table[way[-1]] = value
+    try:
+        (back,) = read_stored(json.dumps(data).encode(), "odd.json")
+    except CaseError as error:
+        assert str(error).startswith("odd.json: ")
+        return
+    sides = [Side(s.name, s.walk, s.version, s.species_data) for s in (back, *read_stored(json.dumps(KEPT).encode(), "kept.json"))]
+    for line in as_text(comparison_blocks(compare(sides), "us")).splitlines():
+        assert columns(line) <= 80
+
+
+@pytest.mark.parametrize(
+    ("change", "text"), [(0.1234, "+12.3"), (-1.0, "-100"), (0.0, "0"), (1e-7, "0"), (float("nan"), "-"), (2e-5, "+0.002")]
+)
+def test_changes_in_percent(change: float, text: str) -> None:
+    assert percent(change) == text

@@ -1,0 +1,399 @@
+"""The interactive screen by Textual's pilot: edits, faults, undo, stale results, units, ways, pin, save, journal."""
+
+from __future__ import annotations
+
+import threading
+from collections.abc import AsyncIterator, Iterable
+from contextlib import asynccontextmanager
+from pathlib import Path
+
+import pytest
+from textual.pilot import Pilot
+
+import cycle
+from cycle.case import Case
+from tests.tui.test_screen_parts import TEXT, left_by_another
+from tui import figures
+from tui.app import DuctwalkApp
+from tui.figures import Figures
+from tui.screens.main import MainScreen
+from tui.screens.page import Page
+from tui.screens.prompt import Prompt
+from tui.session import Session
+from tui.widgets.sheet import Sheet
+
+
+@pytest.fixture
+def state(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> Path:
+    monkeypatch.setenv("XDG_STATE_HOME", str(tmp_path / "state"))
+    return tmp_path / "state" / "ductwalk"
+
+
+@pytest.fixture
+def path(tmp_path: Path, state: Path) -> Path:
+    file = tmp_path / "case.toml"
+    file.write_text(TEXT)
+    return file
+
+
+class Driver:
+    """A pilot that waits for the worker."""
+
+    def __init__(self, app: DuctwalkApp, pilot: Pilot[None]) -> None:
+        assert app.main is not None
+        self.app, self.pilot, self.main = app, pilot, app.main
+
+    @property
+    def session(self) -> Session:
+        return self.main.session
+
+    async def until(self, test: object) -> None:
+        """Wait until `test()` holds."""
+        assert callable(test)
+        for _ in range(800):
+            await self.pilot.pause(0.005)
+            if test():
+                return
+        raise AssertionError(f"never came: {self.screen()}")
+
+    async def settled(self) -> Figures:
+        await self.until(lambda: self.session.settled and self.session.figures.assessed)
+        assert self.session.figures is not None
+        return self.session.figures
+
+    async def press(self, *keys: str) -> None:
+        await self.pilot.press(*keys)
+        await self.pilot.pause()
+
+    async def type(self, text: str) -> None:
+        await self.press(*(NAMES.get(c, c) for c in text))
+
+    def screen(self) -> str:
+        """What is painted, as lines of text."""
+        sheets: Iterable[Sheet] = self.app.screen.query(Sheet)
+        return "\n".join("".join(c for c, _ in row) for sheet in sheets for row in sheet._rows)
+
+
+NAMES = {" ": "space", ".": "full_stop", "/": "slash", "+": "plus", "-": "minus", "_": "underscore"}
+
+
+@asynccontextmanager
+async def opened(path: Path, size: tuple[int, int] = (80, 24)) -> AsyncIterator[Driver]:
+    app = DuctwalkApp(str(path))
+    async with app.run_test(size=size) as pilot:
+        yield Driver(app, pilot)
+
+
+async def to_input(driver: Driver, key: str) -> None:
+    """Bring an input of the station in hand to hand by the arrow keys."""
+    if driver.session.focus == "table":
+        await driver.press("tab")
+    for _ in range(30):
+        hand = driver.main._hand()
+        if hand is not None and hand.key == key:
+            return
+        await driver.press("down")
+    raise AssertionError(f"{key} is not at station {driver.session.station}")
+
+
+async def test_opens_and_walks_the_stations_with_their_inputs(path: Path) -> None:
+    async with opened(path) as driver:
+        found = await driver.settled()
+        assert found.solved
+        assert driver.session.station == "0"
+        assert "altitude" in driver.screen()
+        await driver.press("right")
+        assert driver.session.station == "2"
+        assert "temperature ratio" in driver.screen()
+        await driver.press("right", "right", "right", "right", "right")
+        assert driver.session.station == "10"
+        await driver.press("tab", "left")
+        assert driver.session.station == "4"
+        assert "heating value" in driver.screen()
+
+
+async def test_edit_in_place_solves_and_shows_the_change_against_the_pin(path: Path) -> None:
+    async with opened(path) as driver:
+        before = await driver.settled()
+        await to_input(driver, "flight.altitude")
+        await driver.press("enter")
+        assert "a bare number is in kft" in driver.screen()
+        await driver.type("90")
+        await driver.press("enter")
+        after = await driver.settled()
+        assert driver.session.case.value("flight.altitude") == pytest.approx(90e3 * 0.3048, rel=1e-12)  # exact unit
+        assert after.performance["thrust"] < before.performance["thrust"]
+        assert driver.session.pin.figures.walk is before.walk
+        assert "90 kft" in driver.screen()
+        assert " -" in driver.screen().splitlines()[1]
+
+
+async def test_live_figures_are_those_of_the_batch_interface(path: Path) -> None:
+    async with opened(path) as driver:
+        found = await driver.settled()
+        assert found.performance["thrust"] == cycle.solve(cycle.load(str(path))).performance.thrust
+
+
+async def test_bad_entry_says_why_and_keeps_the_field(path: Path) -> None:
+    async with opened(path) as driver:
+        await driver.settled()
+        generation = driver.session.generation
+        await to_input(driver, "flight.altitude")
+        await driver.press("enter")
+        await driver.type("9 parsec")
+        await driver.press("enter")
+        assert driver.session.entry.text == "9 parsec"
+        assert "flight.altitude" in driver.session.entry.fault
+        assert "parsec" in driver.screen()
+        assert driver.session.generation == generation
+        await driver.press("backspace")
+        assert driver.session.entry.fault == ""
+        await driver.press("escape")
+        assert driver.session.entry is None
+        assert "85 kft" in driver.screen()
+
+
+async def test_letters_in_a_field_are_text_not_actions(path: Path) -> None:
+    async with opened(path) as driver:
+        await driver.settled()
+        await to_input(driver, "flight.altitude")
+        await driver.press("enter")
+        await driver.type("qsu")
+        assert driver.session.entry.text == "qsu"
+        assert driver.app.is_running
+
+
+async def test_step_keys_undo_and_redo(path: Path) -> None:
+    async with opened(path) as driver:
+        await driver.settled()
+        await to_input(driver, "flight.mach")
+        await driver.press("plus", "plus", "minus", "plus")
+        await driver.settled()
+        assert driver.session.case.value("flight.mach") == pytest.approx(6.2, rel=1e-12)
+        await driver.press("u", "u")
+        assert driver.session.case.value("flight.mach") == pytest.approx(6.1, rel=1e-12)
+        await driver.press("U")
+        assert "redone: Mach number" in driver.screen()
+        await driver.press("u", "u", "u")
+        assert not driver.session.unsaved
+
+
+async def test_a_held_step_key_paints_at_most_four_times_a_second(path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    async with opened(path) as driver:
+        await driver.settled()
+        await to_input(driver, "flight.mach")
+        painted: list[float] = []
+        paint = driver.main.paint
+        monkeypatch.setattr(driver.main, "paint", lambda: (painted.append(driver.session.case.value("flight.mach")), paint()))
+        for _ in range(20):
+            await driver.pilot.press("plus")
+            await driver.pilot.pause(0.02)
+        elapsed_paints = len(painted)
+        await driver.until(lambda: painted and painted[-1] == driver.session.case.value("flight.mach"))
+        # 20 presses of 20 ms and more are at least 0.4 s; every press painted would be 20 and more
+        assert 1 <= elapsed_paints <= 10
+        assert painted[-1] == pytest.approx(8.0, rel=1e-12)
+
+
+async def test_stale_results_are_dropped(path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    solve, hold, solved = figures.solve, threading.Event(), []
+
+    def slow(case: Case) -> Figures:
+        hold.wait(10)
+        solved.append(case.value("flight.mach"))
+        return solve(case)
+
+    async with opened(path) as driver:
+        await driver.settled()
+        monkeypatch.setattr(figures, "solve", slow)
+        await to_input(driver, "flight.mach")
+        for _ in range(6):
+            await driver.press("plus")
+        assert not driver.session.settled
+        hold.set()
+        found = await driver.settled()
+        assert found.at("0", "mach") == pytest.approx(6.6, rel=1e-9)
+        assert len(solved) < 6
+        assert solved[-1] == pytest.approx(6.6, rel=1e-12)
+
+
+async def test_failure_is_said_and_the_last_good_walk_stands_in_parentheses(path: Path) -> None:
+    async with opened(path) as driver:
+        await driver.settled()
+        await driver.press("right", "right", "right")
+        await to_input(driver, "combustor.fuel_air_ratio")
+        await driver.press("enter")
+        await driver.type("0.5")
+        await driver.press("enter")
+        found = await driver.settled()
+        assert found.status == "choked"
+        text = driver.screen()
+        assert "NO SOLUTION: burner" in text
+        assert "largest fuel-air ratio here" in text
+        assert "as of the previous inputs" in " ".join(text.split())
+        mach = next(row for row in text.splitlines() if row.startswith("Mach "))
+        assert mach.count("(") == 2  # burner exit and nozzle exit; flight, inlet and isolator stay live
+        await driver.press("u")
+        assert (await driver.settled()).solved
+        assert "NO SOLUTION" not in driver.screen()
+
+
+async def test_unit_toggle(path: Path) -> None:
+    async with opened(path) as driver:
+        await driver.settled()
+        assert "T, K" in driver.screen()
+        await driver.press("t")
+        text = driver.screen()
+        assert "T, degR" in text
+        assert "lbf" in text
+        await driver.press("t")
+        assert "T, K" in driver.screen()
+
+
+async def test_another_way_of_saying_it_leaves_the_walk_where_it_is(path: Path) -> None:
+    async with opened(path) as driver:
+        before = await driver.settled()
+        await driver.press("right")
+        await to_input(driver, "inlet.temperature_ratio")
+        await driver.press("o")
+        assert isinstance(driver.app.screen, Page)
+        assert "pressure ratio [" in driver.screen()
+        await driver.press("1")
+        await driver.pilot.pause()
+        after = await driver.settled()
+        assert driver.session.case.value("inlet.end") == "pressure_ratio"
+        # the value goes through the same laws both ways: round-off of a closed-form inversion
+        assert after.performance["thrust"] == pytest.approx(before.performance["thrust"], rel=1e-9)
+        assert driver.main._hand().key == "inlet.pressure_ratio"
+
+
+async def test_choices_cycle_and_defaults_come_back(path: Path) -> None:
+    async with opened(path) as driver:
+        await driver.settled()
+        await driver.press("right", "right", "right")
+        await to_input(driver, "combustor.process")
+        await driver.press("enter")
+        assert driver.session.case.value("combustor.process") == "constant-pressure"
+        await driver.press("delete")
+        assert driver.session.case.value("combustor.process") == "constant-area"
+        await driver.settled()
+
+
+async def test_views_of_the_cells(path: Path) -> None:
+    async with opened(path) as driver:
+        await driver.settled()
+        await to_input(driver, "flight.mach")
+        await driver.press("plus")
+        await driver.settled()
+        await driver.press("v")
+        mach = next(row for row in driver.screen().splitlines() if row.startswith("Mach "))
+        assert "+0.1" in mach
+        await driver.press("v", "p")
+        await driver.settled()
+        mach = next(row for row in driver.screen().splitlines() if row.startswith("Mach "))
+        assert mach.split()[1] == "+0"
+
+
+async def test_save_keeps_comments_and_removes_the_journal(path: Path, state: Path) -> None:
+    path.write_text(TEXT.replace("mach = 6.0", "mach = 6.0   # first guess"))
+    async with opened(path) as driver:
+        await driver.settled()
+        await to_input(driver, "flight.mach")
+        await driver.press("plus")
+        assert len(list(state.glob("*.journal"))) == 1
+        assert " *" in driver.screen()
+        await driver.press("s")
+        await driver.until(lambda: not driver.session.unsaved)
+        assert "saved" in driver.screen()
+        assert list(state.glob("*.journal")) == []
+    text = path.read_text()
+    assert "# first guess" in text
+    assert cycle.load(str(path)).value("flight.mach") == pytest.approx(6.1, rel=1e-12)
+
+
+async def test_a_file_changed_by_another_is_not_overwritten(path: Path, tmp_path: Path) -> None:
+    async with opened(path) as driver:
+        await driver.settled()
+        await to_input(driver, "flight.mach")
+        await driver.press("plus")
+        path.write_text(TEXT.replace("0.005", "0.0051"))
+        await driver.press("s")
+        await driver.until(lambda: isinstance(driver.app.screen, Page))
+        await driver.until(lambda: "was written by another" in driver.screen())
+        await driver.press("d")
+        await driver.until(lambda: "+mach = 6.1" in driver.screen())
+        await driver.press("escape")
+        await driver.until(lambda: "was written by another" in driver.screen())
+        await driver.press("o")
+        await driver.until(lambda: isinstance(driver.app.screen, Prompt))
+        await driver.press("ctrl+u")
+        await driver.type(str(tmp_path / "other.toml"))
+        await driver.press("enter")
+        await driver.until(lambda: not driver.session.unsaved)
+    assert "0.0051" in path.read_text()
+    assert cycle.load(str(tmp_path / "other.toml")).value("flight.mach") == pytest.approx(6.1, rel=1e-12)
+
+
+async def test_left_work_is_offered_and_restored_with_its_undo_list(path: Path, state: Path) -> None:
+    edits = [{"edit": {"set": {"flight.mach": 7.0}}}, {"edit": {"set": {"flight.mach": 8.0}}}, {"undo": 1}]
+    left_by_another(state, str(path), *edits, {"edit": {"set": {"inlet.gone": 1.0}}})
+    async with opened(path) as driver:
+        await driver.until(lambda: isinstance(driver.app.screen, Page))
+        await driver.until(lambda: "left 4 edits" in driver.screen())
+        await driver.press("r")
+        await driver.until(lambda: driver.session.case.value("flight.mach") == 7.0)
+        found = await driver.settled()
+        assert found.at("0", "mach") == pytest.approx(7.0, rel=1e-9)
+        assert "restored 3 edits, 1 no longer hold" in driver.screen()
+        assert driver.session.pin.figures.at("0", "mach") == pytest.approx(6.0, rel=1e-9)
+        await driver.press("U")
+        assert driver.session.case.value("flight.mach") == 8.0
+
+
+async def test_left_work_can_be_discarded(path: Path, state: Path) -> None:
+    file = left_by_another(state, str(path), {"edit": {"set": {"flight.mach": 7.0}}})
+    async with opened(path) as driver:
+        await driver.until(lambda: "left 1 edits" in driver.screen())
+        await driver.press("d")
+        await driver.settled()
+        assert driver.session.case.value("flight.mach") == 6.0
+    assert not file.exists()
+
+
+async def test_a_file_that_is_no_case_says_why_and_is_read_again_on_enter(path: Path) -> None:
+    path.write_text(TEXT.replace("mach = 6.0", "mach = -6.0"))
+    async with opened(path) as driver:
+        await driver.until(lambda: "flight.mach" in driver.screen())
+        path.write_text(TEXT)
+        await driver.press("enter")
+        assert (await driver.settled()).solved
+
+
+@pytest.mark.parametrize("size", [(20, 5), (40, 12), (79, 23), (120, 40), (200, 60), (3, 2)])
+async def test_any_size_holds_and_takes_keys(path: Path, size: tuple[int, int]) -> None:
+    async with opened(path, size) as driver:
+        await driver.settled()
+        await driver.press("right", "down", "tab", "plus", "o", "escape", "enter", "1", "escape", "w", "down", "escape")
+        await driver.press("question_mark", "end", "escape", "u")
+        await driver.settled()
+        assert driver.session.case.value("flight.mach") == 6.0
+
+
+async def test_wide_screens_show_margins_and_where_the_thrust_went(path: Path) -> None:
+    async with opened(path, (120, 40)) as driver:
+        await driver.settled()
+        text = driver.screen()
+        assert "limits by margin" in text
+        assert "where the thrust potential went" in text
+
+
+async def test_help_lists_every_action(path: Path) -> None:
+    async with opened(path, (100, 60)) as driver:
+        await driver.settled()
+        await driver.press("question_mark")
+        await driver.until(lambda: "in a field" in driver.screen().lower())
+        text = driver.screen()
+        for action in driver.main.BINDINGS:
+            assert action.description.split(";")[0][:40] in text
+        await driver.press("escape")
+        await driver.until(lambda: isinstance(driver.app.screen, MainScreen))
