@@ -58,7 +58,7 @@ class Deviation:
 
 
 def listed_data(species: str) -> tuple[dict[str, float], list[float], list[float]]:
-    """Atoms, lower and upper coefficients of a species as Cantera's files nasa_gas.yaml and nasa_condensed.yaml list it. KeyError if it does not."""
+    """Atoms, lower and upper coefficients of a species in Cantera's nasa_gas.yaml or nasa_condensed.yaml; KeyError if in neither."""
     names: dict[str, str] = species_data()["listed_as"]  # type: ignore[assignment]
     listed = _listing()[names.get(species, species)]
     coefficients = [float(c) for c in listed.thermo.coeffs]

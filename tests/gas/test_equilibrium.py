@@ -9,7 +9,7 @@ from hypothesis import strategies as st
 
 from cycle.constants import STANDARD_AIR
 from cycle.gas.closures import CLOSURES
-from cycle.gas.equilibrium import EquilibriumGas
+from cycle.gas.equilibrium import EquilibriumGas, carbon_activity
 from cycle.gas.frozen import air_gas
 from cycle.gas.fuels import FUELS
 from cycle.gas.newton import POOL
@@ -236,6 +236,29 @@ def test_a_choked_burner_has_no_state() -> None:
     before = gas.at("tp", 1200.0, 1e5)
     F, G, ht = duct_targets(before, np.array([1.2]))
     assert not gas.at("momentum", F, G, ht + 5e6, G, start=before).good.any()
+
+
+@pytest.mark.parametrize("phi", [0.5, 2.0, 3.0])
+def test_carbon_activity_against_cantera(phi: float) -> None:
+    import cantera as ct
+
+    gas = reacting("jp-10", np.array([phi]))
+    state = gas.at("tp", 1200.0, 1e5)
+    graphite = {s.name: s for s in ct.Species.list_from_file("nasa_condensed.yaml")}["C(gr)"].thermo
+    listed = {s.name: s.thermo for s in ct.Species.list_from_file("nasa_gas.yaml") if s.name in ("CO", "O2")}
+    # through another reaction than the program's: CO -> C + O2 / 2, in a gas of its own equilibrium
+    g = {name: t.h(1200.0) - 1200.0 * t.s(1200.0) for name, t in {**listed, "C(gr)": graphite}.items()}
+    x = dict(zip(gas.species, state.moles[:, 0] / state.moles.sum(), strict=True))
+    ln_a = np.log(x["CO"]) - 0.5 * np.log(x["O2"]) - (g["C(gr)"] + 0.5 * g["O2"] - g["CO"]) / (ct.gas_constant * 1200.0)
+    # the shift that makes the polynomials continuous is worth 1e-8 RT
+    assert np.log(carbon_activity(gas.table, state)) == pytest.approx(ln_a, abs=1e-6)
+
+
+def test_carbon_activity_without_carbon_or_potentials() -> None:
+    gas = reacting("hydrogen", np.array([2.0]))
+    state = gas.at("tp", 1200.0, 1e5)
+    assert carbon_activity(gas.table, state).tolist() == [0.0]
+    assert np.isnan(carbon_activity(gas.table, gas.frozen(state).at("tp", 1200.0, 1e5))).all()
 
 
 def test_empty_batch() -> None:

@@ -73,7 +73,7 @@ def test_a_wrong_state_is_seen() -> None:
     state.temperature[1] += 1e-2
     state.moles[3, 1] *= 1.0 + 1e-5
     found = deviation(gas, state)
-    assert found.temperature == pytest.approx(1e-2, rel=1e-2)
+    assert found.temperature == pytest.approx(1e-2, rel=5e-2)
     assert found.mole_fraction > 1e-8
 
 

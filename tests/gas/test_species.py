@@ -26,12 +26,13 @@ from cycle.gas.state import EXTRAPOLATED, INSIDE, OUT_OF_RANGE
 from tests.gas.mixtures import frozen_air
 
 AIR = tuple(STANDARD_AIR)
-SPECIES = tuple(species_data()["species"])
+GASES = tuple(species_data()["species"])
+SPECIES = (*GASES, "C(gr)")
 
 
 @pytest.mark.parametrize("name", SPECIES)
 def test_data_file_is_canteras_to_the_digit(name: str) -> None:
-    entry = species_data()["species"][name]
+    entry = (species_data()["species"] | species_data()["condensed"])[name]
     assert (entry["atoms"], entry["low"], entry["high"]) == listed_data(name)
 
 

@@ -170,11 +170,12 @@ async def test_step_keys_undo_and_redo(path: Path) -> None:
         await driver.press("plus", "plus", "minus", "plus")
         await driver.settled()
         assert driver.session.case.value("flight.mach") == pytest.approx(6.2, rel=1e-12)
-        await driver.press("u", "u")
+        await driver.press("u", "u", "u")
         assert driver.session.case.value("flight.mach") == pytest.approx(6.1, rel=1e-12)
         await driver.press("U")
+        assert driver.session.case.value("flight.mach") == pytest.approx(6.2, rel=1e-12)
         assert "redone: Mach number" in driver.screen()
-        await driver.press("u", "u", "u")
+        await driver.press("u", "u")
         assert not driver.session.unsaved
 
 
@@ -230,7 +231,7 @@ async def test_failure_is_said_and_the_last_good_walk_stands_in_parentheses(path
         text = driver.screen()
         assert "NO SOLUTION: burner" in text
         assert "largest fuel-air ratio here" in text
-        assert "as of the previous inputs" in " ".join(text.split())
+        assert "figures in ( ) as of the previous inputs" in text
         mach = next(row for row in text.splitlines() if row.startswith("Mach "))
         assert mach.count("(") == 2  # burner exit and nozzle exit; flight, inlet and isolator stay live
         await driver.press("u")
@@ -301,7 +302,7 @@ async def test_save_keeps_comments_and_removes_the_journal(path: Path, state: Pa
         await to_input(driver, "flight.mach")
         await driver.press("plus")
         assert len(list(state.glob("*.journal"))) == 1
-        assert " *" in driver.screen()
+        await driver.until(lambda: " *" in driver.screen())
         await driver.press("s")
         await driver.until(lambda: not driver.session.unsaved)
         assert "saved" in driver.screen()
@@ -319,11 +320,11 @@ async def test_a_file_changed_by_another_is_not_overwritten(path: Path, tmp_path
         path.write_text(TEXT.replace("0.005", "0.0051"))
         await driver.press("s")
         await driver.until(lambda: isinstance(driver.app.screen, Page))
-        await driver.until(lambda: "was written by another" in driver.screen())
+        await driver.until(lambda: "It is not overwritten" in driver.screen())
         await driver.press("d")
         await driver.until(lambda: "+mach = 6.1" in driver.screen())
         await driver.press("escape")
-        await driver.until(lambda: "was written by another" in driver.screen())
+        await driver.until(lambda: "It is not overwritten" in driver.screen())
         await driver.press("o")
         await driver.until(lambda: isinstance(driver.app.screen, Prompt))
         await driver.press("ctrl+u")

@@ -62,8 +62,7 @@ def _figures(session: Session, columns: int) -> list[Line]:
     if found is None:
         return [line("first walk not solved yet"), line("")]
     if not found.solved:
-        stale = "; figures in ( ) as of the previous inputs" if session.good is not None else ""
-        words = wrap(clean(f"NO SOLUTION: {found.reason or found.status}{stale}").split(), columns)
+        words = wrap(clean(f"NO SOLUTION: {found.reason or found.status}").split(), columns)
         return [line((w, OVER)) for w in words[:2]] + [line("")] * (2 - len(words[:2]))
     return [_headline(session, found, columns), _against(session, columns)]
 

@@ -79,7 +79,7 @@ def lines(session: Session, wide: int, height: int) -> list[Line]:
     """Heads and as many rows as the height allows; what is wrong with a file that is no case."""
     if session.case is None and session.faults:
         return [line(part) for fault in session.faults for part in wrap(clean(fault).split(), wide)][:height]
-    room = min(21 if wide < 100 else 28, wide // 2)
+    room = min(21 if wide < 100 else 30, wide // 2)
     shown, column = _shown_columns(session, wide - room)
     body = max(1, height - heads(height))
     top = first_row(session, body)
@@ -87,8 +87,10 @@ def lines(session: Session, wide: int, height: int) -> list[Line]:
     where = f"station   rows {top + 1}-{top + len(keys)}/{len(ROWS)}" if len(keys) < len(ROWS) else "station"
     if session.view:
         where = VIEWS[session.view].replace("against the pin", "vs pin")
+    stale = "( ) as of the previous inputs" if room > 28 else "( ) previous inputs"
+    reached = stale if session.failed and session.good is not None else "reached through"
     head: list[Line] = [
-        line(("reached through".ljust(room), DIM), *((_head(_reached(session, s), column), DIM) for s in shown)),
+        line((fit(reached, room).ljust(room), DIM), *((_head(_reached(session, s), column), DIM) for s in shown)),
         line((fit(where, room).ljust(room), PLAIN), *_stations(session, shown, column)),
     ]
     return [*head[-heads(height) :], *(_row(session, i + top, k, shown, column, room) for i, k in enumerate(keys))][:height]
@@ -149,7 +151,7 @@ def process_line(session: Session, wide: int, height: int) -> list[Line]:
         return [line(("-" * wide, DIM))]
     if passage is None:
         lost = session.failed and session.station not in found.stations
-        words = "not reached by these inputs" if lost else "the stream as it arrives"
+        words = "not reached by these inputs; figures in ( ) as of the previous inputs" if lost else "the stream as it arrives"
         return [line((fit(words, wide), DIM))]
     head = f"{passage.start} to {passage.end}, {clean(passage.label)}: "
     return [line(fit(head + wrap(_costs(passage, session.system), wide - len(head), " | ")[0], wide))]
