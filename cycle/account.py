@@ -157,6 +157,18 @@ def potentials(march: March) -> list[Array]:
     return found
 
 
+def nozzle_thrust_coefficient(march: March, potential: list[Array]) -> Array:
+    """Gross thrust of the exit over that of an isentropic expansion of the burner exit to ambient pressure; (N,)."""
+    nozzle, points = march.named("nozzle"), march.solved
+    if nozzle is None or not potential or not points.size:
+        return np.full(march.setting.size, np.nan)
+    burner = next(i for i, r in enumerate(march.records) if r.process.name == "burner")
+    out, free = nozzle.taken(points).stream, march.records[0].taken(points).stream
+    gross = out.stream_thrust - free.state.pressure * out.area
+    ideal = potential[burner][points] + free.mass_flow * free.velocity
+    return spread(march, points, gross / ideal)
+
+
 _POTENTIAL_LABELS = {
     "inlet": "inlet", "isolator": "isolator", "gas change": "gas change", "burner": "burner gain",
     "frozen chemistry": "frozen chemistry", "throat": "throat", "nozzle": "nozzle",

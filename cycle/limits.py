@@ -138,7 +138,8 @@ def _choking(walked: March, largest: float | None) -> Limit:
 def _hot(walked: March) -> tuple[Limit, ...]:
     setting = walked.setting
     found = [_at(walked, name, "temperature") for name in walked.stations()]
-    hottest, coldest = np.fmax.reduce(found), np.fmin.reduce(found)
+    nothing = np.full(setting.size, np.nan)
+    hottest, coldest = np.fmax.reduce([nothing, *found]), np.fmin.reduce([nothing, *found])
     key = heat_key(setting)
     missing = "limits.gas_temperature is not given"
     rows = [
@@ -152,7 +153,8 @@ def _hot(walked: March) -> tuple[Limit, ...]:
     if not setting.constant_gamma:
         rows += [
             Limit("data_high", "species data, highest T", hottest, HIGHEST * whole, "temperature", True, "less heat", key),
-            Limit("data_low", "species data, lowest T", coldest, LOWEST * whole, "temperature", False, "a warmer day or exit", "flight.altitude"),
+            Limit("data_low", "species data, lowest T", coldest, LOWEST * whole, "temperature", False,
+                  "a warmer day or exit", "flight.altitude"),
         ]  # fmt: skip
     return tuple(rows)
 

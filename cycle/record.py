@@ -8,12 +8,12 @@ import os
 import stat
 import sys
 from collections.abc import Callable, Iterable, Mapping
-from contextlib import suppress
 from dataclasses import dataclass
 from datetime import UTC, datetime
 from pathlib import Path
 from typing import TYPE_CHECKING, Any
 
+from cycle.atomic import replace_file
 from cycle.errors import CaseError, Fault
 from cycle.quantities import INPUTS, OUTPUTS
 from cycle.units import si_unit
@@ -270,22 +270,6 @@ def write(path: str | os.PathLike[str], text: str) -> None:
         if target.exists() and not stat.S_ISREG(target.stat().st_mode):
             target.write_text(text, encoding="utf-8")
             return
-        _replace(target, text)
+        replace_file(str(target), text.encode("utf-8"))
     except OSError as error:
         raise _fault(str(path), "", f"cannot be written: {error.strerror or error}") from error
-
-
-def _replace(target: Path, text: str) -> None:
-    beside = target.with_name(f".{target.name[:200]}.{os.getpid()}.part")
-    handle = os.open(beside, os.O_WRONLY | os.O_CREAT | os.O_EXCL | os.O_CLOEXEC, 0o666)
-    try:
-        with os.fdopen(handle, "w", encoding="utf-8") as file:
-            with suppress(FileNotFoundError):
-                os.fchmod(handle, stat.S_IMODE(target.stat().st_mode))
-            file.write(text)
-            file.flush()
-            os.fsync(handle)
-        os.replace(beside, target)
-    finally:
-        with suppress(FileNotFoundError):
-            os.unlink(beside)

@@ -18,7 +18,7 @@ from cycle.figures import Figures, Station, shaped
 from cycle.flowpath.setting import FIXED_IN_BATCH, setting
 from cycle.flowpath.stream import SOLVED, STATUS_NAMES
 from cycle.gas.state import State
-from cycle.quantities import INPUT, OUTPUTS, STATUSES
+from cycle.quantities import INPUT, OUTPUTS, RESTORES, STATUSES
 from cycle.walk import March, Record, march
 
 if TYPE_CHECKING:
@@ -141,8 +141,8 @@ class Walk:
         if name == "choked" and self.shape == ():
             label, _ = margins.heat_words(self.march.setting)
             if np.isfinite(self._largest):
-                return f"{words}; largest {label} here {self._largest:.4g}"
-        return words
+                words = f"{words}; largest {label} here {self._largest:.4g}"
+        return f"{words}; {RESTORES[name]}"
 
     @cached_property
     def _records(self) -> dict[str, Record]:
@@ -253,6 +253,8 @@ class Walk:
         def source(key: str) -> Callable[[], Array]:
             if key == "total_temperature_rise_efficiency":
                 return lambda: account.temperature_rise_efficiency(self.march, self._totals)
+            if key == "nozzle_thrust_coefficient":
+                return lambda: account.nozzle_thrust_coefficient(self.march, self._potentials)
             return lambda: self._performance.get(key, nothing)
 
         return Figures({key: source(key) for key in PERFORMANCE}, self.shape)
@@ -273,6 +275,8 @@ class Walk:
         choices = self.march.setting.choices
         if self.march.chain[0] == "entry" and key != "stream_thrust_gain":
             return "a rig has no flight thrust"
+        if key == "installed_thrust":
+            return "additive and spill drag need inlet geometry"
         if key == "altitude":
             return "pressure and temperature are given, not a place in the standard atmosphere"
         if key == "total_temperature_rise_efficiency":

@@ -127,6 +127,7 @@ _ALTITUDE = {"si": "km", "us": "kft"}
 _DYNAMIC = {"si": "kPa", "us": "psf"}
 DISPLAY_BY_KEY: dict[str, dict[str, str]] = {
     "flight.altitude": _ALTITUDE,
+    "altitude": _ALTITUDE,
     "flight.dynamic_pressure": _DYNAMIC,
     "flight.pressure": _DYNAMIC,
     "limits.dynamic_pressure_low": _DYNAMIC,

@@ -96,9 +96,8 @@ def divergence(check: Check) -> dict[str, float]:
 
 def air_expansion(check: Check) -> dict[str, float]:
     gas = air_gas(species_table(tuple(STANDARD_AIR), None), STANDARD_AIR, "frozen", 1)
-    total = gas.at("tp", np.array([number(check, "Tt")]), np.array([1e6]))
-    out = gas.at("sp", total.entropy, total.pressure / number(check, "pt/p"))
-    u = states.velocity(total.enthalpy, out)
+    pt = np.array([1e6])
+    out, u = states.from_reservoir(gas, np.array([number(check, "Tt")]), pt, pt / number(check, "pt/p"))
     return {"T": out.temperature[0], "u": u[0], "M": (u / out.sound_speed)[0]}
 
 

@@ -18,7 +18,9 @@ from cycle.quantities import MODES, STATUSES
 from tests.random_cases import random_case, written
 
 CASES = Path(__file__).parents[1] / "cases"
-SHOWN = ("mach", "pressure", "temperature", "density", "velocity", "sound_speed", "enthalpy", "entropy", "area", "mass_flow", "stream_thrust")
+SHOWN = (
+    "mach", "pressure", "temperature", "density", "velocity", "sound_speed", "enthalpy", "entropy", "area", "mass_flow", "stream_thrust",
+)  # fmt: skip
 
 
 def shipped(name: str) -> cycle.Walk:

@@ -14,9 +14,15 @@ if TYPE_CHECKING:
     from cycle.case import Stated
     from cycle.result import Walk
 
-CAUTION = "Preliminary-design estimate; not for hardware or flight-safety decisions."
+CAUTION = (
+    "Preliminary-design estimate; not for hardware, test or flight-safety decisions. Local codes, the test site's rules and "
+    "licensed practice govern fuels, hot high-pressure test flow and range safety; the subject may be export-controlled."
+)
 LEAST_SHOWN = 1e-4
 """Mole fraction from which on a species has a row."""
+
+_ELSEWHERE = {"flight": ("stream_thrust_gain",)}
+"""Figures that a case of this start never has and nobody misses."""
 
 _NOISE = 1e-10
 _LIMIT_FIGURES = {"corridor_low": "dynamic_pressure", "corridor_high": "dynamic_pressure"}
@@ -100,6 +106,8 @@ def _missing(walk: Walk, outputs: Iterable[Output]) -> Iterable[str]:
     """One sentence a reason, naming the figures that lack a value for it."""
     reasons: dict[str, list[str]] = {}
     for output in outputs:
+        if output.key in _ELSEWHERE.get(walk.case.choices["start"], ()):
+            continue
         reasons.setdefault(walk.why_not(output.key), []).append(output.label)
     return (f"No value for {', '.join(labels)}: {reason}" for reason, labels in reasons.items())
 

@@ -7,10 +7,10 @@ import os
 import re
 import stat
 import tomllib
-from contextlib import suppress
 from pathlib import Path
 from typing import Any
 
+from cycle.atomic import replace_file
 from cycle.case.case import Case, Stamp, build
 from cycle.errors import CaseError, Fault, FileChanged, shown
 
@@ -177,33 +177,8 @@ def save(case: Case, path: str | os.PathLike[str], expect: Stamp | None = None) 
 
 
 def _write(target: str, data: bytes, name: str, expect: Stamp | None) -> Stamp:
-    """Replace a file in one step: a new one beside it, flushed to the disk, then renamed."""
-    beside = os.path.join(os.path.dirname(target), f".{os.path.basename(target)[:200]}.{os.getpid()}.tmp")
-    handle = os.open(beside, os.O_WRONLY | os.O_CREAT | os.O_EXCL | os.O_CLOEXEC, 0o666)
-    try:
-        with os.fdopen(handle, "wb") as stream:
-            with suppress(FileNotFoundError):
-                os.fchmod(handle, stat.S_IMODE(os.stat(target).st_mode))
-            stream.write(data)
-            stream.flush()
-            os.fsync(handle)
-            mtime = os.fstat(handle).st_mtime
+    def refuse_a_foreign_change() -> None:
         if _is_foreign(_stamp(target), expect):
             raise FileChanged(name, data.decode("utf-8"), _read(target)[0].decode("utf-8", "replace"))
-        os.replace(beside, target)
-    except BaseException:
-        with suppress(FileNotFoundError):
-            os.unlink(beside)
-        raise
-    _flush_directory(os.path.dirname(target))
-    return Stamp(hashlib.sha256(data).hexdigest(), mtime)
 
-
-def _flush_directory(directory: str) -> None:
-    """Make the rename last through a power cut, where the file system can."""
-    with suppress(OSError):
-        handle = os.open(directory, os.O_RDONLY | os.O_DIRECTORY)
-        try:
-            os.fsync(handle)
-        finally:
-            os.close(handle)
+    return Stamp(hashlib.sha256(data).hexdigest(), replace_file(target, data, refuse_a_foreign_change))

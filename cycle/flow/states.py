@@ -29,6 +29,13 @@ def rest(gas: Gas, total_enthalpy: Array, entropy: Array, start: State | None = 
     return gas.at("hs", total_enthalpy, entropy, start=start)
 
 
+def from_reservoir(gas: Gas, total_temperature: Array, total_pressure: Array, pressure: Array) -> tuple[State, Array]:
+    """State (N,) and speed m/s (N,) of an isentropic expansion from rest at (Tt K, pt Pa) to `pressure` Pa, each (N,)."""
+    reservoir = gas.at("tp", total_temperature, total_pressure)
+    state = gas.at("sp", reservoir.entropy, pressure, start=reservoir)
+    return state, velocity(reservoir.enthalpy, state)
+
+
 def at_mach(gas: Gas, total_enthalpy: Array, entropy: Array, mach: Array, start: State) -> State:
     """State (N,) at the Mach number `mach` (N,) of the stream (ht, s); Newton in ln p, then secant.
 

@@ -136,7 +136,8 @@ def carbon_activity(table: SpeciesTable, state: State) -> Array:
     rows = free_energy["C(gr)"] + free_energy["O2"] - free_energy["CO2"]
     g = rows @ temperature_functions(state.temperature)
     with np.errstate(over="ignore", invalid="ignore"):
-        return np.exp(state.potentials[dioxide] - state.potentials[oxygen] - g)
+        activity: Array = np.exp(state.potentials[dioxide] - state.potentials[oxygen] - g)
+    return activity
 
 
 class FirstGuess:
