@@ -51,9 +51,7 @@ def usable(state: State, values: Array) -> Array:
 def totals(march: March, names: tuple[str, ...]) -> dict[str, State]:
     """Stagnation state at each of the stations `names`, of the points that reached it."""
     records = march.stations()
-    requests = [
-        Request(r.stream.gas, (r.stream.total_enthalpy, r.stream.state.entropy), r.stream.state) for r in (records[n] for n in names)
-    ]
+    requests = [Request(r.stream.gas, (r.stream.total_enthalpy, r.stream.state.entropy)) for r in (records[n] for n in names)]
     return dict(zip(names, solve_together("hs", requests), strict=True))
 
 
@@ -146,7 +144,7 @@ def potentials(march: March) -> list[Array]:
     for record in march.records:
         p0 = march.ambient_pressure(record.index)
         entropy = record.stream.state.entropy
-        requests.append(Request(_potential_gas(record, march), (entropy, p0), record.stream.state))
+        requests.append(Request(_potential_gas(record, march), (entropy, p0)))
     found = []
     for record, state in zip(march.records, solve_together("sp", requests), strict=True):
         free = march.records[0].taken(record.index).stream
@@ -235,7 +233,7 @@ def losses(march: March, total: Mapping[str, State], potential: list[Array]) -> 
     cases = [("0", one), ("2", one), ("3", one), ("3", own)]
     mixtures = [_complete(march, burnt, points) for _, burnt in cases]
     hot = solve_together("hp", [Request(g, (h, at_rest[n])) for (n, _), (g, h, _) in zip(cases, mixtures, strict=True)])
-    cold = solve_together("sp", [Request(g, (s.entropy, p0), s) for s, (g, _, _) in zip(hot, mixtures, strict=True)])
+    cold = solve_together("sp", [Request(g, (s.entropy, p0)) for s, (g, _, _) in zip(hot, mixtures, strict=True)])
     with np.errstate(invalid="ignore"):
         ideal = [
             usable(a, usable(b, m * np.sqrt(2.0 * (h - b.enthalpy)))) - free.mass_flow * free.velocity

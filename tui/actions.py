@@ -35,6 +35,7 @@ ACTIONS: tuple[Action, ...] = (
     Action("first", ("home",), "Home", "", "the first station", WALK),
     Action("last", ("end",), "End", "", "the last station", WALK),
     Action("focus", ("tab", "shift+tab"), "Tab", "inputs", "between the table and the inputs of the component in hand", WALK, 1),
+    Action("table", ("escape",), "Esc", "", "back to the table; in a field: leave the value as it was", WALK),
     Action("edit", ("enter",), "Enter", "edit", "open the input in hand; a choice goes on to its next one", EDIT, 1),
     Action("cycle", ("space",), "Space", "", "next choice of the input in hand", EDIT),
     Action("more", ("plus", "equals_sign"), "+ -", "step", "one step up, by the step declared for the input", EDIT, 1),
@@ -53,5 +54,6 @@ ACTIONS: tuple[Action, ...] = (
     Action("redraw", ("ctrl+l",), "Ctrl-L", "", "paint the whole screen afresh", PROGRAM),
     Action("suspend", ("ctrl+z",), "Ctrl-Z", "", "suspend to the shell; fg comes back", PROGRAM),
     Action("help", ("question_mark", "f1"), "?", "keys", "this list of keys", PROGRAM, 0),
+    Action("interrupt", ("ctrl+c",), "Ctrl-C", "", "in a field: leave the value as it was; else says how to leave", PROGRAM),
     Action("leave", ("q", "ctrl+q"), "q", "leave", "leave; unsaved work is kept and offered next time", PROGRAM, 0),
 )  # fmt: skip

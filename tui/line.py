@@ -88,17 +88,6 @@ def cells(content: Line, columns: int) -> list[Cell]:
     return out
 
 
-def changed(old: list[Cell], new: list[Cell], gap: int) -> list[tuple[int, int]]:
-    """Spans (start, length) of cells that differ; spans closer than `gap` cells are one.
-
-    Parameters: old and new, rows of the same length; gap, cells worth repainting to save a cursor jump.
-    """
-    spans: list[tuple[int, int]] = []
-    for x, (a, b) in enumerate(zip(old, new, strict=True)):
-        if a == b:
-            continue
-        if spans and x - sum(spans[-1]) < gap:
-            spans[-1] = (spans[-1][0], x + 1 - spans[-1][0])
-        else:
-            spans.append((x, 1))
-    return spans
+def reach(old: list[Cell], new: list[Cell]) -> int:
+    """Cells from the start of a row to the last one that differs, 0 where none does; the rows are of one length."""
+    return next((x + 1 for x in reversed(range(len(old))) if old[x] != new[x]), 0)

@@ -161,7 +161,8 @@ def with_figures(session: Session, generation: int, found: Figures) -> Session:
     now = carried(found, session.figures)
     pin = session.pin
     if now.solved and (pin is None or pin.figures.walk is now.walk):
-        pin = Pin(pin.label if pin is not None else "as loaded", session.case, now)
+        first = "first walk" if session.unsaved else "as loaded"
+        pin = Pin(pin.label if pin is not None else first, session.case, now)
     note = "" if session.note == SOLVING else session.note
     good = now if now.solved else session.good
     return replace(session, figures=now, solved=generation, good=good, pin=pin, note=note)

@@ -6,19 +6,22 @@ so a state at p* = F/(1 + gamma_s), found by (v, p), gives the largest total ent
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 
-from cycle.arrays import Array, Flags
+from cycle.arrays import Array, Codes, Flags
 from cycle.gas.base import Gas
-from cycle.gas.state import NOT_CONVERGED, State
+from cycle.gas.state import NOT_CONVERGED, State, scatter
 
 
 @dataclass(frozen=True, slots=True)
 class SonicPoint:
-    """Mach 1 on the Rayleigh line of each point (N,): state, specific volume m3/kg, largest total enthalpy J/kg,
-    curvature of the total enthalpy over the specific volume."""
+    """Mach 1 on the Rayleigh line of each point (N,), by a parabola through a state near it.
+
+    state: near Mach 1; volume: specific volume of the sonic point, m3/kg; total_enthalpy: the largest of the line, J/kg;
+    curvature of the total enthalpy over the specific volume, half its second derivative with the sign reversed.
+    """
 
     state: State
     volume: Array
@@ -26,25 +29,50 @@ class SonicPoint:
     curvature: Array
 
 
-def sonic_point(gas: Gas, impulse: Array, flux: Array) -> SonicPoint:
-    """Sonic point of the line p + G^2 v = F; impulse F Pa, flux G kg/(s m2), each (N,)."""
-    state: State | None = None
-    gamma = np.full_like(impulse, 1.22)
-    for _ in range(5):
-        p = impulse / (1.0 + gamma)
-        state = gas.at("vp", (impulse - p) / flux**2, p, start=state)
-        moved = np.abs(state.isentropic_exponent / gamma - 1.0)
-        gamma = np.where(state.good, state.isentropic_exponent, gamma)
-        if np.all(moved < 1e-7):
+_CLOSE = 1e-3
+"""Distance from choking, over the size of the parabola, below which the sonic point is sharpened."""
+
+_SHARP = 4
+
+
+def sonic_point(gas: Gas, impulse: Array, flux: Array, total_enthalpy: Array) -> SonicPoint:
+    """Sonic point of the line p + G^2 v = F; impulse F Pa, flux G kg/(s m2), each (N,).
+
+    total_enthalpy: of the stream behind the heat addition, J/kg (N,); where it comes close to the largest one, the point
+    is sharpened until choking is decided to the precision of the states.
+    """
+    p = impulse / (1.0 + _EXPONENT)
+    point = _parabola(gas.at("vp", (impulse - p) / flux**2, p), impulse, flux)
+    for _ in range(_SHARP):
+        size = point.curvature * point.volume**2
+        close = np.flatnonzero(np.abs(point.total_enthalpy - total_enthalpy) < _CLOSE * size)
+        moved = np.abs(1.0 / point.state.density[close] / point.volume[close] - 1.0)
+        close = close[moved > 1e-7]
+        if not close.size:
             break
-    assert state is not None
-    volume = (impulse - state.pressure) / flux**2
-    return SonicPoint(
-        state,
-        volume,
-        state.enthalpy + 0.5 * (flux * volume) ** 2,
-        0.5 * (gamma + 1.0) / (gamma - 1.0) * flux**2,
-    )
+        again = gas.take(close).at("vp", point.volume[close], impulse[close] - flux[close] ** 2 * point.volume[close])
+        point = _merged(point, close, _parabola(again, impulse[close], flux[close]))
+    return point
+
+
+_EXPONENT = 1.22
+"""First guess of the isentropic exponent of burnt gas; common practice."""
+
+
+def _parabola(state: State, impulse: Array, flux: Array) -> SonicPoint:
+    """Top of the total enthalpy along the line, its isentropic exponent held."""
+    g, volume = state.isentropic_exponent, 1.0 / state.density
+    curvature = 0.5 * (g + 1.0) / (g - 1.0) * flux**2
+    sonic = g * impulse / ((1.0 + g) * flux**2)
+    here = state.enthalpy + 0.5 * (flux * volume) ** 2
+    return SonicPoint(state, sonic, here + curvature * (volume - sonic) ** 2, curvature)
+
+
+def _merged(point: SonicPoint, index: Codes, part: SonicPoint) -> SonicPoint:
+    columns = [getattr(point, name).copy() for name in ("volume", "total_enthalpy", "curvature")]
+    for column, name in zip(columns, ("volume", "total_enthalpy", "curvature"), strict=True):
+        column[index] = getattr(part, name)
+    return SonicPoint(scatter(point.state, index, part.state), *columns)
 
 
 def constant_area(
@@ -53,16 +81,21 @@ def constant_area(
     """State (N,) behind heat addition at constant area, and whether the line reaches `total_enthalpy` at all.
 
     impulse F Pa, flux G kg/(s m2), total_enthalpy J/kg behind the heat addition, each (N,); supersonic: the branch.
-    False flags mean choked: the state there must not be used.
+    False flags mean choked: the state there must not be used. The start of the iteration comes from the parabola, with the
+    sonic state's composition, so that it stays on its branch.
     """
     passes = total_enthalpy <= point.total_enthalpy
-    sign = np.where(supersonic, 1.0, -1.0)
     away = np.sqrt(np.maximum(point.total_enthalpy - total_enthalpy, 0.0) / point.curvature)
     ceiling = impulse / flux**2
-    volume = np.clip(point.volume + sign * away, 0.02 * ceiling, 0.98 * ceiling)
+    volume = np.clip(point.volume + np.where(supersonic, away, -away), 0.02 * ceiling, 0.98 * ceiling)
     with np.errstate(all="ignore"):
-        start = gas.at("vp", volume, impulse - flux**2 * volume, start=point.state)
-        state = gas.at("momentum", impulse, flux, total_enthalpy, flux, start=start)
+        pressure = impulse - flux**2 * volume
+        sonic = point.state
+        temperature = np.clip(sonic.temperature * pressure * volume * sonic.density / sonic.pressure, 200.0, 5500.0)
+        start = replace(sonic, temperature=temperature, pressure=pressure, density=1.0 / volume)
+        live = np.flatnonzero(passes)
+        part = gas.take(live).at("momentum", impulse[live], flux[live], total_enthalpy[live], flux[live], start=start.take(live))
+        state = scatter(start, live, part)
         mach = flux / state.density / state.sound_speed
     right = np.where(supersonic, mach >= 1.0 - 1e-6, mach <= 1.0 + 1e-6)
     return state.flagged(passes & ~right, NOT_CONVERGED), passes

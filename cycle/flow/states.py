@@ -24,15 +24,15 @@ def velocity(total_enthalpy: Array, state: State) -> Array:
         return np.sqrt(2.0 * (total_enthalpy - state.enthalpy))
 
 
-def rest(gas: Gas, total_enthalpy: Array, entropy: Array, start: State | None = None) -> State:
+def rest(gas: Gas, total_enthalpy: Array, entropy: Array) -> State:
     """Stagnation state: isentropic rest of the gas model at (ht J/kg, s J/(kg K)), each (N,)."""
-    return gas.at("hs", total_enthalpy, entropy, start=start)
+    return gas.at("hs", total_enthalpy, entropy)
 
 
 def from_reservoir(gas: Gas, total_temperature: Array, total_pressure: Array, pressure: Array) -> tuple[State, Array]:
     """State (N,) and speed m/s (N,) of an isentropic expansion from rest at (Tt K, pt Pa) to `pressure` Pa, each (N,)."""
     reservoir = gas.at("tp", total_temperature, total_pressure)
-    state = gas.at("sp", reservoir.entropy, pressure, start=reservoir)
+    state = gas.at("sp", reservoir.entropy, pressure)
     return state, velocity(reservoir.enthalpy, state)
 
 
@@ -87,7 +87,7 @@ def at_flux(gas: Gas, total_enthalpy: Array, entropy: Array, flux: Array, supers
     mach = np.where(supersonic, isentropic.supersonic_mach(ratio, g), isentropic.subsonic_mach(ratio, g))
     relative = (1.0 + 0.5 * (g - 1.0) * mach**2) / (0.5 * (g + 1.0))
     with np.errstate(all="ignore"):
-        guess = gas.at("sp", entropy, critical.pressure * relative ** (-g / (g - 1.0)), start=critical)
+        guess = gas.at("sp", entropy, critical.pressure * relative ** (-g / (g - 1.0)))
         state = gas.at("flux", entropy, total_enthalpy, flux, start=guess)
         fast = velocity(total_enthalpy, state) >= state.sound_speed * (1.0 - 1e-6)
         slow = velocity(total_enthalpy, state) <= state.sound_speed * (1.0 + 1e-6)
@@ -106,5 +106,5 @@ def expanded_to_flux(gas: Gas, total_enthalpy: Array, entropy: Array, flux: Arra
     wide = isentropic.supersonic_mach(np.maximum(ratio, 1.0), g)
     relative = (1.0 + 0.5 * (g - 1.0) * wide**2) / (1.0 + 0.5 * (g - 1.0) * mach**2)
     with np.errstate(all="ignore"):
-        guess = gas.at("sp", entropy, before.pressure * relative ** (-g / (g - 1.0)), start=before)
+        guess = gas.at("sp", entropy, before.pressure * relative ** (-g / (g - 1.0)))
         return gas.at("flux", entropy, total_enthalpy, flux, start=guess)

@@ -152,12 +152,12 @@ def _room(point: heating.SonicPoint, mixed: Mixed) -> Array:
 def _constant_area(entering: Stream, setting: Setting, mixed: Mixed) -> Burnt:
     area = entering.area
     flux, impulse = mixed.mass_flow / area, entering.state.pressure + mixed.momentum / area
-    point = heating.sonic_point(mixed.gas, impulse, flux)
+    point = heating.sonic_point(mixed.gas, impulse, flux, mixed.total_enthalpy)
     fast = entering.mach > 1.0
     state, passes = heating.constant_area(mixed.gas, impulse, flux, mixed.total_enthalpy, fast, point)
     margin = _room(point, mixed)
     lost = ~(impulse > 0.0)
-    status = status_of(state, (lost, "stalled"), (point.state.range == 2, "out-of-range"), (~passes, "choked"))
+    status = status_of(state, (lost, "stalled"), (~passes & ~point.state.good, "out-of-range"), (~passes, "choked"))
     return state, flux / state.density, status, {"choking_margin": margin}, mixed.booking
 
 
@@ -225,7 +225,7 @@ def _with_ratio(entering: Stream, setting: Setting, ratio: Array) -> Step:
 
 def _total_temperature(step: Step) -> Array:
     out = step.stream
-    return states.rest(out.gas, out.total_enthalpy, out.state.entropy, start=out.state).temperature
+    return states.rest(out.gas, out.total_enthalpy, out.state.entropy).temperature
 
 
 def _for_temperature(entering: Stream, setting: Setting) -> Array:
@@ -312,7 +312,7 @@ def burner(entering: Stream, setting: Setting) -> Step:
 
 def _room_at_constant_area(entering: Stream, mixed: Mixed, setting: Setting) -> Array:
     flux, impulse = mixed.mass_flow / entering.area, entering.state.pressure + mixed.momentum / entering.area
-    return _room(heating.sonic_point(mixed.gas, impulse, flux), mixed)
+    return _room(heating.sonic_point(mixed.gas, impulse, flux, mixed.total_enthalpy), mixed)
 
 
 def _room_with_loss(entering: Stream, mixed: Mixed, setting: Setting) -> Array:

@@ -107,8 +107,9 @@ def flight(setting: Setting) -> Step:
     T, p = _PLACE[setting.choices["flight.place"]](setting)
     placed = np.isfinite(T)
     T, p = np.where(placed, T, 220.0), np.where(placed, p, 1e3)
+    # the air comes with the composition of the case: ambient air is too cold to react
+    state = _air(setting, T, p, "frozen").at("tp", T, p)
     gas = entering_gas(setting, T, p)
-    state = gas.at("tp", T, p)
     u = _speed(setting, state)
     flow = state.density * u * setting["engine.capture_area"]
     standard = setting.choices["flight.place"] != "pressure"

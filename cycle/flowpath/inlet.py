@@ -23,12 +23,12 @@ Ended = tuple[State, Flags]
 def _kinetic_energy(flight: Stream, setting: Setting) -> Array:
     """h(s2, p0) = ht - eta u0^2/2. Heiser and Pratt (1994), ch. 5 (from memory)."""
     h = flight.total_enthalpy - setting["inlet.kinetic_energy_efficiency"] * 0.5 * flight.velocity**2
-    return flight.gas.at("hp", h, flight.state.pressure, start=flight.state).entropy
+    return flight.gas.at("hp", h, flight.state.pressure).entropy
 
 
 def _from_recovery(flight: Stream, recovery: Array) -> Array:
     total = states.rest(flight.gas, flight.total_enthalpy, flight.state.entropy)
-    return flight.gas.at("hp", flight.total_enthalpy, total.pressure * recovery, start=total).entropy
+    return flight.gas.at("hp", flight.total_enthalpy, total.pressure * recovery).entropy
 
 
 def _recovery(flight: Stream, setting: Setting) -> Array:
@@ -44,7 +44,7 @@ def _diffuser(flight: Stream, setting: Setting) -> Array:
     """h(pt2, s0) = h0 + eta (ht - h0). Hill and Peterson (from memory)."""
     h = flight.state.enthalpy + setting["inlet.diffuser_efficiency"] * 0.5 * flight.velocity**2
     reached = states.rest(flight.gas, h, flight.state.entropy)
-    return flight.gas.at("hp", flight.total_enthalpy, reached.pressure, start=reached).entropy
+    return flight.gas.at("hp", flight.total_enthalpy, reached.pressure).entropy
 
 
 _ENTROPY: dict[str, Callable[[Stream, Setting], Array]] = {

@@ -75,7 +75,7 @@ def _lossless(setting: Setting) -> bool:
     return bool(np.all(setting[f"nozzle.{quality}"] == 1.0))
 
 
-def _expanded(entering: Stream, setting: Setting, pressure: Array, start: State) -> State:
+def _expanded(entering: Stream, setting: Setting, pressure: Array, start: State | None = None) -> State:
     """State at `pressure` (N,) behind the real expansion."""
     ideal = entering.gas.at("sp", entering.state.entropy, pressure, start=start)
     if _lossless(setting):
@@ -137,7 +137,7 @@ def nozzle(entering: Stream, setting: Setting, ambient: Array) -> Step:
             upstream = area < entering.area * (1.0 - 1e-9)
         else:
             p = ambient if end == "ideal" else setting["nozzle.exit_pressure"]
-            state = _expanded(entering, setting, p, entering.state)
+            state = _expanded(entering, setting, p)
             upstream = p > entering.state.pressure * (1.0 + 1e-9)
         u = states.velocity(entering.total_enthalpy, state)
     slow = (entering.mach < 1.0 - 1e-9) & (setting.choices["nozzle.throat"] == "none")

@@ -16,7 +16,7 @@ from cycle.gas.frozen import FrozenGas, complete_products, per_mole
 from cycle.gas.kernel import Kernel, kernel_of
 from cycle.gas.newton import POOL, Columns, iterate
 from cycle.gas.species import SpeciesTable, listed_rows, range_of, temperature_functions
-from cycle.gas.start import Guess, absent, first_temperature_pressure
+from cycle.gas.start import ABSENT, Guess, absent, first_temperature_pressure
 from cycle.gas.state import NOT_CONVERGED, State, state_from
 
 if TYPE_CHECKING:
@@ -156,23 +156,35 @@ class FirstGuess:
         else:
             T = named.get("temperature", self.start.temperature[points])
             ln_p = np.log(named.get("pressure", self.start.pressure[points]) / REFERENCE_PRESSURE)
-        z, m, ln_n = guess.composition(T, ln_p)
-        if self.start is not None and self.start.potentials is not None:
-            self._warm(points, ln_p, z, m, ln_n)
+        warm = None if self.start is None else self._warm(points, T, ln_p)
+        if warm is None:
+            z, m, ln_n = guess.composition(T, ln_p)
+        else:
+            z, m, ln_n, serves = warm
+            if not serves.all():
+                cold = guess.composition(T, ln_p)
+                z, m, ln_n = (np.where(serves, a, b) for a, b in zip((z, m, ln_n), cold, strict=True))
         unknowns = np.vstack([z, m, np.log(T), ln_p, ln_n])
         mixing = -(inert * np.log(np.maximum(inert, TRACE))).sum(0)
-        return Columns(unknowns, np.vstack([basis, absent(self.kernel, basis), inert, mixing, targets]))
+        return Columns(unknowns, np.vstack([basis, inert, mixing, absent(self.kernel, basis), targets]))
 
-    def _warm(self, points: slice, ln_p: Array, z: Array, m: Array, ln_n: Array) -> None:
-        """Take over the composition of the start, except where an element has appeared since."""
-        assert self.start is not None and self.start.potentials is not None
-        before = self.start.potentials[:, points]
-        same = ((before > -500.0) == (z > -500.0)).all(0) & np.isfinite(before).all(0)
-        moles = self.start.moles[: self.kernel.table.reacting, points]
-        z[:, same] = before[:, same]
-        ln_n[:, same] = np.log(np.maximum(moles, TRACE))[:, same]
-        total = moles.sum(0) + self.gas.inert[:, points].sum(0)
-        m[same] = (np.log(total) - ln_p)[same]
+    def _warm(self, points: slice, T: Array, ln_p: Array) -> tuple[Array, Array, Array, Flags] | None:
+        """z, m, ln n that are in equilibrium at T and p with the potentials of the start, at its mole fractions of the
+        basis, and where they serve: not where an element has appeared or gone. None without potentials."""
+        if self.start is None or self.start.potentials is None:
+            return None
+        kernel, z = self.kernel, self.start.potentials[:, points]
+        moles = self.start.moles[:, points]
+        ln_total = np.log(moles.sum(0))
+        gone = absent(kernel, self.gas.basis[:, points])
+        serves: Flags = (gone == (z < 0.5 * ABSENT)).all(0) & np.isfinite(z).all(0)
+        major = moles[: kernel.basis].argmax(0)
+        at_major = (major, np.arange(major.size))
+        z = z + (ln_p + np.log(moles[at_major]) - ln_total - z[at_major])
+        m = ln_total - ln_p
+        ln_n = product(kernel.nu, z) + m
+        ln_n[kernel.basis :] -= kernel.formation_energy(T)
+        return z, m, np.minimum(ln_n, ln_total), serves
 
 
 def _properties(table: SpeciesTable, unknowns: Array, basis: Array, inert: Array) -> tuple[Array, ...]:

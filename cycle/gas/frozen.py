@@ -11,6 +11,7 @@ import numpy as np
 from cycle.arrays import Array, ArrayLike, Codes, Flags
 from cycle.constants import GAS_CONSTANT
 from cycle.gas.base import FixedGas, Gas
+from cycle.gas.elimination import product
 from cycle.gas.species import SpeciesTable, range_of, temperature_functions
 
 if TYPE_CHECKING:
@@ -39,7 +40,8 @@ class FrozenGas(FixedGas):
     def _factors(self) -> tuple[Array, Array, Array]:
         """What `temperature_functions` are multiplied by for h / T, s and cp of the mixture, each (17, N)."""
         R, table, moles = GAS_CONSTANT, self.table, self.composition
-        return R * (table.h.T @ moles), R * (table.s.T @ moles), R * (table.cp.T @ moles)
+        h, s, cp = (product(np.ascontiguousarray(rows.T) * R, moles) for rows in (table.h, table.s, table.cp))
+        return h, s, cp
 
     def caloric(self, temperature: Array) -> tuple[Array, Array, Array]:
         """h J/kg, s at 1 bar and this composition J/(kg K), cp J/(kg K) at T (N,)."""

@@ -19,7 +19,7 @@ import numpy as np
 
 from cycle.arrays import Array
 from cycle.gas.elimination import product
-from cycle.gas.species import SpeciesTable, temperature_functions
+from cycle.gas.species import LOWEST, WARM_FUNCTIONS, SpeciesTable, temperature_functions
 
 
 @dataclass(frozen=True, eq=False)
@@ -40,18 +40,20 @@ class Thermo:
 
 @dataclass(frozen=True, eq=False)
 class Kernel:
-    """nu (reacting, K); pairs ((K+1)^2, reacting): n_j times these sums gives the reduced matrix; weights (K+1,
+    """nu (reacting, K); nu_and_one (reacting, K+1): what z and m are multiplied by; pairs ((K+1)^2, reacting): n_j times these sums gives the reduced matrix; weights (K+1,
     reacting): [nu, 1] transposed; formed: weights of the non-basis species; rows: factors behind `Thermo`, whose
-    fields are its `parts`; formation: the rows of g alone."""
+    fields are its `parts`; formation: the rows of g alone; warm_rows: `rows` from 200 K on."""
 
     table: SpeciesTable
     nu: Array
+    nu_and_one: Array
     pairs: Array
     weights: Array
     formed: Array
     rows: Array
     formation: Array
     parts: tuple[slice, ...]
+    warm_rows: Array
 
     @property
     def basis(self) -> int:
@@ -60,7 +62,9 @@ class Kernel:
 
     def thermo(self, temperature: Array, functions: Array | None = None, out: Array | None = None) -> Thermo:
         """All of `Thermo` at temperature K (N,); functions (17, N) and out (rows, N) are reused where given."""
-        p = product(self.rows, temperature_functions(temperature, functions), out)
+        f = temperature_functions(temperature, functions)
+        rows = self.rows if np.any(temperature < LOWEST) else self.warm_rows
+        p = product(rows, f[: rows.shape[1]], out)
         return Thermo(*(p[part] for part in self.parts))
 
     def formation_energy(self, temperature: Array) -> Array:
@@ -80,4 +84,6 @@ def kernel_of(table: SpeciesTable) -> Kernel:
     pairs = (weights[:, None] * weights[None, :]).reshape((k + 1) ** 2, reacting)
     ends = np.cumsum([0, *[reacting - k] * 3, *[len(base)] * 3])
     parts = tuple(slice(a, b) for a, b in itertools.pairwise(ends))
-    return Kernel(table, table.in_basis, pairs, weights, weights[:, k:].copy(), rows, (h - s).copy(), parts)
+    warm = rows[:, :WARM_FUNCTIONS].copy()
+    nu_and_one = np.ascontiguousarray(weights.T)
+    return Kernel(table, table.in_basis, nu_and_one, pairs, weights, weights[:, k:].copy(), rows, (h - s).copy(), parts, warm)

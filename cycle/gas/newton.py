@@ -27,7 +27,7 @@ POOL = 2048
 MAX_ITERATIONS = 60
 
 ERROR_LEFT = 1e-15
-"""Stop when the quadratic error that this step leaves, x_j (d ln n_j)^2, is below this for every species ..."""
+"""Stop when the quadratic error that this step leaves, the sum of x_j (d ln n_j)^2, is below this ..."""
 
 LAST_STEP = 1e-7
 """... and the steps of ln T and ln p, whose error is their square, below this."""
@@ -39,7 +39,7 @@ LN_RATIO = float(np.log(GAS_CONSTANT)) - LN_REFERENCE
 @dataclass(slots=True)
 class Columns:
     """Points under iteration. unknowns: rows z (K), m, ln T, ln p (p in bar), ln n (reacting). conditions: rows b (K),
-    absent (K, 1 where the element is not there), inert amounts, their -sum n ln n, then the closure's targets."""
+    inert amounts, their -sum n ln n, absent (K, 1 where the element is not there), then the closure's targets."""
 
     unknowns: Array
     conditions: Array
@@ -56,8 +56,9 @@ class Columns:
 
 @dataclass(slots=True)
 class View:
-    """The columns by name, and what follows from them at once: T, n and the total p e^m of `Kernel`'s notation."""
+    """The columns by name (potentials: z and m), and what follows from them at once: T, n and the total p e^m of `Kernel`'s notation."""
 
+    potentials: Array
     z: Array
     m: Array
     ln_T: Array
@@ -83,7 +84,7 @@ class Step:
         self.sides = 1 if closure.fixes_T and closure.fixes_p else 2 if closure.fixes_p else 3
         k, reacting = table.basis, table.reacting
         self.functions, self.thermo = np.empty((FUNCTIONS, points)), np.empty((len(kernel.rows), points))
-        self.n, self.r, self.nr, self.growth = np.empty((4, reacting, points))
+        self.n, self.r, self.nr = np.empty((3, reacting, points))
         self.matrix, self.right = np.empty((k + 1, k + 1, points)), np.empty((k + 1, self.sides, points))
         self.nh, self.work = np.empty((2, reacting - k, points))
         self.change = np.zeros((k + 3 + reacting, points))
@@ -109,20 +110,19 @@ class Step:
     def _view(self, columns: Columns) -> View:
         u, c = columns.unknowns, columns.conditions
         k, inert = self.kernel.basis, self.kernel.table.inert
-        end = 2 * k + inert
+        end = k + inert
         T = np.exp(u[k + 1])
         total: Array = np.exp(u[k] + u[k + 2])
         return View(
-            u[:k], u[k], u[k + 1], u[k + 2], u[k + 3 :], c[:k], c[k : 2 * k], np.concatenate([c[:k], c[2 * k : end]]),
-            c[2 * k : end].sum(0), c[end], tuple(c[end + 1 :]), T, total,
+            u[: k + 1], u[:k], u[k], u[k + 1], u[k + 2], u[k + 3 :], c[:k], c[end + 1 : end + 1 + k], c[:end], c[k:end].sum(0), c[end],
+            tuple(c[end + 1 + k :]), T, total,
             self.kernel.thermo(T, self.functions, self.thermo),
         )  # fmt: skip
 
     def _distances(self, at: View) -> None:
         """n, and r: how far each ln n_j is from its equilibrium with the potentials."""
         np.exp(at.ln_n, out=self.n)
-        r = np.matmul(self.kernel.nu, at.z, out=self.r)
-        r += at.m
+        r = np.matmul(self.kernel.nu_and_one, at.potentials, out=self.r)
         r[self.kernel.basis :] -= at.thermo.g
         r -= at.ln_n
         np.multiply(self.n, r, out=self.nr)
@@ -154,10 +154,8 @@ class Step:
     def _local(self, at: View, pull: Array) -> Local:
         """Properties once the composition has followed to this T and p, and their equilibrium slopes."""
         k, x, th, R = self.kernel.basis, self.right, at.thermo, GAS_CONSTANT
-        formed = self.nh.sum(0) + dot(th.h, self.nr[k:]) + dot(pull, x[:, 0])
-        np.multiply(th.h, self.nh, out=self.work)
-        self.work += np.multiply(th.cp, self.n[k:], out=th.cp)
-        cp = self.work.sum(0) + dot(pull, x[:, 1]) + dot(at.amounts, th.base_cp)
+        formed = dot(th.h, self.n[k:] + self.nr[k:]) + dot(pull, x[:, 0])
+        cp = dot(th.h, self.nh) + dot(th.cp, self.n[k:]) + dot(pull, x[:, 1]) + dot(at.amounts, th.base_cp)
         m = at.m + x[k, 0]
         s = formed + dot(at.amounts, th.base_s) - dot(at.b, at.z + x[:k, 0]) + at.inert * m + at.mixing
         v_T = 1.0 + x[k, 1]
@@ -176,9 +174,8 @@ class Step:
         for response, step in zip(x.transpose(1, 0, 2)[1:], (d_T, d_p), strict=False):
             change[: k + 1] += response * step
         change[k + 1], change[k + 2] = d_T, d_p
-        d = np.matmul(self.kernel.nu, change[:k], out=change[k + 3 :])
+        d = np.matmul(self.kernel.nu_and_one, change[: k + 1], out=change[k + 3 :])
         d += self.r
-        d += change[k]
         if self.sides > 1:
             d[k:] += np.multiply(at.thermo.h, d_T, out=self.work)
 
@@ -190,14 +187,13 @@ class Step:
         """
         k, change = self.kernel.basis, self.change
         d_T, d_p, d = np.abs(change[k + 1]), np.abs(change[k + 2]), change[k + 3 :]
-        growth = np.subtract(at.m + at.ln_p - 2.0, at.ln_n, out=self.growth)
-        np.maximum(growth, 2.0, out=growth)
-        np.divide(d, growth, out=growth)
-        size = np.maximum(growth.max(0), np.maximum(4.0 * d_T, 0.5 * d_p))
+        size = np.maximum(4.0 * d_T, 0.5 * d_p)
         size = np.maximum(size, 2.5 * np.abs(change[k] + change[k + 2]))
-        np.multiply(d, d, out=growth)
-        growth *= self.n
-        left = growth.max(0) < ERROR_LEFT * at.total
+        fast = np.flatnonzero(d.max(0) > 2.0)
+        if fast.size:
+            room = np.maximum((at.m + at.ln_p)[fast] - 2.0 - at.ln_n[:, fast], 2.0)
+            size[fast] = np.maximum(size[fast], (d[:, fast] / room).max(0))
+        left = dot(np.multiply(d, self.n, out=self.r), d) < ERROR_LEFT * at.total
         change /= np.maximum(size, 1.0)
         done: Flags = left & (d_T < LAST_STEP) & (d_p < LAST_STEP) & (size <= 1.0)
         return done

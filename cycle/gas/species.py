@@ -46,7 +46,9 @@ PREFERRED_BASIS = ("H2O", "CO2", "N2", "O2", "H2", "CO")
 """Basis species in order of choice. Stable products keep the reduced matrix regular where the matrix of elements is
 singular: cold and stoichiometric."""
 
-FUNCTIONS = 17
+FUNCTIONS, WARM_FUNCTIONS = 17, 14
+"""Number of functions of T, and of those that are not zero from 200 K on."""
+
 _LOW, _HIGH, _COLD = slice(0, 7), slice(7, 14), slice(14, 17)
 _HELD = slice(0, 3)
 

@@ -11,7 +11,7 @@ import numpy as np
 
 from cycle.arrays import Array, Flags
 from cycle.constants import GAS_CONSTANT, REFERENCE_PRESSURE
-from cycle.gas.elimination import product
+from cycle.gas.elimination import dot, product
 from cycle.gas.kernel import Kernel
 from cycle.gas.species import temperature_functions
 
@@ -68,7 +68,7 @@ class Guess:
         T = np.full(self.total.shape, 1500.0)
         for _ in range(4):
             f = temperature_functions(T)
-            step = (wanted(T) - (value * f).sum(0)) / (slope * f).sum(0)
+            step = (wanted(T) - dot(value, f)) / dot(slope, f)
             T = np.clip(T * np.exp(np.clip(step, -0.7, 0.7)), 150.0, 5000.0)
         return np.where(T > 2500.0, 1250.0 + 0.5 * T, T)
 

@@ -84,7 +84,7 @@ def isentrope(check: Check) -> dict[str, float]:
     sonic = states.sonic(gas, total.enthalpy, total.entropy, total)
     t, p = at.temperature / total.temperature, at.pressure / total.pressure
     area = sonic.density * sonic.sound_speed / (at.density * mach * at.sound_speed)
-    back = states.rest(gas, at.enthalpy + 0.5 * (mach * at.sound_speed) ** 2, at.entropy, start=at)
+    back = states.rest(gas, at.enthalpy + 0.5 * (mach * at.sound_speed) ** 2, at.entropy)
     assert back.pressure == pytest.approx(total.pressure, rel=1e-10)
     return {
         "T/Tt": t[0],
@@ -196,14 +196,16 @@ def test_constant_area_heating_follows_the_closed_rayleigh_line(mach: float, gam
     total = before.enthalpy + 0.5 * u**2
     most = total / rayleigh.total_temperature_ratio(mach, gamma)
     fast = np.array([mach > 1.0])
-    point = heating.sonic_point(gas, impulse, flux)
-    assert point.total_enthalpy == pytest.approx(most, rel=1e-10)
     after = total + part * (most - total)
+    sharp = heating.sonic_point(gas, impulse, flux, most)
+    assert sharp.total_enthalpy == pytest.approx(most, rel=1e-10)
+    point = heating.sonic_point(gas, impulse, flux, after)
     state, passes = heating.constant_area(gas, impulse, flux, after, fast, point)
     assert passes.all() and state.good.all()
     expected = rayleigh.mach_from_total_temperature(after / most, gamma, supersonic=mach > 1.0)
     assert (flux / state.density / state.sound_speed) == pytest.approx(expected, rel=1e-7)
-    _, too_much = heating.constant_area(gas, impulse, flux, most * 1.0001, fast, point)
+    beyond = most * (1.0 + 1e-9)
+    _, too_much = heating.constant_area(gas, impulse, flux, beyond, fast, heating.sonic_point(gas, impulse, flux, beyond))
     assert not too_much.any()
 
 

@@ -64,6 +64,7 @@ class Terminal:
         if self.process.isalive():
             self.process.kill(signal.SIGKILL)
         self.process.close(force=True)
+        self.process.fileobj.close()
 
     def pump(self, seconds: float) -> int:
         """Read what comes within `seconds`; returns the bytes read."""

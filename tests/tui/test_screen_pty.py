@@ -92,12 +92,8 @@ def test_signals_end_it_with_the_terminal_sane_and_the_work_kept(terminal: Termi
 
 def test_a_vanished_terminal_ends_it(terminal: Terminal, env: dict[str, str]) -> None:
     edit_mach(terminal, "6.5")
-    os.close(terminal.process.fd)
-    terminal.process.closed = True
-    try:
-        assert ended_without_reading(terminal, 6.0) == 129
-    finally:
-        terminal.process.fd = os.open(os.devnull, os.O_RDWR)  # the closing of the fixture needs a descriptor of its own
+    terminal.process.fileobj.close()
+    assert ended_without_reading(terminal, 6.0) == 129
     assert len(journals(env)) == 1
 
 

@@ -152,7 +152,7 @@ class Editing(Desk, inherit_bindings=False):
         if entry is None or event.key in ("ctrl+z", "ctrl+l"):
             return
         event.stop()
-        if event.key == "escape":
+        if event.key in ("escape", "ctrl+c"):
             self.put(replace(self.session, entry=None, note=""))
         elif event.key == "enter":
             self._commit(entry)

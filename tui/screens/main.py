@@ -23,7 +23,7 @@ from tui.session import VIEWS
 from tui.views import headline, inputs, side, table
 from tui.widgets.panel import Panel
 
-NEEDS_NO_CASE = ("leave", "help", "suspend", "redraw", "units")
+NEEDS_NO_CASE = ("leave", "interrupt", "help", "suspend", "redraw", "units")
 
 WIDTHS: list[tuple[int, str]] | None = [(0, "-narrow"), (112, "-wide")]
 HEIGHTS: list[tuple[int, str]] | None = [(0, "-tiny"), (12, "-short"), (24, "-plain"), (34, "-tall")]
@@ -64,6 +64,7 @@ class MainScreen(Editing, Filing, inherit_bindings=False):
 
     def on_mount(self) -> None:
         """The empty frame first, then the worker, which imports the model."""
+        self.app.app_resume_signal.subscribe(self, lambda _: self.do_redraw())
         self.call_after_refresh(self._begin)
 
     def _begin(self) -> None:
@@ -161,6 +162,14 @@ class MainScreen(Editing, Filing, inherit_bindings=False):
         """Between the table and the inputs."""
         self.put(replace(self.session, focus="inputs" if self.session.focus == "table" else "table"))
 
+    def do_table(self) -> None:
+        """Back to the table."""
+        self.put(replace(self.session, focus="table"))
+
+    def do_interrupt(self) -> None:
+        """Say how to leave."""
+        self.put(replace(self.session, note="q leaves; unsaved work is kept"))
+
     def do_pin(self) -> None:
         """Pin the present walk."""
         self.put(session.pinned(self.session))
@@ -193,7 +202,7 @@ class MainScreen(Editing, Filing, inherit_bindings=False):
 
     def do_redraw(self) -> None:
         """Paint everything afresh."""
-        self.refresh(layout=True)
+        self.app.screen.refresh()
 
     def do_suspend(self) -> None:
         """Suspend to the shell; the journal is on disk already."""

@@ -7,6 +7,7 @@ from dataclasses import dataclass
 
 from textual import events
 from textual.app import ComposeResult
+from textual.geometry import Size
 from textual.screen import Screen
 
 from tui.line import BOLD, CURSOR, DIM, PLAIN, Line, clean, fit, line
@@ -46,21 +47,18 @@ class Page(Screen[str]):
         self._at = 0
 
     def compose(self) -> ComposeResult:
-        """One sheet."""
-        yield Sheet(id="page")
-
-    def on_mount(self) -> None:
-        """First paint."""
-        self.call_after_refresh(self.paint)
+        """One sheet, painted before it is laid out, so that the screen is sent once."""
+        self._sheet = Sheet(id="page")
+        self._paint(self.app.size)
+        yield self._sheet
 
     def on_resize(self) -> None:
         """Paint for the new size."""
-        self.call_after_refresh(self.paint)
+        self._paint(self.app.size)
 
-    def paint(self) -> None:
+    def _paint(self, size: Size) -> None:
         """Title, as much of the text as fits, the answers, the keys."""
-        sheet = self.query_one("#page", Sheet)
-        wide, height = sheet.size
+        wide, height = size
         body = self._body(wide)
         choices = self._choices(wide)
         room = max(1, height - 2 - len(choices))
@@ -72,7 +70,7 @@ class Page(Screen[str]):
         keys = "arrows and Enter, or the letter; Escape leaves" if self._answers else "arrows scroll; Escape goes back"
         padding: list[Line] = [line("")] * (room - len(shown))
         head = line((fit(clean(self._heading) + more, wide), BOLD))
-        sheet.show([head, *shown, *choices, *padding, line((fit(keys, wide), DIM))])
+        self._sheet.show([head, *shown, *choices, *padding, line((fit(keys, wide), DIM))], size)
 
     def _choices(self, wide: int) -> list[Line]:
         return [line((fit(f" {a.key}  {clean(a.words)}", wide), CURSOR if i == self._at else PLAIN)) for i, a in enumerate(self._answers)]
@@ -86,7 +84,7 @@ class Page(Screen[str]):
             last = len(self._answers) - 1 if self._answers else len(self._body(self.size.width))
             page = max(1, self.size.height - 3)
             self._at = max(0, min(MOVES[event.key](self._at, page, last), max(last, 0)))
-            self.paint()
+            self._paint(self.app.size)
         elif event.key in ("escape", "q", "ctrl+q"):
             self.dismiss("")
         elif self._answers:

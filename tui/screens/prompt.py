@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from textual import events
 from textual.app import ComposeResult
+from textual.geometry import Size
 from textual.screen import Screen
 
 from tui import keying
@@ -26,33 +27,31 @@ class Prompt(Screen[str]):
         self._entry = Entry("", text, len(text), fresh=False)
 
     def compose(self) -> ComposeResult:
-        """One sheet."""
-        yield Sheet(id="prompt")
-
-    def on_mount(self) -> None:
-        """First paint."""
-        self.call_after_refresh(self.paint)
+        """One sheet, painted before it is laid out, so that the screen is sent once."""
+        self._sheet = Sheet(id="prompt")
+        self._paint(self.app.size)
+        yield self._sheet
 
     def on_resize(self) -> None:
         """Paint for the new size."""
-        self.call_after_refresh(self.paint)
+        self._paint(self.app.size)
 
-    def paint(self) -> None:
+    def _paint(self, size: Size) -> None:
         """The question, the field, what went wrong, the keys."""
-        sheet = self.query_one("#prompt", Sheet)
-        wide = max(4, sheet.size.width)
+        wide = max(4, size.width)
         entry = self._entry
         start = max(0, entry.caret - wide + 3)
         text = clean(entry.text)
         seen = (text + " ")[start : start + wide - 1]
         at = entry.caret - start
-        sheet.show(
+        self._sheet.show(
             [
                 line((fit(self._question, wide), BOLD)),
                 line(seen[:at], (seen[at : at + 1] or " ", CURSOR), seen[at + 1 :]),
                 line((fit(clean(self._fault), wide), OVER if self._fault else PLAIN)),
                 line((fit("Enter takes it; Escape leaves", wide), DIM)),
-            ]
+            ],
+            size,
         )
 
     def on_key(self, event: events.Key) -> None:
@@ -67,10 +66,10 @@ class Prompt(Screen[str]):
                 self.dismiss(self._entry.text.strip())
         else:
             self._entry = keying.press(self._entry, event.key, event.character)
-            self.paint()
+            self._paint(self.app.size)
 
     def on_paste(self, event: events.Paste) -> None:
         """Put pasted text in at the caret."""
         event.stop()
         self._entry = keying.insert(self._entry, event.text)
-        self.paint()
+        self._paint(self.app.size)

@@ -6,7 +6,7 @@ import os
 
 from cycle.quantities import MODES, OUTPUT
 from cycle.units import show
-from tui.figures import Figures, Margin
+from tui.figures import Figures
 from tui.line import BOLD, DIM, NEAR, OVER, PLAIN, Line, clean, fit, line, width, wrap
 from tui.session import Session, performance_keys
 from tui.views.numbers import difference, figure, quantity, unit
@@ -108,12 +108,8 @@ def audit_words(found: Figures) -> str:
     return "audit ok" if found.audit_ok else "AUDIT FAILED"
 
 
-def _names(margins: tuple[Margin, ...], state: str) -> str:
-    return ", ".join(m.label for m in margins if m.state == state)
-
-
 def _over(found: Figures, system: str, numbers: bool) -> str:
-    """Limits that are over, with figure and limit where there is room for the numbers."""
+    """Limits that are over, with figure and limit where the numbers are wanted."""
     words = []
     for m in found.limits:
         if m.state == "over":
@@ -122,19 +118,24 @@ def _over(found: Figures, system: str, numbers: bool) -> str:
     return f"OVER {', '.join(words)}" if words else "none over"
 
 
+def _named(found: Figures, state: str, counted: bool) -> str:
+    names = [m.label for m in found.limits if m.state == state]
+    return f"{state}: {len(names) if counted else ', '.join(names) or 'none'}"
+
+
 def _limits(session: Session, columns: int) -> Line:
-    """Over, near and not assessed limits in words, the audit, the referee; the longest form that fits."""
+    """Over, near and not assessed limits in words, the audit, the referee: the fullest form that fits the width."""
     found = session.figures
     if found is None or not found.audit:
         return line("limits and audit not assessed yet")
-    near, unknown = _names(found.limits, "near"), _names(found.limits, "not assessed")
-    over = any(m.state == "over" for m in found.limits)
-    count = sum(m.state == "not assessed" for m in found.limits)
+    states = [m.state for m in found.limits]
+    overs = [_over(found, session.system, True), _over(found, session.system, False), f"OVER {states.count('over')}"]
     asked = clean(session.referee) or "not asked"
-    full = [f"near: {near or 'none'}", f"not assessed: {unknown or 'none'}", audit_words(found), f"referee {asked}"]
-    near_words = [f"near: {near or 'none'}"] if near or not over else []
-    short = [*near_words, f"not assessed: {count}", audit_words(found), f"referee {'asked' if session.referee else asked}"]
-    forms = [" | ".join([_over(found, session.system, n), *tail]) for tail in (full, short) for n in (True, False)]
+    forms = []
+    for over, near, unknown in ((0, False, False), (1, False, False), (0, False, True), (1, False, True), (1, True, True), (2, True, True)):
+        parts = [overs[over], _named(found, "near", near), _named(found, "not assessed", unknown), audit_words(found)]
+        said = "asked" if unknown and session.referee else asked
+        forms.append(" | ".join([*parts, f"referee {said}"]))
     words = next((form for form in forms if width(form) <= columns), forms[-1])
-    style = OVER if over or not found.audit_ok else NEAR if near else PLAIN
+    style = OVER if "over" in states or not found.audit_ok else NEAR if "near" in states else PLAIN
     return line((fit(clean(words), columns), style))

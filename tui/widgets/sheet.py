@@ -3,14 +3,11 @@
 from __future__ import annotations
 
 from rich.segment import Segment
-from textual.geometry import Region
+from textual.geometry import Region, Size
 from textual.strip import Strip
 from textual.widget import Widget
 
-from tui.line import PLAIN, Cell, Line, cells, changed
-
-GAP = 12
-"""Unchanged cells between two changed ones that are cheaper to repaint than to jump over."""
+from tui.line import PLAIN, Cell, Line, cells, reach
 
 
 def strip_of(row: list[Cell]) -> Strip:
@@ -36,17 +33,20 @@ class Sheet(Widget):
         self._lines: list[Line] = []
         self._rows: list[list[Cell]] = []
         self._strips: list[Strip] = []
+        self._shown = Size(0, 0)
 
-    def show(self, lines: list[Line]) -> None:
-        """Paint `lines` from the top; what does not fit the widget is left out, what is missing is blank."""
-        if lines == self._lines and len(self._rows) == self.size.height:
+    def show(self, lines: list[Line], size: Size | None = None) -> None:
+        """Paint `lines` from the top; what does not fit is left out, what is missing is blank.
+
+        Parameters: lines; size, that of the widget, where it is known before the layout is made.
+        """
+        size = size or self.size
+        if lines == self._lines and size == self._shown:
             return
-        self._lines = lines
-        columns, height = self.size
-        rows = [cells(content, columns) for content in [*lines, *[()] * height][:height]]
-        old, self._rows = self._rows, rows
-        fits = len(old) == height and all(len(row) == columns for row in old)
-        if not fits:
+        rows = [cells(content, size.width) for content in [*lines, *[()] * size.height][: size.height]]
+        old, self._rows, self._lines = self._rows, rows, lines
+        if size != self._shown:
+            self._shown = size
             self._strips = [strip_of(row) for row in rows]
             self.refresh()
             return
@@ -54,7 +54,8 @@ class Sheet(Widget):
         for y, (before, after) in enumerate(zip(old, rows, strict=True)):
             if before != after:
                 self._strips[y] = strip_of(after)
-                regions += [Region(x, y, length, 1) for x, length in changed(before, after, GAP)]
+                # a line is sent from its first cell whatever the region says, so a second region would send it twice
+                regions.append(Region(0, y, reach(before, after), 1))
         if regions:
             self.refresh(*regions)
 
