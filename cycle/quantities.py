@@ -417,7 +417,7 @@ STATUSES: dict[str, str] = {
     "no-fuel": "no fuel flow reaches the total temperature asked for",
     "stalled": "the burner stream comes to rest: friction or pressure leaves no momentum",
     "throat-mismatch": "the stream and the nozzle throat do not fit: subsonic without a throat, or supersonic with one",
-    "under-expanded": "the exit asked for lies upstream of the nozzle's own entry or throat",
+    "under-expanded": "the exit asked for lies upstream of the nozzle's own entry or throat, or is too small for its losses",
     "mode-refused": "the mode asked for does not fit the stream",
     "no-altitude": "no altitude of the standard atmosphere gives the dynamic pressure asked for at this speed",
     "out-of-range": "a state left the range of the data (150 to 6000 K)",

@@ -7,11 +7,11 @@ from dataclasses import replace
 
 import numpy as np
 
-from cycle.arrays import Array
-from cycle.flow import states
+from cycle.arrays import Array, Flags
+from cycle.flow import roots, states
 from cycle.flowpath.setting import Setting
 from cycle.flowpath.stream import Process, Step, Stream, status_of, stream
-from cycle.gas.state import State
+from cycle.gas.state import State, scatter
 
 
 def nozzle_gas(burnt: Stream, setting: Setting) -> Stream:
@@ -84,13 +84,17 @@ def _expanded(entering: Stream, setting: Setting, pressure: Array, start: State 
     return entering.gas.at("hp", h, pressure, start=ideal)
 
 
-def _to_area(entering: Stream, setting: Setting, area: Array) -> State:
-    """Supersonic state that fills `area` (N,), not below the entering one: isentropic first, then the pressure at which
-    the real expansion keeps the mass flow, by Newton and then secant in ln p."""
+def _to_area(entering: Stream, setting: Setting, area: Array) -> tuple[State, Flags]:
+    """Supersonic state that fills `area` (N,), not below the entering one, and whether there is one.
+
+    Isentropic first, then the pressure at which the real expansion keeps the mass flow, by Newton and then secant in ln p.
+    Just behind a throat the losses can leave no such pressure: those that do not settle are looked at by `_near_throat`.
+    """
     flux = np.minimum(entering.mass_flow / area, entering.flux)
     state = states.expanded_to_flux(entering.gas, entering.total_enthalpy, entering.state.entropy, flux, entering.state)
+    fits = np.ones(area.shape, np.bool_)
     if _lossless(setting):
-        return state
+        return state, fits
     ln_p = np.log(state.pressure)
     at, before, slope = ln_p, np.full_like(ln_p, np.nan), np.ones_like(ln_p)
     done = np.zeros(ln_p.shape, np.bool_)
@@ -106,7 +110,36 @@ def _to_area(entering: Stream, setting: Setting, area: Array) -> State:
             break
         before, at = np.where(done, before, miss), np.where(done, at, ln_p)
         ln_p = np.where(done, ln_p, ln_p + np.clip(-miss / slope, -1.0, 1.0))
-    return state.flagged(~done)
+    left = np.flatnonzero(~done)
+    if left.size:
+        found, fits[left] = _near_throat(entering.take(left), setting.take(left), flux[left])
+        state = scatter(state, left, found)
+    return state, fits
+
+
+_SCAN = 65
+
+
+def _near_throat(entering: Stream, setting: Setting, flux: Array) -> tuple[State, Flags]:
+    """The real expansion where its largest mass flux lies close to `flux` (N,): beyond that maximum by bisection, or no
+    state at all where even the maximum is below it."""
+    span = np.linspace(0.0, -1.5, _SCAN)
+    n = flux.size
+    many = np.repeat(np.arange(n), _SCAN)
+    wide, asked = entering.take(many), setting.take(many)
+
+    def excess(ln_p: Array, stream: Stream, part: Setting, target: Array) -> Array:
+        state = _expanded(stream, part, np.exp(ln_p))
+        return np.log(state.density * states.velocity(stream.total_enthalpy, state) / target)
+
+    ln_p = np.log(wide.state.pressure) + np.tile(span, n)
+    scanned = np.nan_to_num(excess(ln_p, wide, asked, flux[many]).reshape(n, _SCAN), nan=-np.inf)
+    peak = scanned.argmax(1)
+    fits = (scanned.max(1) >= 0.0) & (scanned[:, -1] < 0.0)
+    entry = np.log(entering.state.pressure)
+    root = roots.bracketed(lambda x: excess(x, entering, setting, flux), entry + span[peak], entry + span[-1], 1e-15)
+    state = _expanded(entering, setting, np.exp(np.where(fits, root, entry)))
+    return state.flagged(fits & ~np.isfinite(root)), fits
 
 
 def _area_over_capture(entering: Stream, setting: Setting) -> Array:
@@ -127,14 +160,14 @@ def nozzle(entering: Stream, setting: Setting, ambient: Array) -> Step:
     """Station 4 or 5 to 10.
 
     ambient: Pa (N,), where the expansion is ideal. Not solved: under-expanded where the exit asked for lies upstream of
-    the entry, throat-mismatch where a subsonic stream meets no throat.
+    the entry or is too small for the losses, throat-mismatch where a subsonic stream meets no throat.
     """
     end = setting.choices["nozzle.exit"]
     with np.errstate(all="ignore"):
         if end in _AREA:
             area = _AREA[end](entering, setting)
-            state = _to_area(entering, setting, area)
-            upstream = area < entering.area * (1.0 - 1e-9)
+            state, fits = _to_area(entering, setting, area)
+            upstream = (area < entering.area * (1.0 - 1e-9)) | ~fits
         else:
             p = ambient if end == "ideal" else setting["nozzle.exit_pressure"]
             state = _expanded(entering, setting, p)

@@ -100,21 +100,24 @@ class EquilibriumGas(Gas):
         usable = np.isfinite(targets).all(0) & np.isfinite(self.basis).all(0) & np.isfinite(self.inert).all(0)
         if start is not None:
             usable &= np.isfinite(start.temperature) & np.isfinite(start.pressure)
-        where = np.flatnonzero(usable)
-        unknowns = np.full((kernel.basis + 3, self.size), np.nan)
-        converged, counts = np.zeros(self.size, bool), np.zeros(self.size, np.int64)
-        if where.size:
-            first = FirstGuess(kernel, kind, self.take(where), targets[:, where], None if start is None else start.take(where))
+        if usable.all() and self.size:
             with np.errstate(all="ignore"):
-                unknowns[:, where], converged[where], counts[where] = iterate(kernel, kind, where.size, first)
-        return Solution(unknowns, converged, counts)
+                return Solution(*iterate(kernel, kind, self.size, FirstGuess(kernel, kind, self, targets, start)))
+        nothing = np.full((kernel.basis + 3, self.size), np.nan)
+        found = Solution(nothing, np.zeros(self.size, bool), np.zeros(self.size, np.int64))
+        where = np.flatnonzero(usable)
+        if where.size:
+            some = self.take(where)._iterate(kind, targets[:, where], None if start is None else start.take(where))
+            found.unknowns[:, where], found.converged[where] = some.unknowns, some.converged
+            found.iterations[where] = some.iterations
+        return found
 
     def state_of(self, found: Solution) -> State:
         """Properties of a solution with their analytic derivatives; points without one are flagged."""
         chunks = [slice(low, low + POOL) for low in range(0, max(self.size, 1), POOL)]
         with np.errstate(all="ignore"):
             parts = [_properties(self.table, found.unknowns[:, c], self.basis[:, c], self.inert[:, c]) for c in chunks]
-            columns = [np.concatenate(c, axis=-1) for c in zip(*parts, strict=True)]
+            columns = list(parts[0]) if len(parts) == 1 else [np.concatenate(c, axis=-1) for c in zip(*parts, strict=True)]
             lost = ~found.converged | ~np.isfinite(columns[3] * columns[5])
         code = np.where(lost, NOT_CONVERGED, range_of(columns[0]))
         *fields, potentials = columns

@@ -40,9 +40,10 @@ class Thermo:
 
 @dataclass(frozen=True, eq=False)
 class Kernel:
-    """nu (reacting, K); nu_and_one (reacting, K+1): what z and m are multiplied by; pairs ((K+1)^2, reacting): n_j times these sums gives the reduced matrix; weights (K+1,
-    reacting): [nu, 1] transposed; formed: weights of the non-basis species; rows: factors behind `Thermo`, whose
-    fields are its `parts`; formation: the rows of g alone; warm_rows: `rows` from 200 K on."""
+    """nu (reacting, K); nu_and_one (reacting, K+1): the factors of z and m in ln n; weights (K+1, reacting): its
+    transpose; formed: the weights of the non-basis species; pairs ((K+1)^2, reacting): n_j times these sums gives the
+    reduced matrix; rows: factors behind `Thermo`, whose fields are its `parts`; warm_rows: the same from 200 K on;
+    formation: the rows of g alone."""
 
     table: SpeciesTable
     nu: Array

@@ -9,6 +9,7 @@ sides: the residuals at this T and p, the response to ln T, the response to ln p
 
 from __future__ import annotations
 
+import math
 from collections.abc import Callable
 from dataclasses import dataclass
 
@@ -76,18 +77,32 @@ class View:
 
 
 class Step:
-    """One Newton step for a fixed number of columns, with the room it works in."""
+    """One Newton step for a number of columns, and the room it works in, allocated once for the largest number."""
 
     def __init__(self, kernel: Kernel, closure: Closure, points: int) -> None:
-        table = kernel.table
         self.kernel, self.closure = kernel, closure
         self.sides = 1 if closure.fixes_T and closure.fixes_p else 2 if closure.fixes_p else 3
-        k, reacting = table.basis, table.reacting
-        self.functions, self.thermo = np.empty((FUNCTIONS, points)), np.empty((len(kernel.rows), points))
-        self.n, self.r, self.nr = np.empty((3, reacting, points))
-        self.matrix, self.right = np.empty((k + 1, k + 1, points)), np.empty((k + 1, self.sides, points))
-        self.nh, self.work = np.empty((2, reacting - k, points))
-        self.change = np.zeros((k + 3 + reacting, points))
+        k, reacting = kernel.basis, kernel.table.reacting
+        rows = FUNCTIONS + len(kernel.rows) + 6 * reacting + (k + 1) * (k + 1 + self.sides) + 3
+        self.room = np.empty(rows * points)
+        self.resize(points)
+
+    def resize(self, points: int) -> None:
+        """Lay out the room for fewer columns."""
+        k, reacting = self.kernel.basis, self.kernel.table.reacting
+        used = 0
+
+        def cut(*shape: int) -> Array:
+            nonlocal used
+            size = math.prod(shape) * points
+            used += size
+            return self.room[used - size : used].reshape(*shape, points)
+
+        self.functions, self.thermo = cut(FUNCTIONS), cut(len(self.kernel.rows))
+        self.n, self.r, self.nr = cut(reacting), cut(reacting), cut(reacting)
+        self.matrix, self.right = cut(k + 1, k + 1), cut(k + 1, self.sides)
+        self.nh, self.work = cut(reacting - k), cut(reacting - k)
+        self.change = cut(k + 3 + reacting)
 
     def __call__(self, columns: Columns) -> Flags:
         """Move the unknowns of `columns` in place; (N,) true where they have converged."""
@@ -231,7 +246,7 @@ def iterate(kernel: Kernel, kind: str, points: int, prepare: Callable[[slice], C
         if 0 < left < 0.7 * waiting.size:
             keep = np.flatnonzero(waiting)
             pool, live, age, waiting = pool.keep(keep), live[keep], age[keep], waiting[keep]
-            step = Step(kernel, closure, left)
+            step.resize(left)
     return result, converged, counts
 
 

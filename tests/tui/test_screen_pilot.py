@@ -11,7 +11,7 @@ import pytest
 from textual.pilot import Pilot
 
 import cycle
-from cycle.case import Case
+from cycle.case import Case, template
 from tests.tui.test_screen_parts import TEXT, left_by_another
 from tui import figures
 from tui.app import DuctwalkApp
@@ -21,6 +21,8 @@ from tui.screens.page import Page
 from tui.screens.prompt import Prompt
 from tui.session import Session
 from tui.widgets.sheet import Sheet
+
+CASES = Path(__file__).resolve().parents[2] / "cases"
 
 
 @pytest.fixture
@@ -78,7 +80,7 @@ NAMES = {" ": "space", ".": "full_stop", "/": "slash", "+": "plus", "-": "minus"
 
 
 @asynccontextmanager
-async def opened(path: Path, size: tuple[int, int] = (80, 24)) -> AsyncIterator[Driver]:
+async def opened(path: Path | str, size: tuple[int, int] = (80, 24)) -> AsyncIterator[Driver]:
     app = DuctwalkApp(str(path))
     async with app.run_test(size=size) as pilot:
         yield Driver(app, pilot)
@@ -398,3 +400,48 @@ async def test_help_lists_every_action(path: Path) -> None:
             assert action.description.split(";")[0][:40] in text
         await driver.press("escape")
         await driver.until(lambda: isinstance(driver.app.screen, MainScreen))
+
+
+async def test_a_rig_shows_its_own_headline_and_stations(tmp_path: Path, state: Path) -> None:
+    path = tmp_path / "rig.toml"
+    path.write_text(template("entry"))
+    async with opened(path) as driver:
+        found = await driver.settled()
+        assert found.mode == "rig"
+        assert "stream-thrust gain" in driver.screen() or "dF" in driver.screen()
+        assert driver.session.station == next(iter(found.stations))
+        assert "entry Mach number" in driver.screen()
+
+
+async def test_without_a_path_it_opens_a_new_case_and_asks_for_a_name(tmp_path: Path, state: Path) -> None:
+    async with opened("") as driver:
+        assert (await driver.settled()).solved
+        await driver.press("s")
+        await driver.until(lambda: isinstance(driver.app.screen, Prompt))
+        await driver.press("ctrl+u")
+        await driver.type(str(tmp_path / "new.toml"))
+        await driver.press("enter")
+        await driver.until(lambda: "saved" in driver.session.note)
+    assert cycle.load(str(tmp_path / "new.toml")) is not None
+
+
+@pytest.mark.parametrize("name", sorted(p.name for p in CASES.glob("*.toml")))
+async def test_every_shipped_case_opens_and_walks(name: str, tmp_path: Path, state: Path) -> None:
+    path = tmp_path / name
+    path.write_bytes((CASES / name).read_bytes())
+    async with opened(path, (120, 40)) as driver:
+        await driver.settled()
+        for _ in range(6):
+            await driver.press("right")
+        await driver.press("tab", "down", "down", "left", "t", "v", "w", "escape")
+        assert driver.app.is_running
+
+
+async def test_a_defect_of_the_model_is_raised_not_hidden(path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    def broken(case: Case) -> Figures:
+        raise ZeroDivisionError("a defect made by the test")
+
+    monkeypatch.setattr(figures, "solve", broken)
+    with pytest.raises(ZeroDivisionError, match="made by the test"):
+        async with opened(path) as driver:
+            await driver.until(lambda: not driver.app.is_running)
