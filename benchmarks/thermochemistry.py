@@ -127,9 +127,12 @@ def burner_start(gas: EquilibriumGas, G: np.ndarray, F: np.ndarray, ht: np.ndarr
         state = scatter(state, close, again)
         sonic[close], curvature[close], top[close] = _parabola(again, v_close, F[close], G[close])
     v4 = sonic + np.sqrt(np.maximum(top - ht, 0.0) / curvature)
-    p4 = np.maximum(F - G**2 * v4, 0.02 * F)
-    T4 = np.clip(state.temperature * p4 * v4 * state.density / state.pressure, 300.0, 4500.0)
-    return replace(state, temperature=T4, pressure=p4, density=1.0 / v4), top - ht
+    gas_constant = state.pressure / (state.density * state.temperature)
+    for _ in range(2):
+        # far from M = 1 the parabola is too crude for p: T from the energy balance, then v from the impulse
+        T4 = np.clip(state.temperature + (ht - 0.5 * (G * v4) ** 2 - state.enthalpy) / state.specific_heat, 300.0, 4500.0)
+        v4 = (F + np.sqrt(np.maximum(F * F - 4.0 * G * G * gas_constant * T4, 0.0))) / (2.0 * G * G)
+    return replace(state, temperature=T4, pressure=F - G * G * v4, density=1.0 / v4), top - ht
 
 
 def _parabola(state: State, v: np.ndarray, F: np.ndarray, G: np.ndarray) -> tuple[np.ndarray, ...]:

@@ -74,7 +74,7 @@ def _species_sums(table: SpeciesTable, T: Array, x: Array) -> tuple[Array, Array
     for j in range(x.shape[0]):
         for sums, row in ((h, table.h[j]), (s, table.s[j])):
             low, high = row[:7] @ polynomial, row[7:14] @ polynomial
-            cold = row[14:] @ polynomial[:3]
+            cold = row[14:17] @ polynomial[:3]
             sums += x[j] * np.where(T >= MIDDLE, high, np.where(T >= LOWEST, low, cold))
     return h * GAS_CONSTANT * T, s * GAS_CONSTANT
 

@@ -12,7 +12,7 @@ import numpy as np
 
 from cycle.arrays import Array, Codes, Flags
 from cycle.gas.base import Gas
-from cycle.gas.state import NOT_CONVERGED, State, scatter
+from cycle.gas.state import NOT_CONVERGED, OUT_OF_RANGE, State, scatter
 
 
 @dataclass(frozen=True, slots=True)
@@ -81,21 +81,37 @@ def constant_area(
     """State (N,) behind heat addition at constant area, and whether the line reaches `total_enthalpy` at all.
 
     impulse F Pa, flux G kg/(s m2), total_enthalpy J/kg behind the heat addition, each (N,); supersonic: the branch.
-    False flags mean choked: the state there must not be used. The start of the iteration comes from the parabola, with the
-    sonic state's composition, so that it stays on its branch.
+    False flags mean choked: the state there must not be used. A slow stream has its sonic point far above the range of
+    the data; it passes where a state in range is found, and is flagged out of range where none is.
     """
-    passes = total_enthalpy <= point.total_enthalpy
-    away = np.sqrt(np.maximum(point.total_enthalpy - total_enthalpy, 0.0) / point.curvature)
-    ceiling = impulse / flux**2
-    volume = np.clip(point.volume + np.where(supersonic, away, -away), 0.02 * ceiling, 0.98 * ceiling)
+    beyond = ~point.state.good & ~supersonic
+    passes = (total_enthalpy <= point.total_enthalpy) | beyond
+    live = np.flatnonzero(passes)
     with np.errstate(all="ignore"):
-        pressure = impulse - flux**2 * volume
-        sonic = point.state
-        temperature = np.clip(sonic.temperature * pressure * volume * sonic.density / sonic.pressure, 200.0, 5500.0)
-        start = replace(sonic, temperature=temperature, pressure=pressure, density=1.0 / volume)
-        live = np.flatnonzero(passes)
+        start = _near_sonic(impulse, flux, total_enthalpy, supersonic, point)
+        slow = np.flatnonzero(beyond)
+        if slow.size:
+            start = scatter(start, slow, _near_rest(gas.take(slow), impulse[slow], flux[slow], total_enthalpy[slow]))
         part = gas.take(live).at("momentum", impulse[live], flux[live], total_enthalpy[live], flux[live], start=start.take(live))
         state = scatter(start, live, part)
         mach = flux / state.density / state.sound_speed
     right = np.where(supersonic, mach >= 1.0 - 1e-6, mach <= 1.0 + 1e-6)
+    state = replace(state, range=np.where(beyond & ~(right & state.good), OUT_OF_RANGE, state.range))
     return state.flagged(passes & ~right, NOT_CONVERGED), passes
+
+
+def _near_sonic(impulse: Array, flux: Array, total_enthalpy: Array, supersonic: Flags, point: SonicPoint) -> State:
+    """A start by the parabola, with the sonic state's composition, so that the iteration stays on its branch."""
+    away = np.sqrt(np.maximum(point.total_enthalpy - total_enthalpy, 0.0) / point.curvature)
+    ceiling = impulse / flux**2
+    volume = np.clip(point.volume + np.where(supersonic, away, -away), 0.02 * ceiling, 0.98 * ceiling)
+    pressure, sonic = impulse - flux**2 * volume, point.state
+    temperature = np.clip(sonic.temperature * pressure * volume * sonic.density / sonic.pressure, 200.0, 5500.0)
+    return replace(sonic, temperature=temperature, pressure=pressure, density=1.0 / volume)
+
+
+def _near_rest(gas: Gas, impulse: Array, flux: Array, total_enthalpy: Array) -> State:
+    """A start for a slow stream: at rest, and from there the pressure that its speed leaves."""
+    at_rest = gas.at("hp", total_enthalpy, impulse)
+    pressure = np.maximum(impulse - flux**2 / at_rest.density, 0.7 * impulse)
+    return replace(at_rest, pressure=pressure, density=at_rest.density * pressure / impulse)

@@ -312,7 +312,9 @@ def burner(entering: Stream, setting: Setting) -> Step:
 
 def _room_at_constant_area(entering: Stream, mixed: Mixed, setting: Setting) -> Array:
     flux, impulse = mixed.mass_flow / entering.area, entering.state.pressure + mixed.momentum / entering.area
-    return _room(heating.sonic_point(mixed.gas, impulse, flux, mixed.total_enthalpy), mixed)
+    point = heating.sonic_point(mixed.gas, impulse, flux, mixed.total_enthalpy)
+    # the sonic point of a slow stream can lie beyond the data: far away, wherever it is
+    return np.where(point.state.good | (entering.mach > 1.0), _room(point, mixed), np.inf)
 
 
 def _room_with_loss(entering: Stream, mixed: Mixed, setting: Setting) -> Array:

@@ -38,7 +38,9 @@ class EquilibriumGas(Gas):
     """Atoms free to react, and inert species beside them.
 
     table: the species; basis: (K, N) mol/kg, the reacting atoms as moles of basis species, a shortage of oxygen as a
-    negative amount of O2; inert: (I, N) mol/kg. Condensed carbon is not a species: see `carbon_activity`.
+    negative amount of O2; inert: (I, N) mol/kg. Condensed carbon is not a species: see `carbon_activity`. Between 150 and
+    200 K the heat capacities are held and the composition is that of equilibrium with them: for air, undissociated.
+    The potentials of its states are z of the basis species, `ABSENT` where an element is not there.
     """
 
     def __init__(self, table: SpeciesTable, basis: Array, inert: Array) -> None:

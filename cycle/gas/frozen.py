@@ -38,7 +38,7 @@ class FrozenGas(FixedGas):
 
     @cached_property
     def _factors(self) -> tuple[Array, Array, Array]:
-        """What `temperature_functions` are multiplied by for h / T, s and cp of the mixture, each (17, N)."""
+        """What `temperature_functions` are multiplied by for h / T, s and cp of the mixture, each (20, N)."""
         R, table, moles = GAS_CONSTANT, self.table, self.composition
         h, s, cp = (product(np.ascontiguousarray(rows.T) * R, moles) for rows in (table.h, table.s, table.cp))
         return h, s, cp
@@ -75,7 +75,7 @@ class FrozenGas(FixedGas):
         from cycle.gas.equilibrium import EquilibriumGas
 
         table = self.table
-        basis = table.in_basis.T @ self.composition[: table.reacting]
+        basis = product(table.in_basis.T, self.composition[: table.reacting])
         return EquilibriumGas(table, basis, self.composition[table.reacting :])
 
     def complete(self) -> FrozenGas:

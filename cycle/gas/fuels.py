@@ -55,7 +55,7 @@ class Fuel:
         return mass_of(self.atoms)
 
     def vapour_rows(self) -> Array:
-        """(3, 17) h/RT, s/R, cp/R of the vapour for the species table.
+        """(3, 20) h/RT, s/R, cp/R of the vapour for the species table.
 
         With a held heat capacity the vapour's standard entropy is that of the stored gas where it is known and 0
         otherwise; at a fixed amount of vapour this constant cancels in every entropy difference.

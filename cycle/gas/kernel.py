@@ -19,7 +19,7 @@ import numpy as np
 
 from cycle.arrays import Array
 from cycle.gas.elimination import product
-from cycle.gas.species import LOWEST, WARM_FUNCTIONS, SpeciesTable, temperature_functions
+from cycle.gas.species import HIGHEST, INSIDE_FUNCTIONS, LOWEST, SpeciesTable, temperature_functions
 
 
 @dataclass(frozen=True, eq=False)
@@ -42,7 +42,7 @@ class Thermo:
 class Kernel:
     """nu (reacting, K); nu_and_one (reacting, K+1): the factors of z and m in ln n; weights (K+1, reacting): its
     transpose; formed: the weights of the non-basis species; pairs ((K+1)^2, reacting): n_j times these sums gives the
-    reduced matrix; rows: factors behind `Thermo`, whose fields are its `parts`; warm_rows: the same from 200 K on;
+    reduced matrix; rows: factors behind `Thermo`, whose fields are its `parts`; inside_rows: the same for 200-6000 K;
     formation: the rows of g alone."""
 
     table: SpeciesTable
@@ -54,7 +54,7 @@ class Kernel:
     rows: Array
     formation: Array
     parts: tuple[slice, ...]
-    warm_rows: Array
+    inside_rows: Array
 
     @property
     def basis(self) -> int:
@@ -62,9 +62,10 @@ class Kernel:
         return self.table.basis
 
     def thermo(self, temperature: Array, functions: Array | None = None, out: Array | None = None) -> Thermo:
-        """All of `Thermo` at temperature K (N,); functions (17, N) and out (rows, N) are reused where given."""
+        """All of `Thermo` at temperature K (N,); functions (20, N) and out (rows, N) are reused where given."""
         f = temperature_functions(temperature, functions)
-        rows = self.rows if np.any(temperature < LOWEST) else self.warm_rows
+        outside = np.any((temperature < LOWEST) | (temperature > HIGHEST))
+        rows = self.rows if outside else self.inside_rows
         p = product(rows, f[: rows.shape[1]], out)
         return Thermo(*(p[part] for part in self.parts))
 
@@ -85,6 +86,6 @@ def kernel_of(table: SpeciesTable) -> Kernel:
     pairs = (weights[:, None] * weights[None, :]).reshape((k + 1) ** 2, reacting)
     ends = np.cumsum([0, *[reacting - k] * 3, *[len(base)] * 3])
     parts = tuple(slice(a, b) for a, b in itertools.pairwise(ends))
-    warm = rows[:, :WARM_FUNCTIONS].copy()
+    inside = rows[:, :INSIDE_FUNCTIONS].copy()
     nu_and_one = np.ascontiguousarray(weights.T)
-    return Kernel(table, table.in_basis, nu_and_one, pairs, weights, weights[:, k:].copy(), rows, (h - s).copy(), parts, warm)
+    return Kernel(table, table.in_basis, nu_and_one, pairs, weights, weights[:, k:].copy(), rows, (h - s).copy(), parts, inside)

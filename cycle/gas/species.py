@@ -6,7 +6,8 @@ Two things are done to them here:
 
 * the constants of integration of the upper range are moved (by about 1e-9 of the value, 6e-8 at most) so that h and s are
   continuous at 1000 K: otherwise some states near it have no temperature or two;
-* below 200 K cp is held at its value there.
+* below 200 K and above 6000 K cp is held at its value there, so that an iteration that passes through does not meet
+  what the polynomials do outside their range. A state that ends above 6000 K or below 150 K is out of range all the same.
 """
 
 from __future__ import annotations
@@ -46,10 +47,10 @@ PREFERRED_BASIS = ("H2O", "CO2", "N2", "O2", "H2", "CO")
 """Basis species in order of choice. Stable products keep the reduced matrix regular where the matrix of elements is
 singular: cold and stoichiometric."""
 
-FUNCTIONS, WARM_FUNCTIONS = 17, 14
-"""Number of functions of T, and of those that are not zero from 200 K on."""
+FUNCTIONS, INSIDE_FUNCTIONS = 20, 14
+"""Number of functions of T, and of those that are not zero inside 200-6000 K."""
 
-_LOW, _HIGH, _COLD = slice(0, 7), slice(7, 14), slice(14, 17)
+_LOW, _HIGH, _COLD, _HOT = slice(0, 7), slice(7, 14), slice(14, 17), slice(17, 20)
 _HELD = slice(0, 3)
 
 
@@ -85,8 +86,8 @@ def mass_of(atoms: dict[str, float]) -> float:
 def temperature_functions(temperature: Array, out: Array | None = None) -> Array:
     """The functions of T that the polynomials multiply, each kept only inside its range.
 
-    temperature: K, (N,); returns (17, N): seven for 200-1000 K [1 1/t ln t t t2 t3 t4] with t = T / 1000 K, the same
-    seven from 1000 K on, and [1 1/t ln t] below 200 K, where cp is held.
+    temperature: K, (N,); returns (20, N): seven for 200-1000 K [1 1/t ln t t t2 t3 t4] with t = T / 1000 K, the same
+    seven from 1000 to 6000 K, and [1 1/t ln t] below 200 K and again above 6000 K, where cp is held.
     """
     f = np.empty((FUNCTIONS, temperature.size)) if out is None else out
     t = f[3]
@@ -97,10 +98,11 @@ def temperature_functions(temperature: Array, out: Array | None = None) -> Array
     np.multiply(t, t, out=f[4])
     np.multiply(f[4], t, out=f[5])
     np.multiply(f[4], f[4], out=f[6])
-    hot, cold = temperature >= MIDDLE, temperature < LOWEST
-    np.multiply(f[_LOW], hot, out=f[_HIGH])
+    upper, cold, hot = temperature >= MIDDLE, temperature < LOWEST, temperature > HIGHEST
     np.multiply(f[_HELD], cold, out=f[_COLD])
-    f[_LOW] *= ~(hot | cold)
+    np.multiply(f[_HELD], hot, out=f[_HOT])
+    np.multiply(f[_LOW], upper & ~hot, out=f[_HIGH])
+    f[_LOW] *= ~(upper | cold)
     return f
 
 
@@ -125,7 +127,7 @@ def _range_rows(a: ArrayLike) -> Array:
 
 @cache
 def listed_rows(species: str) -> Array:
-    """(3, 17): h/RT, s/R (1 bar) and cp/R of a listed species as factors of `temperature_functions`. NASA TM-4513."""
+    """(3, 20): h/RT, s/R (1 bar) and cp/R of a listed species as factors of `temperature_functions`. NASA TM-4513."""
     data = species_data()
     entry: dict[str, ArrayLike] = (data["species"] | data["condensed"])[species]  # type: ignore[assignment]
     low, high = _range_rows(entry["low"]), _range_rows(entry["high"])
@@ -133,24 +135,28 @@ def listed_rows(species: str) -> Array:
     h_gap, s_gap, _ = (low - high) @ at_joint
     high[0, 1] += h_gap
     high[1, 0] += s_gap
-    t = LOWEST / 1e3
-    h, s, cp = low @ temperature_functions(np.array([LOWEST]))[_LOW, 0]
-    cold = np.array([[cp, (h - cp) * t, 0.0], [s - cp * np.log(t), 0.0, cp], [cp, 0.0, 0.0]])
-    rows = np.hstack([low, high, cold])
+    rows = np.hstack([low, high, _held(low, LOWEST), _held(high, HIGHEST)])
     rows.flags.writeable = False
     return rows
 
 
+def _held(rows: Array, temperature: float) -> Array:
+    """(3, 3): h/RT, s/R and cp/R as factors of [1 1/t ln t], cp held at its value at this end of a range."""
+    t = temperature / 1e3
+    h, s, cp = rows @ np.array([1.0, 1.0 / t, np.log(t), t, t**2, t**3, t**4])
+    return np.array([[cp, (h - cp) * t, 0.0], [s - cp * np.log(t), 0.0, cp], [cp, 0.0, 0.0]])
+
+
 def held_rows(enthalpy: float, entropy: float, specific_heat: float) -> Array:
-    """(3, 17) of a species with constant cp; all in J/mol (J/(mol K)), enthalpy and entropy at 298.15 K and 1 bar."""
+    """(3, 20) of a species with constant cp; all in J/mol (J/(mol K)), enthalpy and entropy at 298.15 K and 1 bar."""
     h, s, cp = enthalpy / GAS_CONSTANT, entropy / GAS_CONSTANT, specific_heat / GAS_CONSTANT
     a = [cp, 0.0, 0.0, 0.0, 0.0, h - cp * REFERENCE_TEMPERATURE, s - cp * np.log(REFERENCE_TEMPERATURE)]
     rows = _range_rows(a)
-    return np.hstack([rows, rows, rows[:, _HELD]])
+    return np.hstack([rows, rows, rows[:, _HELD], rows[:, _HELD]])
 
 
 def evaluate(rows: Array, temperature: ArrayLike) -> tuple[Array, Array, Array]:
-    """h J/mol, s J/(mol K) at 1 bar, cp J/(mol K) from (3, 17) rows at temperature K of any shape, in that shape."""
+    """h J/mol, s J/(mol K) at 1 bar, cp J/(mol K) from (3, 20) rows at temperature K of any shape, in that shape."""
     T = np.asarray(temperature, dtype=np.float64)
     h, s, cp = GAS_CONSTANT * (rows @ temperature_functions(T.ravel())).reshape(3, *T.shape)
     return h * T, s, cp
@@ -162,7 +168,7 @@ class SpeciesTable:
 
     names (S,); basis: number K of basis species; reacting: number of reacting species, basis included; elements: of all
     species; atoms (S, E); molar_mass kg/mol (S,); in_basis (reacting, K): each reacting species as a sum of basis
-    species with the same atoms; h, s, cp (S, 17): factors of `temperature_functions` for h/RT, s/R at 1 bar, cp/R;
+    species with the same atoms; h, s, cp (S, 20): factors of `temperature_functions` for h/RT, s/R at 1 bar, cp/R;
     fuel: the fuel whose vapour is the last row, inert so that unburnt fuel shares T and p but does not react;
     fuel_in_basis (K,): the atoms of one mole of that fuel as moles of basis species.
     """

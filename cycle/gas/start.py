@@ -61,7 +61,7 @@ class Guess:
         return mixing
 
     def temperature(self, rows: Array, wanted: Callable[[Array], Array]) -> Array:
-        """T at which the frozen mixture has sum n y(T) = wanted(T), y given by `rows` (S, 17); damped above 2500 K
+        """T at which the frozen mixture has sum n y(T) = wanted(T), y given by `rows` (S, 20); damped above 2500 K
         because dissociation takes up the heat."""
         table = self.kernel.table
         slope, value = table.cp[self.rows].T @ self.amounts, rows[self.rows].T @ self.amounts

@@ -231,6 +231,15 @@ def test_beyond_the_data_is_never_good() -> None:
     assert not gas.at("hp", hot.enthalpy + 1e6, 1e5).good.any()
 
 
+def test_far_beyond_the_data_a_state_is_finite_and_flagged() -> None:
+    gas = reacting("hydrogen", np.full(2, 0.7))
+    state = gas.at("tp", np.array([1.3e4, 1.3e4]), 1e5)
+    back = gas.at("hp", state.enthalpy, 1e5)
+    assert np.isfinite(back.sound_speed).all()
+    assert back.temperature == pytest.approx(1.3e4, rel=1e-10)
+    assert set(back.range) == {OUT_OF_RANGE}
+
+
 def test_a_choked_burner_has_no_state() -> None:
     gas = reacting("hydrogen", np.array([1.0]))
     before = gas.at("tp", 1200.0, 1e5)

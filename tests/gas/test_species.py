@@ -65,9 +65,9 @@ def test_polynomials_against_cantera(name: str) -> None:
 
 
 @pytest.mark.parametrize("name", SPECIES)
-@pytest.mark.parametrize("joint", [200.0, 1000.0])
+@pytest.mark.parametrize("joint", [200.0, 1000.0, 6000.0])
 def test_enthalpy_and_entropy_are_continuous(name: str, joint: float) -> None:
-    h, s, _ = evaluate(listed_rows(name), np.array([joint * (1.0 - 1e-12), joint]))
+    h, s, _ = evaluate(listed_rows(name), np.array([joint * (1.0 - 1e-12), joint * (1.0 + 1e-12)]))
     scale = GAS_CONSTANT * joint
     # rounding of terms of order 10-100 RT
     assert abs(h[1] - h[0]) < 1e-10 * (scale + abs(h[0]))
@@ -79,6 +79,13 @@ def test_heat_capacity_is_held_below_200_k() -> None:
     assert cp[0] == pytest.approx(cp[1], rel=1e-12)
     assert h[1] - h[0] == pytest.approx(50.0 * cp[1], rel=1e-10)
     assert s[1] - s[0] == pytest.approx(cp[1] * np.log(200.0 / 150.0), rel=1e-10)
+
+
+@pytest.mark.parametrize("name", SPECIES)
+def test_heat_capacity_is_held_above_6000_k(name: str) -> None:
+    h, _, cp = evaluate(listed_rows(name), np.array([6000.0, 20000.0]))
+    assert cp[1] == pytest.approx(cp[0], rel=1e-12)
+    assert h[1] - h[0] == pytest.approx(14000.0 * cp[0], rel=1e-10)
 
 
 def test_ranges() -> None:

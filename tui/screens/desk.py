@@ -24,13 +24,14 @@ SLOW = 0.5
 """Seconds after which a solve is announced."""
 
 
-def fault_words(error: CaseError) -> tuple[str, ...]:
-    """Faults of an edit in words, without the file's name."""
+def fault_words(error: CaseError, beside: str = "") -> tuple[str, ...]:
+    """Faults of an edit in words, without the file's name, and without the key of the field they stand beside."""
     out = []
     for fault in error.faults:
         parts = [f"given {fault.given}" if fault.given else "", f"allowed {fault.allowed}" if fault.allowed else ""]
         told = "; ".join(p for p in parts if p)
-        out.append(f"{fault.key}: {fault.text}{': ' + told if told else ''}")
+        key = f"{fault.key}: " if fault.key and fault.key != beside else ""
+        out.append(f"{key}{fault.text}{': ' + told if told else ''}")
     return tuple(out)
 
 
@@ -80,7 +81,7 @@ class Desk(Screen[None], inherit_bindings=False):
         try:
             case = session.apply(old, change)
         except CaseError as error:
-            self._refused(fault_words(error))
+            self._refused(fault_words(error, self.session.entry.key if self.session.entry is not None else ""))
             return False
         words = items.describe(old, case, change, self.session.system)
         self.adopt(session.edited(self.session, case, words), {"edit": change}, rapid)
@@ -91,7 +92,7 @@ class Desk(Screen[None], inherit_bindings=False):
         if entry is not None:
             self.put(replace(self.session, entry=replace(entry, fault=" | ".join(faults), fresh=False)))
         else:
-            self.put(replace(self.session, faults=faults))
+            self.put(replace(self.session, faults=(" | ".join(faults),)))
 
     def adopt(self, new: Session, record: dict[str, object], rapid: bool = False) -> None:
         """Take a session whose case changed: journal it, solve it, paint it."""
@@ -99,6 +100,7 @@ class Desk(Screen[None], inherit_bindings=False):
         self.session = new
         if changed:
             self.journal.append(record)
+            self.session = replace(new, note=self.journal.failure or new.note)
             self.solve()
         self._rapid = rapid and changed
         if self._rapid:

@@ -8,6 +8,8 @@ import time
 from dataclasses import dataclass, replace
 from typing import TYPE_CHECKING, Any
 
+from rich.text import Text
+
 from cycle.errors import CaseError, FileChanged
 from tui import items, journal, session
 from tui.engine import Result
@@ -240,7 +242,7 @@ class Filing(Desk, inherit_bindings=False):
             self.app.push_screen(page, lambda name: self.app.exit(return_code=0) if name == "leave" else None)
         elif self.session.unsaved:
             name = self.session.path or "without a name"
-            self.app.exit(return_code=0, message=f"Work is kept: the unsaved edits of {clean(name)} are offered next time.")
+            self.app.exit(return_code=0, message=Text(f"Work is kept: the unsaved edits of {clean(name)} are offered next time."))
         else:
             self.journal.remove()
             self.app.exit(return_code=0)

@@ -28,9 +28,16 @@ def lines(session: Session, columns: int, height: int) -> list[Line]:
     if session.case is None:
         return [line((fit(clean(f"ductwalk  {os.path.basename(session.path) or 'new case'}"), columns), BOLD))]
     body = [_title(session, columns), *_figures(session, columns), _limits(session, columns)]
-    if height < len(body) + 1:
-        return [body[i] for i in (1, 3, 0, 2)[:height]] if height < 4 else body
-    return [*body, line(("-" * columns, DIM))]
+    if height < 4:
+        return [body[i] for i in (1, -1, 0, 2)[:height]]
+    if session.failed or height < 5:
+        return body[:height]
+    words = "" if _rig(session) else fit(" uninstalled; spill drag not assessed --", columns)
+    return [*body, line((words.rjust(columns, "-"), DIM))]
+
+
+def _rig(session: Session) -> bool:
+    return session.case is not None and session.case.choices.get("start") == "entry"
 
 
 def _title(session: Session, columns: int) -> Line:
@@ -63,7 +70,8 @@ def _figures(session: Session, columns: int) -> list[Line]:
         return [line("first walk not solved yet"), line("")]
     if not found.solved:
         words = wrap(clean(f"NO SOLUTION: {found.reason or found.status}").split(), columns)
-        return [line((w, OVER)) for w in words[:2]] + [line("")] * (2 - len(words[:2]))
+        words = [*words[:2], fit(" ".join(words[2:]), columns)]
+        return [line((w, OVER)) for w in words]
     return [_headline(session, found, columns), _against(session, columns)]
 
 
@@ -94,11 +102,9 @@ def _figure(session: Session, found: Figures, key: str, digits: int, by_name: bo
 
 
 def _against(session: Session, columns: int) -> Line:
-    pin, found = session.pin, session.figures
-    assert found is not None
+    pin = session.pin
     left = f"vs pin: {clean(pin.label)}" if pin is not None else "nothing pinned"
-    rig = session.case is not None and session.case.choices.get("start") == "entry"
-    right = f"{'' if rig else 'uninstalled; spill drag not assessed'}   {session.system.upper()}".strip()
+    right = f"referee {clean(session.referee) or 'not asked'}   {session.system.upper()}"
     left = fit(left, max(columns - len(right) - 2, 10))
     return line(left, " " * max(2, columns - width(left) - len(right)), right)
 
@@ -124,18 +130,16 @@ def _named(found: Figures, state: str, counted: bool) -> str:
 
 
 def _limits(session: Session, columns: int) -> Line:
-    """Over, near and not assessed limits in words, the audit, the referee: the fullest form that fits the width."""
+    """Over, near and not assessed limits in words and the audit: the fullest form that fits the width."""
     found = session.figures
     if found is None or not found.audit:
         return line("limits and audit not assessed yet")
     states = [m.state for m in found.limits]
     overs = [_over(found, session.system, True), _over(found, session.system, False), f"OVER {states.count('over')}"]
-    asked = clean(session.referee) or "not asked"
     forms = []
-    for over, near, unknown in ((0, False, False), (1, False, False), (0, False, True), (1, False, True), (1, True, True), (2, True, True)):
+    for over, near, unknown in ((0, False, False), (0, False, True), (1, False, True), (0, True, True), (1, True, True), (2, True, True)):
         parts = [overs[over], _named(found, "near", near), _named(found, "not assessed", unknown), audit_words(found)]
-        said = "asked" if unknown and session.referee else asked
-        forms.append(" | ".join([*parts, f"referee {said}"]))
+        forms.append(" | ".join(parts))
     words = next((form for form in forms if width(form) <= columns), forms[-1])
     style = OVER if "over" in states or not found.audit_ok else NEAR if "near" in states else PLAIN
     return line((fit(clean(words), columns), style))

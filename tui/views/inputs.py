@@ -86,9 +86,11 @@ def entry_label(item: Item, entry: Entry) -> str:
 
 
 def answer(session: Session, wide: int, height: int) -> list[Line]:
-    """What the program says: a fault, a note, else the meaning of the input or of the row in hand."""
+    """What the program says: a fault (the line of keys goes on with it), a note, else the meaning of the input or row."""
     words, style = _words(session)
     parts = wrap(clean(words).split(), wide)
+    if session.entry is not None and session.entry.fault:
+        parts = parts[:1]
     if len(parts) > height > 0:
         parts = [*parts[: height - 1], fit(" ".join(parts[height - 1 :]), wide)]
     return [line((part, style)) for part in parts[:height]]
@@ -124,6 +126,8 @@ def _input_words(session: Session) -> str:
 
 def keys(session: Session, wide: int, height: int) -> list[Line]:
     """The line of keys; inside a field, what closes it."""
+    if session.entry is not None and len(rest := wrap(clean(session.entry.fault).split(), wide)) > 1:
+        return [line((fit(" ".join(rest[1:]), wide), OVER))]
     if session.entry is not None:
         unit = f"; a bare number is in {session.entry.unit}" if session.entry.unit else ""
         return [line((fit(f"Enter commits  Escape leaves it as it was{unit}", wide), DIM))]

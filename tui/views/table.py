@@ -40,15 +40,16 @@ def label(key: str, system: str) -> str:
     return f"{name}, {dimension}" if dimension else name
 
 
-def passage_at(found: Figures | None, station: str) -> Passage | None:
-    """The process that ends at a station."""
-    return next((p for p in reversed(found.passages) if p.end == station), None) if found is not None else None
+def passages_at(found: Figures | None, station: str) -> list[Passage]:
+    """Processes that end at a station, the one that came from another station first."""
+    ending = [p for p in found.passages if p.end == station] if found is not None else []
+    return sorted(ending, key=lambda p: p.start == p.end)
 
 
 def _reached(session: Session, station: str) -> str:
-    passage = passage_at(session.figures, station) or passage_at(session.good, station)
-    if passage is not None:
-        return clean(passage.label)
+    ending = passages_at(session.figures, station) or passages_at(session.good, station)
+    if ending:
+        return clean(ending[0].label)
     first = station == columns(session)[0]
     rig = session.case is not None and session.case.choices.get("start") == "entry"
     return ("entry" if rig else "flight") if first and session.case is not None else ""
@@ -129,11 +130,18 @@ def _cell(session: Session, key: str, station: str) -> Piece:
     found = session.figures
     if found is None:
         return "", PLAIN
-    value = found.at(station, key)
+    value = settled(found, station, key)
     if station not in found.stations and session.failed and session.good is not None:
         stale = figure(key, session.good.at(station, key), session.system)
         return (f"({stale})" if stale != "-" else "-"), DIM
     return _viewed(session, key, station, value), PLAIN
+
+
+def settled(found: Figures, station: str, key: str) -> float:
+    """A figure of a station, zero where it is round-off beside those of the other stations."""
+    value = found.at(station, key)
+    scale = max((abs(v) for s in found.stations if (v := found.at(s, key)) == v), default=0.0)
+    return 0.0 if abs(value) < 1e-9 * scale else value
 
 
 def _viewed(session: Session, key: str, station: str, value: float) -> str:
@@ -146,20 +154,24 @@ def _viewed(session: Session, key: str, station: str, value: float) -> str:
 def process_line(session: Session, wide: int, height: int) -> list[Line]:
     """One line on the process that led to the station in hand: what it cost."""
     found = session.figures
-    passage = passage_at(found, session.station)
+    ending = passages_at(found, session.station)
     if found is None:
         return [line(("-" * wide, DIM))]
-    if passage is None:
+    if not ending:
         lost = session.failed and session.station not in found.stations
-        words = "not reached by these inputs; figures in ( ) as of the previous inputs" if lost else "the stream as it arrives"
+        stale = "; figures in ( ) as of the previous inputs" if session.good is not None else ""
+        words = f"not reached by these inputs{stale}" if lost else "the stream as it arrives"
         return [line((fit(words, wide), DIM))]
-    head = f"{passage.start} to {passage.end}, {clean(passage.label)}: "
-    return [line(fit(head + wrap(_costs(passage, session.system), wide - len(head), " | ")[0], wide))]
+    first, *others = ending
+    costs = _costs(first, session.system)
+    parts = [*costs[:2], *(f"{clean(p.label)} {_costs(p, session.system)[0]}" for p in others), *costs[2:]]
+    head = f"{first.start} to {first.end}, {clean(first.label)}: "
+    return [line(fit(head + wrap(parts, wide - len(head), " | ")[0], wide))]
 
 
 COSTS = (
-    ("total_pressure_ratio", "pt ratio", "ratio", ""),
     ("thrust_potential_change", "potential", "force", "+"),
+    ("total_pressure_ratio", "pt ratio", "ratio", ""),
     ("entropy_rise", "entropy", "specific heat", "+"),
     ("temperature_ratio", "T ratio", "ratio", ""),
     ("choking_margin", "to choking", "ratio", "+"),
