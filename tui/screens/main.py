@@ -80,6 +80,10 @@ class MainScreen(Editing, Filing, inherit_bindings=False):
         for panel in self.query(Panel):
             panel.render_session(self.session)
 
+    def on_resize(self) -> None:
+        """Send everything: a terminal that shrank and grew again has lost what it cut, and its size tells nothing."""
+        self.refresh()
+
     def on_panel_resized(self) -> None:
         """A panel has a new size."""
         self.paint()

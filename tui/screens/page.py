@@ -53,8 +53,9 @@ class Page(Screen[str]):
         yield self._sheet
 
     def on_resize(self) -> None:
-        """Paint for the new size."""
+        """Paint for the new size, all of it: the terminal may have cut what stands there."""
         self._paint(self.app.size)
+        self.refresh()
 
     def _paint(self, size: Size) -> None:
         """Title, as much of the text as fits, the answers, the keys."""

@@ -33,8 +33,9 @@ class Prompt(Screen[str]):
         yield self._sheet
 
     def on_resize(self) -> None:
-        """Paint for the new size."""
+        """Paint for the new size, all of it: the terminal may have cut what stands there."""
         self._paint(self.app.size)
+        self.refresh()
 
     def _paint(self, size: Size) -> None:
         """The question, the field, what went wrong, the keys."""
