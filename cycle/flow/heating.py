@@ -101,13 +101,19 @@ def constant_area(
 
 
 def _near_sonic(impulse: Array, flux: Array, total_enthalpy: Array, supersonic: Flags, point: SonicPoint) -> State:
-    """A start by the parabola, with the sonic state's composition, so that the iteration stays on its branch."""
-    away = np.sqrt(np.maximum(point.total_enthalpy - total_enthalpy, 0.0) / point.curvature)
-    ceiling = impulse / flux**2
-    volume = np.clip(point.volume + np.where(supersonic, away, -away), 0.02 * ceiling, 0.98 * ceiling)
-    pressure, sonic = impulse - flux**2 * volume, point.state
-    temperature = np.clip(sonic.temperature * pressure * volume * sonic.density / sonic.pressure, 200.0, 5500.0)
-    return replace(sonic, temperature=temperature, pressure=pressure, density=1.0 / volume)
+    """A start by the parabola, with the sonic state's composition, so that the iteration stays on its branch.
+
+    Far from Mach 1 the parabola is too crude for p: T from the energy balance and v from the impulse, twice.
+    """
+    sonic, sign = point.state, np.where(supersonic, 1.0, -1.0)
+    volume = point.volume + sign * np.sqrt(np.maximum(point.total_enthalpy - total_enthalpy, 0.0) / point.curvature)
+    gas_constant = sonic.pressure / (sonic.density * sonic.temperature)
+    for _ in range(2):
+        energy = total_enthalpy - 0.5 * (flux * volume) ** 2 - sonic.enthalpy
+        temperature = np.clip(sonic.temperature + energy / sonic.specific_heat, 300.0, 5000.0)
+        root = np.sqrt(np.maximum(impulse**2 - 4.0 * flux**2 * gas_constant * temperature, 0.0))
+        volume = (impulse + sign * root) / (2.0 * flux**2)
+    return replace(sonic, temperature=temperature, pressure=impulse - flux**2 * volume, density=1.0 / volume)
 
 
 def _near_rest(gas: Gas, impulse: Array, flux: Array, total_enthalpy: Array) -> State:

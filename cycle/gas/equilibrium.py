@@ -24,6 +24,9 @@ if TYPE_CHECKING:
 
 TRACE = 1e-300
 
+CARRY_T, CARRY_P = 0.4, 3.0
+"""Largest steps of ln T and ln p over which a start is carried by its slopes."""
+
 
 @dataclass(frozen=True, eq=False)
 class Solution:
@@ -174,21 +177,22 @@ class FirstGuess:
         return Columns(unknowns, np.vstack([basis, inert, mixing, absent(self.kernel, basis), targets]))
 
     def _warm(self, points: slice, T: Array, ln_p: Array) -> tuple[Array, Array, Array, Flags] | None:
-        """z, m, ln n that are in equilibrium at T and p with the potentials of the start, at its mole fractions of the
-        basis, and where they serve: not where an element has appeared or gone. None without potentials."""
+        """z, m, ln n of the start, carried to T and p by its own slopes, and where they serve: not where an element has
+        appeared or gone. None without potentials."""
         if self.start is None or self.start.potentials is None:
             return None
-        kernel, z = self.kernel, self.start.potentials[:, points]
-        moles = self.start.moles[:, points]
-        ln_total = np.log(moles.sum(0))
+        kernel, held = self.kernel, self.start.potentials[:, points]
+        k = kernel.basis
+        z, by_T, by_p, ln_T0, ln_p0 = held[:k], held[k : 2 * k], held[2 * k : 3 * k], held[3 * k], held[3 * k + 1]
+        d_T = np.clip(np.log(T) - ln_T0, -CARRY_T, CARRY_T)
+        d_p = np.clip(ln_p - ln_p0, -CARRY_P, CARRY_P)
         gone = absent(kernel, self.gas.basis[:, points])
-        serves: Flags = (gone == (z < 0.5 * ABSENT)).all(0) & np.isfinite(z).all(0)
-        major = moles[: kernel.basis].argmax(0)
-        at_major = (major, np.arange(major.size))
-        z = z + (ln_p + np.log(moles[at_major]) - ln_total - z[at_major])
-        m = ln_total - ln_p
+        serves: Flags = (gone == (z < 0.5 * ABSENT)).all(0) & np.isfinite(held).all(0)
+        ln_total = np.log(self.start.moles[:, points].sum(0))
+        m = ln_total - ln_p0 + (self.start.volume_by_temperature[points] - 1.0) * d_T + self.start.volume_by_pressure[points] * d_p
+        z = z + by_T * d_T + by_p * d_p
         ln_n = product(kernel.nu, z) + m
-        ln_n[kernel.basis :] -= kernel.formation_energy(T)
+        ln_n[k:] -= kernel.formation_energy(T)
         return z, m, np.minimum(ln_n, ln_total), serves
 
 
@@ -225,5 +229,6 @@ def _properties(table: SpeciesTable, unknowns: Array, basis: Array, inert: Array
     gas_constant = total * R
     return (
         T, p, p / (total * RT), h * RT, s * R, np.sqrt(exponent * gas_constant * T), exponent,
-        cp_frozen / (cp_frozen - total), cp * R, 1.0 / total, v_T, v_p, np.concatenate([n, inert]), z,
+        cp_frozen / (cp_frozen - total), cp * R, 1.0 / total, v_T, v_p, np.concatenate([n, inert]),
+        np.concatenate([z, response[:k, 0], response[:k, 1], ln_T[None], ln_p[None]]),
     )  # fmt: skip
