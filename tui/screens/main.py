@@ -82,7 +82,7 @@ class MainScreen(Editing, Filing, inherit_bindings=False):
 
     def on_resize(self) -> None:
         """Send everything: a terminal that shrank and grew again has lost what it cut, and its size tells nothing."""
-        pass
+        self.refresh()
 
     def on_panel_resized(self) -> None:
         """A panel has a new size."""
