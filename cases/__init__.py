@@ -1,0 +1,1 @@
+"""Invented cases, shipped with the program."""

@@ -163,10 +163,10 @@ def solve(case: Case) -> Figures:
 def referee(figures: Figures) -> str:
     """The referee's words on a walk. Slow; call it in the worker thread.
 
-    Returns: one line: the largest disagreement, or why there is none to tell.
+    Returns: one line that begins with the verdict, a colon behind it where more follows.
     """
     opinion = figures.walk.referee()
-    return str(opinion.words) if opinion else "has no say at constant gamma"
+    return str(opinion.words) if opinion else "referee has no say at constant gamma"
 
 
 Present = Callable[[Figures], float]

@@ -75,6 +75,8 @@ def mach_from_angle(nu: ArrayLike, gamma: ArrayLike) -> Array:
     near_sonic = np.cbrt(3.0 * target / (1.0 - spread**-2)) / spread
     upper = np.full(target.shape, 0.5 * np.pi)
     x = newton(residual, np.zeros(target.shape), upper, np.arctan(near_sonic))
+    # so small an angle is lost to rounding inside the steps; its leading term is exact
+    x = np.where((target >= 0.0) & (target < 1e-18), np.arctan(near_sonic), x)
     return np.sqrt(1.0 + (spread * np.tan(x)) ** 2)
 
 

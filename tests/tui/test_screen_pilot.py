@@ -446,3 +446,36 @@ async def test_a_defect_of_the_model_is_raised_not_hidden(path: Path, monkeypatc
     with pytest.raises(ZeroDivisionError, match="made by the test"):
         async with opened(path) as driver:
             await driver.until(lambda: not driver.app.is_running)
+
+
+async def test_the_referee_is_asked_by_a_key_and_forgotten_with_the_next_edit(tmp_path: Path, state: Path) -> None:
+    path = tmp_path / "saltmarsh.toml"
+    path.write_bytes((CASES / "saltmarsh.toml").read_bytes())
+    async with opened(path) as driver:
+        await driver.settled()
+        assert "referee not asked" in driver.screen()
+        await driver.press("r")
+        await driver.until(lambda: "agrees" in driver.session.referee)
+        assert "agrees" in driver.screen().splitlines()[2]
+        await to_input(driver, "flight.mach")
+        await driver.press("plus")
+        await driver.settled()
+        await driver.until(lambda: "referee not asked" in driver.screen())
+
+
+async def test_edits_that_cannot_be_kept_on_disk_are_said_and_not_lost_unasked(
+    path: Path, tmp_path: Path, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    (tmp_path / "file").write_text("")
+    monkeypatch.setenv("XDG_STATE_HOME", str(tmp_path / "file"))
+    async with opened(path) as driver:
+        await driver.settled()
+        await to_input(driver, "flight.mach")
+        await driver.press("plus")
+        await driver.settled()
+        await driver.until(lambda: "edits are not kept on disk" in driver.screen())
+        await driver.press("q")
+        await driver.until(lambda: "leave and lose them" in driver.screen())
+        await driver.press("s")
+        await driver.until(lambda: isinstance(driver.app.screen, MainScreen))
+        assert driver.session.unsaved

@@ -101,7 +101,7 @@ class MainScreen(Editing, Filing, inherit_bindings=False):
     def refereed(self, result: Result) -> None:
         """The referee's words came back."""
         if result.generation == self.session.generation:
-            self.put(replace(self.session, referee=result.value, note=f"referee: {result.value}"))
+            self.put(replace(self.session, referee=result.value, note=result.value))
 
     def action_do(self, name: str) -> None:
         """Run an action of `tui.actions`."""
@@ -194,7 +194,7 @@ class MainScreen(Editing, Filing, inherit_bindings=False):
             self.put(replace(self.session, note="no solved walk of these inputs to referee"))
             return
         self.engine.do("referee", self.session.generation, lambda: figures.referee(found))
-        self.put(replace(self.session, referee="asked ...", note="referee asked ..."))
+        self.put(replace(self.session, referee="referee asked ...", note=""))
 
     def do_why(self) -> None:
         """The page of limits, audit and accounts."""

@@ -57,7 +57,7 @@ def limits(session: Session) -> Body:
 
 def _accounts(found: Figures, session: Session) -> list[str]:
     out = ["", f"audit {'ok' if found.audit_ok else 'FAILED'}: {found.audit}"]
-    out.append(f"referee: {clean(session.referee) or 'not asked; r asks'}")
+    out.append(clean(session.referee) or "referee not asked; r asks")
     if found.reason:
         out += ["", f"no solution: {found.reason}"]
     if found.potentials:

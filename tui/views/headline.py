@@ -104,7 +104,8 @@ def _figure(session: Session, found: Figures, key: str, digits: int, by_name: bo
 def _against(session: Session, columns: int) -> Line:
     pin = session.pin
     left = f"vs pin: {clean(pin.label)}" if pin is not None else "nothing pinned"
-    right = f"referee {clean(session.referee) or 'not asked'}   {session.system.upper()}"
+    verdict = clean(session.referee.split(":")[0]) or "referee not asked"
+    right = f"{verdict}   {session.system.upper()}"
     left = fit(left, max(columns - len(right) - 2, 10))
     return line(left, " " * max(2, columns - width(left) - len(right)), right)
 
