@@ -147,7 +147,7 @@ def settled(found: Figures, station: str, key: str) -> float:
 def _viewed(session: Session, key: str, station: str, value: float) -> str:
     if session.view == 0 or session.failed:
         return figure(key, value, session.system)
-    base = session.pin.figures.at(station, key) if session.pin is not None else NAN
+    base = settled(session.pin.figures, station, key) if session.pin is not None else NAN
     return difference(key, value, base, session.system) if session.view == 1 else percent(value, base)
 
 
