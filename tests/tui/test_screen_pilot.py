@@ -1,28 +1,20 @@
-"""The interactive screen by Textual's pilot: edits, faults, undo, stale results, units, ways, pin, save, journal."""
+"""The interactive screen by Textual's pilot: walking, edits, faults, undo, stale results, units, ways, pin, referee."""
 
 from __future__ import annotations
 
 import threading
-from collections.abc import AsyncIterator, Iterable
-from contextlib import asynccontextmanager
 from pathlib import Path
 
 import pytest
-from textual.pilot import Pilot
 
 import cycle
 from cycle.case import Case, template
-from tests.tui.test_screen_parts import TEXT, left_by_another
-from tui import figures
-from tui.app import DuctwalkApp
+from tests.tui.screen_support import CASES, opened, to_input
+from tests.tui.test_screen_parts import TEXT
+from tui import figures, items
 from tui.figures import Figures
 from tui.screens.main import MainScreen
 from tui.screens.page import Page
-from tui.screens.prompt import Prompt
-from tui.session import Session
-from tui.widgets.sheet import Sheet
-
-CASES = Path(__file__).resolve().parents[2] / "cases"
 
 
 @pytest.fixture
@@ -36,66 +28,6 @@ def path(tmp_path: Path, state: Path) -> Path:
     file = tmp_path / "case.toml"
     file.write_text(TEXT)
     return file
-
-
-class Driver:
-    """A pilot that waits for the worker."""
-
-    def __init__(self, app: DuctwalkApp, pilot: Pilot[None]) -> None:
-        assert app.main is not None
-        self.app, self.pilot, self.main = app, pilot, app.main
-
-    @property
-    def session(self) -> Session:
-        return self.main.session
-
-    async def until(self, test: object) -> None:
-        """Wait until `test()` holds."""
-        assert callable(test)
-        for _ in range(800):
-            await self.pilot.pause(0.005)
-            if test():
-                return
-        raise AssertionError(f"never came: {self.screen()}")
-
-    async def settled(self) -> Figures:
-        await self.until(lambda: self.session.settled and self.session.figures.assessed)
-        assert self.session.figures is not None
-        return self.session.figures
-
-    async def press(self, *keys: str) -> None:
-        await self.pilot.press(*keys)
-        await self.pilot.pause()
-
-    async def type(self, text: str) -> None:
-        await self.press(*(NAMES.get(c, c) for c in text))
-
-    def screen(self) -> str:
-        """What is painted, as lines of text."""
-        sheets: Iterable[Sheet] = self.app.screen.query(Sheet)
-        return "\n".join("".join(c for c, _ in row) for sheet in sheets for row in sheet._rows)
-
-
-NAMES = {" ": "space", ".": "full_stop", "/": "slash", "+": "plus", "-": "minus", "_": "underscore"}
-
-
-@asynccontextmanager
-async def opened(path: Path | str, size: tuple[int, int] = (80, 24)) -> AsyncIterator[Driver]:
-    app = DuctwalkApp(str(path))
-    async with app.run_test(size=size) as pilot:
-        yield Driver(app, pilot)
-
-
-async def to_input(driver: Driver, key: str) -> None:
-    """Bring an input of the station in hand to hand by the arrow keys."""
-    if driver.session.focus == "table":
-        await driver.press("tab")
-    for _ in range(30):
-        hand = driver.main._hand()
-        if hand is not None and hand.key == key:
-            return
-        await driver.press("down")
-    raise AssertionError(f"{key} is not at station {driver.session.station}")
 
 
 async def test_opens_and_walks_the_stations_with_their_inputs(path: Path) -> None:
@@ -283,6 +215,18 @@ async def test_choices_cycle_and_defaults_come_back(path: Path) -> None:
         await driver.settled()
 
 
+async def test_inputs_out_of_sight_are_marked_and_scrolled_to(path: Path) -> None:
+    async with opened(path) as driver:
+        await driver.settled()
+        rows = driver.screen().splitlines()
+        assert rows[21].endswith("v")  # the last line of inputs; a constant-gamma case has more than ten at the first station
+        assert not rows[17].endswith("^")
+        await to_input(driver, items.items(driver.session)[-1].key)
+        rows = driver.screen().splitlines()
+        assert rows[17].endswith("^")
+        assert items.items(driver.session)[-1].label[:20] in driver.screen()
+
+
 async def test_views_of_the_cells(path: Path) -> None:
     async with opened(path) as driver:
         await driver.settled()
@@ -296,81 +240,6 @@ async def test_views_of_the_cells(path: Path) -> None:
         await driver.settled()
         mach = next(row for row in driver.screen().splitlines() if row.startswith("Mach "))
         assert mach.split()[1] == "+0"
-
-
-async def test_save_keeps_comments_and_removes_the_journal(path: Path, state: Path) -> None:
-    path.write_text(TEXT.replace("mach = 6.0", "mach = 6.0   # first guess"))
-    async with opened(path) as driver:
-        await driver.settled()
-        await to_input(driver, "flight.mach")
-        await driver.press("plus")
-        assert len(list(state.glob("*.journal"))) == 1
-        await driver.until(lambda: " *" in driver.screen())
-        await driver.press("s")
-        await driver.until(lambda: not driver.session.unsaved)
-        assert "saved" in driver.screen()
-        assert list(state.glob("*.journal")) == []
-    text = path.read_text()
-    assert "# first guess" in text
-    assert cycle.load(str(path)).value("flight.mach") == pytest.approx(6.1, rel=1e-12)
-
-
-async def test_a_file_changed_by_another_is_not_overwritten(path: Path, tmp_path: Path) -> None:
-    async with opened(path) as driver:
-        await driver.settled()
-        await to_input(driver, "flight.mach")
-        await driver.press("plus")
-        path.write_text(TEXT.replace("0.005", "0.0051"))
-        await driver.press("s")
-        await driver.until(lambda: isinstance(driver.app.screen, Page))
-        await driver.until(lambda: "show the difference" in driver.screen())
-        await driver.press("d")
-        await driver.until(lambda: "+mach = 6.1" in driver.screen())
-        await driver.press("escape")
-        await driver.until(lambda: "show the difference" in driver.screen())
-        await driver.press("o")
-        await driver.until(lambda: isinstance(driver.app.screen, Prompt))
-        await driver.press("ctrl+u")
-        await driver.type(str(tmp_path / "other.toml"))
-        await driver.press("enter")
-        await driver.until(lambda: not driver.session.unsaved)
-    assert "0.0051" in path.read_text()
-    assert cycle.load(str(tmp_path / "other.toml")).value("flight.mach") == pytest.approx(6.1, rel=1e-12)
-
-
-async def test_left_work_is_offered_and_restored_with_its_undo_list(path: Path, state: Path) -> None:
-    edits = [{"edit": {"set": {"flight.mach": 7.0}}}, {"edit": {"set": {"flight.mach": 8.0}}}, {"undo": 1}]
-    left_by_another(state, str(path), *edits, {"edit": {"set": {"inlet.gone": 1.0}}})
-    async with opened(path) as driver:
-        await driver.until(lambda: isinstance(driver.app.screen, Page))
-        await driver.until(lambda: "left 4 edits" in driver.screen())
-        await driver.press("r")
-        await driver.until(lambda: driver.session.case.value("flight.mach") == 7.0)
-        found = await driver.settled()
-        assert found.at("0", "mach") == pytest.approx(7.0, rel=1e-9)
-        assert "restored 3 edits, 1 no longer hold" in driver.screen()
-        assert driver.session.pin.figures.at("0", "mach") == pytest.approx(6.0, rel=1e-9)
-        await driver.press("U")
-        assert driver.session.case.value("flight.mach") == 8.0
-
-
-async def test_left_work_can_be_discarded(path: Path, state: Path) -> None:
-    file = left_by_another(state, str(path), {"edit": {"set": {"flight.mach": 7.0}}})
-    async with opened(path) as driver:
-        await driver.until(lambda: "left 1 edits" in driver.screen())
-        await driver.press("d")
-        await driver.settled()
-        assert driver.session.case.value("flight.mach") == 6.0
-    assert not file.exists()
-
-
-async def test_a_file_that_is_no_case_says_why_and_is_read_again_on_enter(path: Path) -> None:
-    path.write_text(TEXT.replace("mach = 6.0", "mach = -6.0"))
-    async with opened(path) as driver:
-        await driver.until(lambda: "flight.mach" in driver.screen())
-        path.write_text(TEXT)
-        await driver.press("enter")
-        assert (await driver.settled()).solved
 
 
 @pytest.mark.parametrize("size", [(20, 5), (40, 12), (79, 23), (120, 40), (200, 60), (3, 2)])
@@ -414,18 +283,6 @@ async def test_a_rig_shows_its_own_headline_and_stations(tmp_path: Path, state: 
         assert "entry Mach number" in driver.screen()
 
 
-async def test_without_a_path_it_opens_a_new_case_and_asks_for_a_name(tmp_path: Path, state: Path) -> None:
-    async with opened("") as driver:
-        assert (await driver.settled()).solved
-        await driver.press("s")
-        await driver.until(lambda: isinstance(driver.app.screen, Prompt))
-        await driver.press("ctrl+u")
-        await driver.type(str(tmp_path / "new.toml"))
-        await driver.press("enter")
-        await driver.until(lambda: "saved" in driver.session.note)
-    assert cycle.load(str(tmp_path / "new.toml")) is not None
-
-
 @pytest.mark.parametrize("name", sorted(p.name for p in CASES.glob("*.toml")))
 async def test_every_shipped_case_opens_and_walks(name: str, tmp_path: Path, state: Path) -> None:
     path = tmp_path / name
@@ -461,21 +318,3 @@ async def test_the_referee_is_asked_by_a_key_and_forgotten_with_the_next_edit(tm
         await driver.press("plus")
         await driver.settled()
         await driver.until(lambda: "referee not asked" in driver.screen())
-
-
-async def test_edits_that_cannot_be_kept_on_disk_are_said_and_not_lost_unasked(
-    path: Path, tmp_path: Path, monkeypatch: pytest.MonkeyPatch
-) -> None:
-    (tmp_path / "file").write_text("")
-    monkeypatch.setenv("XDG_STATE_HOME", str(tmp_path / "file"))
-    async with opened(path) as driver:
-        await driver.settled()
-        await to_input(driver, "flight.mach")
-        await driver.press("plus")
-        await driver.settled()
-        await driver.until(lambda: "edits are not kept on disk" in driver.screen())
-        await driver.press("q")
-        await driver.until(lambda: "leave and lose them" in driver.screen())
-        await driver.press("s")
-        await driver.until(lambda: isinstance(driver.app.screen, MainScreen))
-        assert driver.session.unsaved

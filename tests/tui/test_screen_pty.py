@@ -195,7 +195,7 @@ def test_work_is_offered_after_a_kill(path: Path, env: dict[str, str]) -> None:
     with Terminal([str(path)], env=env) as terminal:
         terminal.wait("Unsaved work found")
         terminal.press("r")
-        terminal.wait("restored 1 edits")
+        terminal.wait("restored 1 edit;")
         terminal.wait("M 6.5")
         terminal.press("q")
         assert terminal.status() == 0

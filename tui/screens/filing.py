@@ -101,6 +101,10 @@ def difference_body(changed: FileChanged) -> list[Line]:
     return [line((clean(row), OVER if row.startswith("-") else PLAIN)) for row in rows]
 
 
+def _counted(edits: int) -> str:
+    return f"{edits} edit{'' if edits == 1 else 's'}"
+
+
 class Filing(Desk, inherit_bindings=False):
     """Handlers of the file actions and of what the worker tells about files."""
 
@@ -128,7 +132,7 @@ class Filing(Desk, inherit_bindings=False):
 
     def _offer(self, left: Left) -> None:
         when = time.strftime("%Y-%m-%d %H:%M", time.localtime(left.written))
-        told = [f"A session that ended on {when} left {len(left.records)} edits of this case that were not saved."]
+        told = [f"A session that ended on {when} left {_counted(len(left.records))} of this case, not saved."]
         if not left.same_file:
             told.append("The case file has changed since; the edits would be made on the file as it is now.")
         answers = (
@@ -158,7 +162,7 @@ class Filing(Desk, inherit_bindings=False):
         if not got.refused and not self.journal.failure:
             journal.discard(got.left)
         refused = f", {got.refused} no longer hold (their journal is kept)" if got.refused else ""
-        note = f"restored {len(got.records)} edits{refused}; u takes them back"
+        note = f"restored {_counted(len(got.records))}{refused}; u takes them back"
         self.put(replace(got.session, note=note, figures=self.session.figures, good=self.session.good, pin=self.session.pin))
         self.solve()
 
@@ -171,11 +175,8 @@ class Filing(Desk, inherit_bindings=False):
 
     def do_save_as(self) -> None:
         """Ask for a name and save there; an existing file is never overwritten."""
-        self._ask_name("")
-
-    def _ask_name(self, fault: str) -> None:
         start = self.session.path or "case.toml"
-        self.app.push_screen(Prompt("Save the case as (name of a new file)", start, fault), self._named)
+        self.app.push_screen(Prompt("Save the case as (name of a new file)", start), self._named)
 
     def _named(self, name: str | None) -> None:
         if not name:
@@ -212,7 +213,7 @@ class Filing(Desk, inherit_bindings=False):
             self.do_leave()
 
     def _other(self, changed: FileChanged) -> None:
-        told = [f"{changed.path} was written by another session or editor since it was read. It is not overwritten."]
+        told = [f"{changed.path} is not the file that this session read: another session or editor wrote it. It is not overwritten."]
         answers = (
             Answer("o", "other", "save under another name"),
             Answer("d", "difference", "show the difference"),
@@ -223,7 +224,7 @@ class Filing(Desk, inherit_bindings=False):
 
     def _chosen(self, changed: FileChanged, name: str) -> None:
         if name == "other":
-            self._ask_name("")
+            self.do_save_as()
         elif name == "difference":
             body = difference_body(changed)
             self.app.push_screen(Page("On disk (-) and to be saved (+)", lambda wide: body), lambda _: self._other(changed))

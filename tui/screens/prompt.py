@@ -8,7 +8,7 @@ from textual.geometry import Size
 from textual.screen import Screen
 
 from tui import keying
-from tui.line import BOLD, CURSOR, DIM, OVER, PLAIN, clean, fit, line
+from tui.line import BOLD, CURSOR, DIM, clean, fit, line
 from tui.session import Entry
 from tui.widgets.sheet import Sheet
 
@@ -16,14 +16,14 @@ from tui.widgets.sheet import Sheet
 class Prompt(Screen[str]):
     """Asks for one line. Gives the text, "" where it was left.
 
-    Parameters: question; text, what stands in the field at first; fault, why an earlier answer was refused.
+    Parameters: question; text, what stands in the field at first.
     """
 
     CSS = "Prompt { layout: vertical; } #prompt { height: 1fr; }"
 
-    def __init__(self, question: str, text: str, fault: str = "") -> None:
+    def __init__(self, question: str, text: str) -> None:
         super().__init__()
-        self._question, self._fault = question, fault
+        self._question = question
         self._entry = Entry("", text, len(text), fresh=False)
 
     def compose(self) -> ComposeResult:
@@ -38,7 +38,7 @@ class Prompt(Screen[str]):
         self.refresh()
 
     def _paint(self, size: Size) -> None:
-        """The question, the field, what went wrong, the keys."""
+        """The question, the field, the keys."""
         wide = max(4, size.width)
         entry = self._entry
         start = max(0, entry.caret - wide + 3)
@@ -49,7 +49,6 @@ class Prompt(Screen[str]):
             [
                 line((fit(self._question, wide), BOLD)),
                 line(seen[:at], (seen[at : at + 1] or " ", CURSOR), seen[at + 1 :]),
-                line((fit(clean(self._fault), wide), OVER if self._fault else PLAIN)),
                 line((fit("Enter takes it; Escape leaves", wide), DIM)),
             ],
             size,

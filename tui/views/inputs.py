@@ -40,7 +40,15 @@ def lines(session: Session, wide: int, height: int) -> list[Line]:
                 pieces += [(" | ", DIM)] if x else []
                 pieces += _item(session, seen[n], seen[n] is hand or seen[n] == hand, column)
         out.append(tuple(pieces))
-    return out
+    more = {0: "^" if start else "", deep - 1: "v" if start + len(seen) < len(here) else ""}
+    return [_marked(row, more.get(y, ""), across * (column + 3) - 3, wide) for y, row in enumerate(out)]
+
+
+def _marked(row: Line, mark: str, room: int, wide: int) -> Line:
+    """The row with a mark behind it where inputs before or after these are out of sight."""
+    if not mark or room >= wide:
+        return row
+    return (*row, (" " * (room - sum(width(text) for text, _ in row)) + mark, DIM))
 
 
 def _start(here: tuple[Item, ...], hand: Item | None, page: int, deep: int) -> int:
