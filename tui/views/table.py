@@ -33,11 +33,14 @@ def columns(session: Session) -> tuple[str, ...]:
     return tuple(s for s in STATIONS if s in have)
 
 
-def label(key: str, system: str) -> str:
-    """Name and display unit of a row."""
+def label(key: str, system: str, room: int = 80) -> str:
+    """Name and display unit of a row; the symbol stands for a name that leaves the unit no room."""
     name = OUTPUT[key].symbol if key in SYMBOLS else NAMES.get(key, OUTPUT[key].label)
     dimension = unit(key, system)
-    return f"{name}, {dimension}" if dimension else name
+    whole = f"{name}, {dimension}" if dimension else name
+    if len(whole) <= room:
+        return whole
+    return f"{OUTPUT[key].symbol}, {dimension}" if dimension else OUTPUT[key].symbol
 
 
 def passages_at(found: Figures | None, station: str) -> list[Passage]:
@@ -114,7 +117,7 @@ def _stations(session: Session, shown: tuple[str, ...], column: int) -> list[Pie
 
 def _row(session: Session, index: int, key: str, shown: tuple[str, ...], column: int, room: int) -> Line:
     here = session.focus == "table" and index == session.row
-    pieces: list[Piece] = [(fit(label(key, session.system), room - 1).ljust(room), BOLD if here else PLAIN)]
+    pieces: list[Piece] = [(fit(label(key, session.system, room - 1), room - 1).ljust(room), BOLD if here else PLAIN)]
     for s in shown:
         text, style = _cell(session, key, s)
         text = fit(text, column - 1)
