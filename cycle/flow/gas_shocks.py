@@ -14,6 +14,10 @@ from cycle.flow import roots, shocks
 from cycle.gas.base import Gas
 from cycle.gas.state import State
 
+_CLEAR = 0.9
+"""Share of the constant-gamma detachment deflection below which the two branches are well apart in any gas."""
+_SETTLED = 1e-14
+
 
 @dataclass(frozen=True, slots=True)
 class Front:
@@ -65,18 +69,45 @@ def largest_turning(gas: Gas, before: State, velocity: Array) -> tuple[Array, Ar
     return _turning(gas, before, velocity, angle)[0], angle
 
 
+def _near_closed(gas: Gas, before: State, velocity: Array, deflection: Array, strong: bool) -> tuple[Array, Flags]:
+    """Wave angle rad (N,) by secant steps from the constant-gamma one, and where they have settled, clear of detachment."""
+    mach, g = velocity / before.sound_speed, before.isentropic_exponent
+    angle = shocks.oblique_shock(mach, deflection, g, strong).wave_angle
+    clear = (deflection > 0.0) & (deflection < _CLEAR * shocks.detachment(mach, g).deflection)
+    miss = _turning(gas, before, velocity, angle)[0] - deflection
+    slope = (shocks.deflection_of_wave(mach, angle * (1.0 - 1e-4), g) - deflection) / (-1e-4 * angle)
+    for _ in range(10):
+        moved = angle - miss / slope
+        now = _turning(gas, before, velocity, moved)[0] - deflection
+        slope = np.where(now == miss, slope, (now - miss) / (moved - angle))
+        angle, miss = moved, now
+        if not np.any(clear & (np.abs(miss) > _SETTLED)):
+            break
+    return angle, clear & (np.abs(miss) <= _SETTLED)
+
+
+def _from_bracket(gas: Gas, before: State, velocity: Array, deflection: Array, strong: bool) -> tuple[Array, Flags]:
+    """Wave angle rad (N,) between the Mach angle (or the normal) and the detachment angle, and whether the shock is attached."""
+    mach = velocity / before.sound_speed
+    most, at_most = largest_turning(gas, before, velocity)
+    attached = (mach > 1.0) & (deflection <= most) & (deflection >= 0.0)
+    edge = np.full_like(mach, 0.5 * np.pi) if strong else np.arcsin(np.minimum(1.0, 1.0 / mach))
+    angle = roots.bracketed(lambda b: _turning(gas, before, velocity, b)[0] - deflection, edge, at_most, 1e-14)
+    return np.where(attached & np.isfinite(angle), angle, at_most), attached
+
+
 def oblique_shock(gas: Gas, before: State, velocity: Array, deflection: Array, strong: bool = False) -> Front:
     """Oblique shock that turns the stream by `deflection` rad (N,); weak branch unless `strong`.
 
     Not attached where the stream is subsonic or the deflection exceeds the largest one of this gas; the state there
-    must not be used. The wave angle is a root between the Mach angle (or the normal) and the detachment angle.
+    must not be used. The wave angle is found from the constant-gamma one; near detachment, and where that fails, it is a root
+    between the Mach angle (or the normal) and the detachment angle.
     """
-    mach = velocity / before.sound_speed
     with np.errstate(all="ignore"):
-        most, at_most = largest_turning(gas, before, velocity)
-        attached = (mach > 1.0) & (deflection <= most) & (deflection >= 0.0)
-        edge = np.full_like(mach, 0.5 * np.pi) if strong else np.arcsin(np.minimum(1.0, 1.0 / mach))
-        angle = roots.bracketed(lambda b: _turning(gas, before, velocity, b)[0] - deflection, edge, at_most, 1e-14)
-    angle = np.where(attached & np.isfinite(angle), angle, at_most)
-    front = _turning(gas, before, velocity, angle)[1]
+        angle, attached = _near_closed(gas, before, velocity, deflection, strong)
+        rest = np.flatnonzero(~attached)
+        if rest.size:
+            part = gas.take(rest), before.take(rest), velocity[rest], deflection[rest]
+            angle[rest], attached[rest] = _from_bracket(*part, strong)
+        front = _turning(gas, before, velocity, angle)[1]
     return Front(front.state, front.velocity, angle, attached)
