@@ -26,7 +26,7 @@ def product(a: Array, b: Array, out: Array | None = None) -> Array:
 
 def dot(a: Array, b: Array) -> Array:
     """Sum over rows of a * b, both (k, N); (N,)."""
-    total: Array = np.vecdot(a, b, axis=0) if b.shape[1] <= FEW else np.einsum("ij,ij->j", a, b)
+    total: Array = np.add.reduce(a * b) if b.shape[1] <= FEW else np.einsum("ij,ij->j", a, b)
     return total
 
 
