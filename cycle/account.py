@@ -70,9 +70,12 @@ def thrust(march: March) -> Array:
     end, start = march.named("nozzle"), march.named("flight")
     if end is None or start is None:
         return np.full(march.setting.size, np.nan)
-    out, free = end.taken(points).stream, start.taken(points).stream
-    force = out.stream_thrust - free.stream_thrust - free.state.pressure * (out.area - free.area)
-    return spread(march, points, force)
+    return spread(march, points, _force(end.taken(points).stream, start.taken(points).stream))
+
+
+def _force(out: Stream, free: Stream) -> Array:
+    force: Array = out.stream_thrust - free.stream_thrust - free.state.pressure * (out.area - free.area)
+    return force
 
 
 def performance(march: March) -> dict[str, Array]:
@@ -86,10 +89,10 @@ def performance(march: March) -> dict[str, Array]:
     burner = march.named("burner")
     if burner is None:
         return found
-    first = march.records[0].taken(burner.index).stream
+    first = march.records[0]
     booking = burner.process.booking
     assert booking is not None
-    air = spread(march, burner.index, first.mass_flow)
+    air = spread(march, burner.index, first.stream.mass_flow[np.searchsorted(first.index, burner.index)])
     fuel = spread(march, burner.index, booking.fuel_flow)
     found |= {"fuel_flow": fuel, "fuel_air_ratio": fuel / air, "equivalence_ratio": fuel / air / setting.stoichiometric_ratio}
     throat = march.named("throat")
@@ -100,12 +103,12 @@ def performance(march: March) -> dict[str, Array]:
         last = march.records[-1].taken(points).stream
         entered = march.records[0].taken(points).stream
         return found | {"stream_thrust_gain": spread(march, points, last.stream_thrust - entered.stream_thrust)}
-    force = thrust(march)
     nozzle = march.named("nozzle")
     if nozzle is None:
         return found | {"thrust": nothing}
     out, free = nozzle.taken(points).stream, march.records[0].taken(points).stream
     with np.errstate(all="ignore"):
+        force = spread(march, points, _force(out, free))
         heat = fuel * setting.heating_value
         gain = out.mass_flow * out.velocity**2 - free.mass_flow * free.velocity**2
         thermal = spread(march, points, gain) / (2.0 * heat)

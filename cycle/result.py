@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Callable, Mapping
 from dataclasses import dataclass
-from functools import cached_property
+from functools import cached_property, partial
 from typing import TYPE_CHECKING, Any
 
 import numpy as np
@@ -15,6 +15,7 @@ from cycle import limits as margins
 from cycle.account import spread, usable
 from cycle.arrays import Array, ArrayLike
 from cycle.figures import Figures, Station, shaped
+from cycle.flowpath import combustor
 from cycle.flowpath.setting import FIXED_IN_BATCH, setting
 from cycle.flowpath.stream import SOLVED, STATUS_NAMES
 from cycle.gas.state import State
@@ -109,7 +110,7 @@ class Walk:
     @property
     def status(self) -> Any:
         """A key of `quantities.STATUSES`; an object array of them for a batch."""
-        return self._words([STATUS_NAMES[i] for i in self.march.status])
+        return self._words(list(np.array(STATUS_NAMES, dtype=object)[self.march.status]))
 
     @property
     def mode(self) -> Any:
@@ -231,11 +232,20 @@ class Walk:
         }
         if self._has_potential:
             sources["thrust_potential_change"] = lambda: self._potentials[position] - self._potentials[position - 1]
-        own = {k: (lambda v=v: spread(self.march, record.index, v)) for k, v in record.process.figures.items()}
+        own: dict[str, Callable[[], Array]] = {k: partial(spread, self.march, record.index, v) for k, v in record.process.figures.items()}
+        if record.process.solves_momentum and self.march.setting.choices["combustor.process"] == "constant-area":
+            own["choking_margin"] = on(lambda: self._choking_margin(position))
         booking = record.process.booking
         if booking is not None:
-            own |= {k: (lambda k=k: spread(self.march, record.index, getattr(booking, k))) for k in booking.__slots__}
+            own |= {k: partial(spread, self.march, record.index, getattr(booking, k)) for k in booking.__slots__}
         return sources | own
+
+    def _choking_margin(self, position: int) -> Array:
+        """Room left before the burner chokes; the sonic point behind it is dear, so the walk itself does without."""
+        record = self.march.records[position]
+        setting = self.march.setting.take(record.index)
+        entering = self.march.records[position - 1].taken(record.index).stream
+        return combustor.choking_margin(combustor.burner_gas(entering, setting), setting, record.process.figures["fuel_air_ratio"])
 
     @property
     def _has_potential(self) -> bool:

@@ -29,6 +29,8 @@ class Record:
 
     def taken(self, points: Codes) -> Record:
         """The record of `points`, a sorted subset of `index`."""
+        if points.size == self.index.size:
+            return self
         at = np.searchsorted(self.index, points)
         return Record(self.process.take(at), points, self.stream.take(at))
 
@@ -65,7 +67,7 @@ class March:
         record = self.named("flight")
         if record is None:
             return np.full(points.shape, np.nan)
-        return record.taken(points).stream.state.pressure
+        return record.stream.state.pressure[np.searchsorted(record.index, points)]
 
 
 Part = Callable[[Stream, Setting], Step | None]
@@ -152,7 +154,7 @@ class _Walked:
         first = self.records[0]
         if first.process.name != "flight":
             return np.full(self.alive.shape, np.nan)
-        return first.taken(self.alive).stream.state.pressure
+        return first.stream.state.pressure[np.searchsorted(first.index, self.alive)]
 
     def take(self, name: str, part: Callable[[Setting], Step | None]) -> None:
         """Let the walking points go through one process; those that fail stop here."""

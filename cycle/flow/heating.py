@@ -2,6 +2,7 @@
 
 Shapiro (1953), ch. 7, for the line; the sonic point decides choking. At Mach 1 the line's total enthalpy is stationary,
 so a state at p* = F/(1 + gamma_s), found by (v, p), gives the largest total enthalpy to second order in its own error.
+A state found far from Mach 1 decides as well, and for less: see `heated`.
 """
 
 from __future__ import annotations
@@ -12,7 +13,7 @@ import numpy as np
 
 from cycle.arrays import Array, Codes, Flags
 from cycle.gas.base import Gas
-from cycle.gas.state import NOT_CONVERGED, OUT_OF_RANGE, State, scatter
+from cycle.gas.state import NOT_CONVERGED, OUT_OF_RANGE, State, placed, scatter
 
 
 @dataclass(frozen=True, slots=True)
@@ -50,7 +51,8 @@ def sonic_point(gas: Gas, impulse: Array, flux: Array, total_enthalpy: Array) ->
         close = close[moved > 1e-7]
         if not close.size:
             break
-        again = gas.take(close).at("vp", point.volume[close], impulse[close] - flux[close] ** 2 * point.volume[close])
+        volume, near = point.volume[close], point.state.take(close)
+        again = gas.take(close).at("vp", volume, impulse[close] - flux[close] ** 2 * volume, start=near)
         point = _merged(point, close, _parabola(again, impulse[close], flux[close]))
     return point
 
@@ -73,6 +75,54 @@ def _merged(point: SonicPoint, index: Codes, part: SonicPoint) -> SonicPoint:
     for column, name in zip(columns, ("volume", "total_enthalpy", "curvature"), strict=True):
         column[index] = getattr(part, name)
     return SonicPoint(scatter(point.state, index, part.state), *columns)
+
+
+@dataclass(frozen=True, slots=True)
+class Heated:
+    """State behind heat addition; whether the line reaches the total enthalpy; whether its sonic point is in the range of
+    the data, where it had to be found; each (N,)."""
+
+    state: State
+    passes: Flags
+    known: Flags
+
+
+FAR = 0.06
+"""Distance from Mach 1, as `Gas.guess_heated` gives it, from which a guess is trusted to keep its branch: Mach 1.34 and 0.76."""
+
+
+def heated(gas: Gas, impulse: Array, flux: Array, total_enthalpy: Array, supersonic: Flags) -> Heated:
+    """Heat addition at constant area: impulse F Pa, flux G kg/(s m2), total_enthalpy J/kg behind it, each (N,), and branch.
+
+    A state found on its branch shows that the line reaches that far. Where the gas has a guess far from Mach 1 it is tried
+    first; the sonic point then decides the rest: it is hotter, so more work, and most streams stay away from it.
+    """
+    guess = gas.guess_heated(impulse, flux, total_enthalpy, supersonic)
+    direct = np.zeros(flux.shape, np.bool_) if guess is None else guess[1] > FAR
+    if guess is None or not direct.any():
+        return _by_sonic_point(gas, impulse, flux, total_enthalpy, supersonic)
+    start = guess[0]
+    if direct.all():
+        state, fast = gas.at("momentum", impulse, flux, total_enthalpy, flux, start=start), supersonic
+    else:
+        far = np.flatnonzero(direct)
+        targets, fast = [a[far] for a in (impulse, flux, total_enthalpy, flux)], supersonic[far]
+        state = gas.take(far).at("momentum", *targets, start=start.take(far))
+    found = state.good & ((flux[direct] > state.density * state.sound_speed) == fast)
+    passes, known = np.ones(flux.shape, np.bool_), np.ones(flux.shape, np.bool_)
+    if not (direct.all() and found.all()):
+        direct[direct] = found
+        left = np.flatnonzero(~direct)
+        rest = _by_sonic_point(gas.take(left), impulse[left], flux[left], total_enthalpy[left], supersonic[left])
+        passes[left], known[left] = rest.passes, rest.known
+        state = placed(direct, state.take(found), rest.state)
+    return Heated(state, passes, known)
+
+
+def _by_sonic_point(gas: Gas, impulse: Array, flux: Array, total_enthalpy: Array, supersonic: Flags) -> Heated:
+    point = sonic_point(gas, impulse, flux, total_enthalpy)
+    state, passes = constant_area(gas, impulse, flux, total_enthalpy, supersonic, point)
+    return Heated(state, passes, point.state.good)
 
 
 def constant_area(

@@ -144,21 +144,13 @@ Burnt = tuple[State, Array, Codes, dict[str, Array], Booking]
 """State and speed at the exit, status, own figures, booking."""
 
 
-def _room(point: heating.SonicPoint, mixed: Mixed) -> Array:
-    """Total enthalpy left to the sonic point, over a*^2."""
-    return (point.total_enthalpy - mixed.total_enthalpy) / point.state.sound_speed**2
-
-
 def _constant_area(entering: Stream, setting: Setting, mixed: Mixed) -> Burnt:
     area = entering.area
     flux, impulse = mixed.mass_flow / area, entering.state.pressure + mixed.momentum / area
-    point = heating.sonic_point(mixed.gas, impulse, flux, mixed.total_enthalpy)
-    fast = entering.mach > 1.0
-    state, passes = heating.constant_area(mixed.gas, impulse, flux, mixed.total_enthalpy, fast, point)
-    margin = _room(point, mixed)
-    lost = ~(impulse > 0.0)
-    status = status_of(state, (lost, "stalled"), (~passes & ~point.state.good, "out-of-range"), (~passes, "choked"))
-    return state, flux / state.density, status, {"choking_margin": margin}, mixed.booking
+    found = heating.heated(mixed.gas, impulse, flux, mixed.total_enthalpy, entering.mach > 1.0)
+    lost, choked = ~(impulse > 0.0), ~found.passes
+    status = status_of(found.state, (lost, "stalled"), (choked & ~found.known, "out-of-range"), (choked, "choked"))
+    return found.state, flux / found.state.density, status, {}, mixed.booking
 
 
 def _constant_pressure(entering: Stream, setting: Setting, mixed: Mixed) -> Burnt:
@@ -310,11 +302,22 @@ def burner(entering: Stream, setting: Setting) -> Step:
     return Step(step.stream, step.process, np.where(slow, STATUS_CODE["mode-refused"], status))
 
 
-def _room_at_constant_area(entering: Stream, mixed: Mixed, setting: Setting) -> Array:
+def choking_margin(entering: Stream, setting: Setting, ratio: Array) -> Array:
+    """Total enthalpy left to the sonic point at constant area with `ratio` of fuel, over a*^2; all (N,)."""
+    with np.errstate(all="ignore"):
+        return _margin(entering, mix(entering, setting, ratio))[0]
+
+
+def _margin(entering: Stream, mixed: Mixed) -> tuple[Array, heating.SonicPoint]:
     flux, impulse = mixed.mass_flow / entering.area, entering.state.pressure + mixed.momentum / entering.area
     point = heating.sonic_point(mixed.gas, impulse, flux, mixed.total_enthalpy)
+    return (point.total_enthalpy - mixed.total_enthalpy) / point.state.sound_speed**2, point
+
+
+def _room_at_constant_area(entering: Stream, mixed: Mixed, setting: Setting) -> Array:
+    margin, point = _margin(entering, mixed)
     # the sonic point of a slow stream can lie beyond the data: far away, wherever it is
-    return np.where(point.state.good | (entering.mach > 1.0), _room(point, mixed), np.inf)
+    return np.where(point.state.good | (entering.mach > 1.0), margin, np.inf)
 
 
 def _room_with_loss(entering: Stream, mixed: Mixed, setting: Setting) -> Array:

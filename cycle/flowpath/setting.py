@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Mapping
 from dataclasses import dataclass
+from functools import lru_cache
 from typing import TYPE_CHECKING
 
 import numpy as np
@@ -66,7 +67,13 @@ class Setting:
         """Fuel-air ratio that burns all oxygen, (N,); NaN where the fuel has no formula. Dry composition of the case."""
         if self.fuel is None:
             return np.full(self.size, np.nan)
-        return np.broadcast_to(self.fuel.stoichiometric_ratio(self.air), (self.size,))
+        return np.full(self.size, _stoichiometric_ratio(self.fuel, tuple(self.air.items())))
+
+
+@lru_cache(maxsize=64)
+def _stoichiometric_ratio(fuel: Fuel, air: tuple[tuple[str, float], ...]) -> float:
+    """Asked for several times in a walk."""
+    return float(fuel.stoichiometric_ratio(dict(air)))
 
 
 def _by_formula(numbers: Mapping[str, float], choices: Mapping[str, str], texts: Mapping[str, str]) -> Fuel:
@@ -100,7 +107,8 @@ def setting(
     """The setting of `size` points: a case's numbers with `arrays` (each (size,), SI) in their place."""
     fuel = _IDENTITY[choices["fuel.identity"]](numbers, choices, texts)
     air = dict(fractions) or dict(STANDARD_AIR)
-    spread = {k: np.full(size, v) for k, v in numbers.items()} | dict(arrays)
+    rows = np.repeat(np.array([*numbers.values()], np.float64)[:, None], size, axis=1)
+    spread = dict(zip(numbers, rows, strict=True)) | dict(arrays)
     table = None
     if choices["gas.model"] != "constant-gamma":
         wet = ("H2O",) if choices.get("air.moisture") == "relative_humidity" else ()

@@ -126,5 +126,7 @@ class Step:
 def status_of(state: State, *faults: tuple[Flags, str]) -> Codes:
     """Status codes (N,): the first fault that holds names the point, then the state's own range, then solved."""
     rules = [*faults, (state.range == 3, "not-converged"), (state.range == 2, "out-of-range")]
-    conditions = [flag for flag, _ in rules]
-    return np.select(conditions, [STATUS_CODE[name] for _, name in rules], SOLVED).astype(np.int64)
+    code = np.full(state.range.shape, SOLVED)
+    for flag, name in reversed(rules):
+        code[flag] = STATUS_CODE[name]
+    return code

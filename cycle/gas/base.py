@@ -36,7 +36,7 @@ class Gas(ABC):
         its density and sound speed. A point that does not converge, leaves the data or leaves its branch is flagged in
         `State.range`, never raised. ValueError for a closure with branches and no start.
         """
-        arrays = tuple(np.broadcast_to(np.asarray(t, dtype=np.float64), (self.size,)) for t in targets)
+        arrays = tuple(_spread(t, self.size) for t in targets)
         if not CLOSURES[kind].branched:
             return self._at(kind, arrays, start)
         if start is None:
@@ -69,6 +69,20 @@ class Gas(ABC):
         ratio, burnt: (N,). What happens to the rest is the model's: see each model.
         """
 
+    @abstractmethod
+    def guess_heated(self, impulse: Array, flux: Array, total_enthalpy: Array, supersonic: Flags) -> tuple[State, Array] | None:
+        """A rough state where p + G^2 v = F and h + G^2 v^2/2 = ht, to start "momentum" from without the sonic point, and
+        its distance from Mach 1, ((M^2 - 1) / (1 + gamma M^2))^2, negative where the line seems not to reach ht.
+
+        impulse F Pa, flux G kg/(s m2), total_enthalpy ht J/kg, branch, each (N,). Of the state only temperature, pressure,
+        density and sound speed count. None for a model whose sonic point costs next to nothing.
+        """
+
+
+def _spread(value: ArrayLike, size: int) -> Array:
+    array = np.asarray(value, dtype=np.float64)
+    return array if array.shape == (size,) else np.broadcast_to(array, (size,))
+
 
 class FixedGas(Gas):
     """A thermally perfect gas of fixed composition: subclasses give enthalpy, entropy and cp as functions of T."""
@@ -94,6 +108,9 @@ class FixedGas(Gas):
     def frozen(self, state: State) -> Gas:
         """This gas itself."""
         return self
+
+    def guess_heated(self, impulse: Array, flux: Array, total_enthalpy: Array, supersonic: Flags) -> None:
+        """None: at fixed composition T of the sonic point follows from p and v."""
 
     def _at(self, kind: str, targets: tuple[Array, ...], start: State | None) -> State:
         closure = CLOSURES[kind]

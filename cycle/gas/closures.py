@@ -79,6 +79,16 @@ class Closure:
     fixes_p: bool = False
     branched: bool = False
 
+    @property
+    def reads_h(self) -> bool:
+        """Whether a row needs `Local.h`."""
+        return any(row in (_enthalpy, _energy) for row, _ in self.rows)
+
+    @property
+    def reads_s(self) -> bool:
+        """Whether a row needs `Local.s`."""
+        return any(row is _entropy for row, _ in self.rows)
+
     def step(self, at: Local, targets: tuple[Array, ...]) -> tuple[Array, Array]:
         """Newton steps (d ln T, d ln p), each (N,)."""
         (row_a, take_a), (row_b, take_b) = self.rows

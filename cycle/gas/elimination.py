@@ -44,15 +44,15 @@ def solve_systems(matrices: Array, right: Array) -> None:
 def _solve_few(matrices: Array, right: Array) -> bool:
     """By LAPACK, scaled to a unit diagonal because rows of trace potentials are as small as 1e-40."""
     n, _, points = matrices.shape
-    diagonal = np.einsum("iij->ji", matrices)
-    scale = np.ones((points, n, 1))
-    scale[:, :-1, 0] = 1.0 / np.sqrt(diagonal[:, :-1] + 1e-300)
-    scaled = matrices.transpose(2, 0, 1) * scale * scale.transpose(0, 2, 1)
+    diagonal = matrices.reshape(n * n, points)[:: n + 1]
+    scale = 1.0 / np.sqrt(np.maximum(diagonal, 1e-300))
+    scale[-1] = 1.0
+    column = scale[:, None]
     try:
-        x = np.linalg.solve(scaled, right.transpose(2, 0, 1) * scale) * scale
+        x = np.linalg.solve((matrices * scale * column).transpose(2, 0, 1), (right * column).transpose(2, 0, 1))
     except np.linalg.LinAlgError:
         return False
-    right[:] = x.transpose(1, 2, 0)
+    np.multiply(x.transpose(1, 2, 0), column, out=right)
     return True
 
 

@@ -2,7 +2,8 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
+from functools import lru_cache
 from typing import TYPE_CHECKING, Self
 
 import numpy as np
@@ -16,13 +17,16 @@ from cycle.gas.frozen import FrozenGas, complete_products, per_mole
 from cycle.gas.kernel import Kernel, kernel_of
 from cycle.gas.newton import POOL, Columns, iterate
 from cycle.gas.species import SpeciesTable, listed_rows, range_of, temperature_functions
-from cycle.gas.start import ABSENT, Guess, absent, first_temperature_pressure
+from cycle.gas.start import ABSENT, Guess, absent, first_temperature_pressure, on_rayleigh_line, within
 from cycle.gas.state import NOT_CONVERGED, State, state_from
 
 if TYPE_CHECKING:
     from cycle.gas.fuels import Fuel
 
 TRACE = 1e-300
+
+HOT_EXPONENT = 1.22
+"""Isentropic exponent of burnt gas, for guesses; common practice."""
 
 CARRY_T, CARRY_P = 0.4, 3.0
 """Largest steps of ln T and ln p over which a start is carried by its slopes."""
@@ -35,6 +39,56 @@ class Solution:
     unknowns: Array
     converged: Flags
     iterations: Codes
+
+
+@dataclass(frozen=True, eq=False)
+class Present:
+    """The species that a gas can hold of a `whole` table: their own table, and their rows among all species, the basis
+    and the inert species. Air in a table made for a fuel has none with hydrogen or carbon: half the work of a step."""
+
+    whole: SpeciesTable
+    table: SpeciesTable
+    rows: Codes
+    basis: Codes
+    inert: Codes
+
+    def _kept(self) -> Codes:
+        """Rows of `State.potentials`: z and its slopes by ln T and by ln p, each of the basis; ln T, ln p."""
+        k = self.whole.basis
+        return np.concatenate([self.basis, k + self.basis, 2 * k + self.basis, [3 * k, 3 * k + 1]])
+
+    def narrowed(self, state: State) -> State:
+        """A state of the whole table as one of these species; one without potentials as it is."""
+        if state.potentials is None:
+            return state
+        return replace(state, moles=state.moles[self.rows], potentials=state.potentials[self._kept()])
+
+    def widened(self, state: State) -> State:
+        """`narrowed` undone: the others are absent."""
+        k, n = self.whole.basis, state.temperature.size
+        moles, potentials = np.zeros((len(self.whole.names), n)), np.zeros((3 * k + 2, n))
+        moles[self.rows] = state.moles
+        potentials[:k] = ABSENT
+        potentials[self._kept()] = state.potentials
+        return replace(state, moles=moles, potentials=potentials)
+
+
+def _found(amounts: Array) -> tuple[bool, ...]:
+    """Which rows are not zero at some point."""
+    found: Flags = np.any(amounts, axis=1)
+    return tuple(found.tolist())
+
+
+@lru_cache(maxsize=256)
+def present_in(table: SpeciesTable, basis: tuple[bool, ...], inert: tuple[bool, ...]) -> Present:
+    """What of a table a gas holds in which some point has these basis and these inert species; O2, whose amount is a
+    signed balance, counts as there."""
+    found = np.array(basis) | np.array([name == "O2" for name in table.names[: table.basis]])
+    reacting = ~(table.in_basis[:, ~found] != 0.0).any(1)
+    there = np.concatenate([reacting, np.array(inert, bool)])
+    rows = np.flatnonzero(there)
+    part = table if there.all() else table.part(rows)
+    return Present(table, part, rows, np.flatnonzero(found), np.flatnonzero(inert))
 
 
 class EquilibriumGas(Gas):
@@ -85,8 +139,25 @@ class EquilibriumGas(Gas):
         inert[-1] += (1.0 - burnt) * supplied
         return EquilibriumGas(self.table, basis / (1.0 + ratio), inert / (1.0 + ratio))
 
+    def guess_heated(self, impulse: Array, flux: Array, total_enthalpy: Array, supersonic: Flags) -> tuple[State, Array]:
+        """From the products of complete combustion: see `Gas.guess_heated`."""
+        guess = Guess(kernel_of(self.table), self.basis, self.inert)
+        with np.errstate(all="ignore"):
+            T, volume, distance = on_rayleigh_line(guess, impulse, flux, total_enthalpy, supersonic)
+        unknown = np.full(T.shape, np.nan)
+        sound_speed = np.sqrt(HOT_EXPONENT * GAS_CONSTANT * guess.total * T)
+        state = State(
+            T, impulse - flux**2 * volume, 1.0 / volume, unknown, unknown, sound_speed, unknown, unknown, unknown, unknown, unknown,
+            unknown, np.zeros((0, T.size)), np.zeros(T.size, np.int64),
+        )  # fmt: skip
+        return state, distance
+
     def _at(self, kind: str, targets: tuple[Array, ...], start: State | None) -> State:
-        return self.state_of(self.solve(kind, *targets, start=start))
+        there = present_in(self.table, _found(self.basis), _found(self.inert))
+        if there.table is self.table:
+            return self.state_of(self.solve(kind, *targets, start=start))
+        part = EquilibriumGas(there.table, self.basis[there.basis], self.inert[there.inert])
+        return there.widened(part.state_of(part.solve(kind, *targets, start=None if start is None else there.narrowed(start))))
 
     def solve(self, kind: str, *targets: Array, start: State | None = None) -> Solution:
         """The iteration behind `at`, with its counts; targets (N,). A start that leads nowhere is dropped, unless it
@@ -174,7 +245,7 @@ class FirstGuess:
                 z, m, ln_n = (np.where(serves, a, b) for a, b in zip((z, m, ln_n), cold, strict=True))
         unknowns = np.vstack([z, m, np.log(T), ln_p, ln_n])
         mixing = -(inert * np.log(np.maximum(inert, TRACE))).sum(0)
-        return Columns(unknowns, np.vstack([basis, inert, mixing, absent(self.kernel, basis), targets]))
+        return Columns(unknowns, np.vstack([basis, inert, inert.sum(0), mixing, absent(self.kernel, basis), targets]))
 
     def _warm(self, points: slice, T: Array, ln_p: Array) -> tuple[Array, Array, Array, Flags] | None:
         """z, m, ln n of the start, carried to T and p by its own slopes, and where they serve: not where an element has
@@ -184,8 +255,7 @@ class FirstGuess:
         kernel, held = self.kernel, self.start.potentials[:, points]
         k = kernel.basis
         z, by_T, by_p, ln_T0, ln_p0 = held[:k], held[k : 2 * k], held[2 * k : 3 * k], held[3 * k], held[3 * k + 1]
-        d_T = np.clip(np.log(T) - ln_T0, -CARRY_T, CARRY_T)
-        d_p = np.clip(ln_p - ln_p0, -CARRY_P, CARRY_P)
+        d_T, d_p = within(np.log(T) - ln_T0, -CARRY_T, CARRY_T), within(ln_p - ln_p0, -CARRY_P, CARRY_P)
         gone = absent(kernel, self.gas.basis[:, points])
         serves: Flags = (gone == (z < 0.5 * ABSENT)).all(0) & np.isfinite(held).all(0)
         ln_total = np.log(self.start.moles[:, points].sum(0))

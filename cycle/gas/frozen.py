@@ -32,21 +32,28 @@ class FrozenGas(FixedGas):
         self.species = table.names
         total = composition.sum(0)
         self.gas_constant = GAS_CONSTANT * total
-        with np.errstate(divide="ignore", invalid="ignore"):
-            share = np.where(composition > 0.0, np.log(composition / total), 0.0)
-        self._mixing = -GAS_CONSTANT * (composition * share).sum(0)
 
     @cached_property
-    def _factors(self) -> tuple[Array, Array, Array]:
-        """What `temperature_functions` are multiplied by for h / T, s and cp of the mixture, each (20, N)."""
-        R, table, moles = GAS_CONSTANT, self.table, self.composition
-        h, s, cp = (product(np.ascontiguousarray(rows.T) * R, moles) for rows in (table.h, table.s, table.cp))
-        return h, s, cp
+    def _present(self) -> tuple[Array, Array]:
+        """Of the species that some point holds: factors of `temperature_functions` for h / T, then s, then cp, J/(mol K),
+        (3 species, 20), and amounts mol/kg (species, N)."""
+        rows = np.flatnonzero(self.composition.any(1))
+        factors = GAS_CONSTANT * np.concatenate([self.table.h[rows], self.table.s[rows], self.table.cp[rows]])
+        return factors, self.composition[rows]
+
+    @cached_property
+    def _mixing(self) -> Array:
+        """Entropy of mixing, J/(kg K), (N,)."""
+        with np.errstate(divide="ignore", invalid="ignore"):
+            share = np.where(self.composition > 0.0, np.log(self.composition / self.composition.sum(0)), 0.0)
+        mixing: Array = -GAS_CONSTANT * (self.composition * share).sum(0)
+        return mixing
 
     def caloric(self, temperature: Array) -> tuple[Array, Array, Array]:
         """h J/kg, s at 1 bar and this composition J/(kg K), cp J/(kg K) at T (N,)."""
-        f = temperature_functions(temperature)
-        h, s, cp = ((factors * f).sum(0) for factors in self._factors)
+        factors, moles = self._present
+        of_species = product(factors, temperature_functions(temperature)).reshape(3, *moles.shape)
+        h, s, cp = (of_species * moles).sum(1)
         return h * temperature, s + self._mixing, cp
 
     def range_of(self, temperature: Array) -> Codes:

@@ -5,6 +5,7 @@ from __future__ import annotations
 import re
 from collections.abc import Mapping
 from dataclasses import dataclass
+from functools import cache
 from typing import Literal
 
 import numpy as np
@@ -129,6 +130,7 @@ def products_enthalpy(atoms: Mapping[str, float]) -> float:
     return sum(n * at_reference[name] for name, n in amounts.items()) - oxygen_need(atoms) * at_reference["O2"]
 
 
+@cache
 def _formation_enthalpy(species: str) -> float:
     return float(evaluate(listed_rows(species), REFERENCE_TEMPERATURE)[0])
 

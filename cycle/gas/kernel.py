@@ -19,7 +19,7 @@ import numpy as np
 
 from cycle.arrays import Array
 from cycle.gas.elimination import product
-from cycle.gas.species import HIGHEST, INSIDE_FUNCTIONS, LOWEST, SpeciesTable, temperature_functions
+from cycle.gas.species import HIGHEST, LOWEST, MIDDLE, RANGE_FUNCTIONS, SpeciesTable, range_functions, temperature_functions
 
 
 @dataclass(frozen=True, eq=False)
@@ -42,8 +42,8 @@ class Thermo:
 class Kernel:
     """nu (reacting, K); nu_and_one (reacting, K+1): the factors of z and m in ln n; weights (K+1, reacting): its
     transpose; formed: the weights of the non-basis species; pairs ((K+1)^2, reacting): n_j times these sums gives the
-    reduced matrix; rows: factors behind `Thermo`, whose fields are its `parts`; inside_rows: the same for 200-6000 K;
-    formation: the rows of g alone."""
+    reduced matrix; rows: factors behind `Thermo`, whose fields are its `parts`; low, high, inside: the same for
+    temperatures all in 200-1000 K, 1000-6000 K, 200-6000 K; formation: the rows of g alone."""
 
     table: SpeciesTable
     nu: Array
@@ -54,7 +54,9 @@ class Kernel:
     rows: Array
     formation: Array
     parts: tuple[slice, ...]
-    inside_rows: Array
+    low: Array
+    high: Array
+    inside: Array
 
     @property
     def basis(self) -> int:
@@ -63,11 +65,17 @@ class Kernel:
 
     def thermo(self, temperature: Array, functions: Array | None = None, out: Array | None = None) -> Thermo:
         """All of `Thermo` at temperature K (N,); functions (20, N) and out (rows, N) are reused where given."""
-        f = temperature_functions(temperature, functions)
-        outside = np.any((temperature < LOWEST) | (temperature > HIGHEST))
-        rows = self.rows if outside else self.inside_rows
-        p = product(rows, f[: rows.shape[1]], out)
-        return Thermo(*(p[part] for part in self.parts))
+        coldest, hottest = temperature.min(initial=HIGHEST), temperature.max(initial=LOWEST)
+        one_range = self.high if coldest >= MIDDLE else self.low if hottest < MIDDLE else None
+        if not (coldest >= LOWEST and hottest <= HIGHEST):
+            rows, f = self.rows, temperature_functions(temperature, functions)
+        elif one_range is None:
+            rows, f = self.inside, temperature_functions(temperature, functions)[: 2 * RANGE_FUNCTIONS]
+        else:
+            room = np.empty((RANGE_FUNCTIONS, temperature.size)) if functions is None else functions[:RANGE_FUNCTIONS]
+            rows, f = one_range, range_functions(temperature, room)
+        p = product(rows, f, out)
+        return Thermo(*[p[part] for part in self.parts])
 
     def formation_energy(self, temperature: Array) -> Array:
         """g of the non-basis species only, (reacting - K, N)."""
@@ -86,6 +94,7 @@ def kernel_of(table: SpeciesTable) -> Kernel:
     pairs = (weights[:, None] * weights[None, :]).reshape((k + 1) ** 2, reacting)
     ends = np.cumsum([0, *[reacting - k] * 3, *[len(base)] * 3])
     parts = tuple(slice(a, b) for a, b in itertools.pairwise(ends))
-    inside = rows[:, :INSIDE_FUNCTIONS].copy()
+    low, high = (rows[:, a : a + RANGE_FUNCTIONS].copy() for a in (0, RANGE_FUNCTIONS))
+    inside = rows[:, : 2 * RANGE_FUNCTIONS].copy()
     nu_and_one = np.ascontiguousarray(weights.T)
-    return Kernel(table, table.in_basis, nu_and_one, pairs, weights, weights[:, k:].copy(), rows, (h - s).copy(), parts, inside)
+    return Kernel(table, table.in_basis, nu_and_one, pairs, weights, weights[:, k:].copy(), rows, h - s, parts, low, high, inside)

@@ -22,12 +22,15 @@ from cycle.gas.elimination import dot, product, solve_systems
 from cycle.gas.kernel import Kernel, Thermo
 from cycle.gas.species import FUNCTIONS
 
-POOL = 2048
-"""Columns iterated together; as large as still fits the processor's cache."""
+POOL = 5120
+"""Columns iterated together: more leave the processor's cache, fewer spend too much on calling numpy."""
 
-MAX_ITERATIONS = 60
+FEW_LEFT = 512
+"""Columns left in the pool at which the next points join: fewer would spend most of a step on calling numpy."""
 
-ERROR_LEFT = 1e-15
+MAX_ITERATIONS = 30
+
+ERROR_LEFT = 1e-14
 """Stop when the quadratic error that this step leaves, the sum of x_j (d ln n_j)^2, is below this ..."""
 
 LAST_STEP = 1e-7
@@ -40,40 +43,42 @@ LN_RATIO = float(np.log(GAS_CONSTANT)) - LN_REFERENCE
 @dataclass(slots=True)
 class Columns:
     """Points under iteration. unknowns: rows z (K), m, ln T, ln p (p in bar), ln n (reacting). conditions: rows b (K),
-    inert amounts, their -sum n ln n, absent (K, 1 where the element is not there), then the closure's targets."""
+    inert amounts, their sum, their -sum n ln n, absent (K, 1 where the element is not there), then the closure's targets."""
 
     unknowns: Array
     conditions: Array
-
-    def put(self, where: Codes, other: Columns, source: slice) -> None:
-        """Overwrite the columns `where` by `source` of another set."""
-        self.unknowns[:, where] = other.unknowns[:, source]
-        self.conditions[:, where] = other.conditions[:, source]
 
     def keep(self, where: Codes) -> Columns:
         """Only the columns `where`."""
         return Columns(self.unknowns[:, where], self.conditions[:, where])
 
+    def joined(self, other: Columns) -> Columns:
+        """These columns, then those of `other`."""
+        return Columns(np.hstack([self.unknowns, other.unknowns]), np.hstack([self.conditions, other.conditions]))
 
-@dataclass(slots=True)
+
 class View:
-    """The columns by name (potentials: z and m), and what follows from them at once: T, n and the total p e^m of `Kernel`'s notation."""
+    """The rows of `Columns` by name (potentials: z and m), and what a step finds from them first: T, the total p e^m and the
+    thermodynamic functions of `Kernel`'s notation."""
 
-    potentials: Array
-    z: Array
-    m: Array
-    ln_T: Array
-    ln_p: Array
-    ln_n: Array
-    b: Array
-    gone: Array
-    amounts: Array
-    inert: Array
-    mixing: Array
-    targets: tuple[Array, ...]
     T: Array
     total: Array
     thermo: Thermo
+
+    def __init__(self, kernel: Kernel, columns: Columns) -> None:
+        u, c, k = columns.unknowns, columns.conditions, kernel.basis
+        inert = k + kernel.table.inert
+        self.kernel, self.columns = kernel, columns
+        self.potentials, self.z, self.m, self.ln_T, self.ln_p, self.ln_n = u[: k + 1], u[:k], u[k], u[k + 1], u[k + 2], u[k + 3 :]
+        self.amounts, self.b = c[:inert], c[:k]
+        self.inert, self.mixing, self.gone = c[inert], c[inert + 1], c[inert + 2 : inert + 2 + k]
+        self.targets = tuple(c[inert + 2 + k :])
+
+    def evaluate(self, functions: Array, out: Array) -> None:
+        """T, total and thermo for the present unknowns, in the room given."""
+        self.T = np.exp(self.ln_T)
+        self.total = np.exp(self.m + self.ln_p)
+        self.thermo = self.kernel.thermo(self.T, functions, out)
 
 
 class Step:
@@ -81,14 +86,15 @@ class Step:
 
     def __init__(self, kernel: Kernel, closure: Closure, points: int) -> None:
         self.kernel, self.closure = kernel, closure
+        self.reads_h, self.reads_s = closure.reads_h, closure.reads_s
         self.sides = 1 if closure.fixes_T and closure.fixes_p else 2 if closure.fixes_p else 3
         k, reacting = kernel.basis, kernel.table.reacting
         rows = FUNCTIONS + len(kernel.rows) + 6 * reacting + (k + 1) * (k + 1 + self.sides) + 3
         self.room = np.empty(rows * points)
-        self.resize(points)
+        self.view: View | None = None
 
-    def resize(self, points: int) -> None:
-        """Lay out the room for fewer columns."""
+    def _lay_out(self, points: int) -> None:
+        """Cut the room for so many columns."""
         k, reacting = self.kernel.basis, self.kernel.table.reacting
         used = 0
 
@@ -106,7 +112,11 @@ class Step:
 
     def __call__(self, columns: Columns) -> Flags:
         """Move the unknowns of `columns` in place; (N,) true where they have converged."""
-        at = self._view(columns)
+        if self.view is None or self.view.columns is not columns:
+            self.view = View(self.kernel, columns)
+            self._lay_out(columns.unknowns.shape[1])
+        at = self.view
+        at.evaluate(self.functions, self.thermo)
         self._distances(at)
         self._assemble(at)
         d_T: Array | float = 0.0
@@ -121,18 +131,6 @@ class Step:
         done = self._limit(at)
         columns.unknowns += self.change
         return done
-
-    def _view(self, columns: Columns) -> View:
-        u, c = columns.unknowns, columns.conditions
-        k, inert = self.kernel.basis, self.kernel.table.inert
-        end = k + inert
-        T = np.exp(u[k + 1])
-        total: Array = np.exp(u[k] + u[k + 2])
-        return View(
-            u[: k + 1], u[:k], u[k], u[k + 1], u[k + 2], u[k + 3 :], c[:k], c[end + 1 : end + 1 + k], c[:end], c[k:end].sum(0), c[end],
-            tuple(c[end + 1 + k :]), T, total,
-            self.kernel.thermo(T, self.functions, self.thermo),
-        )  # fmt: skip
 
     def _distances(self, at: View) -> None:
         """n, and r: how far each ln n_j is from its equilibrium with the potentials."""
@@ -169,25 +167,30 @@ class Step:
     def _local(self, at: View, pull: Array) -> Local:
         """Properties once the composition has followed to this T and p, and their equilibrium slopes."""
         k, x, th, R = self.kernel.basis, self.right, at.thermo, GAS_CONSTANT
-        formed = dot(th.h, self.n[k:] + self.nr[k:]) + dot(pull, x[:, 0])
-        cp = dot(th.h, self.nh) + dot(th.cp, self.n[k:]) + dot(pull, x[:, 1]) + dot(at.amounts, th.base_cp)
-        m = at.m + x[k, 0]
-        s = formed + dot(at.amounts, th.base_s) - dot(at.b, at.z + x[:k, 0]) + at.inert * m + at.mixing
-        v_T = 1.0 + x[k, 1]
+        pulled = (pull[:, None] * x).sum(0)
+        # the last row of `pull` is the sum of n h
+        formed = pull[k] + dot(self.nh, self.r[k:]) + pulled[0]
+        cp = dot(th.h, self.nh) + dot(th.cp, self.n[k:]) + dot(at.amounts, th.base_cp) + pulled[1]
+        m, v_T, RT, unread = at.m + x[k, 0], 1.0 + x[k, 1], R * at.T, at.T
         local = Local(
-            at.ln_T, at.ln_p + LN_REFERENCE, R * at.T * (formed + dot(at.amounts, th.base_h)), R * at.T * cp, 0.0,
-            R * s, R * cp, -R * at.total * v_T, LN_RATIO + at.ln_T + m, v_T, -1.0,
-        )  # fmt: skip
+            at.ln_T, at.ln_p + LN_REFERENCE, unread, RT * cp, 0.0, unread, R * cp, -R * at.total * v_T, LN_RATIO + at.ln_T + m, v_T, -1.0
+        )
+        if self.reads_h:
+            local.h = RT * (formed + dot(at.amounts, th.base_h))
+        if self.reads_s:
+            local.s = R * (formed + dot(at.amounts, th.base_s) - dot(at.b, at.z + x[:k, 0]) + at.inert * m + at.mixing)
         if self.sides > 2:
-            local.h_p, local.v_p = R * at.T * dot(pull, x[:, 2]), x[k, 2]
+            local.h_p, local.v_p = RT * pulled[2], x[k, 2]
         return local
 
     def _expand(self, at: View, d_T: Array | float, d_p: Array | float) -> None:
         """The change of all unknowns from those of ln T and ln p."""
         k, change, x = self.kernel.basis, self.change, self.right
         change[: k + 1] = x[:, 0]
-        for response, step in zip(x.transpose(1, 0, 2)[1:], (d_T, d_p), strict=False):
-            change[: k + 1] += response * step
+        if self.sides > 1:
+            change[: k + 1] += x[:, 1] * d_T
+        if self.sides > 2:
+            change[: k + 1] += x[:, 2] * d_p
         change[k + 1], change[k + 2] = d_T, d_p
         d = np.matmul(self.kernel.nu_and_one, change[: k + 1], out=change[k + 3 :])
         d += self.r
@@ -208,9 +211,12 @@ class Step:
         if fast.size:
             room = np.maximum((at.m + at.ln_p)[fast] - 2.0 - at.ln_n[:, fast], 2.0)
             size[fast] = np.maximum(size[fast], (d[:, fast] / room).max(0))
-        left = dot(np.multiply(d, self.n, out=self.r), d) < ERROR_LEFT * at.total
-        change /= np.maximum(size, 1.0)
-        done: Flags = left & (d_T < LAST_STEP) & (d_p < LAST_STEP) & (size <= 1.0)
+        left = dot(np.multiply(d, self.n, out=self.r), d)
+        done: Flags = (left < ERROR_LEFT * at.total) & (np.maximum(d_T, d_p) < LAST_STEP)
+        long = size > 1.0
+        if long.any():
+            change /= np.maximum(size, 1.0)
+            done &= ~long
         return done
 
 
@@ -218,71 +224,48 @@ def iterate(kernel: Kernel, kind: str, points: int, prepare: Callable[[slice], C
     """Converge N points of one closure.
 
     prepare gives the first guesses of a slice of the points, at most `POOL` of them. Returns the converged unknowns z, m,
-    ln T, ln p (K + 3, N), a flag and the number of iterations of each point. A pool of columns is iterated; a column
-    that is done leaves it unchanged from then on, so no point's answer depends on its neighbours.
+    ln T, ln p (K + 3, N), a flag and the number of iterations of each point. A column leaves the pool when it is done;
+    when few are left they are joined by the next slice, so that arrays stay long.
     """
     k = kernel.basis
-    result = np.full((k + 3, points), np.nan)
+    result = np.empty((k + 3, points))
     converged, counts = np.zeros(points, bool), np.zeros(points, np.int64)
     queue = Queue(prepare, points)
-    pool, live = queue.first()
-    age = np.zeros(live.size, np.int64)
-    closure = CLOSURES[kind]
-    step = Step(kernel, closure, live.size)
-    waiting = np.ones(live.size, bool)
-    while waiting.any():
-        done = step(pool)
-        age += 1
-        finished = np.flatnonzero(waiting & (done | (age >= MAX_ITERATIONS)))
-        if not finished.size:
-            continue
-        who = live[finished]
-        result[:, who] = np.where(done[finished], pool.unknowns[: k + 3, finished], np.nan)
-        converged[who], counts[who] = done[finished], age[finished]
-        refilled = queue.refill(pool, live, finished)
-        age[finished[:refilled]] = 0
-        waiting[finished[refilled:]] = False
-        left = int(np.count_nonzero(waiting))
-        if 0 < left < 0.7 * waiting.size:
-            keep = np.flatnonzero(waiting)
-            pool, live, age, waiting = pool.keep(keep), live[keep], age[keep], waiting[keep]
-            step.resize(left)
+    step = Step(kernel, CLOSURES[kind], min(points, POOL + FEW_LEFT))
+    while queue.fill():
+        done = step(queue.pool)
+        queue.age += 1
+        leave = done | (queue.age >= MAX_ITERATIONS)
+        if leave.any():
+            who = queue.live[leave]
+            result[:, who] = queue.pool.unknowns[: k + 3, leave]
+            converged[who], counts[who] = done[leave], queue.age[leave]
+            queue.keep(~leave)
+    result[:, ~converged] = np.nan
     return result, converged, counts
 
 
 class Queue:
-    """Points not yet in the pool; first guesses are made a pool's worth at a time."""
+    """The pool of columns, the points `live` in it and how often they were stepped; the points after `next_point` wait."""
 
     def __init__(self, prepare: Callable[[slice], Columns], points: int) -> None:
-        self.prepare, self.points = prepare, points
-        self.next_point = self.ready_from = self.ready_to = 0
-        self.ready: Columns | None = None
+        self.prepare, self.points, self.next_point = prepare, points, 0
+        self.live, self.age = np.zeros(0, np.int64), np.zeros(0, np.int64)
+        self.pool: Columns
 
-    def _make(self) -> Columns:
-        stop = min(self.next_point + POOL, self.points)
-        columns = self.prepare(slice(self.next_point, stop))
-        self.ready_from, self.ready_to = 0, stop - self.next_point
-        self.first_ready, self.next_point = self.next_point, stop
-        return columns
+    def fill(self) -> bool:
+        """Let the next slice in when few columns are left; whether there is anything to iterate."""
+        if self.live.size <= FEW_LEFT and self.next_point < self.points:
+            new = np.arange(self.next_point, min(self.next_point + POOL, self.points))
+            columns = self.prepare(slice(self.next_point, self.next_point + new.size))
+            self.pool = self.pool.joined(columns) if self.live.size else columns
+            self.live = np.concatenate([self.live, new])
+            self.age = np.concatenate([self.age, np.zeros(new.size, np.int64)])
+            self.next_point += new.size
+        return self.live.size > 0
 
-    def first(self) -> tuple[Columns, Codes]:
-        """The first pool and the points in it."""
-        columns = self._make()
-        live = np.arange(self.ready_to)
-        self.ready_from = self.ready_to
-        return columns, live
-
-    def refill(self, pool: Columns, live: Codes, free: Codes) -> int:
-        """Put waiting points into the free columns, as many as there are; the number placed."""
-        placed = 0
-        while placed < free.size and (self.ready_from < self.ready_to or self.next_point < self.points):
-            if self.ready_from == self.ready_to:
-                self.ready = self._make()
-            assert self.ready is not None
-            count = min(free.size - placed, self.ready_to - self.ready_from)
-            where, source = free[placed : placed + count], slice(self.ready_from, self.ready_from + count)
-            pool.put(where, self.ready, source)
-            live[where] = self.first_ready + np.arange(source.start, source.stop)
-            self.ready_from += count
-            placed += count
-        return placed
+    def keep(self, stay: Flags) -> None:
+        """Only the columns where `stay`."""
+        self.live, self.age = self.live[stay], self.age[stay]
+        if self.live.size:
+            self.pool = self.pool.keep(np.flatnonzero(stay))

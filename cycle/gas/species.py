@@ -47,8 +47,8 @@ PREFERRED_BASIS = ("H2O", "CO2", "N2", "O2", "H2", "CO")
 """Basis species in order of choice. Stable products keep the reduced matrix regular where the matrix of elements is
 singular: cold and stoichiometric."""
 
-FUNCTIONS, INSIDE_FUNCTIONS = 20, 14
-"""Number of functions of T, and of those that are not zero inside 200-6000 K."""
+FUNCTIONS, RANGE_FUNCTIONS = 20, 7
+"""Number of functions of T, and of those of one range of the polynomials: 200-1000 K, then 1000-6000 K, then the rest."""
 
 _LOW, _HIGH, _COLD, _HOT = slice(0, 7), slice(7, 14), slice(14, 17), slice(17, 20)
 _HELD = slice(0, 3)
@@ -90,20 +90,26 @@ def temperature_functions(temperature: Array, out: Array | None = None) -> Array
     seven from 1000 to 6000 K, and [1 1/t ln t] below 200 K and again above 6000 K, where cp is held.
     """
     f = np.empty((FUNCTIONS, temperature.size)) if out is None else out
-    t = f[3]
-    f[0] = 1.0
-    np.multiply(temperature, 1e-3, out=t)
-    np.divide(1.0, t, out=f[1])
-    np.log(t, out=f[2])
-    np.multiply(t, t, out=f[4])
-    np.multiply(f[4], t, out=f[5])
-    np.multiply(f[4], f[4], out=f[6])
+    range_functions(temperature, f[_LOW])
     upper, cold, hot = temperature >= MIDDLE, temperature < LOWEST, temperature > HIGHEST
     np.multiply(f[_HELD], cold, out=f[_COLD])
     np.multiply(f[_HELD], hot, out=f[_HOT])
     np.multiply(f[_LOW], upper & ~hot, out=f[_HIGH])
     f[_LOW] *= ~(upper | cold)
     return f
+
+
+def range_functions(temperature: Array, out: Array) -> Array:
+    """The seven functions of one range, whether or not T is inside it: `out` (7, N) filled from K, (N,)."""
+    one, inverse, logarithm, t, square, cube, fourth = out
+    one.fill(1.0)
+    np.multiply(temperature, 1e-3, out=t)
+    np.divide(1.0, t, out=inverse)
+    np.log(t, out=logarithm)
+    np.multiply(t, t, out=square)
+    np.multiply(square, t, out=cube)
+    np.multiply(square, square, out=fourth)
+    return out
 
 
 def range_of(temperature: Array) -> Codes:
@@ -191,6 +197,17 @@ class SpeciesTable:
     def inert(self) -> int:
         """Number of inert species."""
         return len(self.names) - self.reacting
+
+    def part(self, rows: Codes) -> SpeciesTable:
+        """The table of the species `rows` alone, in order; those left out must hold a basis species that is left out."""
+        basis = rows[rows < self.basis]
+        names = tuple(self.names[i] for i in rows)
+        reacting = int(np.sum(rows < self.reacting))
+        return SpeciesTable(
+            names, basis.size, reacting, self.elements, self.atoms[rows], self.molar_mass[rows],
+            np.ascontiguousarray(self.in_basis[np.ix_(rows[:reacting], basis)]), self.h[rows], self.s[rows], self.cp[rows],
+            self.fuel, self.fuel_in_basis[basis], {name: i for i, name in enumerate(names)},
+        )  # fmt: skip
 
     def moles(self, mole_fractions: Mapping[str, ArrayLike], n: int) -> Array:
         """(S, N) mol/kg from mole fractions (each scalar or (N,), scaled to a sum of 1). KeyError: unknown species."""

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Iterable
 from dataclasses import dataclass, fields, replace
+from operator import attrgetter
 from typing import Any
 
 import numpy as np
@@ -52,11 +53,15 @@ class State:
 
     def values(self) -> tuple[Array | None, ...]:
         """All fields in declaration order."""
-        return tuple(getattr(self, f.name) for f in fields(self))
+        found: tuple[Array | None, ...] = _FIELDS(self)
+        return found
 
     def flagged(self, bad: Flags, code: int = NOT_CONVERGED) -> State:
         """The same state with `code` wherever `bad` holds and it was usable so far."""
         return replace(self, range=np.where(bad & (self.range <= EXTRAPOLATED), code, self.range))
+
+
+_FIELDS = attrgetter(*(f.name for f in fields(State)))
 
 
 def state_from(columns: Iterable[Any]) -> State:
@@ -68,6 +73,19 @@ def merge(mask: Flags, first: State, second: State) -> State:
     """Points of `first` where `mask`, of `second` elsewhere; both hold all N points."""
     both = zip(first.values(), second.values(), strict=True)
     return state_from(None if a is None or b is None else np.where(mask, a, b) for a, b in both)
+
+
+def placed(mask: Flags, first: State, second: State) -> State:
+    """A state whose points where `mask` are those of `first`, and elsewhere those of `second`, each in order."""
+    both = zip(first.values(), second.values(), strict=True)
+    return state_from(None if a is None or b is None else _placed(mask, a, b) for a, b in both)
+
+
+def _placed(mask: Flags, first: Array, second: Array) -> Array:
+    whole = np.empty((*first.shape[:-1], mask.size), first.dtype)
+    whole[..., np.flatnonzero(mask)] = first
+    whole[..., np.flatnonzero(~mask)] = second
+    return whole
 
 
 def scatter(state: State, index: Codes, part: State) -> State:
