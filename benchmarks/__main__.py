@@ -1,4 +1,4 @@
-"""python -m benchmarks [--short] [--json] [gas | walks | screen ...]: each figure as a ratio with what it is compared to."""
+"""python -m benchmarks [--short] [--json] [gas | walks | march | screen ...]: each figure as a ratio with what it is compared to."""
 
 from __future__ import annotations
 
@@ -30,7 +30,12 @@ def _screen(short: bool) -> list[dict[str, object]]:
     return module.rows(short)
 
 
-PARTS: dict[str, Callable[[bool], list[dict[str, object]]]] = {"gas": _gas, "walks": _walks, "screen": _screen}
+def _march(short: bool) -> list[dict[str, object]]:
+    module = importlib.import_module("benchmarks.march")
+    return module.rows(short)
+
+
+PARTS: dict[str, Callable[[bool], list[dict[str, object]]]] = {"gas": _gas, "walks": _walks, "march": _march, "screen": _screen}
 
 
 def main(argv: list[str] | None = None) -> int:

@@ -14,7 +14,7 @@ if TYPE_CHECKING:
     from cycle.errors import CaseError
     from cycle.result import Walk, solve
 
-__version__ = "0.1.0"
+__version__ = "0.2.0"
 
 _HOME = {
     "Case": "cycle.case", "load": "cycle.case", "loads": "cycle.case", "CaseError": "cycle.errors", "Walk": "cycle.result",

@@ -67,7 +67,7 @@ def criticals(march: March, names: tuple[str, ...]) -> dict[str, State]:
 def thrust(march: March) -> Array:
     """Uninstalled thrust, N: (m u + p A)10 - (m u + p A)0 - p0 (A10 - A0)."""
     points = march.solved
-    end, start = march.named("nozzle"), march.named("flight")
+    end, start = march.reached("10"), march.named("flight")
     if end is None or start is None:
         return np.full(march.setting.size, np.nan)
     return spread(march, points, _force(end.taken(points).stream, start.taken(points).stream))
@@ -103,7 +103,7 @@ def performance(march: March) -> dict[str, Array]:
         last = march.records[-1].taken(points).stream
         entered = march.records[0].taken(points).stream
         return found | {"stream_thrust_gain": spread(march, points, last.stream_thrust - entered.stream_thrust)}
-    nozzle = march.named("nozzle")
+    nozzle = march.reached("10")
     if nozzle is None:
         return found | {"thrust": nothing}
     out, free = nozzle.taken(points).stream, march.records[0].taken(points).stream
@@ -116,6 +116,7 @@ def performance(march: March) -> dict[str, Array]:
         q = 0.5 * free.state.density * free.velocity**2
         derived = {
             "thrust": force,
+            "installed_thrust": force - external_drag(march),
             "specific_thrust": force / air,
             "specific_impulse": force / (STANDARD_GRAVITY * fuel),
             "thrust_specific_fuel_consumption": fuel / force,
@@ -129,13 +130,35 @@ def performance(march: March) -> dict[str, Array]:
     return found | derived | no_fuel
 
 
+def external_drag(march: March) -> Array:
+    """Additive and spill drag, N, (N,): NaN where the case has no lip geometry to know them by."""
+    inlet, diffuser = march.named("external compression"), march.named("isolator")
+    if inlet is None:
+        return np.full(march.setting.size, np.nan)
+    drag = spread(march, inlet.index, inlet.process.figures["additive_drag"])
+    if diffuser is None or "spilled_flow" not in diffuser.process.figures:
+        return drag
+    return drag + _spill_drag(march, diffuser)
+
+
+def _spill_drag(march: March, diffuser: Record) -> Array:
+    """Momentum that the spilled air has lost once it is back at ambient pressure; see `geometric_throat.spill_drag`."""
+    figures, points = diffuser.process.figures, diffuser.index
+    free = march.records[0].taken(points).stream
+    p0 = free.state.pressure
+    entropy = np.where(figures["spilled_flow"] > 0.0, figures["spilled_entropy"], free.state.entropy)
+    out = free.gas.at("sp", entropy, p0)
+    lost = free.velocity - states.velocity(free.total_enthalpy, out)
+    return spread(march, points, usable(out, figures["spilled_flow"] * lost))
+
+
 _NEEDS_FUEL = (
     "specific_impulse", "thrust_specific_fuel_consumption", "thermal_efficiency", "propulsive_efficiency", "overall_efficiency",
 )  # fmt: skip
 
 
 def _potential_gas(record: Record, march: March) -> Gas:
-    upstream = record.process.name in ("flight", "inlet", "isolator", "entry")
+    upstream = record.process.name in ("flight", "inlet", "external compression", "internal compression", "isolator", "entry")
     return case_gas(record.stream.gas, march.setting) if upstream else record.stream.gas
 
 
@@ -160,7 +183,7 @@ def potentials(march: March) -> list[Array]:
 
 def nozzle_thrust_coefficient(march: March, potential: list[Array]) -> Array:
     """Gross thrust of the exit over that of an isentropic expansion of the burner exit to ambient pressure; (N,)."""
-    nozzle, points = march.named("nozzle"), march.solved
+    nozzle, points = march.reached("10"), march.solved
     if nozzle is None or not potential or not points.size:
         return np.full(march.setting.size, np.nan)
     burner = next(i for i, r in enumerate(march.records) if r.process.name == "burner")
@@ -170,21 +193,18 @@ def nozzle_thrust_coefficient(march: March, potential: list[Array]) -> Array:
     return spread(march, points, gross / ideal)
 
 
-_POTENTIAL_LABELS = {
-    "inlet": "inlet", "isolator": "isolator", "gas change": "gas change", "burner": "burner gain",
-    "frozen chemistry": "frozen chemistry", "throat": "throat", "nozzle": "nozzle",
-}  # fmt: skip
+_POTENTIAL_LABELS = {"burner": "burner gain"}
 
 
 def potential_rows(march: March, potential: list[Array]) -> tuple[Row, ...]:
     """Where the thrust potential went, process by process to the thrust; the rows sum to it. For solved points."""
-    nozzle = march.named("nozzle")
+    nozzle = march.reached("10")
     if not potential or nozzle is None:
         return ()
     changes: dict[str, Array] = {}
     for record, before, after in zip(march.records[1:], potential[:-1], potential[1:], strict=True):
         changes[record.process.name] = changes.get(record.process.name, 0.0) + (after - before)
-    rows = [Row(name.replace(" ", "_"), _POTENTIAL_LABELS[name], value) for name, value in changes.items()]
+    rows = [Row(name.replace(" ", "_"), _POTENTIAL_LABELS.get(name, name), value) for name, value in changes.items()]
     points = march.solved
     out = nozzle.taken(points).stream
     sideways = spread(march, points, (out.axial_factor - 1.0) * out.mass_flow * out.velocity)
@@ -296,7 +316,7 @@ def exergy(march: March) -> tuple[Row, ...]:
     fuel's supply pressure and standard entropy are needed; at constant gamma its exergy is what it brings above the
     dead state.
     """
-    points, nozzle, burner = march.solved, march.named("nozzle"), march.named("burner")
+    points, nozzle, burner = march.solved, march.reached("10"), march.named("burner")
     if not points.size or nozzle is None or burner is None or march.named("flight") is None or not one_pair(march):
         return ()
     setting = march.setting.take(points)

@@ -7,8 +7,9 @@ from collections.abc import Callable, Iterable, Mapping, Sequence
 from dataclasses import dataclass
 from typing import Any
 
-from cycle.quantities import INPUTS, OUTPUTS, Input, Output
-from cycle.record import Json
+from cycle.glossary import ENTRY, HEAT, MARGINS
+from cycle.quantities import GROUP, INPUTS, OUTPUTS, Input, Output, cell
+from cycle.record import Json, case_value
 
 Value = float | str | bool | None
 
@@ -60,12 +61,13 @@ class Setting:
 
 @dataclass(frozen=True, slots=True)
 class Comparison:
-    """What `compare` found. headline and stations hold every figure that any side has
+    """What `compare` found. headline, margins of the modes and stations hold every figure that any side has
     (but for enthalpy and entropy where the gas models have different datums); settings only those that differ;
     notes: sentences on what limits the comparison."""
 
     sides: tuple[Side, ...]
     headline: tuple[Figure, ...]
+    margins: tuple[Figure, ...]
     stations: tuple[Figure, ...]
     settings: tuple[Setting, ...]
     notes: tuple[str, ...]
@@ -84,7 +86,7 @@ def compare(sides: Sequence[Side]) -> Comparison:
     figures = [o for o in OUTPUTS if o.where == "station" and not (o.key in _GAS_DATUM and _datums(sides) > 1)]
     for name in station_names(sides):
         stations += _figures(figures, name, [side.walk["stations"].get(name, {}) for side in sides])
-    return Comparison(tuple(sides), tuple(headline), tuple(stations), _settings(sides), tuple(_notes(sides)))
+    return Comparison(tuple(sides), tuple(headline), tuple(_margins(sides)), tuple(stations), _settings(sides), tuple(_notes(sides)))
 
 
 def _datums(sides: Iterable[Side]) -> int:
@@ -103,13 +105,39 @@ def _figures(outputs: Iterable[Output], station: str, tables: Sequence[Json]) ->
     return [row for row in rows if not all(math.isnan(v) for v in row.values)]
 
 
+def _margins(sides: Sequence[Side]) -> list[Figure]:
+    """Margins of the modes, and the heat at which each mode ends where every side's heat is the same input."""
+    isolators: list[Json] = [next((p["figures"] for p in s.walk["processes"] if p.get("name") == "isolator"), {}) for s in sides]
+    found = _figures([ENTRY[f"process.{key}"] for key in MARGINS], "", [{f"process.{k}": v for k, v in f.items()} for f in isolators])
+    heats = {frozenset(s.walk["case"].get("combustor", {})) & _HEATS for s in sides}
+    if len(heats) == 1:
+        found += _figures(HEAT, "", [{f"heat.{k}": v for k, v in s.walk.get("heat_limits", {}).items()} for s in sides])
+    return found
+
+
+_HEATS = frozenset(key.rpartition(".")[2] for member in GROUP["combustor.heat"].members for key in member.keys)
+
+
 def _figure(value: Any) -> float:
     return math.nan if value is None else float(value)
 
 
 def _settings(sides: Sequence[Side]) -> tuple[Setting, ...]:
-    rows = (Setting(i, tuple(s.walk["case"].get(i.section, {}).get(i.name) for s in sides)) for i in INPUTS)
+    cases = [side.walk["case"] for side in sides]
+    rows = (row for entry in INPUTS for row in _setting(entry, [case_value(case, entry) for case in cases]))
     return tuple(row for row in rows if any(v != row.values[0] for v in row.values))
+
+
+def _setting(entry: Input, values: Sequence[Any]) -> Iterable[Setting]:
+    """An input with its values, or its cells where it has rows."""
+    if entry.kind != "rows":
+        yield Setting(entry, tuple(values))
+        return
+    tables = [value or [] for value in values]
+    for i in range(max(map(len, tables))):
+        for column in entry.columns:
+            cells = tuple(table[i].get(column.key) if i < len(table) else None for table in tables)
+            yield Setting(cell(entry.key, i + 1, column.key), cells)
 
 
 def _notes(sides: Sequence[Side]) -> Iterable[str]:

@@ -97,11 +97,13 @@ def _crossings(march: March, points: Codes) -> list[Crossing]:
                 Crossing(process.name, process.start, process.end, nothing, nothing, nothing, nothing, nothing, {}, False, True, changed)
             )
         else:
+            paid = booking.mass_added > 0.0
             energy = booking.fuel_flow * booking.fuel_enthalpy - booking.wall_heat
             impulse = booking.fuel_impulse - booking.friction + booking.wall_force
             found.append(
                 Crossing(
-                    process.name, process.start, process.end, booking.mass_added, energy, impulse, _fuel_entropy(march, points),
+                    process.name, process.start, process.end, booking.mass_added, energy, impulse,
+                    np.where(paid, _fuel_entropy(march, points), 0.0),
                     booking.wall_heat, _fuel_atoms(march), process.solves_momentum, False, changed,
                 )
             )  # fmt: skip

@@ -4,15 +4,16 @@ from __future__ import annotations
 
 import difflib
 import math
-from collections.abc import Callable
-from dataclasses import dataclass
-from typing import TYPE_CHECKING
+from collections.abc import Callable, Iterable, Mapping
+from dataclasses import dataclass, replace
+from typing import TYPE_CHECKING, Any
 
-from cycle import formula
+from cycle import formula, glossary
 from cycle.constants import GAS_CONSTANT, STANDARD_GRAVITY
 from cycle.errors import DuctwalkError
-from cycle.quantities import GROUPS, INPUTS, MODES, OUTPUTS, STATUSES, Group, Input, Output
-from cycle.units import si_unit
+from cycle.quantities import GROUPS, INPUTS, MODES, OUTPUTS, STATUSES, Group, Input, Output, input_of
+from cycle.record import heat_limit_words
+from cycle.units import format_number, si_unit
 
 if TYPE_CHECKING:
     from cycle.result import Walk
@@ -25,6 +26,7 @@ CONSTANTS: dict[str, tuple[float, str, str]] = {
 
 _STATION = {o.symbol: o for o in OUTPUTS if o.where == "station"}
 _PERFORMANCE = {o.symbol: o for o in OUTPUTS if o.where == "performance"}
+_FIGURES = {o.key.partition(".")[2]: o for o in glossary.PROCESS_FIGURES}
 _AGREES = 1e-6  # of the value: a worked equation is shown only where it gives the emitted figure
 
 
@@ -62,7 +64,7 @@ class Term:
 
 @dataclass(frozen=True, slots=True)
 class Number:
-    """A quantity in one walk. where: the station, "" for a figure of the whole engine; value in SI, nan where `reason` says
+    """A quantity in one walk. where: "station 4", "burner 3 to 4", "x 0.3 m", "" for the whole engine; value in SI, nan where `reason` says
     why there is none; worked: the equation with numbers, "" where it is in words; terms: the numbers that enter it."""
 
     where: str
@@ -93,24 +95,29 @@ def _long(name: str) -> str:
     return name.strip().lower().replace(" ", "_").replace("-", "_")
 
 
-_ENTRIES: tuple[Entry, ...] = (*OUTPUTS, *INPUTS, *GROUPS, *_words())
+_COLUMNS = tuple(replace(c, key=f"{i.key}.{c.key}", label=f"{i.label}, {c.label}", when=i.when) for i in INPUTS for c in i.columns)
+_ENTRIES: tuple[Entry, ...] = (*OUTPUTS, *INPUTS, *_COLUMNS, *GROUPS, *glossary.ENTRIES, *_words())
 _WAYS: tuple[Callable[[Entry, str], bool], ...] = (
     lambda entry, name: _key(entry) == name,
     lambda entry, name: _symbol(entry) == name,
     lambda entry, name: _long(_key(entry)) == _long(name),
     lambda entry, name: _long(_label(entry)) == _long(name),
-    lambda entry, name: isinstance(entry, Input | Group) and _long(_key(entry).split(".")[1]) == _long(name),
+    lambda entry, name: _long(_key(entry).rpartition(".")[2]) == _long(name),
     lambda entry, name: bool(_symbol(entry)) and _symbol(entry).lower() == name.strip().lower(),
 )
 """Ways in which a name can be meant, the strictest first."""
 
 
 def find(name: str) -> tuple[Entry, ...]:
-    """Entries that `name` means: by long key, symbol or label of an output, an input, a group of inputs, a status or a mode.
+    """Entries that `name` means: by long key, symbol or label of an output, an input, a cell of rows, a group of inputs, a figure of a
+    process, a limit, a row of an account, a status or a mode.
 
     Returns one or more (a symbol may stand for several), those of the strictest way that finds any.
     Raises UnknownQuantityError with the nearest names.
     """
+    cell = input_of(name)
+    if cell is not None and cell.key not in {_key(e) for e in _ENTRIES}:
+        return (cell,)
     for way in _WAYS:
         found = tuple(entry for entry in _ENTRIES if name.strip() and way(entry, name))
         if found:
@@ -132,8 +139,8 @@ def _nearest(name: str) -> tuple[str, ...]:
 
 def related(entry: Entry) -> tuple[Entry, ...]:
     """Other entries that share the last part of the key: the input `flight.mach` beside the output `mach`."""
-    last = _key(entry).split(".")[-1]
-    return tuple(e for e in _ENTRIES if e is not entry and _key(e).split(".")[-1] == last)
+    last = _key(entry).rpartition(".")[2]
+    return tuple(e for e in _ENTRIES if e is not entry and e not in glossary.PROFILE and _key(e).rpartition(".")[2] == last)
 
 
 def group_of(entry: Input) -> Group | None:
@@ -142,23 +149,110 @@ def group_of(entry: Input) -> Group | None:
 
 
 def numbers(entry: Output, walk: Walk) -> tuple[Number, ...]:
-    """The quantity in a walk of one point: one Number a station, or one for the engine.
+    """The quantity in a walk of one point: one Number a station, a process or a few places along the duct, or one for the engine.
 
-    walk: of shape (). A figure without a value comes with its reason.
+    walk: of shape (). A figure without a value comes with its reason; () where this walk has no such figure.
     """
-    if entry.where == "station":
-        return tuple(_number(entry, walk, name) for name in walk.station)
-    return (_number(entry, walk, ""),)
+    return tuple(_NUMBERS[entry.where](entry, walk))
+
+
+def _of_stations(entry: Output, walk: Walk) -> Iterable[Number]:
+    return (_number(entry, walk, name) for name in walk.station)
+
+
+def _of_engine(entry: Output, walk: Walk) -> Iterable[Number]:
+    yield _number(entry, walk, "")
 
 
 def _number(entry: Output, walk: Walk, where: str) -> Number:
     value = float(getattr(walk.station[where] if where else walk.performance, entry.key))
+    place = f"station {where}" if where else ""
     if not math.isfinite(value):
-        return Number(where, math.nan, walk.reason if where else walk.why_not(entry.key), "", ())
+        return Number(place, math.nan, walk.reason if where else walk.why_not(entry.key), "", ())
     entering = entry.equation.partition(" at ")[2] or entry.equation
     found = {s: _term(s, walk, where) for s in formula.symbols(entering)}
-    terms = tuple(t for t in found.values() if t is not None and math.isfinite(t.value))
-    return Number(where, value, "", _worked(entry, value, terms), terms)
+    return _with_terms(entry, place, value, (t for t in found.values() if t is not None))
+
+
+def _with_terms(entry: Output, where: str, value: float, terms: Iterable[Term]) -> Number:
+    known = tuple(t for t in terms if math.isfinite(t.value))
+    return Number(where, value, "", _worked(entry, value, known), known)
+
+
+def _of_processes(entry: Output, walk: Walk) -> Iterable[Number]:
+    for process in walk.processes:
+        for key, given in process.figures.items():
+            declared, value = glossary.process_figure(key), float(given)
+            if declared is None or declared.key != entry.key:
+                continue
+            number = key.rpartition("_")[2]
+            where = f"{process.name} {process.start} to {process.end}" + (f", {number}" if number.isdigit() else "")
+            if math.isfinite(value):
+                yield _with_terms(entry, where, value, _figure_terms(entry, process.figures))
+            else:
+                yield Number(where, math.nan, glossary.no_value(key), "", ())
+
+
+def _figure_terms(entry: Output, figures: Mapping[str, Any]) -> Iterable[Term]:
+    """Figures of the same process that enter the equation."""
+    for symbol in formula.symbols(entry.equation):
+        declared = glossary.process_figure(symbol)
+        if declared is not None and symbol in figures:
+            yield Term(symbol, declared.label, float(figures[symbol]), si_unit(declared.unit))
+
+
+def _of_limits(entry: Output, walk: Walk) -> Iterable[Number]:
+    for limit in walk.limits:
+        if f"limit.{limit.key}" != entry.key:
+            continue
+        if math.isnan(limit.margin):
+            yield Number("", math.nan, limit.restore, "", ())
+        else:
+            sides = (("actual", limit.label, limit.actual), ("allowed", "at most" if limit.upper else "at least", limit.allowed))
+            terms = (Term(symbol, label, float(value), si_unit(limit.unit)) for symbol, label, value in sides)
+            yield _with_terms(entry, "", float(limit.margin), terms)
+
+
+def _of_heat(entry: Output, walk: Walk) -> Iterable[Number]:
+    name = entry.key.partition(".")[2]
+    if name in walk.heat_limits:
+        value = walk.heat_limits[name]
+        known = math.isfinite(value)
+        yield Number("", value if known else math.nan, "" if known else heat_limit_words(value), "", ())
+
+
+def _of_accounts(entry: Output, walk: Walk) -> Iterable[Number]:
+    name, _, key = entry.key.partition(".")
+    rows = {"potential": "potentials", "loss": "losses", "exergy": "exergy"}[name]
+    found = {row.key: float(row.value) for row in getattr(walk, rows)}
+    if key in found:
+        yield Number("", found[key], "", "", ())
+    elif not found:
+        yield Number("", math.nan, walk.why_not("losses" if rows == "potentials" else rows), "", ())
+
+
+def _of_duct(entry: Output, walk: Walk) -> Iterable[Number]:
+    """The quantity at both ends of the duct and where it is least and most."""
+    if not walk.profile:
+        return
+    x, values = walk.profile["x"], walk.profile[entry.key.rpartition(".")[2]]
+    rows = [i for i in range(len(x)) if math.isfinite(x[i]) and math.isfinite(values[i])]
+    ends = (min(rows, key=lambda i: values[i]), max(rows, key=lambda i: values[i])) if rows else ()
+    for i in sorted({*rows[:1], *ends, *rows[-1:]}):
+        yield Number(f"x {format_number(float(x[i]))} m", float(values[i]), "", "", ())
+
+
+_NUMBERS: dict[str, Callable[[Output, Walk], Iterable[Number]]] = {
+    "station": _of_stations,
+    "performance": _of_engine,
+    "process": _of_processes,
+    "profile": _of_duct,
+    "limit": _of_limits,
+    "heat": _of_heat,
+    "potential": _of_accounts,
+    "loss": _of_accounts,
+    "exergy": _of_accounts,
+}
 
 
 def _worked(entry: Output, value: float, terms: tuple[Term, ...]) -> str:
@@ -212,5 +306,5 @@ def see_also(entries: tuple[Entry, ...]) -> tuple[str, ...]:
 
 
 def _entering(entry: Output) -> tuple[Output, ...]:
-    table = _PERFORMANCE if entry.where == "performance" else _STATION
+    table = {"performance": _PERFORMANCE, "process": _FIGURES}.get(entry.where, _STATION)
     return tuple(table[s] for s in formula.symbols(entry.equation) if s in table)

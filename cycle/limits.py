@@ -13,9 +13,9 @@ import numpy as np
 from cycle.account import spread
 from cycle.arrays import Array
 from cycle.flow import roots
-from cycle.flowpath import combustor
+from cycle.flowpath import assembly, combustor, inlet_limits
 from cycle.flowpath.setting import Setting
-from cycle.flowpath.stream import SOLVED
+from cycle.flowpath.stream import SOLVED, Stream
 from cycle.gas.species import HIGHEST, LOWEST
 from cycle.walk import March
 
@@ -63,7 +63,15 @@ def state_of(margin: float) -> str:
 def limits(walked: March, largest_heat: float | None = None) -> tuple[Limit, ...]:
     """All limits of a march, in fixed order. largest_heat: the heat input at which the burner chokes, where known."""
     flight = _flight(walked) if walked.named("flight") is not None else ()
-    return (*flight, *_burner(walked), _choking(walked, largest_heat), *_hot(walked), *_nozzle(walked), *_NOT_YET(walked))
+    return (
+        *flight,
+        *_burner(walked),
+        _choking(walked, largest_heat),
+        *_hot(walked),
+        *_nozzle(walked),
+        *_inlet_geometry(walked),
+        *_modes(walked),
+    )
 
 
 def _at(walked: March, station: str, figure: str) -> Array:
@@ -87,8 +95,10 @@ def _flight(walked: March) -> tuple[Limit, ...]:
 
 
 def _inlet_key(setting: Setting) -> str:
+    if setting.choices["start"] == "entry":
+        return "entry.pressure"
     end = setting.choices.get("inlet.end")
-    return "entry.pressure" if end is None else f"inlet.{end}"
+    return "flight.mach" if end is None else f"inlet.{end}"
 
 
 def _burner(walked: March) -> tuple[Limit, ...]:
@@ -129,8 +139,15 @@ def heat_words(setting: Setting) -> tuple[str, str]:
 def _choking(walked: March, largest: float | None) -> Limit:
     setting, key = walked.setting, heat_key(walked.setting)
     label, unit = heat_words(setting)
+    duct = setting.choices["combustor.process"] == "duct"
     allowed = np.full(setting.size, np.nan if largest is None else largest)
-    missing = "no choking within the range of the input" if largest is not None and np.isnan(largest) else "solved for one point only"
+    missing = (
+        "see the unstart margin"
+        if duct
+        else "no choking within the range of the input"
+        if largest is not None and np.isnan(largest)
+        else "solved for one point only"
+    )
     less = "less heat, a faster burner entry (less compression), or a larger burner area"
     return Limit("thermal_choking", f"thermal choking, {label}", setting[key], allowed, unit, True, less, key, missing)
 
@@ -163,21 +180,97 @@ def _nozzle(walked: March) -> tuple[Limit, ...]:
     if walked.named("flight") is None or walked.setting.choices["nozzle.exit"] == "absent":
         return ()
     setting = walked.setting
-    ratio = _at(walked, "10", "pressure") / _at(walked, "0", "pressure")
     key = f"nozzle.{setting.choices['nozzle.exit']}"
-    return (Limit("nozzle_separation", "nozzle separation, p10/p0", ratio, setting["limits.nozzle_separation"], "ratio", False,
+    station = "9" if walked.reached("9") is not None else "10"
+    ratio = _at(walked, station, "pressure") / _at(walked, "0", "pressure")
+    return (Limit("nozzle_separation", f"nozzle separation, p{station}/p0", ratio, setting["limits.nozzle_separation"], "ratio", False,
                   "a smaller exit or a higher exit pressure", key),)  # fmt: skip
 
 
-def _NOT_YET(walked: March) -> tuple[Limit, ...]:
-    nothing = np.full(walked.setting.size, np.nan)
+def _of(walked: March, process: str, figure: str) -> Array:
+    """A figure of a process over all points, NaN where it has none."""
+    record = walked.named(process)
+    if record is None or figure not in record.process.figures:
+        return np.full(walked.setting.size, np.nan)
+    return spread(walked, record.index, record.process.figures[figure])
+
+
+def _share(walked: March, key: str, label: str, margin: Array, restore: str, goto: str, missing: str) -> Limit:
+    """A limit that a process gives as a margin: actual is 1 - margin of what is allowed."""
+    return Limit(key, label, 1.0 - margin, np.ones(walked.setting.size), "ratio", True, restore, goto, missing)
+
+
+def _inlet_geometry(walked: March) -> tuple[Limit, ...]:
+    """Attached shocks, separation in the inlet and the start of its internal contraction."""
+    setting, flight = walked.setting, walked.named("flight")
+    if flight is None:
+        return ()
+    nothing = np.full(setting.size, np.nan)
     lacking = (
-        ("start", "inlet start", "needs the internal contraction"),
+        ("attached", "attached inlet shocks", "needs inlet geometry"),
         ("separation", "shock separation in the inlet", "needs inlet geometry"),
-        ("isolator_length", "isolator length", "needs an isolator"),
+        ("start", "inlet start", "needs the internal contraction of an inlet geometry"),
     )
-    inlet = lacking if walked.named("flight") is not None else lacking[2:]
-    return tuple(Limit(k, label, nothing, nothing, "ratio", True, why, "", why) for k, label, why in inlet)
+    missing = tuple(Limit(k, label, nothing, nothing, "ratio", True, why, "", why) for k, label, why in lacking)
+    if setting.choices.get("inlet.quality") != "geometry" or not flight.index.size:
+        return missing
+    inlet = assembly.solved_inlet(_whole_capture(walked), setting.take(flight.index))
+    found = inlet_limits.bounds(inlet)
+    key = {"ramp": "inlet.ramp.1.angle", "cone": "inlet.cone.half_angle", "isentropic_ramp": "inlet.isentropic_ramp.turning"}
+    goto = key[setting.choices["inlet.compression"]]
+    words = {"attached": "less turning or a faster flight", "separation": "more and weaker shocks", "start": "less internal contraction"}
+    rows = []
+    for name, label, why in lacking:
+        own = [b for b in found if b.key == name]
+        if not own:
+            rows.append(
+                Limit(
+                    name,
+                    label,
+                    nothing,
+                    nothing,
+                    "ratio",
+                    True,
+                    "",
+                    "",
+                    "no such shock meets a boundary layer" if name == "separation" else why,
+                )
+            )
+            continue
+        worst = np.fmin.reduce([b.margin for b in own])
+        at = next((b for b in own if b.stage and np.array_equal(b.margin, worst, equal_nan=True)), own[0])
+        stage = f", {at.stage}" if at.stage else ""
+        to = "inlet.internal_contraction" if name == "start" else goto
+        rows.append(_share(walked, name, f"{label}{stage}", spread(walked, flight.index, worst), words[name], to, "no such state"))
+    return tuple(rows)
+
+
+def _whole_capture(walked: March) -> Stream:
+    """Station 0 with the flow of the whole capture area, as the inlet's geometry takes it."""
+    record = walked.records[0]
+    stream = record.stream
+    area = walked.setting.take(record.index)["engine.capture_area"]
+    return replace(stream, mass_flow=stream.flux * area)
+
+
+def _modes(walked: March) -> tuple[Limit, ...]:
+    """Separation in the duct, unstart, isolator length, and what the throat passes."""
+    setting, heat = walked.setting, heat_key(walked.setting)
+    less = "less heat, or a larger burner area behind the injection"
+    rows = []
+    separation, unstart = (_of(walked, "isolator", f"{name}_margin") for name in ("separation", "unstart"))
+    if setting.choices["combustor.process"] == "duct":
+        rows += [
+            _share(walked, "duct_separation", "attached burner flow, peak pressure", separation, less, heat, "no attached flow"),
+            _share(walked, "unstart", "unstart, impulse at burner entry", unstart, less, heat, "no critical section"),
+        ]
+    if setting.has("nozzle.throat_area"):
+        capacity, label = _of(walked, "isolator", "throat_margin"), "throat capacity, supercritical margin"
+        rows.append(_share(walked, "throat_capacity", label, capacity, "a larger throat or less heat", "nozzle.throat_area", "no match"))
+    why = "no shock train" if setting.has("isolator.momentum_thickness") else "needs isolator.momentum_thickness"
+    length, longer = _of(walked, "isolator", "isolator_margin"), "a longer isolator or less heat"
+    rows.append(_share(walked, "isolator_length", "isolator length, shock train", length, longer, "isolator.length", why))
+    return tuple(rows)
 
 
 _SCAN = 25

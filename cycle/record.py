@@ -15,7 +15,8 @@ from typing import TYPE_CHECKING, Any
 
 from cycle.atomic import replace_file
 from cycle.errors import CaseError, Fault
-from cycle.quantities import INPUTS, OUTPUTS
+from cycle.glossary import ENTRIES, mode_of, no_value, process_figure
+from cycle.quantities import INPUTS, OUTPUTS, Input
 from cycle.units import si_unit
 
 if TYPE_CHECKING:
@@ -31,8 +32,11 @@ Json = dict[str, Any]
 
 _STATION_KEYS = tuple(o.key for o in OUTPUTS if o.where == "station")
 _PERFORMANCE_KEYS = tuple(o.key for o in OUTPUTS if o.where == "performance")
+ENTERING = ("mach", "pressure", "temperature", "velocity", "dynamic_pressure", "mass_flow")
+"""Figures of the first station that a point of a trajectory has."""
+
 _PARTS: dict[str, type] = {
-    "case": dict, "status": str, "mode": str, "stations": dict, "performance": dict, "losses": list, "limits": list,
+    "case": dict, "status": str, "mode": str, "stations": dict, "processes": list, "performance": dict, "losses": list, "limits": list,
     "audit": dict, "referee": dict, "units": dict, "reasons": dict,
 }  # fmt: skip
 
@@ -50,6 +54,10 @@ def record(walk: Walk, referee: bool = False) -> Json:
     for name in ("losses", "exergy"):
         if not getattr(walk, name):
             reasons[name] = walk.why_not(name)
+    processes = [_process(p) for p in walk.processes]
+    reasons |= {f"processes.{p['name']}.{k}": no_value(k) for p in processes for k, v in p["figures"].items() if v is None}
+    heat = {name: _number(value) for name, value in walk.heat_limits.items()}
+    reasons |= {f"heat_limits.{name}": heat_limit_words(walk.heat_limits[name]) for name, value in heat.items() if value is None}
     return {
         "format": FORMAT,
         "case": case_record(walk.case),
@@ -59,7 +67,9 @@ def record(walk: Walk, referee: bool = False) -> Json:
         "reason": str(walk.reason),
         "failed_process": str(walk.failed_process),
         "stations": stations,
-        "processes": [_process(p) for p in walk.processes],
+        "processes": processes,
+        "profile": profile_record(walk),
+        "heat_limits": heat,
         "performance": performance,
         "potentials": [_row(r) for r in walk.potentials],
         "losses": [_row(r) for r in walk.losses],
@@ -67,8 +77,32 @@ def record(walk: Walk, referee: bool = False) -> Json:
         "limits": [_limit(limit) for limit in walk.limits],
         "audit": _audit(walk),
         "referee": _referee(walk, referee),
-        "units": {o.key: si_unit(o.unit) for o in OUTPUTS} | {i.key: si_unit(i.unit) for i in INPUTS if i.kind == "number"},
+        "units": _units(),
         "reasons": reasons,
+    }
+
+
+def flown(walk: Walk, trajectory: str, inputs: Mapping[str, Any]) -> Json:
+    """A batch along a trajectory as plain data: the case, and its points in order, null for what has no value.
+
+    walk: of shape (N,). trajectory: its name; inputs: key -> values (N,), SI.
+    """
+    first: Mapping[str, Any] = next(iter(walk.station.values()), {})
+    tables = {"performance": (_PERFORMANCE_KEYS, walk.performance), "entering": (ENTERING, first)}
+    status, mode, reason = walk.status, walk.mode, walk.reason
+    points = []
+    for i in range(walk.size):
+        figures = {name: {k: _number(table[k][i]) if k in table else None for k in keys} for name, (keys, table) in tables.items()}
+        words = {"status": str(status[i]), "mode": str(mode[i]), "reason": str(reason[i])}
+        points.append({"inputs": {key: _number(values[i]) for key, values in inputs.items()}, **words, **figures})
+    return {
+        "format": FORMAT,
+        "case": case_record(walk.case),
+        "trajectory": trajectory,
+        "status": next((p["status"] for p in points if p["status"] != "solved"), "solved"),
+        "points": points,
+        "audit": {"ok": bool(walk.audit.ok), "worst": _residual(walk.audit.worst)},
+        "units": _units(),
     }
 
 
@@ -82,14 +116,32 @@ def case_record(case: Case) -> Json:
 
     Returns a mapping of the shape of a case file, which is itself a valid case once written as TOML.
     """
-    tables: Json = {"format": FORMAT, "title": case.title}
+    heads: Json = {"format": FORMAT, "title": case.title}
     if case.notes:
-        tables["notes"] = case.notes
-    for stated in case.inputs():
-        if stated.value is not None:
-            value = dict(stated.value) if isinstance(stated.value, Mapping) else stated.value
-            tables.setdefault(stated.input.section, {})[stated.input.name] = value
-    return tables
+        heads["notes"] = case.notes
+    return heads | case.tables()
+
+
+def heat_limit_words(value: float) -> str:
+    """Why a heat limit is no number. value: inf or NaN."""
+    return "not reached within the range of the input" if value == math.inf else "not known: the heat is no fuel ratio"
+
+
+def profile_record(walk: Walk) -> Json:
+    """The flow along the duct of one point by column, SI; only rows that have a place, null for what has no value there.
+
+    walk: of shape (). Returns {} where the burner is no duct or has no solution.
+    """
+    if not walk.profile:
+        return {}
+    placed = [i for i, x in enumerate(walk.profile["x"]) if math.isfinite(x)]
+    return {name: [_number(values[i]) for i in placed] for name, values in walk.profile.items()}
+
+
+def _units() -> Json:
+    """Units of every key of the record, cells of rows as "table.column"."""
+    units = {o.key: si_unit(o.unit) for o in (*OUTPUTS, *ENTRIES)} | {i.key: si_unit(i.unit) for i in INPUTS if i.kind == "number"}
+    return units | {f"{i.key}.{c.key}": si_unit(c.unit) for i in INPUTS for c in i.columns}
 
 
 def _number(value: Any) -> float | None:
@@ -104,8 +156,9 @@ def _station(station: Any) -> Json:
 
 
 def _process(process: Any) -> Json:
-    figures = {key: _number(value) for key, value in process.figures.items()}
-    return {"name": process.name, "label": process.label, "start": process.start, "end": process.end, "figures": figures}
+    figures = {key: _number(value) for key, value in process.figures.items() if process_figure(key)}
+    ends = {"start": process.start, "end": process.end, "mode": mode_of(process.figures)}
+    return {"name": process.name, "label": process.label, **ends, "figures": figures}
 
 
 def _row(row: Any) -> Json:
@@ -223,34 +276,65 @@ def _check_figures(walk: Json, file: str) -> None:
     for name, station in walk["stations"].items():
         if not isinstance(station, dict):
             raise _fault(file, f"walk.stations.{name}", "not a stored walk: no table of figures")
+    for i, process in enumerate(walk["processes"]):
+        if not isinstance(process, dict) or not isinstance(process.get("figures"), dict):
+            raise _fault(file, f"walk.processes.{i}", "not a stored walk: no table of figures")
+        _check_table(process["figures"], process["figures"], f"walk.processes.{i}.figures", file)
+    heat = walk.get("heat_limits", {})  # walks of version 0.1.0 may lack it
+    if not isinstance(heat, dict):
+        raise _fault(file, "walk.heat_limits", "not a stored walk: no table of figures")
+    _check_table(heat, heat, "walk.heat_limits", file)
     tables = {f"walk.stations.{n}": (s, _STATION_KEYS) for n, s in walk["stations"].items()}
     for where, (table, keys) in (tables | {"walk.performance": (walk["performance"], _PERFORMANCE_KEYS)}).items():
-        for key in keys:
-            if not _is_figure(table.get(key)):
-                raise _fault(file, f"{where}.{key}", "neither a number nor null", repr(table.get(key))[:40])
+        _check_table(table, keys, where, file)
     _check_inputs(walk["case"], file)
+
+
+def _check_table(table: Json, keys: Iterable[str], where: str, file: str) -> None:
+    for key in keys:
+        if not _is_figure(table.get(key)):
+            raise _fault(file, f"{where}.{key}", "neither a number nor null", repr(table.get(key))[:40])
 
 
 def _check_inputs(case: Json, file: str) -> None:
     """Refuse a case whose tables hold anything but numbers where numbers belong and words elsewhere."""
     for entry in INPUTS:
-        table = case.get(entry.section, {})
-        if not isinstance(table, dict):
+        value = case_value(case, entry)
+        if value is _NO_TABLE:
             raise _fault(file, f"walk.case.{entry.section}", "not a table of a case")
-        value = table.get(entry.name)
         if value is not None and not _KINDS[entry.kind](value):
             raise _fault(file, f"walk.case.{entry.key}", f"no {entry.kind}", repr(value)[:40])
+
+
+_NO_TABLE = object()
+
+
+def case_value(case: Json, entry: Input) -> Any:
+    """What a case's record says of an input: SI number, text, True, mole fractions, rows; None where it says nothing.
+
+    case: `case_record`. Returns an object of no use where something else stands in the place of the input's table.
+    """
+    table: Any = case
+    for name in entry.section.split("."):
+        table = table.get(name, {}) if isinstance(table, dict) else _NO_TABLE
+    return table.get(entry.name) if isinstance(table, dict) else _NO_TABLE
 
 
 def _is_figure(value: Any) -> bool:
     return value is None or (isinstance(value, int | float) and not isinstance(value, bool) and abs(value) <= sys.float_info.max)
 
 
+def _is_row(row: Any) -> bool:
+    return isinstance(row, dict) and all(_is_figure(x) and x is not None for x in row.values())
+
+
+LONGEST_TABLE = max(i.most for i in INPUTS)
 _KINDS: dict[str, Callable[[Any], bool]] = {
     "number": _is_figure,
     "choice": lambda value: isinstance(value, str),
     "text": lambda value: isinstance(value, str),
     "flag": lambda value: isinstance(value, bool),
+    "rows": lambda value: isinstance(value, list) and len(value) <= LONGEST_TABLE and all(_is_row(row) for row in value),
     "fractions": lambda value: isinstance(value, dict) and all(_is_figure(x) and x is not None for x in value.values()),
 }
 

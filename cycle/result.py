@@ -15,12 +15,12 @@ from cycle import limits as margins
 from cycle.account import spread, usable
 from cycle.arrays import Array, ArrayLike
 from cycle.figures import Figures, Station, shaped
-from cycle.flowpath import combustor
+from cycle.flowpath import assembly, combustor
 from cycle.flowpath.setting import FIXED_IN_BATCH, setting
 from cycle.flowpath.stream import SOLVED, STATUS_NAMES
 from cycle.gas.state import State
 from cycle.quantities import INPUT, OUTPUTS, RESTORES, STATUSES
-from cycle.walk import March, Record, march
+from cycle.walk import March, Record, march, modes
 
 if TYPE_CHECKING:
     from cycle.case import Case
@@ -87,12 +87,6 @@ class Audit:
     worst: Residual
 
 
-_LABELS = {
-    "inlet": "inlet", "isolator": "isolator", "gas change": "gas change", "burner": "burner", "frozen chemistry": "frozen chemistry",
-    "throat": "throat", "nozzle": "nozzle",
-}  # fmt: skip
-
-
 class Walk:
     """A solved case: stations, processes, accounts, limits, audit. Dear figures are computed when first asked for."""
 
@@ -115,13 +109,7 @@ class Walk:
     @property
     def mode(self) -> Any:
         """The mode found, a key of `quantities.MODES`; an object array for a batch."""
-        found = np.full(self.size, "none", dtype=object)
-        if self.march.chain[0] == "entry":
-            found[self.march.solved] = "rig"
-        else:
-            fast = self.march.setting.choices.get("nozzle.throat") == "none"
-            found[self.march.solved] = "scramjet" if fast else "ramjet-critical"
-        return self._words(list(found))
+        return self._words(modes(self.march))
 
     @property
     def failed_process(self) -> Any:
@@ -143,7 +131,23 @@ class Walk:
             label, _ = margins.heat_words(self.march.setting)
             if np.isfinite(self._largest):
                 words = f"{words}; largest {label} here {self._largest:.4g}"
+        if name == "unstarted" and self.heat_limits:
+            words = f"{words}; {self._unstart_words()}"
         return f"{words}; {RESTORES[name]}"
+
+    def _unstart_words(self) -> str:
+        """What the unstart comes from: the heat, or an isolator shorter than its shock train."""
+        label, _ = margins.heat_words(self.march.setting)
+        most = self.heat_limits.get("unstart", np.nan)
+        if not np.isfinite(most):
+            return (
+                "no heat below the search's end starts it"
+                if self.heat_limits
+                else "the heat at which it starts is solved for one duct only"
+            )
+        if float(self.march.setting[margins.heat_key(self.march.setting)][0]) < most:
+            return "its shock train is longer than the isolator"
+        return f"largest {label} before unstart {most:.4g}"
 
     @cached_property
     def _records(self) -> dict[str, Record]:
@@ -204,10 +208,26 @@ class Walk:
     def processes(self) -> tuple[Process, ...]:
         """What each component did, in order along the stream."""
         return tuple(
-            Process(r.process.name, _LABELS[r.process.name], r.process.start, r.process.end, Figures(self._done(i), self.shape))
+            Process(r.process.name, r.process.name, r.process.start, r.process.end, Figures(self._done(i), self.shape))
             for i, r in enumerate(self.march.records)
             if i > 0
         )
+
+    @cached_property
+    def profile(self) -> dict[str, Any]:
+        """The flow along the duct by name, x in m from the burner entry: (R,) for one point, (R, *shape) in a batch; NaN behind the
+        last row of a point that has fewer. Empty where the burner is no duct."""
+        record = self.march.named("burner")
+        if record is None or not record.process.profile:
+            return {}
+        x = record.process.profile["x"]
+        order, longest = np.argsort(x, axis=0, kind="stable"), int(np.isfinite(x).sum(0).max(initial=0))
+        found = {}
+        for name, rows in record.process.profile.items():
+            whole = np.full((longest, self.size), np.nan)
+            whole[:, record.index] = np.take_along_axis(rows, order, 0)[:longest]
+            found[name] = whole[:, 0] if self.shape == () else whole.reshape(longest, *self.shape)
+        return found
 
     def _done(self, position: int) -> dict[str, Callable[[], Array]]:
         record = self.march.records[position]
@@ -286,7 +306,7 @@ class Walk:
         if self.march.chain[0] == "entry" and key != "stream_thrust_gain":
             return "a rig has no flight thrust"
         if key == "installed_thrust":
-            return "additive and spill drag need inlet geometry"
+            return "additive and spill drag need the inlet's lip"
         if key == "altitude":
             return "pressure and temperature are given, not a place in the standard atmosphere"
         if key == "total_temperature_rise_efficiency":
@@ -340,7 +360,7 @@ class Walk:
         key = margins.heat_key(self.march.setting)
         bound = INPUT[key]
         assert bound.upper is not None
-        if "3" not in self._records:
+        if "3" not in self._records or self.march.setting.choices["combustor.process"] == "duct":
             return np.nan
         return margins.largest_heat(self.march, min(bound.upper, _SEARCH[key]))
 
@@ -349,6 +369,25 @@ class Walk:
         if self.shape != ():
             raise ValueError("largest_heat is solved for one point")
         return self._largest
+
+    @cached_property
+    def heat_limits(self) -> dict[str, float]:
+        """The heat input, SI, at which one duct leaves each regime: "attached-separates", "attached-chokes" (no attached flow),
+        "train" (no shock train) and "unstart"; inf where it is not reached, empty where the burner is no duct. Solved for when
+        first asked; one point only."""
+        walked = self.march
+        record = walked.named("gas change") or walked.reached("2")
+        if self.shape != () or walked.setting.choices["combustor.process"] != "duct" or record is None or not record.index.size:
+            return {}
+        unit = self._unit_of_heat()
+        found = assembly.largest_ratios(record.stream, walked.setting, _SEARCH[margins.heat_key(walked.setting)] * unit)
+        return {name: ratio / unit for name, ratio in found.items()}
+
+    def _unit_of_heat(self) -> float:
+        """Fuel-air ratio of one unit of the heat input; NaN where it is no ratio."""
+        setting = self.march.setting
+        units = {"equivalence_ratio": float(setting.stoichiometric_ratio[0]), "fuel_air_ratio": 1.0}
+        return units.get(setting.choices["combustor.heat"], np.nan)
 
     @cached_property
     def limits(self) -> tuple[Limit, ...]:

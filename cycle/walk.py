@@ -6,17 +6,19 @@ Points that fail drop out where they fail; the rest go on. Nothing here knows a 
 from __future__ import annotations
 
 from collections.abc import Callable
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from functools import partial
 
 import numpy as np
 
 from cycle.arrays import Array, Codes
-from cycle.flowpath import combustor, flight, inlet, nozzle
+from cycle.flowpath import assembly, combustor, flight, inlet, nozzle
 from cycle.flowpath.setting import Setting
-from cycle.flowpath.stream import SOLVED, Process, Step, Stream
+from cycle.flowpath.stream import SOLVED, Process, Step, Steps, Stream
 from cycle.gas.base import Gas
 from cycle.gas.frozen import FrozenGas
+from cycle.gas.state import scatter
+from cycle.quantities import MODES
 
 
 @dataclass(frozen=True, slots=True)
@@ -51,6 +53,10 @@ class March:
         """Indices of the points that came through every process."""
         return np.flatnonzero(self.status == SOLVED)
 
+    def reached(self, station: str) -> Record | None:
+        """The record that first reached a station; None where no point did."""
+        return self.stations().get(station)
+
     def named(self, name: str) -> Record | None:
         """The record of a process; None where no point came through it."""
         return next((r for r in self.records if r.process.name == name), None)
@@ -70,7 +76,7 @@ class March:
         return record.stream.state.pressure[np.searchsorted(record.index, points)]
 
 
-Part = Callable[[Stream, Setting], Step | None]
+Part = Callable[[Stream, Setting], Step | Steps | None]
 
 
 def _as_station_3(stream: Stream, setting: Setting) -> Step:
@@ -82,10 +88,11 @@ def _burn(stream: Stream, setting: Setting) -> Step:
     return combustor.burner(combustor.burner_gas(stream, setting), setting)
 
 
-def _to_combustion(stream: Stream, setting: Setting) -> Step | None:
-    if not setting.constant_gamma:
-        return None
-    return combustor.gas_change(stream, combustor.combustion_cp(setting), "3")
+def _to_combustion(station: str) -> Part:
+    def change(stream: Stream, setting: Setting) -> Step | None:
+        return combustor.gas_change(stream, combustor.combustion_cp(setting), station) if setting.constant_gamma else None
+
+    return change
 
 
 def _to_expansion(stream: Stream, setting: Setting) -> Step | None:
@@ -94,26 +101,42 @@ def _to_expansion(stream: Stream, setting: Setting) -> Step | None:
     return combustor.gas_change(stream, combustor.expansion_cp(setting), "4")
 
 
-def _freeze(stream: Stream, setting: Setting) -> Step | None:
-    frozen = nozzle.nozzle_gas(stream, setting)
-    if frozen is stream:
-        return None
-    return Step(frozen, Process("frozen chemistry", "4", "4"), np.zeros(setting.size, np.int64))
+def _freeze(station: str) -> Part:
+    def freeze(stream: Stream, setting: Setting) -> Step | None:
+        frozen = nozzle.nozzle_gas(stream, setting, station)
+        if frozen is stream:
+            return None
+        return Step(frozen, Process("frozen chemistry", station, station), np.zeros(setting.size, np.int64))
+
+    return freeze
+
+
+def _entry(setting: Setting) -> list[tuple[str, Part]]:
+    """From station 0 to 2: the inlet, by performance or by geometry."""
+    if setting.choices["start"] != "flight":
+        return []
+    by_geometry = setting.choices["inlet.quality"] == "geometry"
+    return [("inlet", assembly.inlet_by_geometry if by_geometry else inlet.inlet)]
+
+
+def _to_burner_exit(setting: Setting) -> list[tuple[str, Part]]:
+    """From station 2 (or a rig's 3) to 4."""
+    if setting.choices["combustor.process"] == "duct":
+        return [("gas change", _to_combustion("2")), ("duct", assembly.duct)]
+    at_3 = setting.choices["start"] == "entry" and setting.choices["entry.station"] == "3"
+    diffuser = assembly.diffuser if setting.has("nozzle.throat_area") else _as_station_3
+    isolator: list[tuple[str, Part]] = [] if at_3 else [("isolator", diffuser)]
+    return [*isolator, ("gas change", _to_combustion("3")), ("burner", _burn)]
 
 
 def _parts(setting: Setting) -> list[tuple[str, Part]]:
     """The processes that this case's stream goes through, in order, after it has entered."""
-    parts: list[tuple[str, Part]] = []
-    if setting.choices["start"] == "flight":
-        parts += [("inlet", inlet.inlet), ("isolator", _as_station_3)]
-    elif setting.choices["entry.station"] == "2":
-        parts += [("isolator", _as_station_3)]
-    parts += [("gas change", _to_combustion), ("burner", _burn)]
+    parts = [*_entry(setting), *_to_burner_exit(setting)]
     if setting.choices["nozzle.exit"] == "absent":
         return parts
-    parts += [("gas change", _to_expansion), ("frozen chemistry", _freeze)]
-    if setting.choices["nozzle.throat"] == "sized":
-        parts.append(("throat", nozzle.throat))
+    parts += [("gas change", _to_expansion), ("frozen chemistry", _freeze("4"))]
+    if nozzle.has_throat(setting):
+        parts += [("throat", nozzle.throat), ("frozen chemistry", _freeze("5"))]
     return parts
 
 
@@ -125,11 +148,11 @@ def march(setting: Setting) -> March:
     for name, part in _parts(setting):
         walked.take(name, partial(_continue, walked, part))
     if setting.choices["nozzle.exit"] != "absent":
-        walked.take("nozzle", lambda s: nozzle.nozzle(walked.stream, s, walked.ambient()))
+        walked.take("nozzle", lambda s: assembly.expansion(walked.stream, s, walked.ambient()))
     return walked.march()
 
 
-def _continue(walked: _Walked, part: Part, setting: Setting) -> Step | None:
+def _continue(walked: _Walked, part: Part, setting: Setting) -> Step | Steps | None:
     return part(walked.stream, setting)
 
 
@@ -156,29 +179,81 @@ class _Walked:
             return np.full(self.alive.shape, np.nan)
         return first.stream.state.pressure[np.searchsorted(first.index, self.alive)]
 
-    def take(self, name: str, part: Callable[[Setting], Step | None]) -> None:
-        """Let the walking points go through one process; those that fail stop here."""
+    def take(self, name: str, part: Callable[[Setting], Step | Steps | None]) -> None:
+        """Let the walking points go through one part; those that fail stop there."""
         if not self.alive.size:
             self.chain.append(name)
             return
         whole = self.alive.size == self.setting.size
-        step = part(self.setting if whole else self.setting.take(self.alive))
-        if step is None:
+        given = part(self.setting if whole else self.setting.take(self.alive))
+        if given is None:
             return
-        self.chain.append(name)
-        through = step.status == SOLVED
-        self.status[self.alive] = step.status
+        found = given if isinstance(given, Steps) else Steps((given,))
+        self._change_ahead(found)
+        keep = np.arange(self.alive.size)
+        for step in found.steps:
+            keep = self._record(step, keep)
+
+    def _record(self, step: Step, keep: Codes) -> Codes:
+        """Record one step of the points `keep` of those that entered the part; which of them come through."""
+        self.chain.append(step.process.name)
+        status = step.status[keep]
+        through = status == SOLVED
+        self.status[self.alive] = status
         self.failed[self.alive[~through]] = len(self.chain) - 1
-        if not through.all():
-            keep = np.flatnonzero(through)
-            step = Step(step.stream.take(keep), step.process.take(keep), step.status[keep])
-            self.alive = self.alive[keep]
-        if self.alive.size:
-            self.records.append(Record(step.process, self.alive, step.stream))
+        self.alive, keep = self.alive[through], keep[through]
+        if keep.size:
+            everyone = keep.size == step.status.size
+            part = step if everyone else Step(step.stream.take(keep), step.process.take(keep), step.status[keep])
+            self.records.append(Record(part.process, self.alive, part.stream))
+        return keep
+
+    def _change_ahead(self, found: Steps) -> None:
+        """Give the stations ahead the mass flow that is captured, and the streams that the solution has changed."""
+        if found.captured is None and not found.replaced:
+            return
+        entered = np.flatnonzero(found.steps[0].status == SOLVED)
+        solved = np.flatnonzero(np.all([s.status == SOLVED for s in found.steps], axis=0))
+        for i, record in enumerate(self.records):
+            stream = record.stream
+            if found.captured is not None:
+                flow = stream.mass_flow.copy()
+                flow[np.searchsorted(record.index, self.alive[entered])] *= found.captured[entered]
+                stream = replace(stream, mass_flow=flow)
+            if record.process.end in found.replaced:
+                at = np.searchsorted(record.index, self.alive[solved])
+                new = found.replaced[record.process.end].take(solved)
+                stream = _with_points(stream, at, new)
+            self.records[i] = Record(record.process, record.index, stream)
 
     def march(self) -> March:
         """What was walked."""
         return March(self.setting, self.status, self.failed, tuple(self.chain), tuple(self.records))
+
+
+def _with_points(stream: Stream, at: Codes, new: Stream) -> Stream:
+    """The stream with the points `at` in their new state; the gas of a point does not change."""
+    columns = {name: getattr(stream, name).copy() for name in ("velocity", "mass_flow", "axial_factor")}
+    for name, column in columns.items():
+        column[at] = getattr(new, name)
+    return Stream(stream.gas, scatter(stream.state, at, new.state), **columns)
+
+
+def modes(march: March) -> list[str]:
+    """The engine mode found at each point, a key of `quantities.MODES`."""
+    found = ["none"] * march.setting.size
+    record = march.named("isolator")
+    names = [] if record is None else [k.removeprefix("mode_") for k in record.process.figures if k.startswith("mode_")]
+    for point in march.solved:
+        if march.chain[0] == "entry":
+            found[point] = "rig"
+        elif record is not None and names:
+            at = int(np.searchsorted(record.index, point))
+            own = next(n for n in names if record.process.figures[f"mode_{n}"][at] == 1.0)
+            found[point] = own if own in MODES else f"ramjet-{own}"
+        else:
+            found[point] = "ramjet-critical" if nozzle.has_throat(march.setting) else "scramjet"
+    return found
 
 
 def case_gas(gas: Gas, setting: Setting) -> Gas:

@@ -9,7 +9,7 @@ import pytest
 import cycle
 from cycle.compare import Comparison, Side, compare, station_names
 from cycle.record import record
-from tests.tui.command_support import CHOKED, HOT, QUICK
+from tests.tui.command_support import CHOKED, DUCT, HOT, QUICK
 
 
 def side(text: str, name: str = "x", version: str = "1", species_data: str = "a") -> Side:
@@ -71,6 +71,33 @@ def test_a_failed_walk_is_said_and_its_gaps_are_nan() -> None:
     (thrust,) = [f for f in found.headline if f.output.key == "thrust"]
     assert math.isnan(thrust.values[1]) and math.isnan(thrust.changes()[1])
     assert station_names(found.sides) == ("0", "2", "3", "4", "10")
+
+
+def test_rows_are_compared_cell_by_cell_and_margins_by_mode() -> None:
+    two = 'x = "5 cm"\nshare = 0.5\n[[combustor.injector]]\nx = 0.1\nshare = 0.5'
+    longer = DUCT.replace("area_ratio = 1.8", "area_ratio = 2.0").replace('x = "5 cm"', two)
+    found = compare([side(DUCT, "short"), side(longer, "long")])
+    assert {s.input.key: s.values for s in found.settings} == {
+        "combustor.area.3.area_ratio": (1.8, 2.0),
+        "combustor.injector.1.share": (1.0, 0.5),
+        "combustor.injector.2.x": (None, 0.1),
+        "combustor.injector.2.share": (None, 0.5),
+        "combustor.injector.2.axial_speed": (None, 0.0),
+    }
+    margins = {f.output.key: f.values for f in found.margins}
+    assert margins["heat.unstart"][1] != margins["heat.unstart"][0] > 0.0
+    assert set(margins) >= {"process.separation_margin", "process.isolator_margin", "heat.train"}
+
+
+def test_borders_of_different_heat_inputs_are_not_compared() -> None:
+    other = DUCT.replace("equivalence_ratio = 0.4", "fuel_air_ratio = 0.0117")
+    keys = {f.output.key for f in compare([side(DUCT), side(other)]).margins}
+    assert "process.separation_margin" in keys
+    assert "heat.unstart" not in keys
+
+
+def test_walks_without_modes_to_match_have_no_margins() -> None:
+    assert compare([side(HOT), side(QUICK)]).margins == ()
 
 
 def test_one_walk_cannot_be_compared() -> None:

@@ -8,14 +8,15 @@ import os
 from pathlib import Path
 from typing import Any
 
+import numpy as np
 import pytest
 import tomlkit
 
 import cycle
 from cycle.errors import CaseError
 from cycle.gas.species import data_hash
-from cycle.record import LARGEST_FILE, case_record, dumps, is_stored, read_stored, record, stored, write
-from tests.tui.command_support import CHOKED, HOT, QUICK, RAMJET, RIG
+from cycle.record import LARGEST_FILE, case_record, dumps, flown, is_stored, read_stored, record, stored, write
+from tests.tui.command_support import CHOKED, DETACHED, DUCT, DUCT_RIG, HOT, QUICK, RAMJET, RIG, THROAT
 
 
 @pytest.fixture(scope="module")
@@ -23,7 +24,7 @@ def kept() -> dict[str, Any]:
     return stored(cycle.solve(cycle.loads(HOT, "hot")), "1.2.3")
 
 
-@pytest.mark.parametrize("text", [QUICK, HOT, CHOKED, RAMJET, RIG])
+@pytest.mark.parametrize("text", [QUICK, HOT, CHOKED, RAMJET, RIG, DUCT, DUCT_RIG, DETACHED, THROAT])
 def test_the_case_of_a_record_is_the_case_solved(text: str) -> None:
     case = cycle.loads(text)
     again = cycle.loads(tomlkit.dumps(case_record(case)))
@@ -104,6 +105,15 @@ def changed(kept: dict[str, Any], path: str, value: Any) -> bytes:
         ("walk/stations/4/pressure", "high", "walk.stations.4.pressure: neither a number nor null: given 'high'"),
         ("walk/performance/thrust", True, "walk.performance.thrust: neither a number nor null"),
         ("walk/performance/thrust", 10**400, "walk.performance.thrust: neither a number nor null"),
+        ("walk/processes", {}, "walk.processes: not a stored walk"),
+        ("walk/processes", [7], "walk.processes.0: not a stored walk"),
+        ("walk/processes", [{"figures": {"friction": "some"}}], "walk.processes.0.figures.friction: neither a number nor null"),
+        ("walk/heat_limits", [], "walk.heat_limits: not a stored walk"),
+        ("walk/heat_limits", {"unstart": "never"}, "walk.heat_limits.unstart: neither a number nor null"),
+        ("walk/case/inlet", {"cone": 7}, "walk.case.inlet.cone: not a table of a case"),
+        ("walk/case/inlet", {"ramp": 7}, "walk.case.inlet.ramp: no rows: given 7"),
+        ("walk/case/combustor", {"area": [{"x": "far"}]}, "walk.case.combustor.area: no rows"),
+        ("walk/case/combustor", {"area": [{}] * 65}, "walk.case.combustor.area: no rows"),
         ("walk/case/flight", 8.0, "walk.case.flight: not a table of a case"),
         ("walk/case/flight/mach", "fast", "walk.case.flight.mach: no number: given 'fast'"),
         ("walk/case/flight/mach", 10**400, "walk.case.flight.mach: no number"),
@@ -115,6 +125,35 @@ def test_what_is_no_stored_walk_is_refused_with_the_place(kept: dict[str, Any], 
     with pytest.raises(CaseError) as caught:
         read_stored(changed(kept, path, value), "odd.json")
     assert str(caught.value).startswith(f"odd.json: {said}")
+
+
+def test_a_stored_walk_without_borders_of_the_heat_is_read(kept: dict[str, Any]) -> None:
+    (back,) = read_stored(changed(kept, "walk/heat_limits", None), "older.json")
+    assert "heat_limits" not in back.walk
+
+
+def test_a_duct_is_recorded_with_profile_and_rows() -> None:
+    walk = cycle.solve(cycle.loads(DUCT))
+    found = record(walk)
+    placed = np.isfinite(walk.profile["x"])
+    assert found["profile"]["mach"] == list(walk.profile["mach"][placed])
+    assert found["case"]["combustor"]["area"][2] == {"x": 1.2, "area_ratio": 1.8}
+    assert found["heat_limits"] == walk.heat_limits
+    assert "combustor.injector.1.share" in found["defaults"]
+    failed = record(cycle.solve(cycle.loads(DETACHED)))
+    assert (failed["profile"], failed["heat_limits"]) == ({}, {})
+
+
+def test_points_of_a_flight_are_those_of_the_batch() -> None:
+    mach = np.array([2.0, 8.0])
+    walk = cycle.solve(cycle.loads(DETACHED), {"flight.mach": mach})
+    found = flown(walk, "two", {"flight.mach": mach})
+    assert [p["status"] for p in found["points"]] == ["detached", "solved"]
+    assert found["status"] == "detached"
+    assert found["points"][0]["performance"]["thrust"] is None
+    assert found["points"][1]["performance"]["thrust"] == walk.performance.thrust[1]
+    assert [p["entering"]["mach"] for p in found["points"]] == list(walk.station["0"].mach)
+    assert json.loads(dumps(found)) == found
 
 
 @pytest.mark.parametrize("content", [b"", b"\xff\xfe", b"[]", b'{"a": NaN}', b"[" * 200_000, b" " * (LARGEST_FILE + 1), b'{"a"'])

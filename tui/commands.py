@@ -19,7 +19,7 @@ from tui.output import STANDARD_INPUT, emit, load_case, prepare_streams, shipped
 
 PROGRAM = "ductwalk"
 BAD_INPUT, INTERRUPTED = 2, 130
-LATER = ("study", "optimise", "report", "fix-geometry")
+LATER = ("study", "optimise", "report")
 """Commands that are planned and refused in this version."""
 
 _CASE = "case file (TOML), or - for standard input"
@@ -69,6 +69,14 @@ def _solve_options(parser: argparse.ArgumentParser) -> None:
     )  # fmt: skip
     forms = ("text", "json", "csv", "markdown")
     parser.add_argument("--format", type=_one_of(*forms), default="text", metavar="|".join(forms), help="form of the output")
+    parser.add_argument(
+        "--rows", type=_one_of("stations", "duct"), default="stations", metavar="stations|duct",
+        help="what a row of the CSV is: a station, or a place along the duct",
+    )  # fmt: skip
+    parser.add_argument(
+        "--along", metavar="TRAJECTORY",
+        help="fly the cases along a CSV file of inputs (header of keys such as flight.mach, flight.altitude [km]) and print a row a point",
+    )  # fmt: skip
     _units(parser)
     parser.add_argument("--referee", action="store_true", help="recompute the states independently (slow) and show the deviation")
     parser.add_argument("-o", dest="output", metavar="FILE", help="store the walks with case, version and species-data hash")
@@ -92,14 +100,21 @@ def _explain_options(parser: argparse.ArgumentParser) -> None:
     parser.add_argument("case", nargs="?", metavar="CASE", help="case whose numbers go into the equation")
 
 
+def _fix_options(parser: argparse.ArgumentParser) -> None:
+    parser.add_argument("case", metavar="CASE", help=_CASE)
+    parser.add_argument("-o", dest="output", metavar="FILE", help="write a new file instead of standard output")
+
+
 def _compare_options(parser: argparse.ArgumentParser) -> None:
     parser.add_argument("cases", nargs="+", metavar="CASE", help="case files or stored walks; the first is the reference")
     _units(parser)
 
 
 def _solve(options: argparse.Namespace) -> int:
-    from tui.solve import run
-
+    if options.along:
+        from tui.along import run
+    else:
+        from tui.solve import run
     return run(options)
 
 
@@ -119,17 +134,35 @@ def _check(options: argparse.Namespace) -> int:
 def _new(options: argparse.Namespace) -> int:
     from cycle.case import template
 
-    text = template("entry" if options.rig else "flight")
-    if not options.output:
+    _write_new(template("entry" if options.rig else "flight"), options.output)
+    return 0
+
+
+def _write_new(text: str, path: str | None) -> None:
+    """A case to a file that is not there yet, or to standard output."""
+    if not path:
         emit(text)
-        return 0
+        return
     try:
-        with open(options.output, "x", encoding="utf-8") as file:
+        with open(path, "x", encoding="utf-8") as file:
             file.write(text)
     except OSError as error:
-        raise CaseError((Fault(options.output, "", f"cannot be written: {error.strerror}"),)) from error
-    tell(f"written: {options.output}")
-    return 0
+        raise CaseError((Fault(path, "", f"cannot be written: {error.strerror}"),)) from error
+    tell(f"written: {path}")
+
+
+def _fix(options: argparse.Namespace) -> int:
+    from cycle.fixing import fixed_case
+    from tui.solve import exit_status, outcome
+
+    found = outcome(options.case, {})
+    if found.walk is None or found.walk.status != "solved":
+        return exit_status(found)
+    fixed = fixed_case(found.walk)
+    if fixed is found.walk.case:
+        tell(f"{options.case}: nothing to fix, the case is a fixed flowpath already")
+    _write_new(fixed.text, options.output)
+    return exit_status(found)
 
 
 def _schema(options: argparse.Namespace) -> int:
@@ -157,6 +190,7 @@ COMMANDS: dict[str, tuple[str, Options, Callable[[argparse.Namespace], int]]] = 
     "solve": ("solve cases and print their walks", _solve_options, _solve),
     "compare": ("set cases or stored walks side by side", _compare_options, _compare),
     "explain": ("meaning, equation and source of a quantity, with a case's numbers", _explain_options, _explain),
+    "fix-geometry": ("print the fixed flowpath that a sized case amounts to, as a new case", _fix_options, _fix),
     "check": ("validate cases without solving them", _check_options, _check),
     "new": ("print a new case with every key explained", _new_options, _new),
     "schema": ("print the JSON Schema of case files", _schema_options, _schema),

@@ -64,6 +64,8 @@ def comparison_blocks(found: Comparison, system: str) -> list[Block]:
     blocks += [Lines(found.notes)] if found.notes else []
     blocks += [Heading("Inputs that differ"), _settings(found.settings, letters, system)]
     blocks += [Heading("Performance"), _headline(found.headline, letters, system)]
+    if found.margins:
+        blocks += [Heading("Margins of the modes"), _margins(found.margins, letters)]
     for i in range(1, len(found.sides)):
         blocks += [Heading(f"Stations: change from A to {letters[i]}, % or in the unit named"), _station_changes(found, i, system)]
     return [*blocks, Heading("Caution"), Lines((CAUTION,))]
@@ -91,6 +93,12 @@ def _headline(figures: Iterable[Figure], letters: str, system: str) -> Block:
         cells = [cell for i in range(len(letters)) for cell in _cells(row, i, system)]
         rows.append((row.output.label, unit_label(row.output.unit, system, row.output.key), *cells))
     return Table(("", "unit", *heads), tuple(rows), left=(1,))
+
+
+def _margins(figures: Iterable[Figure], letters: str) -> Block:
+    """Margins and borders side by side; a change of a margin in percent would say nothing."""
+    rows = ((row.output.label, *(format_number(value) for value in row.values)) for row in figures)
+    return Table(("", *letters), tuple(rows))
 
 
 def _cells(row: Figure, i: int, system: str) -> tuple[str, ...]:

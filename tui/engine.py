@@ -1,7 +1,9 @@
-"""The one thread that computes. It takes the newest solve, drops older ones, and does the other jobs in order.
+"""The threads that compute: one for what an edit asks for, one for the second pass, which must not hold an edit up.
 
-The model (`cycle` and numpy) is imported in this thread, after the first paint. The thread never touches a widget: it
-hands frozen results to `post`, which must be safe to call from a thread.
+The first lane takes the newest solve, drops older ones, and does the other jobs in order. The second takes what costs more
+than a walk (limits, the borders of a duct's regimes), and begins only while the first has nothing to do. The model (`cycle`
+and numpy) is imported in the first lane, after the first paint. No thread touches a widget: they hand frozen results to
+`post`, which must be safe to call from a thread.
 """
 
 from __future__ import annotations
@@ -14,8 +16,9 @@ from typing import Any
 
 Job = Callable[[], Any]
 
-DROPPED = ("solve", "assess")
-"""Kinds of which only the newest job counts, in the order they are taken up."""
+QUICK = ("solve",)
+SECOND = ("assess", "borders")
+"""Kinds of which only the newest job counts, in the order they are taken up: those of the first and of the second lane."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -30,52 +33,64 @@ class Result:
 
 
 class Engine:
-    """A worker thread with one place for the newest job of each kind that may be dropped, and a queue for the others.
+    """Two worker threads with one place for the newest job of each kind that may be dropped, and a queue for the others.
 
-    Parameters: post, called in the worker with each `Result`.
+    Parameters: post, called in a worker with each `Result`.
     """
 
     def __init__(self, post: Callable[[Result], object]) -> None:
         self._post = post
         self._change = threading.Condition()
-        self._newest: dict[str, tuple[int, Job] | None] = dict.fromkeys(DROPPED)
+        self._newest: dict[str, tuple[int, Job] | None] = dict.fromkeys((*QUICK, *SECOND))
         self._queue: deque[tuple[str, int, Job]] = deque()
-        self._thread = threading.Thread(target=self._run, name="engine", daemon=True)
+        self._busy = False
+        takers = {"engine": self._next_quick, "second pass": self._next_second}
+        self._threads = [threading.Thread(target=self._run, args=(take,), name=name, daemon=True) for name, take in takers.items()]
 
     def start(self) -> None:
-        """Start the thread; call it after the first paint."""
-        self._thread.start()
+        """Start the threads; call it after the first paint."""
+        for thread in self._threads:
+            thread.start()
 
     def newest(self, kind: str, generation: int, job: Job) -> None:
-        """Ask for a job of a kind in `DROPPED`; one of that kind that waits and has not begun is replaced."""
+        """Ask for a job of a kind in `QUICK` or `SECOND`; one of that kind that waits and has not begun is replaced."""
         with self._change:
             self._newest[kind] = (generation, job)
-            self._change.notify()
+            self._change.notify_all()
 
     def do(self, kind: str, generation: int, job: Job) -> None:
         """Ask for a job that is never dropped; jobs run in the order asked, before those that may be dropped."""
         with self._change:
             self._queue.append((kind, generation, job))
-            self._change.notify()
+            self._change.notify_all()
 
-    def _waiting(self) -> str | None:
-        return next((kind for kind in DROPPED if self._newest[kind] is not None), None)
+    def _waiting(self, kinds: tuple[str, ...]) -> str | None:
+        return next((kind for kind in kinds if self._newest[kind] is not None), None)
 
-    def _next(self) -> tuple[str, int, Job]:
+    def _taken(self, kinds: tuple[str, ...]) -> tuple[str, int, Job]:
+        kind = self._waiting(kinds)
+        assert kind is not None
+        job = self._newest[kind]
+        assert job is not None
+        self._newest[kind] = None
+        return kind, *job
+
+    def _next_quick(self) -> tuple[str, int, Job]:
         with self._change:
-            self._change.wait_for(lambda: self._queue or self._waiting())
-            if self._queue:
-                return self._queue.popleft()
-            kind = self._waiting()
-            assert kind is not None
-            job = self._newest[kind]
-            assert job is not None
-            self._newest[kind] = None
-            return kind, *job
+            self._busy = False
+            self._change.notify_all()
+            self._change.wait_for(lambda: self._queue or self._waiting(QUICK))
+            self._busy = True
+            return self._queue.popleft() if self._queue else self._taken(QUICK)
 
-    def _run(self) -> None:
+    def _next_second(self) -> tuple[str, int, Job]:
+        with self._change:
+            self._change.wait_for(lambda: not (self._busy or self._queue or self._waiting(QUICK)) and self._waiting(SECOND))
+            return self._taken(SECOND)
+
+    def _run(self, take: Callable[[], tuple[str, int, Job]]) -> None:
         while True:
-            kind, generation, job = self._next()
+            kind, generation, job = take()
             self._post(self._outcome(kind, generation, job))
 
     @staticmethod

@@ -8,12 +8,12 @@ from collections.abc import Callable, Iterable
 from typing import TYPE_CHECKING
 
 from cycle.explain import Entry, Number, Term, Word, find, group_of, numbers, see_also
-from cycle.quantities import Group, Input, Output
+from cycle.quantities import INPUT, MODES, Group, Input, Output
 from cycle.units import format_number, si_unit
 from tui.output import emit
 from tui.solve import Outcome, exit_status, outcome
 from tui.tables import Block, Heading, Lines, Table, as_text
-from tui.text import input_text
+from tui.text import input_text, limit_words, mode_sentences
 
 if TYPE_CHECKING:
     from cycle.result import Walk
@@ -55,11 +55,29 @@ def _facts(entry: Entry) -> Iterable[tuple[str, str]]:
 
 
 def _output_facts(entry: Output) -> Iterable[tuple[str, str]]:
-    yield "kind", "figure of each station" if entry.where == "station" else "figure of the engine"
+    yield "kind", _PLACES[entry.where]
     yield "meaning", entry.meaning
     yield "unit", si_unit(entry.unit) or "none, a ratio"
-    yield "equation", f"{entry.symbol} = {entry.equation}" if entry.equation else "none: it is a property of the state or the case"
+    yield "equation", f"{_sign(entry)} = {entry.equation}" if entry.equation else "none: the meaning defines it"
     yield "source", entry.source
+
+
+def _sign(entry: Output) -> str:
+    """What stands for the figure before the equals sign."""
+    return entry.symbol or ("margin" if entry.where == "limit" else entry.label)
+
+
+_PLACES = {
+    "station": "figure of each station",
+    "performance": "figure of the engine",
+    "process": "figure of a process",
+    "profile": "figure along a duct",
+    "limit": "limit of the walk",
+    "heat": "border of the heat of a duct",
+    "potential": "row of where the thrust comes from and goes",
+    "loss": "row of the losses against the ideal engine",
+    "exergy": "row of the exergy balance",
+}
 
 
 def _input_facts(entry: Input) -> Iterable[tuple[str, str]]:
@@ -68,6 +86,10 @@ def _input_facts(entry: Input) -> Iterable[tuple[str, str]]:
     if entry.kind == "number":
         yield "unit", si_unit(entry.unit) or "none, a ratio"
         yield "allowed", _bounds(entry)
+    for column in entry.columns:
+        yield f"column {column.key}", f"{column.meaning} {_bounds(column)}; default {_default(column)}"
+    if entry.columns:
+        yield "rows", f"{entry.fewest} to {entry.most}"
     if entry.choices:
         yield "choices", ", ".join(entry.choices)
     yield "default", _default(entry)
@@ -122,8 +144,10 @@ _FACTS: dict[type, Callable[..., Iterable[tuple[str, str]]]] = {
 
 def _output_numbers(entry: Output, name: str, walk: Walk) -> list[Block]:
     found = numbers(entry, walk)
-    sentences = [_number_words(entry, number) for number in found]
-    blocks: list[Block] = [Lines((f"In {name}:", *sentences))]
+    limits = [limit for limit in walk.limits if f"limit.{limit.key}" == entry.key]
+    sentences = [_number_words(entry, number) for number in found if not limits or not math.isnan(number.value)]
+    sentences += [limit_words(limit, "si") for limit in limits]
+    blocks: list[Block] = [Lines((f"In {name}:", *(sentences or ["none in this walk"])))]
     terms = {t.symbol: t for number in found if len(found) == 1 for t in number.terms}
     if terms:
         rows = tuple((t.symbol, _value_text(t.value), t.unit, t.label) for t in terms.values())
@@ -133,8 +157,8 @@ def _output_numbers(entry: Output, name: str, walk: Walk) -> list[Block]:
 
 def _number_words(entry: Output, number: Number) -> str:
     """One sentence: the figure, and the equation with numbers where it is arithmetic."""
-    where = f"station {number.where}: " if number.where else ""
-    symbol = entry.symbol or entry.label
+    where = f"{number.where}: " if number.where else ""
+    symbol = _sign(entry)
     if math.isnan(number.value):
         return f"{where}no value: {number.reason}"
     value = f"{_value_text(number.value)} {si_unit(entry.unit)}".strip()
@@ -153,6 +177,14 @@ def _value_text(value: float) -> str:
 
 
 def _input_numbers(entry: Input, name: str, walk: Walk) -> list[Block]:
+    column = _column_of(entry, walk)
+    if column:
+        told_column = ", ".join("-" if value is None else _value_text(value) for value in column)
+        return [Lines((f"In {name}, row by row: {told_column} {si_unit(entry.unit)}".rstrip() + ".",))]
+    rows = walk.case.rows.get(entry.key)
+    if rows is not None:
+        told = (", ".join(f"{name} {_value_text(value)}" for name, value in row.items()) for row in rows)
+        return [Lines((f"In {name}, in SI:", *(f"{n}: {words}" for n, words in enumerate(told, 1))))]
     stated = next((s for s in walk.case.inputs() if s.input.key == entry.key), None)
     if stated is None:
         return [Lines((f"In {name}: not used.",))]
@@ -163,13 +195,23 @@ def _input_numbers(entry: Input, name: str, walk: Walk) -> list[Block]:
     return [Lines((f"In {name}: {value} {unit}".rstrip() + ("." if stated.given else ", the default."),))]
 
 
+def _column_of(entry: Input, walk: Walk) -> list[float | None]:
+    """Values of a column in the case's rows; none where the entry is no column."""
+    table, _, column = entry.key.rpartition(".")
+    declared = INPUT.get(table)
+    if declared is None or declared.kind != "rows":
+        return []
+    return [row.get(column) for row in walk.case.rows.get(table, ())]
+
+
 def _group_numbers(entry: Group, name: str, walk: Walk) -> list[Block]:
     tag = walk.case.choices.get(entry.name)
     return [Lines((f"In {name}: {tag}." if tag else f"In {name}: not used.",))]
 
 
 def _word_numbers(entry: Word, name: str, walk: Walk) -> list[Block]:
-    return [Lines((f"{name}: status {walk.status}, mode {walk.mode}.",))]
+    margins = mode_sentences(walk, "si") if entry.key in MODES else ()
+    return [Lines((f"{name}: status {walk.status}, mode {walk.mode}.", *margins))]
 
 
 _NUMBERS: dict[type, Callable[..., list[Block]]] = {

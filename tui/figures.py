@@ -6,10 +6,10 @@ Some figures of a station are computed when first asked for; asking here keeps t
 from __future__ import annotations
 
 from collections.abc import Callable, Mapping
-from dataclasses import dataclass, replace
+from dataclasses import dataclass, field, replace
 from typing import TYPE_CHECKING, Any
 
-from cycle.quantities import OUTPUTS
+from cycle.quantities import OUTPUTS, RESTORES, STATUSES
 
 if TYPE_CHECKING:
     from cycle.case import Case
@@ -20,8 +20,10 @@ DEAR = ("critical_pressure", "critical_temperature", "critical_area_ratio")
 
 QUICK = tuple(k for k in STATION_KEYS if k not in DEAR)
 PERFORMANCE_KEYS = tuple(o.key for o in OUTPUTS if o.where == "performance")
-STATIONS = ("0", "2", "3", "4", "5", "10")
+STATIONS = ("0", "1", "2", "3", "4", "5", "9", "10")
 NAN = float("nan")
+LATE_REASONS = ("unstarted",)
+"""Statuses whose reason names a solved limit, which costs more than the walk; it comes with the assessment."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -33,6 +35,11 @@ class Passage:
     start: str
     end: str
     figures: Mapping[str, float]
+
+    @property
+    def mode(self) -> str:
+        """The way this process runs, where it tells: the one of its mode figures that holds; "" otherwise."""
+        return next((k.removeprefix("mode_") for k, v in self.figures.items() if k.startswith("mode_") and v == 1.0), "")
 
 
 @dataclass(frozen=True, slots=True)
@@ -46,9 +53,10 @@ class Share:
 
 @dataclass(frozen=True, slots=True)
 class Margin:
-    """One limit: label, state ("ok", "near", "over", "not assessed"), relative margin (positive is safe), actual and
+    """One limit: key, label, state ("ok", "near", "over", "not assessed"), relative margin (positive is safe), actual and
     allowed value in SI, their dimension, whether it is an upper limit, what restores it, and the input to go to."""
 
+    key: str
     label: str
     state: str
     margin: float
@@ -64,7 +72,8 @@ class Margin:
 class Figures:
     """A walk of one point as plain numbers (SI, nan where there is no value). altitude: that of the ambient pressure
     in the standard atmosphere, m. `walk` is the walk itself, for the referee and for later questions. assessed: whether
-    limits, audit and the dear figures are those of this walk; until then they are of the walk before, or absent."""
+    limits, audit and the dear figures are those of this walk; until then they are of the walk before, or absent. profile: the
+    flow along a duct, column -> values from the burner entry on; {} where the burner is none."""
 
     status: str
     mode: str
@@ -82,6 +91,7 @@ class Figures:
     audit_ok: bool = False
     audit: str = ""
     assessed: bool = False
+    profile: Mapping[str, tuple[float, ...]] = field(default_factory=dict)
 
     @property
     def solved(self) -> bool:
@@ -104,6 +114,23 @@ def _altitude(pressure: float) -> float:
     return float(altitude_of_pressure(pressure))
 
 
+def _quick_reason(walk: Any) -> str:
+    """Why there is no solution, without what has to be solved for."""
+    status = str(walk.status)
+    if status not in LATE_REASONS:
+        return str(walk.reason)
+    return f"{walk.failed_process}: {STATUSES[status]}; {RESTORES[status]}"
+
+
+def _profile(walk: Any) -> dict[str, tuple[float, ...]]:
+    """The columns of a duct's profile without the rows that have no place."""
+    columns = walk.profile
+    if not columns:
+        return {}
+    there = columns["x"] == columns["x"]
+    return {name: tuple(values[there].tolist()) for name, values in columns.items()}
+
+
 def take(walk: Any) -> Figures:
     """Plain numbers of a walk of one point.
 
@@ -114,7 +141,7 @@ def take(walk: Any) -> Figures:
     return Figures(
         status=str(walk.status),
         mode=str(walk.mode),
-        reason=str(walk.reason),
+        reason=_quick_reason(walk),
         failed=str(walk.failed_process),
         stations=stations,
         fractions={s: {x: float(v) for x, v in walk.station[s].mole_fractions.items()} for s in stations},
@@ -124,6 +151,7 @@ def take(walk: Any) -> Figures:
         potentials=tuple(Share(r.label, float(r.value), r.unit) for r in walk.potentials),
         altitude=_altitude(stations.get("0", {}).get("pressure", NAN)),
         walk=walk,
+        profile=_profile(walk),
     )
 
 
@@ -133,9 +161,10 @@ def assess(figures: Figures) -> Figures:
     dear = {s: {k: float(getattr(walk.station[s], k)) for k in DEAR} for s in figures.stations}
     return replace(
         figures,
+        reason=str(walk.reason),
         stations={s: {**known, **dear[s]} for s, known in figures.stations.items()},
         limits=tuple(
-            Margin(m.label, m.state, float(m.margin), float(m.actual), float(m.allowed), m.unit, bool(m.upper), m.restore, m.input)
+            Margin(m.key, m.label, m.state, float(m.margin), float(m.actual), float(m.allowed), m.unit, bool(m.upper), m.restore, m.input)
             for m in walk.limits
         ),
         audit_ok=bool(walk.audit.ok),
@@ -158,6 +187,11 @@ def solve(case: Case) -> Figures:
     import cycle
 
     return take(cycle.solve(case))
+
+
+def heat_limits(figures: Figures) -> dict[str, float]:
+    """The heat input at which a duct leaves each regime, SI. Slow; call it in the worker thread."""
+    return {name: float(value) for name, value in figures.walk.heat_limits.items()}
 
 
 def referee(figures: Figures) -> str:
@@ -206,12 +240,16 @@ PRESENT: dict[str, Present] = {
     "inlet.total_pressure_recovery": _over("total_pressure", "2", "0"),
     "inlet.exit_mach": lambda f: f.at("2", "mach"),
     "inlet.contraction_ratio": _inverse_area,
+    "inlet.internal_contraction": _over("area", "1", "2"),
+    "inlet.throat_area": lambda f: f.at("2", "area"),
     "combustor.equivalence_ratio": lambda f: f.performance["equivalence_ratio"],
     "combustor.fuel_air_ratio": lambda f: f.performance["fuel_air_ratio"],
     "combustor.exit_total_temperature": lambda f: f.at("4", "total_temperature"),
     "combustor.exit_area_ratio": _over("area", "4", "3"),
+    "combustor.pressure_ratio": _over("total_pressure", "4", "3"),
     "combustor.exit_mach": lambda f: f.at("4", "mach"),
     "combustor.exit_area_over_throat": lambda f: f.performance["burner_exit_over_throat"],
+    "nozzle.throat_area": lambda f: f.performance["throat_area"],
     "nozzle.exit_area_over_capture": lambda f: f.at("10", "area_ratio") * f.performance["captured_mass_fraction"],
     "nozzle.exit_pressure": lambda f: f.at("10", "pressure"),
     "nozzle.exit_area_ratio": _exit_area_ratio,

@@ -3,24 +3,29 @@
 from __future__ import annotations
 
 import re
+from collections.abc import Mapping
 from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
-from cycle.quantities import GROUP, INPUT, Group, Input
+from cycle.quantities import GROUP, INPUT, Group, Input, input_of
 from cycle.units import format_number, respell, show
+from tui import rows
 from tui.session import Change, Entry, Session, columns_of
 
 if TYPE_CHECKING:
     from cycle.case import Case, Stated
 
-OWNED: dict[str, tuple[str, ...]] = {
-    "2": ("inlet", "isolator"),
-    "3": ("inlet", "isolator"),
-    "4": ("fuel", "combustor"),
-    "5": ("nozzle",),
-    "10": ("nozzle",),
-}
-"""Station -> tables of the case file that belong to the component that ends there. The first station owns the rest."""
+OWNED: tuple[tuple[tuple[str, ...], tuple[str, ...]], ...] = (
+    (("inlet.quality", "inlet.compression", "inlet.ramp", "inlet.cone", "inlet.isentropic_ramp"), ("1",)),
+    (("inlet.lip", "inlet.lip_x", "inlet.lip_y"), ("1",)),
+    (("inlet",), ("2",)),
+    (("isolator", "combustor.entry_area_ratio"), ("3",)),
+    (("fuel", "combustor"), ("4",)),
+    (("nozzle.throat", "nozzle.throat_size", "nozzle.throat_area"), ("5",)),
+    (("nozzle",), ("9", "10")),
+)
+"""Keys, groups or tables and the stations whose component they belong to; the first line that a case has a station for holds.
+The first station owns the rest."""
 
 FIRST = ("flight", "entry", "air", "gas", "engine")
 LIMITS = {
@@ -57,8 +62,17 @@ def _owner(key: str, columns: tuple[str, ...]) -> tuple[str, ...]:
     if section == "limits":
         home = LIMITS.get(key, columns[0])
         return (home,) if home in columns else columns[-1:]
-    owners = tuple(s for s in columns[1:] if section in OWNED[s])
-    return owners or columns[-1:]
+    for heads, stations in OWNED:
+        at = tuple(s for s in stations if s in columns[1:])
+        if at and any(key == head or key.startswith(f"{head}.") for head in heads):
+            return at
+    return columns[-1:]
+
+
+def home(session: Session, key: str) -> str:
+    """The station whose inputs hold `key`: the one in hand where it does, else the first that does."""
+    owners = _owner(key, columns_of(session.case))
+    return session.station if session.station in owners else owners[0]
 
 
 def written(stated: Stated, system: str) -> str:
@@ -95,7 +109,7 @@ def items(session: Session) -> tuple[Item, ...]:
     out = [
         Item(s.input.key, s.input.label, written(s, session.system), not s.given, s.group, s.input, s.value, s.spelled)
         for s in case.inputs()
-        if session.station in _owner(s.input.key, columns)
+        if session.station in _owner(s.input.key, columns) and not rows.hidden(case, s.input.key)
     ]
     for group in case.groups():
         if session.station in _owner(group.name, columns) and (extra := _of_group(case, group)) is not None:
@@ -141,7 +155,8 @@ def typed(entry: Entry) -> object:
     text = " ".join(entry.text.split())
     if not text:
         return None
-    kind = INPUT[entry.key].kind
+    spec = input_of(entry.key)
+    kind = spec.kind if spec is not None else "text"
     if kind == "fractions":
         return _fractions(text)
     match = _NUMBER.match(text) if kind == "number" else None
@@ -165,6 +180,23 @@ def change_of(entry: Entry) -> Change:
     if entry.switch is not None:
         return {"switch": [*entry.switch, value]}
     return {"set": {entry.key: value}}
+
+
+def completed(change: Change, case: Case, beside: Mapping[str, object]) -> Change:
+    """A change with what hangs on it: the cells that follow from one, and what another way needs beside its own value.
+
+    Parameters: change, one value or one switch; case, the present one; beside, key -> value. Returns: the change.
+    """
+    if "switch" in change:
+        group, tag, value = change["switch"]
+        keys = next((m.keys for m in GROUP[group].members if m.tag == tag), ())
+        if not beside or not keys:
+            return change
+        own = value if isinstance(value, dict) else {} if value is None else {keys[0]: value}
+        flags = {k: True for k in keys if INPUT[k].kind == "flag"}
+        return {"switch": [group, tag, {**flags, **own, **beside}]}
+    (key, value), *rest = change["set"].items()
+    return {"set": {**rows.cell_changes(case, key, value), **dict(rest), **beside}}
 
 
 def stepped(item: Item, sign: int) -> tuple[float | str | None, str]:
@@ -198,10 +230,18 @@ def next_choice(item: Item, sign: int) -> str:
     return spec.choices[(present + sign) % len(spec.choices)]
 
 
+def groups_of(case: Case, item: Item) -> list[str]:
+    """Groups that an input takes part in, those that hold the fewest ways first."""
+    place = rows.place_of(item.key)
+    key = place[0] if place is not None else item.key
+    every = [g for g in case.groups() if g.name == item.group or any(key in m.keys for m in g.members)]
+    return [g.name for g in sorted(every, key=lambda g: len(g.members))]
+
+
 def way_label(group: str, tag: str) -> str:
     """Words for one way of a group: the labels of its inputs, or the tag of a default that has none."""
-    member = next((m for m in GROUP[group].members if m.tag == tag), None)
-    return " and ".join(INPUT[k].label for k in member.keys) if member else tag.replace("-", " ")
+    ways = [m for m in GROUP[group].members if m.tag == tag]
+    return " and ".join(INPUT[k].label for k in ways[0].keys) if len(ways) == 1 else tag.replace("-", " ")
 
 
 def bounds(spec: Input, system: str) -> str:
@@ -222,5 +262,9 @@ def describe(before: Case, after: Case, change: Change, system: str) -> str:
         group, tag, _ = change["switch"]
         return f"{GROUP[group].meaning} by {way_label(group, tag)}"
     key = next(iter(change["set"]))
+    spec = input_of(key)
+    assert spec is not None
+    if spec.kind == "rows":
+        return rows.words(before, after, key)
     old, new = (next((written(s, system) for s in c.inputs() if s.input.key == key), "-") for c in (before, after))
-    return f"{INPUT[key].label} {old} -> {new}"
+    return f"{spec.label} {old} -> {new}"

@@ -20,6 +20,7 @@ Change = dict[str, Any]
 
 VIEWS = ("figures", "change against the pin", "change against the pin, %")
 SOLVING = "solving ... figures and limits are of the inputs before"
+ASSESSING = "limits are being assessed ... those shown are of the inputs before"
 
 
 @dataclass(frozen=True, slots=True)
@@ -56,7 +57,8 @@ class Entry:
 @dataclass(frozen=True, slots=True)
 class Session:
     """Everything the screen shows. generation: number of the case's latest change; solved: the generation that
-    `figures` belong to; good: the last walk with a solution; saved: the case as it stands in the file."""
+    `figures` belong to; good: the last walk with a solution; saved: the case as it stands in the file; borders: the heat input at
+    which a duct leaves each regime, None until they are solved for."""
 
     path: str
     case: Case | None = None
@@ -77,6 +79,7 @@ class Session:
     system: Literal["si", "us"] = "si"
     view: int = 0
     referee: str = ""
+    borders: Mapping[str, float] | None = None
     note: str = "reading the case ..."
     faults: tuple[str, ...] = ()
 
@@ -114,7 +117,9 @@ def loaded(session: Session, case: Case, stamp: Any) -> Session:
 
 
 def _with_case(session: Session, case: Case, note: str) -> Session:
-    station = session.station if session.station in columns_of(case) else columns_of(case)[0]
+    columns = columns_of(case)
+    # a station that is gone hands on to the next one downstream
+    station = next((s for s in columns if int(s) >= int(session.station)), columns[-1])
     return replace(
         session,
         case=case,
@@ -122,6 +127,7 @@ def _with_case(session: Session, case: Case, note: str) -> Session:
         station=station,
         entry=None,
         referee="",
+        borders=None,
         note=note,
         faults=(),
     )
@@ -163,7 +169,9 @@ def with_figures(session: Session, generation: int, found: Figures) -> Session:
     if now.solved and (pin is None or pin.figures.walk is now.walk):
         first = "first walk" if session.unsaved else "as loaded"
         pin = Pin(pin.label if pin is not None else first, session.case, now)
-    note = "" if session.note == SOLVING else session.note
+    note = session.note
+    if note in (SOLVING, ASSESSING):
+        note = "" if now.assessed or note == ASSESSING else ASSESSING
     good = now if now.solved else session.good
     return replace(session, figures=now, solved=generation, good=good, pin=pin, note=note)
 
@@ -190,8 +198,12 @@ def columns_of(case: Case | None) -> tuple[str, ...]:
     entry = case.value("entry.station") if case.choices.get("start") == "entry" else None
     first = "0" if entry is None else str(entry)
     last = "4" if case.choices.get("nozzle.exit") == "absent" else "10"
-    throat = case.value("nozzle.throat") == "sized"
-    return tuple(s for s in STATIONS if int(first) <= int(s) <= int(last) and (s != "5" or throat))
+    there = {
+        "1": case.value("inlet.quality") == "geometry",
+        "5": case.value("nozzle.throat") == "sized" or case.value("nozzle.throat_area") is not None,
+        "9": case.value("nozzle.internal_area_ratio") is not None and case.value("nozzle.freeze") in (None, "freeze_station"),
+    }
+    return tuple(s for s in STATIONS if int(first) <= int(s) <= int(last) and there.get(s, True))
 
 
 def performance_keys(session: Session) -> tuple[str, ...]:

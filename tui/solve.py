@@ -3,8 +3,6 @@
 from __future__ import annotations
 
 import argparse
-import csv
-import io
 from collections.abc import Callable, Iterable, Sequence
 from dataclasses import dataclass, field
 from pathlib import Path
@@ -12,10 +10,9 @@ from typing import TYPE_CHECKING
 
 import cycle
 from cycle.case import read_setting
-from cycle.errors import CaseError, Fault
-from cycle.quantities import OUTPUTS
+from cycle.errors import CaseError, DuctwalkError, Fault
 from cycle.record import Json, dumps, is_stored, record, refused, stored, write
-from cycle.units import display_unit, si_unit
+from tui import sheets
 from tui.output import emit, load_case, tell
 from tui.tables import as_markdown, as_text
 from tui.text import audit_words, headline_words, walk_blocks
@@ -37,6 +34,8 @@ class Outcome:
 
 def run(options: argparse.Namespace) -> int:
     """Solve the cases of the command line and write them; returns the exit status, the highest of all cases."""
+    if options.rows != "stations" and options.format != "csv":
+        raise DuctwalkError(f"--rows {options.rows} is for --format csv")
     if options.output:
         _check_output(options.output, options.cases)
     changes = settings(options.set)
@@ -133,32 +132,7 @@ def _json(found: Outcome, referee: bool) -> Json:
 
 
 def _csv_form(outcomes: Iterable[Outcome], count: int, options: argparse.Namespace) -> None:
-    records = [(o.name, _json(o, False)) for o in outcomes]
-    species = sorted({x for _, r in records for s in r.get("stations", {}).values() for x in s["mole_fractions"]})
-    text = io.StringIO()
-    writer = csv.writer(text, lineterminator="\n")
-    outputs = [o for o in OUTPUTS if o.where == "station"]
-    units = [_csv_unit(o.unit, options.units, o.key) for o in outputs]
-    heads = [f"{o.key} ({label})" if label else o.key for o, (label, _, _) in zip(outputs, units, strict=True)]
-    writer.writerow(["case", "status", "mode", "station", *heads, *(f"mole_fraction {x}" for x in species)])
-    for name, walk in records:
-        for station, values in (walk.get("stations") or {"": {}}).items():
-            cells = [_cell(values.get(o.key), unit) for o, unit in zip(outputs, units, strict=True)]
-            shares = [values.get("mole_fractions", {}).get(x) for x in species]
-            writer.writerow([name, walk["status"], walk.get("mode", ""), station, *cells, *shares])
-    emit(text.getvalue())
-
-
-def _csv_unit(dimension: str, system: str, key: str) -> tuple[str, float, float]:
-    """Label, factor and offset: plain SI, or the customary units of a table."""
-    if system == "si":
-        return si_unit(dimension), 1.0, 0.0
-    unit = display_unit(dimension, system, key)
-    return unit.label, unit.factor, unit.offset
-
-
-def _cell(value: float | None, unit: tuple[str, float, float]) -> float | None:
-    return None if value is None else (value - unit[2]) / unit[1]
+    emit(sheets.SHEETS[options.rows]([(o.name, _json(o, False)) for o in outcomes], options.units))
 
 
 FORMS: dict[str, Callable[[Iterable[Outcome], int, argparse.Namespace], None]] = {

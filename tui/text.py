@@ -6,12 +6,13 @@ import math
 from collections.abc import Callable, Iterable, Mapping
 from typing import TYPE_CHECKING, Any
 
-from cycle.quantities import MODES, OUTPUTS, Input, Output
+from cycle.glossary import ENTRY, HEAT_WORDS, PROFILE, QUIET, SHARED, mode_of, no_value, process_figure
+from cycle.quantities import INPUT, MODES, OUTPUTS, Input, Output
 from cycle.units import display_unit, format_number, show
 from tui.tables import Block, Heading, Lines, Table
 
 if TYPE_CHECKING:
-    from cycle.case import Stated
+    from cycle.case import Case, Stated
     from cycle.result import Walk
 
 CAUTION = (
@@ -25,16 +26,13 @@ _ELSEWHERE = {"flight": ("stream_thrust_gain",)}
 """Figures that a case of this start never has and nobody misses."""
 
 _NOISE = 1e-10
+_NOTHING = 1e-6
+"""Booked force, power or flow, SI, below which nothing crosses."""
 _LIMIT_FIGURES = {"corridor_low": "dynamic_pressure", "corridor_high": "dynamic_pressure"}
 """Limits whose figure has a unit of its own among those of its dimension."""
 
-_PROCESS_FIGURES: tuple[tuple[str, str, str], ...] = (
-    ("total_pressure_ratio", "total-pressure ratio", "ratio"),
-    ("pressure_ratio", "pressure ratio", "ratio"),
-    ("temperature_ratio", "temperature ratio", "ratio"),
-    ("entropy_rise", "entropy rise", "specific heat"),
-    ("thrust_potential_change", "change of thrust potential", "force"),
-)
+_PROFILE_ROWS = 14
+_PROFILE_SHOWN = ("x", "pressure", "temperature", "mach", "area", "core_area", "burnt", "total_pressure")
 
 
 def figure(value: float, dimension: str, system: str, key: str = "") -> str:
@@ -70,7 +68,7 @@ def walk_blocks(walk: Walk, system: str, referee: bool) -> list[Block]:
     walk: of shape (). system: "si" or "us". referee: whether the referee's line is asked for.
     """
     parts: tuple[Callable[[Walk, str], Iterable[Block]], ...] = (
-        _opening, _headline, _stations, _composition, _processes, _potentials, _losses, _exergy, _limits,
+        _opening, _headline, _modes, _stations, _composition, _processes, _own_figures, _along, _potentials, _losses, _exergy, _limits,
     )  # fmt: skip
     blocks = [block for part in parts for block in part(walk, system)]
     return [*blocks, *_checks(walk, referee), *_inputs(walk, system), Heading("Caution"), Lines((CAUTION,))]
@@ -100,6 +98,108 @@ def _headline(walk: Walk, system: str) -> Iterable[Block]:
         yield Table(("", "symbol", "value", "unit"), tuple(rows), left=(1, 3))
     missing = tuple(_missing(walk, [o for o in outputs if o not in known])) if walk.status == "solved" else ("no solution",)
     yield Lines(missing)
+
+
+def _modes(walk: Walk, system: str) -> Iterable[Block]:
+    sentences = mode_sentences(walk, system)
+    if sentences:
+        yield Heading("Mode and its margins")
+        yield Lines(sentences)
+
+
+def mode_sentences(walk: Walk, system: str) -> tuple[str, ...]:
+    """How isolator and burner or throat run, with the margins of the mode and the heat at which it ends; () where nothing is matched."""
+    isolator = next((p.figures for p in walk.processes if p.name == "isolator"), {})
+    sentences: list[str] = []
+    if walk.status == "solved" and "separated_pressure" in isolator:
+        sentences += _duct_sentences(walk, isolator, system)
+    if walk.status == "solved" and "throat_margin" in isolator:
+        sentences += _throat_sentences(isolator, system)
+    if walk.heat_limits:
+        sentences.append(heat_sentence(walk.case, walk.heat_limits, system))
+    return tuple(sentences)
+
+
+def _duct_sentences(walk: Walk, isolator: Mapping[str, float], system: str) -> Iterable[str]:
+    if walk.mode == "rig":
+        mode = mode_of(isolator)
+        yield f"The duct runs as {mode}: {MODES[mode]}."
+    ratio, share = isolator["pressure_ratio"], 100.0 * isolator["core_area_ratio"]
+    yield f"At burner entry p3/p2 is {format_number(ratio)} and the core fills {format_number(share, 3)} % of the duct."
+    peak, limit = (format_number(isolator[key], 3) for key in ("attached_peak_pressure_ratio", "separation_limit"))
+    attached = "" if math.isnan(isolator["separation_margin"]) else f" (attached peak {peak} p2, {limit} p2 separates)"
+    yield f"Separation margin {_margin(isolator, 'separation_margin')}{attached}."
+    train = isolator["train_length"]
+    length = "" if math.isnan(train) else f" (shock train {with_unit(train, 'length', system)})"
+    yield f"Isolator margin {_margin(isolator, 'isolator_margin')}{length}."
+    yield f"Unstart margin {_margin(isolator, 'unstart_margin')}."
+
+
+def _throat_sentences(isolator: Mapping[str, float], system: str) -> Iterable[str]:
+    spilled = with_unit(isolator["spilled_flow"], "mass flow", system)
+    yield f"Throat margin {_margin(isolator, 'throat_margin')}; {spilled} of air spilled."
+    if not math.isnan(isolator["shock_mach"]):
+        mach, ratio, recovery = (format_number(isolator[key]) for key in ("shock_mach", "shock_area_ratio", "shock_recovery"))
+        place = "is expelled to station 2" if isolator["spilled_flow"] > 0.0 else f"stands at {ratio} of the area of station 2"
+        yield f"The terminal shock {place}; Mach {mach} ahead of it, total-pressure ratio {recovery}."
+
+
+def _margin(figures: Mapping[str, float], key: str) -> str:
+    value = float(figures[key])
+    return f"not assessed: {no_value(key)}" if math.isnan(value) else f"{100.0 * value:+.1f} %"
+
+
+def heat_sentence(case: Case, limits: Mapping[str, float], system: str) -> str:
+    """Where the modes of a duct end as its heat rises. limits: `Walk.heat_limits`."""
+    entry = INPUT[f"combustor.{case.choices['combustor.heat']}"]
+    words = [heat_limit(name, limits[name], entry, system) for name in HEAT_WORDS]
+    known = ", ".join(w for w in words if w)
+    here = with_unit(case.numbers[entry.key], entry.unit, system, entry.key)
+    return f"With rising {entry.label} (here {here}): {known or 'limits not known, the heat is no fuel ratio'}."
+
+
+def heat_limit(name: str, value: float, entry: Input, system: str) -> str:
+    """One border of a duct's heat in words, "" where it is not known. value: of the input `entry`, SI."""
+    at, never, always = HEAT_WORDS[name]
+    if math.isnan(value):
+        return ""
+    return never if math.isinf(value) else at.format(with_unit(value, entry.unit, system, entry.key)) if value > 0.0 else always
+
+
+def _along(walk: Walk, system: str) -> Iterable[Block]:
+    """A few rows of the flow along the duct, those where something happens among them."""
+    marks = profile_marks(walk)
+    if not marks:
+        return
+    declared = {o.key.removeprefix("profile."): o for o in PROFILE}
+    shown = [declared[name] for name in _PROFILE_SHOWN]
+    heads = tuple(named(o.symbol, o.unit, system) for o in shown)
+    rows = []
+    for row, mark in marks.items():
+        values = (float(walk.profile[name][row]) for name in _PROFILE_SHOWN)
+        rows.append((*(figure(v, o.unit, system) for v, o in zip(values, shown, strict=True)), mark))
+    yield Heading("Along the duct, from burner entry")
+    yield Table((*heads, ""), tuple(rows), left=(len(heads),))
+
+
+def profile_marks(walk: Walk) -> dict[int, str]:
+    """At most 14 rows of the duct's profile, evenly spaced but for those that stand for themselves -> what is there."""
+    if not walk.profile:
+        return {}
+    x, pressure = ([float(v) for v in walk.profile[name]] for name in ("x", "pressure"))
+    placed = [i for i, place in enumerate(x) if math.isfinite(place)]
+    burner = next(p.figures for p in walk.processes if p.name == "burner")
+    marks = {placed[0]: "", placed[-1]: "", max(placed, key=lambda i: pressure[i]): "peak"}
+    for key, words in (("reattachment_x", "core fills"), ("throat_x", "throat")):
+        at = float(burner[key])
+        if math.isfinite(at) and at > x[placed[0]]:
+            nearest = min(placed, key=lambda i: abs(x[i] - at))
+            marks[nearest] = f"{marks[nearest]}, {words}" if marks.get(nearest) else words
+    spare = _PROFILE_ROWS - len(marks)
+    for k in range(1, spare + 1):
+        target = x[placed[0]] + (x[placed[-1]] - x[placed[0]]) * k / (spare + 1)
+        marks.setdefault(min(placed, key=lambda i: abs(x[i] - target)), "")
+    return dict(sorted(marks.items()))
 
 
 def _missing(walk: Walk, outputs: Iterable[Output]) -> Iterable[str]:
@@ -145,13 +245,30 @@ def _composition(walk: Walk, system: str) -> Iterable[Block]:
 
 def _processes(walk: Walk, system: str) -> Iterable[Block]:
     rows = [("stations", *(f"{p.start} to {p.end}" for p in walk.processes))]
-    for key, label, unit in _PROCESS_FIGURES:
+    for key in SHARED:
+        declared = ENTRY[f"process.{key}"]
         values = settled([float(p.figures.get(key, math.nan)) for p in walk.processes])
-        cells = (figure(v, unit, system) for v in values)
-        rows.append((named(label, unit, system), *cells))
+        cells = (figure(v, declared.unit, system) for v in values)
+        rows.append((named(declared.label, declared.unit, system), *cells))
     if walk.processes:
         yield Heading("What each process did")
         yield Table(("process", *(p.label for p in walk.processes)), tuple(rows))
+
+
+def _own_figures(walk: Walk, system: str) -> Iterable[Block]:
+    """Figures that only some processes have; those that can say nothing by being zero only where they are not."""
+    rows = []
+    for process in walk.processes:
+        name = process.label
+        for key, value in process.figures.items():
+            declared = process_figure(key)
+            if declared is None or key in SHARED or math.isnan(value) or (key in QUIET and abs(value) < _NOTHING):
+                continue
+            rows.append((name, declared.label, figure(value, declared.unit, system), unit_label(declared.unit, system)))
+            name = ""
+    if rows:
+        yield Heading("Figures of single processes")
+        yield Table(("process", "", "value", "unit"), tuple(rows), left=(1, 3))
 
 
 def _rows(rows: Iterable[Any], system: str) -> Table:

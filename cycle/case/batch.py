@@ -3,12 +3,14 @@
 from __future__ import annotations
 
 from collections.abc import Mapping
+from dataclasses import replace
 from typing import TYPE_CHECKING
 
 from cycle.case.case import Case
+from cycle.case.rows import ROW_RULES, view
 from cycle.case.rules import bounds
 from cycle.errors import CaseError, Fault, UnitError, shown
-from cycle.quantities import INPUT, INPUTS, Input
+from cycle.quantities import INPUTS, Input, input_of, split_cell
 from cycle.units import format_number, read
 
 if TYPE_CHECKING:
@@ -18,11 +20,12 @@ if TYPE_CHECKING:
 def check_batch(case: Case, values: Mapping[str, ArrayLike | str]) -> tuple[Case, dict[str, Array]]:
     """A case and arrays for some of its number inputs, validated.
 
-    Parameters: case; values, key of a number input -> array of any shape, number (SI) or text with a unit. A member of a group
+    Parameters: case; values, key of a number input or of a cell -> array of any shape, number (SI) or text with a unit. A member of a group
     replaces the group, as in `Case.replace`.
     Returns: the case with the first element of each array as its own value, so that its choices hold for the batch; and
     key -> float64 array (SI, own shape, not broadcast) for these keys and for those that follow them.
-    Errors: CaseError with every fault: not a number input, not numeric, empty, NaN, infinite or out of bounds.
+    Errors: CaseError with every fault: not a number input, not numeric, empty, NaN, infinite, out of bounds, or rows that do
+    not fit each other.
     """
     file = case.path or case.name
     arrays: dict[str, Array] = {}
@@ -39,13 +42,31 @@ def check_batch(case: Case, values: Mapping[str, ArrayLike | str]) -> tuple[Case
     for entry in INPUTS:
         if entry.follows in arrays and entry.key in chosen.numbers and entry.key not in chosen.given:
             arrays[entry.key] = arrays[entry.follows]
+    _check_rows(file, chosen, arrays)
     return chosen, arrays
+
+
+def _check_rows(file: str, case: Case, arrays: Mapping[str, Array]) -> None:
+    """Hold every element of the cells that vary to the rules of rows; arrays that do not fit each other are not compared."""
+    import numpy as np
+
+    varying = {key: array for key, array in arrays.items() if split_cell(key)}
+    if not varying:
+        return
+    try:
+        np.broadcast_shapes(*(array.shape for array in varying.values()))
+    except ValueError:
+        return
+    tables = view({**case.numbers, **varying})
+    faults = [replace(fault, file=file) for rule in ROW_RULES for fault in rule(tables)]
+    if faults:
+        raise CaseError(faults)
 
 
 def _array(file: str, key: str, given: ArrayLike | str) -> tuple[Array | None, Fault | None]:
     import numpy as np
 
-    entry = INPUT.get(key)
+    entry = input_of(key)
     if entry is None or entry.kind != "number":
         text = "not an input that takes numbers" if entry else "unknown key"
         return None, Fault(file, key, text, shown(given), "the key of a number input")
@@ -65,12 +86,14 @@ def _array_fault(file: str, entry: Input, array: Array) -> Fault | None:
 
     if array.size == 0:
         return Fault(file, entry.key, "no values", "an empty array", bounds(entry))
-    wrong = ~np.isfinite(array) | _outside(entry, array)
+    broken = np.rint(array) != array if entry.whole else np.zeros(array.shape, np.bool_)
+    faulty = {"not a finite number": ~np.isfinite(array), "out of bounds": _outside(entry, array), "not a whole number": broken}
+    wrong = np.logical_or.reduce(list(faulty.values()))
     if not wrong.any():
         return None
     first = int(np.flatnonzero(wrong)[0])
     value = float(array.flat[first])
-    what = "not a finite number" if not np.isfinite(value) else "out of bounds"
+    what = next(text for text, flags in faulty.items() if flags.flat[first])
     place = f" at index {first}" if array.ndim else ""
     number = format_number(value, 8) if np.isfinite(value) else str(value)
     return Fault(file, entry.key, f"{what}{place}", number, bounds(entry))

@@ -2,16 +2,17 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable, Mapping
+from collections.abc import Callable, Iterator, Mapping
 from dataclasses import dataclass, field, fields
 from types import MappingProxyType
 from typing import Any
 
 from cycle.case import checking, edits, rules
+from cycle.case.rows import view, with_cells
 from cycle.errors import CaseError, Fault, shown
-from cycle.quantities import GROUP, GROUPS, INPUT, INPUTS, Group, Input
+from cycle.quantities import GROUP, GROUPS, INPUT, INPUTS, Group, Input, cell, split_cell
 
-Value = float | str | bool | Mapping[str, float] | None
+Value = float | str | bool | Mapping[str, float] | tuple[Mapping[str, float], ...] | None
 
 
 @dataclass(frozen=True, slots=True)
@@ -54,7 +55,8 @@ def thawed(data: object) -> Any:
 class Case:
     """One validated case. Made by `load`, `loads` and `replace`; every mapping is read-only.
 
-    numbers: SI values of all number inputs that apply and have a value; choices: choice inputs, groups (name -> tag) and
+    numbers: SI values of all number inputs and cells of rows ("combustor.area.2.x", rows from 1) that apply and have a value;
+    choices: choice inputs, groups (name -> tag) and
     "start"; texts, fractions: the other kinds; studies: plain data; given: keys that are stated, the others are defaults;
     applicable: keys that mean something here; spelled: values as written; text: the TOML the case came from. Equality
     looks at the content, not at name, path or spelling.
@@ -81,41 +83,78 @@ class Case:
     def replace(self, changes: Mapping[str, object]) -> Case:
         """The case with other values, validated again.
 
-        Parameters: changes, key -> number (SI), text with a unit, choice, True, table of mole fractions, or None to remove
-        the key; "title" and "notes" too. A member of a group replaces the group; entry.* replaces flight and inlet, and the
-        other way round; keys that lose their meaning and are not named in the changes are dropped.
+        Parameters: changes, key of an input or a cell -> number (SI), text with a unit, choice, True, table of mole fractions,
+        list of rows, or None to remove it; "title" and "notes" too. A member of a group replaces the group; entry.* replaces
+        flight and inlet, and the other way round; keys that lose their meaning and are not named in the changes are dropped.
         Returns: a new Case. Errors: CaseError with every fault.
         """
         if not changes:
             return self
-        heads = {name: edits.plain(changes[name]) for name in ("title", "notes") if changes.get(name) is not None}
-        dropped = {name for name in ("title", "notes") if name in changes and changes[name] is None}
+        given = {key: edits.plain(value) for key, value in changes.items()}
+        heads = {name: given[name] for name in ("title", "notes") if given.get(name) is not None}
+        dropped = {name for name in ("title", "notes") if name in given and given[name] is None}
         kept = {name: getattr(self, name) for name in ("title", "notes") if name not in dropped}
-        rest = {key: value for key, value in changes.items() if key not in ("title", "notes")}
-        strays = [checking.stray(key, value, self.path or self.name) for key, value in rest.items()]
-        if any(strays):
-            raise CaseError(fault for fault in strays if fault)
-        spelled = edits.changed(self.spelled, rest) if rest else self.spelled
+        rest = {key: value for key, value in given.items() if key not in ("title", "notes")}
+        spelled = self._edited(rest) if rest else self.spelled
         document = {"format": checking.FORMAT, "study": thawed(self.studies), **kept, **heads, **checking.nest(thawed(spelled))}
         return build(document, self.name, self.path, self.stamp, self.text)
 
+    def _edited(self, changes: Mapping[str, object]) -> dict[str, object]:
+        """The keys as written after an edit."""
+        file = self.path or self.name
+        spelled = thawed(self.spelled)
+        strays = [checking.stray(key, value, file) for key, value in changes.items()]
+        whole, missing = with_cells(spelled, changes, file)
+        faults = [fault for fault in (*strays, *missing) if fault]
+        if faults:
+            raise CaseError(faults)
+        return edits.changed(spelled, whole)
+
+    @property
+    def rows(self) -> Mapping[str, tuple[Mapping[str, float], ...]]:
+        """Arrays of tables that are given: key -> rows, column -> SI number; the cells of `numbers` put together."""
+        return MappingProxyType(view(self.numbers))
+
     def applies(self, key: str) -> bool:
-        """Whether an input means something in this case. Parameters: key. Returns: True or False."""
-        return key in self.applicable
+        """Whether an input, or a cell of a row that is there, means something in this case. Parameters: key."""
+        parts = split_cell(key)
+        return key in self.applicable if parts is None else parts[1] <= len(self.rows.get(parts[0].key, ()))
 
     def value(self, key: str) -> Value:
         """Value of an input, or tag of a group.
 
-        Parameters: key, an input, a group or "start". Returns: SI number, text, True for a flag, mole fractions; None where
-        it is absent or does not apply. Errors: KeyError for an unknown key.
+        Parameters: key, an input, a cell, a group or "start". Returns: SI number, text, True for a flag, mole fractions, rows;
+        None where it is absent or does not apply. Errors: KeyError for an unknown key.
         """
         if key in GROUP or key == "start":
             return self.choices.get(key)
+        if split_cell(key):
+            return self.numbers.get(key)
         return _VALUES[INPUT[key].kind](self, key)
 
     def inputs(self) -> list[Stated]:
-        """Inputs that apply, in declared order; optional ones without a value are among them, with value None."""
-        return [self._stated(entry) for entry in INPUTS if self._shown(entry.key)]
+        """Inputs that apply, in declared order; optional ones without a value are among them, with value None.
+
+        A table of rows that is given stands there as its cells, row by row.
+        """
+        tables = self.rows
+        return [part for entry in INPUTS if self._shown(entry.key) for part in self._parts(entry, len(tables.get(entry.key, ())))]
+
+    def _parts(self, entry: Input, rows: int) -> Iterator[Stated]:
+        """An input, or its cells where it has rows."""
+        if not rows:
+            yield self._stated(entry)
+        spelled: Any = self.spelled.get(entry.key)
+        for number in range(1, rows + 1):
+            for column in entry.columns:
+                one = cell(entry.key, number, column.key)
+                written = spelled[number - 1].get(column.key)
+                yield Stated(one, self.numbers.get(one.key), written is not None, written, self._group_of(entry.key))
+
+    def tables(self) -> dict[str, Any]:
+        """Inputs that apply and have a value, in the tables of a case file: plain data, numbers in SI, defaults included."""
+        values = {entry.key: self.value(entry.key) for entry in INPUTS if self._shown(entry.key)}
+        return checking.nest({key: thawed(value) for key, value in values.items() if value is not None})
 
     def groups(self) -> list[Group]:
         """Groups that apply, in declared order."""
@@ -160,9 +199,12 @@ class Case:
         return all(any(m.tag == self.choices[g.name] for m in g.members if key in rules.reach(m)) for g in chosen)
 
     def _stated(self, entry: Input) -> Stated:
-        groups = [g.name for g in rules.groups_of().get(entry.key, ()) if g.name in self.choices]
-        group = groups[-1] if groups else None
-        return Stated(entry, self.value(entry.key), entry.key in self.given, self.spelled.get(entry.key), group)
+        written = self.spelled.get(entry.key)
+        return Stated(entry, self.value(entry.key), entry.key in self.given, written, self._group_of(entry.key))
+
+    def _group_of(self, key: str) -> str | None:
+        groups = [g.name for g in rules.groups_of().get(key, ()) if g.name in self.choices]
+        return groups[-1] if groups else None
 
 
 _VALUES: dict[str, Callable[[Case, str], Value]] = {
@@ -171,6 +213,7 @@ _VALUES: dict[str, Callable[[Case, str], Value]] = {
     "text": lambda case, key: case.texts.get(key),
     "flag": lambda case, key: True if key in case.given else None,
     "fractions": lambda case, key: case.fractions or None,
+    "rows": lambda case, key: case.rows.get(key),
 }
 
 

@@ -7,9 +7,11 @@ from collections.abc import Callable, Iterator, Mapping
 from dataclasses import dataclass, replace
 from typing import TYPE_CHECKING, Any
 
-from cycle.case.rules import JOINT_RULES, Facts, Resolved, bounds, resolve
+from cycle.case.joint import JOINT_RULES, Facts
+from cycle.case.rows import cells, place
+from cycle.case.rules import Resolved, bounds, resolve
 from cycle.errors import MOST_FAULTS, CaseError, Fault, shown
-from cycle.quantities import INPUT, INPUTS, LATER, SECTIONS, Input
+from cycle.quantities import INPUT, INPUTS, SECTIONS, TABLES, Input, split_cell
 from cycle.units import format_number, read, si_unit
 
 if TYPE_CHECKING:
@@ -18,7 +20,7 @@ if TYPE_CHECKING:
 FORMAT = 1
 """Format of the case files that this program reads and writes."""
 DEEPEST = 32
-_TOP = ("format", "title", "notes", *SECTIONS, "study")
+_TOP = ("format", "title", "notes", *TABLES, "study")
 
 
 @dataclass(frozen=True, slots=True)
@@ -35,25 +37,32 @@ class Content:
 
 
 def flatten(document: Mapping[str, Any]) -> dict[str, object]:
-    """Keys of the input tables with their values as written; "section.name" -> value."""
-    return {
-        f"{section}.{name}": value
-        for section in SECTIONS
-        if isinstance(table := document.get(section), Mapping)
-        for name, value in table.items()
-    }
+    """Keys of the input tables and sub-tables with their values as written; "section.name" -> value."""
+    found: dict[str, object] = {}
+    for section in SECTIONS:
+        table: object = document
+        for part in section.split("."):
+            table = table.get(part) if isinstance(table, Mapping) else None
+        if isinstance(table, Mapping):
+            found.update({key: value for name, value in table.items() if (key := f"{section}.{name}") not in SECTIONS})
+    return found
+
+
+def home(key: str) -> tuple[str, ...]:
+    """Tables that hold a key, then its name in the last of them. Parameters: key, as "section.name"."""
+    section, _, name = key.rpartition(".")
+    return (*section.split("."), name) if section in SECTIONS else tuple(key.split(".", 1))
 
 
 def nest(flat: Mapping[str, object]) -> dict[str, Any]:
     """Tables from "section.name" keys; keys without a point stay at the top."""
     document: dict[str, Any] = {}
     for key, value in flat.items():
-        section, point, name = key.partition(".")
-        if point:
-            table = document.setdefault(section, {})
-            table[name] = value
-        else:
-            document[key] = value
+        *tables, name = home(key)
+        inside = document
+        for table in tables:
+            inside = inside.setdefault(table, {})
+        inside[name] = value
     return document
 
 
@@ -107,15 +116,14 @@ def _format(document: Mapping[str, Any]) -> list[Fault]:
 def _examine(document: Mapping[str, Any]) -> tuple[Content | None, list[Fault]]:
     from cycle.case.schema import check
 
-    known, later = _take_later(document)
-    values, problems = check(known)
-    faults = [*later.values(), *_single(problems)]
-    bad = frozenset({*later, *(".".join(p.where[:2]) for p in problems)})
-    tables = [name for name in SECTIONS if name in document]
+    values, problems = check(document)
+    faults = list(_single(problems))
+    bad = frozenset(".".join(owner(p.where)) for p in problems)
+    tables = [name for name in TABLES if name in document]
     given = {key: value for key, value in flatten(document).items() if key in INPUT}
     resolved = resolve(given, bad, tables)
     # a table that is no table hides what it holds: what is missing from it cannot be told
-    hidden = {p.where[0] for p in problems if len(p.where) == 1}
+    hidden = {p.where[0] for p in problems if len(p.where) == 1 or ".".join(p.where) in SECTIONS}
     faults.extend(f for f in resolved.faults if f.key.split(".")[0] not in hidden)
     facts = Facts(resolved.choices, values)
     faults.extend(fault for rule in JOINT_RULES for fault in rule(facts))
@@ -131,6 +139,8 @@ def _content(values: Mapping[str, Any], resolved: Resolved) -> Content:
             value = values.get(entry.key, numbers.get(entry.follows, entry.default))
             if value is not None:
                 numbers[entry.key] = float(value)
+        elif entry.kind == "rows" and entry.key in resolved.applicable:
+            numbers.update(cells(entry.key, values.get(entry.key, [])))
     fractions = dict(values.get("air.mole_fractions", {}))
     total = sum(fractions.values())
     return Content(
@@ -144,34 +154,53 @@ def _content(values: Mapping[str, Any], resolved: Resolved) -> Content:
     )
 
 
-def _take_later(document: Mapping[str, Any]) -> tuple[dict[str, Any], dict[str, Fault]]:
-    """The document without what a later version will know, and a fault for each of those."""
-    known = {name: dict(part) if isinstance(part, Mapping) else part for name, part in document.items()}
-    found: dict[str, Fault] = {}
-    for entry, line in LATER.items():
-        key, _, tag = entry.partition("=")
-        section, _, name = key.partition(".")
-        table = known.get(section)
-        if not name and section in known:
-            known.pop(section)
-            found[section] = Fault("", section, line)
-        elif isinstance(table, dict) and name in table and (not tag or table[name] == tag):
-            table.pop(name)
-            found[key] = Fault("", key, line)
-    return known, found
+def owner(where: tuple[str, ...]) -> tuple[str, ...]:
+    """The part of a place in the document that a fault there makes useless: an input with all it holds, else the place."""
+    return next((where[:n] for n in range(2, len(where)) if ".".join(where[:n]) in INPUT), where)
 
 
 def _single(problems: list[Problem]) -> Iterator[Fault]:
     for problem in problems[: 4 * MOST_FAULTS]:
-        yield _WORDS.get(problem.kind, _wrong_type)(problem, ".".join(problem.where))
+        yield _WORDS.get(problem.kind, _wrong_type)(problem, _key(problem.where))
+
+
+def _table_of(where: tuple[str, ...]) -> Input | None:
+    """The rows that a place lies in."""
+    entry = INPUT.get(".".join(owner(where)))
+    return entry if entry is not None and entry.kind == "rows" and len(owner(where)) < len(where) else None
+
+
+def _key(where: tuple[str, ...]) -> str:
+    table = _table_of(where)
+    if table is None:
+        return ".".join(where)
+    number, *column = where[len(owner(where)) :]
+    return place(table.key, int(number) + 1, ".".join(column))
+
+
+def _entry(where: tuple[str, ...]) -> Input | None:
+    """The input or column that a place is a value of."""
+    table = _table_of(where)
+    if table is None:
+        return INPUT.get(".".join(where))
+    return next((c for c in table.columns if where[len(owner(where)) + 1 :] == (c.key,)), None)
+
+
+def _neighbours(where: tuple[str, ...]) -> list[str]:
+    """Names that could stand at a place."""
+    table, section = _table_of(where), ".".join(where[:-1])
+    if table is not None:
+        return [column.key for column in table.columns]
+    inside = [name.removeprefix(f"{section}.") for name in SECTIONS if name.rpartition(".")[0] == section]
+    return [i.name for i in INPUTS if i.section == section] + inside
 
 
 def _unknown(problem: Problem, key: str) -> Fault:
     if len(problem.where) == 1:
         names = list(_TOP)
-        allowed = f"title, notes, study, or the tables {', '.join(SECTIONS)}"
+        allowed = f"title, notes, study, or the tables {', '.join(TABLES)}"
     else:
-        names = [i.name for i in INPUTS if i.section == problem.where[0]]
+        names = _neighbours(problem.where)
         allowed = ", ".join(names)
     near = difflib.get_close_matches(problem.where[-1], names, 1, 0.6)
     elsewhere = [i.key for i in INPUTS if i.name == problem.where[-1]]
@@ -185,8 +214,7 @@ def stray(key: str, value: object, file: str) -> Fault | None:
 
     Parameters: key, as "section.name"; value, given with it; file, the name that messages use. Returns: the fault or None.
     """
-    section, _, name = key.partition(".")
-    if name and (section in SECTIONS or section in LATER):
+    if split_cell(key) or (key not in SECTIONS and len(home(key)) > 1 and home(key)[0] in TABLES and home(key)[-1]):
         return None
     keys = {i.key: i.key for i in INPUTS} | {i.name: i.key for i in reversed(INPUTS)}
     near = difflib.get_close_matches(key, list(keys), 1, 0.6)
@@ -199,7 +227,7 @@ def _unit(problem: Problem, key: str) -> Fault:
 
 
 def _out_of_bounds(problem: Problem, key: str) -> Fault:
-    entry = INPUT.get(key)
+    entry = _entry(problem.where)
     return Fault("", key, "out of bounds", _given_number(problem.given, entry), bounds(entry) if entry else "at least 0, at most 1")
 
 
@@ -210,27 +238,41 @@ def _given_number(given: object, entry: Input | None) -> str:
 
 
 def _choice(problem: Problem, key: str) -> Fault:
-    if key in INPUT and INPUT[key].kind == "flag":
-        return Fault("", key, "can only be true; leave it out otherwise", shown(problem.given), "true")
-    if len(problem.where) > 2:
+    entry = _entry(problem.where)
+    if entry is None:
         from cycle.case.schema import SPECIES
 
         return Fault("", key, "unknown species", shown(problem.given), ", ".join(SPECIES))
-    choices = INPUT[key].choices
-    near = difflib.get_close_matches(problem.given, choices, 1, 0.6) if isinstance(problem.given, str) else []
-    return Fault("", key, "unknown choice" + (f" (did you mean {near[0]}?)" if near else ""), shown(problem.given), ", ".join(choices))
+    if entry.kind == "flag":
+        return Fault("", key, "can only be true; leave it out otherwise", shown(problem.given), "true")
+    near = difflib.get_close_matches(problem.given, entry.choices, 1, 0.6) if isinstance(problem.given, str) else []
+    text = "unknown choice" + (f" (did you mean {near[0]}?)" if near else "")
+    return Fault("", key, text, shown(problem.given), ", ".join(entry.choices))
 
 
 def _wrong_type(problem: Problem, key: str) -> Fault:
-    allowed = bounds(INPUT[key]) if key in INPUT else _EXPECTED.get(problem.kind, "plain text, numbers and tables")
+    entry = _entry(problem.where)
+    allowed = bounds(entry) if entry else _EXPECTED.get(problem.kind, "plain text, numbers and tables")
     return Fault("", key, "wrong type", shown(problem.given), allowed)
 
 
 def _length(problem: Problem, key: str) -> Fault:
+    entry = _entry(problem.where)
     limit = problem.context.get("max_length", problem.context.get("min_length"))
     given = f"{len(problem.given)} characters" if isinstance(problem.given, str) else shown(problem.given)
-    allowed = bounds(INPUT[key]) if key in INPUT else f"at most {limit} characters"
-    return Fault("", key, "wrong length", given, allowed)
+    if entry is not None and entry.kind == "rows" and isinstance(problem.given, list):
+        return Fault("", key, "wrong number of rows", str(len(problem.given)), bounds(entry))
+    return Fault("", key, "wrong length", given, bounds(entry) if entry else f"at most {limit} characters")
+
+
+def _missing(problem: Problem, key: str) -> Fault:
+    entry = _entry(problem.where)
+    return Fault("", key, f"{entry.label if entry else 'a value'} is not stated", "none", bounds(entry) if entry else "a value")
+
+
+def _broken(problem: Problem, key: str) -> Fault:
+    entry = _entry(problem.where)
+    return Fault("", key, "not a whole number", shown(problem.given), bounds(entry) if entry else "a whole number")
 
 
 def _study_name(problem: Problem, key: str) -> Fault:
@@ -256,5 +298,8 @@ _WORDS: dict[str, Callable[[Problem, str], Fault]] = {
     "string_too_long": _length,
     "string_too_short": _length,
     "too_short": _length,
+    "too_long": _length,
+    "missing": _missing,
+    "multiple_of": _broken,
     "string_pattern_mismatch": _study_name,
 }

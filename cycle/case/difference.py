@@ -7,12 +7,12 @@ from collections.abc import Iterable
 from cycle.case.case import Case, Value, build, thawed
 from cycle.case.checking import FORMAT, nest
 from cycle.case.edits import without_unused
-from cycle.quantities import GROUPS, INPUTS
+from cycle.quantities import GROUPS, INPUTS, Input, cell_key
 
 INPUT_GROUPS = ("flight", "air", "gas", "inlet", "fuel", "combustor", "nozzle", "engine")
 """Groups of inputs by which a difference between two walks is shared out."""
 
-_GROUP_OF = {"entry": "flight", "limits": "engine"}
+_GROUP_OF = {"entry": "flight", "isolator": "inlet", "limits": "engine"}
 
 
 def group_of(key: str) -> str:
@@ -25,11 +25,20 @@ def differences(a: Case, b: Case) -> list[tuple[str, Value, Value]]:
     """Where two cases differ.
 
     Parameters: a, b, two cases. Returns: (key, value in a, value in b) with SI values and tags as `Case.value` gives them, in
-    declared order, groups (tags) first; None where a case has no value. Titles, notes and studies are left out.
+    declared order, groups (tags) first; None where a case has no value. Rows of as many are compared cell by cell. Titles,
+    notes and studies are left out.
     """
-    keys = ["start", *(g.name for g in GROUPS), *(i.key for i in INPUTS)]
+    keys = ["start", *(g.name for g in GROUPS), *(key for i in INPUTS for key in _keys(i, a, b))]
     pairs = ((key, a.value(key), b.value(key)) for key in keys)
     return [(key, one, other) for key, one, other in pairs if one != other]
+
+
+def _keys(entry: Input, a: Case, b: Case) -> list[str]:
+    """Keys under which an input is compared: those of its cells where both cases have as many rows."""
+    count = len(a.rows.get(entry.key, ()))
+    if not count or count != len(b.rows.get(entry.key, ())):
+        return [entry.key]
+    return [cell_key(entry.key, n, column.key) for n in range(1, count + 1) for column in entry.columns]
 
 
 def taking(a: Case, b: Case, groups: Iterable[str]) -> Case:

@@ -2,10 +2,10 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterable, Mapping
+from collections.abc import Iterable, Mapping, Sequence
 
 from cycle.case.rules import ENTRY_TABLES, FLIGHT_TABLES, groups_of, keys_of, reach, resolve
-from cycle.quantities import INPUT, Group, Member
+from cycle.quantities import INPUT, Group, Member, cell_key, input_of
 from cycle.units import respell
 
 
@@ -67,18 +67,28 @@ def without_unused(spelled: Mapping[str, object], kept: Iterable[str] = ()) -> d
 
 
 def _respelled(key: str, value: object, old: object) -> object:
-    if key in INPUT and INPUT[key].kind == "number" and isinstance(value, (int, float)) and not isinstance(value, bool):
-        return respell(value, old, INPUT[key].unit) if abs(value) < float("inf") else value
+    entry = input_of(key)
+    if entry is not None and entry.kind == "rows" and isinstance(value, list) and isinstance(old, Sequence):
+        pairs = zip(value, [*old, *({} for _ in value)], strict=False)
+        return [_respelled_row(key, row, before) for row, before in pairs]
+    if entry is not None and entry.kind == "number" and isinstance(value, (int, float)) and not isinstance(value, bool):
+        return respell(value, old, entry.unit) if abs(value) < float("inf") else value
     return value
+
+
+def _respelled_row(table: str, row: object, old: object) -> object:
+    if not isinstance(row, Mapping) or not isinstance(old, Mapping):
+        return row
+    return {column: _respelled(cell_key(table, 1, column), value, old.get(column)) for column, value in row.items()}
 
 
 def changed(spelled: Mapping[str, object], changes: Mapping[str, object]) -> dict[str, object]:
     """The keys after an edit.
 
-    Parameters: spelled, key -> value as written; changes, key -> new value, None to remove the key.
+    Parameters: spelled, key -> value as written; changes, key -> new plain value, None to remove the key.
     Returns: key -> value as written, in the old order with new keys behind. Nothing is validated here.
     """
-    new = {key: plain(value) for key, value in changes.items() if value is not None}
+    new = {key: value for key, value in changes.items() if value is not None}
     removed = {key for key, value in changes.items() if value is None}
     touched = {key for key in new if key in INPUT}
     out = removed | _replaced_by(touched, spelled)

@@ -2,16 +2,16 @@
 
 from __future__ import annotations
 
-from collections.abc import Iterable, Iterator, Mapping
+from collections.abc import Iterable, Mapping
 from dataclasses import dataclass
 from functools import lru_cache
 from graphlib import TopologicalSorter
 
+from cycle.declarations import When
 from cycle.errors import Fault
 from cycle.quantities import GROUP, GROUPS, INPUT, INPUTS, Group, Input, Member
 from cycle.units import format_number, si_unit
 
-When = tuple[tuple[str, tuple[str, ...]], ...]
 Choices = Mapping[str, str | None]
 
 FLIGHT_TABLES = ("flight", "inlet")
@@ -48,14 +48,16 @@ def _open(when: When, choices: Choices) -> bool:
 
 @lru_cache(maxsize=1)
 def _order() -> tuple[str, ...]:
-    """Choice inputs and groups, each behind those its own conditions name."""
+    """Choice inputs and groups, each behind those its own conditions name and behind the groups it belongs to."""
     nodes: dict[str, When] = {i.key: i.when for i in INPUTS if i.kind == "choice"}
     nodes.update({g.name: g.when for g in GROUPS})
     follows = {i.key: i.follows for i in INPUTS if i.kind == "choice" and i.follows}
     graph = {
-        name: {other for other, _ in when if other in nodes} | ({follows[name]} if name in follows else set())
+        name: {other for other, _ in when if other in nodes}
+        | ({follows[name]} if name in follows else set())
+        | {group.name for group in groups_of().get(name, ())}
         for name, when in nodes.items()
-    }  # fmt: skip
+    }
     return tuple(TopologicalSorter(graph).static_order())
 
 
@@ -108,11 +110,7 @@ def alternatives(group: Group, choices: Choices) -> tuple[str, ...]:
         beside = {**choices, group.name: member.tag}
         if not any(_failing(INPUT[key].when, beside) for key in member.keys):
             tags.append(member.tag)
-    return tuple(tags)
-
-
-def _names(members: Iterable[Member]) -> str:
-    return ", ".join(" + ".join(INPUT[k].name for k in m.keys) for m in members)
+    return tuple(dict.fromkeys(tags))
 
 
 def section_of(group: Group) -> str:
@@ -120,8 +118,16 @@ def section_of(group: Group) -> str:
     return group.name.split(".")[0]
 
 
+def _inside(group: Group, keys: Iterable[str]) -> list[str]:
+    """Keys as they are named inside the group's table."""
+    return list(dict.fromkeys(key.removeprefix(f"{section_of(group)}.") for key in keys))
+
+
 def _one_of(group: Group, members: Iterable[Member]) -> str:
-    return f"{'exactly' if group.required else 'at most'} one of {_names(members)}"
+    names = [" + ".join(_inside(group, m.keys)) for m in members]
+    if len(group.members) == 1:
+        return names[0]
+    return f"{'exactly' if group.required else 'at most'} one of {', '.join(names)}"
 
 
 def ways(group: Group) -> str:
@@ -138,10 +144,12 @@ def _allowed(group: Group, choices: Choices) -> str:
 def _resolve_group(group: Group, given: Mapping[str, object], choices: Choices) -> tuple[str | None, list[Fault]]:
     present = members_present(group, given)
     undecided = _open(group.when, choices)
+    if len(present) > 1 and undecided:
+        return None, []
     if len(present) > 1:
-        keys = [INPUT[k].name for m in present for k in m.keys if k in given]
+        keys = _inside(group, (k for m in present for k in m.keys if k in given))
         text = f"{group.meaning} is stated more than once"
-        return None, [Fault("", section_of(group), text, ", ".join(dict.fromkeys(keys)), _allowed(group, choices))]
+        return None, [Fault("", section_of(group), text, ", ".join(keys), _allowed(group, choices))]
     if present:
         return present[0].tag, _missing_partners(present[0], given)
     if group.default is not None:
@@ -213,7 +221,7 @@ def resolve(given: Mapping[str, object], bad: frozenset[str] = frozenset(), tabl
         if isinstance(declared, Group):
             choices[name], found = _resolve_group(declared, given, choices)
             faults.extend(found)
-        else:
+        elif _in_groups(name, choices) is not False:
             tag = _resolve_choice(declared, given, bad, choices)
             if tag != "":
                 choices[name] = tag
@@ -267,16 +275,18 @@ def _wanted(name: str, allowed: tuple[str, ...]) -> str:
         return " or ".join(f"[{tag}]" for tag in allowed)
     if name in GROUP:
         return " or ".join(" + ".join(m.keys) for m in GROUP[name].members if m.tag in allowed)
-    return f"{name} = {' or '.join(allowed)}"
+    return f"{name} = {' or '.join(tag for tag in allowed if tag)}"
 
 
 def bounds(entry: Input) -> str:
-    """What an input may be, in words: choices, or bounds with the SI unit."""
+    """What an input may be, in words: choices, bounds with the SI unit, or how many rows of which columns."""
+    if entry.kind == "rows":
+        return f"{entry.fewest} to {entry.most} tables [[{entry.key}]], each with {', '.join(c.key for c in entry.columns)}"
     if entry.kind != "number":
         return _KINDS[entry.kind] if entry.kind in _KINDS else ", ".join(entry.choices)
     limits = (("above", entry.above), ("at least", entry.lower), ("below", entry.below), ("at most", entry.upper))
     words = ", ".join(f"{word} {format_number(limit, 10)}" for word, limit in limits if limit is not None)
-    return f"{words} {si_unit(entry.unit)}".rstrip()
+    return f"{'a whole number, ' if entry.whole else ''}{words} {si_unit(entry.unit)}".rstrip()
 
 
 _KINDS = {
@@ -284,71 +294,3 @@ _KINDS = {
     "text": "text, at most 40 characters",
     "fractions": "a table of species and mole fractions that sum to 1",
 }
-
-
-@dataclass(frozen=True, slots=True)
-class Facts:
-    """A resolved case with its values, for the rules that join several of them."""
-
-    choices: Choices
-    values: Mapping[str, object]
-
-    def number(self, key: str) -> float | None:
-        """Value of a number input: as given, else its default."""
-        value = self.values.get(key, INPUT[key].default)
-        return float(value) if isinstance(value, (int, float)) else None
-
-
-def _fractions(facts: Facts) -> Iterator[Fault]:
-    values = facts.values.get("air.mole_fractions")
-    if not isinstance(values, Mapping):
-        return
-    total = sum(values.values())
-    if abs(total - 1.0) > 1e-6:
-        yield Fault("", "air.mole_fractions", "mole fractions do not sum to 1", f"a sum of {total:.9g}", "1 within 1e-6")
-    if not values.get("O2", 0.0) > 0.0:
-        yield Fault("", "air.mole_fractions", "the stream has no oxygen", "O2 = 0 or none", "O2 above 0")
-
-
-def _throat(facts: Facts) -> Iterator[Fault]:
-    sized = facts.choices.get("nozzle.throat", "none") in ("sized", None)
-    if facts.choices.get("combustor.exit") == "exit_area_over_throat" and not sized:
-        key = "combustor.exit_area_over_throat"
-        yield Fault("", key, "there is no throat", "nozzle.throat = none", 'nozzle.throat = "sized"')
-
-
-def _fuel(facts: Facts) -> Iterator[Fault]:
-    identity, model = facts.choices.get("fuel.identity"), facts.choices.get("gas.model")
-    real = model in ("frozen", "equilibrium")
-    if identity == "heating_value" and real:
-        text = "a heating value alone does not say what the fuel burns to"
-        yield Fault("", "fuel.heating_value", text, f"gas.model = {model}", "fuel.name or fuel.formula, or gas.model = constant-gamma")
-    if identity == "heating_value" and facts.choices.get("combustor.heat") == "equivalence_ratio":
-        text = "a fuel given by its heating value alone has no stoichiometric ratio"
-        yield Fault("", "combustor.equivalence_ratio", text, "fuel.heating_value", "fuel_air_ratio or exit_total_temperature")
-    if identity == "formula" and real and "fuel.vapour_specific_heat" not in facts.values:
-        allowed = bounds(INPUT["fuel.vapour_specific_heat"])
-        yield Fault("", "fuel.vapour_specific_heat", f"needed with fuel.formula and gas.model = {model}", "none", allowed)
-
-
-def _formula(facts: Facts) -> Iterator[Fault]:
-    text = facts.values.get("fuel.formula")
-    if not isinstance(text, str):
-        return
-    from cycle.gas.fuels import parse_formula
-
-    try:
-        parse_formula(text)
-    except ValueError as error:
-        yield Fault("", "fuel.formula", str(error))
-
-
-def _corridor(facts: Facts) -> Iterator[Fault]:
-    low, high = facts.number("limits.dynamic_pressure_low"), facts.number("limits.dynamic_pressure_high")
-    if low is not None and high is not None and low > high:
-        given = f"{low:.6g} Pa, above the highest {high:.6g} Pa"
-        yield Fault("", "limits.dynamic_pressure_low", "the corridor is upside down", given, "at most limits.dynamic_pressure_high")
-
-
-JOINT_RULES = (_fractions, _throat, _fuel, _formula, _corridor)
-"""Rules that join several values; each takes Facts and yields faults."""

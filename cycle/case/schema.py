@@ -12,10 +12,10 @@ from pydantic.annotated_handlers import GetJsonSchemaHandler
 from pydantic.json_schema import JsonSchemaValue
 from pydantic_core import CoreSchema, PydanticCustomError
 
-from cycle.case.checking import FORMAT
+from cycle.case.checking import FORMAT, owner
 from cycle.case.rules import bounds, section_of, ways
 from cycle.errors import UnitError
-from cycle.quantities import GROUPS, INPUTS, SECTIONS, Input
+from cycle.quantities import GROUPS, INPUTS, SECTIONS, TABLES, Input
 from cycle.units import LONGEST, UNITS, read
 
 SPECIES = ("N2", "O2", "Ar", "CO2", "CO", "H2O", "H2", "OH", "H", "O", "N", "NO", "NO2", "N2O", "CH4")
@@ -62,7 +62,7 @@ def _reader(dimension: str) -> Any:
 
 
 def _number(entry: Input) -> Any:
-    field = Field(gt=entry.above, ge=entry.lower, lt=entry.below, le=entry.upper)
+    field = Field(gt=entry.above, ge=entry.lower, lt=entry.below, le=entry.upper, multiple_of=1.0 if entry.whole else None)
     return Annotated[float, field, _reader(entry.unit), _Quantity(entry.unit)]
 
 
@@ -82,7 +82,13 @@ def _mole_fractions(entry: Input) -> Any:
     return Annotated[dict[Literal[SPECIES], Annotated[float, Field(ge=0.0, le=1.0)]], Field(min_length=1)]  # type: ignore[valid-type]
 
 
-_TYPES = {"number": _number, "choice": _choice, "text": _text, "flag": _flag, "fractions": _mole_fractions}
+def _rows(entry: Input) -> Any:
+    fields: dict[str, Any] = {column.key: _field(column) for column in entry.columns}
+    row = create_model(_title(entry.key), __config__=_STRICT, __doc__=f"One row of [[{entry.key}]].", **fields)
+    return Annotated[list[row], Field(min_length=entry.fewest, max_length=entry.most)]  # type: ignore[valid-type]
+
+
+_TYPES = {"rows": _rows, "number": _number, "choice": _choice, "text": _text, "flag": _flag, "fractions": _mole_fractions}
 
 
 def _describe(entry: Input) -> str:
@@ -96,6 +102,9 @@ def _drop_null_default(schema: dict[str, Any]) -> None:
 
 
 def _field(entry: Input) -> Any:
+    # inputs are required by the rules of a whole case, columns in every row
+    if entry.required and "." not in entry.key:
+        return _TYPES[entry.kind](entry), Field(description=_describe(entry))
     extra = _drop_null_default if entry.default is None else None
     return _TYPES[entry.kind](entry), Field(entry.default, description=_describe(entry), json_schema_extra=extra)
 
@@ -104,9 +113,17 @@ def _section_words(section: str) -> str:
     return " ".join(f"{ways(group)}." for group in GROUPS if section_of(group) == section) or f"Table [{section}]."
 
 
+def _title(key: str) -> str:
+    """Name of a table's model: "inlet.isentropic_ramp" is InletIsentropicRamp."""
+    return "".join(word.capitalize() for word in key.replace("_", ".").split("."))
+
+
 def _section(section: str) -> type[BaseModel]:
     fields: dict[str, Any] = {i.name: _field(i) for i in INPUTS if i.section == section}
-    return create_model(section.capitalize(), __config__=_STRICT, __doc__=_section_words(section), **fields)
+    for inner in (name for name in SECTIONS if name.rpartition(".")[0] == section):
+        kind = _section(inner)
+        fields[inner.rpartition(".")[2]] = (kind, Field(default_factory=kind))
+    return create_model(_title(section), __config__=_STRICT, __doc__=_section_words(section), **fields)
 
 
 @lru_cache(maxsize=1)
@@ -117,7 +134,7 @@ def model() -> type[BaseModel]:
         "title": (Annotated[str, Field(max_length=LONGEST_TITLE)], Field("untitled", description="One line that names the case.")),
         "notes": (Annotated[str, Field(max_length=LONGEST_NOTES)], Field("", description="Anything worth keeping with the case.")),
     }
-    for section in SECTIONS:
+    for section in TABLES:
         kind = _section(section)
         fields[section] = (kind, Field(default_factory=kind))
     name = Annotated[str, Field(pattern=r"^[A-Za-z0-9_-]{1,64}$")]
@@ -146,22 +163,44 @@ def _problem(detail: Any) -> Problem:
 
 def _without(document: Mapping[str, Any], places: list[tuple[str, ...]]) -> dict[str, Any]:
     """The document without its faulty tables and keys."""
-    heads = {place[0] for place in places if len(place) == 1}
-    leaves = {place[:2] for place in places}
-    kept: dict[str, Any] = {}
-    for name, table in document.items():
-        if name in heads:
-            continue
-        kept[name] = {k: v for k, v in table.items() if (name, k) not in leaves} if isinstance(table, Mapping) else table
+    kept = {name: _copied(table) for name, table in document.items()}
+    for *tables, name in {owner(place) for place in places}:
+        inside: Any = kept
+        for table in tables:
+            inside = inside.get(table, {})
+        inside.pop(name, None)
     return kept
+
+
+def _copied(table: Any) -> Any:
+    return {name: _copied(part) for name, part in table.items()} if isinstance(table, Mapping) else table
 
 
 def _values(checked: BaseModel) -> dict[str, object]:
     values: dict[str, object] = {"title": checked.title, "notes": checked.notes}  # type: ignore[attr-defined]
-    for section in checked.model_fields_set & set(SECTIONS):
-        table = getattr(checked, section)
-        values.update({f"{section}.{name}": getattr(table, name) for name in table.model_fields_set})
+    for section in SECTIONS:
+        table = _given(checked, section)
+        if table is not None:
+            keys = {name: f"{section}.{name}" for name in table.model_fields_set}
+            values.update({key: _plain(getattr(table, name)) for name, key in keys.items() if key not in SECTIONS})
     return values
+
+
+def _given(checked: BaseModel, section: str) -> BaseModel | None:
+    """A table of the checked file, None where the file does not have it."""
+    table = checked
+    for part in section.split("."):
+        if part not in table.model_fields_set:
+            return None
+        table = getattr(table, part)
+    return table
+
+
+def _plain(value: Any) -> Any:
+    """Rows as column -> number with the defaults of columns; anything else as it is."""
+    if not isinstance(value, list):
+        return value
+    return [{name: cell for name, cell in row if cell is not None} for row in value]
 
 
 def json_schema() -> dict[str, Any]:

@@ -78,8 +78,16 @@ def _section(section: str, values: dict[str, str]) -> str:
     entries = [i for i in INPUTS if i.section == section]
     used = any(i.key in values for i in entries)
     groups = [_comment(ways(g)) for g in GROUPS if section_of(g) == section]
-    lines = [f"{'' if used else '# '}[{section}]", *groups, *(_entry(i, values) for i in entries)]
-    return "\n".join(lines) + "\n"
+    keys = [_entry(i, values) for i in entries if i.kind != "rows"]
+    # a key behind an array of tables would be read as one of its columns
+    tables = [_rows(i) for i in entries if i.kind == "rows"]
+    return "\n".join([f"{'' if used else '# '}[{section}]", *groups, *keys, *tables]) + "\n"
+
+
+def _rows(entry: Input) -> str:
+    columns = [_entry(column, {}) for column in entry.columns]
+    words = f"{entry.meaning} {entry.fewest} to {entry.most} tables.{_only(entry)}"
+    return "\n".join([_comment(words), f"# [[{entry.key}]]", *columns])
 
 
 def _comment(text: str) -> str:
@@ -88,10 +96,14 @@ def _comment(text: str) -> str:
 
 def _entry(entry: Input, values: dict[str, str]) -> str:
     symbol = f"{entry.symbol}: " if entry.symbol else ""
-    only = "".join(f" Only with {name} = {' or '.join(tags)}." for name, tags in entry.when if name != "start")
-    words = f"{symbol}{entry.meaning} [{bounds(entry)}; {_default(entry)}]{only}"
+    words = f"{symbol}{entry.meaning} [{bounds(entry)}; {_default(entry)}]{_only(entry)}"
     line = f"{entry.name} = {values[entry.key]}" if entry.key in values else f"# {entry.name} = {_sample(entry)}"
     return f"{_comment(words)}\n{line}"
+
+
+def _only(entry: Input) -> str:
+    """The conditions of an input as sentences."""
+    return "".join(f" Only with {name} = {' or '.join(tag or 'none' for tag in tags)}." for name, tags in entry.when if name != "start")
 
 
 def _default(entry: Input) -> str:

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import tomllib
 from collections import Counter
-from collections.abc import Mapping
+from collections.abc import Iterator, Mapping
 from dataclasses import dataclass
 from functools import cache
 from importlib.resources import files
@@ -74,6 +74,55 @@ def counts(topic: str | None = None) -> dict[str, int]:
     """
     found = Counter(check.founded for check in checks(topic))
     return {name: found[name] for name in CLASSES}
+
+
+@dataclass(frozen=True)
+class Figure:
+    """A number of an independent solution: value and its numerical uncertainty, in `unit`."""
+
+    value: float
+    uncertainty: float
+    unit: str
+
+
+@dataclass(frozen=True)
+class Flowpath:
+    """An independent solution of a whole flowpath.
+
+    case: the tables of its case file, SI. slices: of each segment in its two grids. mode: in words. expected: figures by
+    dotted place, such as "station.2.pressure" or "station.4.mole_fraction.H2O".
+    """
+
+    id: str
+    title: str
+    slices: tuple[int, int]
+    case: Mapping[str, Any]
+    mode: str
+    expected: Mapping[str, Figure]
+
+
+@cache
+def flowpath() -> tuple[Flowpath, ...]:
+    """The independent solutions of whole flowpaths, in order; own calculations, not published."""
+    sources = sorted((item for item in files(__package__).joinpath("flowpath").iterdir() if item.name.endswith(".toml")), key=str)
+    return tuple(_flowpath(tomllib.loads(item.read_text(encoding="utf-8"))) for item in sources)
+
+
+def _flowpath(content: dict[str, Any]) -> Flowpath:
+    expected = {key: value for key, value in content["expected"].items() if key != "mode"}
+    low, high = content["slices_per_segment"]
+    return Flowpath(
+        content["id"], content["title"], (low, high), MappingProxyType(content["case"]), content["expected"]["mode"],
+        MappingProxyType(dict(_figures("", expected))),
+    )  # fmt: skip
+
+
+def _figures(place: str, table: Mapping[str, Any]) -> Iterator[tuple[str, Figure]]:
+    for key, value in table.items():
+        if "uncertainty" in value:
+            yield f"{place}{key}", Figure(float(value["value"]), value["uncertainty"], value["unit"])
+        else:
+            yield from _figures(f"{place}{key}.", value)
 
 
 @cache

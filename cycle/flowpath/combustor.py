@@ -128,7 +128,7 @@ def mix(entering: Stream, setting: Setting, ratio: Array) -> Mixed:
     added = fuel_flow if counted else np.zeros_like(fuel_flow)
     flow = entering.mass_flow + added
     h = fuel_enthalpy(setting, entering, ratio)
-    heat = setting["combustor.wall_heat"]
+    heat = setting.get("combustor.wall_heat", 0.0)
     total = (entering.mass_flow * entering.total_enthalpy + fuel_flow * h - heat) / flow
     impulse = added * _fuel_speed(setting, entering)
     own = entering.mass_flow * entering.velocity
@@ -220,12 +220,9 @@ def _total_temperature(step: Step) -> Array:
     return states.rest(out.gas, out.total_enthalpy, out.state.entropy).temperature
 
 
-def _for_temperature(entering: Stream, setting: Setting) -> Array:
-    """Fuel-air ratio (N,) that gives the exit total temperature; NaN where none does.
-
-    First at rest at the entering total pressure, where nothing chokes, by secant; then, where the total pressure changes
-    the temperature (dissociation), corrected with the burner itself.
-    """
+def ratio_at_rest(entering: Stream, setting: Setting) -> Array:
+    """Fuel-air ratio (N,) that gives the exit total temperature where all burns at rest at the entering total pressure; NaN
+    where none does. Nothing chokes there, and dissociation is nearly that of the burner."""
     asked = setting["combustor.exit_total_temperature"]
     before = states.rest(entering.gas, entering.total_enthalpy, entering.state.entropy)
 
@@ -236,9 +233,26 @@ def _for_temperature(entering: Stream, setting: Setting) -> Array:
     with np.errstate(all="ignore"):
         first = before.specific_heat * (asked - before.temperature) / (setting.heating_value - before.specific_heat * asked)
         ratio = _secant(at_rest, np.maximum(first, 0.0), asked)
-        ratio = np.where(ratio >= -1e-12, np.maximum(ratio, 0.0), np.nan)
-        if setting.constant_gamma:
-            return ratio
+        return np.where(ratio >= -1e-12, np.maximum(ratio, 0.0), np.nan)
+
+
+def ratio_for(temperature_of: Callable[[Array], Array], first: Array, asked: Array) -> Array:
+    """Fuel-air ratio (N,) near `first` at which a burner's exit total temperature is the one asked for; NaN where it does not
+    settle."""
+    with np.errstate(all="ignore"):
+        return _secant(temperature_of, first, asked, _MARCHED)
+
+
+def _for_temperature(entering: Stream, setting: Setting) -> Array:
+    """Fuel-air ratio (N,) that gives the exit total temperature; NaN where none does.
+
+    First at rest, then, where the total pressure changes the temperature (dissociation), corrected with the burner itself.
+    """
+    ratio = ratio_at_rest(entering, setting)
+    if setting.constant_gamma:
+        return ratio
+    asked = setting["combustor.exit_total_temperature"]
+    with np.errstate(all="ignore"):
         usable = np.where(np.isfinite(ratio), ratio, 0.0)
         step = _with_ratio(entering, setting, usable)
         open_ = step.status == SOLVED
@@ -256,7 +270,11 @@ def _for_temperature(entering: Stream, setting: Setting) -> Array:
         return np.where(np.isfinite(ratio), corrected, np.nan)
 
 
-def _secant(function: Callable[[Array], Array], first: Array, asked: Array) -> Array:
+_CLOSED, _MARCHED = 1e-12, 3e-10
+"""Relative distance from the temperature asked for that is met: by closed balances, and by a march with its own iteration."""
+
+
+def _secant(function: Callable[[Array], Array], first: Array, asked: Array, close: float = _CLOSED) -> Array:
     """Root of function = asked (N,) from `first`, by secant with steps held to half; NaN where it does not settle."""
     at = first
     before = function(at) - asked
@@ -266,11 +284,12 @@ def _secant(function: Callable[[Array], Array], first: Array, asked: Array) -> A
         miss = function(x) - asked
         step = np.where(miss == 0.0, 0.0, -miss * (x - at) / (miss - before))
         settled = np.abs(step) <= 1e-13 * np.maximum(np.abs(x), 1e-6)
-        done |= settled | (np.abs(miss) < 1e-12 * asked)
+        done |= settled | (np.abs(miss) < close * asked)
         if np.all(done | ~np.isfinite(step)):
             break
         at, before = np.where(done, at, x), np.where(done, before, miss)
-        x = np.where(done, x, x + np.clip(step, -0.5 * np.abs(x) - 1e-4, 0.5 * np.abs(x) + 1e-4))
+        moved = x + np.clip(step, -0.5 * np.abs(x) - 1e-4, 0.5 * np.abs(x) + 1e-4)
+        x = np.where(done | ~np.isfinite(moved), x, moved)
     return np.where(done, x, np.nan)
 
 
@@ -289,12 +308,17 @@ _HEAT: dict[str, Callable[[Stream, Setting], Array]] = {
 }
 
 
+def heat_ratio(entering: Stream, setting: Setting) -> Array:
+    """Fuel-air ratio (N,) that the case's way of saying the heat amounts to; NaN where none does."""
+    return _HEAT[setting.choices["combustor.heat"]](entering, setting)
+
+
 def burner(entering: Stream, setting: Setting) -> Step:
     """Station 3 to 4; the entering stream already holds the burner's gas.
 
     Not solved: choked, no-fuel (no ratio reaches the temperature asked for), stalled, mode-refused, out-of-range.
     """
-    ratio = _HEAT[setting.choices["combustor.heat"]](entering, setting)
+    ratio = heat_ratio(entering, setting)
     lacking = ~np.isfinite(ratio)
     step = _with_ratio(entering, setting, np.where(lacking, 0.0, ratio))
     status = np.where(lacking, STATUS_CODE["no-fuel"], step.status)

@@ -14,9 +14,17 @@ from cycle.flowpath.stream import Process, Step, Stream, status_of, stream
 from cycle.gas.state import State, scatter
 
 
-def nozzle_gas(burnt: Stream, setting: Setting) -> Stream:
-    """The burnt stream with the gas that expands: of kept composition where the nozzle is frozen."""
-    if setting.choices.get("nozzle.chemistry") != "frozen":
+def has_throat(setting: Setting) -> bool:
+    """Whether the engine has a physical throat, station 5: sized to pass its flow, or given."""
+    return setting.has("nozzle.throat_area") or setting.choices.get("nozzle.throat") == "sized"
+
+
+def nozzle_gas(burnt: Stream, setting: Setting, station: str) -> Stream:
+    """The stream at `station` (4 or 5) with the gas that expands from there: of kept composition where it freezes there."""
+    chemistry = setting.choices.get("nozzle.chemistry")
+    frozen = chemistry == "frozen" and station == "4"
+    after = chemistry == "frozen-after" and setting.choices.get("nozzle.freeze_station") == station
+    if not (frozen or after):
         return burnt
     gas = burnt.gas.frozen(burnt.state)
     return replace(burnt, gas=gas, state=gas.at("tp", burnt.state.temperature, burnt.state.pressure))
@@ -75,7 +83,7 @@ def _lossless(setting: Setting) -> bool:
     return bool(np.all(setting[f"nozzle.{quality}"] == 1.0))
 
 
-def _expanded(entering: Stream, setting: Setting, pressure: Array, start: State | None = None) -> State:
+def expanded(entering: Stream, setting: Setting, pressure: Array, start: State | None = None) -> State:
     """State at `pressure` (N,) behind the real expansion."""
     ideal = entering.gas.at("sp", entering.state.entropy, pressure, start=start)
     if _lossless(setting):
@@ -84,7 +92,7 @@ def _expanded(entering: Stream, setting: Setting, pressure: Array, start: State 
     return entering.gas.at("hp", h, pressure, start=ideal)
 
 
-def _to_area(entering: Stream, setting: Setting, area: Array) -> tuple[State, Flags]:
+def to_area(entering: Stream, setting: Setting, area: Array) -> tuple[State, Flags]:
     """Supersonic state that fills `area` (N,), not below the entering one, and whether there is one.
 
     Isentropic first, then the pressure at which the real expansion keeps the mass flow, by Newton and then secant in ln p.
@@ -99,7 +107,7 @@ def _to_area(entering: Stream, setting: Setting, area: Array) -> tuple[State, Fl
     at, before, slope = ln_p, np.full_like(ln_p, np.nan), np.ones_like(ln_p)
     done = np.zeros(ln_p.shape, np.bool_)
     for _ in range(40):
-        state = _expanded(entering, setting, np.exp(ln_p), state)
+        state = expanded(entering, setting, np.exp(ln_p), state)
         u = states.velocity(entering.total_enthalpy, state)
         miss = np.log(state.density * u / flux)
         secant = (miss - before) / (ln_p - at)
@@ -129,7 +137,7 @@ def _near_throat(entering: Stream, setting: Setting, flux: Array) -> tuple[State
     wide, asked = entering.take(many), setting.take(many)
 
     def excess(ln_p: Array, stream: Stream, part: Setting, target: Array) -> Array:
-        state = _expanded(stream, part, np.exp(ln_p))
+        state = expanded(stream, part, np.exp(ln_p))
         return np.log(state.density * states.velocity(stream.total_enthalpy, state) / target)
 
     ln_p = np.log(wide.state.pressure) + np.tile(span, n)
@@ -138,7 +146,7 @@ def _near_throat(entering: Stream, setting: Setting, flux: Array) -> tuple[State
     fits = (scanned.max(1) >= 0.0) & (scanned[:, -1] < 0.0)
     entry = np.log(entering.state.pressure)
     root = roots.bracketed(lambda x: excess(x, entering, setting, flux), entry + span[peak], entry + span[-1], 1e-15)
-    state = _expanded(entering, setting, np.exp(np.where(fits, root, entry)))
+    state = expanded(entering, setting, np.exp(np.where(fits, root, entry)))
     return state.flagged(fits & ~np.isfinite(root)), fits
 
 
@@ -150,7 +158,7 @@ def _area_ratio(entering: Stream, setting: Setting) -> Array:
     return setting["nozzle.exit_area_ratio"] * entering.area
 
 
-_AREA: dict[str, Callable[[Stream, Setting], Array]] = {
+AREA: dict[str, Callable[[Stream, Setting], Array]] = {
     "exit_area_over_capture": _area_over_capture,
     "exit_area_ratio": _area_ratio,
 }
@@ -164,16 +172,16 @@ def nozzle(entering: Stream, setting: Setting, ambient: Array) -> Step:
     """
     end = setting.choices["nozzle.exit"]
     with np.errstate(all="ignore"):
-        if end in _AREA:
-            area = _AREA[end](entering, setting)
-            state, fits = _to_area(entering, setting, area)
+        if end in AREA:
+            area = AREA[end](entering, setting)
+            state, fits = to_area(entering, setting, area)
             upstream = (area < entering.area * (1.0 - 1e-9)) | ~fits
         else:
             p = ambient if end == "ideal" else setting["nozzle.exit_pressure"]
-            state = _expanded(entering, setting, p)
+            state = expanded(entering, setting, p)
             upstream = p > entering.state.pressure * (1.0 + 1e-9)
         u = states.velocity(entering.total_enthalpy, state)
-    slow = (entering.mach < 1.0 - 1e-9) & (setting.choices["nozzle.throat"] == "none")
+    slow = (entering.mach < 1.0 - 1e-9) & (not has_throat(setting))
     out = Stream(entering.gas, state, u, entering.mass_flow, np.broadcast_to(divergence_factor(setting), u.shape))
-    start = "5" if setting.choices["nozzle.throat"] == "sized" else "4"
+    start = "5" if has_throat(setting) else "4"
     return Step(out, Process("nozzle", start, "10"), status_of(state, (slow, "throat-mismatch"), (upstream, "under-expanded")))

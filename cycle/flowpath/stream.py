@@ -89,7 +89,8 @@ class Booking:
 class Process:
     """One process from station `start` to `end`; figures: own figures by name, each (N,).
 
-    solves_momentum: whether the process balances axial momentum, so that the audit can hold it to that.
+    profile: the flow along the process by name, each (R, N). solves_momentum: whether the process balances axial momentum, so
+    that the audit can hold it to that.
     """
 
     name: str
@@ -98,6 +99,7 @@ class Process:
     figures: Mapping[str, Array] = field(default_factory=dict)
     booking: Booking | None = None
     solves_momentum: bool = False
+    profile: Mapping[str, Array] = field(default_factory=dict)
 
     def take(self, index: Codes | Flags) -> Process:
         """The process of the chosen points."""
@@ -108,6 +110,7 @@ class Process:
             {k: v[index] for k, v in self.figures.items()},
             None if self.booking is None else self.booking.take(index),
             self.solves_momentum,
+            {k: v[:, index] for k, v in self.profile.items()},
         )
 
 
@@ -121,6 +124,25 @@ class Step:
     stream: Stream
     process: Process
     status: Codes
+
+
+@dataclass(frozen=True, slots=True)
+class Steps:
+    """Several steps that one solution gives, in order, and what it does to the stream ahead of it.
+
+    captured: share (N,) of the mass flow taken in; all stations ahead carry that much less. replaced: stations ahead whose
+    stream this solution changes (a shock expelled from the inlet), in their new state.
+    """
+
+    steps: tuple[Step, ...]
+    captured: Array | None = None
+    replaced: Mapping[str, Stream] = field(default_factory=dict)
+
+
+def named_status(codes: Codes, names: tuple[str, ...], meaning: Mapping[str, str]) -> Codes:
+    """Status codes (N,) of a component's own fault codes; `meaning` renames the faults that are no statuses."""
+    table = np.array([STATUS_CODE[meaning.get(name, name)] for name in names])
+    return table[codes]
 
 
 def status_of(state: State, *faults: tuple[Flags, str]) -> Codes:

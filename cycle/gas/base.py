@@ -120,6 +120,8 @@ class FixedGas(Gas):
         p = np.broadcast_to(named.get("pressure", REFERENCE_PRESSURE if start is None else start.pressure), shape)
         if kind == "vp":
             T = named["volume"] * p / self.gas_constant
+        if kind == "hv":
+            p = self.gas_constant * T / named["volume"]
         with np.errstate(all="ignore"):
             ln_T, ln_p, done = self._iterate(kind, np.log(T), np.log(p), targets)
             return self._state(np.where(done, np.exp(ln_T), np.nan), np.exp(ln_p), done)

@@ -109,6 +109,7 @@ CLOSURES: dict[str, Closure] = {
     "hp": Closure(((_enthalpy, (0,)), (_pressure, (1,))), ("enthalpy", "pressure"), fixes_p=True),
     "sp": Closure(((_entropy, (0,)), (_pressure, (1,))), ("entropy", "pressure"), fixes_p=True),
     "vp": Closure(((_volume, (0,)), (_pressure, (1,))), ("volume", "pressure"), fixes_p=True),
+    "hv": Closure(((_enthalpy, (0,)), (_volume, (1,))), ("enthalpy", "volume")),
     "hs": Closure(((_enthalpy, (0,)), (_entropy, (1,))), ("enthalpy", "entropy")),
     "ts": Closure(((_temperature, (0,)), (_entropy, (1,))), ("temperature", "entropy")),
     "flux": Closure(((_entropy, (0,)), (_energy, (1, 2))), ("entropy", "total enthalpy", "mass flux"), branched=True),

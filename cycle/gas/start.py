@@ -207,6 +207,7 @@ TEMPERATURES: dict[str, Callable[[Guess, dict[str, Array]], Array]] = {
     "tp": _given,
     "ts": _given,
     "hp": _from_enthalpy,
+    "hv": _from_enthalpy,
     "hs": _from_enthalpy,
     "sp": _from_entropy,
     "vp": _from_volume,
@@ -221,6 +222,8 @@ def first_temperature_pressure(kind: str, guess: Guess, named: dict[str, Array])
     T = TEMPERATURES[kind](guess, named)
     if "pressure" in named:
         return T, np.log(named["pressure"] / REFERENCE_PRESSURE)
+    if "volume" in named:
+        return T, np.log(guess.total * GAS_CONSTANT * T / (named["volume"] * REFERENCE_PRESSURE))
     return T, np.clip(guess.ln_pressure(T, named["entropy"]), -15.0, 15.0)
 
 

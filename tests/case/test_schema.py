@@ -3,45 +3,68 @@
 from __future__ import annotations
 
 import re
+from typing import Any
 
 from cycle.case import json_schema, loads, template
 from cycle.case.schema import SPECIES, model
 from cycle.gas.species import species_data
-from cycle.quantities import GROUPS, INPUT, INPUTS, LATER, SECTIONS
+from cycle.quantities import GROUPS, INPUT, INPUTS, SECTIONS, TABLES, Input
 from cycle.units import UNITS
 
 
 def test_schema_has_exactly_the_declared_keys() -> None:
     fields = model().model_fields
-    assert set(fields) == {"format", "title", "notes", "study", *SECTIONS}
+    assert set(fields) == {"format", "title", "notes", "study", *TABLES}
     for section in SECTIONS:
-        table = fields[section].annotation
-        assert table is not None
-        assert set(table.model_fields) == {i.name for i in INPUTS if i.section == section}  # type: ignore[attr-defined]
+        inside = fields
+        for part in section.split("."):
+            inside = inside[part].annotation.model_fields  # type: ignore[union-attr]
+        tables = {name.rpartition(".")[2] for name in SECTIONS if name.rpartition(".")[0] == section}
+        assert set(inside) == {i.name for i in INPUTS if i.section == section} | tables
 
 
 def test_json_schema_states_unit_bounds_default_and_meaning_of_every_key() -> None:
     schema = json_schema()
     assert schema["required"] == ["format"]
     for entry in INPUTS:
-        table = schema["$defs"][entry.section.capitalize()]
+        table = _reached(schema, entry.section)
         assert table["additionalProperties"] is False
-        said = table["properties"][entry.name]
-        assert entry.meaning in said["description"]
-        assert said.get("default") == entry.default
-        if entry.kind == "number":
-            number, text = said["anyOf"]
-            stated = {name: number.get(name) for name in ("minimum", "exclusiveMinimum", "maximum", "exclusiveMaximum")}
-            assert stated == {
-                "minimum": entry.lower,
-                "exclusiveMinimum": entry.above,
-                "maximum": entry.upper,
-                "exclusiveMaximum": entry.below,
-            }
-            assert text["type"] == "string"
-            assert all(unit in text["description"] for unit in UNITS[entry.unit] if unit)
-        elif entry.kind == "choice":
-            assert said["enum"] == list(entry.choices)
+        check_said(schema, entry, table["properties"][entry.name])
+
+
+def _reached(schema: dict[str, Any], section: str) -> dict[str, Any]:
+    """The part of the schema that says what a table holds."""
+    found = schema
+    for part in section.split("."):
+        found = schema["$defs"][found["properties"][part]["$ref"].rpartition("/")[2]]
+    return found
+
+
+def check_said(schema: dict[str, Any], entry: Input, said: dict[str, Any]) -> None:
+    assert entry.meaning in said["description"]
+    assert said.get("default") == entry.default
+    if entry.kind == "number":
+        number, text = said["anyOf"]
+        stated = {name: number.get(name) for name in ("minimum", "exclusiveMinimum", "maximum", "exclusiveMaximum")}
+        assert stated == {
+            "minimum": entry.lower,
+            "exclusiveMinimum": entry.above,
+            "maximum": entry.upper,
+            "exclusiveMaximum": entry.below,
+        }
+        assert number.get("multipleOf") == (1.0 if entry.whole else None)
+        assert text["type"] == "string"
+        assert all(unit in text["description"] for unit in UNITS[entry.unit] if unit)
+    elif entry.kind == "choice":
+        assert said["enum"] == list(entry.choices)
+    elif entry.kind == "rows":
+        assert (said["minItems"], said["maxItems"]) == (entry.fewest, entry.most)
+        row = schema["$defs"][said["items"]["$ref"].rpartition("/")[2]]
+        assert row["additionalProperties"] is False
+        assert row.get("required", []) == [column.key for column in entry.columns if column.required]
+        assert set(row["properties"]) == {column.key for column in entry.columns}
+        for column in entry.columns:
+            check_said(schema, column, row["properties"][column.key])
 
 
 def test_json_schema_pattern_takes_what_the_template_writes() -> None:
@@ -69,7 +92,11 @@ def test_declarations_hold_together() -> None:
     for group in GROUPS:
         assert group.required == (group.default is None)
         assert all(key in INPUT for member in group.members for key in (*member.keys, *member.also))
-    assert all(key.partition("=")[0] not in INPUT or "=" in key for key in LATER)
+    for entry in INPUTS:
+        assert bool(entry.columns) == (entry.kind == "rows")
+        assert all(column.kind == "number" and "." not in column.key for column in entry.columns)
+        assert set(entry.one_of) <= {column.key for column in entry.columns}
+        assert 1 <= entry.fewest <= entry.most <= 64
 
 
 def test_species_of_an_air_composition_have_data() -> None:

@@ -118,6 +118,113 @@ equivalence_ratio = 0.2
 """
 
 
+DUCT = """\
+format = 1
+title = "invented dual-mode engine, ramps and a duct"
+
+[flight]
+mach = 8.0
+dynamic_pressure = "50 kPa"
+
+[inlet]
+lip_x = "2.3 m"
+lip_y = "0.5 m"
+[[inlet.ramp]]
+angle = "4 deg"
+length = "1.2 m"
+[[inlet.ramp]]
+angle = "5 deg"
+length = "0.6 m"
+[[inlet.ramp]]
+angle = "6 deg"
+
+[isolator]
+length = "0.5 m"
+hydraulic_diameter = "0.08 m"
+momentum_thickness = "0.6 mm"
+
+[fuel]
+name = "hydrogen"
+
+[combustor]
+process = "duct"
+equivalence_ratio = 0.4
+burnt_fraction = 0.9
+friction_coefficient = 0.002
+[[combustor.area]]
+x = 0.0
+area_ratio = 1.0
+[[combustor.area]]
+x = "0.3 m"
+area_ratio = 1.0
+[[combustor.area]]
+x = "1.2 m"
+area_ratio = 1.8
+[[combustor.injector]]
+x = "5 cm"
+
+[nozzle]
+exit_area_over_capture = 1.5
+velocity_coefficient = 0.985
+
+[engine]
+capture_area = "0.4 m^2"
+"""
+"""Attached at this heat, with a shock train from an equivalence ratio of 1.23, a thermal throat from 1.661, unstarted from 1.679."""
+
+DETACHED = DUCT.replace("mach = 8.0", "mach = 2.0").replace('lip_x = "2.3 m"\nlip_y = "0.5 m"\n', "")
+"""Too slow for its turns; without a lip nothing passes in front of the inlet."""
+
+INTERNAL = DUCT.replace("[nozzle]", "[nozzle]\ninternal_area_ratio = 2.0")
+"""The same engine with an internal nozzle: it has a station 9."""
+
+DUCT_RIG = """\
+format = 1
+title = "invented direct-connect duct"
+
+[entry]
+station = "2"
+mach = 2.5
+pressure = "60 kPa"
+temperature = "900 K"
+area = "0.03 m^2"
+
+""" + DUCT[DUCT.index("[isolator]") : DUCT.index("[nozzle]")]
+
+THROAT = """\
+format = 1
+title = "invented kerosene ramjet, cone and given throat"
+
+[flight]
+mach = 3.0
+altitude = "17 km"
+
+[inlet]
+cowl_angle = "8 deg"
+internal_contraction = 1.25
+lip_x = "0.33 m"
+lip_y = "0.22 m"
+[inlet.cone]
+half_angle = "20 deg"
+
+[fuel]
+name = "kerosene"
+
+[combustor]
+process = "constant-area"
+entry_area_ratio = 2.0
+equivalence_ratio = 0.5
+burnt_fraction = 0.93
+
+[nozzle]
+throat_area = "0.112 m^2"
+exit_area_ratio = 2.2
+
+[engine]
+capture_area = "0.152 m^2"
+"""
+
+
 def environment(folder: Path, **more: str) -> dict[str, str]:
     """The environment of a child: the package found from anywhere, its state in `folder`."""
     kept = {k: v for k, v in os.environ.items() if k not in ("NO_COLOR", "TERM", "COLUMNS")}

@@ -55,7 +55,7 @@ def test_later_commands_are_refused_and_not_offered(capsys: pytest.CaptureFixtur
     assert name not in capsys.readouterr().out.split()
 
 
-@pytest.mark.parametrize("arguments", [(), ("solve",), ("compare",), ("explain",), ("check",), ("new",), ("schema",)])
+@pytest.mark.parametrize("arguments", [(), ("solve",), ("compare",), ("explain",), ("check",), ("new",), ("schema",), ("fix-geometry",)])
 def test_help_fits_80_columns(capsys: pytest.CaptureFixture[str], monkeypatch: pytest.MonkeyPatch, arguments: tuple[str, ...]) -> None:
     monkeypatch.setenv("COLUMNS", "80")
     with pytest.raises(SystemExit):

@@ -12,7 +12,7 @@ from cycle.errors import CaseError
 from tui import figures, items, session
 from tui.engine import Engine
 from tui.journal import Journal
-from tui.session import SOLVING, Change, Session
+from tui.session import ASSESSING, SOLVING, Change, Session
 
 PAINT_EVERY = 0.25
 """Seconds between two paints while a step key is held."""
@@ -122,7 +122,7 @@ class Desk(Screen[None], inherit_bindings=False):
         found = self.session.figures
         waits = not self.session.settled or (found is not None and not found.assessed)
         if waits and not self.session.note:
-            self.put(replace(self.session, note=SOLVING))
+            self.put(replace(self.session, note=ASSESSING if self.session.settled else SOLVING))
 
     def came(self, generation: int, found: figures.Figures) -> None:
         """Take a walk that the worker solved or assessed; a stale one is dropped. A solved one is assessed next. While

@@ -2,20 +2,29 @@
 
 from __future__ import annotations
 
+from collections.abc import Callable, Mapping
 from dataclasses import replace
-from functools import partial
+from typing import TYPE_CHECKING
 
 from textual import events
 
 from cycle.quantities import GROUP, INPUT
 from cycle.units import format_number, show
-from tui import items, keying, session
-from tui.figures import NAN, PRESENT
+from tui import items, keying, rows, session, starts
+from tui.figures import NAN, PRESENT, Figures
 from tui.items import Item
-from tui.line import Line, line
 from tui.screens.desk import Desk
-from tui.screens.page import Answer, Page
+from tui.screens.page import Answer, Page, text_body
 from tui.session import Entry
+
+if TYPE_CHECKING:
+    from cycle.case import Case
+
+_LETTERS = "123456789abcdefghijklmnop"
+"""Keys of the answers to a question with many."""
+_WAYS = (
+    "A value in [ ] is that of the present walk: the walk stays where it is. Where more is needed beside it, start values are filled in."
+)
 
 
 class Editing(Desk, inherit_bindings=False):
@@ -64,13 +73,31 @@ class Editing(Desk, inherit_bindings=False):
             self._cycle(hand, sign)
         elif isinstance(hand.value, int | float) and hand.input.kind == "number":
             value, words = items.stepped(hand, sign)
-            if value is None or (self.change({"set": {hand.key: value}}, rapid=True) and words):
+            if value is None or (self._set(hand.key, value, rapid=True) and words):
                 self.put(replace(self.session, note=f"{hand.label}: {words}"))
         else:
             self.do_edit()
 
+    def _set(self, key: str, value: object, rapid: bool = False, beside: Mapping[str, object] | None = None) -> bool:
+        """Give an input or a cell a value, and what hangs on it. Returns: whether it held."""
+        case = self.session.case
+        if case is None:
+            return False
+        change = items.completed({"set": {key: value}}, case, beside or {})
+        held = self.change(change, rapid)
+        if held and rows.place_of(key) is not None and len(change["set"]) > 1 and not rapid:
+            self.put(replace(self.session, note=f"{', '.join(sorted(k.partition('.')[2] for k in change['set'] if k != key))}: follow"))
+        return held
+
     def _cycle(self, hand: Item, sign: int) -> None:
-        self.change({"set": {hand.key: items.next_choice(hand, sign)}})
+        """The next choice, with start values for what it needs."""
+        choice = items.next_choice(hand, sign)
+        self._set(hand.key, choice, beside=self._beside(hand.key, choice))
+
+    def _beside(self, name: str, tag: str) -> Mapping[str, object]:
+        """Start values of what a way or a choice needs beside itself."""
+        case = self.session.case
+        return starts.of(case, self._fresh(), name, tag) if case is not None else {}
 
     def do_default(self) -> None:
         """Take the value in hand back to its default."""
@@ -80,7 +107,26 @@ class Editing(Desk, inherit_bindings=False):
         if hand.default:
             self.put(replace(self.session, note=f"{hand.label}: holds its default"))
         else:
-            self.change({"set": {hand.key: None}})
+            self._set(hand.key, None)
+
+    def do_add_row(self) -> None:
+        """One row more behind the one in hand."""
+        self._rows(rows.more)
+
+    def do_remove_row(self) -> None:
+        """The row in hand gone."""
+        self._rows(rows.less)
+
+    def _rows(self, edit: Callable[[Case, str], tuple[dict[str, object], str]]) -> None:
+        hand, case = self._hand(), self.session.case
+        if hand is None or case is None:
+            return
+        if rows.place_of(hand.key) is None:
+            self.put(replace(self.session, note=f"{hand.label} stands in no row"))
+            return
+        changes, key = edit(case, hand.key)
+        if self.change({"set": changes}) and self.session.case is not None:
+            self._take_in_hand(rows.others(key)[0] if rows.hidden(self.session.case, key) and rows.others(key) else key)
 
     def do_undo(self) -> None:
         """Take back the last edit."""
@@ -95,15 +141,28 @@ class Editing(Desk, inherit_bindings=False):
         hand, case = self._hand(), self.session.case
         if hand is None or case is None:
             return
-        if hand.group is None:
+        if rows.others(hand.key):
+            self._other_cell(hand, rows.others(hand.key)[0])
+            return
+        ways = [(g, t) for g in items.groups_of(case, hand) for t in case.alternatives(g) if t != case.value(g)]
+        if not ways:
             self.put(replace(self.session, note=f"{hand.label} has no other way to say it"))
             return
-        group = hand.group
-        tags = [t for t in case.alternatives(group) if t != case.value(group)]
-        answers = tuple(Answer(str(i + 1), t, self._way_words(group, t)) for i, t in enumerate(tags))
-        intro = [f"Now: {hand.label} {hand.written}", "A value in [ ] is that of the present walk: the walk stays where it is."]
-        body: list[Line] = [line(text) for text in intro]
-        self.app.push_screen(Page(GROUP[group].meaning, lambda wide: body, answers), partial(self._switch, group))
+        answers = tuple(Answer(_LETTERS[i], str(i), self._way_words(group, tag)) for i, (group, tag) in enumerate(ways))
+        intro = [f"Now: {hand.label} {hand.written}", _WAYS]
+        meaning = ", ".join(GROUP[name].meaning for name in dict.fromkeys(group for group, _ in ways))
+        self.app.push_screen(Page(meaning, text_body(intro), answers), lambda at: self._switch(*ways[int(at)]) if at else None)
+
+    def _other_cell(self, hand: Item, key: str) -> None:
+        """Say an area of a duct section as a ratio or the other way round; the area at burner entry is the walk's."""
+        found, value = self._fresh(), hand.value
+        entry = found.at("3", "area") if found is not None else NAN
+        if entry != entry or not isinstance(value, int | float):
+            self.put(replace(self.session, note="no solved walk of these inputs to say it the other way"))
+            return
+        ratio = key.endswith("_ratio")
+        if self._set(key, float(f"{value / entry if ratio else value * entry:.10g}")):
+            self._take_in_hand(key)
 
     def _way_words(self, group: str, tag: str) -> str:
         member = next((m for m in GROUP[group].members if m.tag == tag), None)
@@ -111,24 +170,30 @@ class Editing(Desk, inherit_bindings=False):
         told = [_shown(k, v, self.session.system) for k, v in known if v == v]
         return f"{items.way_label(group, tag)}{' [' + ', '.join(told) + ']' if told else ''}"
 
+    def _fresh(self) -> Figures | None:
+        """Figures of the solved walk of these inputs, None where there is none."""
+        found = self.session.figures
+        return found if found is not None and found.solved and self.session.settled else None
+
     def _present(self, key: str) -> float:
         """Value of an input in the present walk, nan where it is not known."""
-        found = self.session.figures
-        fresh = found is not None and found.solved and self.session.settled
-        return PRESENT[key](found) if fresh and found is not None and key in PRESENT else NAN
+        found = self._fresh()
+        return PRESENT[key](found) if found is not None and key in PRESENT else NAN
 
-    def _switch(self, group: str, tag: str | None) -> None:
-        """Say a group in another way: by the walk's value where it is known, else by a field that asks for it."""
-        if not tag:
-            return
+    def _switch(self, group: str, tag: str) -> None:
+        """Say a group in another way: by the walk's values or by start values, else by a field that asks for it."""
+        case = self.session.case
+        assert case is not None
         member = next((m for m in GROUP[group].members if m.tag == tag), None)
-        asks = [k for k in member.keys if INPUT[k].kind != "flag"] if member is not None else []
+        beside = self._beside(group, tag)
+        asks = [k for k in member.keys if INPUT[k].kind != "flag" and k not in beside] if member is not None else []
         known = {k: self._present(k) for k in asks}
         if member is None or all(v == v for v in known.values()):
             value: object = next(iter(known.values()), None) if len(known) < 2 else known
-            done = self.change({"switch": [group, tag, value]})
+            done = self.change(items.completed({"switch": [group, tag, value]}, case, beside))
             if done and member is not None:
-                self._take_in_hand(member.keys[0])
+                first = member.keys[0]
+                self._take_in_hand(first if INPUT[first].kind != "rows" else f"{first}.1.{INPUT[first].columns[0].key}")
         elif len(asks) > 1:
             self.put(replace(self.session, note="both values are needed and no solved walk has them"))
         else:
@@ -143,8 +208,8 @@ class Editing(Desk, inherit_bindings=False):
         self.put(replace(self.session, entry=entry, note=note, faults=()))
 
     def _take_in_hand(self, key: str) -> None:
-        here = {**self.session.inputs, self.session.station: key}
-        self.put(replace(self.session, inputs=here))
+        station = items.home(self.session, key)
+        self.put(replace(self.session, station=station, inputs={**self.session.inputs, station: key}))
 
     def on_key(self, event: events.Key) -> None:
         """While a field is open, keys belong to it."""
@@ -170,8 +235,14 @@ class Editing(Desk, inherit_bindings=False):
         untouched = hand is not None and entry.switch is None and entry.text == items.entry_for(hand, self.session).text
         if untouched:
             self.put(replace(self.session, entry=None, note=""))
-        elif self.change(items.change_of(entry)) and entry.switch is not None:
+        elif self._committed(entry) and entry.switch is not None:
             self._take_in_hand(entry.key)
+
+    def _committed(self, entry: Entry) -> bool:
+        case = self.session.case
+        if entry.switch is None:
+            return self._set(entry.key, items.typed(entry))
+        return case is not None and self.change(items.completed(items.change_of(entry), case, self._beside(*entry.switch)))
 
 
 def _shown(key: str, value: float, system: str) -> str:

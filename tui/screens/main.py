@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Callable
 from dataclasses import replace
+from functools import partial
 from typing import ClassVar
 
 from textual import events
@@ -15,11 +16,12 @@ from cycle.errors import CaseError, FileChanged
 from tui import figures, items, session
 from tui.actions import ACTIONS
 from tui.engine import Result
-from tui.screens import telling
+from tui.line import Line
+from tui.screens import ducting, telling
 from tui.screens.editing import Editing
 from tui.screens.filing import Filing
 from tui.screens.page import Page
-from tui.session import VIEWS
+from tui.session import VIEWS, Session
 from tui.views import headline, inputs, side, table
 from tui.widgets.panel import Panel
 
@@ -200,6 +202,29 @@ class MainScreen(Editing, Filing, inherit_bindings=False):
         """The page of limits, audit and accounts."""
         self.app.push_screen(Page("Limits, audit and where the thrust went", telling.limits(self.session)))
 
+    def do_duct(self) -> None:
+        """The page of the flow along the duct; the heat at the borders of its regimes is solved for when it opens."""
+        found = self.session.figures
+        case = self.session.case
+        if found is None or case is None or case.value("combustor.process") != "duct":
+            self.put(replace(self.session, note="no duct: the burner process duct gives one"))
+            return
+        if self.session.borders is None and self.session.settled:
+            self.engine.newest("borders", self.session.generation, lambda: figures.heat_limits(found))
+        body, head = (partial(self._of_duct, view) for view in (ducting.duct_rows, ducting.duct_head))
+        self.app.push_screen(Page("Along the duct", body, head=head))
+
+    def _of_duct(self, view: Callable[[Session, int], list[Line]], wide: int) -> list[Line]:
+        """A part of the duct's page, of the session as it is when it is painted."""
+        return view(self.session, wide)
+
+    def bordered(self, result: Result) -> None:
+        """Show the borders of the duct's regimes on the page that waits for them."""
+        if result.generation == self.session.generation:
+            self.put(replace(self.session, borders=result.value))
+            if isinstance(self.app.screen, Page):
+                self.app.screen.paint()
+
     def do_help(self) -> None:
         """The page of keys."""
         self.app.push_screen(Page("Keys", telling.keys()))
@@ -225,6 +250,7 @@ HANDLERS: dict[str, Callable[[MainScreen, Result], None]] = {
     "solve": MainScreen.walked,
     "assess": MainScreen.walked,
     "referee": MainScreen.refereed,
+    "borders": MainScreen.bordered,
 }
 """Kind of a job -> what takes its result."""
 

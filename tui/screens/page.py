@@ -37,13 +37,16 @@ MOVES: dict[str, Callable[[int, int, int], int]] = {
 
 
 class Page(Screen[str]):
-    """Shows a text and, where there are answers, asks for one. Gives the answer's name, "" where it was left."""
+    """Shows a text and, where there are answers, asks for one. Gives the answer's name, "" where it was left.
+
+    Parameters: title; body, the text, which scrolls; answers; head, lines above the text that stay.
+    """
 
     CSS = "Page { layout: vertical; } #page { height: 1fr; }"
 
-    def __init__(self, title: str, body: Body, answers: tuple[Answer, ...] = ()) -> None:
+    def __init__(self, title: str, body: Body, answers: tuple[Answer, ...] = (), head: Body = lambda wide: []) -> None:
         super().__init__()
-        self._heading, self._body, self._answers = title, body, answers
+        self._heading, self._body, self._answers, self._fixed = title, body, answers, head
         self._at = 0
 
     def compose(self) -> ComposeResult:
@@ -57,12 +60,16 @@ class Page(Screen[str]):
         self._paint(self.app.size)
         self.refresh()
 
+    def paint(self) -> None:
+        """Paint what the text says now."""
+        self._paint(self.app.size)
+
     def _paint(self, size: Size) -> None:
         """Title, as much of the text as fits, the answers, the keys."""
         wide, height = size
-        body = self._body(wide)
+        body, fixed = self._body(wide), self._fixed(wide)[: max(0, height - 3)]
         choices = self._choices(wide)
-        room = max(1, height - 2 - len(choices))
+        self._room = room = max(1, height - 2 - len(choices) - len(fixed))
         top = 0 if self._answers else max(0, min(self._at, len(body) - room))
         if not self._answers:
             self._at = top
@@ -71,7 +78,7 @@ class Page(Screen[str]):
         keys = "arrows and Enter, or the letter; Escape leaves" if self._answers else "arrows scroll; Escape goes back"
         padding: list[Line] = [line("")] * (room - len(shown))
         head = line((fit(clean(self._heading) + more, wide), BOLD))
-        self._sheet.show([head, *shown, *choices, *padding, line((fit(keys, wide), DIM))], size)
+        self._sheet.show([head, *fixed, *shown, *choices, *padding, line((fit(keys, wide), DIM))], size)
 
     def _choices(self, wide: int) -> list[Line]:
         return [line((fit(f" {a.key}  {clean(a.words)}", wide), CURSOR if i == self._at else PLAIN)) for i, a in enumerate(self._answers)]
@@ -83,8 +90,7 @@ class Page(Screen[str]):
         event.stop()
         if event.key in MOVES:
             last = len(self._answers) - 1 if self._answers else len(self._body(self.size.width))
-            page = max(1, self.size.height - 3)
-            self._at = max(0, min(MOVES[event.key](self._at, page, last), max(last, 0)))
+            self._at = max(0, min(MOVES[event.key](self._at, max(1, self._room - 1), last), max(last, 0)))
             self._paint(self.app.size)
         elif event.key in ("escape", "q", "ctrl+q"):
             self.dismiss("")

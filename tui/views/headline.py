@@ -5,8 +5,8 @@ from __future__ import annotations
 import os
 
 from cycle.quantities import MODES, OUTPUT
-from cycle.units import show
-from tui.figures import Figures
+from cycle.units import format_number, show
+from tui.figures import NAN, Figures, Margin
 from tui.line import BOLD, DIM, NEAR, OVER, PLAIN, Line, clean, fit, line, width, wrap
 from tui.session import Session, performance_keys
 from tui.views.numbers import difference, figure, quantity, unit
@@ -32,8 +32,17 @@ def lines(session: Session, columns: int, height: int) -> list[Line]:
         return [body[i] for i in (1, -1, 0, 2)[:height]]
     if session.failed or height < 5:
         return body[:height]
-    words = "" if _rig(session) else fit(" uninstalled; spill drag not assessed --", columns)
+    words = "" if _rig(session) else fit(f" {_installed(session)} --", columns)
     return [*body, line((words.rjust(columns, "-"), DIM))]
+
+
+def _installed(session: Session) -> str:
+    """What the thrust above leaves out."""
+    value = session.figures.performance.get("installed_thrust", NAN) if session.figures is not None else NAN
+    if value != value:
+        return "uninstalled; spill drag not assessed"
+    told = f"{figure('installed_thrust', value, session.system)} {unit('installed_thrust', session.system)}"
+    return f"uninstalled; installed {told}, less additive and spill drag"
 
 
 def _rig(session: Session) -> bool:
@@ -115,19 +124,50 @@ def audit_words(found: Figures) -> str:
     return "audit ok" if found.audit_ok else "AUDIT FAILED"
 
 
-def _over(found: Figures, system: str, numbers: bool) -> str:
-    """Limits that are over, with figure and limit where the numbers are wanted."""
-    words = []
-    for m in found.limits:
-        if m.state == "over":
-            against = f" {quantity(m.actual, m.unit, system)} {'>' if m.upper else '<'} {quantity(m.allowed, m.unit, system)}"
-            words.append(m.label + (against if numbers else ""))
-    return f"OVER {', '.join(words)}" if words else "none over"
+MARGINS = {
+    "unstart": "unstart",
+    "duct_separation": "burner separation",
+    "isolator_length": "isolator",
+    "throat_capacity": "throat",
+    "attached": "attached shocks",
+    "separation": "inlet separation",
+    "start": "inlet start",
+}
+"""Limits that a process gives as a margin: key, short name. They stand first, the margin in percent behind the name."""
 
 
-def _named(found: Figures, state: str, counted: bool) -> str:
-    names = [m.label for m in found.limits if m.state == state]
-    return f"{state}: {len(names) if counted else ', '.join(names) or 'none'}"
+FORMS = ((0, 0, 0), (0, 0, 4), (1, 0, 4), (1, 1, 4), (0, 2, 4), (1, 2, 4), (2, 2, 4), (3, 2, 4), (1, 4, 4), (3, 4, 4), (4, 4, 4))
+"""Which words of `_told` stand for the limits over, near and not assessed: the fullest form first."""
+
+
+def _in_state(found: Figures, state: str) -> list[Margin]:
+    """Limits in a state, those of the flowpath's mode first."""
+    order = list(MARGINS)
+    return sorted((m for m in found.limits if m.state == state), key=lambda m: order.index(m.key) if m.key in order else len(order))
+
+
+def _name(m: Margin) -> str:
+    return MARGINS.get(m.key, m.label)
+
+
+def _margin(m: Margin) -> str:
+    """A limit by its short name, with its margin where it is one."""
+    return f"{_name(m)} {format_number(100.0 * m.margin, 2)} %" if m.key in MARGINS else _name(m)
+
+
+def _against_limit(m: Margin, system: str) -> str:
+    """A limit that is over, with its margin, or with figure and limit."""
+    against = f" {quantity(m.actual, m.unit, system)} {'>' if m.upper else '<'} {quantity(m.allowed, m.unit, system)}"
+    return _margin(m) if m.key in MARGINS else m.label + against
+
+
+def _first(words: list[str]) -> str:
+    return f"{words[0]}, {len(words) - 1} more" if len(words) > 1 else words[0]
+
+
+def _told(told: list[str], names: list[str]) -> list[str]:
+    """Limits in one state, the fullest words first: all told, all by name, the first told, the first by name, how many."""
+    return [", ".join(told), ", ".join(names), _first(told), _first(names), str(len(told))] if told else ["none"] * 5
 
 
 def _limits(session: Session, columns: int) -> Line:
@@ -136,11 +176,14 @@ def _limits(session: Session, columns: int) -> Line:
     if found is None or not found.audit:
         return line("limits and audit not assessed yet")
     states = [m.state for m in found.limits]
-    overs = [_over(found, session.system, True), _over(found, session.system, False), f"OVER {states.count('over')}"]
+    by_state = {state: _in_state(found, state) for state in ("over", "near", "not assessed")}
+    over = _told([_against_limit(m, session.system) for m in by_state["over"]], [_name(m) for m in by_state["over"]])
+    near = _told([_margin(m) for m in by_state["near"]], [_name(m) for m in by_state["near"]])
+    unknown = _told(*[[_name(m) for m in by_state["not assessed"]]] * 2)
     forms = []
-    for over, near, unknown in ((0, False, False), (0, False, True), (1, False, True), (0, True, True), (1, True, True), (2, True, True)):
-        parts = [overs[over], _named(found, "near", near), _named(found, "not assessed", unknown), audit_words(found)]
-        forms.append(" | ".join(parts))
+    for x, y, z in FORMS:
+        first = f"OVER {over[x]}" if by_state["over"] else "none over"
+        forms.append(" | ".join([first, f"near: {near[y]}", f"not assessed: {unknown[z]}", audit_words(found)]))
     words = next((form for form in forms if width(form) <= columns), forms[-1])
     style = OVER if "over" in states or not found.audit_ok else NEAR if "near" in states else PLAIN
     return line((fit(clean(words), columns), style))

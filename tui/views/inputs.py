@@ -8,6 +8,7 @@ from cycle.quantities import OUTPUT
 from tui.actions import ACTIONS
 from tui.items import Item, bounds, in_hand, items, way_label
 from tui.line import BOLD, CURSOR, DIM, OVER, PLAIN, UNDERLINE, Line, Piece, clean, fit, line, width, wrap
+from tui.rows import others, place_of
 from tui.session import Entry, Session
 from tui.views.table import ROWS
 
@@ -125,7 +126,8 @@ def _input_words(session: Session) -> str:
     hand = in_hand(session)
     if hand is None:
         return ""
-    other = "o: another way to say it" if hand.group is not None else ""
+    other = "o: another way to say it" if hand.group is not None or others(hand.key) else ""
+    other = "; ".join(w for w in (other, "a, x: a row more, less" if place_of(hand.key) is not None else "") if w)
     if hand.input is None:
         return f"{hand.label}: {hand.written}; {other}"
     limits = bounds(hand.input, session.system)

@@ -22,9 +22,20 @@ LEADING = (
 ROWS = (*LEADING, *(k for k in STATION_KEYS if k not in LEADING))
 """Rows of the table in order; the leading ones fit the smallest terminal that shows the whole screen."""
 
+HEADS = {
+    "external compression": "external",
+    "internal compression": "internal",
+    "external expansion": "outside",
+    "frozen chemistry": "frozen",
+}
+"""Names of processes over their columns where the whole one does not fit."""
+
 NAMES = {"mach": "Mach", "area_ratio": "area / A0", "thrust_potential": "potential"}
 SYMBOLS = ("pressure", "temperature", "velocity", "total_pressure", "total_temperature")
+STALE = ("( ) as of the previous inputs", "( ) previous inputs", "( ) previous")
 LEAST, MOST = 9, 12
+WHOLE_LABELS, SHORT_LABELS = 21, 17
+"""Columns of the labels of an 80-column screen, and the fewest."""
 
 
 def columns(session: Session) -> tuple[str, ...]:
@@ -52,18 +63,30 @@ def passages_at(found: Figures | None, station: str) -> list[Passage]:
 def _reached(session: Session, station: str) -> str:
     ending = passages_at(session.figures, station) or passages_at(session.good, station)
     if ending:
-        return clean(ending[0].label)
+        return clean(HEADS.get(ending[0].name, ending[0].label))
     first = station == columns(session)[0]
     rig = session.case is not None and session.case.choices.get("start") == "entry"
     return ("entry" if rig else "flight") if first and session.case is not None else ""
 
 
+def _label_room(session: Session, wide: int) -> int:
+    """Columns of the labels: fewer where that brings every station into sight."""
+    room = min(WHOLE_LABELS if wide < 100 else 30, wide // 2)
+    need = LEAST * len(columns(session))
+    return SHORT_LABELS if wide - room < need <= wide - SHORT_LABELS else room
+
+
 def _shown_columns(session: Session, room: int) -> tuple[tuple[str, ...], int]:
-    """Stations that fit beside the labels with the one in hand among them, and the width of each."""
+    """Stations that fit beside the labels with the one in hand among them, and the width of each.
+
+    They turn by pages, so that most moves of the cursor leave them where they are.
+    """
     every = columns(session)
-    fit_in = max(1, min(len(every), room // LEAST))
+    whole = room // LEAST >= len(every)
+    room -= 0 if whole else 2
+    fit_in = len(every) if whole else max(1, room // LEAST)
     at = every.index(session.station) if session.station in every else 0
-    start = max(0, min(at - fit_in // 2, len(every) - fit_in))
+    start = min(at - at % fit_in, len(every) - fit_in)
     return every[start : start + fit_in], max(1, min(MOST, room // fit_in))
 
 
@@ -83,21 +106,35 @@ def lines(session: Session, wide: int, height: int) -> list[Line]:
     """Heads and as many rows as the height allows; what is wrong with a file that is no case."""
     if session.case is None and session.faults:
         return [line(part) for fault in session.faults for part in wrap(clean(fault).split(), wide)][:height]
-    room = min(21 if wide < 100 else 30, wide // 2)
+    room = _label_room(session, wide)
     shown, column = _shown_columns(session, wide - room)
     body = max(1, height - heads(height))
     top = first_row(session, body)
     keys = ROWS[top : top + body]
-    where = f"station   rows {top + 1}-{top + len(keys)}/{len(ROWS)}" if len(keys) < len(ROWS) else "station"
+    part = f"rows {top + 1}-{top + len(keys)}/{len(ROWS)}" if len(keys) < len(ROWS) else ""
+    where = f"station   {part}".rstrip() if room >= WHOLE_LABELS else part or "station"
     if session.view:
         where = VIEWS[session.view].replace("against the pin", "vs pin")
-    stale = "( ) as of the previous inputs" if room > 28 else "( ) previous inputs"
+    stale = next(words for words in STALE if len(words) < room or words == STALE[-1])
     reached = stale if session.failed and session.good is not None else "reached through"
     head: list[Line] = [
         line((fit(reached, room).ljust(room), DIM), *((_head(_reached(session, s), column), DIM) for s in shown)),
-        line((fit(where, room).ljust(room), PLAIN), *_stations(session, shown, column)),
+        line(
+            (_more(where, session, shown, room), PLAIN), *_stations(session, shown, column), (" >" if _beyond(session, shown) else "", DIM)
+        ),
     ]
     return [*head[-heads(height) :], *(_row(session, i + top, k, shown, column, room) for i, k in enumerate(keys))][:height]
+
+
+def _beyond(session: Session, shown: tuple[str, ...]) -> bool:
+    """Whether stations downstream of those shown are out of sight."""
+    return shown[-1] != columns(session)[-1]
+
+
+def _more(where: str, session: Session, shown: tuple[str, ...], room: int) -> str:
+    """The words before the stations, with a mark where some upstream are out of sight."""
+    hides = shown[0] != columns(session)[0]
+    return fit(where, room - 2 * hides).ljust(room - 2 * hides) + ("< " if hides else "")
 
 
 def _head(text: str, column: int) -> str:
@@ -166,8 +203,9 @@ def process_line(session: Session, wide: int, height: int) -> list[Line]:
         words = f"not reached by these inputs{stale}" if lost else "the stream as it arrives"
         return [line((fit(words, wide), DIM))]
     first, *others = ending
-    costs = _costs(first, session.system)
-    parts = [*costs[:2], *(f"{clean(p.label)} {_costs(p, session.system)[0]}" for p in others), *costs[2:]]
+    own, costs = told(first, session.system), _costs(first, session.system)
+    lead = 1 if own else 2
+    parts = [*own, *costs[:lead], *(f"{clean(p.label)} {_costs(p, session.system)[0]}" for p in others), *costs[lead:]]
     head = f"{first.start} to {first.end}, {clean(first.label)}: "
     return [line(fit(head + wrap(parts, wide - len(head), " | ")[0], wide))]
 
@@ -189,3 +227,38 @@ def _costs(passage: Passage, system: str) -> list[str]:
         if value == value:
             out.append(f"{words} {sign if value >= 0 else ''}{quantity(value, dimension, system)}")
     return out or ["no figures"]
+
+
+TOLD: dict[str, tuple[tuple[str, str, str], ...]] = {
+    "external compression": (("captured_fraction", "captured", "ratio"), ("additive_drag", "additive drag", "force")),
+    "isolator": (
+        ("shock_mach", "shock at Mach", "ratio"),
+        ("spilled_flow", "spilled", "mass flow"),
+        ("train_length", "train", "length"),
+    ),
+    "burner": (
+        ("peak_pressure_ratio", "peak p/p2", "ratio"),
+        ("throat_x", "throat at", "length"),
+    ),
+}
+"""What a process did beside its cost: figures by name of the process, with words and dimension."""
+
+RUNS = {
+    "scramjet": "attached",
+    "scramjet-shock-train": "shock train",
+    "ramjet-thermal-throat": "thermal throat",
+}
+"""Ways a duct runs, short."""
+
+
+def told(passage: Passage, system: str) -> list[str]:
+    """What a process did: how it runs, pressure rise, places."""
+    out = []
+    if passage.mode:
+        pressures = quantity(passage.figures["pressure_ratio"], "ratio", system, 3)
+        out = [RUNS.get(passage.mode, passage.mode), f"p{passage.end}/p{passage.start} {pressures}"]
+    for key, words, dimension in TOLD.get(passage.name, ()):
+        value = passage.figures.get(key, NAN)
+        if value == value and not (value == 0.0 and key in ("spilled_flow", "train_length")):
+            out.append(f"{words} {quantity(value, dimension, system, 3)}")
+    return out

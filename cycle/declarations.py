@@ -1,0 +1,91 @@
+"""What a declaration of an input, a group of inputs or an output says."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from typing import Literal
+
+Kind = Literal["number", "choice", "text", "flag", "fractions", "rows"]
+When = tuple[tuple[str, tuple[str, ...]], ...]
+
+
+@dataclass(frozen=True, slots=True)
+class Input:
+    """One key of a case file.
+
+    unit: a dimension name of `cycle.units` (SI inside); lower and upper are inclusive bounds in SI, above and below
+    exclusive ones. default None: the key is optional, or required where `required`. step: the natural step of an edit.
+    whole: whole numbers only. follows: the key whose value holds when this one is absent.
+    when: (choice, allowed values) pairs that must hold for the key to mean anything; the value "" holds where that choice
+    does not apply itself.
+    Kind "rows", an array of tables: columns, whose keys are plain names; fewest and most rows; one_of, columns of which each
+    row has exactly one.
+    """
+
+    key: str
+    symbol: str
+    label: str
+    meaning: str
+    unit: str = "ratio"
+    kind: Kind = "number"
+    lower: float | None = None
+    upper: float | None = None
+    above: float | None = None
+    below: float | None = None
+    default: float | str | bool | None = None
+    required: bool = False
+    whole: bool = False
+    follows: str = ""
+    step: float = 0.01
+    choices: tuple[str, ...] = ()
+    when: When = ()
+    source: str = "common practice"
+    columns: tuple[Input, ...] = ()
+    fewest: int = 1
+    most: int = 64
+    one_of: tuple[str, ...] = ()
+
+    @property
+    def section(self) -> str:
+        """Table of the case file that holds the key; "table.sub-table" for a sub-table."""
+        return self.key.rpartition(".")[0]
+
+    @property
+    def name(self) -> str:
+        """The key inside its table."""
+        return self.key.rpartition(".")[2]
+
+
+@dataclass(frozen=True, slots=True)
+class Member:
+    """One way of saying what a group says: `keys` must all be given, `also` may be. Several may share a tag."""
+
+    tag: str
+    keys: tuple[str, ...]
+    also: tuple[str, ...] = ()
+
+
+@dataclass(frozen=True, slots=True)
+class Group:
+    """Several ways to say one thing; at most one is given. default: the tag that holds when none is."""
+
+    name: str
+    meaning: str
+    members: tuple[Member, ...]
+    required: bool = True
+    default: str | None = None
+    when: When = ()
+
+
+@dataclass(frozen=True, slots=True)
+class Output:
+    """One emitted figure. unit: a dimension name of `cycle.units`; where: the table it stands in."""
+
+    key: str
+    symbol: str
+    label: str
+    meaning: str
+    unit: str = "ratio"
+    where: str = "station"
+    equation: str = ""
+    source: str = "definition"

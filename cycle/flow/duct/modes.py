@@ -1,0 +1,301 @@
+"""How a duct runs: attached supersonic, with a shock train, or choked thermally; and what it does then.
+
+The three are tried in this order; what was tried is kept. Attached: the supersonic march from the entry never chokes and
+its highest pressure does not separate the boundary layer. Shock train: the smallest p3 above p2 at which the separated
+core just fills the duct, the core supersonic there and the march behind it unchoked. Thermal throat: both branches from
+the critical section, the separated core joining the subsonic one. Else the duct asks for more impulse than arrives.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from dataclasses import fields, replace
+from typing import TypeVar
+
+import numpy as np
+
+from cycle.arrays import Array, Codes, Flags
+from cycle.flow.duct.cooling import first_loss, lost_heat
+from cycle.flow.duct.core import Train, find_train
+from cycle.flow.duct.layout import Cooling, Duct
+from cycle.flow.duct.march import Branch, march, spot
+from cycle.flow.duct.reattach import reattachment, throat_lacks
+from cycle.flow.duct.scan import Scan, scan_of
+from cycle.flow.duct.solution import (
+    ATTACHED,
+    CHOKED,
+    CHOKES,
+    LOST,
+    MODES,
+    NO_CORE,
+    NO_PRESSURE,
+    NO_START,
+    NO_THROAT,
+    NONE,
+    NOT_TRIED,
+    OUTSIDE,
+    PROFILE,
+    REFUSED,
+    SEPARATES,
+    SOLVED,
+    STANDS,
+    STATUSES,
+    SUBSONIC,
+    THROAT,
+    TRAIN,
+    TRIED,
+    UNSETTLED,
+    UNSTARTED,
+    Solution,
+    merge,
+    nothing_yet,
+)  # fmt: skip
+from cycle.flow.duct.summits import SMOOTH, Summits
+from cycle.flow.duct.throat import CANDIDATES, Throat, candidates, throat
+from cycle.gas.state import scatter
+
+__all__ = ["ASKED", "MODES", "PANELS", "STATUSES", "TRIED", "Solution", "Solver", "solve_block"]
+
+PANELS = 12
+"""Panels of a march, of four nodes each."""
+
+_SURE = 0.02
+"""Momentum lacking at the throat, over the impulse, above which no shock train needs to be looked for."""
+
+
+Kept = TypeVar("Kept", Train, Throat)
+
+
+class Solver:
+    """One block of points under solution."""
+
+    def __init__(self, duct: Duct, separation: Array, panels: int) -> None:
+        self.duct, self.separation = duct, separation
+        self.count = max(panels, duct.edges.shape[0] - 1)
+        self.scan = scan_of(duct)
+        self.summits = candidates(duct, self.scan)
+        self.found = nothing_yet(duct, self.scan, self.count)
+        self.open = np.ones(duct.size, np.bool_)
+
+    def part(self, index: Codes) -> tuple[Duct, Scan]:
+        """Duct and scan of some points."""
+        if np.array_equal(index, np.arange(self.duct.size)):
+            return self.duct, self.scan
+        return self.duct.take(index), self.scan.take(index)
+
+    def try_attached(self) -> None:
+        """Supersonic from the entry to the exit."""
+        index = np.flatnonzero(self.open)
+        if not index.size:
+            return
+        duct, scan = self.part(index)
+        one = np.ones(index.size)
+        run = march(duct, np.zeros(index.size), duct.end, duct.impulse, one, scan, self.count, graded=False)
+        x, segment = run.place_of_highest_pressure()
+        peak = spot(duct, segment, x, run.free_at(x), one, scan)[1].pressure[0]
+        peak = np.maximum(peak, run.flow.pressure.max(0))
+        separates = peak > self.separation[index] * duct.pressure
+        self.found.attached[index] = np.select([run.lost, run.chokes, separates], [UNSETTLED, CHOKES, SEPARATES], STANDS)
+        self.found.attached_peak[index] = np.where(run.passes, peak, np.nan)
+        stands = run.passes & ~separates
+        w = index[stands]
+        self.found.pressure_3[w], self.found.x_fill[w], self.found.peak[w] = duct.pressure[stands], 0.0, peak[stands]
+        self._book(index, stands, ATTACHED, [(run, True)], np.zeros(index.size), duct.pressure, np.zeros(index.size))
+
+    def try_train(self) -> None:
+        """Separated core up to where it fills the duct, supersonic from there."""
+        index = np.flatnonzero(self.open)
+        index = index[~self._surely_choked(index)] if index.size else index
+        looked = self._look_for_train(index)
+        if looked is None:
+            return
+        index, train, run = looked
+        w = index[run.passes]
+        self.found.pressure_3[w], self.found.x_fill[w] = train.pressure[run.passes], train.x[run.passes]
+        self.found.peak[w] = np.maximum(run.flow.pressure.max(0), train.pressure)[run.passes]
+        self._book(index, run.passes, TRAIN, [(run, True)], train.x, train.pressure, train.friction)
+
+    def look_for_second(self) -> None:
+        """Where the attached flow stands: whether a shock train would stand too."""
+        self._look_for_train(np.flatnonzero(self.found.mode == ATTACHED))
+
+    def _look_for_train(self, index: Codes) -> tuple[Codes, Train, Branch] | None:
+        """Of some points: those with a train whose core is supersonic, the trains, and the marches behind them."""
+        if not index.size:
+            return None
+        duct, scan = self.part(index)
+        train = find_train(duct, scan)
+        fast = train.found & (train.mach > 1.0)
+        self.found.train[index] = np.where(~train.found, NO_PRESSURE, SUBSONIC)
+        kept = np.flatnonzero(fast)
+        if not kept.size:
+            return None
+        index, duct, scan, train = index[kept], duct.take(kept), scan.take(kept), _taken(train, kept)
+        run = march(duct, train.x, duct.end, train.free, np.ones(kept.size), scan, self.count, graded=False)
+        self.found.train[index] = np.select([run.lost, run.chokes], [UNSETTLED, CHOKES], STANDS)
+        return index, train, run
+
+    def _surely_choked(self, index: Codes) -> Flags:
+        """Where the throat lacks so much momentum that no shock train reaches past it, (index.size,)."""
+        duct, scan = self.part(index)
+        first = self._throat(index, duct, scan, 0)
+        surely: Flags = first.there & (throat_lacks(duct, scan, first, 1e-3) > _SURE * duct.impulse)
+        return surely
+
+    def _throat(self, index: Codes, duct: Duct, scan: Scan, rank: int) -> Throat:
+        tops = Summits(*(getattr(self.summits, f.name)[:, index] for f in fields(Summits)))
+        return throat(duct, scan, tops, rank)
+
+    def try_throat(self) -> None:
+        """Both ways from the critical section; the candidates in turn until one marches through."""
+        for rank in range(CANDIDATES):
+            index = np.flatnonzero(self.open & (self.found.throat != NO_START) & self.summits.there[rank])
+            if not index.size:
+                continue
+            duct, scan = self.part(index)
+            at = self._throat(index, duct, scan, rank)
+            for graded in (False, True):
+                part = np.flatnonzero((at.kind != SMOOTH) == graded)
+                if part.size:
+                    self._from_throat(index[part], duct.take(part), scan.take(part), _taken(at, part), graded)
+        nowhere = self.open & (self.found.throat == NOT_TRIED)
+        self.found.throat[nowhere] = NO_THROAT
+
+    def _from_throat(self, index: Codes, duct: Duct, scan: Scan, at: Throat, graded: bool) -> None:
+        n = index.size
+        twice = np.tile(np.arange(n), 2)
+        both = march(
+            duct.take(twice), np.tile(at.x, 2), np.concatenate([duct.end, np.zeros(n)]), np.tile(at.free, 2),
+            np.repeat([1.0, -1.0], n), scan.take(twice), self.count, graded,
+        )  # fmt: skip
+        down, up = both.take(np.arange(n)), both.take(np.arange(n, 2 * n))
+        passes = down.passes & up.passes & at.there
+        needed = up.free[-1]
+        starts = needed <= duct.impulse
+        self.found.throat[index] = np.select([~passes & (down.lost | up.lost), ~passes], [UNSETTLED, CHOKES], NO_START)
+        w = index[passes]
+        self.found.x_throat[w], self.found.throat_kind[w] = at.x[passes], at.kind[passes]
+        self.found.needed[w] = needed[passes]
+        runs = np.flatnonzero(passes & starts)
+        if not runs.size:
+            return
+        index, duct, scan, up, down = index[runs], duct.take(runs), scan.take(runs), up.take(runs), down.take(runs)
+        fill = reattachment(duct, scan, up, _taken(at, runs))
+        self.found.throat[index] = np.where(fill.found, STANDS, NO_CORE)
+        w = index[fill.found]
+        self.found.pressure_3[w], self.found.x_fill[w] = fill.pressure[fill.found], fill.x[fill.found]
+        self.found.peak[w] = np.maximum(fill.pressure, down.flow.pressure.max(0))[fill.found]
+        self._book(index, fill.found, THROAT, [(up, False), (down, True)], fill.x, fill.pressure, fill.friction)
+
+    def _book(self, index: Codes, good: Flags, mode: int, runs: list[tuple[Branch, bool]], fill: Array, p3: Array, friction: Array) -> None:
+        """Write down the exit, the forces and the profile of the points where a mode stands."""
+        found, w, duct = self.found, index[good], self.duct.take(index)
+        if not w.size:
+            return
+        down = runs[-1][0]
+        found.mode[w], found.status[w], self.open[w] = mode, SOLVED, False
+        found.velocity[w] = down.flow.u[-1][good]
+        found.state = scatter(found.state, w, down.last().take(good))
+        segment = (duct.edges[1:-1] < fill).sum(0)
+        if duct.cooling is not None:
+            assert found.lost_heat is not None
+            found.lost_heat[:, w] = lost_heat(duct, [run for run, _ in runs], fill, p3)[:, good]
+        force = p3 * (duct.area_at(segment[None], fill[None])[0] - duct.entry_area)
+        total, error = friction, np.zeros(index.size)
+        for run, whole in runs:
+            if whole:
+                force, total = force + run.integrated(run.wall_force), total + run.integrated(run.friction)
+            else:
+                force, total = force - run.integrated_to(run.wall_force, fill), total - run.integrated_to(run.friction, fill)
+            error = error + run.error()
+        found.wall_force[w], found.friction[w], found.error[w] = force[good], total[good], error[good]
+        self._profile(w, good, runs, fill)
+
+    def _profile(self, w: Codes, good: Flags, runs: list[tuple[Branch, bool]], fill: Array) -> None:
+        blocks = {name: [] for name in PROFILE}  # type: dict[str, list[Array]]
+        for run, whole in runs:
+            m, flow = run.mixture, run.flow
+            columns = (
+                run.x, flow.pressure, flow.state.temperature.reshape(run.x.shape), flow.u, np.sqrt(flow.mach_squared),
+                m.area, m.area, m.burnt, m.ratio,
+            )  # fmt: skip
+            for name, values in zip(PROFILE, columns, strict=True):
+                part = values[:, good]
+                blocks[name].append(part if whole else part[::-1])
+        rows = self.found.rows
+        for name, parts in blocks.items():
+            stacked = np.concatenate(parts)
+            rows[name][-stacked.shape[0] :, w] = stacked
+
+
+def _taken(found: Kept, index: Codes) -> Kept:
+    return type(found)(*(getattr(found, f.name)[index] for f in fields(found)))
+
+
+ASKED: dict[str, tuple[Callable[[Solver], None], ...]] = {
+    "auto": (Solver.try_attached, Solver.try_train, Solver.try_throat),
+    "supersonic": (Solver.try_attached, Solver.try_train),
+    "thermal-throat": (Solver.try_throat,),
+}
+"""What is tried, in order, for the mode asked for."""
+
+
+def solve_block(duct: Duct, separation: Array, asked: str = "auto", panels: int = PANELS, second: bool = False) -> Solution:
+    """How N ducts run. separation: pressure ratio over p2 that separates (N,); asked: a key of `ASKED`; panels of a march;
+    second: whether to look for a shock train where the attached flow stands."""
+    with np.errstate(all="ignore"):
+        if np.isfinite(duct.wall_temperature).any():
+            return _cooled(first_loss(duct), separation, asked, panels, second)
+        return _solved(duct, separation, asked, panels, second)
+
+
+def _cooled(duct: Duct, separation: Array, asked: str, panels: int, second: bool) -> Solution:
+    """The flow and the heat it loses, in turn until the heat stands still; each point stops on its own."""
+    assert duct.cooling is not None
+    live, lost = np.arange(duct.size), duct.cooling.lost
+    whole: Solution | None = None
+    for _ in range(_COOLING_TURNS):
+        part = replace(duct.take(live), cooling=Cooling(duct.cooling.grid.take(live), lost[:, live]))
+        found = _solved(part, separation[live], asked, panels, second)
+        assert found.lost_heat is not None
+        moved = np.abs(found.lost_heat - lost[:, live]).max(0)
+        size = part.mass_flow * part.velocity**2
+        if whole is None:
+            whole = found
+        else:
+            merge(whole, live, found)
+        going = (moved > _COOLED * size) & (found.mode != NONE)
+        lost[:, live] = found.lost_heat
+        live = live[going]
+        if not live.size:
+            break
+    assert whole is not None
+    whole.status[live], whole.mode[live] = LOST, NONE
+    return whole
+
+
+_COOLING_TURNS = 20
+_COOLED = 1e-10
+"""Change of the heat lost, over m u2^2, at which it stands still."""
+
+
+def _solved(duct: Duct, separation: Array, asked: str, panels: int, second: bool) -> Solution:
+    solver = Solver(duct, separation, panels)
+    for attempt in ASKED[asked]:
+        attempt(solver)
+    if second:
+        solver.look_for_second()
+    found = solver.found
+    unsolved = found.mode == NONE
+    outside = (scan_range(solver.scan) == 2).any(0)
+    settled = np.isin(found.throat, [CHOKES, NO_START, NO_CORE])
+    lost = ~settled & ((found.throat == UNSETTLED) | (found.attached == UNSETTLED) | (found.train == UNSETTLED))
+    rules = [outside, found.throat == NO_START, lost, np.full(duct.size, asked == "thermal-throat")]
+    found.status[unsolved] = np.select(rules, [OUTSIDE, UNSTARTED, LOST, REFUSED], CHOKED)[unsolved]
+    return found
+
+
+def scan_range(scan: Scan) -> Codes:
+    """Range codes of the sonic states, (P n, N)."""
+    codes: Codes = scan.sonic.state.range.reshape(scan.segment.shape)
+    return codes

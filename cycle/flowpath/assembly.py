@@ -1,0 +1,345 @@
+"""From the inputs of a case to the components that have a geometry: inlet shape, duct, diffuser ahead of a throat, expansion.
+
+The components take plain arrays; what a case's keys mean for them stands here and nowhere else.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+
+import numpy as np
+
+from cycle.arrays import Array, Codes, Flags
+from cycle.flow import inlet_shape, states
+from cycle.flow.duct.layout import AreaLaw, Injectors, Supply, Walls
+from cycle.flow.duct.solution import MODES as DUCT_MODES
+from cycle.flow.duct.solution import STATUSES as DUCT_STATUSES
+from cycle.flowpath import combustor, duct_limits, geometric_throat, inlet_geometry, nozzle
+from cycle.flowpath import expansion as widening
+from cycle.flowpath.duct import Flow, Isolator, solve_duct
+from cycle.flowpath.inlet_geometry import Inlet, Internal
+from cycle.flowpath.setting import Setting
+from cycle.flowpath.stream import SOLVED, STATUS_CODE, Process, Step, Steps, Stream, named_status
+
+_PANEL = 4
+"""Slices to a panel of the march."""
+
+_FEW = 64
+"""Points up to which the total pressure along the duct is found, too."""
+
+
+def cells(setting: Setting, table: str, column: str) -> Array | None:
+    """A column of a table of rows, (rows, N); None where the first row lacks it."""
+    found: list[Array] = []
+    while setting.has(f"{table}.{len(found) + 1}.{column}"):
+        found.append(setting[f"{table}.{len(found) + 1}.{column}"])
+    return np.array(found) if found else None
+
+
+def _internal(setting: Setting) -> Internal:
+    """What happens behind the lip."""
+    turn = setting["inlet.cowl_angle"] if setting.has("inlet.cowl_angle") else None
+    shock = np.ones(setting.size) if setting.choices.get("inlet.terminal") == "terminal_shock" else None
+    contraction = setting["inlet.internal_contraction"] if setting.has("inlet.internal_contraction") else None
+    throat = setting["inlet.throat_area"] if setting.has("inlet.throat_area") else None
+    return Internal(turn, throat_area=throat, contraction=contraction, shock_area_ratio=shock)
+
+
+def _lip(setting: Setting) -> tuple[Array, Array] | None:
+    return (setting["inlet.lip_x"], setting["inlet.lip_y"]) if setting.choices.get("inlet.lip") == "lip" else None
+
+
+def _ramps(flight: Stream, setting: Setting) -> Inlet:
+    turns, lip = cells(setting, "inlet.ramp", "angle"), _lip(setting)
+    assert turns is not None
+    shape = None
+    if lip is not None:
+        lengths = cells(setting, "inlet.ramp", "length")
+        shape = inlet_shape.shape_of_lengths(turns, np.empty((0, setting.size)) if lengths is None else lengths, *lip)
+    return inlet_geometry.ramps(flight, turns, _internal(setting), shape)
+
+
+def _isentropic(flight: Stream, setting: Setting) -> Inlet:
+    wedge = setting["inlet.isentropic_ramp.first_wedge"] if setting.has("inlet.isentropic_ramp.first_wedge") else None
+    return inlet_geometry.isentropic_ramp(flight, setting["inlet.isentropic_ramp.turning"], _internal(setting), wedge)
+
+
+def _cone(flight: Stream, setting: Setting) -> Inlet:
+    return inlet_geometry.cone(flight, setting["inlet.cone.half_angle"], _internal(setting), *(_lip(setting) or (None, None)))
+
+
+_COMPRESSION: dict[str, Callable[[Stream, Setting], Inlet]] = {"ramp": _ramps, "isentropic_ramp": _isentropic, "cone": _cone}
+
+
+def solved_inlet(flight: Stream, setting: Setting) -> Inlet:
+    """The inlet by geometry of N points. flight: station 0 with the flow of the whole capture area."""
+    return _COMPRESSION[setting.choices["inlet.compression"]](flight, setting)
+
+
+def inlet_by_geometry(flight: Stream, setting: Setting) -> Steps:
+    """Station 0 to 1, behind the external compression, and on to 2 behind cowl shock, contraction and terminal shock."""
+    found = solved_inlet(flight, setting)
+    status = named_status(found.fault, inlet_geometry.FAULT_NAMES, {})
+    outside = np.where(found.place >= found.external, SOLVED, status)
+    angles = {f"wave_angle_{i + 1}": stage.angle for i, stage in enumerate(found.stages) if stage.kind in ("ramp", "cone", "isentropic")}
+    figures = {**angles, "captured_fraction": found.captured_fraction, "additive_drag": found.additive_drag}
+    return Steps(
+        (
+            Step(found.lip, Process("external compression", "0", "1", figures), outside),
+            Step(found.exit, Process("internal compression", "1", "2"), status),
+        ),
+        captured=found.captured_fraction,
+    )
+
+
+def _area_law(setting: Setting, entry: Array) -> AreaLaw:
+    """The duct's area over that of the burner entry, m2 (N,); its entry is added where the table begins further on."""
+    x = cells(setting, "combustor.area", "x")
+    assert x is not None
+    rows = []
+    for i in range(x.shape[0]):
+        key = f"combustor.area.{i + 1}.area"
+        rows.append(setting[key] / entry if setting.has(key) else setting[f"{key}_ratio"])
+    perimeter = cells(setting, "combustor.area", "perimeter")
+    ratios = np.array(rows)
+    if np.any(x[0] > 0.0):
+        one = np.ones((1, setting.size))
+        x, ratios = np.concatenate([0.0 * one, x]), np.concatenate([one, ratios])
+        perimeter = None if perimeter is None else np.concatenate([perimeter[:1], perimeter])
+    if perimeter is not None:
+        return AreaLaw(x, ratios, "tabulated", perimeter=perimeter)
+    planar = setting.choices["combustor.section"] == "planar"
+    return AreaLaw(x, ratios, "rectangular" if planar else "circular", setting["combustor.width"] if planar else None)
+
+
+def _steps_at_entry(setting: Setting, entry: Array) -> Flags:
+    """Where the duct's area at x = 0, given in m2, is not that of the stream: a step that no balance of the march holds."""
+    first = "combustor.area.1"
+    if not setting.has(f"{first}.area"):
+        return np.zeros(setting.size, np.bool_)
+    step: Flags = (setting[f"{first}.x"] == 0.0) & (np.abs(setting[f"{first}.area"] / entry - 1.0) > 1e-6)
+    return step
+
+
+def _injectors(setting: Setting) -> Injectors:
+    """Where the fuel enters; all of it at the burner entry where the case names no injector."""
+    x = cells(setting, "combustor.injector", "x")
+    count = 1 if x is None else x.shape[0]
+    one = np.ones((count, setting.size))
+    share, speed = cells(setting, "combustor.injector", "share"), cells(setting, "combustor.injector", "axial_speed")
+    own = setting.get("combustor.burning_length", np.nan)
+    length = np.array([setting.get(f"combustor.injector.{i + 1}.length", np.nan) for i in range(count)])
+    return Injectors(
+        0.0 * one if x is None else x,
+        one if share is None else share,
+        0.0 * one if speed is None else speed,
+        setting["combustor.burning_theta"] * one,
+        np.where(np.isnan(length), own, length),
+    )
+
+
+def fuel_supply(entering: Stream, setting: Setting, ratio: Array) -> Supply:
+    """What `ratio` (N,) of fuel brings to the duct."""
+    burnt = setting["combustor.burnt_fraction"]
+    if setting.fuel is not None and not setting.constant_gamma:
+        return Supply(setting.fuel, ratio, setting.fuel.total_enthalpy(setting["fuel.temperature"]), 0.0, burnt)
+    released = combustor.released(setting, ratio)
+    brought = combustor.fuel_enthalpy(setting, entering, ratio)
+    counted = setting.choices.get("gas.fuel_mass", "counted") == "counted"
+    # the neglected energy balance gives a heat per kg of stream: more per kg of fuel, with the stream's own enthalpy for its mass
+    stretch = 1.0 + ratio if setting.choices["gas.fuel_energy"] == "neglected" and counted else np.ones(setting.size)
+    heat = np.divide(released * stretch, burnt)
+    return Supply(None, ratio, brought - released * stretch, heat, burnt, 1.0 if counted else 0.0)
+
+
+def _walls(setting: Setting, ratio: Array, flow: Array) -> Walls:
+    friction = setting["combustor.friction_coefficient"]
+    if setting.has("combustor.wall_temperature"):
+        return Walls(friction, 0.0, setting["combustor.wall_temperature"])
+    if setting.has("combustor.wall_heat_fraction"):
+        return Walls(friction, setting["combustor.wall_heat_fraction"] * setting.heating_value)
+    burnt = ratio * flow * setting["combustor.burnt_fraction"]
+    with np.errstate(divide="ignore", invalid="ignore"):
+        lost = np.where(burnt > 0.0, setting.get("combustor.wall_heat", 0.0) / burnt, 0.0)
+    return Walls(friction, lost)
+
+
+def _isolator(entering: Stream, setting: Setting) -> Isolator | None:
+    if not setting.has("isolator.momentum_thickness"):
+        return None
+    section = {"circular": "circular", "rectangular": "rectangular"}[setting.choices["isolator.shape"]]
+    mu = 1.458e-6 * entering.state.temperature**1.5 / (entering.state.temperature + 110.4)
+    return Isolator(setting["isolator.length"], setting["isolator.hydraulic_diameter"], setting["isolator.momentum_thickness"], mu, section)
+
+
+def flow_of(entering: Stream, setting: Setting, ratio: Array, second: bool = False) -> Flow:
+    """The duct at the fuel-air ratio `ratio` (N,); entering: station 2 with the gas that burns."""
+    return solve_duct(
+        entering,
+        _area_law(setting, entering.area),
+        _injectors(setting),
+        fuel_supply(entering, setting, ratio),
+        _walls(setting, ratio, entering.mass_flow),
+        separation=setting["combustor.separation_limit"] if setting.has("combustor.separation_limit") else None,
+        isolator=_isolator(entering, setting),
+        asked=setting.choices["engine.mode"],
+        panels=_panels(setting),
+        second=second,
+        total_pressures=setting.size <= _FEW,
+    )
+
+
+def largest_ratios(stream: Stream, setting: Setting, upper: float) -> dict[str, float]:
+    """Largest fuel-air ratio of one duct before each of `duct_limits.BORDERS`; stream: station 2 of one point."""
+    entering = combustor.burner_gas(stream, setting)
+
+    def at(ratio: Array) -> tuple[Stream, Supply]:
+        same = np.zeros(ratio.size, np.int64)
+        many = entering.take(same)
+        return many, fuel_supply(many, setting.take(same), ratio)
+
+    ratio = _heat(entering, setting)
+    separation = float(setting["combustor.separation_limit"][0]) if setting.has("combustor.separation_limit") else None
+    return duct_limits.largest_ratios(
+        at,
+        _area_law(setting, entering.area),
+        _injectors(setting),
+        _walls(setting, np.nan_to_num(ratio), entering.mass_flow),
+        upper,
+        separation=separation,
+        panels=_panels(setting),
+    )
+
+
+def _panels(setting: Setting) -> int:
+    return max(2, int(np.max(setting["combustor.slices"])) // _PANEL)
+
+
+def duct(stream: Stream, setting: Setting) -> Steps:
+    """Station 2 to 3 to 4: isolator and burner as one duct, in whatever mode it runs."""
+    entering = combustor.burner_gas(stream, setting)
+    ratio = _heat(entering, setting)
+    lacking = ~np.isfinite(ratio)
+    usable = np.where(lacking, 0.0, ratio)
+    found = flow_of(entering, setting, usable)
+    status = np.where(lacking, STATUS_CODE["no-fuel"], named_status(found.status, DUCT_STATUSES, {}))
+    # a shock train that outgrows its isolator reaches the inlet
+    status = np.where((status == SOLVED) & (found.figures["isolator_margin"] < 0.0), STATUS_CODE["unstarted"], status)
+    status = np.where(_steps_at_entry(setting, entering.area), STATUS_CODE["area-step"], status)
+    ahead = np.isin(status, [SOLVED, STATUS_CODE["choked"], STATUS_CODE["no-fuel"]]) & found.entry.state.good
+    mode = {f"mode_{name}": (found.mode == i).astype(float) for i, name in enumerate(DUCT_MODES)}
+    shared = {k: v for k, v in found.figures.items() if k in _ISOLATOR_FIGURES}
+    own = {k: v for k, v in found.figures.items() if k not in _ISOLATOR_FIGURES}
+    isolator = Process("isolator", "2", "3", {**shared, **mode}, found.isolator, solves_momentum=True)
+    burner = Process("burner", "3", "4", {**own, "fuel_air_ratio": usable}, found.burner, solves_momentum=True, profile=found.rows)
+    return Steps((Step(found.entry, isolator, np.where(ahead, SOLVED, status)), Step(found.exit, burner, status)))
+
+
+def _heat(entering: Stream, setting: Setting) -> Array:
+    """Fuel-air ratio of the duct (N,); NaN where no ratio gives the exit total temperature asked for."""
+    if setting.choices["combustor.heat"] != "exit_total_temperature":
+        return combustor.heat_ratio(entering, setting)
+    first = combustor.ratio_at_rest(entering, setting)
+    usable = np.where(np.isfinite(first), first, 0.0)
+    runs = np.flatnonzero(np.isfinite(first) & (flow_of(entering, setting, usable).status == 0))
+    if not runs.size:
+        return first
+    part, cut = entering.take(runs), setting.take(runs)
+
+    def temperature(ratio: Array) -> Array:
+        found = flow_of(part, cut, ratio)
+        out = found.exit
+        total = states.rest(out.gas, out.total_enthalpy, out.state.entropy).temperature
+        return np.where(found.status == 0, total, np.nan)
+
+    better = combustor.ratio_for(temperature, usable[runs], cut["combustor.exit_total_temperature"])
+    first = first.copy()
+    first[runs] = better
+    return first
+
+
+_ISOLATOR_FIGURES = (
+    "separated_pressure", "core_area_ratio", "attached_peak_pressure_ratio", "separation_limit", "separation_margin", "unstart_margin",
+    "train_length", "isolator_margin",
+)  # fmt: skip
+
+
+def diffuser(stream: Stream, setting: Setting) -> Steps:
+    """Station 2 to 3 ahead of a given choked throat: the terminal shock stands where throat and mass flow agree."""
+    area_3 = stream.area * setting.get("combustor.entry_area_ratio", 1.0)
+
+    def burner(three: Stream) -> tuple[Stream, Codes]:
+        step = combustor.burner(combustor.burner_gas(three, setting), setting)
+        out = step.stream
+        changed = combustor.gas_change(out, combustor.expansion_cp(setting), "4") if setting.constant_gamma else None
+        return nozzle.nozzle_gas(out if changed is None else changed.stream, setting, "4"), step.status
+
+    found = geometric_throat.match_throat(stream, area_3, burner, setting["nozzle.throat_area"])
+    status = named_status(found.fault, geometric_throat.FAULT_NAMES, _THROAT_FAULTS)
+    status = np.where(found.fault == _BURNER, found.burner_status, status)
+    figures = {
+        "throat_margin": found.margin,
+        "shock_mach": found.shock_mach,
+        "shock_area_ratio": found.shock_area_ratio,
+        "shock_recovery": found.recovery,
+        "spilled_flow": found.spilled_flow,
+        "spilled_entropy": found.behind.state.entropy,
+        **{f"mode_{name}": (found.mode == i).astype(float) for i, name in enumerate(geometric_throat.MODE_NAMES)},
+    }
+    step = Step(found.three, Process("isolator", "2", "3", figures), status)
+    return Steps((step,), captured=np.where(np.isfinite(found.captured_fraction), found.captured_fraction, 1.0), replaced={"2": found.two})
+
+
+_BURNER = geometric_throat.FAULT_NAMES.index("burner")
+_THROAT_FAULTS = {
+    "not-supersonic": "throat-mismatch", "diffuser-narrows": "throat-mismatch", "throat-too-small": "unstarted",
+    "shock-outside": "throat-mismatch", "burner": "choked",
+}  # fmt: skip
+
+
+def _line(setting: Setting) -> widening.Line:
+    """The expansion with the losses of the case."""
+    return widening.Line(
+        lambda s, p: nozzle.expanded(s, setting, p),
+        lambda s, a: nozzle.to_area(s, setting, a),
+    )
+
+
+def _end(entering: Stream, setting: Setting, ambient: Array) -> tuple[str, Array]:
+    end = setting.choices["nozzle.exit"]
+    if end in nozzle.AREA:
+        return "area", nozzle.AREA[end](entering, setting)
+    return "pressure", ambient if end == "ideal" else setting["nozzle.exit_pressure"]
+
+
+_EXPANSION_FAULTS = {
+    "subsonic": "throat-mismatch", "supersonic": "throat-mismatch", "upstream": "under-expanded", "exit-shrinks": "under-expanded",
+    "no-flow": "under-expanded", "shock-expelled": "under-expanded",
+}  # fmt: skip
+
+
+def expansion(entering: Stream, setting: Setting, ambient: Array) -> Step | Steps:
+    """Station 4 or 5 to 10, by way of 9 where the nozzle has an internal part, freezing on the way where the case says so."""
+    start = "5" if nozzle.has_throat(setting) else "4"
+    factor = np.broadcast_to(nozzle.divergence_factor(setting), (setting.size,))
+    kind, end = _end(entering, setting, ambient)
+    by = {"freeze_mach": "mach", "freeze_area_ratio": "area_ratio"}.get(setting.choices.get("nozzle.freeze", ""))
+    if by is not None:
+        frozen = widening.frozen_after(entering, by, setting[f"nozzle.freeze_{by}"], kind, end, _line(setting))
+        status = named_status(frozen.fault, widening.FAULT_NAMES, _EXPANSION_FAULTS)
+        return Step(_diverging(frozen.exit, factor), Process("nozzle", start, "10"), status)
+    if setting.has("nozzle.internal_area_ratio"):
+        found = widening.two_part(entering, entering.area * setting["nozzle.internal_area_ratio"], kind, end, _line(setting))
+        status = named_status(found.fault, widening.FAULT_NAMES, _EXPANSION_FAULTS)
+        over = {"over_expanded": found.over_expanded.astype(float)}
+        return Steps(
+            (
+                Step(found.nine, Process("nozzle", start, "9", over), status),
+                Step(_diverging(found.ten, factor), Process("external expansion", "9", "10"), status),
+            )
+        )
+    return nozzle.nozzle(entering, setting, ambient)
+
+
+def _diverging(stream: Stream, factor: Array) -> Stream:
+    return Stream(stream.gas, stream.state, stream.velocity, stream.mass_flow, factor)

@@ -1,0 +1,400 @@
+"""Nozzle flow beyond one plain expansion: composition that freezes on the way, an internal and an external part, and what a back
+pressure forces; and the normal shock in a passage, which a nozzle shares with a diffuser.
+
+Streams in, streams out, N points at once, any gas. A point without a solution carries a fault and NaN.
+Shapiro, The Dynamics and Thermodynamics of Compressible Fluid Flow (1953), ch. 4 and 5, for the one-dimensional relations.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from dataclasses import dataclass, replace
+
+import numpy as np
+
+from cycle.arrays import Array, Codes, Flags
+from cycle.flow import gas_shocks, isentropic, roots, states
+from cycle.flowpath.stream import Stream
+from cycle.gas.state import NOT_CONVERGED, OUT_OF_RANGE, State, merge, state_from
+
+FAULTS: dict[str, str] = {
+    "solved": "the expansion has a solution",
+    "subsonic": "a subsonic stream enters a passage that only widens",
+    "supersonic": "a supersonic stream enters a passage that only narrows",
+    "upstream": "the end asked for lies upstream of the entry, or is too small for the losses",
+    "exit-shrinks": "the end of the external expansion is smaller than the end of the internal nozzle",
+    "no-flow": "the back pressure is not below the total pressure, or asks the stream to slow down",
+    "shock-expelled": "the back pressure drives the shock out of the nozzle's supersonic entry",
+    "out-of-range": "a state left the range of the data (150 to 6000 K)",
+    "not-converged": "an iteration ended without an answer: a defect of the program, please report it",
+}
+"""Why a point has no solution, in words; fault codes count through them."""
+
+REGIMES: dict[str, str] = {
+    "unchoked": "subsonic throughout, less than the supplied mass flow passes",
+    "shock-in-nozzle": "a normal shock stands between throat and exit",
+    "shock-at-exit": "a normal shock stands in the exit plane",
+    "over-expanded": "supersonic to the exit, compressed to the back pressure outside",
+    "fully-expanded": "supersonic to the exit and at the back pressure there",
+    "under-expanded": "supersonic to the exit, expanding on outside",
+}
+"""What a back pressure makes of a nozzle, in order of falling back pressure; regime codes count through them."""
+
+FAULT_NAMES, REGIME_NAMES = tuple(FAULTS), tuple(REGIMES)
+REGIME_CODE = {name: i for i, name in enumerate(REGIME_NAMES)}
+_FAULT = {name: i for i, name in enumerate(FAULT_NAMES)}
+
+SEPARATION_PRESSURE_RATIO = 0.4
+"""Exit over ambient pressure below which an over-expanded stream leaves the wall, a rule of thumb; Summerfield, Foster and Swan,
+Jet Propulsion 24 (1954) 319, who give 0.35 to 0.4 (from memory)."""
+
+_EQUAL = 1e-9
+"""Relative difference below which two pressures or areas are the same one."""
+
+_WEAK = 1e-7
+"""Excess over Mach 1 below which a shock changes nothing that double precision could show."""
+
+_TOLERANCE = 1e-14
+
+
+def faults_of(names: dict[str, int], seen: tuple[State, ...], *rules: tuple[Flags, str]) -> Codes:
+    """Fault codes (N,): the first of `rules` (flags (N,), name) that holds, then what the states `seen`, in order along the stream, say
+    of their range, then 0.
+
+    names: code of each fault name, "out-of-range" and "not-converged" among them.
+    """
+    ranges = [(s.range == code, name) for s in seen for code, name in ((NOT_CONVERGED, "not-converged"), (OUT_OF_RANGE, "out-of-range"))]
+    every = [*rules, *ranges]
+    return np.select([flags for flags, _ in every], [names[name] for _, name in every], 0).astype(np.int64)
+
+
+def blanked(given: Stream, bad: Flags) -> Stream:
+    """The stream with NaN, and its state flagged, where `bad` (N,) holds."""
+    empty = state_from(
+        None if v is None else np.full_like(v, np.nan if v.dtype.kind == "f" else NOT_CONVERGED) for v in given.state.values()
+    )
+    u, m, axial = (np.where(bad, np.nan, v) for v in (given.velocity, given.mass_flow, given.axial_factor))
+    return Stream(given.gas, merge(bad, empty, given.state), u, m, axial)
+
+
+def moved(entering: Stream, state: State) -> Stream:
+    """The stream in another state (N,) of the same total enthalpy."""
+    return replace(entering, state=state, velocity=states.velocity(entering.total_enthalpy, state))
+
+
+def widened(entering: Stream, area: Array) -> tuple[State, Flags]:
+    """Isentropic supersonic state (N,) that fills `area` m2 (N,), and whether there is one: the entry must be sonic or faster,
+    and not larger than `area`."""
+    flux = np.minimum(entering.mass_flow / area, entering.flux)
+    state = states.expanded_to_flux(entering.gas, entering.total_enthalpy, entering.state.entropy, flux, entering.state)
+    # at Mach 1 the flux does not tell the state; the entry is known
+    state = merge(np.abs(area / entering.area - 1.0) <= _EQUAL, entering.state, state)
+    return state, (area >= entering.area * (1.0 - _EQUAL)) & (entering.mach >= 1.0 - _EQUAL)
+
+
+def slowed(entering: Stream, area: Array) -> State:
+    """Isentropic subsonic state (N,) of a subsonic stream that has widened to `area` m2 (N,); not converged where it would have
+    to pass Mach 1. Started from the area relation at constant isentropic exponent (NACA Report 1135, eq. 80)."""
+    g, mach = entering.state.isentropic_exponent, np.minimum(entering.mach, 1.0)
+    ratio = isentropic.area_ratio(mach, g) * area / entering.area
+    slow = isentropic.subsonic_mach(np.maximum(ratio, 1.0), g)
+    relative = (1.0 + 0.5 * (g - 1.0) * mach**2) / (1.0 + 0.5 * (g - 1.0) * slow**2)
+    gas, s = entering.gas, entering.state.entropy
+    guess = gas.at("sp", s, entering.state.pressure * relative ** (g / (g - 1.0)), start=entering.state)
+    return gas.at("flux", s, entering.total_enthalpy, entering.mass_flow / area, start=guess)
+
+
+@dataclass(frozen=True, slots=True)
+class PassageShock:
+    """A normal shock in a widening passage: the streams ahead of it and behind it."""
+
+    ahead: Stream
+    behind: Stream
+
+
+def shock_at_pressure(entering: Stream, pressure: Array) -> PassageShock:
+    """Normal shock where the supersonic stream has expanded without loss to `pressure` Pa (N,).
+
+    entering: sonic or supersonic. A shock at Mach 1 changes nothing. Where the stream is subsonic at that pressure its state is
+    handed on as it is. Source: Rankine-Hugoniot, see `cycle.flow.gas_shocks`.
+    """
+    ahead = moved(entering, entering.gas.at("sp", entering.state.entropy, pressure, start=entering.state))
+    front = gas_shocks.normal_shock(entering.gas, ahead.state, ahead.velocity)
+    none = ahead.mach < 1.0 + _WEAK
+    behind = replace(ahead, state=merge(none, ahead.state, front.state), velocity=np.where(none, ahead.velocity, front.velocity))
+    return PassageShock(ahead, behind)
+
+
+@dataclass(frozen=True, slots=True)
+class Line:
+    """How a stream expands: its state (N,) at a pressure Pa (N,), and at an area m2 (N,) with whether there is one."""
+
+    at_pressure: Callable[[Stream, Array], State]
+    at_area: Callable[[Stream, Array], tuple[State, Flags]]
+
+
+def _isentropic_pressure(entering: Stream, pressure: Array) -> State:
+    return entering.gas.at("sp", entering.state.entropy, pressure, start=entering.state)
+
+
+ISENTROPIC = Line(_isentropic_pressure, widened)
+
+
+def _end_pressure(entering: Stream, value: Array, line: Line) -> tuple[State, Flags]:
+    return line.at_pressure(entering, value), value <= entering.state.pressure * (1.0 + _EQUAL)
+
+
+def _end_area(entering: Stream, value: Array, line: Line) -> tuple[State, Flags]:
+    return line.at_area(entering, value)
+
+
+_END: dict[str, Callable[[Stream, Array, Line], tuple[State, Flags]]] = {"pressure": _end_pressure, "area": _end_area}
+
+
+def _plane_mach(entering: Stream, value: Array, last: Stream) -> State:
+    mach = np.clip(value, entering.mach, np.maximum(last.mach, entering.mach))
+    return states.at_mach(entering.gas, entering.total_enthalpy, entering.state.entropy, mach, entering.state)
+
+
+def _plane_area(entering: Stream, value: Array, last: Stream) -> State:
+    area = np.clip(value * entering.area, entering.area, np.maximum(last.area, entering.area))
+    return widened(entering, area)[0]
+
+
+_PLANE: dict[str, Callable[[Stream, Array, Stream], State]] = {"mach": _plane_mach, "area_ratio": _plane_area}
+
+
+@dataclass(frozen=True, slots=True)
+class Freezing:
+    """Where the composition freezes and what comes of it.
+
+    plane: the stream there, its gas frozen from here on; exit: the end of the expansion in that gas; before_exit (N,): whether
+    the plane asked for lies ahead of the end (else the composition follows all the way, and `plane` is the lossless end);
+    fault (N,): place in `FAULT_NAMES`.
+    """
+
+    plane: Stream
+    exit: Stream
+    before_exit: Flags
+    fault: Codes
+
+
+def frozen_after(entering: Stream, by: str, value: Array, end: str, end_value: Array, line: Line = ISENTROPIC) -> Freezing:
+    """Expansion whose composition follows to a plane and is kept from there on.
+
+    entering: the stream in its own gas. by: "mach", the Mach number of the following composition, or "area_ratio", over the
+    entering area (the entry must then be sonic or faster); value (N,), infinite for never; a plane upstream of the entry is the
+    entry. end: "pressure" Pa or "area" m2; end_value (N,). line: the expansion behind the plane; up to the plane it is lossless,
+    so that a loss counted from the total state covers the whole drop. KeyError for another `by` or `end`.
+    Sound speeds from the plane on are those of the kept composition. Sudden freezing: Bray, Journal of Fluid Mechanics 6 (1959) 1
+    (from memory); where the plane lies is the caller's.
+    """
+    with np.errstate(all="ignore"):
+        shifting, fits = _END[end](entering, end_value, ISENTROPIC)
+        last = moved(entering, shifting)
+        state = _PLANE[by](entering, value, last)
+        before = {"mach": value < last.mach, "area_ratio": value * entering.area < last.area}[by]
+        gas = entering.gas.frozen(state)
+        kept = moved(replace(entering, gas=gas), gas.at("tp", state.temperature, state.pressure))
+        # rounding must not put the plane behind the end it stands for
+        limit = np.minimum(end_value, kept.state.pressure) if end == "pressure" else np.maximum(end_value, kept.area)
+        final, reached = _frozen_end(kept, end, limit, before, line)
+        out = moved(kept, final)
+    slow = (entering.mach < 1.0 - _EQUAL) & ("area" in (by.removesuffix("_ratio"), end))
+    fault = faults_of(_FAULT, (shifting, state, final), (slow, "subsonic"), (~(fits & reached), "upstream"))
+    return Freezing(blanked(kept, fault > 0), blanked(out, fault > 0), before, fault)
+
+
+def _frozen_end(kept: Stream, end: str, value: Array, before: Flags, line: Line) -> tuple[State, Flags]:
+    """The end in the kept gas. Right at Mach 1 the kept composition is a little subsonic: it is on its way through the throat."""
+    if end == "pressure":
+        return _END[end](kept, value, line)
+    state, fits = line.at_area(kept, value)
+    return state, fits | (before & (kept.mach > 0.9) & state.good & (value >= kept.area))
+
+
+@dataclass(frozen=True, slots=True)
+class TwoPart:
+    """Internal nozzle to station 9, external expansion to 10.
+
+    over_expanded (N,): the internal nozzle ends below the pressure asked for at 10, nothing expands outside and 10 is 9;
+    fault (N,): place in `FAULT_NAMES`.
+    """
+
+    nine: Stream
+    ten: Stream
+    over_expanded: Flags
+    fault: Codes
+
+
+def two_part(
+    entering: Stream, area_9: Array, end: str, end_value: Array, line: Line = ISENTROPIC, outside: Line | None = ISENTROPIC
+) -> TwoPart:
+    """Expansion to the end of the internal nozzle, then outside it to the end on which thrust is booked.
+
+    entering: sonic or supersonic. area_9: m2 (N,). end: "pressure" Pa or "area" m2 of station 10; end_value (N,). line: the
+    expansion inside. outside: the expansion from 9 on; None continues `line` from the entry, so that its loss covers the whole
+    drop. KeyError for another `end`.
+    """
+    with np.errstate(all="ignore"):
+        inner, fits = line.at_area(entering, area_9)
+        nine = moved(entering, inner)
+        area = nine.area * (1.0 - _EQUAL)
+        over = (inner.pressure < end_value * (1.0 - _EQUAL)) if end == "pressure" else np.zeros(fits.shape, np.bool_)
+        start, law = (entering, line) if outside is None else (nine, outside)
+        outer, goes = _END[end](start, np.minimum(end_value, inner.pressure) if end == "pressure" else end_value, law)
+        outer = merge(over, inner, outer)
+        ten = moved(entering, outer)
+    shrinks = (end == "area") & (end_value < area)
+    slow = entering.mach < 1.0 - _EQUAL
+    fault = faults_of(
+        _FAULT, (inner, outer), (slow, "subsonic"), (~fits, "upstream"), (shrinks, "exit-shrinks"), (~(goes | over), "upstream")
+    )
+    return TwoPart(blanked(nine, fault > 0), blanked(ten, fault > 0), over & (fault == 0), fault)
+
+
+def separation_margin(exit_pressure: Array, ambient_pressure: Array, threshold: float = SEPARATION_PRESSURE_RATIO) -> Array:
+    """How far an exit is from leaving the wall, p9/(threshold p0) - 1, (N,), 1; negative separates.
+
+    exit_pressure, ambient_pressure: Pa (N,). threshold: see `SEPARATION_PRESSURE_RATIO`.
+    """
+    return exit_pressure / (threshold * ambient_pressure) - 1.0
+
+
+@dataclass(frozen=True, slots=True)
+class Backed:
+    """A nozzle against a back pressure, each (N,).
+
+    regime: place in `REGIME_NAMES`, -1 where there is none. exit: the stream in the exit plane, behind the shock in
+    "shock-at-exit"; its mass flow is what passes. behind: the stream behind the shock, NaN without one. shock_mach;
+    shock_area_ratio over the entry; recovery: total pressure behind over ahead of the shock, 1 without one. passed: mass flow over
+    the supplied one. separation_margin: see the function, of the supersonic stream that fills the nozzle. shock_margin: pressure
+    behind a normal shock in the exit plane over the back pressure, less 1; negative drives it inside. fault: place in `FAULT_NAMES`.
+    """
+
+    regime: Codes
+    exit: Stream
+    behind: Stream
+    shock_mach: Array
+    shock_area_ratio: Array
+    recovery: Array
+    passed: Array
+    separation_margin: Array
+    shock_margin: Array
+    fault: Codes
+
+
+def against_back_pressure(entering: Stream, exit_area: Array, back_pressure: Array, threshold: float = SEPARATION_PRESSURE_RATIO) -> Backed:
+    """What becomes of a sonic or supersonic stream in a widening nozzle that ends in a given pressure; without friction.
+
+    entering: the throat (Mach 1), or a supersonic entry. exit_area: m2 (N,). back_pressure: Pa (N,). threshold: for the margin.
+    Regimes in order of falling back pressure: unchoked (only from Mach 1), a normal shock inside, in the exit plane,
+    over-, fully and under-expanded. A shock inside is the idealised one; a real over-expanded stream separates first, which the
+    separation margin tells. Source: Shapiro (1953), ch. 5 (from memory).
+    """
+    with np.errstate(all="ignore"):
+        full, fits = widened(entering, exit_area)
+        at_exit = shock_at_pressure(entering, full.pressure)
+        at_entry = shock_at_pressure(entering, entering.state.pressure)
+        highest = slowed(at_entry.behind, exit_area)
+        regime = _regime(back_pressure, highest.pressure, at_exit.behind.state.pressure, full.pressure)
+        inside = _shock_inside(entering, exit_area, back_pressure, full.pressure, regime)
+        behind = chosen(regime == REGIME_CODE["shock-in-nozzle"], inside.behind, at_exit.behind)
+        ahead = chosen(regime == REGIME_CODE["shock-in-nozzle"], inside.ahead, at_exit.ahead)
+        out, passed = _exits(entering, exit_area, back_pressure, full, inside, at_exit, regime)
+        kept = recovery(ahead, behind)
+    sonic = np.abs(entering.mach - 1.0) < 1e-6
+    low = regime == REGIME_CODE["unchoked"]
+    fault = faults_of(
+        _FAULT, (out.state,), (entering.mach < 1.0 - 1e-6, "subsonic"), (~fits, "upstream"),
+        (low & ~sonic, "shock-expelled"), (low & ~(out.velocity > 0.0), "no-flow"),
+    )  # fmt: skip
+    bad = fault > 0
+    shock = ~bad & ((regime == REGIME_CODE["shock-in-nozzle"]) | (regime == REGIME_CODE["shock-at-exit"]))
+    return Backed(
+        np.where(bad, -1, regime), blanked(out, bad), blanked(behind, ~shock), np.where(shock, ahead.mach, np.nan),
+        np.where(shock, ahead.area / entering.area, np.nan), np.where(bad, np.nan, np.where(shock, kept, 1.0)),
+        np.where(bad, np.nan, passed), np.where(bad, np.nan, separation_margin(full.pressure, back_pressure, threshold)),
+        np.where(bad, np.nan, at_exit.behind.state.pressure / back_pressure - 1.0), fault,
+    )  # fmt: skip
+
+
+def _regime(back: Array, highest: Array, shocked: Array, full: Array) -> Codes:
+    """Regime codes (N,) from the exit pressures Pa (N,): shock at the entry, shock in the exit plane, no shock."""
+    rules = [
+        (back > highest * (1.0 + _EQUAL), "unchoked"),
+        (back > shocked * (1.0 + _EQUAL), "shock-in-nozzle"),
+        (back >= shocked * (1.0 - _EQUAL), "shock-at-exit"),
+        (back > full * (1.0 + _EQUAL), "over-expanded"),
+        (back >= full * (1.0 - _EQUAL), "fully-expanded"),
+    ]
+    return np.select([r for r, _ in rules], [REGIME_CODE[n] for _, n in rules], REGIME_CODE["under-expanded"]).astype(np.int64)
+
+
+def _shock_inside(entering: Stream, exit_area: Array, back: Array, full: Array, regime: Codes) -> PassageShock:
+    """Shock at which the exit takes the back pressure: the exit pressure falls as the shock moves downstream."""
+    wanted = regime == REGIME_CODE["shock-in-nozzle"]
+    high = np.log(entering.state.pressure)
+    low = np.where(wanted, np.log(full), high)
+
+    def excess(ln_p: Array) -> Array:
+        found = slowed(shock_at_pressure(entering, np.exp(ln_p)).behind, exit_area)
+        return np.where(wanted, np.log(found.pressure / back), 0.0)
+
+    return shock_at_pressure(entering, np.exp(roots.bracketed(excess, low, high, _TOLERANCE)))
+
+
+def chosen(first: Flags, one: Stream, other: Stream) -> Stream:
+    """Points of `one` where `first`, of `other` elsewhere, both of the same gas."""
+    columns = (np.where(first, getattr(one, k), getattr(other, k)) for k in ("velocity", "mass_flow", "axial_factor"))
+    return Stream(one.gas, merge(first, one.state, other.state), *columns)
+
+
+def _exits(
+    entering: Stream, area: Array, back: Array, full: State, inside: PassageShock, at_exit: PassageShock, regime: Codes
+) -> tuple[Stream, Array]:
+    """The stream in the exit plane, and the mass flow that passes over the supplied one (N,)."""
+    slow = moved(entering, entering.gas.at("sp", entering.state.entropy, back, start=entering.state))
+    passed = np.where(regime == REGIME_CODE["unchoked"], slow.flux * area / entering.mass_flow, 1.0)
+    out = moved(entering, full)
+    out = chosen(regime == REGIME_CODE["shock-at-exit"], at_exit.behind, out)
+    out = chosen(regime == REGIME_CODE["shock-in-nozzle"], moved(inside.behind, slowed(inside.behind, area)), out)
+    out = chosen(regime == REGIME_CODE["unchoked"], slow, out)
+    return replace(out, mass_flow=entering.mass_flow * passed), passed
+
+
+def recovery(ahead: Stream, behind: Stream) -> Array:
+    """Total pressure of `behind` over that of `ahead`, (N,), 1."""
+    rest = [states.rest(s.gas, s.total_enthalpy, s.state.entropy).pressure for s in (ahead, behind)]
+    return rest[1] / rest[0]
+
+
+@dataclass(frozen=True, slots=True)
+class Convergent:
+    """A convergent nozzle, each (N,): the stream at its exit, which the exit area is sized for; whether that is sonic; margin,
+    critical over back pressure less 1, positive where choked; fault: place in `FAULT_NAMES`."""
+
+    exit: Stream
+    choked: Flags
+    margin: Array
+    fault: Codes
+
+
+def convergent(entering: Stream, back_pressure: Array) -> Convergent:
+    """Isentropic nozzle that only narrows, from a subsonic stream to the back pressure or to Mach 1, whichever comes first.
+
+    entering: subsonic. back_pressure: Pa (N,). `exit.area` passes the mass flow; a given area A passes A/exit.area of it.
+    Source: Shapiro (1953), ch. 4 (from memory).
+    """
+    with np.errstate(all="ignore"):
+        s, ht = entering.state.entropy, entering.total_enthalpy
+        critical = states.sonic(entering.gas, ht, s, entering.state)
+        choked = critical.pressure >= back_pressure
+        free = entering.gas.at("sp", s, back_pressure, start=entering.state)
+        out = moved(entering, merge(choked, critical, free))
+    fast = entering.mach > 1.0 + _EQUAL
+    back = back_pressure > entering.state.pressure * (1.0 + _EQUAL)
+    fault = faults_of(_FAULT, (out.state,), (fast, "supersonic"), (back, "no-flow"))
+    return Convergent(
+        blanked(out, fault > 0), choked & (fault == 0), np.where(fault > 0, np.nan, critical.pressure / back_pressure - 1.0), fault
+    )

@@ -1,0 +1,400 @@
+"""A plain march of one duct, to confirm what the program finds of its modes: one point, one place after another, scipy's integrator.
+
+Written from the balances: attached d(pA + mu) = p dA - Cf (rho u^2/2) P dx with energy, a separated core at one pressure with
+d(mu) = -Cf (rho u^2/2) P dx, fuel entering with its enthalpy and impulse. Constant gamma in closed form, or complete combustion with
+the polynomials of Cantera's data; nothing of `cycle` is used.
+"""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Callable, Iterator
+from dataclasses import dataclass, field
+from functools import cache
+from itertools import pairwise
+
+import numpy as np
+from scipy.integrate import solve_ivp
+from scipy.optimize import brentq
+
+RU = 8314.46261815324
+AIR = {"N2": 0.7808, "O2": 0.2095, "Ar": 0.0097}
+ATOMS = {"H2": (0, 2), "CH4": (1, 4), "C2H4": (2, 4)}
+"""Carbon and hydrogen of the fuels."""
+
+_CHOKED = 1e-7
+"""Impulse above the sonic one, over it, at which a march counts as choked."""
+
+
+@dataclass(frozen=True)
+class Perfect:
+    """Constant specific heat; the burnt fuel brings `heat` J per kg of it."""
+
+    cp: float
+    R: float
+    heat: float
+
+    def mixed(self, ratio: float, burnt: float) -> Mixture:
+        return Mixture(lambda T: self.cp * T, lambda T: self.cp, self.R)
+
+    def released(self, burnt: float) -> float:
+        return burnt * self.heat
+
+    def fuel_enthalpy(self, T: float) -> float:
+        return self.cp * T
+
+
+@dataclass(frozen=True)
+class Burning:
+    """Air of `AIR` and a fuel that burns completely to CO2 and H2O as far as it burns; the rest of it is inert."""
+
+    fuel: str
+
+    def mixed(self, ratio: float, burnt: float) -> Mixture:
+        carbon, hydrogen = ATOMS[self.fuel]
+        air = sum(x * _molar_mass(s) for s, x in AIR.items())
+        n = {s: x / air for s, x in AIR.items()}
+        fuel = ratio / _molar_mass(self.fuel)
+        moles = min(burnt * fuel, n["O2"] / (carbon + 0.25 * hydrogen))
+        n["O2"] -= moles * (carbon + 0.25 * hydrogen)
+        n |= {self.fuel: fuel - moles, "CO2": carbon * moles, "H2O": 0.5 * hydrogen * moles}
+        weights = {s: value / (1.0 + ratio) for s, value in n.items()}
+        low, high = (sum(value * _coefficients(s)[i] for s, value in weights.items()) for i in (0, 1))
+        R = RU * sum(weights.values())
+
+        def enthalpy(T: float) -> float:
+            a = high if T >= 1000.0 else low
+            return float(RU * (a[5] + T * (a[0] + T * (a[1] / 2 + T * (a[2] / 3 + T * (a[3] / 4 + T * a[4] / 5))))))
+
+        def heat_capacity(T: float) -> float:
+            a = high if T >= 1000.0 else low
+            return float(RU * (a[0] + T * (a[1] + T * (a[2] + T * (a[3] + T * a[4])))))
+
+        return Mixture(enthalpy, heat_capacity, R)
+
+    def released(self, burnt: float) -> float:
+        return 0.0
+
+    def fuel_enthalpy(self, T: float) -> float:
+        a = _coefficients(self.fuel)[0 if T < 1000.0 else 1]
+        return float(RU * T * (a[0] + T * (a[1] / 2 + T * (a[2] / 3 + T * (a[3] / 4 + T * a[4] / 5))) + a[5] / T) / _molar_mass(self.fuel))
+
+
+@cache
+def _species() -> dict[str, tuple[float, tuple[np.ndarray, np.ndarray]]]:
+    import cantera as ct
+
+    wanted = {"N2", "O2", "Ar", "CO2", "H2O", *ATOMS}
+    found = {}
+    for species in ct.Species.list_from_file("nasa_gas.yaml"):
+        if species.name in wanted:
+            c = species.thermo.coeffs
+            low, high = np.asarray(c[8:15]), np.asarray(c[1:8])
+            # argon has one range to 6000 K
+            found[species.name] = (species.molecular_weight, (low, high if c[0] == 1000.0 else low))
+    return found
+
+
+def _molar_mass(name: str) -> float:
+    return _species()[name][0]
+
+
+def _coefficients(name: str) -> tuple[np.ndarray, np.ndarray]:
+    return _species()[name][1]
+
+
+@dataclass(frozen=True)
+class Mixture:
+    """The gas at one place: h(T) J/kg, cp(T), R J/(kg K)."""
+
+    enthalpy: Callable[[float], float]
+    heat_capacity: Callable[[float], float]
+    R: float
+
+    def temperature(self, h: float) -> float:
+        return float(brentq(lambda T: self.enthalpy(T) - h, 50.0, 7000.0, xtol=1e-10, rtol=1e-14))
+
+    def mach2(self, T: float, u: float) -> float:
+        cp = self.heat_capacity(T)
+        return u * u * (cp - self.R) / (cp * self.R * T)
+
+    def impulse(self, total: float, T: float) -> float:
+        """(p A + m u)/m of the stream of total enthalpy `total` at T."""
+        u = math.sqrt(2.0 * (total - self.enthalpy(T)))
+        return u + self.R * T / u
+
+    def sonic(self, total: float) -> float:
+        """Temperature at Mach 1."""
+        rest = self.temperature(total)
+
+        def miss(T: float) -> float:
+            cp = self.heat_capacity(T)
+            return 2.0 * (total - self.enthalpy(T)) - cp * self.R * T / (cp - self.R)
+
+        return float(brentq(miss, 0.6 * rest, rest, xtol=1e-9, rtol=1e-13))
+
+    def at_impulse(self, total: float, impulse: float, fast: bool) -> tuple[float, float]:
+        """T K and u m/s of the supersonic or the subsonic stream of an impulse; the sonic one where it has not enough."""
+        sonic = self.sonic(total)
+        T = sonic
+        if impulse > self.impulse(total, sonic):
+            end = 60.0 if fast else self.temperature(total) * (1.0 - 1e-12)
+            T = float(brentq(lambda t: self.impulse(total, t) - impulse, end, sonic, xtol=1e-9, rtol=1e-13))
+        return T, math.sqrt(2.0 * (total - self.enthalpy(T)))
+
+
+@dataclass(frozen=True)
+class Injection:
+    x: float
+    share: float
+    speed: float
+    theta: float
+    length: float
+
+    def burnt(self, x: float) -> float:
+        place = min(max((x - self.x) / self.length, 0.0), 1.0)
+        return self.theta * place / (1.0 + (self.theta - 1.0) * place)
+
+
+@dataclass(frozen=True)
+class Duct:
+    """One duct of circular section: what enters it, its areas (x, A m2), its fuel."""
+
+    gas: Perfect | Burning
+    pressure: float
+    temperature: float
+    velocity: float
+    mach: float
+    mass_flow: float
+    sections: tuple[tuple[float, float], ...]
+    injections: tuple[Injection, ...]
+    ratio: float
+    burnt: float
+    fuel_temperature: float
+    friction: float
+    pieces: tuple[tuple[float, float], ...] = field(init=False)
+
+    def __post_init__(self) -> None:
+        ends = {x for x, _ in self.sections} | {i.x for i in self.injections} | {i.x + i.length for i in self.injections}
+        object.__setattr__(self, "pieces", tuple(pairwise(sorted(x for x in ends if 0.0 <= x <= self.end))))
+
+    @property
+    def end(self) -> float:
+        return self.sections[-1][0]
+
+    @property
+    def entry_area(self) -> float:
+        return self.sections[0][1]
+
+    @property
+    def impulse(self) -> float:
+        return self.pressure * self.entry_area + self.mass_flow * self.velocity
+
+    def area(self, x: float) -> tuple[float, float]:
+        """A m2 and dA/dx m at x; the slope of the piece that begins there."""
+        for (a, A), (b, B) in pairwise(self.sections):
+            if x < b or b == self.end:
+                slope = (B - A) / (b - a)
+                return A + slope * (x - a), slope
+        raise ValueError(x)
+
+    def burning(self, x: float, inside: float) -> tuple[Mixture, float, float]:
+        """Mixture, total enthalpy J/kg and mass flow kg/s at x; `inside` is a place of the same piece, which says what is injected."""
+        entered = [i for i in self.injections if i.x < inside]
+        ratio = self.ratio * sum(i.share for i in entered)
+        share = sum(i.share * i.burnt(x) for i in entered)
+        burnt = self.burnt * share * self.ratio / ratio if ratio else 0.0
+        start = self.gas.mixed(0.0, 0.0).enthalpy(self.temperature) + 0.5 * self.velocity**2
+        brought = self.gas.fuel_enthalpy(self.fuel_temperature) + self.gas.released(burnt)
+        return self.gas.mixed(ratio, burnt), (start + ratio * brought) / (1.0 + ratio), self.mass_flow * (1.0 + ratio)
+
+    def kick(self, x: float) -> float:
+        """Impulse of the fuel injected at x, N."""
+        return sum(self.mass_flow * self.ratio * i.share * i.speed for i in self.injections if i.x == x)
+
+    def drag(self, x: float, rho: float, u: float) -> float:
+        """Friction of the whole wall, N/m."""
+        return self.friction * 0.5 * rho * u * u * 2.0 * math.sqrt(math.pi * self.area(x)[0])
+
+    def after(self, x: float) -> Iterator[tuple[float, float]]:
+        """Pieces from x on."""
+        return ((max(a, x), b) for a, b in self.pieces if b > x)
+
+
+@dataclass(frozen=True)
+class March:
+    """Rows x, p, u, m u, M^2 of an attached march, and where it chokes (None: it does not)."""
+
+    rows: np.ndarray
+    choked: float | None
+
+
+def attached(duct: Duct, x: float, impulse: float, fast: bool, steps: int = 8) -> March:
+    """March downstream from x, where the stream has `impulse` N; fuel injected at x itself is yet to come where x is 0. steps: of each
+    piece of the duct, at least."""
+    F, rows = impulse, []
+    for a, b in duct.after(x):
+        middle = 0.5 * (a + b)
+        F += duct.kick(a) if a > x or a == 0.0 else 0.0
+
+        def state(x: float, F: float, middle: float = middle) -> tuple[float, float, float, float, float]:
+            mixture, total, m = duct.burning(x, middle)
+            T, u = mixture.at_impulse(total, F / m, fast)
+            return m / (u * duct.area(x)[0]) * mixture.R * T, u, m, m / (u * duct.area(x)[0]), mixture.mach2(T, u)
+
+        def rate(x: float, y: np.ndarray, middle: float = middle, slope: float = duct.area(middle)[1]) -> list[float]:
+            p, u, _, rho, _ = state(x, y[0], middle)
+            return [p * slope - duct.drag(min(x, duct.end), rho, u)]
+
+        def room(x: float, y: np.ndarray, middle: float = middle) -> float:
+            mixture, total, m = duct.burning(x, middle)
+            return y[0] / (m * mixture.impulse(total, mixture.sonic(total))) - 1.0 - _CHOKED
+
+        if room(a, np.array([F])) <= 0.0:
+            return March(np.array(rows), a)
+        room.terminal = True  # type: ignore[attr-defined]
+        found = solve_ivp(rate, (a, b), [F], method="RK45", rtol=1e-7, atol=1e-9 * F, events=room, max_step=(b - a) / steps)
+        for place, value in zip(found.t, found.y[0], strict=True):
+            p, u, m, _, mach2 = state(place, value)
+            rows.append((place, p, u, m * u, mach2))
+        if found.status == 1:
+            return March(np.array(rows), float(found.t[-1]))
+        F = float(found.y[0, -1])
+    return March(np.array(rows), None)
+
+
+def core(duct: Duct, pressure: float) -> np.ndarray:
+    """Rows x, Ac/A, M^2, momentum N of the separated core at one pressure; NaN from where it has no momentum or enthalpy left."""
+    momentum, rows = duct.impulse - pressure * duct.entry_area, []
+    for a, b in duct.pieces:
+        middle = 0.5 * (a + b)
+        momentum += duct.kick(a)
+
+        def state(x: float, momentum: float, middle: float = middle) -> tuple[float, float, float, float]:
+            mixture, total, m = duct.burning(x, middle)
+            u = momentum / m
+            T = mixture.temperature(total - 0.5 * u * u)
+            return m * mixture.R * T / (pressure * u), mixture.mach2(T, u), pressure / (mixture.R * T), u
+
+        x = np.linspace(a, b, 25)
+        values = np.full(x.size, momentum)
+        if duct.friction:
+
+            def rate(x: float, y: np.ndarray, middle: float = middle) -> list[float]:
+                _, _, rho, u = state(x, y[0], middle)
+                return [-duct.drag(min(x, duct.end), rho, u)]
+
+            values = solve_ivp(rate, (a, b), [momentum], t_eval=x, rtol=1e-7, atol=1e-9 * momentum).y[0]
+        for place, value in zip(x, values, strict=True):
+            area, mach2, _, _ = state(place, value)
+            rows.append((place, area / (duct.area(middle)[0] + duct.area(middle)[1] * (place - middle)), mach2, value))
+        momentum = float(values[-1])
+    return np.array(rows)
+
+
+def normal_shock(duct: Duct) -> float:
+    """Pressure behind a normal shock at station 2, Pa."""
+    mixture = duct.gas.mixed(0.0, 0.0)
+    total = mixture.enthalpy(duct.temperature) + 0.5 * duct.velocity**2
+    T, u = mixture.at_impulse(total, duct.impulse / duct.mass_flow, fast=False)
+    return duct.mass_flow / (u * duct.entry_area) * mixture.R * T
+
+
+def korkegi(mach: float) -> float:
+    return 1.0 + 0.3 * mach**2 if mach <= 4.5 else 0.17 * mach**2.5
+
+
+def attached_verdict(duct: Duct) -> str:
+    run = attached(duct, 0.0, duct.impulse, fast=True, steps=100)
+    if run.choked is not None:
+        return "chokes"
+    return "separates" if run.rows[:, 1].max() > korkegi(duct.mach) * duct.pressure else "stands"
+
+
+def train_verdict(duct: Duct, tried: int = 40) -> str:
+    """The smallest pressure above p2 at which the core just fills the duct, and what becomes of the stream there."""
+    low, high = duct.pressure * (1.0 + 1e-5), normal_shock(duct) * (1.0 - 1e-6)
+
+    def fullest(pressure: float) -> float:
+        rows = core(duct, pressure)
+        return float(rows[rows[:, 0] > 0.0, 1].max()) - 1.0
+
+    pressures = np.geomspace(low, high, tried)
+    before = fullest(pressures[0])
+    for a, b in pairwise(pressures):
+        after = fullest(b)
+        if before * after <= 0.0:
+            p = float(brentq(fullest, a, b, xtol=1e-6 * a))
+            rows = core(duct, p)
+            x, _, mach2, momentum = rows[int(np.argmax(np.where(rows[:, 0] > 0.0, rows[:, 1], 0.0)))]
+            if mach2 <= 1.0:
+                return "subsonic"
+            if x == duct.end:
+                return "stands"
+            return "chokes" if attached(duct, x, momentum + p * duct.area(x)[0], fast=True).choked is not None else "stands"
+        before = after
+    return "no pressure"
+
+
+def throat_verdict(duct: Duct) -> str:
+    """Whether the impulse that arrives lets a subsonic stream through, and a core joins the critical one.
+
+    A subsonic stream that starts with all of the impulse, behind a normal shock at the burner entry, is the weakest one there is: where
+    it chokes, no subsonic stream passes.
+    """
+    if attached(duct, 0.0, duct.impulse, fast=False).choked is not None:
+        return "unstarted"
+    mixture = duct.gas.mixed(0.0, 0.0)
+    total = mixture.enthalpy(duct.temperature) + 0.5 * duct.velocity**2
+    low, high = duct.mass_flow * mixture.impulse(total, mixture.sonic(total)), duct.impulse
+    for _ in range(30):
+        half = 0.5 * (low + high)
+        low, high = (half, high) if attached(duct, 0.0, half, fast=False).choked is not None else (low, half)
+    critical = attached(duct, 0.0, low, fast=False)
+    if critical.choked is None or len(critical.rows) == 0:
+        return "no throat"
+    if _behind_throat(duct, high * (1.0 + 1e-6), critical.choked) == "chokes":
+        return "chokes behind the throat"
+    rows = critical.rows
+    lacking = [_core_momentum(duct, p, x) - momentum for x, p, _, momentum, _ in rows]
+    return "stands" if min(lacking) <= 0.0 <= max(lacking) else "no core"
+
+
+def _behind_throat(duct: Duct, impulse: float, throat: float) -> str:
+    """What the supersonic branch does behind a throat that the subsonic one, of this impulse at the entry, just passes.
+
+    It starts a little behind the throat; up to there the branches part linearly, so that the areas' force differs by half of p_sub - p_sup.
+    """
+    rows = attached(duct, 0.0, impulse, fast=False, steps=100).rows
+    behind = rows[rows[:, 0] > throat + 0.01 * duct.end]
+    if len(behind) == 0:
+        return "passes"
+    x, p, _, momentum, _ = behind[0]
+    F = momentum + p * duct.area(x)[0]
+    mixture, total, m = duct.burning(x, x)
+    T, u = mixture.at_impulse(total, F / m, fast=True)
+    fast = m / (u * duct.area(x)[0]) * mixture.R * T
+    F -= 0.5 * (p - fast) * (duct.area(x)[0] - duct.area(throat)[0])
+    return "chokes" if attached(duct, float(x), float(F), fast=True, steps=40).choked is not None else "passes"
+
+
+def _core_momentum(duct: Duct, pressure: float, x: float) -> float:
+    """Momentum at x of the core at a pressure, N."""
+    rows = core(duct, pressure) if duct.friction else None
+    if rows is None:
+        return (
+            duct.impulse - pressure * duct.entry_area + sum(duct.kick(i.x) for i in {i.x: i for i in duct.injections}.values() if i.x < x)
+        )
+    return float(np.interp(x, rows[:, 0], rows[:, 3]))
+
+
+def mode(duct: Duct) -> str:
+    """The mode in which a duct runs, "none" where no one stands."""
+    for name, verdict in (
+        ("scramjet", attached_verdict),
+        ("scramjet-shock-train", train_verdict),
+        ("ramjet-thermal-throat", throat_verdict),
+    ):
+        if verdict(duct) == "stands":
+            return name
+    return "none"

@@ -1,0 +1,96 @@
+"""Random flowpaths end in audited walks or named statuses; modes agree with a plain march; fuel sweeps are smooth."""
+
+from __future__ import annotations
+
+import numpy as np
+import pytest
+
+import cycle
+from cycle.quantities import STATUSES
+from tests import scalar_march
+from tests.heavy_rigs import confirm, heavy_rig, scalar_duct
+from tests.random_flowpath import judge, loaded
+
+CASES = 60
+BLOCKS = 6
+"""The cases are judged in blocks, to be shared out among the test processes."""
+
+
+@pytest.mark.parametrize("block", range(BLOCKS))
+def test_random_flowpath_ends_in_an_audited_walk_or_a_named_status(block: int) -> None:
+    """Audit at 1e-9, no blank figure, accounts that close, the twin in a batch at 1e-9; at least half of each block is solved."""
+    seeds = range(block * CASES // BLOCKS, (block + 1) * CASES // BLOCKS)
+    found = {seed: judge(seed) for seed in seeds}
+    wrong = {seed: words for seed, (_, _, words) in found.items() if words}
+    assert not wrong, wrong
+    statuses = [status for status, _, _ in found.values()]
+    assert set(statuses) <= set(STATUSES)
+    assert statuses.count("solved") >= len(seeds) // 2
+
+
+WITHOUT_MODE = {7: "unstarted", 8: "unstarted", 12: "unstarted", 82: "choked", 127: "choked", 129: "choked"}
+WITH_MODE = {
+    17: "scramjet", 2: "scramjet", 1: "scramjet-shock-train", 3: "scramjet-shock-train", 6: "ramjet-thermal-throat",
+    57: "ramjet-thermal-throat",
+}  # fmt: skip
+"""Seeds of heavy rigs, constant gamma and frozen gas, by what is found; `python -m tests.heavy_rigs 0 450` compares them all."""
+
+
+@pytest.mark.parametrize("seed", WITHOUT_MODE)
+def test_choked_and_unstarted_have_no_flow_in_a_plain_march(seed: int) -> None:
+    """An independent march: no attached supersonic flow, no shock train and no throat within the impulse that arrives."""
+    assert confirm(seed) == (WITHOUT_MODE[seed], "none", "none")
+
+
+@pytest.mark.parametrize("seed", WITH_MODE)
+def test_mode_found_is_that_of_a_plain_march(seed: int) -> None:
+    """The same march finds the modes that stand, so that its "none" means something."""
+    assert confirm(seed) == ("solved", WITH_MODE[seed], WITH_MODE[seed])
+
+
+def test_plain_march_meets_the_program_where_the_flow_is_attached() -> None:
+    """The two share no code: exit pressure and speed of an attached duct to the plain march's own tolerance, 1e-6."""
+    walks = [cycle.solve(loaded(heavy_rig(seed))) for seed in range(20)]
+    attached = [walk for walk in walks if walk.mode == "rig" and walk.processes[0].figures.get("mode_scramjet") == 1.0]
+    assert len(attached) >= 3
+    for walk in attached:
+        duct = scalar_duct(walk)
+        last = scalar_march.attached(duct, 0.0, duct.impulse, fast=True).rows[-1]
+        assert last[1:3] == pytest.approx([walk.station["4"].pressure, walk.station["4"].velocity], rel=1e-6)
+
+
+SWEPT: dict[str, dict[str, float | str]] = {
+    "hydrogen, fast": {"flight.mach": 7.0, "inlet.contraction_ratio": 12.0},
+    "hydrogen": {"flight.mach": 5.5, "inlet.contraction_ratio": 7.0},
+    "ethylene": {"flight.mach": 5.0, "fuel.name": "ethylene"},
+}
+MOST_CHANGES = 4
+"""Attached, shock train, thermal throat, unstarted: each once, and one return."""
+SMOOTH = 0.003
+"""Relative change of the specific impulse from one point to the next, 0.002 in equivalence ratio apart."""
+
+
+def swept_case(changes: dict[str, float | str]) -> cycle.Case:
+    tables = {
+        "format": 1, "title": "fuel sweep, invented", "flight": {"mach": 7.0, "dynamic_pressure": 5e4}, "gas": {"model": "equilibrium"},
+        "inlet": {"kinetic_energy_efficiency": 0.97, "contraction_ratio": 6.0}, "fuel": {"name": "hydrogen"},
+        "combustor": {
+            "process": "duct", "equivalence_ratio": 0.3, "burnt_fraction": 0.9, "friction_coefficient": 0.002,
+            "area": [{"x": 0.0, "area_ratio": 1.0}, {"x": 0.3, "area_ratio": 1.1}, {"x": 1.3, "area_ratio": 2.2}],
+            "injector": [{"x": 0.1, "share": 0.6}, {"x": 0.5, "share": 0.4}],
+        },
+        "nozzle": {"exit_area_over_capture": 1.5}, "engine": {"capture_area": 0.3},
+    }  # fmt: skip
+    return loaded(tables).replace(changes)
+
+
+@pytest.mark.parametrize("changes", SWEPT.values(), ids=SWEPT)
+def test_fuel_sweep_is_smooth_but_where_the_mode_changes(changes: dict[str, float | str]) -> None:
+    """The discretisation must not show: a step of 0.002 changes the impulse by the slope of the curve, here 0.11 % at most."""
+    walk = cycle.solve(swept_case(changes), {"combustor.equivalence_ratio": np.arange(0.4, 1.26, 0.002)})
+    changed = walk.mode[1:] != walk.mode[:-1]
+    impulse = walk.performance.specific_impulse
+    steps = np.abs(np.diff(impulse) / impulse[:-1])[~changed & (walk.status[1:] == "solved")]
+    assert 1 <= changed.sum() <= MOST_CHANGES, list(dict.fromkeys(walk.mode))
+    assert steps.size > 300 and steps.max() < SMOOTH
+    assert np.array_equal(np.isfinite(impulse), walk.status == "solved")
