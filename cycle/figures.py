@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Callable, Iterator, Mapping
+from dataclasses import dataclass
 from typing import Any
 
 import numpy as np
@@ -56,3 +57,61 @@ class Station(Figures):
     def has_value(self) -> bool:
         """Whether any point reached this station."""
         return bool(np.any(np.isfinite(self["pressure"])))
+
+
+@dataclass(frozen=True, slots=True)
+class Row:
+    """One line of an account: key, label, value (float, or array in the batch's shape), dimension of its unit."""
+
+    key: str
+    label: str
+    value: Any
+    unit: str
+
+
+@dataclass(frozen=True, slots=True)
+class Limit:
+    """One limit; margin positive is safe. state: ok, near, over or "not assessed" (array of these in a batch).
+
+    restore: what gives margin back, or why it is not assessed; input: the case key to go to, or "".
+    """
+
+    key: str
+    label: str
+    actual: Any
+    allowed: Any
+    margin: Any
+    state: Any
+    unit: str
+    upper: bool
+    restore: str
+    input: str
+
+
+@dataclass(frozen=True, slots=True)
+class Process:
+    """One process of the walk: name, label, stations, figures by key."""
+
+    name: str
+    label: str
+    start: str
+    end: str
+    figures: Mapping[str, Any]
+
+
+@dataclass(frozen=True, slots=True)
+class Residual:
+    """One audited law at one place; value: the relative residual."""
+
+    law: str
+    where: str
+    value: Any
+
+
+@dataclass(frozen=True, slots=True)
+class Audit:
+    """All residuals; ok where the worst of them is below the limit 1e-9 (for a batch: of all its points)."""
+
+    ok: bool
+    rows: tuple[Residual, ...]
+    worst: Residual

@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 from collections.abc import Callable, Mapping
-from dataclasses import dataclass
 from functools import cached_property, partial
 from typing import TYPE_CHECKING, Any
 
@@ -14,7 +13,7 @@ from cycle import audit as auditing
 from cycle import limits as margins
 from cycle.account import spread, usable
 from cycle.arrays import Array, ArrayLike
-from cycle.figures import Figures, Station, shaped
+from cycle.figures import Audit, Figures, Limit, Process, Residual, Row, Station, shaped
 from cycle.flowpath import assembly, combustor
 from cycle.flowpath.setting import FIXED_IN_BATCH, setting
 from cycle.flowpath.stream import SOLVED, STATUS_NAMES
@@ -27,64 +26,6 @@ if TYPE_CHECKING:
     from cycle.referee import Report
 
 PERFORMANCE = tuple(o.key for o in OUTPUTS if o.where == "performance")
-
-
-@dataclass(frozen=True, slots=True)
-class Row:
-    """One line of an account: key, label, value (float, or array in the batch's shape), dimension of its unit."""
-
-    key: str
-    label: str
-    value: Any
-    unit: str
-
-
-@dataclass(frozen=True, slots=True)
-class Limit:
-    """One limit; margin positive is safe. state: ok, near, over or "not assessed" (array of these in a batch).
-
-    restore: what gives margin back, or why it is not assessed; input: the case key to go to, or "".
-    """
-
-    key: str
-    label: str
-    actual: Any
-    allowed: Any
-    margin: Any
-    state: Any
-    unit: str
-    upper: bool
-    restore: str
-    input: str
-
-
-@dataclass(frozen=True, slots=True)
-class Process:
-    """One process of the walk: name, label, stations, figures by key."""
-
-    name: str
-    label: str
-    start: str
-    end: str
-    figures: Mapping[str, Any]
-
-
-@dataclass(frozen=True, slots=True)
-class Residual:
-    """One audited law at one place; value: the relative residual."""
-
-    law: str
-    where: str
-    value: Any
-
-
-@dataclass(frozen=True, slots=True)
-class Audit:
-    """All residuals; ok where the worst of them is below the limit 1e-9 (for a batch: of all its points)."""
-
-    ok: bool
-    rows: tuple[Residual, ...]
-    worst: Residual
 
 
 class Walk:

@@ -293,7 +293,8 @@ def _unmet(walk: cycle.Walk) -> list[str]:
     heat = walk.case.choices["combustor.heat"]
     asked = walk.case.numbers[f"combustor.{heat}"]
     found = walk.station["4"].total_temperature if heat == "exit_total_temperature" else walk.performance[heat]
-    return [] if abs(found - asked) <= MET * asked else [f"asked for {heat} {asked:.10g}, found {found:.10g}"]
+    wrong = [] if walk.performance.fuel_flow >= 0.0 else [f"fuel flow {walk.performance.fuel_flow:.4g}"]
+    return wrong if abs(found - asked) <= MET * asked else [*wrong, f"asked for {heat} {asked:.10g}, found {found:.10g}"]
 
 
 def _open_accounts(walk: cycle.Walk) -> list[str]:

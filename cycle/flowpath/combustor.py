@@ -240,7 +240,8 @@ def ratio_for(temperature_of: Callable[[Array], Array], first: Array, asked: Arr
     """Fuel-air ratio (N,) near `first` at which a burner's exit total temperature is the one asked for; NaN where it does not
     settle."""
     with np.errstate(all="ignore"):
-        return _secant(temperature_of, first, asked, _MARCHED)
+        found = _secant(temperature_of, first, asked, _MARCHED)
+        return np.where(found >= 0.0, found, np.nan)
 
 
 def _for_temperature(entering: Stream, setting: Setting) -> Array:
