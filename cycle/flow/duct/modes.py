@@ -257,15 +257,18 @@ def _cooled(duct: Duct, separation: Array, asked: str, panels: int, second: bool
     for _ in range(_COOLING_TURNS):
         part = replace(duct.take(live), cooling=Cooling(duct.cooling.grid.take(live), lost[:, live]))
         found = _solved(part, separation[live], asked, panels, second)
-        assert found.lost_heat is not None
-        moved = np.abs(found.lost_heat - lost[:, live]).max(0)
+        following = found.lost_heat
+        assert following is not None
+        # what is booked is the heat that was marched with, so that the energy closes to rounding
+        found = replace(found, lost_heat=lost[:, live].copy())
+        moved = np.abs(following - lost[:, live]).max(0)
         size = part.mass_flow * part.velocity**2
         if whole is None:
             whole = found
         else:
             merge(whole, live, found)
         going = (moved > _COOLED * size) & (found.mode != NONE)
-        lost[:, live] = found.lost_heat
+        lost[:, live] = following
         live = live[going]
         if not live.size:
             break
