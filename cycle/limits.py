@@ -11,9 +11,10 @@ from dataclasses import dataclass, replace
 import numpy as np
 
 from cycle.account import spread
-from cycle.arrays import Array
-from cycle.flow import roots
+from cycle.arrays import Array, Codes
+from cycle.flow import gas_shocks, roots
 from cycle.flowpath import assembly, combustor, inlet_limits
+from cycle.flowpath.inlet_limits import Bound
 from cycle.flowpath.setting import Setting
 from cycle.flowpath.stream import SOLVED, Stream
 from cycle.gas.species import HIGHEST, LOWEST
@@ -182,9 +183,28 @@ def _nozzle(walked: March) -> tuple[Limit, ...]:
     setting = walked.setting
     key = f"nozzle.{setting.choices['nozzle.exit']}"
     station = "9" if walked.reached("9") is not None else "10"
-    ratio = _at(walked, station, "pressure") / _at(walked, "0", "pressure")
-    return (Limit("nozzle_separation", f"nozzle separation, p{station}/p0", ratio, setting["limits.nozzle_separation"], "ratio", False,
-                  "a smaller exit or a higher exit pressure", key),)  # fmt: skip
+    ambient, behind = _at(walked, "0", "pressure"), _behind_exit_shock(walked, station)
+    ratio = _at(walked, station, "pressure") / ambient
+    restore = "a smaller exit or a higher exit pressure"
+    return (
+        Limit("nozzle_separation", f"nozzle separation, p{station}/p0", ratio, setting["limits.nozzle_separation"], "ratio", False,
+              restore, key),
+        Limit("nozzle_shock", f"shock in the nozzle, p0 over p{station} behind it", ambient / behind, np.ones(setting.size), "ratio", True,
+              restore, key, "no supersonic exit"),
+    )  # fmt: skip
+
+
+def _behind_exit_shock(walked: March, station: str) -> Array:
+    """Pressure behind a normal shock in the exit plane, Pa (N,); above it in the ambient a shock stands in the nozzle."""
+    record = walked.stations().get(station)
+    if record is None:
+        return np.full(walked.setting.size, np.nan)
+    stream, found = record.stream, np.full(record.index.size, np.nan)
+    fast = np.flatnonzero(stream.mach > 1.0)
+    if fast.size:
+        part = stream.take(fast)
+        found[fast] = gas_shocks.normal_shock(part.gas, part.state, part.velocity).state.pressure
+    return spread(walked, record.index, found)
 
 
 def _of(walked: March, process: str, figure: str) -> Array:
@@ -223,26 +243,22 @@ def _inlet_geometry(walked: March) -> tuple[Limit, ...]:
     for name, label, why in lacking:
         own = [b for b in found if b.key == name]
         if not own:
-            rows.append(
-                Limit(
-                    name,
-                    label,
-                    nothing,
-                    nothing,
-                    "ratio",
-                    True,
-                    "",
-                    "",
-                    "no such shock meets a boundary layer" if name == "separation" else why,
-                )
-            )
+            why = "no such shock meets a boundary layer" if name == "separation" else why
+            rows.append(Limit(name, label, nothing, nothing, "ratio", True, "", "", why))
             continue
-        worst = np.fmin.reduce([b.margin for b in own])
-        at = next((b for b in own if b.stage and np.array_equal(b.margin, worst, equal_nan=True)), own[0])
-        stage = f", {at.stage}" if at.stage else ""
         to = "inlet.internal_contraction" if name == "start" else goto
-        rows.append(_share(walked, name, f"{label}{stage}", spread(walked, flight.index, worst), words[name], to, "no such state"))
+        rows.append(_worst(walked, flight.index, own, label, words[name], to))
     return tuple(rows)
+
+
+def _worst(walked: March, index: Codes, own: list[Bound], label: str, restore: str, goto: str) -> Limit:
+    """Of the bounds of one kind the one with least margin at each point; named in the label where all points agree."""
+    margins = np.array([np.where(np.isnan(b.margin), np.inf, b.margin) for b in own])
+    which, every = np.argmin(margins, axis=0), np.arange(index.size)
+    actual, allowed = (spread(walked, index, np.array([getattr(b, name) for b in own])[which, every]) for name in ("actual", "allowed"))
+    stage = own[which[0]].stage if np.all(which == which[0]) else ""
+    words = f"{label}, {stage}" if stage else label
+    return Limit(own[0].key, words, actual, allowed, own[0].unit, True, restore, goto, "no such state")
 
 
 def _whole_capture(walked: March) -> Stream:

@@ -132,6 +132,7 @@ MARGINS = {
     "attached": "attached shocks",
     "separation": "inlet separation",
     "start": "inlet start",
+    "nozzle_shock": "nozzle shock",
 }
 """Limits that a process gives as a margin: key, short name. They stand first, the margin in percent behind the name."""
 
