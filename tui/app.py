@@ -5,6 +5,8 @@ from __future__ import annotations
 import os
 import sys
 import termios
+from collections.abc import Iterator
+from contextlib import contextmanager
 from typing import Any, ClassVar
 
 from textual.app import App
@@ -23,6 +25,18 @@ def terminal_settings() -> list[Any] | None:
         return termios.tcgetattr(sys.__stdin__.fileno()) if sys.__stdin__ is not None else None
     except (termios.error, OSError, ValueError):
         return None
+
+
+@contextmanager
+def drawn_on_the_terminal() -> Iterator[None]:
+    """Let the screen be drawn where standard error is a file or closed: the library draws on standard error."""
+    kept, out = sys.__stderr__, sys.__stdout__
+    if out is not None and out.isatty() and (kept is None or not kept.isatty()):
+        sys.__stderr__ = out  # type: ignore[misc]
+    try:
+        yield
+    finally:
+        sys.__stderr__ = kept  # type: ignore[misc]
 
 
 class DuctwalkApp(App[None], inherit_bindings=False):
@@ -82,7 +96,8 @@ def run(path: str | None) -> int:
     journal has the work.
     """
     app = DuctwalkApp(path or "", terminal_settings())
-    app.run(mouse="SSH_CONNECTION" not in os.environ)
+    with drawn_on_the_terminal():
+        app.run(mouse="SSH_CONNECTION" not in os.environ)
     if app.defect is not None:
         raise app.defect
     return app.return_code or 0

@@ -116,6 +116,16 @@ def cpu_seconds(pid: int) -> float:
     return (int(fields[11]) + int(fields[12])) / os.sysconf("SC_CLK_TCK")
 
 
+def test_screen_stands_with_standard_error_in_a_file(path: Path, env: dict[str, str], tmp_path: Path) -> None:
+    log = tmp_path / "log"
+    program = f"import os, sys; os.dup2(os.open({str(log)!r}, os.O_CREAT | os.O_WRONLY), 2); {START}"
+    with Terminal([str(path)], env=env, program=program) as terminal:
+        terminal.wait(READY)
+        terminal.press("q")
+        assert ended_without_reading(terminal, 6.0) == 0
+    assert log.read_bytes() == b""
+
+
 def test_suspend_to_the_shell_and_back(path: Path, env: dict[str, str]) -> None:
     program = f"import pty, sys, os; os.execvp('bash', ['bash', '--norc', '--noprofile', '-i'])  # {START}"
     with Terminal([], env={**env, "PS1": "shell$ "}, program=program) as terminal:
