@@ -15,12 +15,6 @@ from tui.screens.prompt import Prompt
 
 
 @pytest.fixture
-def state(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> Path:
-    monkeypatch.setenv("XDG_STATE_HOME", str(tmp_path / "state"))
-    return tmp_path / "state" / "ductwalk"
-
-
-@pytest.fixture
 def path(tmp_path: Path, state: Path) -> Path:
     file = tmp_path / "case.toml"
     file.write_text(TEXT)

@@ -17,12 +17,6 @@ from tui.figures import Figures
 
 
 @pytest.fixture
-def state(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> Path:
-    monkeypatch.setenv("XDG_STATE_HOME", str(tmp_path / "state"))
-    return tmp_path / "state" / "ductwalk"
-
-
-@pytest.fixture
 def path(tmp_path: Path, state: Path) -> Path:
     file = tmp_path / "duct.toml"
     file.write_text(DUCT)

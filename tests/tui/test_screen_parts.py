@@ -252,12 +252,6 @@ def test_worker_carries_an_error_and_goes_on() -> None:
     assert kinds["write"].value == "after"
 
 
-@pytest.fixture
-def state(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> Path:
-    monkeypatch.setenv("XDG_STATE_HOME", str(tmp_path / "state"))
-    return tmp_path / "state" / "ductwalk"
-
-
 def left_by_another(state: Path, path: str, *records: journal.Record, tail: str = "") -> Path:
     """A journal as a session that was killed leaves it."""
     writer = Journal(path, journal.content_hash(path))
