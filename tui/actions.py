@@ -23,7 +23,7 @@ class Action:
     rank: int = 2
 
 
-WALK, EDIT, COMPARE, FILE, PROGRAM = "walking", "editing", "comparing", "case file", "program"
+WALK, EDIT, ASK, COMPARE, FILE, PROGRAM = "walking", "editing", "asking", "comparing", "case file", "program"
 
 ACTIONS: tuple[Action, ...] = (
     Action("upstream", ("left",), "left", "", "one station upstream, in the table and in the inputs", WALK),
@@ -46,13 +46,24 @@ ACTIONS: tuple[Action, ...] = (
     Action("default", ("delete",), "Del", "", "take the value back: the default holds, or none", EDIT),
     Action("undo", ("u",), "u", "undo", "take back the last edit, without end", EDIT, 1),
     Action("redo", ("U", "shift+u"), "U", "redo", "bring back an edit taken back", EDIT),
+    Action("peek", ("g",), "g", "graph", "draw the watched figure against the input in hand; a second input makes a map", ASK, 1),
+    Action("explain", ("e",), "e", "explain", "what the figure or input in hand is, its equation with this walk's numbers", ASK, 1),
+    Action("influence", ("i",), "i", "influence", "the inputs that move the watched figure most, each by its own step", ASK),
+    Action("watch", ("y",), "y", "", "watch the next figure: thrust, specific impulse ...; graphs and influence follow it", ASK),
+    Action("plots", ("l",), "l", "plots", "lines of this walk: along the duct, temperature-entropy, enthalpy-velocity", ASK),
+    Action("went", ("f",), "f", "losses", "from the ideal thrust to this one: what each process cost", ASK),
+    Action("find", ("slash",), "/", "find", "find an input or a figure by name or symbol and go there", ASK, 2),
+    Action("palette", ("colon", "ctrl+p"), ":", "", "any action by name", ASK),
     Action("pin", ("p",), "p", "pin", "pin this walk: changes are shown against it", COMPARE, 1),
+    Action("pin_from", ("P", "shift+p"), "P", "", "pin another: a case, a stored walk, a moment of this session", COMPARE),
+    Action("compare", ("c",), "c", "compare", "this walk beside the pinned one and others, and where the difference comes from", COMPARE),
     Action("view", ("v",), "v", "change", "cells as figures, as change against the pin, as change in percent", COMPARE),
     Action("why", ("w",), "w", "limits", "limits by margin and what restores them, audit, referee, thrust", COMPARE),
     Action("duct", ("d",), "d", "duct", "the flow along the duct, and the heat at which it leaves each regime", COMPARE),
     Action("referee", ("r",), "r", "referee", "ask an independent equilibrium code about the states", COMPARE),
     Action("units", ("t",), "t", "units", "SI or US customary", COMPARE),
     Action("save", ("s",), "s", "save", "save the case; comments and order of the file stay", FILE, 1),
+    Action("browse", ("b",), "b", "cases", "the cases of this folder with their figures: open, copy, rename, delete, notes", FILE),
     Action("save_as", ("S", "shift+s"), "S", "", "save under another name", FILE),
     Action("redraw", ("ctrl+l",), "Ctrl-L", "", "paint the whole screen afresh", PROGRAM),
     Action("suspend", ("ctrl+z",), "Ctrl-Z", "", "suspend to the shell; fg comes back", PROGRAM),

@@ -19,6 +19,8 @@ Change = dict[str, Any]
 """What a user asked of a case, as plain data: {"set": {key: value}} or {"switch": [group, tag, value]}."""
 
 VIEWS = ("figures", "change against the pin", "change against the pin, %")
+WATCHED_FIRST = ("specific_impulse", "stream_thrust_gain")
+"""Figures watched where the user has chosen none: the first that the case has."""
 SOLVING = "solving ... figures and limits are of the inputs before"
 ASSESSING = "limits are being assessed ... those shown are of the inputs before"
 
@@ -58,7 +60,8 @@ class Entry:
 class Session:
     """Everything the screen shows. generation: number of the case's latest change; solved: the generation that
     `figures` belong to; good: the last walk with a solution; saved: the case as it stands in the file; borders: the heat input at
-    which a duct leaves each regime, None until they are solved for."""
+    which a duct leaves each regime, None until they are solved for; influence: the sensitivities of the walk that `figures` are of,
+    None until they are there; watched: the figure that graphs and sensitivities show, "" for the case's own first choice."""
 
     path: str
     case: Case | None = None
@@ -80,6 +83,8 @@ class Session:
     view: int = 0
     referee: str = ""
     borders: Mapping[str, float] | None = None
+    influence: Any = None
+    watched: str = ""
     note: str = "reading the case ..."
     faults: tuple[str, ...] = ()
 
@@ -128,6 +133,7 @@ def _with_case(session: Session, case: Case, note: str) -> Session:
         entry=None,
         referee="",
         borders=None,
+        influence=None,
         note=note,
         faults=(),
     )
@@ -204,6 +210,12 @@ def columns_of(case: Case | None) -> tuple[str, ...]:
         "9": case.value("nozzle.internal_area_ratio") is not None and case.value("nozzle.freeze") in (None, "freeze_station"),
     }
     return tuple(s for s in STATIONS if int(first) <= int(s) <= int(last) and there.get(s, True))
+
+
+def watched(session: Session) -> str:
+    """Key of the figure that graphs and sensitivities show."""
+    keys = performance_keys(session)
+    return session.watched if session.watched in keys else next((k for k in WATCHED_FIRST if k in keys), keys[0])
 
 
 def performance_keys(session: Session) -> tuple[str, ...]:

@@ -18,9 +18,15 @@ from tui.actions import ACTIONS
 from tui.engine import Result
 from tui.line import Line
 from tui.screens import ducting, telling
+from tui.screens.asking import Asking
+from tui.screens.browsing import Browsing
 from tui.screens.editing import Editing
 from tui.screens.filing import Filing
 from tui.screens.page import Page
+from tui.screens.peeking import Peeking
+from tui.screens.pinning import Pinning
+from tui.screens.plotting import Plotting
+from tui.screens.ranking import Ranking
 from tui.session import VIEWS, Session
 from tui.views import headline, inputs, side, table
 from tui.widgets.panel import Panel
@@ -32,7 +38,7 @@ HEIGHTS: list[tuple[int, str]] | None = [(0, "-tiny"), (12, "-short"), (24, "-pl
 """Columns and lines from which the screen has a class of its style sheet."""
 
 
-class MainScreen(Editing, Filing, inherit_bindings=False):
+class MainScreen(Editing, Filing, Peeking, Plotting, Ranking, Asking, Pinning, Browsing, inherit_bindings=False):
     """Renders the session and sends every action to its handler `do_<name>`."""
 
     BINDINGS: ClassVar[list[BindingType]] = [
