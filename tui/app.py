@@ -5,10 +5,12 @@ from __future__ import annotations
 import os
 import sys
 import termios
+from collections import deque
 from collections.abc import Iterator
 from contextlib import contextmanager
 from typing import Any, ClassVar
 
+from textual import events
 from textual.app import App
 from textual.binding import BindingType
 from textual.message import Message
@@ -16,7 +18,8 @@ from textual.message import Message
 from tui import leaving
 from tui.engine import Engine, Result
 from tui.journal import Journal
-from tui.screens.main import MainScreen
+from tui.screens.main import ACTION_OF, EVERYWHERE, MainScreen
+from tui.screens.overlay import Overlay
 
 
 def terminal_settings() -> list[Any] | None:
@@ -60,6 +63,7 @@ class DuctwalkApp(App[None], inherit_bindings=False):
         self.path = path
         self.defect: Exception | None = None
         self._attributes = attributes
+        self._keys: deque[events.Key] = deque()
         self.main: MainScreen | None = None
         self.engine = Engine(lambda result: self.post_message(self.Came(result)))
         self.journal = Journal(path)
@@ -68,6 +72,21 @@ class DuctwalkApp(App[None], inherit_bindings=False):
         """The main screen is the first one painted."""
         self.main = MainScreen(self.path, self.engine, self.journal)
         return self.main
+
+    async def on_event(self, event: events.Event) -> None:
+        """Keep the order of what is typed: keys that come in one piece may open a screen and be meant for it."""
+        if isinstance(event, events.Key) and isinstance(self.screen, MainScreen | Overlay):
+            self._keys.append(event)
+            self.type_on()
+        else:
+            await super().on_event(event)
+
+    def type_on(self) -> None:
+        """Hand the keys typed to the screen that stands, one by one; one that is not painted yet holds them back."""
+        while self._keys and isinstance(self.screen, MainScreen | Overlay) and self.screen.ready:
+            event = self._keys.popleft()
+            main = self.main if ACTION_OF.get(event.key) in EVERYWHERE else None
+            (main or self.screen).typed(event)
 
     def on_mount(self) -> None:
         """Guard against ends nobody asked for."""
@@ -95,6 +114,8 @@ def run(path: str | None) -> int:
     user, 129 hang-up, 143 terminated. Errors: a defect of the program is raised after the terminal is set back; the
     journal has the work.
     """
+    for name in ("COLUMNS", "LINES"):  # exported ones would hold against every resize of the terminal
+        os.environ.pop(name, None)
     app = DuctwalkApp(path or "", terminal_settings())
     with drawn_on_the_terminal():
         app.run(mouse="SSH_CONNECTION" not in os.environ)

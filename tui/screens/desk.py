@@ -2,11 +2,12 @@
 
 from __future__ import annotations
 
+import asyncio
+from collections.abc import Callable
 from dataclasses import replace
 from time import monotonic
 
 from textual.screen import Screen
-from textual.timer import Timer
 
 from cycle.errors import CaseError
 from tui import figures, items, session
@@ -45,8 +46,8 @@ class Desk(Screen[None], inherit_bindings=False):
         self.journal = journal
         self._rapid = False
         self._painted = 0.0
-        self._later: Timer | None = None
-        self._slow: Timer | None = None
+        self._later: asyncio.TimerHandle | None = None
+        self._slow: asyncio.TimerHandle | None = None
 
     def paint(self) -> None:
         """Paint the session. The main screen says how."""
@@ -60,14 +61,23 @@ class Desk(Screen[None], inherit_bindings=False):
     def paint_now(self) -> None:
         """Paint, and forget a paint that waits."""
         if self._later is not None:
-            self._later.stop()
+            self._later.cancel()
             self._later = None
         self._painted = monotonic()
         self.paint()
 
+    def after(self, seconds: float, what: Callable[[], None]) -> asyncio.TimerHandle:
+        """Call `what` after some time. The library's own timers skip a call that comes late, as one does on a stalled link."""
+        return asyncio.get_running_loop().call_later(seconds, self.call_later, what)
+
     def _paint_within(self, seconds: float) -> None:
         if self._later is None:
-            self._later = self.set_timer(seconds, self.paint_now)
+            self._later = self.after(seconds, self._due)
+
+    def _due(self) -> None:
+        """Paint, where no other paint came first."""
+        if self._later is not None:
+            self.paint_now()
 
     def change(self, change: Change, rapid: bool = False) -> bool:
         """Make an edit: a new session, a record in the journal, a solve. A refused edit puts its faults into the open
@@ -115,8 +125,8 @@ class Desk(Screen[None], inherit_bindings=False):
             return
         self.engine.newest("solve", self.session.generation, lambda: figures.solve(case))
         if self._slow is not None:
-            self._slow.stop()
-        self._slow = self.set_timer(SLOW, self._announce)
+            self._slow.cancel()
+        self._slow = self.after(SLOW, self._announce)
 
     def _announce(self) -> None:
         found = self.session.figures
@@ -134,7 +144,7 @@ class Desk(Screen[None], inherit_bindings=False):
         if not found.assessed:
             self.engine.newest("assess", generation, lambda: figures.assess(found))
         elif self._slow is not None:
-            self._slow.stop()
+            self._slow.cancel()
         wait = self._painted + PAINT_EVERY - monotonic()
         if self._rapid and wait > 0.0:
             self._paint_within(wait)

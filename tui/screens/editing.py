@@ -211,12 +211,8 @@ class Editing(Desk, inherit_bindings=False):
         station = items.home(self.session, key)
         self.put(replace(self.session, station=station, inputs={**self.session.inputs, station: key}))
 
-    def on_key(self, event: events.Key) -> None:
+    def typed_in_field(self, entry: Entry, event: events.Key) -> None:
         """While a field is open, keys belong to it."""
-        entry = self.session.entry
-        if entry is None or event.key in ("ctrl+z", "ctrl+l"):
-            return
-        event.stop()
         if event.key in ("escape", "ctrl+c"):
             self.put(replace(self.session, entry=None, note=""))
         elif event.key == "enter":

@@ -15,7 +15,7 @@ from tui import items, journal, session
 from tui.engine import Result
 from tui.journal import Left, Record
 from tui.line import OVER, PLAIN, Line, clean, line
-from tui.screens.desk import Desk
+from tui.screens.desk import Desk, fault_words
 from tui.screens.page import Answer, Page, text_body
 from tui.screens.prompt import Prompt
 from tui.session import Session
@@ -201,7 +201,7 @@ class Filing(Desk, inherit_bindings=False):
             return
         if isinstance(result.error, CaseError):
             self._leaving = False
-            self.put(replace(self.session, note="not saved", faults=tuple(str(result.error).splitlines())))
+            self.put(replace(self.session, note="not saved", faults=tuple(f"not saved: {words}" for words in fault_words(result.error))))
             return
         got: Saved = result.value
         note = f"saved {clean(got.path)}"

@@ -9,7 +9,7 @@ from typing import ClassVar
 
 from textual import events
 from textual.app import ComposeResult
-from textual.binding import Binding, BindingType
+from textual.binding import BindingType
 from textual.containers import Horizontal
 
 from cycle.errors import CaseError, FileChanged
@@ -33,6 +33,10 @@ from tui.widgets.panel import Panel
 
 NEEDS_NO_CASE = ("leave", "interrupt", "help", "suspend", "redraw", "units")
 
+ACTION_OF = {key: a.name for a in ACTIONS for key in a.keys}
+EVERYWHERE = ("suspend", "redraw")
+"""Actions whose keys work in a field and over every screen."""
+
 WIDTHS: list[tuple[int, str]] | None = [(0, "-narrow"), (112, "-wide")]
 HEIGHTS: list[tuple[int, str]] | None = [(0, "-tiny"), (12, "-short"), (24, "-plain"), (34, "-tall")]
 """Columns and lines from which the screen has a class of its style sheet."""
@@ -41,9 +45,8 @@ HEIGHTS: list[tuple[int, str]] | None = [(0, "-tiny"), (12, "-short"), (24, "-pl
 class MainScreen(Editing, Filing, Peeking, Plotting, Ranking, Asking, Pinning, Browsing, inherit_bindings=False):
     """Renders the session and sends every action to its handler `do_<name>`."""
 
-    BINDINGS: ClassVar[list[BindingType]] = [
-        Binding(",".join(a.keys), f"do('{a.name}')", a.help, show=bool(a.label), id=a.name) for a in ACTIONS
-    ]
+    BINDINGS: ClassVar[list[BindingType]] = []
+    ready = True
     HORIZONTAL_BREAKPOINTS = WIDTHS
     VERTICAL_BREAKPOINTS = HEIGHTS
     SCOPED_CSS = False
@@ -111,9 +114,17 @@ class MainScreen(Editing, Filing, Peeking, Plotting, Ranking, Asking, Pinning, B
         if result.generation == self.session.generation:
             self.put(replace(self.session, referee=result.value, note=result.value))
 
+    def typed(self, event: events.Key) -> None:
+        """Take a key: into the field where one is open, else the action it stands for."""
+        name = ACTION_OF.get(event.key, "")
+        if name in EVERYWHERE or self.session.entry is None:
+            self.action_do(name)
+        else:
+            self.typed_in_field(self.session.entry, event)
+
     def action_do(self, name: str) -> None:
         """Run an action of `tui.actions`."""
-        if self.session.case is not None or name in NEEDS_NO_CASE:
+        if name and (self.session.case is not None or name in NEEDS_NO_CASE):
             self.session = replace(self.session, note="", faults=()) if self.session.case is not None else self.session
             handler: Callable[[], None] = getattr(self, f"do_{name}")
             handler()

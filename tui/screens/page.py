@@ -8,9 +8,9 @@ from dataclasses import dataclass
 from textual import events
 from textual.app import ComposeResult
 from textual.geometry import Size
-from textual.screen import Screen
 
 from tui.line import BOLD, CURSOR, DIM, PLAIN, Line, clean, fit, line
+from tui.screens.overlay import Overlay
 from tui.widgets.sheet import Sheet
 
 Body = Callable[[int], list[Line]]
@@ -36,7 +36,7 @@ MOVES: dict[str, Callable[[int, int, int], int]] = {
 }
 
 
-class Page(Screen[str]):
+class Page(Overlay[str]):
     """Shows a text and, where there are answers, asks for one. Gives the answer's name, "" where it was left.
 
     Parameters: title; body, the text, which scrolls; answers; head, lines above the text that stay.
@@ -83,27 +83,24 @@ class Page(Screen[str]):
     def _choices(self, wide: int) -> list[Line]:
         return [line((fit(f" {a.key}  {clean(a.words)}", wide), CURSOR if i == self._at else PLAIN)) for i, a in enumerate(self._answers)]
 
-    def on_key(self, event: events.Key) -> None:
+    def typed(self, event: events.Key) -> None:
         """Move, answer or leave."""
-        if event.key in ("ctrl+z", "ctrl+l"):
-            return
-        event.stop()
         if event.key in MOVES:
             last = len(self._answers) - 1 if self._answers else len(self._body(self.size.width))
             self._at = max(0, min(MOVES[event.key](self._at, max(1, self._room - 1), last), max(last, 0)))
             self._paint(self.app.size)
         elif event.key in ("escape", "q", "ctrl+q"):
-            self.dismiss("")
+            self.leave("")
         elif self._answers:
             self._answer(event)
 
     def _answer(self, event: events.Key) -> None:
         if event.key == "enter":
-            self.dismiss(self._answers[self._at].name)
+            self.leave(self._answers[self._at].name)
             return
         name = next((a.name for a in self._answers if a.key == event.character), None)
         if name is not None:
-            self.dismiss(name)
+            self.leave(name)
 
 
 def text_body(paragraphs: list[str]) -> Body:

@@ -5,15 +5,15 @@ from __future__ import annotations
 from textual import events
 from textual.app import ComposeResult
 from textual.geometry import Size
-from textual.screen import Screen
 
 from tui import keying
 from tui.line import BOLD, CURSOR, DIM, clean, fit, line
+from tui.screens.overlay import Overlay
 from tui.session import Entry
 from tui.widgets.sheet import Sheet
 
 
-class Prompt(Screen[str]):
+class Prompt(Overlay[str]):
     """Asks for one line. Gives the text, "" where it was left.
 
     Parameters: question; text, what stands in the field at first.
@@ -54,16 +54,13 @@ class Prompt(Screen[str]):
             size,
         )
 
-    def on_key(self, event: events.Key) -> None:
+    def typed(self, event: events.Key) -> None:
         """Type, take or leave."""
-        if event.key in ("ctrl+z", "ctrl+l"):
-            return
-        event.stop()
         if event.key == "escape":
-            self.dismiss("")
+            self.leave("")
         elif event.key == "enter":
             if self._entry.text.strip():
-                self.dismiss(self._entry.text.strip())
+                self.leave(self._entry.text.strip())
         else:
             self._entry = keying.press(self._entry, event.key, event.character)
             self._paint(self.app.size)

@@ -8,10 +8,10 @@ from dataclasses import dataclass, replace
 from textual import events
 from textual.app import ComposeResult
 from textual.geometry import Size
-from textual.screen import Screen
 
 from tui import keying
 from tui.line import BOLD, CURSOR, DIM, Line, clean, fit, line, width
+from tui.screens.overlay import Overlay
 from tui.screens.page import MOVES
 from tui.session import Entry
 from tui.widgets.sheet import Sheet
@@ -49,7 +49,7 @@ def marked(content: Line, wide: int) -> Line:
     return line((text + " " * (wide - width(text)), CURSOR))
 
 
-class Roster(Screen[tuple[str, str]]):
+class Roster(Overlay[tuple[str, str]]):
     """Shows rows and asks for one. Gives (key of the verb, name of the row); ("", "") where it was left.
 
     Parameters: title; rows; verbs, the first one is that of Enter where its key is "enter"; head, lines above the rows; told, lines below
@@ -137,16 +137,13 @@ class Roster(Screen[tuple[str, str]]):
         parts = [f"{v.shown} {v.words}" for v in self._verbs]
         return "  ".join([*parts, "Esc back"])
 
-    def on_key(self, event: events.Key) -> None:
+    def typed(self, event: events.Key) -> None:
         """Move, do, narrow down or leave."""
-        if event.key in ("ctrl+z", "ctrl+l"):
-            return
-        event.stop()
         verb = next((v for v in self._verbs if v.key == event.key or (v.key == event.character and not self._typing)), None)
         if event.key in MOVES and not (self._typing and event.key in ("home", "end")):
             self._move(event.key)
         elif event.key in ("escape", "ctrl+q", "ctrl+c") or (event.key == "q" and not self._typing):
-            self.dismiss(("", ""))
+            self.leave(("", ""))
         elif verb is not None:
             self._do(verb)
         elif self._typing:
@@ -167,7 +164,7 @@ class Roster(Screen[tuple[str, str]]):
             self._act(verb.key, self._name)
             self.paint()
         else:
-            self.dismiss((verb.key, self._name))
+            self.leave((verb.key, self._name))
 
     def on_paste(self, event: events.Paste) -> None:
         """Pasted text narrows the rows down where letters do."""
