@@ -7,6 +7,7 @@ from __future__ import annotations
 
 import math
 from dataclasses import dataclass
+from itertools import pairwise
 from typing import Literal
 
 Role = Literal["now", "pin", "plain"]
@@ -115,7 +116,7 @@ class Grid:
 
     def __post_init__(self) -> None:
         for name, places in (("x", self.x), ("y", self.y)):
-            if not all(map(math.isfinite, places)) or any(b <= a for a, b in zip(places, places[1:], strict=False)):
+            if not all(map(math.isfinite, places)) or any(b <= a for a, b in pairwise(places)):
                 raise ValueError(f"grid: {name} is not finite and rising")
         for name, rows in (("z", self.z), ("status", self.status)):
             if (rows or name == "z") and (len(rows) != len(self.y) or any(len(row) != len(self.x) for row in rows)):
