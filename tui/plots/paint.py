@@ -28,8 +28,13 @@ _RAMP: tuple[Rgb, ...] = ((26, 32, 78), (38, 86, 142), (62, 146, 152), (146, 190
 
 _SERIES_NAMES: tuple[str, ...] = ("cyan", "magenta", "green", "yellow", "blue", "red")
 _BAND_NAMES = ("blue", "bright_blue", "cyan", "bright_cyan", "green", "bright_green", "yellow", "bright_yellow", "white", "bright_white")
+_BAND_CODES = (17, 24, 31, 37, 72, 108, 150, 186, 222, 229)
+"""The ramp in a 256-colour terminal, of rising lightness; the nearest colours of its cube would make neighbours one."""
+
+_BLACK_FROM = 37
+"""The first of these codes on which black reads better than white."""
+
 _CUBE = (0, 95, 135, 175, 215, 255)
-_INKS = {"#000000": "color(16)", "#ffffff": "color(231)"}
 _DARK = 120.0
 
 
@@ -76,14 +81,14 @@ class Paint:
     unsolved: Style
 
     def bands(self, count: int) -> tuple[tuple[str, str], ...]:
-        """Ground and ink of the bands of a map, () without colour."""
+        """Ground and ink of at most 10 bands of a map, () without colour."""
         if self.depth == "none":
             return ()
+        at = [round(n * 9 / max(1, count - 1)) for n in range(count)]
         if self.depth == "16":
-            chosen = [_BAND_NAMES[round(n * (len(_BAND_NAMES) - 1) / max(1, count - 1))] for n in range(count)]
-            return tuple((name, "bright_white" if name == "blue" else "black") for name in chosen)
+            return tuple((_BAND_NAMES[n], "black" if n else "bright_white") for n in at)
         if self.depth == "256":
-            return tuple((_cube(rgb), _INKS[ink(rgb)]) for rgb in ramp(count))
+            return tuple((f"color({_BAND_CODES[n]})", "color(16)" if _BAND_CODES[n] >= _BLACK_FROM else "color(231)") for n in at)
         return tuple((hexadecimal(rgb), ink(rgb)) for rgb in ramp(count))
 
 

@@ -23,7 +23,7 @@ _LETTER = 0.56
 _LEADING = 1.35
 _SMALL = 11.0
 _LEAST_WIDTH, _LEAST_HEIGHT = 520, 320
-_TICKS_APART = 90.0, 45.0
+_TICKS_APART = 60.0, 45.0
 
 
 @dataclass(frozen=True, slots=True)

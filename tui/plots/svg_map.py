@@ -14,6 +14,9 @@ from tui.plots.reading import marks_of, unsolved_entries
 from tui.plots.svg_parts import INK, SIZE, Field, Key, group, number, words
 
 _COLUMNS, _ROWS = 120, 90
+_LAP = 0.7
+"""How far a row of bands reaches under the next one, so that rounding leaves no gap."""
+
 _MOST_MARKS = 30
 """Marks of points without a solution along one side of the field; a finer grid shows some of them."""
 
@@ -56,7 +59,8 @@ def draw_map(root: ET.Element, grid: Grid, field: Field) -> None:
         for band, cells in groupby(row):
             size = len(list(cells))
             if isinstance(band, int):
-                _box(own, field.left + start * wide, field.top + r * high, size * wide, high, hexadecimal(colours[band]))
+                tall = high if r == _ROWS - 1 else high + _LAP
+                _box(own, field.left + start * wide, field.top + r * high, size * wide, tall, hexadecimal(colours[band]))
             start += size
     text = group(root, "digits")
     for band, places in edges(bands).items():

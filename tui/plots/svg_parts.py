@@ -10,7 +10,7 @@ from tui.plots.scale import Scale
 
 INK = "#222222"
 SIZE = 13.0
-_FACE = "Helvetica, Arial, sans-serif"
+_FACE = "Helvetica, Arial, DejaVu Sans, sans-serif"
 
 Sample = Callable[[ET.Element, float, float], None]
 """Draws the sample of a legend line: parent, left end, middle line."""
