@@ -26,6 +26,7 @@ def exact(text: str, power: int) -> Decimal:
 @example([1.0, 1.0 + 2e-16], 5, False)
 @example([101325.0, 101325.4], 6, False)
 @example([-LARGEST, LARGEST], 9, True)
+@example([LEAST, LEAST * (1.0 + 1e-8)], 9, True)
 def test_even_ticks_are_round_and_their_labels_are_the_ticks(values: list[float], most: int, tight: bool) -> None:
     scale = scale_of(Axis("x"), values, most, tight)
     labels = [exact(t.text, scale.power) for t in scale.ticks]

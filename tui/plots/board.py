@@ -83,7 +83,7 @@ def lay(board: Board, columns: int, lines: int, glyphs: Glyphs) -> list[Line] | 
     below = 0 if side else max(0, min(spare, len(_flowing(keys, columns))))
     notes = [n for words in board.notes for n in wrap(words.split(), columns)][: max(0, spare - below)]
     rows -= below + len(notes)
-    y = board.y_scale(max(2, rows // 3 + 1))
+    y = board.y_scale(max(4, rows // 3 + 1))
     gutter = max(width(t.text) for t in y.ticks)
     margin = max((1 + width(f.text) for f in board.flags if f.across == "y"), default=0)
     wide = columns - gutter - 1 - margin - (side + 1 if side else 0)
@@ -215,16 +215,26 @@ def _flowing(keys: list[Key], columns: int) -> list[list[Key]]:
 
 
 def _cut(keys: list[Key], columns: int, most: int) -> list[Line]:
-    """The legend below the field in exactly `most` lines; what finds no room is counted."""
-    out: list[Line] = []
-    for n, row in enumerate(rows := _flowing(keys, columns)):
-        left = sum(map(len, rows[n:]))
-        if n == most - 1 and n < len(rows) - 1:
-            out.append(line((fit(f"legend: {left} more in a larger window", columns), DIM)))
-            break
-        if n < most:
-            out.append(_row_of(row, columns))
-    return [*out, *[()] * (most - len(out))]
+    """The legend below the field in exactly `most` lines; what finds no room is counted at its end."""
+    rows = _flowing(keys, columns)
+    if len(rows) <= most:
+        return [*(_row_of(row, columns) for row in rows), *[()] * (most - len(rows))]
+    if not most:
+        return []
+    last, left = list(rows[most - 1]), sum(map(len, rows[most:]))
+    while last and _size(last) + _GAP + width(_more(left)) > columns:
+        last.pop()
+        left += 1
+    end = line((" " * (_GAP if last else 0) + fit(_more(left), columns), DIM))
+    return [*(_row_of(row, columns) for row in rows[: most - 1]), (*_row_of(last, columns), *end)]
+
+
+def _more(number: int) -> str:
+    return f"{number} more with more room"
+
+
+def _size(keys: list[Key]) -> int:
+    return sum(key.indent + width(key.words) for key in keys) + _GAP * (len(keys) - 1)
 
 
 def _row_of(keys: list[Key], columns: int) -> Line:
@@ -242,7 +252,7 @@ def _standing(keys: list[Key], columns: int, most: int) -> list[Line]:
     for n, key in enumerate(keys):
         words = wrap(key.words.split(), columns - key.indent)
         if len(out) + len(words) + (n < len(keys) - 1) > most:
-            return [*out, line((fit(f"{len(keys) - n} more", columns), DIM))][:most]
+            return [*out, line((fit(_more(len(keys) - n), columns), DIM))][:most]
         out.append((*key.sample, (" " * (key.indent > 0) + words[0], PLAIN)) if words else key.sample)
         out += [line(" " * key.indent + more) for more in words[1:]]
     return out

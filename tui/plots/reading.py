@@ -137,8 +137,14 @@ def _grid_refusal(grid: Grid) -> str:
     values = [z for z in values if z == z]
     if not values:
         return _none_solved(statuses)
-    axes = ((grid.x_axis, list(grid.x)), (grid.y_axis, list(grid.y)), (grid.z_axis, values))
-    return next((words for axis, known in axes if (words := _log_refusal(axis, known))), "")
+    axes = ((grid.x_axis, grid.x), (grid.y_axis, grid.y), (grid.z_axis, values))
+    for axis, places in axes:
+        known = [v for v in map(drawable, places) if v == v]
+        if len(known) < len(places):
+            return f"{axis.label} reaches beyond what can be drawn"
+        if words := _log_refusal(axis, known):
+            return words
+    return ""
 
 
 def _none_solved(statuses: list[str]) -> str:

@@ -13,7 +13,7 @@ from decimal import Decimal
 
 from tui.plots.chart import Axis
 
-LARGEST, LEAST = 1e300, 1e-300
+LARGEST, LEAST = 1e300, 1e-290
 """Magnitudes beyond which a value is drawn as a gap, and below which as zero."""
 
 _SAME = 1e-9
@@ -73,7 +73,7 @@ class Scale:
 
 
 def drawable(value: float) -> float:
-    """A value as it can be drawn: nan where it is not finite or beyond 1e300, 0 below 1e-300."""
+    """A value as it can be drawn: nan where it is not finite or beyond 1e300, 0 below 1e-290."""
     size = abs(value)
     if not size <= LARGEST:
         return math.nan
@@ -89,11 +89,12 @@ def heading(axis: Axis, power: int = 0) -> str:
 def scale_of(axis: Axis, values: Iterable[float], most: int, tight: bool = False) -> Scale:
     """The scale of an axis that contains all values.
 
-    Parameters: axis; values, at least one, drawable, above zero for a log axis; most, ticks that have room (3 are always
+    Parameters: axis; values, at least one that can be drawn, above zero for a log axis; most, ticks that have room (3 are always
     allowed where 2 do not do); tight, whether the axis ends at the data (a map) and not at round numbers.
     Returns: a `Scale` of at least two ticks, all of them between its ends.
     """
-    known = [*values, *(v for v in map(drawable, axis.include) if v > 0.0 or (v == v and not axis.log))]
+    known = [v for v in map(drawable, values) if v == v]
+    known += [v for v in map(drawable, axis.include) if v > 0.0 or (v == v and not axis.log)]
     low, high = min(known), max(known)
     return (_log if axis.log else _linear)(low, high, max(2, most), tight)
 
