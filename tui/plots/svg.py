@@ -5,7 +5,7 @@ from __future__ import annotations
 import xml.etree.ElementTree as ET
 from dataclasses import dataclass
 
-from tui.line import wrap
+from tui.line import fit, wrap
 from tui.plots.chart import Chart, Grid
 from tui.plots.drawing import Picture, ranges, spoken, told
 from tui.plots.levels import levels_of
@@ -63,7 +63,8 @@ def svg(picture: Picture, width: int = 900, height: int = 560, caution: str = CA
     ET.SubElement(root, "desc").text = why or "; ".join(ranges(picture))
     ET.SubElement(root, "rect", {"width": str(width), "height": str(height), "fill": "#ffffff"})
     text = group(root, "title", {"font-weight": "bold"})
-    words(text, 20.0, 30.0, _set(picture.title, width - 40.0, SIZE + 3.0).lines[0] if picture.title.strip() else "", SIZE + 3.0)
+    size = SIZE + 3.0
+    words(text, 20.0, 30.0, fit(picture.title, int((width - 40.0) / (_LETTER * size))), size)
     if scales is None:
         _paragraph(group(root, "refusal"), _set(why, width - 40.0, SIZE), 20.0, _TOP)
     else:
