@@ -16,6 +16,7 @@ from cycle.record import heat_limit_words
 from cycle.units import format_number, si_unit
 
 if TYPE_CHECKING:
+    from cycle.figures import Process
     from cycle.result import Walk
 
 CONSTANTS: dict[str, tuple[float, str, str]] = {
@@ -54,12 +55,15 @@ class UnknownQuantityError(DuctwalkError):
 
 @dataclass(frozen=True, slots=True)
 class Term:
-    """One symbol of an equation with its number. value in SI, `unit` as text ("" for a ratio)."""
+    """One symbol of an equation with its number. value in SI, `unit` as text ("" for a ratio); key: of the figure or input that it is,
+    "" for a constant; where: the place of that figure, as in `Number`."""
 
     symbol: str
     label: str
     value: float
     unit: str
+    key: str = ""
+    where: str = ""
 
 
 @dataclass(frozen=True, slots=True)
@@ -185,20 +189,19 @@ def _of_processes(entry: Output, walk: Walk) -> Iterable[Number]:
             declared, value = glossary.process_figure(key), float(given)
             if declared is None or declared.key != entry.key:
                 continue
-            number = key.rpartition("_")[2]
-            where = f"{process.name} {process.start} to {process.end}" + (f", {number}" if number.isdigit() else "")
+            where = _place(process, key.rpartition("_")[2])
             if math.isfinite(value):
-                yield _with_terms(entry, where, value, _figure_terms(entry, process.figures))
+                yield _with_terms(entry, where, value, _figure_terms(entry, where, process.figures))
             else:
                 yield Number(where, math.nan, glossary.no_value(key), "", ())
 
 
-def _figure_terms(entry: Output, figures: Mapping[str, Any]) -> Iterable[Term]:
+def _figure_terms(entry: Output, where: str, figures: Mapping[str, Any]) -> Iterable[Term]:
     """Figures of the same process that enter the equation."""
     for symbol in formula.symbols(entry.equation):
         declared = glossary.process_figure(symbol)
         if declared is not None and symbol in figures:
-            yield Term(symbol, declared.label, float(figures[symbol]), si_unit(declared.unit))
+            yield Term(symbol, declared.label, float(figures[symbol]), si_unit(declared.unit), declared.key, where)
 
 
 def _of_limits(entry: Output, walk: Walk) -> Iterable[Number]:
@@ -208,9 +211,69 @@ def _of_limits(entry: Output, walk: Walk) -> Iterable[Number]:
         if math.isnan(limit.margin):
             yield Number("", math.nan, limit.restore, "", ())
         else:
-            sides = (("actual", limit.label, limit.actual), ("allowed", "at most" if limit.upper else "at least", limit.allowed))
-            terms = (Term(symbol, label, float(value), si_unit(limit.unit)) for symbol, label, value in sides)
+            actual, allowed = (f(walk) for f in _SIDES.get(limit.key, (_nowhere, _nowhere)))
+            sides = (
+                ("actual", limit.label, limit.actual, actual),
+                ("allowed", "at most" if limit.upper else "at least", limit.allowed, allowed),
+            )
+            terms = (Term(symbol, label, float(value), si_unit(limit.unit), *place) for symbol, label, value, place in sides)
             yield _with_terms(entry, "", float(limit.margin), terms)
+
+
+_Side = Callable[["Walk"], tuple[str, str]]
+"""Walk -> key and place of the figure or input that a side of a limit is, both "" where it has none."""
+
+
+def _nowhere(walk: Walk) -> tuple[str, str]:
+    return "", ""
+
+
+def _side(key: str, where: str = "") -> _Side:
+    return lambda walk: (key, where)
+
+
+def _of_process(name: str, key: str) -> _Side:
+    def found(walk: Walk) -> tuple[str, str]:
+        return next(((f"process.{key}", _place(p)) for p in walk.processes if p.name == name and key in p.figures), ("", ""))
+
+    return found
+
+
+def _extreme(best: Callable[..., str]) -> _Side:
+    """The station that is hottest or coldest."""
+
+    def found(walk: Walk) -> tuple[str, str]:
+        known = {s: float(at.temperature) for s, at in walk.station.items() if math.isfinite(float(at.temperature))}
+        return ("temperature", f"station {best(known, key=lambda s: known[s])}") if known else ("", "")
+
+    return found
+
+
+def _heat(walk: Walk) -> tuple[str, str]:
+    return f"combustor.{walk.case.choices['combustor.heat']}", ""
+
+
+_SIDES: dict[str, tuple[_Side, _Side]] = {
+    "corridor_low": (_side("dynamic_pressure", "station 0"), _side("limits.dynamic_pressure_low")),
+    "corridor_high": (_side("dynamic_pressure", "station 0"), _side("limits.dynamic_pressure_high")),
+    "ignition_temperature": (_side("temperature", "station 3"), _side("limits.ignition_temperature")),
+    "ignition_pressure": (_side("pressure", "station 3"), _side("limits.ignition_pressure")),
+    "thermal_choking": (_heat, _nowhere),
+    "gas_temperature": (_extreme(max), _side("limits.gas_temperature")),
+    "model_range": (_extreme(max), _nowhere),
+    "data_high": (_extreme(max), _nowhere),
+    "data_low": (_extreme(min), _nowhere),
+    "nozzle_separation": (_nowhere, _side("limits.nozzle_separation")),
+    "duct_separation": (_of_process("isolator", "separation_margin"), _nowhere),
+    "unstart": (_of_process("isolator", "unstart_margin"), _nowhere),
+    "throat_capacity": (_of_process("isolator", "throat_margin"), _nowhere),
+    "isolator_length": (_of_process("isolator", "isolator_margin"), _nowhere),
+}
+"""Limit -> where its actual and its allowed figure come from."""
+
+
+def _place(process: Process, numbered: str = "") -> str:
+    return f"{process.name} {process.start} to {process.end}" + (f", {numbered}" if numbered.isdigit() else "")
 
 
 def _of_heat(entry: Output, walk: Walk) -> Iterable[Number]:
@@ -272,7 +335,7 @@ def _term(symbol: str, walk: Walk, where: str) -> Term | None:
     own = (_STATION if where else _PERFORMANCE).get(symbol)
     if own is not None:
         source = walk.station[where] if where else walk.performance
-        return Term(symbol, own.label, float(getattr(source, own.key)), si_unit(own.unit))
+        return Term(symbol, own.label, float(getattr(source, own.key)), si_unit(own.unit), own.key, f"station {where}" if where else "")
     return _at_station(symbol, walk) or _input(symbol, walk)
 
 
@@ -286,14 +349,15 @@ def _at_station(symbol: str, walk: Walk) -> Term | None:
         if symbol.endswith(suffix) and output is not None:
             name = places[suffix]
             value = float(getattr(walk.station[name], output.key))
-            return Term(symbol, f"{output.label} at station {name}", value, si_unit(output.unit))
+            place = f"station {name}"
+            return Term(symbol, f"{output.label} at {place}", value, si_unit(output.unit), output.key, place)
     return None
 
 
 def _input(symbol: str, walk: Walk) -> Term | None:
     for entry in INPUTS:
         if entry.symbol == symbol and entry.key in walk.case.numbers:
-            return Term(symbol, entry.label, walk.case.numbers[entry.key], si_unit(entry.unit))
+            return Term(symbol, entry.label, walk.case.numbers[entry.key], si_unit(entry.unit), entry.key)
     return None
 
 

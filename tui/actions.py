@@ -2,7 +2,8 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from collections.abc import Iterable
+from dataclasses import dataclass, replace
 
 
 @dataclass(frozen=True, slots=True)
@@ -11,7 +12,7 @@ class Action:
 
     name: the handler is `do_<name>` of the screen, and the id that a keymap uses; keys: names of keys; shown: the keys
     as printed; label: a word or two for the line of keys, "" to leave it out there; rank: which go first where the line is
-    short; help: one line.
+    short; help: one line; pair: another action whose key stands beside it on the line of keys.
     """
 
     name: str
@@ -21,6 +22,7 @@ class Action:
     help: str
     group: str
     rank: int = 2
+    pair: str = ""
 
 
 WALK, EDIT, ASK, COMPARE, FILE, PROGRAM = "walking", "editing", "asking", "comparing", "case file", "program"
@@ -38,8 +40,10 @@ ACTIONS: tuple[Action, ...] = (
     Action("table", ("escape",), "Esc", "", "back to the table; in a field: leave the value as it was", WALK),
     Action("edit", ("enter",), "Enter", "edit", "open the input in hand; a choice goes on to its next one", EDIT, 1),
     Action("cycle", ("space",), "Space", "", "next choice of the input in hand", EDIT),
-    Action("more", ("plus", "equals_sign"), "+ -", "step", "one step up, by the step declared for the input", EDIT, 1),
+    Action("more", ("plus", "equals_sign"), "+ -", "step", "one step up, by the step declared for the input", EDIT, 1, "less"),
     Action("less", ("minus",), "-", "", "one step down", EDIT),
+    Action("more_ten", ("greater_than_sign",), ">", "", "ten steps up", EDIT),
+    Action("less_ten", ("less_than_sign",), "<", "", "ten steps down", EDIT),
     Action("ways", ("o",), "o", "other way", "say the same by another quantity; the walk keeps its value", EDIT),
     Action("add_row", ("a",), "a", "add row", "one duct section, injector or ramp more, behind the one in hand", EDIT, 3),
     Action("remove_row", ("x",), "x", "", "the duct section, injector or ramp in hand gone", EDIT),
@@ -71,3 +75,46 @@ ACTIONS: tuple[Action, ...] = (
     Action("interrupt", ("ctrl+c",), "Ctrl-C", "", "in a field: leave the value as it was; else says how to leave", PROGRAM),
     Action("leave", ("q", "ctrl+q"), "q", "leave", "leave; unsaved work is kept and offered next time", PROGRAM, 0),
 )  # fmt: skip
+
+NO_KEY = "unbound"
+"""Name that stands for the key of an action that has none; no terminal sends it."""
+
+SPELLED = {
+    "pageup": "PgUp", "pagedown": "PgDn", "delete": "Del", "escape": "Esc", "backspace": "Backspace", "insert": "Ins", "up": "up",
+    "down": "down", "left": "left", "right": "right", "question_mark": "?", "slash": "/", "colon": ":", "plus": "+", "minus": "-",
+    "equals_sign": "=", "greater_than_sign": ">", "less_than_sign": "<",
+}  # fmt: skip
+"""Names of keys -> as printed, where that is not the name with capitals."""
+
+
+def spelled(key: str) -> str:
+    """A key as printed: "ctrl+l" is Ctrl-L. Parameters: key, a name of `Action.keys`. Returns: "none" where there is no key."""
+    if key == NO_KEY:
+        return "none"
+    if len(key) == 1:
+        return key
+    *held, last = key.split("+")
+    word = SPELLED.get(last, last.upper() if len(last) == 1 or last[1:].isdigit() else last.capitalize())
+    return "-".join([*(h.capitalize() for h in held), word])
+
+
+def bound(actions: Iterable[Action], keys: dict[str, tuple[str, ...]]) -> tuple[Action, ...]:
+    """Actions with other keys.
+
+    Parameters: actions, as declared; keys, name of an action -> names of its keys, () for none. Returns: them all, the printed keys
+    following.
+    """
+    actions = tuple(actions)
+    first = {a.name: spelled((keys.get(a.name, a.keys) or (NO_KEY,))[0]) for a in actions}
+    out = []
+    for a in actions:
+        given = keys.get(a.name)
+        moved = given is not None or a.pair in keys
+        shown = f"{first[a.name]} {first[a.pair]}" if a.pair else first[a.name]
+        out.append(replace(a, keys=a.keys if given is None else given or (NO_KEY,), shown=shown) if moved else a)
+    return tuple(out)
+
+
+def key_of(actions: Iterable[Action], name: str) -> str:
+    """The printed key of one action. Parameters: actions; name, of one of them. Errors: KeyError."""
+    return {a.name: spelled(a.keys[0]) for a in actions}[name]

@@ -18,7 +18,7 @@ from textual.message import Message
 from tui import leaving
 from tui.engine import Engine, Result
 from tui.journal import Journal
-from tui.screens.main import ACTION_OF, EVERYWHERE, MainScreen
+from tui.screens.main import MainScreen
 from tui.screens.overlay import Overlay
 
 
@@ -85,8 +85,8 @@ class DuctwalkApp(App[None], inherit_bindings=False):
         """Hand the keys typed to the screen that stands, one by one; one that is not painted yet holds them back."""
         while self._keys and isinstance(self.screen, MainScreen | Overlay) and self.screen.ready:
             event = self._keys.popleft()
-            main = self.main if ACTION_OF.get(event.key) in EVERYWHERE else None
-            (main or self.screen).typed(event)
+            taker = self.main if self.main is not None and self.main.everywhere(event) else self.screen
+            taker.typed(event)
 
     def on_mount(self) -> None:
         """Guard against ends nobody asked for."""

@@ -95,6 +95,10 @@ def _schema_options(parser: argparse.ArgumentParser) -> None:
     """`schema` has no options."""
 
 
+def _keys_options(parser: argparse.ArgumentParser) -> None:
+    """`keys` has no options."""
+
+
 def _explain_options(parser: argparse.ArgumentParser) -> None:
     parser.add_argument("quantity", metavar="QUANTITY", help="long name, symbol or label of an output or input")
     parser.add_argument("case", nargs="?", metavar="CASE", help="case whose numbers go into the equation")
@@ -173,6 +177,13 @@ def _schema(options: argparse.Namespace) -> int:
     return 0
 
 
+def _keys(options: argparse.Namespace) -> int:
+    from tui.keymap import example
+
+    emit(example())
+    return 0
+
+
 def _explain(options: argparse.Namespace) -> int:
     from tui.explaining import run
 
@@ -194,6 +205,7 @@ COMMANDS: dict[str, tuple[str, Options, Callable[[argparse.Namespace], int]]] = 
     "check": ("validate cases without solving them", _check_options, _check),
     "new": ("print a new case with every key explained", _new_options, _new),
     "schema": ("print the JSON Schema of case files", _schema_options, _schema),
+    "keys": ("print the keys of the screen as a keys.toml to start from", _keys_options, _keys),
 }
 """Command -> its line of help, its options, what it does."""
 

@@ -4,12 +4,13 @@ from __future__ import annotations
 
 import argparse
 import math
-from collections.abc import Callable, Iterable
+from collections.abc import Callable
 from typing import TYPE_CHECKING
 
-from cycle.explain import Entry, Number, Term, Word, find, group_of, numbers, see_also
+from cycle.explain import Entry, Number, Term, Word, find, numbers, see_also
 from cycle.quantities import INPUT, MODES, Group, Input, Output
 from cycle.units import format_number, si_unit
+from tui import entries
 from tui.output import emit
 from tui.solve import Outcome, exit_status, outcome
 from tui.tables import Block, Heading, Lines, Table, as_text
@@ -23,12 +24,12 @@ _DIGITS = 6
 
 def run(options: argparse.Namespace) -> int:
     """Explain the quantity of the command line; the exit status is that of the case, 0 without one."""
-    entries = find(options.quantity)
+    named = find(options.quantity)
     found = outcome(options.case, {}) if options.case else None
     if found is not None and found.walk is None:
         return exit_status(found)
-    blocks = [block for entry in entries for block in explanation(entry, found)]
-    more = see_also(entries)
+    blocks = [block for entry in named for block in explanation(entry, found)]
+    more = see_also(named)
     if more:
         blocks.append(Lines((f"See also: {', '.join(more)}.",)))
     emit(as_text(blocks).lstrip("\n"))
@@ -37,109 +38,10 @@ def run(options: argparse.Namespace) -> int:
 
 def explanation(entry: Entry, found: Outcome | None) -> list[Block]:
     """An entry as blocks; with a solved case its numbers in that case."""
-    blocks: list[Block] = [Heading(_title(entry)), Table(("", ""), tuple(_facts(entry)), wrapped=1)]
+    blocks: list[Block] = [Heading(entries.title(entry)), Table(("", ""), tuple(entries.facts(entry)), wrapped=1)]
     if found is not None and found.walk is not None:
         blocks += _NUMBERS[type(entry)](entry, found.name, found.walk)
     return blocks
-
-
-def _title(entry: Entry) -> str:
-    if isinstance(entry, Group):
-        return entry.meaning
-    return f"{entry.label} ({entry.symbol})" if entry.symbol else entry.label
-
-
-def _facts(entry: Entry) -> Iterable[tuple[str, str]]:
-    yield "name", entry.name if isinstance(entry, Group) else entry.key
-    yield from _FACTS[type(entry)](entry)
-
-
-def _output_facts(entry: Output) -> Iterable[tuple[str, str]]:
-    yield "kind", _PLACES[entry.where]
-    yield "meaning", entry.meaning
-    yield "unit", si_unit(entry.unit) or "none, a ratio"
-    yield "equation", f"{_sign(entry)} = {entry.equation}" if entry.equation else "none: the meaning defines it"
-    yield "source", entry.source
-
-
-def _sign(entry: Output) -> str:
-    """What stands for the figure before the equals sign."""
-    return entry.symbol or ("margin" if entry.where == "limit" else entry.label)
-
-
-_PLACES = {
-    "station": "figure of each station",
-    "performance": "figure of the engine",
-    "process": "figure of a process",
-    "profile": "figure along a duct",
-    "limit": "limit of the walk",
-    "heat": "border of the heat of a duct",
-    "potential": "row of where the thrust comes from and goes",
-    "loss": "row of the losses against the ideal engine",
-    "exergy": "row of the exergy balance",
-}
-
-
-def _input_facts(entry: Input) -> Iterable[tuple[str, str]]:
-    yield "kind", "input of a case"
-    yield "meaning", entry.meaning
-    if entry.kind == "number":
-        yield "unit", si_unit(entry.unit) or "none, a ratio"
-        yield "allowed", _bounds(entry)
-    for column in entry.columns:
-        yield f"column {column.key}", f"{column.meaning} {_bounds(column)}; default {_default(column)}"
-    if entry.columns:
-        yield "rows", f"{entry.fewest} to {entry.most}"
-    if entry.choices:
-        yield "choices", ", ".join(entry.choices)
-    yield "default", _default(entry)
-    group = group_of(entry)
-    if group is not None:
-        yield "one of", f"the ways to say {group.meaning} ({group.name}): {_ways(group)}"
-    if entry.when:
-        yield "used with", "; ".join(f"{key} = {' or '.join(values)}" for key, values in entry.when)
-    yield "source", entry.source
-
-
-def _bounds(entry: Input) -> str:
-    sides = (("from", entry.lower), ("above", entry.above), ("to", entry.upper), ("below", entry.below))
-    unit = si_unit(entry.unit)
-    return " ".join(f"{word} {format_number(x)}" for word, x in sides if x is not None) + (f" {unit}" if unit else "")
-
-
-def _default(entry: Input) -> str:
-    if entry.default is not None:
-        unit = si_unit(entry.unit) if entry.kind == "number" else ""
-        return f"{_si_text(entry.default)} {unit}".strip()
-    return "none, it must be given" if entry.required else "none"
-
-
-def _si_text(value: object) -> str:
-    return format_number(value) if isinstance(value, float) else str(value)
-
-
-def _group_facts(entry: Group) -> Iterable[tuple[str, str]]:
-    yield "kind", "group of inputs of which exactly one is given" if entry.required else "group of inputs of which at most one is given"
-    yield "ways", _ways(entry)
-    if entry.default:
-        yield "default", entry.default
-
-
-def _ways(group: Group) -> str:
-    return "; ".join(" and ".join(member.keys) for member in group.members)
-
-
-def _word_facts(entry: Word) -> Iterable[tuple[str, str]]:
-    yield "kind", entry.label
-    yield "meaning", entry.meaning
-
-
-_FACTS: dict[type, Callable[..., Iterable[tuple[str, str]]]] = {
-    Output: _output_facts,
-    Input: _input_facts,
-    Group: _group_facts,
-    Word: _word_facts,
-}
 
 
 def _output_numbers(entry: Output, name: str, walk: Walk) -> list[Block]:
@@ -158,7 +60,7 @@ def _output_numbers(entry: Output, name: str, walk: Walk) -> list[Block]:
 def _number_words(entry: Output, number: Number) -> str:
     """One sentence: the figure, and the equation with numbers where it is arithmetic."""
     where = f"{number.where}: " if number.where else ""
-    symbol = _sign(entry)
+    symbol = entries.sign(entry)
     if math.isnan(number.value):
         return f"{where}no value: {number.reason}"
     value = f"{_value_text(number.value)} {si_unit(entry.unit)}".strip()

@@ -199,16 +199,16 @@ def completed(change: Change, case: Case, beside: Mapping[str, object]) -> Chang
     return {"set": {**rows.cell_changes(case, key, value), **dict(rest), **beside}}
 
 
-def stepped(item: Item, sign: int) -> tuple[float | str | None, str]:
-    """The value one declared step on, held at a bound.
+def stepped(item: Item, steps: int) -> tuple[float | str | None, str]:
+    """The value some declared steps on, held at a bound.
 
-    Parameters: item, a number with a value; sign, +1 or -1. Returns: (new value in SI, or as text in the user's own
+    Parameters: item, a number with a value; steps, how many, negative for down. Returns: (new value in SI, or as text in the user's own
     unit; None at a bound), (words for a bound).
     """
     spec = item.input
     assert spec is not None and isinstance(item.value, int | float)
     old = float(item.value)
-    new = float(f"{old + sign * spec.step:.12g}")
+    new = float(f"{old + steps * spec.step:.12g}")
     words = ""
     if spec.upper is not None and new > spec.upper:
         new, words = spec.upper, "at its upper bound"

@@ -10,6 +10,7 @@ from collections.abc import Mapping
 from dataclasses import dataclass, field, replace
 from typing import TYPE_CHECKING, Any, Literal
 
+from tui.actions import ACTIONS, Action
 from tui.figures import PERFORMANCE_KEYS, STATIONS, Figures, carried
 
 if TYPE_CHECKING:
@@ -61,7 +62,8 @@ class Session:
     """Everything the screen shows. generation: number of the case's latest change; solved: the generation that
     `figures` belong to; good: the last walk with a solution; saved: the case as it stands in the file; borders: the heat input at
     which a duct leaves each regime, None until they are solved for; influence: the sensitivities of the walk that `figures` are of,
-    None until they are there; watched: the figure that graphs and sensitivities show, "" for the case's own first choice."""
+    None until they are there; watched: the figure that graphs and sensitivities show, "" for the case's own first choice;
+    actions: with the keys that hold."""
 
     path: str
     case: Case | None = None
@@ -87,6 +89,7 @@ class Session:
     watched: str = ""
     note: str = "reading the case ..."
     faults: tuple[str, ...] = ()
+    actions: tuple[Action, ...] = ACTIONS
 
     @property
     def failed(self) -> bool:

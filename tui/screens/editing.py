@@ -11,6 +11,7 @@ from textual import events
 from cycle.quantities import GROUP, INPUT
 from cycle.units import format_number, show
 from tui import items, keying, rows, session, starts
+from tui.actions import key_of
 from tui.figures import NAN, PRESENT, Figures
 from tui.items import Item
 from tui.screens.desk import Desk
@@ -22,6 +23,8 @@ if TYPE_CHECKING:
 
 _LETTERS = "123456789abcdefghijklmnop"
 """Keys of the answers to a question with many."""
+BEGINS = "0123456789."
+"""Characters that open the field of the number in hand."""
 _WAYS = (
     "A value in [ ] is that of the present walk: the walk stays where it is. Where more is needed beside it, start values are filled in."
 )
@@ -49,7 +52,7 @@ class Editing(Desk, inherit_bindings=False):
         elif hand.input.kind == "choice":
             self._cycle(hand, 1)
         elif hand.input.kind == "flag":
-            self.put(replace(self.session, note=f"{hand.label}: o says it another way"))
+            self.put(replace(self.session, note=f"{hand.label}: {key_of(self.session.actions, 'ways')} says it another way"))
         else:
             self.put(replace(self.session, entry=items.entry_for(hand, self.session), note="", faults=()))
 
@@ -65,14 +68,22 @@ class Editing(Desk, inherit_bindings=False):
         """One step down."""
         self._step(-1)
 
-    def _step(self, sign: int) -> None:
+    def do_more_ten(self) -> None:
+        """Ten steps up."""
+        self._step(10)
+
+    def do_less_ten(self) -> None:
+        """Ten steps down."""
+        self._step(-10)
+
+    def _step(self, steps: int) -> None:
         hand = self._hand()
         if hand is None or hand.input is None:
             return
         if hand.input.kind == "choice":
-            self._cycle(hand, sign)
+            self._cycle(hand, 1 if steps > 0 else -1)
         elif isinstance(hand.value, int | float) and hand.input.kind == "number":
-            value, words = items.stepped(hand, sign)
+            value, words = items.stepped(hand, steps)
             if value is None or (self._set(hand.key, value, rapid=True) and words):
                 self.put(replace(self.session, note=f"{hand.label}: {words}"))
         else:
@@ -219,6 +230,14 @@ class Editing(Desk, inherit_bindings=False):
             self._commit(entry)
         else:
             self.put(replace(self.session, entry=keying.press(entry, event.key, event.character)))
+
+    def typed_over(self, event: events.Key) -> None:
+        """A digit on a number in hand opens its field and types over."""
+        hand = items.in_hand(self.session)
+        begins = event.character is not None and event.character in BEGINS and self.session.focus == "inputs"
+        if begins and hand is not None and hand.input is not None and hand.input.kind == "number":
+            entry = keying.press(items.entry_for(hand, self.session), event.key, event.character)
+            self.put(replace(self.session, entry=entry, note="", faults=()))
 
     def on_paste(self, event: events.Paste) -> None:
         """Pasted text goes into the open field, and nowhere else."""

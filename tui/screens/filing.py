@@ -6,12 +6,14 @@ import difflib
 import os
 import time
 from dataclasses import dataclass, replace
+from functools import partial
 from typing import TYPE_CHECKING, Any
 
 from rich.text import Text
 
 from cycle.errors import CaseError, FileChanged
 from tui import items, journal, session
+from tui.actions import key_of
 from tui.engine import Result
 from tui.journal import Left, Record
 from tui.line import OVER, PLAIN, Line, clean, line
@@ -120,7 +122,8 @@ class Filing(Desk, inherit_bindings=False):
         """Show the case, or why it cannot be read."""
         if isinstance(result.error, CaseError):
             faults = tuple(str(result.error).splitlines())
-            self.put(replace(self.session, note="Enter reads the file again, q leaves", faults=faults))
+            key = partial(key_of, self.session.actions)
+            self.put(replace(self.session, note=f"{key('edit')} reads the file again, {key('leave')} leaves", faults=faults))
             return
         got: Read = result.value
         self.journal.content = got.content

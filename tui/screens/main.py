@@ -14,7 +14,7 @@ from textual.containers import Horizontal
 
 from cycle.errors import CaseError, FileChanged
 from tui import figures, items, session
-from tui.actions import ACTIONS
+from tui.actions import key_of
 from tui.engine import Result
 from tui.line import Line
 from tui.screens import ducting, telling
@@ -33,9 +33,8 @@ from tui.widgets.panel import Panel
 
 NEEDS_NO_CASE = ("leave", "interrupt", "help", "suspend", "redraw", "units")
 
-ACTION_OF = {key: a.name for a in ACTIONS for key in a.keys}
 EVERYWHERE = ("suspend", "redraw")
-"""Actions whose keys work in a field and over every screen."""
+"""Actions whose keys work in a field and over every screen, where they type nothing."""
 
 WIDTHS: list[tuple[int, str]] | None = [(0, "-narrow"), (112, "-wide")]
 HEIGHTS: list[tuple[int, str]] | None = [(0, "-tiny"), (12, "-short"), (24, "-plain"), (34, "-tall")]
@@ -84,6 +83,7 @@ class MainScreen(Editing, Filing, Peeking, Plotting, Ranking, Asking, Pinning, B
 
     def _start(self) -> None:
         self.engine.start()
+        self.take_keys()
         self.read_case()
 
     def paint(self) -> None:
@@ -104,6 +104,8 @@ class MainScreen(Editing, Filing, Peeking, Plotting, Ranking, Asking, Pinning, B
         if result.error is not None and not isinstance(result.error, EXPECTED.get(result.kind, ())):
             raise result.error
         HANDLERS[result.kind](self, result)
+        if result.kind == "read":
+            self.tell_keys()
 
     def walked(self, result: Result) -> None:
         """A solve or an assessment came back."""
@@ -116,15 +118,21 @@ class MainScreen(Editing, Filing, Peeking, Plotting, Ranking, Asking, Pinning, B
 
     def typed(self, event: events.Key) -> None:
         """Take a key: into the field where one is open, else the action it stands for."""
-        name = ACTION_OF.get(event.key, "")
-        if name in EVERYWHERE or self.session.entry is None:
-            self.action_do(name)
-        else:
+        name = self.asked(event)
+        if self.session.entry is not None and not self.everywhere(event):
             self.typed_in_field(self.session.entry, event)
+        elif name:
+            self.action_do(name)
+        elif self.session.case is not None:
+            self.typed_over(event)
+
+    def everywhere(self, event: events.Key) -> bool:
+        """Whether a key asks for an action that works on every screen."""
+        return self.asked(event) in EVERYWHERE and not event.is_printable
 
     def action_do(self, name: str) -> None:
         """Run an action of `tui.actions`."""
-        if name and (self.session.case is not None or name in NEEDS_NO_CASE):
+        if self.session.case is not None or name in NEEDS_NO_CASE:
             self.session = replace(self.session, note="", faults=()) if self.session.case is not None else self.session
             handler: Callable[[], None] = getattr(self, f"do_{name}")
             handler()
@@ -191,7 +199,7 @@ class MainScreen(Editing, Filing, Peeking, Plotting, Ranking, Asking, Pinning, B
 
     def do_interrupt(self) -> None:
         """Say how to leave."""
-        self.put(replace(self.session, note="q leaves; unsaved work is kept"))
+        self.put(replace(self.session, note=f"{key_of(self.session.actions, 'leave')} leaves; unsaved work is kept"))
 
     def do_pin(self) -> None:
         """Pin the present walk."""
@@ -244,7 +252,7 @@ class MainScreen(Editing, Filing, Peeking, Plotting, Ranking, Asking, Pinning, B
 
     def do_help(self) -> None:
         """The page of keys."""
-        self.app.push_screen(Page("Keys", telling.keys()))
+        self.app.push_screen(Page("Keys", telling.keys(self.session)))
 
     def do_redraw(self) -> None:
         """Paint everything afresh."""
@@ -268,6 +276,7 @@ HANDLERS: dict[str, Callable[[MainScreen, Result], None]] = {
     "assess": MainScreen.walked,
     "referee": MainScreen.refereed,
     "borders": MainScreen.bordered,
+    "explain": MainScreen.explained,
 }
 """Kind of a job -> what takes its result."""
 

@@ -27,13 +27,14 @@ class Choice:
 
 @dataclass(frozen=True, slots=True)
 class Verb:
-    """What a key does with the row in hand. key: its name; shown: as printed; words: for the line of keys; stays: whether
-    the list stays open, so that `act` is told instead of the caller."""
+    """What a key does with the row in hand. key: its name; shown: as printed, "" for a second key of a verb; words: for the line of keys;
+    stays: whether the list stays open, so that `act` is told instead of the caller; bare: whether it needs no row."""
 
     key: str
     shown: str
     words: str
     stays: bool = False
+    bare: bool = False
 
 
 Rows = Callable[[int, str], list[Choice]]
@@ -52,16 +53,17 @@ def marked(content: Line, wide: int) -> Line:
 class Roster(Overlay[tuple[str, str]]):
     """Shows rows and asks for one. Gives (key of the verb, name of the row); ("", "") where it was left.
 
-    Parameters: title; rows; verbs, the first one is that of Enter where its key is "enter"; head, lines above the rows; told, lines below
-    them on the row in hand; typing, whether letters narrow the rows down (verbs then go by other keys); act, told of a verb
-    that stays; start, name of the row in hand at first.
+    Parameters: title, words or what gives them; rows; verbs, the first one is that of Enter where its key is "enter"; head, lines
+    above the rows; told, lines below them on the row in hand; typing, whether letters narrow the rows down (verbs then go
+    by other keys); act, told of a verb that stays; start, name of the row in hand at first;
+    counted, whether the title says how many rows there are.
     """
 
     CSS = "Roster { layout: vertical; } #roster { height: 1fr; }"
 
     def __init__(
         self,
-        title: str,
+        title: str | Callable[[], str],
         rows: Rows,
         verbs: tuple[Verb, ...],
         *,
@@ -70,16 +72,19 @@ class Roster(Overlay[tuple[str, str]]):
         typing: bool = False,
         act: Callable[[str, str], None] = lambda key, name: None,
         start: str = "",
+        counted: bool = True,
     ) -> None:
         super().__init__()
-        self._heading, self._rows, self._verbs = title, rows, verbs
+        self._heading = title if callable(title) else lambda: title
+        self._rows, self._verbs = rows, verbs
         self._head, self._told, self._typing, self._act = head, told, typing, act
         self._name, self._at, self._top, self._room = start, 0, 0, 1
         self._field = Entry("", "", 0, fresh=False)
+        self._sheet = Sheet(id="roster")
+        self._counted = counted
 
     def compose(self) -> ComposeResult:
         """One sheet, painted before it is laid out, so that the screen is sent once."""
-        self._sheet = Sheet(id="roster")
         self._paint(self.app.size)
         yield self._sheet
 
@@ -97,13 +102,17 @@ class Roster(Overlay[tuple[str, str]]):
         """Name of the row in hand, "" where there is none."""
         return self._name
 
+    def hold(self, name: str) -> None:
+        """Take a row in hand, the first one where none has that name; for `act`, which changes what the rows are."""
+        self._name, self._at, self._top = name, 0, 0
+
     def _paint(self, size: Size) -> None:
         wide, height = size
         rows = self._rows(wide, self._field.text)
         self._keep(rows)
         head = self._head(wide)
         told = self._told(self._name, wide) if self._name else []
-        above: list[Line] = [line((fit(clean(self._heading) + self._count(len(rows)), wide), BOLD)), *self._typed(wide)]
+        above: list[Line] = [line((fit(clean(self._heading()) + self._count(len(rows)), wide), BOLD)), *self._typed(wide)]
         spare = height - len(above) - 1
         head = head[: max(0, spare - 3)]
         told = told[: max(0, spare - len(head) - 3)]
@@ -123,6 +132,8 @@ class Roster(Overlay[tuple[str, str]]):
             self._name = names[self._at] if names else ""
 
     def _count(self, rows: int) -> str:
+        if not self._counted:
+            return ""
         return f" ({self._at + 1} of {rows})" if rows else " (none)"
 
     def _typed(self, wide: int) -> list[Line]:
@@ -134,7 +145,7 @@ class Roster(Overlay[tuple[str, str]]):
         return [line("find: ", text[start:at], (text[at : at + 1] or " ", CURSOR), text[at + 1 :])]
 
     def _keys(self) -> str:
-        parts = [f"{v.shown} {v.words}" for v in self._verbs]
+        parts = [f"{v.shown} {v.words}" for v in self._verbs if v.shown]
         return "  ".join([*parts, "Esc back"])
 
     def typed(self, event: events.Key) -> None:
@@ -158,7 +169,7 @@ class Roster(Overlay[tuple[str, str]]):
         self.paint()
 
     def _do(self, verb: Verb) -> None:
-        if not self._name:
+        if not self._name and not verb.bare:
             return
         if verb.stays:
             self._act(verb.key, self._name)

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from tui.actions import ACTIONS
+from tui.actions import Action, key_of, spelled
 from tui.figures import Figures, Margin
 from tui.line import BOLD, Line, clean, line
 from tui.screens.page import Body, text_body
@@ -11,23 +11,33 @@ from tui.views.numbers import quantity
 from tui.views.side import STYLE, by_margin, margin_words
 
 
-def keys() -> Body:
-    """All actions by group, from their declarations."""
-    groups = dict.fromkeys(a.group for a in ACTIONS)
+def keys(session: Session) -> Body:
+    """All actions by group with the keys that hold, from their declarations."""
+    groups = dict.fromkeys(a.group for a in session.actions)
 
     def body(wide: int) -> list[Line]:
         out: list[Line] = []
         for group in groups:
             out.append(line((group, BOLD)))
-            out += text_body([f"  {a.shown:<7} {a.help}" for a in ACTIONS if a.group == group])(wide)
-        return [*out, line(""), *text_body([_FIELD, _MARKS])(wide)]
+            out += text_body([f"  {_all_keys(a):<7} {a.help}" for a in session.actions if a.group == group])(wide)
+        return [*out, line(""), *text_body([_FIELD, _LISTS, _MARKS])(wide)]
 
     return body
 
 
+def _all_keys(action: Action) -> str:
+    """Every key of an action as printed, without the second name of a capital letter."""
+    return " ".join(spelled(k) for k in action.keys if not k.startswith("shift+") or len(k) > len("shift+x"))
+
+
 _FIELD = (
     "In a field: type a value with or without its unit (85 kft, 1500 psf, 2.5 MJ/kg); a bare number is in the unit "
-    "shown. Enter commits, Escape leaves the value as it was. An empty field takes an optional value back."
+    "shown. Enter commits, Escape leaves the value as it was. An empty field takes an optional value back. "
+    "A digit on a number in hand opens its field."
+)
+_LISTS = (
+    "Lists and pages have keys of their own, on their last line. The actions above take other keys from the file "
+    "keys.toml; the command ductwalk keys prints one to start from."
 )
 _MARKS = "d marks a default. Values in ( ) are of the previous inputs. Not assessed is never fine."
 
@@ -57,7 +67,7 @@ def limits(session: Session) -> Body:
 
 def _accounts(found: Figures, session: Session) -> list[str]:
     out = ["", f"audit {'ok' if found.audit_ok else 'FAILED'}: {found.audit}"]
-    out.append(clean(session.referee) or "referee not asked; r asks")
+    out.append(clean(session.referee) or f"referee not asked; {key_of(session.actions, 'referee')} asks")
     if found.reason:
         out += ["", f"no solution: {found.reason}"]
     if found.potentials:

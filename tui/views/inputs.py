@@ -5,7 +5,7 @@ from __future__ import annotations
 from rich.style import Style
 
 from cycle.quantities import OUTPUT
-from tui.actions import ACTIONS
+from tui.actions import key_of
 from tui.items import Item, bounds, in_hand, items, way_label
 from tui.line import BOLD, CURSOR, DIM, OVER, PLAIN, UNDERLINE, Line, Piece, clean, fit, line, width, wrap
 from tui.rows import others, place_of
@@ -126,8 +126,9 @@ def _input_words(session: Session) -> str:
     hand = in_hand(session)
     if hand is None:
         return ""
-    other = "o: another way to say it" if hand.group is not None or others(hand.key) else ""
-    other = "; ".join(w for w in (other, "a, x: a row more, less" if place_of(hand.key) is not None else "") if w)
+    ways, add, remove = (key_of(session.actions, name) for name in ("ways", "add_row", "remove_row"))
+    other = f"{ways}: another way to say it" if hand.group is not None or others(hand.key) else ""
+    other = "; ".join(w for w in (other, f"{add}, {remove}: a row more, less" if place_of(hand.key) is not None else "") if w)
     if hand.input is None:
         return f"{hand.label}: {hand.written}; {other}"
     limits = bounds(hand.input, session.system)
@@ -142,9 +143,9 @@ def keys(session: Session, wide: int, height: int) -> list[Line]:
         unit = f"; a bare number is in {session.entry.unit}" if session.entry.unit else ""
         return [line((fit(f"Enter commits  Escape leaves it as it was{unit}", wide), DIM))]
     room, kept = wide + 2, set()
-    for action in sorted((a for a in ACTIONS if a.label), key=lambda a: a.rank):
+    for action in sorted((a for a in session.actions if a.label), key=lambda a: a.rank):
         size = len(action.shown) + len(action.label) + 3
         if size <= room:
             kept.add(action.name)
             room -= size
-    return [line((fit("  ".join(f"{a.shown} {a.label}" for a in ACTIONS if a.name in kept), wide), DIM))]
+    return [line((fit("  ".join(f"{a.shown} {a.label}" for a in session.actions if a.name in kept), wide), DIM))]
