@@ -43,7 +43,7 @@ LARGEST = 64 * 1024
 
 _FUNCTION = re.compile(r"f([1-9]|1[0-9]|2[0-4])")
 _CONTROL = re.compile(r"ctrl\+[a-z]")
-_ALLOWED = "x, f5, ctrl+x, pageup ..."
+_ALLOWED = "x, f5, ctrl+x"
 
 
 @dataclass(frozen=True, slots=True)
@@ -87,7 +87,7 @@ def _text(name: str) -> str:
 
 def _told(name: str, key: str, text: str, given: object = None, allowed: str = "") -> str:
     """A fault on one line, by the file's last name: the page of keys says where it is."""
-    return str(Fault(os.path.basename(name), key, text, "" if given is None else quoted(given, 20), allowed))
+    return str(Fault(os.path.basename(name), key, text, "" if given is None else "[]" if given == [] else quoted(given, 20), allowed))
 
 
 def parse(text: str, name: str) -> Keymap:

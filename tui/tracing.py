@@ -99,7 +99,7 @@ def in_hand(session: Session) -> Place:
 
 
 def value(session: Session, place: Place) -> str:
-    """A figure in the present walk, or an input, with its unit; "-" where there is none."""
+    """A figure in the present walk, or an input, with its unit; "-" where there is none, "" where only the worker knows."""
     spec, found = OUTPUT.get(place.key), session.figures
     if spec is not None and found is not None:
         number = found.at(place.station, spec.key) if spec.where == "station" else found.performance.get(spec.key, NAN)
@@ -141,7 +141,9 @@ def _written(session: Session, key: str) -> str:
     if key in GROUP:
         return str(case.choices.get(key, "not used"))
     stated = next((s for s in case.inputs() if s.input.key == key), None)
-    return items.written(stated, session.system) if stated is not None else "-"
+    if stated is None:
+        return "-" if input_of(key) is not None else ""
+    return items.written(stated, session.system)
 
 
 def origins(session: Session, place: Place, found: tuple[Number, ...]) -> tuple[Origin, ...]:
@@ -170,7 +172,7 @@ def _figure(session: Session, spec: Output, place: Place) -> Origin:
 
 
 def _of_output(session: Session, place: Place, entry: Output, found: tuple[Number, ...]) -> Iterable[Origin]:
-    if value(session, place) == "-" and len(found) < 2:
+    if value(session, place) in ("-", "") and len(found) < 2:
         yield from _failed(session)
     yield from _terms(session, place, entry, found)
     yield from _BEHIND[entry.where](session, place)
@@ -185,9 +187,11 @@ def _terms(session: Session, place: Place, entry: Output, found: tuple[Number, .
         return
     for term in (t for n in found for t in n.terms):
         at = Place(term.key, term.where) if term.key else None
-        plain = f"{format_number(term.value, DIGITS)} {term.unit}".strip()
-        shown = value(session, at) if at is not None and not term.key.startswith("limits.") else plain
-        yield Origin(at, term.symbol, term.label, shown if shown != "-" else plain)
+        if at is None:
+            yield Origin(None, term.symbol, term.label, f"{format_number(term.value, DIGITS)} {term.unit}".strip())
+        else:
+            unit = getattr(entry_of(at), "unit", "ratio")
+            yield Origin(at, term.symbol, term.label, quantity(term.value, unit, session.system, DIGITS, term.key))
 
 
 def _inputs(session: Session, station: str) -> Iterable[Origin]:

@@ -55,7 +55,7 @@ class Asking(Desk, inherit_bindings=False):
     def tell_keys(self) -> None:
         """Say what is wrong with the user's own keys, on one line."""
         if self.key_faults and not self.session.faults:
-            more = f" ({len(self.key_faults) - 1} more)" if len(self.key_faults) > 1 else ""
+            more = f" (+{len(self.key_faults) - 1}: {key_of(self.session.actions, 'help')})" if len(self.key_faults) > 1 else ""
             self.put(replace(self.session, faults=(self.key_faults[0] + more,)))
 
     def do_explain(self) -> None:
@@ -176,7 +176,7 @@ def _found(found: finding.Found, wide: int) -> Line:
     """One thing found: symbol, name, value, what it is."""
     kind = fit(clean(found.kind), 18)
     value = fit(clean(found.value), 20)
-    room = max(8, wide - 10 - 20 - 20)
+    room = max(8, min(wide - 10 - 20 - 20, 48))
     style = DIM if found.rank == 6 else BOLD
     text = f"{fit(found.symbol, 8):<9} {_padded(fit(clean(found.label), room), room)}"
     return line((text, style), f"{value:>20}", (f"  {kind}", DIM))

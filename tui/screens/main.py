@@ -252,7 +252,7 @@ class MainScreen(Editing, Filing, Peeking, Plotting, Ranking, Asking, Pinning, B
 
     def do_help(self) -> None:
         """The page of keys."""
-        self.app.push_screen(Page("Keys", telling.keys(self.session)))
+        self.app.push_screen(Page("Keys", telling.keys(self.session, self.key_faults)))
 
     def do_redraw(self) -> None:
         """Paint everything afresh."""

@@ -4,25 +4,38 @@ from __future__ import annotations
 
 from tui.actions import Action, key_of, spelled
 from tui.figures import Figures, Margin
-from tui.line import BOLD, Line, clean, line
+from tui.keymap import path
+from tui.line import BOLD, OVER, Line, clean, line, wrap
 from tui.screens.page import Body, text_body
 from tui.session import Session
 from tui.views.numbers import quantity
 from tui.views.side import STYLE, by_margin, margin_words
 
+LEAD = 16
+"""Columns of the keys on their page."""
 
-def keys(session: Session) -> Body:
-    """All actions by group with the keys that hold, from their declarations."""
+
+def keys(session: Session, faults: tuple[str, ...] = ()) -> Body:
+    """All actions by group with the keys that hold, from their declarations.
+
+    Parameters: session; faults, what is wrong with the user's own file of keys.
+    """
     groups = dict.fromkeys(a.group for a in session.actions)
 
     def body(wide: int) -> list[Line]:
-        out: list[Line] = []
+        out = [tuple((text, OVER) for text, _ in row) for row in text_body([*faults, *([f"in {path()}", ""] if faults else [])])(wide)]
         for group in groups:
             out.append(line((group, BOLD)))
-            out += text_body([f"  {_all_keys(a):<7} {a.help}" for a in session.actions if a.group == group])(wide)
+            out += [row for a in session.actions if a.group == group for row in _action(a, wide)]
         return [*out, line(""), *text_body([_FIELD, _LISTS, _MARKS])(wide)]
 
     return body
+
+
+def _action(action: Action, wide: int) -> list[Line]:
+    """The keys of an action, and what it does beside them."""
+    words = wrap(action.help.split(), max(8, wide - LEAD - 2))
+    return [line(f"  {_all_keys(action) if i == 0 else '':<{LEAD}}{part}") for i, part in enumerate(words)]
 
 
 def _all_keys(action: Action) -> str:

@@ -133,9 +133,11 @@ class Tracer:
         """The figure in this walk, or why there is none."""
         entry = tracing.entry_of(self.place)
         value = tracing.value(session, self.place)
+        if isinstance(entry, Output) and number is not None and value in ("-", ""):
+            known = number.value == number.value
+            value = quantity(number.value, entry.unit, session.system, DIGITS) if known else "-"
         if isinstance(entry, Output) and value == "-":
-            known = number is not None and number.value == number.value
-            value = quantity(number.value, entry.unit, session.system, DIGITS) if known else _reason(session, self.place, number)
+            value = _reason(session, self.place, number)
         stale = "" if session.settled else " (of the inputs before)"
         words = [f"{value}{stale}"] if value else []
         return [tuple((text, BOLD) for text, _ in row) for row in text_body(words)(wide)]
@@ -176,6 +178,6 @@ def _below(place: Place) -> str:
 def _row(origin: Origin, wide: int) -> Line:
     """One origin: symbol, name, value."""
     value = fit(clean(origin.value), 26)
-    room = max(6, wide - 12 - 26 - 1)
+    room = max(6, min(wide - 12 - 26 - 1, 56))
     label = fit(clean(origin.label), room)
     return line((f" {fit(origin.symbol, 9):<10} ", BOLD), label + " " * (room - width(label)), f"{value:>26}")
