@@ -8,6 +8,7 @@ from dataclasses import dataclass
 
 from cycle.quantities import GROUPS, INPUTS, MODES, OUTPUTS, STATUSES, Input, Output, input_of
 from tui import tracing
+from tui.items import written
 from tui.rows import hidden
 from tui.session import Session
 from tui.tracing import Place
@@ -43,20 +44,19 @@ def _inputs(session: Session) -> Iterable[Found]:
     case = session.case
     if case is None:
         return
-    used = [s.input for s in case.inputs() if not hidden(case, s.input.key)]
-    there = {i.key for i in used}
+    used = [s for s in case.inputs() if not hidden(case, s.input.key)]
+    there = {s.input.key for s in used}
     grouped = {k for g in GROUPS for m in g.members for k in m.keys if g.name in case.choices}
-    for spec in used:
-        yield _input(session, spec, "input", 0)
+    for stated in used:
+        yield _input(stated.input, "input", 0, written(stated, session.system))
     for spec in (i for i in INPUTS if i.key not in there and i.kind != "rows"):
-        yield _input(session, spec, "another way" if spec.key in grouped else "not used here", 6)
+        yield _input(spec, "another way" if spec.key in grouped else "not used here", 6, "-")
     for group in GROUPS:
         if input_of(group.name) is None:
             yield Found(Place(group.name), "", group.meaning, "choice", 5, "", tracing.value(session, Place(group.name)))
 
 
-def _input(session: Session, spec: Input, kind: str, rank: int) -> Found:
-    value = tracing.value(session, Place(spec.key)) if rank == 0 else "-"
+def _input(spec: Input, kind: str, rank: int, value: str) -> Found:
     return Found(Place(spec.key), spec.symbol, spec.label, kind, rank, spec.meaning, value)
 
 

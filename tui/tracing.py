@@ -106,6 +106,9 @@ def value(session: Session, place: Place) -> str:
         return quantity(number, spec.unit, session.system, DIGITS, spec.key)
     if place.key.startswith("process.") and found is not None:
         return _process_value(session, found, place)
+    if place.key.startswith("potential.") and found is not None:
+        label = getattr(entry_of(place), "label", "")
+        return next((quantity(r.value, r.unit, session.system, DIGITS) for r in found.potentials if r.label == label), "-")
     limit = next((m for m in found.limits if f"limit.{m.key}" == place.key), None) if found is not None else None
     if limit is not None:
         return limit.state if limit.margin != limit.margin else f"margin {format_number(100.0 * limit.margin, 3)} %, {limit.state}"
