@@ -5,7 +5,7 @@ from __future__ import annotations
 import math
 from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
-from typing import TYPE_CHECKING
+from typing import TYPE_CHECKING, Any
 
 import numpy as np
 
@@ -73,6 +73,23 @@ class Sensitivities:
         sizes = [abs(row.changes.get(key, math.nan)) for row in self.rows]
         order = sorted(range(len(sizes)), key=lambda i: math.inf if math.isnan(sizes[i]) else -sizes[i])
         return tuple(self.rows[i] for i in order)
+
+
+def plain(found: Sensitivities) -> list[dict[str, Any]] | None:
+    """Sensitivities as plain data of the JSON of `solve`: rows by the size of the first output's change, null for what has no value.
+
+    found: of a case. Returns None where the case has no solution.
+    """
+    if found.why_not:
+        return None
+    return [_plain_row(row, found.outputs) for row in found.ranked()]
+
+
+def _plain_row(row: Sensitivity, outputs: Sequence[str]) -> dict[str, Any]:
+    values = {key: row.changes.get(key, math.nan) for key in outputs}
+    changes = {key: value if math.isfinite(value) else None for key, value in values.items()}
+    ends = {"below": row.below, "above": row.above, "modes": list(row.modes), "reason": row.reason}
+    return {"input": row.input.key, "value": row.value, "step": row.step, "side": row.side, "changes": changes, **ends}
 
 
 @dataclass(frozen=True, slots=True)
@@ -215,8 +232,5 @@ def _reason(below: _Point, above: _Point) -> str:
     """Why a change is one-sided or missing; "" where it is central."""
     lost = {side: point for side, point in (("below", below), ("above", above)) if point.status != "solved"}
     words = {side: point.words or f"no solution, {point.status}" for side, point in lost.items()}
-    return (
-        "; ".join(dict.fromkeys(words.values()))
-        if len(set(words.values())) < len(words)
-        else "; ".join(f"{s}: {w}" for s, w in words.items())
-    )
+    same = len(words) > 1 and len({*words.values()}) == 1
+    return words["below"] if same else "; ".join(f"{side}: {why}" for side, why in words.items())
