@@ -76,19 +76,14 @@ def shares(a: Case, b: Case) -> Shares:
     outputs = HEADLINE[a.choices["start"]]
     corners = _corners(a, b, groups, outputs)
     first, second = corners[frozenset()], corners[frozenset(groups)]
-    ends = (dict(first.figures), dict(second.figures))
-    shown = tuple(key for key in outputs if not any(math.isnan(end.get(key, math.nan)) for end in ends))
+    shown = tuple(key for key in outputs if not any(math.isnan(end.figures.get(key, math.nan)) for end in (first, second)))
     why = _nothing(a, b, groups, first, second, shown)
-    lost = {taken: corner.why or _gap(corner, shown) for taken, corner in corners.items()}
-    players: list[tuple[str, ...]] = [(group,) for group in groups]
-    notes: list[str] = []
-    if not why:
-        players, notes = _together(groups, {taken: words for taken, words in lost.items() if words})
+    players, notes = ([(group,) for group in groups], []) if why else _together(groups, _lost(corners, shown))
     if not why and len(players) == 1 < len(groups):
         why = "no group can be swapped without the others"
     found = {} if why else {key: _of(players, corners, key) for key in shown}
     parts = (Part(p, tuple(k for g in p for k in keys[g]), {key: found[key][i] for key in found}) for i, p in enumerate(players))
-    return Shares(tuple(parts), shown, ends[0], ends[1], tuple(notes), why)
+    return Shares(tuple(parts), shown, dict(first.figures), dict(second.figures), tuple(notes), why)
 
 
 def _of(players: Sequence[tuple[str, ...]], corners: Mapping[Groups, _Corner], key: str) -> tuple[float, ...]:
@@ -131,9 +126,12 @@ def _nothing(a: Case, b: Case, groups: Sequence[str], first: _Corner, second: _C
     return "" if shown else "no headline figure has a value on both sides"
 
 
-def _gap(corner: _Corner, shown: Iterable[str]) -> str:
-    missing = [key for key in shown if math.isnan(corner.figures[key])]
-    return f"no value of {missing[0]}" if missing else ""
+def _lost(corners: Mapping[Groups, _Corner], shown: Iterable[str]) -> dict[Groups, str]:
+    """Combinations without a value of every figure, and why."""
+    missing = {
+        taken: next((key for key in shown if math.isnan(corner.figures.get(key, math.nan))), "") for taken, corner in corners.items()
+    }
+    return {taken: corners[taken].why or f"no value of {key}" for taken, key in missing.items() if key}
 
 
 def _corners(a: Case, b: Case, groups: Sequence[str], outputs: Sequence[str]) -> dict[Groups, _Corner]:
@@ -178,7 +176,7 @@ def _together(groups: Sequence[str], lost: Mapping[Groups, str]) -> tuple[list[t
     """The finest way to join groups so that no combination of them is lost, and why each that is joined is."""
     masks = {sum(1 << groups.index(group) for group in taken): why for taken, why in lost.items()}
     blocks = next(blocks for blocks in sorted(_partitions(len(groups)), key=len, reverse=True) if not any(_whole(m, blocks) for m in masks))
-    notes = []
+    notes: list[str] = []
     for block in (b for b in blocks if b.bit_count() > 1):
         torn = min((m for m in masks if m & block not in (0, block)), key=lambda m: (m.bit_count(), m))
         alone = _and(_named(groups, torn))

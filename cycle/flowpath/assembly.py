@@ -27,7 +27,7 @@ _PANEL = 4
 _BESIDE = 1e-15
 """Distance, over the duct's length, of two rows that are one place."""
 
-_FEW = 64
+_FEW = 16
 """Points up to which the total pressure along the duct is found, too."""
 
 
