@@ -170,17 +170,13 @@ def _solved(case: Case, asked: Places, outputs: Sequence[str]) -> dict[tuple[str
     found = {place: _points(solve(case.replace(asked[place])), outputs)[0] for place in asked if place in alone}
     together = [place for place in asked if place not in alone]
     if together:
-        points = _points(solve(case, batch(case, [asked[place] for place in together])), outputs)
+        points = _points(solve(case, _batch(case, [asked[place] for place in together])), outputs)
         found.update(zip(together, points, strict=True))
     return found
 
 
-def batch(case: Case, points: Sequence[Moved]) -> dict[str, ArrayLike]:
-    """Arrays for a batch of points about a case.
-
-    Parameters: case; points, what each changes, key -> value (SI). Returns: key -> array (N,) for every number of the case that
-    changes at any point.
-    """
+def _batch(case: Case, points: Sequence[Moved]) -> dict[str, ArrayLike]:
+    """Arrays of the numbers that change at any of the points, (N,) by key."""
     keys = dict.fromkeys(key for point in points for key in point)
     arrays = {key: np.full(len(points), case.numbers[key]) for key in keys}
     for i, point in enumerate(points):

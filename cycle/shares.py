@@ -128,10 +128,9 @@ def _nothing(a: Case, b: Case, groups: Sequence[str], first: _Corner, second: _C
 
 def _lost(corners: Mapping[Groups, _Corner], shown: Iterable[str]) -> dict[Groups, str]:
     """Combinations without a value of every figure, and why."""
-    missing = {
-        taken: next((key for key in shown if math.isnan(corner.figures.get(key, math.nan))), "") for taken, corner in corners.items()
-    }
-    return {taken: corners[taken].why or f"no value of {key}" for taken, key in missing.items() if key}
+    gaps = {taken: [key for key in shown if math.isnan(corner.figures.get(key, math.nan))] for taken, corner in corners.items()}
+    words = {taken: corners[taken].why or (f"no value of {missing[0]}" if missing else "") for taken, missing in gaps.items()}
+    return {taken: why for taken, why in words.items() if why}
 
 
 def _corners(a: Case, b: Case, groups: Sequence[str], outputs: Sequence[str]) -> dict[Groups, _Corner]:
