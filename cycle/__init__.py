@@ -13,15 +13,16 @@ if TYPE_CHECKING:
     from cycle.case import Case, load, loads
     from cycle.errors import CaseError
     from cycle.result import Walk, solve
+    from cycle.sensitivity import sensitivities
 
 __version__ = "0.2.0"
 
 _HOME = {
     "Case": "cycle.case", "load": "cycle.case", "loads": "cycle.case", "CaseError": "cycle.errors", "Walk": "cycle.result",
-    "solve": "cycle.result",
+    "sensitivities": "cycle.sensitivity", "solve": "cycle.result",
 }  # fmt: skip
 
-__all__ = ["Case", "CaseError", "Walk", "load", "loads", "solve"]
+__all__ = ["Case", "CaseError", "Walk", "load", "loads", "sensitivities", "solve"]
 
 
 def __getattr__(name: str) -> Any:

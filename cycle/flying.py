@@ -21,7 +21,7 @@ from collections.abc import Iterator, Mapping
 from dataclasses import dataclass, replace
 from typing import TYPE_CHECKING
 
-from cycle.case.rules import bounds, groups_of, members_present
+from cycle.case.rules import bounds, groups_of, members_present, outside
 from cycle.errors import CaseError, Fault, UnitError, shown
 from cycle.quantities import GROUPS, INPUTS, Input, input_of
 from cycle.units import read
@@ -223,22 +223,10 @@ def _number(column: _Column, cell: str, place: str, name: str) -> float | Fault:
     except UnitError as error:
         allowed = bounds(entry) if unit is None else f"a number alone: the header states its unit [{unit}]"
         return Fault(name, place, error.text, shown(cell), allowed)
-    return Fault(name, place, "out of bounds", shown(cell), bounds(entry)) if _outside(entry, value) else value
+    return Fault(name, place, "out of bounds", shown(cell), bounds(entry)) if outside(entry, value) else value
 
 
 def _bare(cell: str) -> str:
     """The cell, refused where it is more than a number."""
     read(cell, "none")
     return cell
-
-
-def _outside(entry: Input, value: float) -> bool:
-    """Whether a number lies beyond the bounds of its input, or is none where only whole ones are."""
-    beyond = (
-        entry.lower is not None and value < entry.lower,
-        entry.above is not None and value <= entry.above,
-        entry.upper is not None and value > entry.upper,
-        entry.below is not None and value >= entry.below,
-        entry.whole and not value.is_integer(),
-    )
-    return any(beyond)

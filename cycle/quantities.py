@@ -14,8 +14,8 @@ from cycle.declarations import Group, Input, Member, Output
 from cycle.inputs import GROUPS, INPUTS
 
 __all__ = [
-    "GROUP", "GROUPS", "INPUT", "INPUTS", "MODES", "OUTPUT", "OUTPUTS", "RESTORES", "SECTIONS", "STATUSES", "TABLES", "Group", "Input",
-    "Member", "Output", "cell", "cell_key", "input_of", "split_cell",
+    "GROUP", "GROUPS", "HEADLINE", "INPUT", "INPUTS", "MODES", "OUTPUT", "OUTPUTS", "RESTORES", "SECTIONS", "STATUSES", "TABLES", "Group",
+    "Input", "Member", "Output", "cell", "cell_key", "input_of", "split_cell",
 ]  # fmt: skip
 
 _SUTHERLAND = "Sutherland's law for air, U.S. Standard Atmosphere 1976, eq. 51"
@@ -95,6 +95,12 @@ OUTPUTS: tuple[Output, ...] = (
     Output("burner_exit_over_throat", "A4/A5", "burner exit over throat", "Burner exit area over the throat's.", "ratio", "performance",
            "A4 / A5"),
 )  # fmt: skip
+
+HEADLINE: dict[str, tuple[str, ...]] = {
+    "flight": ("thrust", "specific_impulse", "specific_thrust", "overall_efficiency"),
+    "entry": ("stream_thrust_gain", "fuel_flow", "equivalence_ratio", "total_temperature_rise_efficiency"),
+}
+"""Where a case starts -> the figures of the performance by which it is judged, the first one first."""
 
 STATUSES: dict[str, str] = {
     "solved": "every process has a solution",

@@ -122,6 +122,16 @@ def case_record(case: Case) -> Json:
     return heads | case.tables()
 
 
+def case_of(recorded: Json, name: str) -> Case:
+    """The case of a record again.
+
+    recorded: `case_record`, of this version or read back; name: of the case. Raises CaseError where it is no case of this version.
+    """
+    from cycle.case.case import build
+
+    return build(recorded, name)
+
+
 def heat_limit_words(value: float) -> str:
     """Why a heat limit is no number. value: inf or NaN."""
     return "not reached within the range of the input" if value == math.inf else "not known: the heat is no fuel ratio"

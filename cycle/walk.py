@@ -239,13 +239,13 @@ def _with_points(stream: Stream, at: Codes, new: Stream) -> Stream:
     return Stream(stream.gas, scatter(stream.state, at, new.state), **columns)
 
 
-def modes(march: March) -> list[str]:
-    """The engine mode found at each point, a key of `quantities.MODES`."""
+def modes(march: March, of_rigs: bool = False) -> list[str]:
+    """The engine mode found at each point, a key of `quantities.MODES`. of_rigs: that of a rig's own duct instead of "rig"."""
     found = ["none"] * march.setting.size
     record = march.named("isolator")
     names = [] if record is None else [k.removeprefix("mode_") for k in record.process.figures if k.startswith("mode_")]
     for point in march.solved:
-        if march.chain[0] == "entry":
+        if march.chain[0] == "entry" and not (of_rigs and names):
             found[point] = "rig"
         elif record is not None and names:
             at = int(np.searchsorted(record.index, point))

@@ -42,8 +42,8 @@ class Flight:
 
 def run(options: argparse.Namespace) -> int:
     """Fly the cases of the command line along the trajectory and write them; returns the highest exit status."""
-    if options.output or options.referee or options.rows != "stations":
-        raise DuctwalkError("--along takes neither -o nor --referee nor --rows: those are for single points")
+    if options.output or options.referee or options.sensitivities or options.rows != "stations":
+        raise DuctwalkError("--along takes none of -o, --referee, --sensitivities and --rows: those are for single points")
     trajectory = read(options.along)
     changes = settings(options.set)
     flights = [_flown(name, changes, trajectory) for name in options.cases]

@@ -69,10 +69,14 @@ def _solve_options(parser: argparse.ArgumentParser) -> None:
     )  # fmt: skip
     forms = ("text", "json", "csv", "markdown")
     parser.add_argument("--format", type=_one_of(*forms), default="text", metavar="|".join(forms), help="form of the output")
+    rows = ("stations", "duct", "sensitivities")
     parser.add_argument(
-        "--rows", type=_one_of("stations", "duct"), default="stations", metavar="stations|duct",
-        help="what a row of the CSV is: a station, or a place along the duct",
+        "--rows", type=_one_of(*rows), default="stations", metavar="|".join(rows),
+        help="what a row of the CSV is: a station, a place along the duct, or an input and what its step gives",
     )  # fmt: skip
+    parser.add_argument(
+        "--sensitivities", action="store_true", help="also what one step of each input gives of the headline figures, largest first"
+    )
     parser.add_argument(
         "--along", metavar="TRAJECTORY",
         help="fly the cases along a CSV file of inputs (header of keys such as flight.mach, flight.altitude [km]) and print a row a point",

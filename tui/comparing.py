@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import argparse
 import math
-from collections.abc import Iterable
+from collections.abc import Iterable, Iterator, Mapping, Sequence
 
 import cycle
 from cycle.case import loads
@@ -12,14 +12,19 @@ from cycle.compare import DATUM, Comparison, Figure, Setting, Side, compare, sta
 from cycle.errors import CaseError, DuctwalkError
 from cycle.gas.species import data_hash
 from cycle.quantities import Output
-from cycle.record import LARGEST_FILE, is_stored, read_stored, record
+from cycle.record import LARGEST_FILE, case_of, is_stored, read_stored, record
+from cycle.shares import shares
 from cycle.units import display_unit, format_number
+from tui.influence import blocks_of_shares
 from tui.output import emit, read_content, tell
 from tui.solve import AUDIT_FAILED, BAD_INPUT, NO_SOLUTION, SOLVED
 from tui.tables import Block, Heading, Lines, Table, as_text
 from tui.text import CAUTION, figure, input_text, named, unit_label
 
 _LETTERS = "ABCDEFGHIJKLMNOPQRSTUVWXYZ"
+_AGAIN = 1e-6
+"""Relative difference of a figure up to which a walk is the stored one."""
+
 LEAST_CHANGE = 5e-6
 """Relative change that a table of percentages shows as more than zero."""
 
@@ -38,7 +43,7 @@ def run(options: argparse.Namespace) -> int:
         return BAD_INPUT
     if not 2 <= len(sides) <= len(_LETTERS):
         raise DuctwalkError(f"compare takes 2 to {len(_LETTERS)} walks: {len(sides)} given")
-    emit(as_text(comparison_blocks(compare(sides), options.units)))
+    emit(as_text(comparison_blocks(compare(sides), options.units, share_blocks(sides, options.units))))
     return max(_status(side) for side in sides)
 
 
@@ -57,18 +62,39 @@ def _status(side: Side) -> int:
     return SOLVED if side.walk["audit"].get("ok") is True else AUDIT_FAILED
 
 
-def comparison_blocks(found: Comparison, system: str) -> list[Block]:
-    """The comparison as blocks. system: "si" or "us"."""
+def comparison_blocks(found: Comparison, system: str, more: Iterable[Block] = ()) -> list[Block]:
+    """The comparison as blocks. system: "si" or "us"; more: blocks behind the headline figures."""
     letters = _LETTERS[: len(found.sides)]
     blocks: list[Block] = [Heading("Comparison", 1), Lines(tuple(_legend(found)))]
     blocks += [Lines(found.notes)] if found.notes else []
     blocks += [Heading("Inputs that differ"), _settings(found.settings, letters, system)]
-    blocks += [Heading("Performance"), _headline(found.headline, letters, system)]
+    blocks += [Heading("Performance"), _headline(found.headline, letters, system), *more]
     if found.margins:
         blocks += [Heading("Margins of the modes"), _margins(found.margins, letters)]
     for i in range(1, len(found.sides)):
         blocks += [Heading(f"Stations: change from A to {letters[i]}, % or in the unit named"), _station_changes(found, i, system)]
     return [*blocks, Heading("Caution"), Lines((CAUTION,))]
+
+
+def share_blocks(sides: Sequence[Side], system: str) -> Iterator[Block]:
+    """Where the headline figures of every side less those of the first come from. system: "si" or "us"."""
+    first, *others = sides
+    for letter, side in zip(_LETTERS[1:], others, strict=False):
+        yield Heading(f"Where the difference comes from, {letter} - A, by groups of inputs")
+        try:
+            found = shares(case_of(first.walk["case"], "A"), case_of(side.walk["case"], letter))
+        except CaseError as error:
+            yield Lines((f"Not assessed: a stored case is none of this version: {error.faults[0].text}",))
+            continue
+        yield from blocks_of_shares(found, system, _recomputed({"A": (first, found.first), letter: (side, found.second)}))
+
+
+def _recomputed(ends: Mapping[str, tuple[Side, Mapping[str, float]]]) -> Iterator[str]:
+    """A sentence for every stored walk that this version does not give again."""
+    for letter, (side, values) in ends.items():
+        stored = side.walk["performance"]
+        if any(not math.isclose(value, stored.get(key) or 0.0, rel_tol=_AGAIN) for key, value in values.items() if math.isfinite(value)):
+            yield f"{letter} computed by this version is not the stored walk: these are shares of the walks computed here."
 
 
 def _legend(found: Comparison) -> Iterable[str]:

@@ -68,17 +68,15 @@ def cell_changes(case: Case, key: str, value: Any) -> dict[str, object]:
 
 def _shares(case: Case, key: str, value: Any) -> dict[str, object]:
     """The other shares in their old proportion, so that all sum to one."""
+    from cycle.case.rows import other_shares
+
     rows = case.rows[INJECTOR]
     mine = int(key.split(".")[2]) - 1
     try:
         share = 1.0 if value is None else read(value, "ratio")
     except UnitError:
         return {}
-    rest = [i for i in range(len(rows)) if i != mine]
-    old = sum(rows[i]["share"] for i in rest)
-    even = 1.0 / len(rest) if rest else 0.0
-    parts = {i: rows[i]["share"] / old if old > 0.0 else even for i in rest}
-    return {cell_key(INJECTOR, i + 1, "share"): (1.0 - share) * part for i, part in parts.items()}
+    return {cell_key(INJECTOR, i + 1, "share"): part for i, part in other_shares(rows, mine, share).items()}
 
 
 def _perimeters(case: Case, key: str, value: Any) -> dict[str, object]:

@@ -10,8 +10,9 @@ from collections.abc import Mapping
 from dataclasses import dataclass, field, replace
 from typing import TYPE_CHECKING, Any, Literal
 
+from cycle.quantities import HEADLINE
 from tui.actions import ACTIONS, Action
-from tui.figures import PERFORMANCE_KEYS, STATIONS, Figures, carried
+from tui.figures import STATIONS, Figures, carried
 
 if TYPE_CHECKING:
     from cycle.case import Case
@@ -223,10 +224,4 @@ def watched(session: Session) -> str:
 
 def performance_keys(session: Session) -> tuple[str, ...]:
     """Headline figures of the case: those of a flight, or of a rig."""
-    rig = session.case is not None and session.case.choices.get("start") == "entry"
-    keys = (
-        ("stream_thrust_gain", "fuel_flow", "equivalence_ratio", "total_temperature_rise_efficiency")
-        if rig
-        else ("thrust", "specific_impulse", "specific_thrust", "overall_efficiency")
-    )
-    return tuple(k for k in keys if k in PERFORMANCE_KEYS)
+    return HEADLINE["flight" if session.case is None else session.case.choices["start"]]

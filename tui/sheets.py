@@ -8,7 +8,7 @@ from collections.abc import Callable, Iterable, Sequence
 from typing import Any
 
 from cycle.glossary import PROFILE
-from cycle.quantities import OUTPUTS, Input, Output, input_of
+from cycle.quantities import OUTPUT, OUTPUTS, Input, Output, input_of
 from cycle.record import ENTERING, Json
 from cycle.units import display_unit, si_unit
 
@@ -63,7 +63,27 @@ def points(records: Named, system: str) -> str:
     return _text(heads, rows)
 
 
-SHEETS: dict[str, Callable[[Named, str], str]] = {"stations": stations, "duct": duct}
+def sensitivities(records: Named, system: str) -> str:
+    """One row an input: its step and what that gives of the headline figures; no row for a case without a solution. records: of
+    `solve --sensitivities`; system: "si" or "us"."""
+    records = [(name, walk) for name, walk in records if walk.get("sensitivities")]
+    keys = dict.fromkeys(key for _, walk in records for row in walk["sensitivities"] for key in row["changes"])
+    outputs = [OUTPUT[key] for key in keys]
+    heads = ["case", "input", "value", "step", "unit", "side", *_heads(outputs, system), "below", "above", "modes", "reason"]
+    rows: list[list[Any]] = []
+    for name, walk in records:
+        for row in walk["sensitivities"]:
+            entry = input_of(row["input"])
+            assert entry is not None
+            label, factor, zero = _unit(entry, system)
+            changes = [row["changes"].get(key) for key in keys]
+            moved = [None if c is None else c / _unit(o, system)[1] for c, o in zip(changes, outputs, strict=True)]
+            start = [name, entry.key, (row["value"] - zero) / factor, row["step"] / factor, label, row["side"]]
+            rows.append([*start, *moved, row["below"], row["above"], " ".join(row["modes"]), row["reason"]])
+    return _text(heads, rows)
+
+
+SHEETS: dict[str, Callable[[Named, str], str]] = {"stations": stations, "duct": duct, "sensitivities": sensitivities}
 """What a row of the CSV of `solve` is -> what writes it."""
 
 

@@ -12,13 +12,16 @@ import cycle
 from cycle.case import read_setting
 from cycle.errors import CaseError, DuctwalkError, Fault
 from cycle.record import Json, dumps, is_stored, record, refused, stored, write
+from cycle.sensitivity import plain
 from tui import sheets
+from tui.influence import sensitivity_blocks
 from tui.output import emit, load_case, tell
 from tui.tables import as_markdown, as_text
 from tui.text import audit_words, headline_words, walk_blocks
 
 if TYPE_CHECKING:
     from cycle.result import Walk
+    from cycle.sensitivity import Sensitivities
 
 SOLVED, BAD_INPUT, NO_SOLUTION, AUDIT_FAILED = 0, 2, 3, 4
 
@@ -36,6 +39,8 @@ def run(options: argparse.Namespace) -> int:
     """Solve the cases of the command line and write them; returns the exit status, the highest of all cases."""
     if options.rows != "stations" and options.format != "csv":
         raise DuctwalkError(f"--rows {options.rows} is for --format csv")
+    if options.sensitivities and options.format == "csv":
+        raise DuctwalkError("--sensitivities is for text, json and markdown; for csv use --rows sensitivities")
     if options.output:
         _check_output(options.output, options.cases)
     changes = settings(options.set)
@@ -115,7 +120,8 @@ def _plain_form(render: Callable[..., str]) -> Callable[[Iterable[Outcome], int,
         for found in outcomes:
             if found.walk is None:
                 continue
-            if not emit(gap + render(walk_blocks(found.walk, options.units, options.referee))):
+            more = sensitivity_blocks(_sensitivities(found.walk), options.units) if options.sensitivities else ()
+            if not emit(gap + render(walk_blocks(found.walk, options.units, options.referee, more))):
                 return
             gap = "\n\n"
 
@@ -123,16 +129,28 @@ def _plain_form(render: Callable[..., str]) -> Callable[[Iterable[Outcome], int,
 
 
 def _json_form(outcomes: Iterable[Outcome], count: int, options: argparse.Namespace) -> None:
-    found = [_json(o, options.referee) for o in outcomes]
+    found = [_json(o, options.referee, options.sensitivities) for o in outcomes]
     emit(dumps(found if count > 1 else found[0]))
 
 
-def _json(found: Outcome, referee: bool) -> Json:
-    return refused(found.name, found.faults) if found.walk is None else record(found.walk, referee)
+def _sensitivities(walk: Walk) -> Sensitivities:
+    return cycle.sensitivities(walk.case, walk, apart=True)
+
+
+def _json(found: Outcome, referee: bool, sensitive: bool) -> Json:
+    if found.walk is None:
+        return refused(found.name, found.faults)
+    walked = record(found.walk, referee)
+    if sensitive:
+        told = _sensitivities(found.walk)
+        walked["sensitivities"] = plain(told)
+        walked["reasons"] |= {"sensitivities": told.why_not} if told.why_not else {}
+    return walked
 
 
 def _csv_form(outcomes: Iterable[Outcome], count: int, options: argparse.Namespace) -> None:
-    emit(sheets.SHEETS[options.rows]([(o.name, _json(o, False)) for o in outcomes], options.units))
+    records = [(o.name, _json(o, False, options.rows == "sensitivities")) for o in outcomes]
+    emit(sheets.SHEETS[options.rows](records, options.units))
 
 
 FORMS: dict[str, Callable[[Iterable[Outcome], int, argparse.Namespace], None]] = {

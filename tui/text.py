@@ -62,16 +62,16 @@ def settled(values: list[float]) -> list[float]:
     return [0.0 if abs(v) < _NOISE * largest else v for v in values]
 
 
-def walk_blocks(walk: Walk, system: str, referee: bool) -> list[Block]:
+def walk_blocks(walk: Walk, system: str, referee: bool, more: Iterable[Block] = ()) -> list[Block]:
     """Everything the walk of one point says, as blocks.
 
-    walk: of shape (). system: "si" or "us". referee: whether the referee's line is asked for.
+    walk: of shape (). system: "si" or "us". referee: whether the referee's line is asked for. more: blocks ahead of the inputs.
     """
     parts: tuple[Callable[[Walk, str], Iterable[Block]], ...] = (
         _opening, _headline, _modes, _stations, _composition, _processes, _own_figures, _along, _potentials, _losses, _exergy, _limits,
     )  # fmt: skip
     blocks = [block for part in parts for block in part(walk, system)]
-    return [*blocks, *_checks(walk, referee), *_inputs(walk, system), Heading("Caution"), Lines((CAUTION,))]
+    return [*blocks, *_checks(walk, referee), *more, *_inputs(walk, system), Heading("Caution"), Lines((CAUTION,))]
 
 
 def headline_words(walk: Walk) -> str:

@@ -127,12 +127,13 @@ def _formula(facts: Facts) -> Iterator[Fault]:
         yield Fault("", "fuel.formula", str(error))
 
 
-def _corridor(facts: Facts) -> Iterator[Fault]:
+def corridor(facts: Facts) -> Iterator[Fault]:
+    """The lowest and the highest dynamic pressure of the corridor. Parameters: facts."""
     low, high = facts.number("limits.dynamic_pressure_low"), facts.number("limits.dynamic_pressure_high")
     if low is not None and high is not None and low > high:
         given = f"{low:.6g} Pa, above the highest {high:.6g} Pa"
         yield Fault("", "limits.dynamic_pressure_low", "the corridor is upside down", given, "at most limits.dynamic_pressure_high")
 
 
-JOINT_RULES = (_fractions, _throat, _given_throat, _freezing, _mode, _lip, _rows, _perimeter, _fuel, _formula, _corridor)
+JOINT_RULES = (_fractions, _throat, _given_throat, _freezing, _mode, _lip, _rows, _perimeter, _fuel, _formula, corridor)
 """Rules that join several values; each takes Facts and yields faults."""

@@ -75,6 +75,17 @@ def _changed(table: Input, row: Mapping[str, object], column: Input, value: obje
     return kept if value is None else {**kept, column.key: value}
 
 
+def other_shares(rows: Sequence[Mapping[str, float]], mine: int, share: float) -> dict[int, float]:
+    """What the other injectors' shares become when one changes: in their old proportion, so that all sum to one.
+
+    Parameters: rows, the injectors; mine, place of the changed one, from 0; share, its new one. Returns: place -> share.
+    """
+    rest = [i for i in range(len(rows)) if i != mine]
+    old = sum(rows[i]["share"] for i in rest)
+    even = 1.0 / len(rest) if rest else 0.0
+    return {i: (1.0 - share) * (rows[i]["share"] / old if old > 0.0 else even) for i in rest}
+
+
 def _any(wrong: Any) -> bool:
     return bool(wrong.any()) if hasattr(wrong, "any") else bool(wrong)
 

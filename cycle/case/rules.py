@@ -289,6 +289,18 @@ def bounds(entry: Input) -> str:
     return f"{'a whole number, ' if entry.whole else ''}{words} {si_unit(entry.unit)}".rstrip()
 
 
+def outside(entry: Input, value: float) -> bool:
+    """Whether a number lies beyond the bounds of its input, or is none where only whole ones are."""
+    beyond = (
+        entry.lower is not None and value < entry.lower,
+        entry.above is not None and value <= entry.above,
+        entry.upper is not None and value > entry.upper,
+        entry.below is not None and value >= entry.below,
+        entry.whole and not value.is_integer(),
+    )
+    return any(beyond)
+
+
 _KINDS = {
     "flag": "true",
     "text": "text, at most 40 characters",

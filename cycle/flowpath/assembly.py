@@ -24,7 +24,10 @@ from cycle.flowpath.stream import SOLVED, STATUS_CODE, Process, Step, Steps, Str
 _PANEL = 4
 """Slices to a panel of the march."""
 
-_FEW = 64
+_BESIDE = 1e-15
+"""Distance, over the duct's length, of two rows that are one place."""
+
+_FEW = 16
 """Points up to which the total pressure along the duct is found, too."""
 
 
@@ -102,9 +105,11 @@ def _area_law(setting: Setting, entry: Array) -> AreaLaw:
         rows.append(setting[key] / entry if setting.has(key) else setting[f"{key}_ratio"])
     perimeter = cells(setting, "combustor.area", "perimeter")
     ratios = np.array(rows)
-    if np.any(x[0] > 0.0):
-        one = np.ones((1, setting.size))
-        x, ratios = np.concatenate([0.0 * one, x]), np.concatenate([one, ratios])
+    later = x[0] > 0.0
+    if np.any(later):
+        # the points of the batch whose table begins at the entry get a second row beside their first
+        ratios = np.concatenate([[np.where(later, 1.0, ratios[0])], ratios])
+        x = np.concatenate([[0.0 * x[0]], [np.where(later, x[0], _BESIDE * x[-1])], x[1:]])
         perimeter = None if perimeter is None else np.concatenate([perimeter[:1], perimeter])
     if perimeter is not None:
         return AreaLaw(x, ratios, "tabulated", perimeter=perimeter)
@@ -127,11 +132,12 @@ def _injectors(setting: Setting) -> Injectors:
     count = 1 if x is None else x.shape[0]
     one = np.ones((count, setting.size))
     share, speed = cells(setting, "combustor.injector", "share"), cells(setting, "combustor.injector", "axial_speed")
+    share = one if share is None else share / share.sum(0)  # a sum of 1 to the digits that were typed
     own = setting.get("combustor.burning_length", np.nan)
     length = np.array([setting.get(f"combustor.injector.{i + 1}.length", np.nan) for i in range(count)])
     return Injectors(
         0.0 * one if x is None else x,
-        one if share is None else share,
+        share,
         0.0 * one if speed is None else speed,
         setting["combustor.burning_theta"] * one,
         np.where(np.isnan(length), own, length),

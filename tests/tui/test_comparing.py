@@ -15,8 +15,8 @@ import cycle
 from cycle.compare import Side, compare
 from cycle.errors import CaseError
 from cycle.record import read_stored, stored
-from tests.tui.command_support import DUCT
-from tui.comparing import comparison_blocks, percent
+from tests.tui.command_support import DUCT, QUICK
+from tui.comparing import comparison_blocks, percent, share_blocks
 from tui.tables import as_text, columns
 
 KEPT = stored(cycle.solve(cycle.loads(DUCT, "duct")), "1.2.3")
@@ -58,6 +58,30 @@ def test_any_change_is_compared_or_refused(way: tuple[Any, ...], value: Any, dro
     sides = [Side(s.name, s.walk, s.version, s.species_data) for s in (back, *read_stored(json.dumps(KEPT).encode(), "kept.json"))]
     for line in as_text(comparison_blocks(compare(sides), "us")).splitlines():
         assert columns(line) <= 80
+
+
+LEAN = stored(cycle.solve(cycle.loads(QUICK, "lean")), "1.2.3")
+RICH = Side(
+    "rich", stored(cycle.solve(cycle.loads(QUICK.replace("fuel_air_ratio = 0.010", "fuel_air_ratio = 0.012"))), "1")["walk"], "1", "a"
+)
+INSIDE = [way for way in places(LEAN) if way[:2] == ("walk", "case") and len(way) > 3]
+
+
+@settings(deadline=None, max_examples=60)
+@given(st.sampled_from(INSIDE), VALUES)
+def test_a_changed_case_is_shared_out_or_said_to_be_none(way: tuple[Any, ...], value: Any) -> None:
+    data = copy.deepcopy(LEAN)
+    table: Any = data
+    for step in way[:-1]:
+        table = table[step]
+    table[way[-1]] = value
+    try:
+        (back,) = read_stored(json.dumps(data).encode(), "odd.json")
+    except CaseError:
+        return
+    text = as_text(share_blocks([Side(back.name, back.walk, back.version, back.species_data), RICH], "si"))
+    assert "Not assessed: " in text or "in all" in text
+    assert max(map(columns, text.splitlines())) <= 80
 
 
 @pytest.mark.parametrize(

@@ -1,0 +1,206 @@
+"""Where the difference between two cases comes from: shares by groups of inputs, swapped over all orders.
+
+The share of a group is what swapping it adds, averaged over all orders in which the groups can be swapped: the shares add
+up to the difference, equal groups have equal ones, and a group that changes nothing has none.
+Source: Shapley, A value for n-person games, Annals of Mathematics Studies 28 (1953) 307.
+"""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Callable, Iterable, Mapping, Sequence
+from dataclasses import dataclass
+from itertools import combinations
+from typing import TYPE_CHECKING
+
+import numpy as np
+
+from cycle.case import INPUT_GROUPS, Case, differences, taking
+from cycle.case.difference import group_of
+from cycle.errors import CaseError
+from cycle.flowpath.setting import FIXED_IN_BATCH
+from cycle.quantities import HEADLINE, INPUTS
+from cycle.result import solve
+
+if TYPE_CHECKING:
+    from cycle.arrays import ArrayLike
+
+Groups = frozenset[str]
+"""Names of the groups that are taken from the second case."""
+
+
+@dataclass(frozen=True, slots=True)
+class Part:
+    """What one group of inputs, or several that are taken together, has of the difference.
+
+    groups: names of `INPUT_GROUPS`; keys: inputs and groups that differ in them; shares: output -> share of the difference, SI.
+    """
+
+    groups: tuple[str, ...]
+    keys: tuple[str, ...]
+    shares: Mapping[str, float]
+
+
+@dataclass(frozen=True, slots=True)
+class Shares:
+    """What `shares` found. outputs: headline figures that both cases have; first and second: their values, SI; notes: which groups are
+    taken together and why; why_not: why nothing is shared out, or ""."""
+
+    parts: tuple[Part, ...]
+    outputs: tuple[str, ...]
+    first: Mapping[str, float]
+    second: Mapping[str, float]
+    notes: tuple[str, ...] = ()
+    why_not: str = ""
+
+
+@dataclass(frozen=True, slots=True)
+class _Corner:
+    """One combination: its figures, or why it has none."""
+
+    figures: Mapping[str, float]
+    why: str = ""
+
+
+def shares(a: Case, b: Case) -> Shares:
+    """Where the headline figures of b less those of a come from.
+
+    Parameters: a, b, two cases.
+    Returns: `Shares`; groups that differ are swapped in every combination, 256 at most. Groups of which a combination is no
+    case, or has no solution, are taken together, and the notes say so; where nothing is left to share out `why_not` does.
+    """
+    if a.choices["start"] != b.choices["start"]:
+        return Shares((), (), {}, {}, (), "a flight and a rig have no headline figure in common")
+    keys = _keys(a, b)
+    groups = [group for group in INPUT_GROUPS if group in keys]
+    outputs = HEADLINE[a.choices["start"]]
+    corners = _corners(a, b, groups, outputs)
+    first, second = corners[frozenset()], corners[frozenset(groups)]
+    shown = tuple(key for key in outputs if not any(math.isnan(end.figures.get(key, math.nan)) for end in (first, second)))
+    why = _nothing(a, b, groups, first, second, shown)
+    players, notes = ([(group,) for group in groups], []) if why else _together(groups, _lost(corners, shown))
+    if not why and len(players) == 1 < len(groups):
+        why = "no group can be swapped without the others"
+    found = {} if why else {key: _of(players, corners, key) for key in shown}
+    parts = (Part(p, tuple(k for g in p for k in keys[g]), {key: found[key][i] for key in found}) for i, p in enumerate(players))
+    return Shares(tuple(parts), shown, dict(first.figures), dict(second.figures), tuple(notes), why)
+
+
+def _of(players: Sequence[tuple[str, ...]], corners: Mapping[Groups, _Corner], key: str) -> tuple[float, ...]:
+    def value(taken: frozenset[int]) -> float:
+        return corners[frozenset(group for i in taken for group in players[i])].figures[key]
+
+    return shapley(len(players), value)
+
+
+def shapley(count: int, value: Callable[[frozenset[int]], float]) -> tuple[float, ...]:
+    """Shapley's shares of a game.
+
+    Parameters: count, number of players; value, of every set of players. Returns: the share of each; they sum to the value
+    of all less that of none, to rounding.
+    """
+    sets = [frozenset(chosen) for size in range(count + 1) for chosen in combinations(range(count), size)]
+    values = {taken: value(taken) for taken in sets}
+    weight = [1.0 / (count * math.comb(count - 1, size)) for size in range(count)]
+    return tuple(
+        math.fsum(weight[len(s)] * sign * v for s in sets if i not in s for sign, v in ((1.0, values[s | {i}]), (-1.0, values[s])))
+        for i in range(count)
+    )
+
+
+def _keys(a: Case, b: Case) -> dict[str, list[str]]:
+    """Group -> the inputs of it that differ."""
+    found: dict[str, list[str]] = {}
+    for key, _, _ in differences(a, b):
+        found.setdefault(group_of(key), []).append(key)
+    return found
+
+
+def _nothing(a: Case, b: Case, groups: Sequence[str], first: _Corner, second: _Corner, shown: Sequence[str]) -> str:
+    """Why there is no difference to share out; "" where there is."""
+    for case, corner in ((a, first), (b, second)):
+        if corner.why:
+            return f"{case.name}: {corner.why}"
+    if not groups:
+        return "the inputs do not differ"
+    return "" if shown else "no headline figure has a value on both sides"
+
+
+def _lost(corners: Mapping[Groups, _Corner], shown: Iterable[str]) -> dict[Groups, str]:
+    """Combinations without a value of every figure, and why."""
+    gaps = {taken: [key for key in shown if math.isnan(corner.figures.get(key, math.nan))] for taken, corner in corners.items()}
+    words = {taken: corners[taken].why or (f"no value of {missing[0]}" if missing else "") for taken, missing in gaps.items()}
+    return {taken: why for taken, why in words.items() if why}
+
+
+def _corners(a: Case, b: Case, groups: Sequence[str], outputs: Sequence[str]) -> dict[Groups, _Corner]:
+    """Every combination of groups taken from b, solved: in one batch those that share their choices."""
+    found: dict[Groups, _Corner] = {}
+    alike: dict[object, list[tuple[Groups, Case]]] = {}
+    for taken in (frozenset(chosen) for size in range(len(groups) + 1) for chosen in combinations(groups, size)):
+        try:
+            mixed = {0: a, len(groups): b}.get(len(taken)) or taking(a, b, taken)
+        except CaseError as error:
+            found[taken] = _Corner({}, f"no case, {error.faults[0].text}")
+            continue
+        alike.setdefault(_likeness(mixed), []).append((taken, mixed))
+    for same in alike.values():
+        found.update(zip((taken for taken, _ in same), _solved([case for _, case in same], outputs), strict=True))
+    return found
+
+
+def _likeness(case: Case) -> object:
+    """What cases must have in common to be solved in one batch."""
+    fuel = tuple(case.numbers.get(key) for key in FIXED_IN_BATCH) if case.choices["fuel.identity"] == "formula" else ()
+    parts = (case.choices, case.texts, case.fractions)
+    return (*(tuple(sorted(part.items())) for part in parts), frozenset(case.numbers), fuel, case.numbers.get("combustor.slices"))
+
+
+def _solved(cases: Sequence[Case], outputs: Sequence[str]) -> list[_Corner]:
+    """Cases that differ in numbers only."""
+    first = cases[0]
+    varying = {key for key in first.numbers if len({case.numbers[key] for case in cases}) > 1}
+    for entry in INPUTS:
+        if entry.follows in varying and entry.key in first.numbers:
+            varying.add(entry.key)  # else it would follow in the batch where some of the cases give it
+    arrays: dict[str, ArrayLike] = {key: np.array([case.numbers[key] for case in cases]) for key in first.numbers if key in varying}
+    walk = solve(first, arrays)
+    figures = {key: np.ravel(walk.performance[key]).tolist() for key in outputs}
+    status, place = ([walk.status], [walk.failed_process]) if walk.shape == () else (walk.status, walk.failed_process)
+    whys = ("" if found == "solved" else f"no solution, {found} ({where})" for found, where in zip(status, place, strict=True))
+    return [_Corner({key: figures[key][i] for key in outputs}, why) for i, why in enumerate(whys)]
+
+
+def _together(groups: Sequence[str], lost: Mapping[Groups, str]) -> tuple[list[tuple[str, ...]], list[str]]:
+    """The finest way to join groups so that no combination of them is lost, and why each that is joined is."""
+    masks = {sum(1 << groups.index(group) for group in taken): why for taken, why in lost.items()}
+    blocks = next(blocks for blocks in sorted(_partitions(len(groups)), key=len, reverse=True) if not any(_whole(m, blocks) for m in masks))
+    notes: list[str] = []
+    for block in (b for b in blocks if b.bit_count() > 1):
+        torn = min((m for m in masks if m & block not in (0, block)), key=lambda m: (m.bit_count(), m))
+        alone = _and(_named(groups, torn))
+        notes.append(f"{_and(_named(groups, block))} are taken together: with {alone} alone swapped there is {masks[torn]}")
+    return [_named(groups, block) for block in blocks], notes
+
+
+def _partitions(count: int) -> list[tuple[int, ...]]:
+    """Every way to divide players among blocks; a block is the sum of 2**i over its players."""
+    found: list[tuple[int, ...]] = [()]
+    for i in range(count):
+        new = [(*blocks, 1 << i) for blocks in found]
+        joined = [(*blocks[:k], blocks[k] | 1 << i, *blocks[k + 1 :]) for blocks in found for k in range(len(blocks))]
+        found = [*new, *joined]
+    return found
+
+
+def _whole(mask: int, blocks: Sequence[int]) -> bool:
+    """Whether a combination tears no block apart."""
+    return all(mask & block in (0, block) for block in blocks)
+
+
+def _named(groups: Sequence[str], mask: int) -> tuple[str, ...]:
+    return tuple(group for i, group in enumerate(groups) if mask >> i & 1)
+
+
+def _and(names: Sequence[str]) -> str:
+    return names[0] if len(names) == 1 else f"{', '.join(names[:-1])} and {names[-1]}"
