@@ -22,7 +22,7 @@ from cycle.case.moves import Refusal, moved
 from cycle.flowpath.setting import FIXED_IN_BATCH
 from cycle.quantities import STATUSES, Input, input_of
 from cycle.result import solve
-from cycle.units import format_number, show
+from cycle.units import format_number
 from cycle.walk import March
 
 Kind = Literal["zero", "jump", "edge", "none"]
@@ -54,18 +54,18 @@ class Reached:
 
     limit: its key; input: what is varied; now: its value, SI, NaN where the case has none; kind: "zero", a value at which the margin is
     zero; "jump", one at which it changes sign without being zero; "edge", the last one with a solution; "none", no such place within
-    reach; value: that value, SI, NaN for "none"; margin: the margin there; status: what becomes of the walk behind an edge; words: the
-    same for a reader, in SI.
+    reach; value: that value, SI, NaN for "none"; margin: the margin there; status: what becomes of the walk behind an edge; words: what
+    stands behind an edge, or why there is none, "" else.
     """
 
     limit: str
     input: Input
     now: float
     kind: Kind
-    value: float
-    margin: float
-    status: str
-    words: str
+    value: float = math.nan
+    margin: float = math.nan
+    status: str = ""
+    words: str = ""
 
 
 @dataclass(frozen=True, slots=True)
@@ -144,7 +144,7 @@ def search(case: Case, limit: str, key: str) -> Iterator[Reached | None]:
 
 
 def _none(limit: str, spec: Input, now: float, words: str) -> Reached:
-    return Reached(limit, spec, now, "none", math.nan, math.nan, "", words)
+    return Reached(limit, spec, now, "none", words=words)
 
 
 class _Tries:
@@ -250,7 +250,7 @@ class _Tries:
         safe = self._short(safe, math.copysign(1.0, safe.x - other.x), kind)
         margin = 0.0 if self.by_status and kind == "zero" else safe.margin
         status = "" if other.known else other.status
-        return Reached(self.limit, self.spec, self.now, kind, safe.x, margin, status, self._words(kind, safe.x, margin, status))
+        return Reached(self.limit, self.spec, self.now, kind, safe.x, margin, status, _BEHIND.get(status, ""))
 
     def _short(self, safe: _Point, side: float, kind: Kind) -> _Point:
         """The safe end, moved away from the limit to a number of few digits that serves as well."""
@@ -260,15 +260,6 @@ class _Tries:
         most = ZERO if kind == "zero" and not self.by_status else math.inf
         near = (p for x in short if (p := self.points[x]).known and abs(x - safe.x) <= ZERO * abs(safe.x))
         return next((p for p in near if least <= p.margin <= most), safe)
-
-    def _words(self, kind: Kind, value: float, margin: float, status: str) -> str:
-        number, unit = show(value, self.spec.unit, "si", self.spec.key)
-        at, left = f"{self.spec.label} {format_number(number, 6)} {unit}".rstrip(), f"margin {format_number(100.0 * margin, 3)} %"
-        return {
-            "zero": f"{at}: the limit is just reached",
-            "jump": f"{at}: the margin jumps over zero there; {left} on the safe side",
-            "edge": f"not reached; beyond {at} ({left}) {_END.get(status, '')}",
-        }[kind]
 
     def _nothing(self) -> str:
         """What the margin does over the range where no place was met."""
@@ -281,7 +272,7 @@ class _Tries:
         return f"not reached within the bounds of {self.spec.label}: margin {low} to {high} %"
 
 
-_END = {
+_BEHIND = {
     **STATUSES,
     "solved": "the limit has no value",
     "bound": "the input is out of bounds",

@@ -5,7 +5,7 @@ Some figures of a station are computed when first asked for; asking here keeps t
 
 from __future__ import annotations
 
-from collections.abc import Callable, Mapping
+from collections.abc import Callable, Iterator, Mapping
 from dataclasses import dataclass, field, replace
 from typing import TYPE_CHECKING, Any
 
@@ -13,6 +13,8 @@ from cycle.quantities import OUTPUTS, RESTORES, STATUSES
 
 if TYPE_CHECKING:
     from cycle.case import Case
+    from cycle.limit_solving import Reached
+    from cycle.sensitivity import Sensitivities
 
 STATION_KEYS = tuple(o.key for o in OUTPUTS if o.where == "station")
 DEAR = ("critical_pressure", "critical_temperature", "critical_area_ratio")
@@ -192,6 +194,20 @@ def solve(case: Case) -> Figures:
 def heat_limits(figures: Figures) -> dict[str, float]:
     """The heat input at which a duct leaves each regime, SI. Slow; call it in the worker thread."""
     return {name: float(value) for name, value in figures.walk.heat_limits.items()}
+
+
+def influence(figures: Figures) -> Sensitivities:
+    """What a step of each input does to the headline figures of a walk. Slow; call it in the worker thread."""
+    from cycle.sensitivity import sensitivities
+
+    return sensitivities(figures.walk.case, figures.walk)
+
+
+def reaching(case: Case, limit: str, key: str) -> Iterator[Reached | None]:
+    """Where a limit is just reached along an input, in pieces, see `cycle.limit_solving.search`. Call its steps in the worker thread."""
+    from cycle.limit_solving import search
+
+    yield from search(case, limit, key)
 
 
 def referee(figures: Figures) -> str:

@@ -8,7 +8,7 @@ from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
 from cycle.quantities import GROUP, INPUT, Group, Input, input_of
-from cycle.units import format_number, respell, show
+from cycle.units import display_unit, format_number, respell, show
 from tui import rows
 from tui.session import Change, Entry, Session, columns_of
 
@@ -244,16 +244,17 @@ def way_label(group: str, tag: str) -> str:
     return " and ".join(INPUT[k].label for k in ways[0].keys) if len(ways) == 1 else tag.replace("-", " ")
 
 
-def bounds(spec: Input, system: str) -> str:
-    """Bounds and step of a number in words, in the display unit."""
+def bounds(spec: Input, system: str, step: bool = True) -> str:
+    """Bounds and, where asked for, the step of a number in words, in the display unit."""
     if spec.kind != "number":
         return ""
     low = spec.lower if spec.lower is not None else spec.above
     high = spec.upper if spec.upper is not None else spec.below
     shown = [format_number(show(v, spec.unit, system, spec.key)[0], 4) for v in (low, high) if v is not None]
     unit = show(0.0, spec.unit, system, spec.key)[1]
-    step = show(spec.step, spec.unit, system, spec.key)[0] - show(0.0, spec.unit, system, spec.key)[0]
-    return f"{' to '.join(shown)} {unit}".strip() + f", step {format_number(step, 3)}"
+    said = f"{' to '.join(shown)} {unit}".strip()
+    factor = display_unit(spec.unit, system, spec.key).factor
+    return f"{said}, step {format_number(spec.step / factor, 3)}" if step else said
 
 
 def describe(before: Case, after: Case, change: Change, system: str) -> str:

@@ -16,6 +16,7 @@ from tui.figures import STATIONS, Figures, carried
 
 if TYPE_CHECKING:
     from cycle.case import Case
+    from cycle.sensitivity import Sensitivities
 
 Change = dict[str, Any]
 """What a user asked of a case, as plain data: {"set": {key: value}} or {"switch": [group, tag, value]}."""
@@ -45,6 +46,14 @@ class Past:
 
 
 @dataclass(frozen=True, slots=True)
+class Influence:
+    """Sensitivities as they came: generation, that of the case they are of; found, see `cycle.sensitivity.Sensitivities`."""
+
+    generation: int
+    found: Sensitivities
+
+
+@dataclass(frozen=True, slots=True)
 class Entry:
     """A field being typed in: the input's key, text, caret position, the unit a bare number is in, whether the next
     character types over all, the group tag that a commit switches to ("" for none), and the words of a fault."""
@@ -62,8 +71,8 @@ class Entry:
 class Session:
     """Everything the screen shows. generation: number of the case's latest change; solved: the generation that
     `figures` belong to; good: the last walk with a solution; saved: the case as it stands in the file; borders: the heat input at
-    which a duct leaves each regime, None until they are solved for; influence: the sensitivities of the walk that `figures` are of,
-    None until they are there; watched: the figure that graphs and sensitivities show, "" for the case's own first choice;
+    which a duct leaves each regime, None until they are solved for; influence: sensitivities, those of the case before until the new
+    ones are there, None before the first; watched: the figure that graphs and sensitivities show, "" for the case's own first choice;
     actions: with the keys that hold."""
 
     path: str
@@ -86,7 +95,7 @@ class Session:
     view: int = 0
     referee: str = ""
     borders: Mapping[str, float] | None = None
-    influence: Any = None
+    influence: Influence | None = None
     watched: str = ""
     note: str = "reading the case ..."
     faults: tuple[str, ...] = ()
@@ -122,7 +131,7 @@ def apply(case: Case, change: Change) -> Case:
 def loaded(session: Session, case: Case, stamp: Any) -> Session:
     """The session with the case of the file, nothing undone yet."""
     start = columns_of(case)[0]
-    return replace(session, case=case, saved=case, stamp=stamp, generation=session.generation + 1, station=start, note="")
+    return replace(session, case=case, saved=case, stamp=stamp, generation=session.generation + 1, station=start, influence=None, note="")
 
 
 def _with_case(session: Session, case: Case, note: str) -> Session:
@@ -137,7 +146,6 @@ def _with_case(session: Session, case: Case, note: str) -> Session:
         entry=None,
         referee="",
         borders=None,
-        influence=None,
         note=note,
         faults=(),
     )
@@ -199,6 +207,11 @@ def pinned(session: Session) -> Session:
 def toggled(session: Session) -> Session:
     """The session in the other unit system."""
     return replace(session, system="us" if session.system == "si" else "si", entry=None, note="")
+
+
+def influenced(session: Session, influence: Influence) -> Session:
+    """The session with sensitivities that came; stale ones change nothing."""
+    return replace(session, influence=influence) if influence.generation == session.generation else session
 
 
 def columns_of(case: Case | None) -> tuple[str, ...]:

@@ -10,6 +10,7 @@ from time import monotonic
 from textual.screen import Screen
 
 from cycle.errors import CaseError
+from cycle.quantities import GROUPS
 from tui import figures, items, session
 from tui.engine import Engine
 from tui.journal import Journal
@@ -23,6 +24,9 @@ PATIENCE = 0.1
 
 SLOW = 0.5
 """Seconds after which a solve is announced."""
+
+HELD = 0.25
+"""Seconds between two steps up to which the key counts as held; sensitivities wait until it has rested for as long."""
 
 
 def fault_words(error: CaseError, beside: str = "") -> tuple[str, ...]:
@@ -48,6 +52,13 @@ class Desk(Screen[None], inherit_bindings=False):
         self._painted = 0.0
         self._later: asyncio.TimerHandle | None = None
         self._slow: asyncio.TimerHandle | None = None
+        self._held = False
+        self._stepped = 0.0
+        self._rest: asyncio.TimerHandle | None = None
+
+    def action_do(self, name: str) -> None:
+        """Run an action of `tui.actions`. The main screen says how."""
+        raise NotImplementedError
 
     def paint(self) -> None:
         """Paint the session. The main screen says how."""
@@ -113,6 +124,8 @@ class Desk(Screen[None], inherit_bindings=False):
             self.session = replace(new, note=self.journal.failure or new.note)
             self.solve()
         self._rapid = rapid and changed
+        if changed:
+            self._held, self._stepped = rapid and monotonic() - self._stepped < HELD, monotonic()
         if self._rapid:
             self._paint_within(max(PATIENCE, self._painted + PAINT_EVERY - monotonic()))
         else:
@@ -135,18 +148,47 @@ class Desk(Screen[None], inherit_bindings=False):
             self.put(replace(self.session, note=ASSESSING if self.session.settled else SOLVING))
 
     def came(self, generation: int, found: figures.Figures) -> None:
-        """Take a walk that the worker solved or assessed; a stale one is dropped. A solved one is assessed next. While
-        a key is held, paints are spaced."""
+        """Take a walk that the worker solved or assessed; a stale one is dropped. A solved one is assessed and weighed next, when it
+        is painted: the second lane would hold the paint up. While a key is held, paints are spaced."""
         new = session.with_figures(self.session, generation, found)
         if new is self.session:
             return
         self.session = new
         if not found.assessed:
-            self.engine.newest("assess", generation, lambda: figures.assess(found))
+            self.call_after_refresh(self._second_pass, generation, found)
         elif self._slow is not None:
             self._slow.cancel()
+        self.paint_spaced()
+
+    def paint_spaced(self) -> None:
+        """Paint what a thread gave: at once, or spaced while a step key is held."""
         wait = self._painted + PAINT_EVERY - monotonic()
         if self._rapid and wait > 0.0:
             self._paint_within(wait)
         else:
             self.paint_now()
+
+    def _second_pass(self, generation: int, found: figures.Figures) -> None:
+        """Ask for what costs more than the walk: limits and audit, then the sensitivities."""
+        if generation != self.session.generation:
+            return
+        self.engine.newest("assess", generation, lambda: figures.assess(found))
+        if self._rest is not None:
+            self._rest.cancel()
+        if self._held:
+            self._rest = self.after(HELD, lambda: self._weigh(generation, found))
+        else:
+            self._weigh(generation, found)
+
+    def _weigh(self, generation: int, found: figures.Figures) -> None:
+        if generation == self.session.generation:
+            self.engine.newest("influence", generation, lambda: figures.influence(found))
+
+    def _take_in_hand(self, key: str) -> None:
+        """Go to an input, or to the way its group is said where the case has not this one, and bring the focus there."""
+        station = items.home(self.session, key)
+        groups = {g.name for g in GROUPS if any(key in m.keys for m in g.members)}
+        there = replace(self.session, station=station, focus="inputs")
+        here = items.items(there)
+        known = next((i.key for i in here if i.key == key), "") or next((i.key for i in here if {i.group, i.key} & groups), key)
+        self.put(replace(there, inputs={**there.inputs, station: known}))

@@ -110,6 +110,7 @@ class MainScreen(Editing, Filing, Peeking, Plotting, Ranking, Asking, Pinning, B
     def walked(self, result: Result) -> None:
         """A solve or an assessment came back."""
         self.came(result.generation, result.value)
+        self.repaint_list()
 
     def refereed(self, result: Result) -> None:
         """The referee's words came back."""
@@ -223,10 +224,6 @@ class MainScreen(Editing, Filing, Peeking, Plotting, Ranking, Asking, Pinning, B
         self.engine.do("referee", self.session.generation, lambda: figures.referee(found))
         self.put(replace(self.session, referee="referee asked ...", note=""))
 
-    def do_why(self) -> None:
-        """The page of limits, audit and accounts."""
-        self.app.push_screen(Page("Limits, audit and where the thrust went", telling.limits(self.session)))
-
     def do_duct(self) -> None:
         """The page of the flow along the duct; the heat at the borders of its regimes is solved for when it opens."""
         found = self.session.figures
@@ -277,6 +274,8 @@ HANDLERS: dict[str, Callable[[MainScreen, Result], None]] = {
     "referee": MainScreen.refereed,
     "borders": MainScreen.bordered,
     "explain": MainScreen.explained,
+    "influence": MainScreen.weighed,
+    "limit": MainScreen.sought,
 }
 """Kind of a job -> what takes its result."""
 

@@ -1,15 +1,14 @@
-"""Pages of words: the keys, and the limits with what restores them."""
+"""Pages of words: the keys, and the accounts of a walk."""
 
 from __future__ import annotations
 
 from tui.actions import Action, key_of, spelled
-from tui.figures import Figures, Margin
+from tui.figures import Figures
 from tui.keymap import path
 from tui.line import BOLD, OVER, Line, clean, line, wrap
 from tui.screens.page import Body, text_body
 from tui.session import Session
 from tui.views.numbers import quantity
-from tui.views.side import STYLE, by_margin, margin_words
 
 LEAD = 16
 """Columns of the keys on their page."""
@@ -55,31 +54,18 @@ _LISTS = (
 _MARKS = "d marks a default. Values in ( ) are of the previous inputs. Not assessed is never fine."
 
 
-def _limit(limit: Margin, system: str) -> list[str]:
-    actual = quantity(limit.actual, limit.unit, system)
-    allowed = quantity(limit.allowed, limit.unit, system)
-    told = [f"{limit.label}: {margin_words(limit)}; {actual} against {allowed}"]
-    return told + ([f"    {limit.restore}"] if limit.restore else [])
-
-
-def limits(session: Session) -> Body:
-    """Limits with the least margin first, the audit, the referee, and where the thrust potential went."""
+def accounts(session: Session) -> Body:
+    """The audit, the referee, where the thrust potential went, and figures without a value."""
 
     def body(wide: int) -> list[Line]:
         found = session.figures
-        if found is None:
-            return [line("no walk yet")]
-        out: list[Line] = []
-        for limit in by_margin(found):
-            told = text_body(_limit(limit, session.system))(wide)
-            out += [tuple((text, STYLE[limit.state]) for text, _ in row) for row in told]
-        return out + text_body(_accounts(found, session))(wide)
+        return [line("no walk yet")] if found is None else text_body(_accounts(found, session))(wide)
 
     return body
 
 
 def _accounts(found: Figures, session: Session) -> list[str]:
-    out = ["", f"audit {'ok' if found.audit_ok else 'FAILED'}: {found.audit}"]
+    out = [f"audit {'ok' if found.audit_ok else 'FAILED'}: {found.audit}"]
     out.append(clean(session.referee) or f"referee not asked; {key_of(session.actions, 'referee')} asks")
     if found.reason:
         out += ["", f"no solution: {found.reason}"]

@@ -10,6 +10,7 @@ from tui.items import Item, bounds, in_hand, items, way_label
 from tui.line import BOLD, CURSOR, DIM, OVER, PLAIN, UNDERLINE, Line, Piece, clean, fit, line, width, wrap
 from tui.rows import others, place_of
 from tui.session import Entry, Session
+from tui.views import moving
 from tui.views.table import ROWS
 
 NARROWEST = 38
@@ -114,7 +115,7 @@ def _words(session: Session) -> tuple[str, Style]:
         return session.note, BOLD
     if session.focus == "table":
         return _row_words(session), PLAIN
-    return _input_words(session), PLAIN
+    return _input_words(session), DIM if moving.stale(session) else PLAIN
 
 
 def _row_words(session: Session) -> str:
@@ -131,8 +132,10 @@ def _input_words(session: Session) -> str:
     other = "; ".join(w for w in (other, f"{add}, {remove}: a row more, less" if place_of(hand.key) is not None else "") if w)
     if hand.input is None:
         return f"{hand.label}: {hand.written}; {other}"
-    limits = bounds(hand.input, session.system)
-    return "; ".join(words for words in (limits, other, hand.input.meaning) if words)
+    moves = moving.of_input(session, hand.key)
+    limits = bounds(hand.input, session.system, step=not moves)
+    rest = "; ".join(words for words in (limits, other, hand.input.meaning) if words)
+    return f"{moves} | {rest}" if moves else rest
 
 
 def keys(session: Session, wide: int, height: int) -> list[Line]:

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from cycle.quantities import OUTPUT
-from cycle.units import format_number, show
+from cycle.units import display_unit, format_number, show
 
 
 def unit(key: str, system: str) -> str:
@@ -28,6 +28,13 @@ def difference(key: str, value: float, base: float, system: str, digits: int = 3
     if scale == 0.0 or abs(value - base) <= 1e-9 * scale:
         return "+0"
     return f"{'+' if change > 0 else ''}{format_number(change, digits)}"
+
+
+def offset(change: float, dimension: str, system: str, key: str = "", digits: int = 3) -> str:
+    """A change of a value, signed, with its display unit; "-" where there is none. Unlike a value it has no datum."""
+    unit = display_unit(dimension, system, key)
+    text = format_number(change / unit.factor, digits)
+    return text if change != change else f"{'+' if change >= 0.0 else ''}{text} {unit.label}".rstrip()
 
 
 def percent(value: float, base: float) -> str:

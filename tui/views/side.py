@@ -1,13 +1,18 @@
-"""What a wide terminal shows beside the table: limits by margin and where the thrust went."""
+"""What a wide terminal shows beside the table: limits by margin, what moves the watched figure, and where the thrust went."""
 
 from __future__ import annotations
 
 from tui.figures import Figures, Margin
 from tui.line import BOLD, DIM, NEAR, OVER, PLAIN, Line, clean, fit, line
 from tui.session import Session
+from tui.views import moving
 from tui.views.numbers import quantity
 
 STYLE = {"over": OVER, "near": NEAR, "ok": PLAIN, "not assessed": DIM}
+LEAST, MOST = 4, 8
+"""Lines of the sensitivities, their heading among them."""
+FEWEST = 3
+"""Lines of the limits."""
 
 
 def by_margin(found: Figures) -> list[Margin]:
@@ -21,13 +26,16 @@ def margin_words(limit: Margin) -> str:
 
 
 def lines(session: Session, wide: int, height: int) -> list[Line]:
-    """Both lists, the limits cut first where the height is short."""
+    """All three lists: the limits give way where the height is short, then where the thrust went."""
     found = session.figures
     if found is None:
         return []
-    went = _went(found, wide, session.system)
-    room = max(3, height - len(went) - 1)
-    return [*_limits(found, wide)[:room], line(""), *went][:height]
+    limits = _limits(found, wide)
+    whole = height >= len(limits) + MOST + len(found.potentials) + 1
+    went = _went(found, wide, session.system, whole)
+    room = max(FEWEST, height - len(went) - LEAST)
+    deep = max(LEAST, min(MOST, height - len(went) - len(limits)))
+    return [*_cut(found, limits, room, wide), *moving.most(session, wide, deep), *went][:height]
 
 
 def _pair(left: str, right: str, wide: int) -> str:
@@ -35,12 +43,28 @@ def _pair(left: str, right: str, wide: int) -> str:
 
 
 def _limits(found: Figures, wide: int) -> list[Line]:
-    rows = [line((_pair(m.label, margin_words(m), wide), STYLE[m.state])) for m in by_margin(found)]
-    return [line(("| limits by margin", BOLD)), *rows]
+    """A line for each assessed limit, one for all that are not."""
+    known = [m for m in by_margin(found) if m.state != "not assessed"]
+    rows = [line((_pair(m.label, margin_words(m), wide), STYLE[m.state])) for m in known]
+    lost = len(found.limits) - len(known)
+    last = [line((_pair("not assessed; w tells why", str(lost), wide), DIM))] if lost else []
+    return [line(("| limits by margin", BOLD)), *rows, *last]
 
 
-def _went(found: Figures, wide: int, system: str) -> list[Line]:
+def _cut(found: Figures, rows: list[Line], room: int, wide: int) -> list[Line]:
+    """The limits in fewer lines: the last one says how many more there are and the worst of their states."""
+    if len(rows) <= room:
+        return rows
+    hidden = by_margin(found)[room - 2 :]
+    states = [f"{n} {state}" for state in STYLE if (n := sum(m.state == state for m in hidden))]
+    worst = next(state for state in STYLE if any(m.state == state for m in hidden))
+    return [*rows[: room - 1], line((fit(f"| and {', '.join(states)}; w tells", wide), STYLE[worst]))]
+
+
+def _went(found: Figures, wide: int, system: str, whole: bool) -> list[Line]:
+    """Where the thrust potential went, a line a process; those that cost nothing only where there is room for the whole."""
     if not found.potentials:
         return []
-    rows = [line(_pair(r.label, quantity(r.value, r.unit, system), wide)) for r in found.potentials]
+    least = 1e-9 * max(abs(r.value) for r in found.potentials)
+    rows = [line(_pair(r.label, quantity(r.value, r.unit, system), wide)) for r in found.potentials if whole or abs(r.value) > least]
     return [line(("| where the thrust potential went", BOLD)), *rows]
