@@ -17,7 +17,7 @@ from typing import Any
 Job = Callable[[], Any]
 
 QUICK = ("solve",)
-SECOND = ("assess", "explain", "peek", "influence", "borders", "shares", "limit", "beside", "folder")
+SECOND = ("influence", "assess", "explain", "peek", "borders", "shares", "limit", "beside", "folder")
 """Kinds of which only the newest job counts, in the order they are taken up: those of the first and of the second lane."""
 
 

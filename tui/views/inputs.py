@@ -97,7 +97,7 @@ def entry_label(item: Item, entry: Entry) -> str:
 
 def answer(session: Session, wide: int, height: int) -> list[Line]:
     """What the program says: a fault (the line of keys goes on with it), a note, else the meaning of the input or row."""
-    words, style = _words(session)
+    words, style = _words(session, wide * height)
     parts = wrap(clean(words).split(), wide)
     if session.entry is not None and session.entry.fault:
         parts = parts[:1]
@@ -106,7 +106,7 @@ def answer(session: Session, wide: int, height: int) -> list[Line]:
     return [line((part, style)) for part in parts[:height]]
 
 
-def _words(session: Session) -> tuple[str, Style]:
+def _words(session: Session, room: int) -> tuple[str, Style]:
     if session.entry is not None and session.entry.fault:
         return session.entry.fault, OVER
     if session.faults and session.case is not None:
@@ -115,7 +115,7 @@ def _words(session: Session) -> tuple[str, Style]:
         return session.note, BOLD
     if session.focus == "table":
         return _row_words(session), PLAIN
-    return _input_words(session), DIM if moving.stale(session) else PLAIN
+    return _input_words(session, room), DIM if moving.stale(session) else PLAIN
 
 
 def _row_words(session: Session) -> str:
@@ -123,19 +123,21 @@ def _row_words(session: Session) -> str:
     return f"{spec.label}: {spec.meaning}"
 
 
-def _input_words(session: Session) -> str:
+def _input_words(session: Session, room: int) -> str:
+    """What a step of the input in hand does, as many figures as leave room for what comes next; then bounds, keys and meaning."""
     hand = in_hand(session)
     if hand is None:
         return ""
     ways, add, remove = (key_of(session.actions, name) for name in ("ways", "add_row", "remove_row"))
     other = f"{ways}: another way to say it" if hand.group is not None or others(hand.key) else ""
-    other = "; ".join(w for w in (other, f"{add}, {remove}: a row more, less" if place_of(hand.key) is not None else "") if w)
+    rows = f"{add}, {remove}: a row more, less" if place_of(hand.key) is not None else ""
     if hand.input is None:
         return f"{hand.label}: {hand.written}; {other}"
-    moves = moving.of_input(session, hand.key)
-    limits = bounds(hand.input, session.system, step=not moves)
-    rest = "; ".join(words for words in (limits, other, hand.input.meaning) if words)
-    return f"{moves} | {rest}" if moves else rest
+    moves = [moving.of_input(session, hand.key, figures) for figures in (3, 2, 1)]
+    limits = bounds(hand.input, session.system, step=not moves[0])
+    rest = [words for words in (rows, limits, other, hand.input.meaning) if words]
+    told = next((m for m in moves if width(f"{m} | {rest[0]}") <= room), moves[-1])
+    return " | ".join(words for words in (told, "; ".join(rest)) if words)
 
 
 def keys(session: Session, wide: int, height: int) -> list[Line]:

@@ -58,8 +58,9 @@ def marks(row: Sensitivity) -> str:
     return ", ".join(s for s in said if s)
 
 
-def of_input(session: Session, key: str) -> str:
-    """What the step of an input gives, or why that is not known; "" before there are sensitivities and where the input has none."""
+def of_input(session: Session, key: str, figures: int = 3) -> str:
+    """What the step of an input gives of the first figures, or why that is not known; "" before there are sensitivities and where the
+    input has none."""
     known = found(session)
     if known is None:
         return ""
@@ -73,7 +74,7 @@ def of_input(session: Session, key: str) -> str:
         return f"{step(row, session.system)} not told: {row.reason}"
     told = [
         f"{name(k)} {change(known, row, k, session.system)} {unit(k, session.system)}".rstrip()
-        for k in known.outputs[:3]
+        for k in known.outputs[:figures]
         if _of(row, k) == _of(row, k)
     ]
     mark = f" ({marks(row)})" if marks(row) else ""
