@@ -17,8 +17,10 @@ if TYPE_CHECKING:
 SIDES = {"above": "above only", "below": "below only"}
 """Sides of a change that is none about the value -> words."""
 SIGNS = {"above": "^", "below": "v"}
+NOTHING = 1e-7
+"""Relative change of a figure below which none is told: far above rounding, also in a figure that is a small difference of large ones."""
 _LEGEND = "^ v one side only  ~ mode changes"
-STEP, FIGURE, LABEL = 11, 11, 16
+STEP, FIGURE, LABEL = 13, 11, 16
 """Columns of a step and of a change, and the fewest of a label."""
 
 
@@ -44,8 +46,8 @@ def step(row: Sensitivity, system: str) -> str:
 
 def change(known: Sensitivities, row: Sensitivity, key: str, system: str) -> str:
     """What the step gives of a figure, signed, without its unit; "-" where nothing is told."""
-    base = known.base.get(key, NAN)
-    return difference(key, base + _of(row, key), base, system)
+    base, moved = known.base.get(key, NAN), _of(row, key)
+    return difference(key, base + (0.0 if abs(moved) <= NOTHING * abs(base) else moved), base, system)
 
 
 def _of(row: Sensitivity, key: str) -> float:
@@ -84,8 +86,9 @@ def of_input(session: Session, key: str, figures: int = 3) -> str:
 def most(session: Session, wide: int, deep: int) -> list[Line]:
     """The inputs that move the watched figure most, under a heading; as many lines as asked for whatever is known."""
     key, known = watched(session), found(session)
-    heading = f"| what moves {name(key)} most, {unit(key, session.system)}".rstrip(", ")
-    out = [line((fit(heading, wide), DIM if stale(session) else BOLD))]
+    heading = f"| what moves {name(key)} most"
+    whole = f"{heading}, {unit(key, session.system)}".rstrip(", ")
+    out = [line((whole if len(whole) <= wide else fit(heading, wide), DIM if stale(session) else BOLD))]
     if known is not None and known.why_not:
         out.append(line((fit(f"| no sensitivities: {known.why_not}", wide), DIM)))
     for row in known.ranked(key)[: deep - len(out)] if known is not None else ():
