@@ -5,6 +5,7 @@ from __future__ import annotations
 from typing import TYPE_CHECKING
 
 from cycle.units import respell
+from tui.actions import key_of
 from tui.figures import Margin
 from tui.line import BOLD, DIM, Line, clean, fit, line, wrap
 from tui.session import Session
@@ -51,7 +52,9 @@ def head(session: Session, wide: int) -> list[Line]:
         return [line(("no walk yet", DIM))]
     audit = f"audit {'ok' if found.audit_ok else 'FAILED'}: {found.audit}" if found.audit else "audit not made yet"
     out = [line((fit(clean(audit), wide), STYLE["ok" if found.audit_ok else "over"]))]
-    out.append(line((fit(clean(session.referee) or "referee not asked; r on the main screen asks", wide), DIM)))
+    out.append(
+        line((fit(clean(session.referee) or f"referee not asked; {key_of(session.actions, 'referee')} on the main screen asks", wide), DIM))
+    )
     if not found.solved:
         out += [line((part, STYLE["over"])) for part in wrap(clean(f"no solution: {found.reason}").split(), wide)[:3]]
     return out

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from tui.actions import key_of
 from tui.figures import Figures, Margin
 from tui.line import BOLD, DIM, NEAR, OVER, PLAIN, Line, clean, fit, line
 from tui.session import Session
@@ -30,35 +31,36 @@ def lines(session: Session, wide: int, height: int) -> list[Line]:
     found = session.figures
     if found is None:
         return []
-    limits = _limits(found, wide)
+    why = f"{key_of(session.actions, 'why')} tells"
+    limits = _limits(found, why, wide)
     whole = height >= len(limits) + MOST + len(found.potentials) + 1
     went = _went(found, wide, session.system, whole)
     room = max(FEWEST, height - len(went) - LEAST)
     deep = max(LEAST, min(MOST, height - len(went) - len(limits)))
-    return [*_cut(found, limits, room, wide), *moving.most(session, wide, deep), *went][:height]
+    return [*_cut(found, limits, room, why, wide), *moving.most(session, wide, deep), *went][:height]
 
 
 def _pair(left: str, right: str, wide: int) -> str:
     return f"| {fit(clean(left), wide - len(right) - 4)}".ljust(wide - len(right)) + right
 
 
-def _limits(found: Figures, wide: int) -> list[Line]:
+def _limits(found: Figures, why: str, wide: int) -> list[Line]:
     """A line for each assessed limit, one for all that are not."""
     known = [m for m in by_margin(found) if m.state != "not assessed"]
     rows = [line((_pair(m.label, margin_words(m), wide), STYLE[m.state])) for m in known]
     lost = len(found.limits) - len(known)
-    last = [line((_pair("not assessed; w tells why", str(lost), wide), DIM))] if lost else []
+    last = [line((_pair(f"not assessed; {why} why", str(lost), wide), DIM))] if lost else []
     return [line(("| limits by margin", BOLD)), *rows, *last]
 
 
-def _cut(found: Figures, rows: list[Line], room: int, wide: int) -> list[Line]:
+def _cut(found: Figures, rows: list[Line], room: int, why: str, wide: int) -> list[Line]:
     """The limits in fewer lines: the last one says how many more there are and the worst of their states."""
     if len(rows) <= room:
         return rows
     hidden = by_margin(found)[room - 2 :]
     states = [f"{n} {state}" for state in STYLE if (n := sum(m.state == state for m in hidden))]
     worst = next(state for state in STYLE if any(m.state == state for m in hidden))
-    return [*rows[: room - 1], line((fit(f"| and {', '.join(states)}; w tells", wide), STYLE[worst]))]
+    return [*rows[: room - 1], line((fit(f"| and {', '.join(states)}; {why}", wide), STYLE[worst]))]
 
 
 def _went(found: Figures, wide: int, system: str, whole: bool) -> list[Line]:
