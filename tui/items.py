@@ -238,6 +238,15 @@ def groups_of(case: Case, item: Item) -> list[str]:
     return [g.name for g in sorted(every, key=lambda g: len(g.members))]
 
 
+def ways_now(case: Case, key: str) -> list[str]:
+    """The key itself, then the ways in which the case says the groups it belongs to."""
+    given = [s.input.key for s in case.inputs() if not rows.hidden(case, s.input.key)]
+    inside = next((k for k in given if k.startswith(f"{key}.")), "")
+    groups = [g for g in GROUP.values() if g.name == key or any(key in m.keys for m in g.members)]
+    ways = [k for g in groups for m in g.members for k in m.keys if k in given]
+    return [key, inside, *rows.others(key), *ways, *(g.name for g in groups)]
+
+
 def way_label(group: str, tag: str) -> str:
     """Words for one way of a group: the labels of its inputs, or the tag of a default that has none."""
     ways = [m for m in GROUP[group].members if m.tag == tag]

@@ -9,19 +9,18 @@ from typing import TYPE_CHECKING
 
 from textual import events
 
-from cycle.quantities import GROUP, OUTPUT
-from tui import figures, finding, items, keymap, tracing
+from cycle.quantities import OUTPUT
+from tui import figures, finding, keymap, tracing
 from tui.actions import ACTIONS, Action, key_of
 from tui.engine import Result
 from tui.line import BOLD, DIM, Line, clean, fit, line, width
-from tui.rows import hidden, others
 from tui.screens.desk import Desk
 from tui.screens.roster import Choice, Roster, Verb
 from tui.screens.tracer import Tracer
 from tui.tracing import Place
 
 if TYPE_CHECKING:
-    from cycle.case import Case
+    pass
 
 FIND = (Verb("enter", "Enter", "goes there"), Verb("f2", "F2", "explains"), Verb("tab", "", ""))
 RUN = (Verb("enter", "Enter", "runs it"),)
@@ -149,27 +148,6 @@ class Asking(Desk, inherit_bindings=False):
 
     def _limits(self) -> tuple[figures.Margin, ...]:
         return self.session.figures.limits if self.session.figures is not None else ()
-
-    def _to_input(self, key: str) -> bool:
-        """Bring an input to hand, or the way in which it is said now. Returns: whether there is one."""
-        case = self.session.case
-        for there in _ways_now(case, key) if case is not None else ():
-            station = items.home(self.session, there)
-            at = replace(self.session, station=station, inputs={**self.session.inputs, station: there}, focus="inputs")
-            if any(i.key == there for i in items.items(at)):
-                words = "" if there == key else f"{key} is another way to say it: {key_of(self.session.actions, 'ways')} changes the way"
-                self.put(replace(at, note=words))
-                return True
-        return False
-
-
-def _ways_now(case: Case, key: str) -> list[str]:
-    """The key itself, then the ways in which the case says the groups it belongs to."""
-    given = [s.input.key for s in case.inputs() if not hidden(case, s.input.key)]
-    inside = next((k for k in given if k.startswith(f"{key}.")), "")
-    groups = [g for g in GROUP.values() if g.name == key or any(key in m.keys for m in g.members)]
-    ways = [k for g in groups for m in g.members for k in m.keys if k in given]
-    return [key, inside, *others(key), *ways, *(g.name for g in groups)]
 
 
 def _found(found: finding.Found, wide: int) -> Line:

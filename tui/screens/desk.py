@@ -10,8 +10,8 @@ from time import monotonic
 from textual.screen import Screen
 
 from cycle.errors import CaseError
-from cycle.quantities import GROUPS
 from tui import figures, items, session
+from tui.actions import key_of
 from tui.engine import Engine
 from tui.journal import Journal
 from tui.session import ASSESSING, SOLVING, Change, Session
@@ -184,11 +184,14 @@ class Desk(Screen[None], inherit_bindings=False):
         if generation == self.session.generation:
             self.engine.newest("influence", generation, lambda: figures.influence(found))
 
-    def _take_in_hand(self, key: str) -> None:
-        """Go to an input, or to the way its group is said where the case has not this one, and bring the focus there."""
-        station = items.home(self.session, key)
-        groups = {g.name for g in GROUPS if any(key in m.keys for m in g.members)}
-        there = replace(self.session, station=station, focus="inputs")
-        here = items.items(there)
-        known = next((i.key for i in here if i.key == key), "") or next((i.key for i in here if {i.group, i.key} & groups), key)
-        self.put(replace(there, inputs={**there.inputs, station: known}))
+    def _to_input(self, key: str) -> bool:
+        """Bring an input to hand, or the way in which it is said now. Returns: whether there is one."""
+        case = self.session.case
+        for there in items.ways_now(case, key) if case is not None else ():
+            station = items.home(self.session, there)
+            at = replace(self.session, station=station, inputs={**self.session.inputs, station: there}, focus="inputs")
+            if any(i.key == there for i in items.items(at)):
+                words = "" if there == key else f"{key} is another way to say it: {key_of(self.session.actions, 'ways')} changes the way"
+                self.put(replace(at, note=words))
+                return True
+        return False

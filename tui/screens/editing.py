@@ -218,6 +218,10 @@ class Editing(Desk, inherit_bindings=False):
         note = f"{spec.label}: {spec.meaning}"
         self.put(replace(self.session, entry=entry, note=note, faults=()))
 
+    def _take_in_hand(self, key: str) -> None:
+        station = items.home(self.session, key)
+        self.put(replace(self.session, station=station, inputs={**self.session.inputs, station: key}))
+
     def typed_in_field(self, entry: Entry, event: events.Key) -> None:
         """While a field is open, keys belong to it."""
         if event.key in ("escape", "ctrl+c"):

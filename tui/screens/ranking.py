@@ -55,7 +55,7 @@ class Ranking(Desk, inherit_bindings=False):
     def _influence_done(self, chosen: tuple[str, str] | None) -> None:
         key, name = chosen or ("", "")
         if name:
-            self._take_in_hand(name)
+            self._to_input(name)
         if key == "g":
             self.action_do("peek")
 
@@ -115,9 +115,7 @@ class Ranking(Desk, inherit_bindings=False):
         goto = margins.limit(self.session, name) if key else None
         if goto is None:
             return
-        if goto.input:
-            self._take_in_hand(goto.input)
-        else:
+        if not self._to_input(goto.input):
             self.put(replace(self.session, note=f"{goto.label}: no input of its own; {goto.restore}"))
 
     def accounts(self, name: str) -> None:
