@@ -6,6 +6,7 @@ import asyncio
 from collections.abc import Callable
 from dataclasses import replace
 from time import monotonic
+from typing import Any
 
 from textual.screen import Screen
 
@@ -48,6 +49,15 @@ class Desk(Screen[None], inherit_bindings=False):
         self._painted = 0.0
         self._later: asyncio.TimerHandle | None = None
         self._slow: asyncio.TimerHandle | None = None
+
+    def case_read(self, got: Any) -> None:
+        """A case was read and is being solved. got: `tui.screens.filing.Read`. The parts that wait for it say what they do."""
+
+    def case_left(self) -> None:
+        """Another case takes the place of the one here. The parts that have something of the old one drop it."""
+
+    def case_named(self) -> None:
+        """The case has another file now."""
 
     def paint(self) -> None:
         """Paint the session. The main screen says how."""
