@@ -8,10 +8,10 @@ Source: Shapley, A value for n-person games, Annals of Mathematics Studies 28 (1
 from __future__ import annotations
 
 import math
-from collections.abc import Callable, Iterable, Mapping, Sequence
+from collections.abc import Callable, Generator, Iterable, Mapping, Sequence
 from dataclasses import dataclass
 from itertools import combinations
-from typing import TYPE_CHECKING
+from typing import TYPE_CHECKING, cast
 
 import numpy as np
 
@@ -63,9 +63,22 @@ class _Corner:
 
 
 def shares(a: Case, b: Case) -> Shares:
-    """Where the headline figures of b less those of a come from.
+    """Where the headline figures of b less those of a come from, found at once; see `shares_in_steps`.
 
-    Parameters: a, b, two cases.
+    Parameters: a, b, two cases. Returns: `Shares`.
+    """
+    steps = shares_in_steps(a, b, 1 << len(INPUT_GROUPS))
+    while True:
+        try:
+            next(steps)
+        except StopIteration as done:
+            return cast(Shares, done.value)
+
+
+def shares_in_steps(a: Case, b: Case, most: int = 8) -> Generator[None, None, Shares]:
+    """Where the headline figures of b less those of a come from, in steps between which something else may be done.
+
+    Parameters: a, b, two cases; most, combinations that a step solves at most.
     Returns: `Shares`; groups that differ are swapped in every combination, 256 at most. Groups of which a combination is no
     case, or has no solution, are taken together, and the notes say so; where nothing is left to share out `why_not` does.
     """
@@ -74,7 +87,7 @@ def shares(a: Case, b: Case) -> Shares:
     keys = _keys(a, b)
     groups = [group for group in INPUT_GROUPS if group in keys]
     outputs = HEADLINE[a.choices["start"]]
-    corners = _corners(a, b, groups, outputs)
+    corners = yield from _corners(a, b, groups, outputs, most)
     first, second = corners[frozenset()], corners[frozenset(groups)]
     shown = tuple(key for key in outputs if not any(math.isnan(end.figures.get(key, math.nan)) for end in (first, second)))
     why = _nothing(a, b, groups, first, second, shown)
@@ -133,11 +146,14 @@ def _lost(corners: Mapping[Groups, _Corner], shown: Iterable[str]) -> dict[Group
     return {taken: why for taken, why in words.items() if why}
 
 
-def _corners(a: Case, b: Case, groups: Sequence[str], outputs: Sequence[str]) -> dict[Groups, _Corner]:
-    """Every combination of groups taken from b, solved: in one batch those that share their choices."""
+def _corners(a: Case, b: Case, groups: Sequence[str], outputs: Sequence[str], most: int) -> Generator[None, None, dict[Groups, _Corner]]:
+    """Every combination of groups taken from b, solved: in one batch those that share their choices, `most` at once."""
     found: dict[Groups, _Corner] = {}
     alike: dict[object, list[tuple[Groups, Case]]] = {}
-    for taken in (frozenset(chosen) for size in range(len(groups) + 1) for chosen in combinations(groups, size)):
+    every = (frozenset(chosen) for size in range(len(groups) + 1) for chosen in combinations(groups, size))
+    for number, taken in enumerate(every, 1):
+        if number % most == 0:
+            yield
         try:
             mixed = {0: a, len(groups): b}.get(len(taken)) or taking(a, b, taken)
         except CaseError as error:
@@ -145,7 +161,9 @@ def _corners(a: Case, b: Case, groups: Sequence[str], outputs: Sequence[str]) ->
             continue
         alike.setdefault(_likeness(mixed), []).append((taken, mixed))
     for same in alike.values():
-        found.update(zip((taken for taken, _ in same), _solved([case for _, case in same], outputs), strict=True))
+        for part in (same[i : i + most] for i in range(0, len(same), most)):
+            found.update(zip((taken for taken, _ in part), _solved([case for _, case in part], outputs), strict=True))
+            yield
     return found
 
 

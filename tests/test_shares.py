@@ -11,7 +11,7 @@ from hypothesis import strategies as st
 import cycle
 from cycle.case import taking
 from cycle.record import case_of, case_record
-from cycle.shares import Shares, shapley, shares
+from cycle.shares import Shares, shapley, shares, shares_in_steps
 from tests.tui.command_support import CHOKED, DUCT, HOT, QUICK, RIG, ROOT
 
 EPSILON = 2.0**-52
@@ -166,3 +166,21 @@ def test_a_record_gives_its_case_back(text: str) -> None:
     case = cycle.loads(text)
     again = case_of(case_record(case), "again")
     assert (dict(again.numbers), dict(again.choices), again.title) == (dict(case.numbers), dict(case.choices), case.title)
+
+
+def test_shares_in_steps_are_those_found_at_once() -> None:
+    a = cycle.loads(QUICK, "a")
+    b = a.replace({"flight.mach": 6.5, "inlet.temperature_ratio": 4.2, "combustor.fuel_air_ratio": 0.006})
+    steps, count = shares_in_steps(a, b, most=2), 0
+    found: Shares | None = None
+    while found is None:
+        try:
+            next(steps)
+            count += 1
+        except StopIteration as done:
+            found = done.value
+    assert count > 4
+    at_once = shares(a, b)
+    assert [p.groups for p in found.parts] == [p.groups for p in at_once.parts]
+    for ours, theirs in zip(found.parts, at_once.parts, strict=True):
+        assert ours.shares == pytest.approx(dict(theirs.shares), rel=1e-9)

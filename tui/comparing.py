@@ -86,10 +86,10 @@ def share_blocks(sides: Sequence[Side], system: str) -> Iterator[Block]:
         except CaseError as error:
             yield Lines((f"Not assessed: a stored case is none of this version: {error.faults[0].text}",))
             continue
-        yield from blocks_of_shares(found, system, _recomputed({"A": (first, found.first), letter: (side, found.second)}))
+        yield from blocks_of_shares(found, system, recomputed({"A": (first, found.first), letter: (side, found.second)}))
 
 
-def _recomputed(ends: Mapping[str, tuple[Side, Mapping[str, float]]]) -> Iterator[str]:
+def recomputed(ends: Mapping[str, tuple[Side, Mapping[str, float]]]) -> Iterator[str]:
     """A sentence for every stored walk that this version does not give again."""
     for letter, (side, values) in ends.items():
         stored = side.walk["performance"]

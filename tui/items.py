@@ -36,6 +36,9 @@ LIMITS = {
 }
 """Thresholds of limits -> the station where they bind; the others belong to the first station."""
 
+HEADS = ("title", "notes")
+"""What a case says of itself: no inputs, but edited like them."""
+
 _NUMBER = re.compile(r"\s*([-+]?(?:\d+\.?\d*|\.\d+)(?:[eE][-+]?\d+)?)\s*(.*?)\s*\Z", re.DOTALL)
 
 
@@ -272,6 +275,8 @@ def describe(before: Case, after: Case, change: Change, system: str) -> str:
         group, tag, _ = change["switch"]
         return f"{GROUP[group].meaning} by {way_label(group, tag)}"
     key = next(iter(change["set"]))
+    if key in HEADS:
+        return f"{' and '.join(change['set'])} of the case"
     spec = input_of(key)
     assert spec is not None
     if spec.kind == "rows":

@@ -8,6 +8,7 @@ from __future__ import annotations
 
 import fcntl
 import hashlib
+import itertools
 import json
 import os
 import threading
@@ -18,6 +19,8 @@ from typing import Any
 FORMAT = 1
 LARGEST = 16 * 1024 * 1024
 """Bytes of a journal that are read at most."""
+MOST = 200
+"""Journals that are looked through at most, the newest ones."""
 
 Record = dict[str, Any]
 
@@ -44,7 +47,8 @@ def content_hash(path: str) -> str:
         return ""
 
 
-def _stem(path: str) -> str:
+def stem(path: str) -> str:
+    """Start of the names of everything that is kept for the case at `path`."""
     full = os.path.realpath(path)
     name = "".join(c if c.isalnum() or c in "-_" else "_" for c in Path(full).stem)[:40]
     return f"{name}-{hashlib.sha256(os.fsencode(full)).hexdigest()[:12]}"
@@ -103,11 +107,88 @@ def left_behind(path: str) -> Left | None:
 
     Errors: OSError where the state directory cannot be read.
     """
+    return max(all_left(path), key=lambda left: left.written, default=None)
+
+
+def all_left(path: str) -> list[Left]:
+    """All journals that ended sessions left for the case at `path`. Errors: OSError."""
     folder = state_directory()
     if not folder.is_dir():
+        return []
+    return [left for file in folder.glob(f"{stem(path)}-*.journal") if (left := _read(file, path)) is not None]
+
+
+@dataclass(frozen=True, slots=True)
+class Held:
+    """A journal that holds unsaved work: its file, its case's path, how many records, when it was last written (s since the epoch), and
+    whether a session that runs holds it."""
+
+    file: Path
+    case: str
+    records: int
+    written: float
+    live: bool
+
+
+def every() -> tuple[Held, ...]:
+    """The journals of all cases that hold work, newest first; those that cannot be read are left out.
+
+    Errors: OSError where the state directory cannot be read.
+    """
+    folder = state_directory()
+    if not folder.is_dir():
+        return ()
+    files = sorted(folder.glob("*.journal"), key=lambda file: file.lstat().st_mtime, reverse=True)
+    return tuple(held for file in files[:MOST] if (held := _held(file)) is not None)
+
+
+def _held(file: Path) -> Held | None:
+    try:
+        with file.open("rb") as stream:
+            live = not _free(stream.fileno())
+            records = _records(stream.read(LARGEST).decode("utf-8", "replace"))
+            written = os.fstat(stream.fileno()).st_mtime
+    except OSError:
         return None
-    found = [left for file in folder.glob(f"{_stem(path)}-*.journal") if (left := _read(file, path)) is not None]
-    return max(found, key=lambda left: left.written, default=None)
+    case = records[0].get("case") if records else None
+    if len(records) < 2 or records[0].get("format") != FORMAT or not isinstance(case, str):
+        return None
+    return Held(file, case, len(records) - 1, written, live)
+
+
+def move(left: Left, path: str) -> None:
+    """Give a journal left behind to the case at `path`. Errors: OSError where it stays where it was."""
+    if left.file.name.startswith(f"{stem(path)}-"):
+        return
+    descriptor, new = _copied(left.file, path)
+    os.close(descriptor)
+    os.utime(new, (left.written, left.written))
+    left.file.unlink(missing_ok=True)
+
+
+def _copied(file: Path, path: str) -> tuple[int, Path]:
+    """A copy of a journal for the case at `path`: its descriptor, locked, and its file."""
+    head, _, rest = file.read_bytes().partition(b"\n")
+    descriptor, new = _created(path)
+    told = {**json.loads(head), "case": os.path.realpath(path)}
+    os.write(descriptor, json.dumps(told).encode() + b"\n" + rest)
+    os.fsync(descriptor)
+    return descriptor, new
+
+
+def _created(path: str) -> tuple[int, Path]:
+    """A new journal file for the case at `path`, never one that is there, and its descriptor, locked."""
+    folder = state_directory()
+    folder.mkdir(parents=True, exist_ok=True, mode=0o700)
+    for number in itertools.count():
+        file = folder / f"{stem(path)}-{os.getpid()}{f'-{number}' if number else ''}.journal"
+        try:
+            descriptor = os.open(file, os.O_WRONLY | os.O_CREAT | os.O_EXCL | os.O_APPEND, 0o600)
+        except FileExistsError:
+            continue
+        _free(descriptor)
+        return descriptor, file
+    raise AssertionError
 
 
 def discard(left: Left) -> None:
@@ -144,13 +225,12 @@ class Journal:
             self._dirty.set()
 
     def _open(self) -> None:
-        folder = state_directory()
-        folder.mkdir(parents=True, exist_ok=True, mode=0o700)
-        self._file = folder / f"{_stem(self.path)}-{os.getpid()}.journal"
-        descriptor = os.open(self._file, os.O_WRONLY | os.O_CREAT | os.O_TRUNC | os.O_APPEND, 0o600)
-        _free(descriptor)
+        descriptor, self._file = _created(self.path)
         head = {"format": FORMAT, "case": os.path.realpath(self.path), "content": self.content}
         os.write(descriptor, (json.dumps(head) + "\n").encode())
+        self._hold(descriptor)
+
+    def _hold(self, descriptor: int) -> None:
         self._descriptor = descriptor
         threading.Thread(target=self._sync, args=(descriptor,), name="journal", daemon=True).start()
 
@@ -167,10 +247,33 @@ class Journal:
         self.remove()
         self.path, self.content = path, content
 
+    def turn_to(self, path: str, keep: bool) -> None:
+        """Begin for another case. keep: whether what is journalled stays on disk, to be offered when the case is opened again."""
+        if keep:
+            self._let_go()
+        else:
+            self.remove()
+        self.path, self.content, self.failure = path, "", ""
+
+    def moved(self, path: str) -> None:
+        """Go on under the name of another file, to which the case was moved. Errors: OSError where it stays under the old one."""
+        old, self.path = self._file, path
+        if old is None or old.name.startswith(f"{stem(path)}-"):
+            return
+        descriptor, file = _copied(old, path)
+        self.remove()
+        self._file = file
+        self._hold(descriptor)
+
     def remove(self) -> None:
         """Remove the journal file; the next record makes a new one."""
-        if self._descriptor is not None and self._file is not None:
+        if self._file is not None:
             self._file.unlink(missing_ok=True)
+        self._let_go()
+
+    def _let_go(self) -> None:
+        """Close the file and leave it where it is."""
+        if self._descriptor is not None:
             os.close(self._descriptor)
         self._descriptor = self._file = None
         self._dirty.set()

@@ -28,19 +28,20 @@ MOVES: dict[str, Move] = {
 ERASES = ("backspace", "delete")
 
 
-def insert(entry: Entry, text: str) -> Entry:
-    """The field with text put in at the caret; the first text typed into a fresh field replaces what stood there."""
+def insert(entry: Entry, text: str, longest: int = LONGEST) -> Entry:
+    """The field with text put in at the caret, `longest` characters at most; the first text typed into a fresh field replaces what
+    stood there."""
     text = clean(text)
     old = "" if entry.fresh else entry.text
     at = 0 if entry.fresh else entry.caret
-    new = (old[:at] + text + old[at:])[:LONGEST]
+    new = (old[:at] + text + old[at:])[:longest]
     return replace(entry, text=new, caret=min(at + len(text), len(new)), fresh=False, fault="")
 
 
-def press(entry: Entry, key: str, character: str | None) -> Entry:
+def press(entry: Entry, key: str, character: str | None, longest: int = LONGEST) -> Entry:
     """The field after a key; keys that mean nothing here leave it as it is.
 
-    Parameters: entry, the open field; key, name of the key; character, what it types, if anything.
+    Parameters: entry, the open field; key, name of the key; character, what it types, if anything; longest, characters it takes.
     """
     if key in MOVES:
         if entry.fresh and key in ERASES:
@@ -49,5 +50,5 @@ def press(entry: Entry, key: str, character: str | None) -> Entry:
         fault = entry.fault if text == entry.text else ""
         return replace(entry, text=text, caret=caret, fresh=False, fault=fault)
     if character is not None and character.isprintable():
-        return insert(entry, character)
+        return insert(entry, character, longest)
     return entry

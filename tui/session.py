@@ -30,11 +30,14 @@ ASSESSING = "limits are being assessed ... those shown are of the inputs before"
 
 @dataclass(frozen=True, slots=True)
 class Pin:
-    """A pinned walk: the words that name it, its case and its figures."""
+    """A pinned walk: the words that name it, its case and its figures. stored: the stored walk that the figures were read from, None
+    where it was solved here (a stored one has no `figures.walk`). chosen: whether the user pinned it, so that it is kept."""
 
     label: str
     case: Case
     figures: Figures
+    stored: Any = None
+    chosen: bool = False
 
 
 @dataclass(frozen=True, slots=True)
@@ -134,6 +137,15 @@ def loaded(session: Session, case: Case, stamp: Any) -> Session:
     return replace(session, case=case, saved=case, stamp=stamp, generation=session.generation + 1, station=start, influence=None, note="")
 
 
+def afresh(session: Session, path: str) -> Session:
+    """The session for another case, not read yet; what the user set for the screen stays.
+
+    Generations go on, so that a result for the case before is known as such.
+    """
+    kept = {name: getattr(session, name) for name in ("system", "watched", "actions")}
+    return Session(path, generation=session.generation + 1, **kept)
+
+
 def _with_case(session: Session, case: Case, note: str) -> Session:
     columns = columns_of(case)
     # a station that is gone hands on to the next one downstream
@@ -186,7 +198,7 @@ def with_figures(session: Session, generation: int, found: Figures) -> Session:
     pin = session.pin
     if now.solved and (pin is None or pin.figures.walk is now.walk):
         first = "first walk" if session.unsaved else "as loaded"
-        pin = Pin(pin.label if pin is not None else first, session.case, now)
+        pin = replace(pin, figures=now) if pin is not None else Pin(first, session.case, now)
     note = session.note
     if note in (SOLVING, ASSESSING):
         note = "" if now.assessed or note == ASSESSING else ASSESSING
@@ -201,7 +213,7 @@ def pinned(session: Session) -> Session:
     if not session.figures.solved:
         return replace(session, note="a case without a solution cannot be pinned")
     label = session.past[-1].words if session.past else "as loaded"
-    return replace(session, pin=Pin(label, session.case, session.figures), note="pinned: changes are against this walk")
+    return replace(session, pin=Pin(label, session.case, session.figures, chosen=True), note="pinned: changes are against this walk")
 
 
 def toggled(session: Session) -> Session:

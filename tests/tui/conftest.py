@@ -7,7 +7,7 @@ from pathlib import Path
 import pytest
 
 
-@pytest.fixture
+@pytest.fixture(autouse=True)
 def state(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> Path:
     """Where the program keeps its journals in this test."""
     monkeypatch.setenv("XDG_STATE_HOME", str(tmp_path / "state"))

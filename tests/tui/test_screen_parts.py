@@ -266,7 +266,7 @@ def left_by_another(state: Path, path: str, *records: journal.Record, tail: str 
 
 
 def writer_name(path: str) -> str:
-    return f"{journal._stem(path)}-1.journal"
+    return f"{journal.stem(path)}-1.journal"
 
 
 def test_journal_is_found_again_whole_and_cut_lines_are_left_out(state: Path, tmp_path: Path) -> None:

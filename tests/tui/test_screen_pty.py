@@ -265,3 +265,22 @@ def test_a_defect_sets_the_terminal_back_and_keeps_the_work(path: Path, env: dic
         assert LEFT in terminal.raw
         assert b"ZeroDivisionError: made by the test" in terminal.raw.split(LEFT)[-1]
     assert len(journals(env)) == 1
+
+
+def test_another_case_is_opened_and_work_is_offered_on_return(terminal: Terminal, env: dict[str, str], path: Path) -> None:
+    (path.parent / "other.toml").write_text(TEXT.replace("mach = 6.0", "mach = 7.0"))
+    edit_mach(terminal, "6.5")
+    terminal.press("b")
+    terminal.wait(lambda text: "other.toml" in text and "case.toml" in text)
+    terminal.press("down", "enter")
+    terminal.wait(lambda text: "M 7" in text.splitlines()[0])
+    assert len(journals(env)) == 1
+    terminal.press("b")
+    terminal.wait(lambda text: "> other.toml" in text and " *case.toml" in text)
+    terminal.press("up", "enter")
+    terminal.wait("Unsaved work found")
+    terminal.press("r")
+    terminal.wait(lambda text: "M 6.5" in text.splitlines()[0])
+    terminal.press("q")
+    assert terminal.status() == 0
+    assert len(journals(env)) == 1

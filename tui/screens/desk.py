@@ -6,6 +6,7 @@ import asyncio
 from collections.abc import Callable
 from dataclasses import replace
 from time import monotonic
+from typing import Any
 
 from textual.screen import Screen
 
@@ -59,6 +60,15 @@ class Desk(Screen[None], inherit_bindings=False):
     def action_do(self, name: str) -> None:
         """Run an action of `tui.actions`. The main screen says how."""
         raise NotImplementedError
+
+    def case_read(self, got: Any) -> None:
+        """A case was read and is being solved. got: `tui.screens.filing.Read`. The parts that wait for it say what they do."""
+
+    def case_left(self) -> None:
+        """Another case takes the place of the one here. The parts that have something of the old one drop it."""
+
+    def case_named(self) -> None:
+        """The case has another file now."""
 
     def paint(self) -> None:
         """Paint the session. The main screen says how."""

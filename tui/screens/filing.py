@@ -5,6 +5,7 @@ from __future__ import annotations
 import difflib
 import os
 import time
+from collections.abc import Callable
 from dataclasses import dataclass, replace
 from functools import partial
 from typing import TYPE_CHECKING, Any
@@ -12,10 +13,11 @@ from typing import TYPE_CHECKING, Any
 from rich.text import Text
 
 from cycle.errors import CaseError, FileChanged
-from tui import items, journal, session
+from tui import items, journal, keeping, session
 from tui.actions import key_of
 from tui.engine import Result
 from tui.journal import Left, Record
+from tui.keeping import Kept
 from tui.line import OVER, PLAIN, Line, clean, line
 from tui.screens.desk import Desk, fault_words
 from tui.screens.page import Answer, Page, text_body
@@ -28,11 +30,13 @@ if TYPE_CHECKING:
 
 @dataclass(frozen=True, slots=True)
 class Read:
-    """A case as read: the case, the hash of its file, the journal left behind for it, why there is no journal."""
+    """A case as read: the case, the hash of its file, the journal left behind for it, the pin kept for it, why there is no journal
+    or pin."""
 
     case: Case
     content: str
     left: Left | None
+    pin: Kept | None
     trouble: str
 
 
@@ -61,11 +65,19 @@ def read(path: str) -> Read:
     from cycle.case import load, loads, template
 
     case = load(path) if path else loads(template(), "new case")
+    left, pin, trouble = None, None, ""
     try:
-        left, trouble = journal.left_behind(path), ""
+        left = journal.left_behind(path)
     except OSError as error:
-        left, trouble = None, f"edits are not kept on disk: {error.strerror or error}"
-    return Read(case, journal.content_hash(path), left, trouble)
+        trouble = f"edits are not kept on disk: {error.strerror or error}"
+    try:
+        pin = keeping.kept_pin(path) if path else None
+    except keeping.Spoilt as error:
+        trouble = f"the pin kept for this case is dropped: {error}"
+        keeping.drop_pin(path)
+    except OSError as error:
+        trouble = trouble or f"the pin kept for this case cannot be read: {error.strerror or error}"
+    return Read(case, journal.content_hash(path), left, pin, trouble)
 
 
 def write(case: Case, path: str, stamp: Any) -> Saved:
@@ -112,30 +124,53 @@ class Filing(Desk, inherit_bindings=False):
 
     _saving = 0
     _leaving = False
+    _reading = 0
 
     def read_case(self) -> None:
         """Ask the worker to read the case."""
         path = self.session.path
-        self.engine.do("read", 0, lambda: read(path))
+        self._reading += 1
+        self.engine.do("read", self._reading, lambda: read(path))
+
+    def open_case(self, path: str) -> None:
+        """Leave the present case, whose unsaved work stays in its journal, and read another."""
+        if self._saving:
+            self.put(replace(self.session, note="saving ...; open it when the file is written"))
+        elif self.session.unsaved and self.journal.failure:
+            self._ask_to_lose("Open another case?", lambda: self._turn_to(path))
+        else:
+            self._turn_to(path)
+
+    def _turn_to(self, path: str) -> None:
+        old = self.session
+        self.journal.turn_to(path, keep=old.unsaved)
+        self.session = session.afresh(old, path)
+        self.case_left()
+        self.paint_now()
+        self.read_case()
 
     def was_read(self, result: Result) -> None:
         """Show the case, or why it cannot be read."""
+        if result.generation != self._reading:
+            return
         if isinstance(result.error, CaseError):
             faults = tuple(str(result.error).splitlines())
             key = partial(key_of, self.session.actions)
-            self.put(replace(self.session, note=f"{key('edit')} reads the file again, {key('leave')} leaves", faults=faults))
+            words = f"{key('edit')} reads the file again, {key('browse')} lists the cases beside it, {key('leave')} leaves"
+            self.put(replace(self.session, note=words, faults=faults))
             return
         got: Read = result.value
         self.journal.content = got.content
         self.session = session.loaded(replace(self.session, faults=()), got.case, got.case.stamp)
         self.put(replace(self.session, note=got.trouble))
         self.solve()
+        self.case_read(got)
         if got.left is not None:
             self._offer(got.left)
 
     def _offer(self, left: Left) -> None:
         when = time.strftime("%Y-%m-%d %H:%M", time.localtime(left.written))
-        told = [f"A session that ended on {when} left {_counted(len(left.records))} of this case, not saved."]
+        told = [f"Work that ended on {when} left {_counted(len(left.records))} of this case, not saved."]
         if not left.same_file:
             told.append("The case file has changed since; the edits would be made on the file as it is now.")
         answers = (
@@ -207,11 +242,13 @@ class Filing(Desk, inherit_bindings=False):
             self.put(replace(self.session, note="not saved", faults=tuple(f"not saved: {words}" for words in fault_words(result.error))))
             return
         got: Saved = result.value
-        note = f"saved {clean(got.path)}"
+        note, moved = f"saved {clean(got.path)}", got.path != self.session.path
         self.session = replace(self.session, path=got.path, saved=got.case, stamp=got.stamp, note=note, faults=())
         if not self.session.unsaved:
             self.journal.restart(got.path, got.content)
         self.paint_now()
+        if moved:
+            self.case_named()
         if self._leaving and not self._saving:
             self.do_leave()
 
@@ -240,13 +277,22 @@ class Filing(Desk, inherit_bindings=False):
             self._leaving = True
             self.put(replace(self.session, note="saving, then leaving ..."))
         elif self.session.unsaved and self.journal.failure:
-            told = [self.journal.failure, "Unsaved edits would be lost."]
-            answers = (Answer("s", "stay", "stay"), Answer("l", "leave", "leave and lose them"))
-            page = Page("Leave?", text_body(told), answers)
-            self.app.push_screen(page, lambda name: self.app.exit(return_code=0) if name == "leave" else None)
+            self._ask_to_lose("Leave?", lambda: self.app.exit(return_code=0))
         elif self.session.unsaved:
             name = self.session.path or "without a name"
             self.app.exit(return_code=0, message=Text(f"Work is kept: the unsaved edits of {clean(name)} are offered next time."))
         else:
             self.journal.remove()
             self.app.exit(return_code=0)
+
+    def _ask_to_lose(self, title: str, leave: Callable[[], object]) -> None:
+        """Ask before edits that cannot be kept on disk are lost."""
+        told = [self.journal.failure, "Unsaved edits would be lost."]
+        answers = (Answer("s", "stay", "stay"), Answer("l", "leave", "leave and lose them"))
+        page = Page(title, text_body(told), answers)
+
+        def answered(name: str | None) -> None:
+            if name == "leave":
+                leave()
+
+        self.app.push_screen(page, answered)

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import os
 from collections.abc import Callable
 from dataclasses import replace
 from functools import partial
@@ -19,6 +20,7 @@ from tui.engine import Result
 from tui.line import Line
 from tui.screens import ducting, telling
 from tui.screens.asking import Asking
+from tui.screens.beside import Comparing
 from tui.screens.browsing import Browsing
 from tui.screens.editing import Editing
 from tui.screens.filing import Filing
@@ -31,7 +33,7 @@ from tui.session import VIEWS, Session
 from tui.views import headline, inputs, side, table
 from tui.widgets.panel import Panel
 
-NEEDS_NO_CASE = ("leave", "interrupt", "help", "suspend", "redraw", "units")
+NEEDS_NO_CASE = ("leave", "browse", "interrupt", "help", "suspend", "redraw", "units")
 
 EVERYWHERE = ("suspend", "redraw")
 """Actions whose keys work in a field and over every screen, where they type nothing."""
@@ -41,7 +43,7 @@ HEIGHTS: list[tuple[int, str]] | None = [(0, "-tiny"), (12, "-short"), (24, "-pl
 """Columns and lines from which the screen has a class of its style sheet."""
 
 
-class MainScreen(Editing, Filing, Peeking, Plotting, Ranking, Asking, Pinning, Browsing, inherit_bindings=False):
+class MainScreen(Editing, Filing, Peeking, Plotting, Ranking, Asking, Pinning, Comparing, Browsing, inherit_bindings=False):
     """Renders the session and sends every action to its handler `do_<name>`."""
 
     BINDINGS: ClassVar[list[BindingType]] = []
@@ -84,7 +86,14 @@ class MainScreen(Editing, Filing, Peeking, Plotting, Ranking, Asking, Pinning, B
     def _start(self) -> None:
         self.engine.start()
         self.take_keys()
-        self.read_case()
+        self._read()
+
+    def _read(self) -> None:
+        """Read the case, or list the cases where a folder was named."""
+        if os.path.isdir(self.session.path):
+            self.do_browse()
+        else:
+            self.read_case()
 
     def paint(self) -> None:
         """Every panel shows its part of the session and repaints what changed."""
@@ -138,7 +147,7 @@ class MainScreen(Editing, Filing, Peeking, Plotting, Ranking, Asking, Pinning, B
             handler: Callable[[], None] = getattr(self, f"do_{name}")
             handler()
         elif name == "edit":
-            self.read_case()
+            self._read()
 
     def _walk(self, steps: int) -> None:
         columns = table.columns(self.session)
@@ -201,10 +210,6 @@ class MainScreen(Editing, Filing, Peeking, Plotting, Ranking, Asking, Pinning, B
     def do_interrupt(self) -> None:
         """Say how to leave."""
         self.put(replace(self.session, note=f"{key_of(self.session.actions, 'leave')} leaves; unsaved work is kept"))
-
-    def do_pin(self) -> None:
-        """Pin the present walk."""
-        self.put(session.pinned(self.session))
 
     def do_view(self) -> None:
         """Next view of the cells."""
@@ -273,11 +278,23 @@ HANDLERS: dict[str, Callable[[MainScreen, Result], None]] = {
     "assess": MainScreen.walked,
     "referee": MainScreen.refereed,
     "borders": MainScreen.bordered,
+    "beside": MainScreen.fetched,
+    "shares": MainScreen.shared,
+    "folder": MainScreen.looked,
+    "files": MainScreen.filed,
+    "keep": MainScreen.pin_kept,
     "explain": MainScreen.explained,
     "influence": MainScreen.weighed,
     "limit": MainScreen.sought,
 }
 """Kind of a job -> what takes its result."""
 
-EXPECTED: dict[str, tuple[type[BaseException], ...]] = {"read": (CaseError,), "write": (CaseError, FileChanged)}
+EXPECTED: dict[str, tuple[type[BaseException], ...]] = {
+    "read": (CaseError,),
+    "write": (CaseError, FileChanged),
+    "beside": (CaseError, OSError),
+    "folder": (CaseError, OSError),
+    "files": (CaseError, FileChanged, OSError),
+    "keep": (OSError,),
+}
 """Kind of a job -> errors that its handler tells the user about."""

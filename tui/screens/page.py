@@ -2,8 +2,9 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable
+from collections.abc import Callable, Mapping
 from dataclasses import dataclass
+from types import MappingProxyType
 
 from textual import events
 from textual.app import ComposeResult
@@ -39,13 +40,23 @@ MOVES: dict[str, Callable[[int, int, int], int]] = {
 class Page(Overlay[str]):
     """Shows a text and, where there are answers, asks for one. Gives the answer's name, "" where it was left.
 
-    Parameters: title; body, the text, which scrolls; answers; head, lines above the text that stay.
+    Parameters: title; body, the text, which scrolls; answers; head, lines above the text that stay; verbs, name of a key -> what it
+    does, and keys, the words for them on the last line.
     """
 
     CSS = "Page { layout: vertical; } #page { height: 1fr; }"
 
-    def __init__(self, title: str, body: Body, answers: tuple[Answer, ...] = (), head: Body = lambda wide: []) -> None:
+    def __init__(
+        self,
+        title: str,
+        body: Body,
+        answers: tuple[Answer, ...] = (),
+        head: Body = lambda wide: [],
+        verbs: Mapping[str, Callable[[], None]] = MappingProxyType({}),
+        keys: str = "arrows scroll; Escape goes back",
+    ) -> None:
         super().__init__()
+        self._verbs, self._keys = verbs, keys
         self._heading, self._body, self._answers, self._fixed = title, body, answers, head
         self._at = 0
 
@@ -75,7 +86,7 @@ class Page(Overlay[str]):
             self._at = top
         shown = body[top : top + room]
         more = f" ({top + 1}-{top + len(shown)} of {len(body)})" if len(shown) < len(body) else ""
-        keys = "arrows and Enter, or the letter; Escape leaves" if self._answers else "arrows scroll; Escape goes back"
+        keys = "arrows and Enter, or the letter; Escape leaves" if self._answers else self._keys
         padding: list[Line] = [line("")] * (room - len(shown))
         head = line((fit(clean(self._heading) + more, wide), BOLD))
         self._sheet.show([head, *fixed, *shown, *choices, *padding, line((fit(keys, wide), DIM))], size)
@@ -91,6 +102,8 @@ class Page(Overlay[str]):
             self._paint(self.app.size)
         elif event.key in ("escape", "q", "ctrl+q"):
             self.leave("")
+        elif (act := self._verbs.get(event.key) or self._verbs.get(event.character or "")) is not None:
+            act()
         elif self._answers:
             self._answer(event)
 

@@ -97,6 +97,11 @@ class Roster(Overlay[tuple[str, str]]):
         """Paint what the rows say now; the row in hand stays in hand while it is there."""
         self._paint(self.app.size)
 
+    def point_at(self, name: str) -> None:
+        """Take a row in hand, where it is there, and paint."""
+        self._name = name
+        self.paint()
+
     @property
     def name_in_hand(self) -> str:
         """Name of the row in hand, "" where there is none."""

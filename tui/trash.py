@@ -1,0 +1,98 @@
+"""Files thrown away can be brought back: they go to the home trash of the freedesktop.org Trash specification.
+
+Source: freedesktop.org, Trash specification, version 1.0 (2014): `$XDG_DATA_HOME/Trash` with `files` and `info/NAME.trashinfo`. Where that
+folder cannot be used, the state directory has one of the same form.
+"""
+
+from __future__ import annotations
+
+import itertools
+import os
+import shutil
+import time
+from dataclasses import dataclass
+from pathlib import Path
+from urllib.parse import quote
+
+from tui.journal import state_directory
+
+
+@dataclass(frozen=True, slots=True)
+class Thrown:
+    """A file in the trash: where it is, the file that says where it was, and where it was."""
+
+    file: Path
+    info: Path
+    origin: str
+
+
+def home_trash() -> Path:
+    """The user's trash. Errors: OSError where there is no home folder."""
+    given = os.environ.get("XDG_DATA_HOME", "")
+    if os.path.isabs(given):
+        return Path(given) / "Trash"
+    try:
+        return Path.home() / ".local" / "share" / "Trash"
+    except RuntimeError as error:
+        raise OSError("no home folder") from error
+
+
+def throw_away(path: str) -> Thrown:
+    """Move a file to the trash. Errors: OSError; the file is then where it was."""
+    origin = os.path.join(os.path.realpath(os.path.dirname(path) or "."), os.path.basename(path))
+    os.lstat(origin)
+    try:
+        return _into(home_trash(), origin)
+    except OSError:
+        return _into(state_directory() / "trash", origin)
+
+
+def _into(trash: Path, origin: str) -> Thrown:
+    for part in ("files", "info"):
+        (trash / part).mkdir(parents=True, exist_ok=True, mode=0o700)
+    name, info = _reserved(trash, origin)
+    target = trash / "files" / name
+    try:
+        shutil.move(origin, target)
+    except OSError:
+        info.unlink(missing_ok=True)
+        raise
+    return Thrown(target, info, origin)
+
+
+def _reserved(trash: Path, origin: str) -> tuple[str, Path]:
+    """A name that is free in the trash, taken by its info file."""
+    base, end = os.path.splitext(os.path.basename(origin))
+    words = f"[Trash Info]\nPath={quote(origin)}\nDeletionDate={time.strftime('%Y-%m-%dT%H:%M:%S')}\n"
+    for number in itertools.count(1):
+        name = f"{base}{f'.{number}' if number > 1 else ''}{end}"
+        info = trash / "info" / f"{name}.trashinfo"
+        if os.path.lexists(trash / "files" / name):
+            continue
+        try:
+            with info.open("x", encoding="ascii") as stream:
+                stream.write(words)
+        except FileExistsError:
+            continue
+        return name, info
+    raise AssertionError
+
+
+def bring_back(thrown: Thrown) -> None:
+    """Move a file back to where it was. Errors: OSError, also where another file has its name by now."""
+    move_new(str(thrown.file), thrown.origin)
+    thrown.info.unlink(missing_ok=True)
+
+
+def move_new(path: str, target: str) -> None:
+    """Move a file to a name that no file has. Errors: FileExistsError, OSError; the file is then where it was."""
+    try:
+        os.link(path, target, follow_symlinks=False)
+    except FileExistsError:
+        raise
+    except OSError:  # another file system, or one without links
+        if os.path.lexists(target):
+            raise FileExistsError(f"there is a file called {os.path.basename(target)} already") from None
+        shutil.move(path, target)
+    else:
+        os.unlink(path)
