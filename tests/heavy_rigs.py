@@ -79,7 +79,11 @@ def confirm(seed: int) -> tuple[str, str, str]:
 
 def main(low: int, high: int) -> int:
     """Compare the seeds from low to below high; 1 where a mode differs."""
-    found = Counter(confirm(seed) for seed in range(low, high))
+    found = Counter[tuple[str, str, str]]()
+    for seed in range(low, high):
+        found[verdict := confirm(seed)] += 1
+        if verdict[1] != verdict[2]:
+            print(f"{seed}: {verdict}", flush=True)
     for (status, own, plain), count in sorted(found.items()):
         print(f"{count:6d}  {status}: {own}{'' if own == plain else f' AGAINST {plain}'}")
     return int(any(own != plain for _, own, plain in found))
