@@ -243,29 +243,26 @@ def throat_verdict(duct: Duct) -> str:
     critical = attached(duct, 0.0, low, fast=False)
     if critical.choked is None or len(critical.rows) == 0:
         return "no throat"
-    if _behind_throat(duct, high * (1.0 + 1e-6), critical.choked) == "chokes":
+    if _behind_throat(duct, high * (1.0 + 1e-6)) == "chokes":
         return "chokes behind the throat"
     rows = critical.rows
     lacking = [_core_momentum(duct, p, x) - momentum for x, p, _, momentum, _ in rows]
     return "stands" if min(lacking) <= 0.0 <= max(lacking) else "no core"
 
 
-def _behind_throat(duct: Duct, impulse: float, throat: float) -> str:
+def _behind_throat(duct: Duct, impulse: float) -> str:
     """What the supersonic branch does behind a throat that the subsonic one, of this impulse at the entry, just passes.
 
-    It starts a little behind the throat; up to there the branches part linearly, so that the areas' force differs by half of p_sub - p_sup.
+    It starts at Mach 1 a little behind the place where the subsonic one comes nearest to it: from there it makes for the branch of the
+    throat itself, whatever the slope of that.
     """
     rows = attached(duct, 0.0, impulse, fast=False, steps=100).rows
-    behind = rows[rows[:, 0] > throat + 0.01 * duct.end]
-    if len(behind) == 0:
+    x = float(rows[np.argmax(rows[:, 4]), 0]) + 0.01 * duct.end
+    if x >= duct.end:
         return "passes"
-    x, p, _, momentum, _ = behind[0]
-    F = momentum + p * duct.area(x)[0]
     mixture, total, m, _, _ = duct.at(x, x)
-    T, u = mixture.at_impulse(total, F / m, fast=True)
-    fast = m / (u * duct.area(x)[0]) * mixture.R * T
-    F -= 0.5 * (p - fast) * (duct.area(x)[0] - duct.area(throat)[0])
-    return "chokes" if attached(duct, float(x), float(F), fast=True, steps=40).choked is not None else "passes"
+    sonic = m * mixture.impulse(total, mixture.sonic(total))
+    return "chokes" if attached(duct, x, sonic * (1.0 + 10.0 * _CHOKED), fast=True, steps=40).choked is not None else "passes"
 
 
 def _core_momentum(duct: Duct, pressure: float, x: float) -> float:
