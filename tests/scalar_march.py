@@ -143,8 +143,9 @@ def attached(duct: Duct, x: float, impulse: float, fast: bool, steps: int = 8) -
     return March(np.array(rows), None)
 
 
-def core(duct: Duct, pressure: float) -> np.ndarray:
-    """Rows x, Ac/A, M^2, momentum N of the separated core at one pressure; NaN from where it has no momentum or enthalpy left."""
+def core(duct: Duct, pressure: float, steps: int = 24) -> np.ndarray:
+    """Rows x, Ac/A, M^2, momentum N of the separated core at one pressure; NaN from where it has no momentum or enthalpy left. steps: of
+    each piece of the duct, a multiple of four."""
     momentum, rows = duct.impulse - pressure * duct.entry_area, []
     for a, b in duct.pieces:
         middle = 0.5 * (a + b)
@@ -157,8 +158,8 @@ def core(duct: Duct, pressure: float) -> np.ndarray:
             rho = pressure / (mixture.R * T)
             return m / (rho * u * area), mixture.mach2(T, u), -rho * u * u * drag
 
-        x = np.linspace(a, b, 25).tolist()
-        values = _momenta(lambda place, value, state=state: state(place, value)[2], x, momentum) if duct.friction else [momentum] * 25
+        x = np.linspace(a, b, steps + 1).tolist()
+        values = _momenta(lambda place, value, state=state: state(place, value)[2], x, momentum) if duct.friction else [momentum] * len(x)
         rows += [(place, *state(place, value)[:2], value) for place, value in zip(x, values, strict=True)]
         momentum = values[-1]
     return np.array(rows)
@@ -201,12 +202,16 @@ def attached_verdict(duct: Duct) -> str:
     return "separates" if run.rows[:, 1].max() > korkegi(duct.mach) * duct.pressure else "stands"
 
 
+FINE = 192
+"""Steps of each piece of the duct with which the place is found where a core fills it."""
+
+
 def train_verdict(duct: Duct, tried: int = 40) -> str:
     """The smallest pressure above p2 at which the core just fills the duct, and what becomes of the stream there."""
     low, high = duct.pressure * (1.0 + 1e-5), normal_shock(duct) * (1.0 - 1e-6)
 
-    def fullest(pressure: float) -> float:
-        rows = core(duct, pressure)
+    def fullest(pressure: float, steps: int = 24) -> float:
+        rows = core(duct, pressure, steps)
         return float(rows[rows[:, 0] > 0.0, 1].max()) - 1.0
 
     pressures = np.geomspace(low, high, tried)
@@ -214,8 +219,9 @@ def train_verdict(duct: Duct, tried: int = 40) -> str:
     for a, b in pairwise(pressures):
         after = fullest(b)
         if before * after <= 0.0:
-            p = float(brentq(fullest, a, b, xtol=1e-6 * a))
-            rows = core(duct, p)
+            # a core near Mach 1 wants its place finer than the search
+            p = float(brentq(fullest, 0.99 * a, 1.01 * b, (FINE,), xtol=1e-9 * a))
+            rows = core(duct, p, FINE)
             x, _, mach2, momentum = rows[int(np.argmax(np.where(rows[:, 0] > 0.0, rows[:, 1], 0.0)))]
             if mach2 <= 1.0:
                 return "subsonic"
