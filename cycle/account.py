@@ -15,7 +15,7 @@ import numpy as np
 from cycle.arrays import Array, Codes
 from cycle.constants import STANDARD_GRAVITY
 from cycle.flow import states
-from cycle.flowpath import combustor
+from cycle.flowpath import assembly, combustor
 from cycle.flowpath.stream import Stream
 from cycle.gas.base import Gas
 from cycle.gas.constant import ConstantGas
@@ -41,6 +41,32 @@ def spread(march: March, index: Codes, values: Array) -> Array:
     whole = np.full(march.setting.size, np.nan)
     whole[index] = values
     return whole
+
+
+def injection_pressure(march: March) -> Array:
+    """Highest pressure against which the fuel enters, Pa (N,): that of station 3, along a duct the wall's at its injectors; NaN where no
+    fuel does."""
+    burner, entry = march.named("burner"), march.stations().get("3")
+    whole = np.full(march.setting.size, np.nan)
+    if burner is None or entry is None or burner.process.booking is None:
+        return whole
+    pressure, profile = entry.taken(burner.index).stream.state.pressure, burner.process.profile
+    places = assembly.cells(march.setting.take(burner.index), "combustor.injector", "x")
+    if profile and places is not None:
+        along = [_along(profile["x"], profile["pressure"], x) for x in places]
+        pressure = np.maximum.reduce(along)
+    return spread(march, burner.index, np.where(burner.process.booking.fuel_flow > 0.0, pressure, np.nan))
+
+
+def _along(x: Array, values: Array, at: Array) -> Array:
+    """Values of a profile (R, N) at the places (N,), linear between its rows; the nearest row's beyond them."""
+    order = np.argsort(x, axis=0, kind="stable")
+    x, values = np.take_along_axis(x, order, 0), np.take_along_axis(values, order, 0)
+    row = np.clip((x <= at).sum(0), 1, np.isfinite(x).sum(0) - 1)
+    (low, high), (first, last) = (np.take_along_axis(v, np.stack([row - 1, row]), 0) for v in (x, values))
+    part = np.clip((at - low) / np.where(high > low, high - low, 1.0), 0.0, 1.0)
+    found: Array = first + part * (last - first)
+    return found
 
 
 def usable(state: State, values: Array) -> Array:
@@ -313,8 +339,8 @@ def exergy(march: March) -> tuple[Row, ...]:
 
     b = h - T0 s; m_f b_f + m_0 b_0 - m_10 b_dead + m_f u0^2/2 = thrust u0 + T0 S_gen + m_10 (b_10 - b_dead)
     + m_10 (u_10 - u_0)^2/2 - (p_10 - p_0) A_10 u_0, with the wall heat and the divergence as rows of their own. The
-    fuel's supply pressure and standard entropy are needed; at constant gamma its exergy is what it brings above the
-    dead state.
+    fuel's supply pressure, no less than the burner's, and standard entropy are needed; at constant gamma its exergy is what
+    it brings above the dead state.
     """
     points, nozzle, burner = march.solved, march.reached("10"), march.named("burner")
     if not points.size or nozzle is None or burner is None or march.named("flight") is None or not one_pair(march):
@@ -328,10 +354,12 @@ def exergy(march: March) -> tuple[Row, ...]:
     if isinstance(out.gas, ConstantGas):
         fuel_entropy = dead.entropy
     elif setting.fuel is not None and setting.has("fuel.supply_pressure"):
-        fuel_entropy = setting.fuel.entropy(setting["fuel.temperature"], setting["fuel.supply_pressure"])
+        supply = setting["fuel.supply_pressure"]
+        enters = ~(injection_pressure(march)[points] > supply)
+        fuel_entropy = np.where(enters, setting.fuel.entropy(setting["fuel.temperature"], supply), np.nan)
     else:
         return ()
-    if np.isnan(fuel_entropy).any():
+    if np.isnan(fuel_entropy).all():
         return ()
     added = booking.mass_added
     made = out.mass_flow * out.state.entropy - free.mass_flow * free.state.entropy - added * fuel_entropy

@@ -7,7 +7,7 @@ from functools import partial
 
 import numpy as np
 
-from cycle.account import spread
+from cycle.account import injection_pressure, spread
 from cycle.arrays import Array, Codes
 from cycle.audit import Crossing, Emitted
 from cycle.flowpath.stream import Stream
@@ -117,12 +117,14 @@ def _fuel_atoms(march: March) -> dict[str, float]:
 
 
 def _fuel_entropy(march: March, points: Codes) -> Array:
-    """Entropy of the fuel at its supply pressure, or at the burner's where that is not given, J/(kg K)."""
+    """Entropy of the fuel at its supply pressure, or at the burner's where that is not given, J/(kg K).
+
+    Where the supply is too low the fuel cannot enter, which is a limit; the burner is judged as if it came at the burner's pressure.
+    """
     setting = march.setting.take(points)
     if setting.fuel is None or setting.constant_gamma:
         return np.full(points.size, np.nan)
-    p = march.stations()["3"].taken(points).stream.state.pressure
-    supply = setting["fuel.supply_pressure"] if setting.has("fuel.supply_pressure") else p
+    supply = np.fmax(injection_pressure(march)[points], setting.get("fuel.supply_pressure", np.nan))
     return setting.fuel.entropy(setting["fuel.temperature"], supply)
 
 

@@ -121,6 +121,8 @@ LIMITS: tuple[Output, ...] = (
     _limit("corridor_high", "flight corridor, highest q", "Dynamic pressure above which structure and heating are too severe."),
     _limit("ignition_temperature", "self-ignition, T3", "Temperature at a supersonic burner entry at which the fuel lights.", _ROOM),
     _limit("ignition_pressure", "self-ignition, p3", "Pressure at a supersonic burner entry at which the fuel lights.", _ROOM),
+    _limit("fuel_supply", "fuel supply, burner pressure",
+           "Burner pressure where the fuel enters against the fuel's supply pressure, below which none can flow."),
     _limit("thermal_choking", "thermal choking", "Heat at which the burner chokes, solved for.",
            source="Shapiro (1953), ch. 7 (from memory)"),
     _limit("gas_temperature", "gas temperature", "Hottest station against what the walls stand."),

@@ -10,7 +10,7 @@ from dataclasses import dataclass, replace
 
 import numpy as np
 
-from cycle.account import spread
+from cycle.account import injection_pressure, spread
 from cycle.arrays import Array, Codes
 from cycle.flow import gas_shocks, roots
 from cycle.flowpath import assembly, combustor, inlet_limits
@@ -67,6 +67,7 @@ def limits(walked: March, largest_heat: float | None = None) -> tuple[Limit, ...
     return (
         *flight,
         *_burner(walked),
+        _fuel_supply(walked),
         _choking(walked, largest_heat),
         *_hot(walked),
         *_nozzle(walked),
@@ -118,6 +119,14 @@ def _burner(walked: March) -> tuple[Limit, ...]:
         Limit("ignition_pressure", "self-ignition, p3", held * _at(walked, "3", "pressure"), setting["limits.ignition_pressure"],
               "pressure", False, denser, key, missing),
     )  # fmt: skip
+
+
+def _fuel_supply(walked: March) -> Limit:
+    """The pressure against which the fuel enters; its supply stands no lower."""
+    setting, given = walked.setting, "fuel.supply_pressure"
+    missing = "no fuel enters" if setting.has(given) else f"{given} is not given"
+    return Limit("fuel_supply", "fuel supply, burner pressure", injection_pressure(walked), setting.get(given, np.nan), "pressure", True,
+                 "a higher fuel.supply_pressure or less compression", given, missing)  # fmt: skip
 
 
 _HEAT_WORDS = {

@@ -273,7 +273,7 @@ class Walk:
         if not account.one_pair(self.march):
             return "several constant-gamma pairs have no common datum"
         if key == "exergy":
-            return "needs fuel.supply_pressure and the fuel's standard entropy"
+            return "needs fuel.supply_pressure, above the burner's, and the fuel's standard entropy"
         return "a state it needs is out of range"
 
     def _rows(self, rows: tuple[account.Row, ...]) -> tuple[Row, ...]:

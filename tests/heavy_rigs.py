@@ -11,7 +11,7 @@ from collections import Counter
 import numpy as np
 
 import cycle
-from tests import scalar_march
+from tests import scalar_gas, scalar_march
 from tests.random_cases import pick
 from tests.random_flowpath import Case, between, loaded
 
@@ -39,7 +39,7 @@ def heavy_rig(seed: int) -> Case:
             "area": [{"x": 0.0, "area_ratio": 1.0}, *({"x": float(a), "area_ratio": float(b)} for a, b in zip(x, ratio, strict=True))],
         } | ({"equivalence_ratio": between(rng, 0.3, 0.98)} if frozen else {"fuel_air_ratio": between(rng, 0.008, 0.04)}),
     }  # fmt: skip
-    return case | ({"air": {"mole_fractions": scalar_march.AIR}} if frozen else {})
+    return case | ({"air": {"mole_fractions": scalar_gas.AIR}} if frozen else {})
 
 
 def scalar_duct(walk: cycle.Walk) -> scalar_march.Duct:
@@ -47,9 +47,9 @@ def scalar_duct(walk: cycle.Walk) -> scalar_march.Duct:
     n, rows, two = walk.case.numbers, walk.case.rows, walk.station["2"]
     name = walk.case.choices.get("fuel.name")
     gas = (
-        scalar_march.Burning(SCALAR_FUELS[name])
+        scalar_gas.Burning(SCALAR_FUELS[name])
         if name
-        else scalar_march.Perfect(n["gas.cp_combustion"], n["gas.gas_constant"], n["fuel.heating_value"])
+        else scalar_gas.Perfect(n["gas.cp_combustion"], n["gas.gas_constant"], n["fuel.heating_value"])
     )
     theta = n["combustor.burning_theta"]
     ratio = n.get("combustor.fuel_air_ratio", n.get("combustor.equivalence_ratio", 0.0) * float(walk.performance.stoichiometric_ratio))
@@ -79,7 +79,11 @@ def confirm(seed: int) -> tuple[str, str, str]:
 
 def main(low: int, high: int) -> int:
     """Compare the seeds from low to below high; 1 where a mode differs."""
-    found = Counter(confirm(seed) for seed in range(low, high))
+    found = Counter[tuple[str, str, str]]()
+    for seed in range(low, high):
+        found[verdict := confirm(seed)] += 1
+        if verdict[1] != verdict[2]:
+            print(f"{seed}: {verdict}", flush=True)
     for (status, own, plain), count in sorted(found.items()):
         print(f"{count:6d}  {status}: {own}{'' if own == plain else f' AGAINST {plain}'}")
     return int(any(own != plain for _, own, plain in found))

@@ -1,8 +1,7 @@
 """A plain march of one duct, to confirm what the program finds of its modes: one point, one place after another, scipy's integrator.
 
 Written from the balances: attached d(pA + mu) = p dA - Cf (rho u^2/2) P dx with energy, a separated core at one pressure with
-d(mu) = -Cf (rho u^2/2) P dx, fuel entering with its enthalpy and impulse. Constant gamma in closed form, or complete combustion with
-the polynomials of Cantera's data; nothing of `cycle` is used.
+d(mu) = -Cf (rho u^2/2) P dx, fuel entering with its enthalpy and impulse. Nothing of `cycle` is used.
 """
 
 from __future__ import annotations
@@ -10,137 +9,17 @@ from __future__ import annotations
 import math
 from collections.abc import Callable, Iterator
 from dataclasses import dataclass, field
-from functools import cache
+from functools import lru_cache
 from itertools import pairwise
 
 import numpy as np
 from scipy.integrate import solve_ivp
 from scipy.optimize import brentq
 
-RU = 8314.46261815324
-AIR = {"N2": 0.7808, "O2": 0.2095, "Ar": 0.0097}
-ATOMS = {"H2": (0, 2), "CH4": (1, 4), "C2H4": (2, 4)}
-"""Carbon and hydrogen of the fuels."""
+from tests.scalar_gas import Burning, Mixture, Perfect
 
 _CHOKED = 1e-7
 """Impulse above the sonic one, over it, at which a march counts as choked."""
-
-
-@dataclass(frozen=True)
-class Perfect:
-    """Constant specific heat; the burnt fuel brings `heat` J per kg of it."""
-
-    cp: float
-    R: float
-    heat: float
-
-    def mixed(self, ratio: float, burnt: float) -> Mixture:
-        return Mixture(lambda T: self.cp * T, lambda T: self.cp, self.R)
-
-    def released(self, burnt: float) -> float:
-        return burnt * self.heat
-
-    def fuel_enthalpy(self, T: float) -> float:
-        return self.cp * T
-
-
-@dataclass(frozen=True)
-class Burning:
-    """Air of `AIR` and a fuel that burns completely to CO2 and H2O as far as it burns; the rest of it is inert."""
-
-    fuel: str
-
-    def mixed(self, ratio: float, burnt: float) -> Mixture:
-        carbon, hydrogen = ATOMS[self.fuel]
-        air = sum(x * _molar_mass(s) for s, x in AIR.items())
-        n = {s: x / air for s, x in AIR.items()}
-        fuel = ratio / _molar_mass(self.fuel)
-        moles = min(burnt * fuel, n["O2"] / (carbon + 0.25 * hydrogen))
-        n["O2"] -= moles * (carbon + 0.25 * hydrogen)
-        n |= {self.fuel: fuel - moles, "CO2": carbon * moles, "H2O": 0.5 * hydrogen * moles}
-        weights = {s: value / (1.0 + ratio) for s, value in n.items()}
-        low, high = (sum(value * _coefficients(s)[i] for s, value in weights.items()) for i in (0, 1))
-        R = RU * sum(weights.values())
-
-        def enthalpy(T: float) -> float:
-            a = high if T >= 1000.0 else low
-            return float(RU * (a[5] + T * (a[0] + T * (a[1] / 2 + T * (a[2] / 3 + T * (a[3] / 4 + T * a[4] / 5))))))
-
-        def heat_capacity(T: float) -> float:
-            a = high if T >= 1000.0 else low
-            return float(RU * (a[0] + T * (a[1] + T * (a[2] + T * (a[3] + T * a[4])))))
-
-        return Mixture(enthalpy, heat_capacity, R)
-
-    def released(self, burnt: float) -> float:
-        return 0.0
-
-    def fuel_enthalpy(self, T: float) -> float:
-        a = _coefficients(self.fuel)[0 if T < 1000.0 else 1]
-        return float(RU * T * (a[0] + T * (a[1] / 2 + T * (a[2] / 3 + T * (a[3] / 4 + T * a[4] / 5))) + a[5] / T) / _molar_mass(self.fuel))
-
-
-@cache
-def _species() -> dict[str, tuple[float, tuple[np.ndarray, np.ndarray]]]:
-    import cantera as ct
-
-    wanted = {"N2", "O2", "Ar", "CO2", "H2O", *ATOMS}
-    found = {}
-    for species in ct.Species.list_from_file("nasa_gas.yaml"):
-        if species.name in wanted:
-            c = species.thermo.coeffs
-            low, high = np.asarray(c[8:15]), np.asarray(c[1:8])
-            # argon has one range to 6000 K
-            found[species.name] = (species.molecular_weight, (low, high if c[0] == 1000.0 else low))
-    return found
-
-
-def _molar_mass(name: str) -> float:
-    return _species()[name][0]
-
-
-def _coefficients(name: str) -> tuple[np.ndarray, np.ndarray]:
-    return _species()[name][1]
-
-
-@dataclass(frozen=True)
-class Mixture:
-    """The gas at one place: h(T) J/kg, cp(T), R J/(kg K)."""
-
-    enthalpy: Callable[[float], float]
-    heat_capacity: Callable[[float], float]
-    R: float
-
-    def temperature(self, h: float) -> float:
-        return float(brentq(lambda T: self.enthalpy(T) - h, 50.0, 7000.0, xtol=1e-10, rtol=1e-14))
-
-    def mach2(self, T: float, u: float) -> float:
-        cp = self.heat_capacity(T)
-        return u * u * (cp - self.R) / (cp * self.R * T)
-
-    def impulse(self, total: float, T: float) -> float:
-        """(p A + m u)/m of the stream of total enthalpy `total` at T."""
-        u = math.sqrt(2.0 * (total - self.enthalpy(T)))
-        return u + self.R * T / u
-
-    def sonic(self, total: float) -> float:
-        """Temperature at Mach 1."""
-        rest = self.temperature(total)
-
-        def miss(T: float) -> float:
-            cp = self.heat_capacity(T)
-            return 2.0 * (total - self.enthalpy(T)) - cp * self.R * T / (cp - self.R)
-
-        return float(brentq(miss, 0.6 * rest, rest, xtol=1e-9, rtol=1e-13))
-
-    def at_impulse(self, total: float, impulse: float, fast: bool) -> tuple[float, float]:
-        """T K and u m/s of the supersonic or the subsonic stream of an impulse; the sonic one where it has not enough."""
-        sonic = self.sonic(total)
-        T = sonic
-        if impulse > self.impulse(total, sonic):
-            end = 60.0 if fast else self.temperature(total) * (1.0 - 1e-12)
-            T = float(brentq(lambda t: self.impulse(total, t) - impulse, end, sonic, xtol=1e-9, rtol=1e-13))
-        return T, math.sqrt(2.0 * (total - self.enthalpy(T)))
 
 
 @dataclass(frozen=True)
@@ -198,23 +77,24 @@ class Duct:
                 return A + slope * (x - a), slope
         raise ValueError(x)
 
-    def burning(self, x: float, inside: float) -> tuple[Mixture, float, float]:
-        """Mixture, total enthalpy J/kg and mass flow kg/s at x; `inside` is a place of the same piece, which says what is injected."""
+    @lru_cache(maxsize=1 << 14)  # noqa: B019
+    def at(self, x: float, inside: float) -> tuple[Mixture, float, float, float, float]:
+        """Mixture, total enthalpy J/kg, mass flow kg/s, area m2 and drag over rho u^2, m, at x; `inside` is a place of the same piece,
+        which says what is injected."""
         entered = [i for i in self.injections if i.x < inside]
         ratio = self.ratio * sum(i.share for i in entered)
         share = sum(i.share * i.burnt(x) for i in entered)
         burnt = self.burnt * share * self.ratio / ratio if ratio else 0.0
         start = self.gas.mixed(0.0, 0.0).enthalpy(self.temperature) + 0.5 * self.velocity**2
         brought = self.gas.fuel_enthalpy(self.fuel_temperature) + self.gas.released(burnt)
-        return self.gas.mixed(ratio, burnt), (start + ratio * brought) / (1.0 + ratio), self.mass_flow * (1.0 + ratio)
+        area, slope = self.area(inside)
+        area += slope * (x - inside)
+        drag = self.friction * math.sqrt(math.pi * area)
+        return self.gas.mixed(ratio, burnt), (start + ratio * brought) / (1.0 + ratio), self.mass_flow * (1.0 + ratio), area, drag
 
     def kick(self, x: float) -> float:
         """Impulse of the fuel injected at x, N."""
         return sum(self.mass_flow * self.ratio * i.share * i.speed for i in self.injections if i.x == x)
-
-    def drag(self, x: float, rho: float, u: float) -> float:
-        """Friction of the whole wall, N/m."""
-        return self.friction * 0.5 * rho * u * u * 2.0 * math.sqrt(math.pi * self.area(x)[0])
 
     def after(self, x: float) -> Iterator[tuple[float, float]]:
         """Pieces from x on."""
@@ -238,16 +118,16 @@ def attached(duct: Duct, x: float, impulse: float, fast: bool, steps: int = 8) -
         F += duct.kick(a) if a > x or a == 0.0 else 0.0
 
         def state(x: float, F: float, middle: float = middle) -> tuple[float, float, float, float, float]:
-            mixture, total, m = duct.burning(x, middle)
+            mixture, total, m, area, drag = duct.at(x, middle)
             T, u = mixture.at_impulse(total, F / m, fast)
-            return m / (u * duct.area(x)[0]) * mixture.R * T, u, m, m / (u * duct.area(x)[0]), mixture.mach2(T, u)
+            return m / (u * area) * mixture.R * T, u, m, m * u / area * drag, mixture.mach2(T, u)
 
         def rate(x: float, y: np.ndarray, middle: float = middle, slope: float = duct.area(middle)[1]) -> list[float]:
-            p, u, _, rho, _ = state(x, y[0], middle)
-            return [p * slope - duct.drag(min(x, duct.end), rho, u)]
+            p, _, _, drag, _ = state(x, y[0], middle)
+            return [p * slope - drag]
 
         def room(x: float, y: np.ndarray, middle: float = middle) -> float:
-            mixture, total, m = duct.burning(x, middle)
+            mixture, total, m, _, _ = duct.at(x, middle)
             return y[0] / (m * mixture.impulse(total, mixture.sonic(total))) - 1.0 - _CHOKED
 
         if room(a, np.array([F])) <= 0.0:
@@ -263,33 +143,42 @@ def attached(duct: Duct, x: float, impulse: float, fast: bool, steps: int = 8) -
     return March(np.array(rows), None)
 
 
-def core(duct: Duct, pressure: float) -> np.ndarray:
-    """Rows x, Ac/A, M^2, momentum N of the separated core at one pressure; NaN from where it has no momentum or enthalpy left."""
+def core(duct: Duct, pressure: float, steps: int = 24) -> np.ndarray:
+    """Rows x, Ac/A, M^2, momentum N of the separated core at one pressure; NaN from where it has no momentum or enthalpy left. steps: of
+    each piece of the duct, a multiple of four."""
     momentum, rows = duct.impulse - pressure * duct.entry_area, []
     for a, b in duct.pieces:
         middle = 0.5 * (a + b)
         momentum += duct.kick(a)
 
-        def state(x: float, momentum: float, middle: float = middle) -> tuple[float, float, float, float]:
-            mixture, total, m = duct.burning(x, middle)
+        def state(x: float, momentum: float, middle: float = middle) -> tuple[float, float, float]:
+            mixture, total, m, area, drag = duct.at(x, middle)
             u = momentum / m
             T = mixture.temperature(total - 0.5 * u * u)
-            return m * mixture.R * T / (pressure * u), mixture.mach2(T, u), pressure / (mixture.R * T), u
+            rho = pressure / (mixture.R * T)
+            return m / (rho * u * area), mixture.mach2(T, u), -rho * u * u * drag
 
-        x = np.linspace(a, b, 25)
-        values = np.full(x.size, momentum)
-        if duct.friction:
-
-            def rate(x: float, y: np.ndarray, middle: float = middle) -> list[float]:
-                _, _, rho, u = state(x, y[0], middle)
-                return [-duct.drag(min(x, duct.end), rho, u)]
-
-            values = solve_ivp(rate, (a, b), [momentum], t_eval=x, rtol=1e-7, atol=1e-9 * momentum).y[0]
-        for place, value in zip(x, values, strict=True):
-            area, mach2, _, _ = state(place, value)
-            rows.append((place, area / (duct.area(middle)[0] + duct.area(middle)[1] * (place - middle)), mach2, value))
-        momentum = float(values[-1])
+        x = np.linspace(a, b, steps + 1).tolist()
+        values = _momenta(lambda place, value, state=state: state(place, value)[2], x, momentum) if duct.friction else [momentum] * len(x)
+        rows += [(place, *state(place, value)[:2], value) for place, value in zip(x, values, strict=True)]
+        momentum = values[-1]
     return np.array(rows)
+
+
+def _momenta(rate: Callable[[float, float], float], x: list[float], y: float) -> list[float]:
+    """y at evenly spaced places, by the classical Runge-Kutta step over four intervals each and its cubic in between."""
+    found = [y]
+    for k in range(0, len(x) - 1, 4):
+        h = x[k + 4] - x[k]
+        first = rate(x[k], y)
+        second = rate(x[k + 2], y + 0.5 * h * first)
+        third = rate(x[k + 2], y + 0.5 * h * second)
+        last = rate(x[k + 4], y + h * third)
+        for t in (0.25, 0.5, 0.75, 1.0):
+            middle, end = t**2 - 2.0 / 3.0 * t**3, -0.5 * t**2 + 2.0 / 3.0 * t**3
+            found.append(y + h * ((t - 1.5 * t**2 + 2.0 / 3.0 * t**3) * first + middle * (second + third) + end * last))
+        y = found[-1]
+    return found
 
 
 def normal_shock(duct: Duct) -> float:
@@ -305,18 +194,24 @@ def korkegi(mach: float) -> float:
 
 
 def attached_verdict(duct: Duct) -> str:
+    if attached(duct, 0.0, duct.impulse, fast=True).choked is not None:
+        return "chokes"
     run = attached(duct, 0.0, duct.impulse, fast=True, steps=100)
     if run.choked is not None:
         return "chokes"
     return "separates" if run.rows[:, 1].max() > korkegi(duct.mach) * duct.pressure else "stands"
 
 
+FINE = 192
+"""Steps of each piece of the duct with which the place is found where a core fills it."""
+
+
 def train_verdict(duct: Duct, tried: int = 40) -> str:
     """The smallest pressure above p2 at which the core just fills the duct, and what becomes of the stream there."""
     low, high = duct.pressure * (1.0 + 1e-5), normal_shock(duct) * (1.0 - 1e-6)
 
-    def fullest(pressure: float) -> float:
-        rows = core(duct, pressure)
+    def fullest(pressure: float, steps: int = 24) -> float:
+        rows = core(duct, pressure, steps)
         return float(rows[rows[:, 0] > 0.0, 1].max()) - 1.0
 
     pressures = np.geomspace(low, high, tried)
@@ -324,8 +219,9 @@ def train_verdict(duct: Duct, tried: int = 40) -> str:
     for a, b in pairwise(pressures):
         after = fullest(b)
         if before * after <= 0.0:
-            p = float(brentq(fullest, a, b, xtol=1e-6 * a))
-            rows = core(duct, p)
+            # a core near Mach 1 wants its place finer than the search
+            p = float(brentq(fullest, 0.99 * a, 1.01 * b, (FINE,), xtol=1e-9 * a))
+            rows = core(duct, p, FINE)
             x, _, mach2, momentum = rows[int(np.argmax(np.where(rows[:, 0] > 0.0, rows[:, 1], 0.0)))]
             if mach2 <= 1.0:
                 return "subsonic"
@@ -353,29 +249,26 @@ def throat_verdict(duct: Duct) -> str:
     critical = attached(duct, 0.0, low, fast=False)
     if critical.choked is None or len(critical.rows) == 0:
         return "no throat"
-    if _behind_throat(duct, high * (1.0 + 1e-6), critical.choked) == "chokes":
+    if _behind_throat(duct, high * (1.0 + 1e-6)) == "chokes":
         return "chokes behind the throat"
     rows = critical.rows
     lacking = [_core_momentum(duct, p, x) - momentum for x, p, _, momentum, _ in rows]
     return "stands" if min(lacking) <= 0.0 <= max(lacking) else "no core"
 
 
-def _behind_throat(duct: Duct, impulse: float, throat: float) -> str:
+def _behind_throat(duct: Duct, impulse: float) -> str:
     """What the supersonic branch does behind a throat that the subsonic one, of this impulse at the entry, just passes.
 
-    It starts a little behind the throat; up to there the branches part linearly, so that the areas' force differs by half of p_sub - p_sup.
+    It starts at Mach 1 a little behind the place where the subsonic one comes nearest to it: from there it makes for the branch of the
+    throat itself, whatever the slope of that.
     """
     rows = attached(duct, 0.0, impulse, fast=False, steps=100).rows
-    behind = rows[rows[:, 0] > throat + 0.01 * duct.end]
-    if len(behind) == 0:
+    x = float(rows[np.argmax(rows[:, 4]), 0]) + 0.01 * duct.end
+    if x >= duct.end:
         return "passes"
-    x, p, _, momentum, _ = behind[0]
-    F = momentum + p * duct.area(x)[0]
-    mixture, total, m = duct.burning(x, x)
-    T, u = mixture.at_impulse(total, F / m, fast=True)
-    fast = m / (u * duct.area(x)[0]) * mixture.R * T
-    F -= 0.5 * (p - fast) * (duct.area(x)[0] - duct.area(throat)[0])
-    return "chokes" if attached(duct, float(x), float(F), fast=True, steps=40).choked is not None else "passes"
+    mixture, total, m, _, _ = duct.at(x, x)
+    sonic = m * mixture.impulse(total, mixture.sonic(total))
+    return "chokes" if attached(duct, x, sonic * (1.0 + 10.0 * _CHOKED), fast=True, steps=40).choked is not None else "passes"
 
 
 def _core_momentum(duct: Duct, pressure: float, x: float) -> float:

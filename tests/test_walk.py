@@ -201,6 +201,39 @@ def test_limits_speak_of_what_is_not_assessed() -> None:
     assert subsonic["ignition_temperature"].state == "not assessed"
 
 
+def test_fuel_below_the_burner_pressure_is_over_its_limit_and_has_no_exergy() -> None:
+    """At 84 kPa ahead of the fuel: too low, high enough, and both in a batch; the walk itself does not depend on it."""
+    case = cycle.load(CASES / "saltmarsh.toml")
+    batch = cycle.solve(case, {"fuel.supply_pressure": np.array([5e4, 2e6])})
+    limit = next(row for row in batch.limits if row.key == "fuel_supply")
+    assert list(limit.state) == ["over", "ok"] and limit.input == "fuel.supply_pressure"
+    assert limit.actual == pytest.approx(batch.station["3"]["pressure"]) and list(limit.allowed) == [5e4, 2e6]
+    assert batch.audit.ok
+    exergy = {row.key: row.value for row in batch.exergy}
+    assert all(np.isnan(exergy[key][0]) and exergy[key][1] > 0.0 for key in ("input", "entropy_made"))
+    low = cycle.solve(case.replace({"fuel.supply_pressure": 5e4}))
+    assert not low.exergy and "above the burner's" in low.why_not("exergy")
+    assert low.performance.thrust == pytest.approx(batch.performance.thrust[1], rel=1e-12)
+    assert next(row for row in shipped("bench-three").limits if row.key == "fuel_supply").restore == "fuel.supply_pressure is not given"
+
+
+def test_fuel_far_below_the_burner_pressure_does_not_fail_the_second_law() -> None:
+    """Fuel at 5 MPa for a burner at 4.5 GPa: the limit says that it cannot enter, the audit judges the burner."""
+    walk = cycle.solve(cycle.loads(written(random_case(9176)), "fuel at 5 MPa"))
+    limit = next(row for row in walk.limits if row.key == "fuel_supply")
+    assert walk.status == "solved" and limit.actual > 4e9 and limit.allowed == 5e6 and limit.state == "over"
+    assert walk.audit.ok, walk.audit.worst
+
+
+def test_fuel_of_a_duct_enters_against_the_wall_pressure_at_its_injectors() -> None:
+    walk = shipped("tidegate")
+    limit = next(row for row in walk.limits if row.key == "fuel_supply")
+    places = [row["x"] for row in walk.case.rows["combustor.injector"]]
+    along = np.interp(places, walk.profile["x"], walk.profile["pressure"])
+    assert limit.actual == pytest.approx(along.max(), rel=1e-12)
+    assert limit.actual >= walk.station["3"]["pressure"]
+
+
 @pytest.mark.parametrize("name", ["saltmarsh", "heron", "lantern", "sandbar", "bench-three"])
 def test_referee_agrees_on_the_shipped_cases(name: str) -> None:
     """Cantera from our (h, p) or (s, p), same data: T 1e-4 K, mole fractions 1e-8, sound speed 1e-6 (finite difference)."""

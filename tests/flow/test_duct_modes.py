@@ -92,6 +92,18 @@ def test_a_throat_may_stand_at_a_corner_or_at_the_exit():
         assert found.needed[0] > 0.0
 
 
+@pytest.mark.parametrize(("model", "near"), [("constant-gamma", 1e-12), ("frozen", 3e-8)])
+def test_a_throat_at_the_exit_leaves_the_stream_at_mach_one(model, near):
+    """The state there is a double root: it must not show the root of rounding, nor depend on the batch. Frozen: the throat's own error."""
+    duct, limit = random_ducts(600, model, seed=5)
+    found = solve_block(duct, limit, "thermal-throat")
+    at_exit = np.flatnonzero((found.mode == THROAT) & (found.throat_kind == EXIT))
+    assert len(at_exit) >= 2
+    assert found.velocity[at_exit] == pytest.approx(found.state.sound_speed[at_exit], rel=near)
+    alone = solve_block(duct.take(at_exit), limit[at_exit], "thermal-throat")
+    assert alone.velocity == pytest.approx(found.velocity[at_exit], rel=1e-12)
+
+
 def test_the_critical_rayleigh_duct_needs_what_the_closed_line_says():
     """Constant area, throat at the exit: the impulse needed at the entry is F* of the Rayleigh line. 1e-9: exact balance."""
     duct = heated(8e5, x=(0.0, 1.0), ratio=(1.0, 1.0))

@@ -36,6 +36,9 @@ _FINE = 9
 _CHOKES = -1e-7
 """Discriminant of a quadratic, over the square of its middle term, below which there is no flow."""
 
+_SONIC = 1e-14
+"""The same, below which the flow is sonic: what is left is rounding, and its root, a hundred millionth, would show."""
+
 
 @dataclass(frozen=True, eq=False)
 class Branch:
@@ -212,7 +215,7 @@ def _sweep(balance: _Balance, model: Model, free: Array, source: Array | None) -
         left = square - 4.0 * q2 * q0
         if row:
             worst = np.minimum(worst, left / square)
-        u[row] = (middle + balance.branch * np.sqrt(np.maximum(left, 0.0))) / (2.0 * q2)
+        u[row] = (middle + balance.branch * np.sqrt(np.where(left > _SONIC * square, left, 0.0))) / (2.0 * q2)
         F = model.c0[row] + model.c1[row] * u[row] + model.c2[row] / u[row]
         level[row] = F - balance.brought[row]
         new[row] = balance.a[row] * F - balance.b[row] * u[row]

@@ -67,10 +67,10 @@ Kept = TypeVar("Kept", Train, Throat)
 
 
 class Solver:
-    """One block of points under solution."""
+    """One block of points under solution. least: the first mode that may be taken, code (N,); those before it are refuted."""
 
-    def __init__(self, duct: Duct, separation: Array, panels: int) -> None:
-        self.duct, self.separation = duct, separation
+    def __init__(self, duct: Duct, separation: Array, panels: int, least: Codes) -> None:
+        self.duct, self.separation, self.least = duct, separation, least
         self.count = max(panels, duct.edges.shape[0] - 1)
         self.scan = scan_of(duct)
         self.summits = candidates(duct, self.scan)
@@ -94,7 +94,7 @@ class Solver:
         x, segment = run.place_of_highest_pressure()
         peak = spot(duct, segment, x, run.free_at(x), one, scan)[1].pressure[0]
         peak = np.maximum(peak, run.flow.pressure.max(0))
-        separates = peak > self.separation[index] * duct.pressure
+        separates = (peak > self.separation[index] * duct.pressure) | (self.least[index] > ATTACHED)
         self.found.attached[index] = np.select([run.lost, run.chokes, separates], [UNSETTLED, CHOKES, SEPARATES], STANDS)
         self.found.attached_peak[index] = np.where(run.passes, peak, np.nan)
         stands = run.passes & ~separates
@@ -104,7 +104,7 @@ class Solver:
 
     def try_train(self) -> None:
         """Separated core up to where it fills the duct, supersonic from there."""
-        index = np.flatnonzero(self.open)
+        index = np.flatnonzero(self.open & (self.least <= TRAIN))
         index = index[~self._surely_choked(index)] if index.size else index
         looked = self._look_for_train(index)
         if looked is None:
@@ -246,17 +246,22 @@ def solve_block(duct: Duct, separation: Array, asked: str = "auto", panels: int 
     with np.errstate(all="ignore"):
         if np.isfinite(duct.wall_temperature).any():
             return _cooled(first_loss(duct), separation, asked, panels, second)
-        return _solved(duct, separation, asked, panels, second)
+        return _solved(duct, separation, asked, panels, second, np.full(duct.size, NONE))
 
 
 def _cooled(duct: Duct, separation: Array, asked: str, panels: int, second: bool) -> Solution:
-    """The flow and the heat it loses, in turn until the heat stands still; each point stops on its own."""
+    """The flow and the heat it loses, in turn until the heat stands still; each point stops on its own.
+
+    Near a border the heat of either mode may call for the other. A mode that its own heat has refuted twice does not stand and is not
+    tried again: the first time the heat may still be the first guess's.
+    """
     assert duct.cooling is not None
     live, lost = np.arange(duct.size), duct.cooling.lost
+    mode, least, refuted = np.full(duct.size, len(MODES)), np.full(duct.size, NONE), np.zeros(duct.size, np.bool_)
     whole: Solution | None = None
     for _ in range(_COOLING_TURNS):
         part = replace(duct.take(live), cooling=Cooling(duct.cooling.grid.take(live), lost[:, live]))
-        found = _solved(part, separation[live], asked, panels, second)
+        found = _solved(part, separation[live], asked, panels, second, least[live])
         following = found.lost_heat
         assert following is not None
         # what is booked is the heat that was marched with, so that the energy closes to rounding
@@ -267,6 +272,10 @@ def _cooled(duct: Duct, separation: Array, asked: str, panels: int, second: bool
             whole = found
         else:
             merge(whole, live, found)
+        falls = found.mode > mode[live]
+        least[live] = np.where(falls & refuted[live], found.mode, least[live])
+        refuted[live] |= falls
+        mode[live] = found.mode
         going = (moved > _COOLED * size) & (found.mode != NONE)
         lost[:, live] = following
         live = live[going]
@@ -282,8 +291,8 @@ _COOLED = 1e-10
 """Change of the heat lost, over m u2^2, at which it stands still."""
 
 
-def _solved(duct: Duct, separation: Array, asked: str, panels: int, second: bool) -> Solution:
-    solver = Solver(duct, separation, panels)
+def _solved(duct: Duct, separation: Array, asked: str, panels: int, second: bool, least: Codes) -> Solution:
+    solver = Solver(duct, separation, panels, least)
     for attempt in ASKED[asked]:
         attempt(solver)
     if second:
