@@ -13,16 +13,15 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from cycle.arrays import Array, Flags
-from cycle.flow import cone, gas_shocks, gas_waves
-from cycle.flow.roots import bracketed, peak
+from cycle.arrays import Array, Codes, Flags
+from cycle.flow import cone, gas_shocks, gas_waves, shocks
+from cycle.flow.roots import bracketed, scanned_peak
 from cycle.gas.base import Gas
 from cycle.gas.state import NOT_CONVERGED, State
 
-_STEPS = 48
 _LEAST_ROOT = 0.04
 _ROOT_TOLERANCE = 1.0e-11
-_PEAK_WIDTH = 1.0e-3
+_NOISE = 1.0e-12
 _NODES = 0.5 - 0.5 * np.cos(np.pi * (np.arange(7) + 0.5) / 7.0)
 _TO_POWERS = np.linalg.inv(np.vander(_NODES, increasing=True))
 _DETACHMENT_ROUNDS = 8
@@ -90,34 +89,28 @@ class _Layer:
         return found
 
     def to_ray(self, ray: Array) -> Array:
-        """(u, v, ln w) on a ray, (3, N), by fourth-order Runge-Kutta steps."""
+        """(u, v, ln w) on a ray, (3, N), by the steps of `cone.runge_kutta`."""
         u, v, w = self.along, -self.normal, self.outward
         begin = np.log(np.tan(0.5 * self.wave_angle))
         a2 = self.sound_square(u, v)
         to_sonic = a2 - v**2
         layer = -0.5 * to_sonic / v / (u * np.sin(self.wave_angle) + a2 * w / to_sonic)
         growth = np.log1p((begin - np.log(np.tan(0.5 * ray))) / layer)
+        deepest = cone.DEEPEST * np.sqrt(a2)
 
         def slope(t: float, now: Array) -> Array:
             u, v, log_w = now
             stretch = layer * np.exp(growth * t)
             theta = 2.0 * np.arctan(np.exp(begin + layer - stretch))
             a2 = self.sound_square(u, v)
-            # inside the surface (v > 0), where there is no flow, go on without compressibility: only the sign counts
-            squeeze = np.where(v < 0.0, a2 / (a2 - v**2), 1.0)
+            across = np.minimum(v, deepest)
+            squeeze = np.where(v < deepest, a2 / (a2 - across**2), 1.0)
             sine = np.sin(theta)
             dv = -(u * sine + squeeze * np.exp(log_w))
-            inward: Array = -growth * stretch * np.array([np.minimum(v, 0.0) * sine, dv, -squeeze * np.cos(theta)])
+            inward: Array = -growth * stretch * np.array([across * sine, dv, -squeeze * np.cos(theta)])
             return inward
 
-        h = 1.0 / _STEPS
-        now: Array = np.array([u, v, np.log(w)])
-        for t in h * np.arange(_STEPS):
-            k1 = slope(t, now)
-            k2 = slope(t + 0.5 * h, now + 0.5 * h * k1)
-            k3 = slope(t + 0.5 * h, now + 0.5 * h * k2)
-            now = now + h / 6.0 * (k1 + 2.0 * k2 + 2.0 * k3 + slope(t + h, now + h * k3))
-        return now
+        return cone.runge_kutta(slope, np.array([u, v, np.log(w)]))
 
     def inside(self, ray: Array) -> Array:
         """Logarithm of w/(u sin theta) on a ray: zero on the surface, positive inside it."""
@@ -144,30 +137,32 @@ def _lowest(before: State, velocity: Array, ray: Array) -> Array:
 def _peak_wave(gas: Gas, before: State, velocity: Array, ray: Array) -> Array:
     """Wave angle of the conical shock that comes closest to having its surface beyond a ray."""
     low = _lowest(before, velocity, ray)
-    reach = 0.5 * np.pi - low
 
-    def near(part: Array) -> Array:
-        found = closeness(gas, before, velocity, low + part * reach, ray)
-        return np.where(np.isnan(found), -np.inf, found)
+    def near(wave_angle: Array, at: Codes) -> Array:
+        return closeness(gas.take(at), before.take(at), velocity[at], wave_angle, ray[at])
 
-    return low + reach * peak(near, np.full(low.shape, 1e-3), np.ones(low.shape), _PEAK_WIDTH)
+    return scanned_peak(near, low + 1e-3 * (0.5 * np.pi - low), np.full(low.shape, 0.5 * np.pi))
 
 
 def _weak_wave(gas: Gas, before: State, velocity: Array, half_angle: Array) -> Array:
     low = _lowest(before, velocity, half_angle)
-    # a conical shock turns the stream further behind it, so the wedge's limit is inside the cone's
-    wedge, high = gas_shocks.largest_turning(gas, before, velocity)
-    blunt = np.flatnonzero(half_angle > wedge)
+    # a conical shock turns the stream further behind it, so that the wedge's limit lies between the weak and the strong solution
+    high = np.array(shocks.detachment(velocity / before.sound_speed, before.isentropic_exponent).wave_angle)
+    at_high = closeness(gas, before, velocity, high, half_angle)
+    blunt = np.flatnonzero(~(at_high > 0.0) & np.isfinite(half_angle))
     if blunt.size:
-        high = np.array(high)
-        high[blunt] = _peak_wave(gas.take(blunt), before.take(blunt), velocity[blunt], half_angle[blunt])
+        part = gas.take(blunt), before.take(blunt), velocity[blunt]
+        high[blunt] = _peak_wave(*part, half_angle[blunt])
+        at_high[blunt] = closeness(*part, high[blunt], half_angle[blunt])
     reach = high - low
 
     # the half angle of a weak conical shock goes with the fourth root of its distance from the Mach wave
     def residual(root: Array) -> Array:
         return closeness(gas, before, velocity, low + reach * root**4, half_angle)
 
-    root = bracketed(residual, np.full(low.shape, _LEAST_ROOT), np.ones(low.shape), _ROOT_TOLERANCE)
+    least = np.full(low.shape, _LEAST_ROOT)
+    ends = residual(least), at_high
+    root = bracketed(residual, least, np.ones(low.shape), _ROOT_TOLERANCE, enough=_NOISE, straight=True, ends=ends)
     return low + reach * root**4
 
 

@@ -9,7 +9,7 @@ from dataclasses import dataclass
 
 import numpy as np
 
-from cycle.arrays import Array, Flags
+from cycle.arrays import Array, Codes, Flags
 from cycle.flow import roots, shocks
 from cycle.gas.base import Gas
 from cycle.gas.state import State
@@ -59,13 +59,17 @@ def _turning(gas: Gas, before: State, velocity: Array, angle: Array) -> tuple[Ar
 def largest_turning(gas: Gas, before: State, velocity: Array) -> tuple[Array, Array]:
     """Detachment: the largest deflection rad (N,) of an attached shock and its wave angle rad (N,).
 
-    Golden section about the constant-gamma angle; the maximum is flat, so 1e-4 in angle is 1e-8 in deflection.
+    Scanned about the constant-gamma angle; the maximum is flat, so 1e-4 in angle is 1e-8 in deflection.
     """
     mach = np.maximum(velocity / before.sound_speed, 1.0 + 1e-9)
     centre = shocks.detachment(mach, before.isentropic_exponent).wave_angle
     low = np.maximum(centre - 0.25, np.arcsin(1.0 / mach) + 1e-9)
     high = np.minimum(centre + 0.25, 0.5 * np.pi)
-    angle = roots.peak(lambda b: _turning(gas, before, velocity, b)[0], low, high, 1e-4)
+
+    def turned(angle: Array, at: Codes) -> Array:
+        return _turning(gas.take(at), before.take(at), velocity[at], angle)[0]
+
+    angle = roots.scanned_peak(turned, low, high)
     return _turning(gas, before, velocity, angle)[0], angle
 
 

@@ -61,6 +61,9 @@ _MET = 1e-7
 
 _TOLERANCE = 1e-14
 
+_NOISE = 1e-13
+"""Relative difference of needed and given throat area at which the search ends: states are known to about that."""
+
 
 @dataclass(frozen=True, slots=True)
 class Matched:
@@ -179,11 +182,17 @@ def match_throat(
     target = np.broadcast_to(throat_area, entering.velocity.shape)
     with np.errstate(all="ignore"):
         engine = _engine(entering, area_3, burner, diffuser_pressure_ratio)
-        critical = engine.at(np.zeros_like(target)).needed
-        holding = engine.at(np.ones_like(target)).needed / target - 1.0
+        critical, last = (engine.at(np.full(target.shape, place)).needed for place in (0.0, 1.0))
+        holding = last / target - 1.0
         spills, margin = critical > target, target / critical - 1.0
         lower, upper = np.where(spills, _least(engine, spills), 0.0), np.where(spills, 0.0, 1.0)
-        root = roots.bracketed(lambda t: np.log(engine.at(t).needed / target), lower, upper, _TOLERANCE)
+
+        def miss(place: Array) -> Array:
+            return np.log(engine.at(place).needed / target)
+
+        first = np.log(critical / target)
+        ends = np.where(spills, miss(lower), first) if spills.any() else first, np.where(spills, first, np.log(last / target))
+        root = roots.bracketed(miss, lower, upper, _TOLERANCE, enough=_NOISE, ends=ends)
         end = np.where(np.isnan(critical), 0.0, np.where(spills, lower, upper))
         place = np.where(np.abs(margin) <= _CRITICAL, 0.0, np.where(np.isfinite(root), root, end))
         overloaded = np.minimum(target / engine.area_3, 1.0 + place) - 1.0
