@@ -16,7 +16,7 @@ from typing import NamedTuple
 
 import numpy as np
 
-from cycle.arrays import Array, ArrayLike
+from cycle.arrays import Array, ArrayLike, Codes
 from cycle.flow import isentropic, shocks
 from cycle.flow.prandtl_meyer import mach_angle
 from cycle.flow.roots import bracketed, scanned_peak
@@ -124,7 +124,11 @@ def _inside(m: Array, wave_angle: Array, ray: Array, g: Array) -> Array:
 def _peak_wave(m: Array, ray: Array, g: Array) -> Array:
     """Wave angle of the conical shock that comes closest to having its surface beyond a ray."""
     lowest = np.maximum(mach_angle(m), ray)
-    return scanned_peak(lambda wave_angle, at: _inside(m[at], wave_angle, ray[at], g[at]), lowest, np.full(m.shape, 0.5 * np.pi))
+
+    def near(wave_angle: Array, at: Codes) -> Array:
+        return _inside(m[at], wave_angle, ray[at], g[at])
+
+    return scanned_peak(near, lowest, np.full(m.shape, 0.5 * np.pi))
 
 
 def detachment(mach: ArrayLike, gamma: ArrayLike) -> shocks.Detachment:

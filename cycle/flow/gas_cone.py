@@ -161,8 +161,9 @@ def _weak_wave(gas: Gas, before: State, velocity: Array, half_angle: Array) -> A
         return closeness(gas, before, velocity, low + reach * root**4, half_angle)
 
     least = np.full(low.shape, _LEAST_ROOT)
-    ends = residual(least), at_high
-    root = bracketed(residual, least, np.ones(low.shape), _ROOT_TOLERANCE, enough=_NOISE, straight=True, ends=ends)
+    at_least = residual(least)
+    chord = (at_high * least - at_least) / (at_high - at_least)
+    root = bracketed(residual, least, np.ones(low.shape), _ROOT_TOLERANCE, enough=_NOISE, first=chord, ends=(at_least, at_high))
     return low + reach * root**4
 
 

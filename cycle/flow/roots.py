@@ -13,7 +13,6 @@ ValuedWithSlope = Callable[[Array], tuple[Array, Array]]
 
 _NEWTON_LIMIT = 100
 _BRACKET_LIMIT = 100
-_EDGE = 1e-3
 _GOLDEN = (np.sqrt(5.0) - 1.0) / 2.0
 _ROUNDING = 4.0 * np.finfo(np.float64).eps
 
@@ -58,7 +57,7 @@ def newton(function: ValuedWithSlope, lower: ArrayLike, upper: ArrayLike, start:
 
 @np.errstate(invalid="ignore", divide="ignore", over="ignore")
 def bracketed(
-    function: Valued, lower: ArrayLike, upper: ArrayLike, tolerance: float, *, enough: float = 0.0, straight: bool = False,
+    function: Valued, lower: ArrayLike, upper: ArrayLike, tolerance: float, *, enough: float = 0.0, first: Array | None = None,
     ends: tuple[Array, Array] | None = None,
 ) -> Array:  # fmt: skip
     """Root inside a bracket when the slope is not known: inverse quadratic steps, bisection where they fail.
@@ -66,8 +65,8 @@ def bracketed(
     function: x (N,) -> value (N,), of opposite sign (or zero) at `lower` and `upper`. lower, upper: (N,).
     tolerance: half-width of the final bracket relative to the root, 1 (a root at zero: relative to `tolerance`
     times the first bracket). enough: size of the value at which x is a root whatever the bracket: the noise of the function.
-    straight: the function is nearly a straight line, and the first step is that of the chord. ends: its values at `lower` and `upper`,
-    (N,), where they are known.
+    first: where to look first, (N,), where it lies inside; else the middle. ends: the function's values at `lower` and
+    `upper`, (N,), where they are known.
     Returns (N,), the root; NaN without a change of sign or where an input is NaN.
     Source: T. R. Chandrupatla, Advances in Engineering Software 28 (1997) 145 (from memory).
     """
@@ -76,9 +75,9 @@ def bracketed(
     c, fc = a, fa
     smallest = tolerance * np.abs(a - b)
     fraction = np.full(a.shape, 0.5)
-    if straight:
-        chord = fa / (fa - fb)
-        fraction = np.where((chord > _EDGE) & (chord < 1.0 - _EDGE), chord, fraction)
+    if first is not None:
+        part = (first - a) / (b - a)
+        fraction = np.where((part > 0.0) & (part < 1.0), part, fraction)
     signed = np.sign(fa) * np.sign(fb) <= 0.0
     done = ~signed
     root = np.where(np.abs(fb) < np.abs(fa), b, a)
@@ -102,11 +101,11 @@ def bracketed(
 
 
 def _quadratic_fraction(a: Array, b: Array, c: Array, fa: Array, fb: Array, fc: Array) -> Array:
-    """Where to go between a and b: inverse quadratic interpolation where it is safe, else one half."""
+    """Where to go between a and b: inverse quadratic interpolation where it is safe, the chord where c is infinite, else one half."""
     xi, phi = (a - b) / (c - b), (fa - fb) / (fc - fb)
     safe = (phi**2 < xi) & ((1.0 - phi) ** 2 < 1.0 - xi)
     step = fa / (fb - fa) * fc / (fb - fc) + (c - a) / (b - a) * fa / (fc - fa) * fb / (fc - fb)
-    return np.where(safe, step, 0.5)
+    return np.where(safe, step, np.where(np.isinf(fc) & np.isfinite(fa), fa / (fa - fb), 0.5))
 
 
 _SCAN = 9
@@ -133,7 +132,8 @@ def scanned_peak(function: Callable[[Array, Codes], Array], lower: Array, upper:
     shift = 0.25 * (high - low) * (below - above) / (below - 2.0 * top + above)
     best = np.argmax(np.where(np.isnan(values), -np.inf, values), axis=0)
     inside = np.abs(shift) < 0.5 * (high - low)
-    return np.where(inside & (best == middle), x[middle, every] + shift, x[best, every])
+    place: Array = np.where(inside & (best == middle), x[middle, every] + shift, x[best, every])
+    return place
 
 
 @np.errstate(invalid="ignore", divide="ignore", over="ignore")
