@@ -118,7 +118,8 @@ def runge_kutta(slope: Slope, state: Array) -> Array:
 def _inside(m: Array, wave_angle: Array, ray: Array, g: Array) -> Array:
     """Logarithm of w/(u sin theta) on a ray: zero on the surface, positive inside it."""
     u, _, log_w = _march(m, wave_angle, ray, g)
-    return log_w - np.log(u * np.sin(ray))
+    found: Array = log_w - np.log(u * np.sin(ray))
+    return found
 
 
 def _peak_wave(m: Array, ray: Array, g: Array) -> Array:
