@@ -253,7 +253,7 @@ def _cooled(duct: Duct, separation: Array, asked: str, panels: int, second: bool
     """The flow and the heat it loses, in turn until the heat stands still; each point stops on its own."""
     assert duct.cooling is not None
     live, lost = np.arange(duct.size), duct.cooling.lost
-    last, step = np.full_like(lost, np.nan), np.full_like(lost, np.nan)
+    history: list[tuple[Array, Array]] = []
     whole: Solution | None = None
     for _ in range(_COOLING_TURNS):
         part = replace(duct.take(live), cooling=Cooling(duct.cooling.grid.take(live), lost[:, live]))
@@ -270,8 +270,8 @@ def _cooled(duct: Duct, separation: Array, asked: str, panels: int, second: bool
         else:
             merge(whole, live, found)
         going = (moved > _COOLED * size) & (found.mode != NONE)
-        lost[:, live] = following - _ahead(change, step[:, live]) * np.nan_to_num(following - last[:, live])
-        last[:, live], step[:, live] = following, change
+        lost[:, live] = _ahead(following, change, history)
+        history = [(g[:, going], f[:, going]) for g, f in ((following, change), *history[:1])]
         live = live[going]
         if not live.size:
             break
@@ -280,16 +280,27 @@ def _cooled(duct: Duct, separation: Array, asked: str, panels: int, second: bool
     return whole
 
 
-def _ahead(change: Array, before: Array) -> Array:
-    """Share (N,) of the last two heats' difference that the next one is moved on by, so that changes (R, N) that shrink by one factor
-    would end: D. G. Anderson, Journal of the ACM 12 (1965) 547, with one step kept (from memory). 0 in the first turn, or where
-    the changes do not shrink fast."""
-    bend = change - before
-    share = (change * bend).sum(0) / (bend**2).sum(0)
-    return np.where(np.abs(share) < _FARTHEST, share, 0.0)
+def _ahead(following: Array, change: Array, history: list[tuple[Array, Array]]) -> Array:
+    """The heat (R, N) to march with next: what followed, moved on by as much of the last turns' differences as leaves the least
+    change. history: what followed and its change in earlier turns, the latest first. Source: D. G. Anderson, Journal of the ACM
+    12 (1965) 547 (from memory)."""
+    left, kept = change, list[tuple[Array, Array]]()
+    for earlier, its_change in history:
+        bend, move = change - its_change, following - earlier
+        for b, m in kept:
+            share = (bend * b).sum(0) / (b * b).sum(0)
+            bend, move = bend - share * b, move - share * m
+        kept.append((bend, move))
+    for bend, move in kept:
+        share = (left * bend).sum(0) / (bend * bend).sum(0)
+        share = np.where(np.abs(share) < _FARTHEST, share, 0.0)
+        left, following = left - share * bend, following - share * move
+    return following
 
 
 _FARTHEST = 0.3
+"""Largest share moved on: the changes of the plain turns shrink by more than this, or the flow changes its mode meanwhile."""
+
 _COOLING_TURNS = 20
 _COOLED = 1e-10
 """Change of the heat lost, over m u2^2, at which it stands still."""
