@@ -117,7 +117,7 @@ def scanned_peak(function: Callable[[Array, Codes], Array], lower: Array, upper:
     """Place of the largest value of a smooth function with one peak, many places to a call: where a call costs more than its points.
 
     function: x (9 N,) and the index of each point (9 N,) -> value (9 N,); NaN counts as no peak. lower, upper: (N,), one peak between.
-    Nine places, then nine between the neighbours of the best, twice; at last the vertex of the parabola through three, about 1e-5 of
+    Nine places, then nine between the neighbours of the best, twice; at last the vertex of the parabola through three, some 1e-5 of
     the first interval from the peak. Returns (N,), the place. Source: elementary.
     """
     points = np.tile(np.arange(lower.size), _SCAN)
