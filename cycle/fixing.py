@@ -272,6 +272,10 @@ def _differs(walk: Walk, again: Walk) -> Iterator[Refusal]:
     if again.status != "solved":
         yield "", f"the fixed flowpath has no solution at its own design point: {again.reason}", again.status, "a solved case"
         return
+    if any("exit_shock_pressure" in p.figures for p in again.processes) and walk.case.choices["nozzle.exit"] == "exit_pressure":
+        given = format_number(walk.case.numbers["nozzle.exit_pressure"])
+        yield "nozzle.exit_pressure", "at its own area the ambient pressure drives a shock into the nozzle", given, "a higher exit pressure"
+        return
     moved = {"2"} if _terminal(walk.case) else set()
     for name in (n for n in walk.station if n not in moved):
         for key in _COMPARED:

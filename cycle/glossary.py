@@ -68,6 +68,10 @@ PROCESS_FIGURES: tuple[Output, ...] = (
     _process("area_ratio", "area ratio", "Area behind the burner over that ahead of it."),
     _process("burner_exit_over_throat", "burner exit over throat", "Burner exit area over that of the throat."),
     _process("over_expanded", "over-expanded", "1 where the internal nozzle ends below the pressure asked for at the exit."),
+    _process("full_flow_pressure", "exit pressure flowing full", "Exit pressure of the nozzle if no shock stood inside.", "pressure"),
+    _process("exit_shock_pressure", "pressure behind an exit shock",
+             "Pressure behind a normal shock in the exit plane; a higher ambient pressure drives the shock inside.", "pressure",
+             source="Shapiro (1953), ch. 5 (from memory)"),
     _process("enthalpy_jump", "enthalpy jump", "Enthalpy that a change of the constant-gamma gas books at constant p, T and u.",
              "specific energy"),
     _process("entropy_jump", "entropy jump", "Entropy that a change of the constant-gamma gas books.", "specific heat"),
@@ -132,7 +136,9 @@ LIMITS: tuple[Output, ...] = (
     _limit("nozzle_separation", "nozzle separation", "Pressure at the nozzle's end over ambient, below which the flow separates.", _ROOM,
            "Summerfield, Foster and Swan (1954), from memory; the allowed value is an input"),
     _limit("nozzle_shock", "shock in the nozzle",
-           "Ambient pressure over that behind a normal shock in the exit plane; above 1 a shock stands inside and thrust fails.",
+           "Ambient pressure over that behind a normal shock in the end plane of the full-flowing nozzle; above 1 a shock stands inside. A "
+           "closed nozzle that ends in a given area is then followed: subsonic at ambient pressure. With an internal area ratio or a given "
+           "exit pressure it is not followed: the thrust is still that of full flow.",
            source="Shapiro (1953), ch. 5 (from memory)"),
     _limit("attached", "attached inlet shocks", "Turn of the inlet shock nearest to detaching against the largest that stays attached.",
            source="NACA Report 1135 (1953)"),
@@ -239,6 +245,8 @@ _NO_VALUE = {
     "shock_area_ratio": "no shock stands in the diffuser",
     "shock_recovery": "no shock stands in the diffuser",
     "spilled_entropy": "nothing is spilled",
+    "full_flow_pressure": "no shock stands in the nozzle",
+    "exit_shock_pressure": "no shock stands in the nozzle",
     "choking_margin": "nothing chokes",
 }
 

@@ -192,8 +192,12 @@ def _nozzle(walked: March) -> tuple[Limit, ...]:
     setting = walked.setting
     key = f"nozzle.{setting.choices['nozzle.exit']}"
     station = "9" if walked.reached("9") is not None else "10"
-    ambient, behind = _at(walked, "0", "pressure"), _behind_exit_shock(walked, station)
-    ratio = _at(walked, station, "pressure") / ambient
+    ambient = _at(walked, "0", "pressure")
+    # with a shock inside, the exit has left the state that the two limits speak of
+    full, shocked = (_of(walked, "nozzle", f"{name}_pressure") for name in ("full_flow", "exit_shock"))
+    inside = np.isfinite(shocked)
+    behind = np.where(inside, shocked, _behind_exit_shock(walked, station))
+    ratio = np.where(inside, full, _at(walked, station, "pressure")) / ambient
     restore = "a smaller exit or a higher exit pressure"
     return (
         Limit("nozzle_separation", f"nozzle separation, p{station}/p0", ratio, setting["limits.nozzle_separation"], "ratio", False,

@@ -13,8 +13,9 @@ from cycle.arrays import Array
 from cycle.constants import STANDARD_AIR
 from cycle.evidence import Check, checks
 from cycle.flow import isentropic, shocks, states
-from cycle.flowpath import expansion
-from cycle.flowpath.expansion import ISENTROPIC, REGIME_CODE, Line
+from cycle.flowpath import back_pressure, expansion
+from cycle.flowpath.back_pressure import REGIME_CODE
+from cycle.flowpath.expansion import ISENTROPIC, Line
 from cycle.flowpath.stream import Stream, stream
 from cycle.gas.base import Gas
 from cycle.gas.constant import ConstantGas
@@ -47,8 +48,8 @@ def total_pressure(given_stream: Stream) -> Array:
     return states.rest(given_stream.gas, given_stream.total_enthalpy, given_stream.state.entropy).pressure
 
 
-def regimes(found: expansion.Backed) -> list[str]:
-    return ["-" if c < 0 else expansion.REGIME_NAMES[c] for c in found.regime]
+def regimes(found: back_pressure.Backed) -> list[str]:
+    return ["-" if c < 0 else back_pressure.REGIME_NAMES[c] for c in found.regime]
 
 
 def faults(codes: Array) -> list[str]:
@@ -65,7 +66,7 @@ def test_shock_in_a_nozzle_equals_the_closed_chain(gamma: float, place: float, s
     throat = moving(constant(1, gamma), 1.0, 900.0, 2e5)
     pt = total_pressure(throat)
     back = pt * recovery * isentropic.pressure_ratio(out, gamma)
-    found = expansion.against_back_pressure(throat, place * spread * throat.area, back)
+    found = back_pressure.against_back_pressure(throat, place * spread * throat.area, back)
     assert regimes(found) == ["shock-in-nozzle"]
     # a weak shock's place is known to the third root of the precision of its loss
     loose = 1e-8 if mach > 1.3 else 1e-5
@@ -99,7 +100,7 @@ def test_regimes_follow_in_order_and_meet_at_their_borders(gamma: float) -> None
         ]
     )
     throat = moving(constant(back.size, gamma), 1.0, 900.0, 2e5)
-    found = expansion.against_back_pressure(throat, area * throat.area, back * total_pressure(throat))
+    found = back_pressure.against_back_pressure(throat, area * throat.area, back * total_pressure(throat))
     assert regimes(found) == [
         "-", "unchoked", "unchoked", "shock-in-nozzle", "shock-in-nozzle", "shock-at-exit", "over-expanded", "over-expanded",
         "fully-expanded", "under-expanded",
@@ -122,7 +123,7 @@ def test_shock_in_a_real_nozzle_balances_and_moves_downstream_as_the_back_pressu
     critical = states.sonic(gas, rest.enthalpy, rest.entropy, rest)
     throat = stream(gas, critical, states.velocity(rest.enthalpy, critical), np.full(n, 10.0))
     back = np.linspace(0.95, 0.5, n) * 4e5
-    found = expansion.against_back_pressure(throat, 2.4 * throat.area, back)
+    found = back_pressure.against_back_pressure(throat, 2.4 * throat.area, back)
     assert set(regimes(found)) == {"shock-in-nozzle"}
     assert np.all(np.diff(found.shock_area_ratio) > 0.0) and np.all(np.diff(found.recovery) < 0.0)
     assert np.all(found.behind.state.entropy > throat.state.entropy)
@@ -141,7 +142,7 @@ def test_shock_in_a_real_nozzle_balances_and_moves_downstream_as_the_back_pressu
 
 def test_supersonic_entry_expels_the_shock_instead_of_running_unchoked() -> None:
     entering = moving(constant(3), 2.0, 900.0, 1e5)
-    found = expansion.against_back_pressure(entering, 2.0 * entering.area, np.array([7.5e5, 4e5, 1e5]))
+    found = back_pressure.against_back_pressure(entering, 2.0 * entering.area, np.array([7.5e5, 4e5, 1e5]))
     assert [*faults(found.fault)] == ["shock-expelled", "solved", "solved"]
     assert regimes(found) == ["-", "shock-in-nozzle", "over-expanded"]
     assert np.isnan(found.exit.velocity[0]) and np.isnan(found.passed[0])
@@ -150,10 +151,10 @@ def test_supersonic_entry_expels_the_shock_instead_of_running_unchoked() -> None
 def test_separation_margin_is_the_rule_on_the_exit_pressure() -> None:
     throat = moving(constant(2), 1.0, 900.0, 2e5)
     attached = expansion.widened(throat, 5.0 * throat.area)[0].pressure
-    found = expansion.against_back_pressure(throat, 5.0 * throat.area, attached / np.array([0.39, 0.41]))
+    found = back_pressure.against_back_pressure(throat, 5.0 * throat.area, attached / np.array([0.39, 0.41]))
     assert regimes(found) == ["over-expanded"] * 2
     np.testing.assert_allclose(found.separation_margin, np.array([0.39, 0.41]) / 0.4 - 1.0, rtol=1e-9)
-    moved = expansion.against_back_pressure(throat, 5.0 * throat.area, attached / np.array([0.39, 0.41]), threshold=0.3)
+    moved = back_pressure.against_back_pressure(throat, 5.0 * throat.area, attached / np.array([0.39, 0.41]), threshold=0.3)
     assert np.all(moved.separation_margin > 0.0)
 
 
@@ -325,7 +326,7 @@ def test_nan_stays_with_its_point() -> None:
     entering = moving(burnt(2), 1.0, 2500.0, 1e5)
     lost = Stream(entering.gas, entering.state, np.array([np.nan, entering.velocity[1]]), entering.mass_flow, entering.axial_factor)
     outside = np.full(2, 1e4)
-    back = expansion.against_back_pressure(lost, 2.0 * entering.area, outside)
+    back = back_pressure.against_back_pressure(lost, 2.0 * entering.area, outside)
     parts = expansion.two_part(lost, 2.0 * entering.area, "pressure", outside)
     frozen = expansion.frozen_after(lost, "mach", np.full(2, 1.5), "pressure", outside)
     for moved, fault in ((back.exit, back.fault), (parts.ten, parts.fault), (frozen.exit, frozen.fault)):
@@ -341,7 +342,7 @@ def test_a_passage_that_does_not_widen_hands_the_throat_on() -> None:
     throat = stream(gas, critical, states.velocity(rest.enthalpy, critical), np.full(1, 10.0))
     parts = expansion.two_part(throat, throat.area, "area", throat.area)
     frozen = expansion.frozen_after(throat, "area_ratio", np.full(1, 0.9), "pressure", np.full(1, 1e4))
-    back = expansion.against_back_pressure(throat, throat.area, np.full(1, 1e4))
+    back = back_pressure.against_back_pressure(throat, throat.area, np.full(1, 1e4))
     assert not parts.fault.any() and not frozen.fault.any() and regimes(back) == ["under-expanded"]
     for state in (parts.nine.state, parts.ten.state, back.exit.state):
         assert state.pressure[0] == critical.pressure[0]

@@ -16,18 +16,28 @@ from typing import NamedTuple
 
 import numpy as np
 
-from cycle.arrays import Array, ArrayLike
+from cycle.arrays import Array, ArrayLike, Codes
 from cycle.flow import isentropic, shocks
 from cycle.flow.prandtl_meyer import mach_angle
-from cycle.flow.roots import bracketed, peak
+from cycle.flow.roots import bracketed, scanned_peak
 
-_State = tuple[Array, Array, Array]  # u, v over the limiting velocity; ln w
-_Slope = Callable[[float, _State], _State]
+Slope = Callable[[float, Array], Array]
 
-_STEPS = 48
+_STEPS = 16
+DEEPEST = 0.05
+"""Mach number across the ray up to which the equations go on inside the surface; a kink at it would cost the steps their order."""
+
+_STAGES: tuple[tuple[float, tuple[float, ...]], ...] = (
+    (0.0, ()),
+    (1 / 3, (1 / 3,)),
+    (2 / 3, (0.0, 2 / 3)),
+    (1 / 3, (1 / 12, 1 / 3, -1 / 12)),
+    (1 / 2, (-1 / 16, 9 / 8, -3 / 16, -3 / 8)),
+    (1 / 2, (0.0, 9 / 8, -3 / 8, -3 / 4, 1 / 2)),
+    (1.0, (9 / 44, -9 / 11, 63 / 44, 18 / 11, 0.0, -16 / 11)),
+)
 _LEAST_ROOT = 1.0e-3
 _ROOT_TOLERANCE = 1.0e-12
-_PEAK_WIDTH = 1.0e-4
 _DETACHMENT_ROUNDS = 20
 _DETACHMENT_TOLERANCE = 1.0e-9
 
@@ -52,8 +62,8 @@ class Cone(NamedTuple):
     total_pressure_ratio: Array
 
 
-def _march(m: Array, wave_angle: Array, ray: Array, g: Array) -> _State:
-    """Velocities u, v and ln w on a ray behind a conical shock."""
+def _march(m: Array, wave_angle: Array, ray: Array, g: Array) -> Array:
+    """Velocities u, v over the limiting one and ln w on a ray behind a conical shock, (3, N)."""
     shock = shocks.shock_of_wave(m, wave_angle, g)
     kinetic = 0.5 * (g - 1.0) * shock.mach**2
     speed = np.sqrt(kinetic / (1.0 + kinetic))
@@ -66,37 +76,41 @@ def _march(m: Array, wave_angle: Array, ray: Array, g: Array) -> _State:
     # distance in which v moves away from sonic by as much again
     layer = -0.5 * to_sonic / v / (u * np.sin(wave_angle) + sound_square * w / to_sonic)
     growth = np.log1p(span / layer)
+    deepest = DEEPEST * np.sqrt(sound_square)
 
-    def slope(t: float, state: _State) -> _State:
+    def slope(t: float, state: Array) -> Array:
         u, v, log_w = state
         stretch = layer * np.exp(growth * t)
         theta = 2.0 * np.arctan(np.exp(start + layer - stretch))
         sine = np.sin(theta)
         sound_square = 0.5 * (g - 1.0) * (1.0 - u**2 - v**2)
-        # inside the surface (v > 0), where there is no flow, go on without compressibility: only the sign counts
-        squeeze = np.where(v < 0.0, sound_square / (sound_square - v**2), 1.0)
+        # inside the surface (v > 0), where there is no flow, go on smoothly a little, then without compressibility: only the sign counts
+        across = np.minimum(v, deepest)
+        squeeze = np.where(v < deepest, sound_square / (sound_square - across**2), 1.0)
         step = -growth * stretch
         dv = -(u * sine + squeeze * np.exp(log_w))
-        return step * np.minimum(v, 0.0) * sine, step * dv, -step * squeeze * np.cos(theta)
+        inward: Array = step * np.array([across * sine, dv, -squeeze * np.cos(theta)])
+        return inward
 
-    return _runge_kutta(slope, (u, v, np.log(w)))
-
-
-def _moved(state: _State, h: float, slope: _State) -> _State:
-    return state[0] + h * slope[0], state[1] + h * slope[1], state[2] + h * slope[2]
+    return runge_kutta(slope, np.array(np.broadcast_arrays(u, v, np.log(w))))
 
 
-def _runge_kutta(slope: _Slope, state: _State) -> _State:
-    """Fourth-order Runge-Kutta steps from t = 0 to 1."""
+def runge_kutta(slope: Slope, state: Array) -> Array:
+    """Sixth-order Runge-Kutta steps from t = 0 to 1: seven slopes a step.
+
+    slope: t, state (3, N) -> d state/dt. Source: J. C. Butcher, Journal of the Australian Mathematical Society 4 (1964) 179 (from memory).
+    """
     h = 1.0 / _STEPS
     for i in range(_STEPS):
-        t = i * h
-        first = slope(t, state)
-        second = slope(t + 0.5 * h, _moved(state, 0.5 * h, first))
-        third = slope(t + 0.5 * h, _moved(state, 0.5 * h, second))
-        fourth = slope(t + h, _moved(state, h, third))
-        for weight, part in ((1.0, first), (2.0, second), (2.0, third), (1.0, fourth)):
-            state = _moved(state, weight * h / 6.0, part)
+        slopes: list[Array] = []
+        for place, row in _STAGES:
+            at = state
+            for weight, k in zip(row, slopes, strict=True):
+                if weight:
+                    at = at + (h * weight) * k
+            slopes.append(slope((i + place) * h, at))
+        outer = slopes[0] + slopes[6], slopes[2] + slopes[3], slopes[4] + slopes[5]
+        state = state + (h / 120.0) * (11.0 * outer[0] + 81.0 * outer[1] - 32.0 * outer[2])
     return state
 
 
@@ -104,13 +118,18 @@ def _runge_kutta(slope: _Slope, state: _State) -> _State:
 def _inside(m: Array, wave_angle: Array, ray: Array, g: Array) -> Array:
     """Logarithm of w/(u sin theta) on a ray: zero on the surface, positive inside it."""
     u, _, log_w = _march(m, wave_angle, ray, g)
-    return log_w - np.log(u * np.sin(ray))
+    found: Array = log_w - np.log(u * np.sin(ray))
+    return found
 
 
 def _peak_wave(m: Array, ray: Array, g: Array) -> Array:
     """Wave angle of the conical shock that comes closest to having its surface beyond a ray."""
     lowest = np.maximum(mach_angle(m), ray)
-    return peak(lambda wave_angle: _inside(m, wave_angle, ray, g), lowest, 0.5 * np.pi, _PEAK_WIDTH)
+
+    def near(wave_angle: Array, at: Codes) -> Array:
+        return _inside(m[at], wave_angle, ray[at], g[at])
+
+    return scanned_peak(near, lowest, np.full(m.shape, 0.5 * np.pi))
 
 
 def detachment(mach: ArrayLike, gamma: ArrayLike) -> shocks.Detachment:
@@ -119,7 +138,9 @@ def detachment(mach: ArrayLike, gamma: ArrayLike) -> shocks.Detachment:
     mach: (N,), 1, above 1. gamma: (N,), 1. Returns `Detachment`, `deflection` being the half angle; NaN below Mach 1.
     Source: Taylor and Maccoll (1933): the cone on which the weak and the strong solution meet.
     """
-    m, g = isentropic.operands(mach, gamma)
+    shaped = np.broadcast_arrays(*isentropic.operands(mach, gamma))
+    shape = shaped[0].shape
+    m, g = (np.ravel(part) for part in shaped)
     ray = shocks.detachment(m, g).deflection
     wave_angle, step = ray, ray
     for _ in range(_DETACHMENT_ROUNDS):
@@ -131,7 +152,7 @@ def detachment(mach: ArrayLike, gamma: ArrayLike) -> shocks.Detachment:
         if not np.any(np.abs(step) > _DETACHMENT_TOLERANCE):
             break
     settled = np.abs(step) <= _DETACHMENT_TOLERANCE
-    return shocks.Detachment(np.where(settled, ray, np.nan), np.where(settled, wave_angle, np.nan))
+    return shocks.Detachment(*(np.where(settled, part, np.nan).reshape(shape) for part in (ray, wave_angle)))
 
 
 def _upper_wave(m: Array, cone: Array, g: Array) -> Array:

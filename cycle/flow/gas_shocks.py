@@ -5,11 +5,11 @@ Rankine-Hugoniot relations, e.g. NACA Report 1135 (1953), for the closed constan
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 
-from cycle.arrays import Array, Flags
+from cycle.arrays import Array, Codes, Flags
 from cycle.flow import roots, shocks
 from cycle.gas.base import Gas
 from cycle.gas.state import State
@@ -17,6 +17,9 @@ from cycle.gas.state import State
 _CLEAR = 0.9
 """Share of the constant-gamma detachment deflection below which the two branches are well apart in any gas."""
 _SETTLED = 1e-14
+
+_CARRIED_T, _CARRIED_P = 1.4, 10.0
+"""Largest ratios across a shock over which a composition is carried as a start: within those of the equilibrium iteration."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -38,11 +41,23 @@ def normal_shock(gas: Gas, before: State, velocity: Array) -> Front:
     total = before.enthalpy + 0.5 * velocity**2
     with np.errstate(all="ignore"):
         volume = ((g - 1.0) * mach2 + 2.0) / ((g + 1.0) * np.maximum(mach2, 1.0)) / rho
-        guess = gas.at("hp", total - 0.5 * (flux * volume) ** 2, impulse - flux**2 * volume)
+        guess = _closed_behind(before, volume, impulse - flux**2 * volume)
+        if guess is None:
+            guess = gas.at("hp", total - 0.5 * (flux * volume) ** 2, impulse - flux**2 * volume)
         state = gas.at("momentum", impulse, flux, total, flux, start=guess)
         behind = flux / state.density
     real = (mach2 > 1.0) & (behind <= state.sound_speed * (1.0 + 1e-6))
     return Front(state.flagged((mach2 > 1.0) & ~real), behind, np.full_like(velocity, 0.5 * np.pi), mach2 > 1.0)
+
+
+def _closed_behind(before: State, volume: Array, pressure: Array) -> State | None:
+    """A start behind shocks whose jump is small enough for the composition ahead to be carried over it; None where one is not."""
+    T = before.temperature * pressure * volume * before.density / before.pressure
+    small = (_CARRIED_T * before.temperature > T) & (_CARRIED_P * before.pressure > pressure)
+    if not small.all():
+        return None
+    sound = np.sqrt(before.isentropic_exponent * pressure * volume)
+    return replace(before, temperature=T, pressure=pressure, density=1.0 / volume, sound_speed=sound)
 
 
 def _turning(gas: Gas, before: State, velocity: Array, angle: Array) -> tuple[Array, Front]:
@@ -59,13 +74,17 @@ def _turning(gas: Gas, before: State, velocity: Array, angle: Array) -> tuple[Ar
 def largest_turning(gas: Gas, before: State, velocity: Array) -> tuple[Array, Array]:
     """Detachment: the largest deflection rad (N,) of an attached shock and its wave angle rad (N,).
 
-    Golden section about the constant-gamma angle; the maximum is flat, so 1e-4 in angle is 1e-8 in deflection.
+    Scanned about the constant-gamma angle; the maximum is flat, so 1e-4 in angle is 1e-8 in deflection.
     """
     mach = np.maximum(velocity / before.sound_speed, 1.0 + 1e-9)
     centre = shocks.detachment(mach, before.isentropic_exponent).wave_angle
     low = np.maximum(centre - 0.25, np.arcsin(1.0 / mach) + 1e-9)
     high = np.minimum(centre + 0.25, 0.5 * np.pi)
-    angle = roots.peak(lambda b: _turning(gas, before, velocity, b)[0], low, high, 1e-4)
+
+    def turned(angle: Array, at: Codes) -> Array:
+        return _turning(gas.take(at), before.take(at), velocity[at], angle)[0]
+
+    angle = roots.scanned_peak(turned, low, high)
     return _turning(gas, before, velocity, angle)[0], angle
 
 

@@ -39,13 +39,16 @@ def from_reservoir(gas: Gas, total_temperature: Array, total_pressure: Array, pr
 def at_mach(gas: Gas, total_enthalpy: Array, entropy: Array, mach: Array, start: State) -> State:
     """State (N,) at the Mach number `mach` (N,) of the stream (ht, s); Newton in ln p, then secant.
 
-    start: any state of the same stream, such as the present one. At constant entropy dh = v dp and, as long as the
-    isentropic exponent changes slowly, d(a^2)/a^2 = (1 - 1/gamma_s) dp/p; the secant takes the rest.
+    start: any state of the same stream, such as the present one; the first pressure is that of its isentropic exponent. At
+    constant entropy dh = v dp and, as long as the exponent changes slowly, d(a^2)/a^2 = (1 - 1/gamma_s) dp/p; the secant takes
+    the rest.
     """
-    ln_p = np.log(start.pressure)
     state, slope, before, at = start, None, None, None
-    done = np.zeros(ln_p.shape, bool)
     with np.errstate(all="ignore"):
+        g, present = start.isentropic_exponent, velocity(total_enthalpy, start) / start.sound_speed
+        relative = (1.0 + 0.5 * (g - 1.0) * present**2) / (1.0 + 0.5 * (g - 1.0) * mach**2)
+        ln_p = np.log(start.pressure) + np.nan_to_num(g / (g - 1.0) * np.log(relative))
+        done = np.zeros(ln_p.shape, bool)
         for _ in range(_TURNS):
             state = gas.at("sp", entropy, np.exp(ln_p), start=state)
             a2 = state.sound_speed**2

@@ -6,6 +6,7 @@ The components take plain arrays; what a case's keys mean for them stands here a
 from __future__ import annotations
 
 from collections.abc import Callable
+from dataclasses import replace
 
 import numpy as np
 
@@ -14,12 +15,12 @@ from cycle.flow import inlet_shape, states
 from cycle.flow.duct.layout import AreaLaw, Injectors, Supply, Walls
 from cycle.flow.duct.solution import MODES as DUCT_MODES
 from cycle.flow.duct.solution import STATUSES as DUCT_STATUSES
-from cycle.flowpath import combustor, duct_limits, geometric_throat, inlet_geometry, nozzle
+from cycle.flowpath import back_pressure, combustor, duct_limits, geometric_throat, inlet_geometry, nozzle
 from cycle.flowpath import expansion as widening
 from cycle.flowpath.duct import Flow, Isolator, solve_duct
 from cycle.flowpath.inlet_geometry import Inlet, Internal
 from cycle.flowpath.setting import Setting
-from cycle.flowpath.stream import SOLVED, STATUS_CODE, Process, Step, Steps, Stream, named_status
+from cycle.flowpath.stream import SOLVED, STATUS_CODE, Process, Step, Steps, Stream, named_status, status_of
 
 _PANEL = 4
 """Slices to a panel of the march."""
@@ -333,7 +334,8 @@ def expansion(entering: Stream, setting: Setting, ambient: Array) -> Step | Step
     if by is not None:
         frozen = widening.frozen_after(entering, by, setting[f"nozzle.freeze_{by}"], kind, end, _line(setting))
         status = named_status(frozen.fault, widening.FAULT_NAMES, _EXPANSION_FAULTS)
-        return Step(_diverging(frozen.exit, factor), Process("nozzle", start, "10"), status)
+        step = Step(_diverging(frozen.exit, factor), Process("nozzle", start, "10"), status)
+        return _closed(frozen.plane, step, ambient, entering) if kind == "area" else step
     if setting.has("nozzle.internal_area_ratio"):
         found = widening.two_part(entering, entering.area * setting["nozzle.internal_area_ratio"], kind, end, _line(setting))
         status = named_status(found.fault, widening.FAULT_NAMES, _EXPANSION_FAULTS)
@@ -344,7 +346,18 @@ def expansion(entering: Stream, setting: Setting, ambient: Array) -> Step | Step
                 Step(_diverging(found.ten, factor), Process("external expansion", "9", "10"), status),
             )
         )
-    return nozzle.nozzle(entering, setting, ambient)
+    step = nozzle.nozzle(entering, setting, ambient)
+    return _closed(entering, step, ambient) if kind == "area" else step
+
+
+def _closed(entering: Stream, step: Step, ambient: Array, follows: Stream | None = None) -> Step:
+    """A nozzle of given area against the ambient pressure: see `back_pressure.held_back`."""
+    held = back_pressure.held_back(entering, step.stream, np.where(step.status == SOLVED, ambient, np.nan), follows)
+    if not held.shocked.any():
+        return step
+    figures = {"full_flow_pressure": np.where(held.shocked, step.stream.state.pressure, np.nan), "exit_shock_pressure": held.behind}
+    code = status_of(held.stream.state, (held.expelled, "back-pressured"))
+    return Step(held.stream, replace(step.process, figures=figures), np.where(held.shocked, code, step.status))
 
 
 def _diverging(stream: Stream, factor: Array) -> Stream:

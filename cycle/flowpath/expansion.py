@@ -1,5 +1,5 @@
-"""Nozzle flow beyond one plain expansion: composition that freezes on the way, an internal and an external part, and what a back
-pressure forces; and the normal shock in a passage, which a nozzle shares with a diffuser.
+"""Nozzle flow beyond one plain expansion: composition that freezes on the way, an internal and an external part; and the normal
+shock in a passage, which a nozzle shares with a diffuser.
 
 Streams in, streams out, N points at once, any gas. A point without a solution carries a fault and NaN.
 Shapiro, The Dynamics and Thermodynamics of Compressible Fluid Flow (1953), ch. 4 and 5, for the one-dimensional relations.
@@ -13,7 +13,7 @@ from dataclasses import dataclass, replace
 import numpy as np
 
 from cycle.arrays import Array, Codes, Flags
-from cycle.flow import gas_shocks, isentropic, roots, states
+from cycle.flow import gas_shocks, isentropic, states
 from cycle.flowpath.stream import Stream
 from cycle.gas.state import NOT_CONVERGED, OUT_OF_RANGE, State, merge, state_from
 
@@ -30,31 +30,14 @@ FAULTS: dict[str, str] = {
 }
 """Why a point has no solution, in words; fault codes count through them."""
 
-REGIMES: dict[str, str] = {
-    "unchoked": "subsonic throughout, less than the supplied mass flow passes",
-    "shock-in-nozzle": "a normal shock stands between throat and exit",
-    "shock-at-exit": "a normal shock stands in the exit plane",
-    "over-expanded": "supersonic to the exit, compressed to the back pressure outside",
-    "fully-expanded": "supersonic to the exit and at the back pressure there",
-    "under-expanded": "supersonic to the exit, expanding on outside",
-}
-"""What a back pressure makes of a nozzle, in order of falling back pressure; regime codes count through them."""
+FAULT_NAMES = tuple(FAULTS)
+FAULT_CODE = {name: i for i, name in enumerate(FAULT_NAMES)}
 
-FAULT_NAMES, REGIME_NAMES = tuple(FAULTS), tuple(REGIMES)
-REGIME_CODE = {name: i for i, name in enumerate(REGIME_NAMES)}
-_FAULT = {name: i for i, name in enumerate(FAULT_NAMES)}
-
-SEPARATION_PRESSURE_RATIO = 0.4
-"""Exit over ambient pressure below which an over-expanded stream leaves the wall, a rule of thumb; Summerfield, Foster and Swan,
-Jet Propulsion 24 (1954) 319, who give 0.35 to 0.4 (from memory)."""
-
-_EQUAL = 1e-9
+EQUAL = 1e-9
 """Relative difference below which two pressures or areas are the same one."""
 
-_WEAK = 1e-7
+WEAK = 1e-7
 """Excess over Mach 1 below which a shock changes nothing that double precision could show."""
-
-_TOLERANCE = 1e-14
 
 
 def faults_of(names: dict[str, int], seen: tuple[State, ...], *rules: tuple[Flags, str]) -> Codes:
@@ -88,8 +71,8 @@ def widened(entering: Stream, area: Array) -> tuple[State, Flags]:
     flux = np.minimum(entering.mass_flow / area, entering.flux)
     state = states.expanded_to_flux(entering.gas, entering.total_enthalpy, entering.state.entropy, flux, entering.state)
     # at Mach 1 the flux does not tell the state; the entry is known
-    state = merge(np.abs(area / entering.area - 1.0) <= _EQUAL, entering.state, state)
-    return state, (area >= entering.area * (1.0 - _EQUAL)) & (entering.mach >= 1.0 - _EQUAL)
+    state = merge(np.abs(area / entering.area - 1.0) <= EQUAL, entering.state, state)
+    return state, (area >= entering.area * (1.0 - EQUAL)) & (entering.mach >= 1.0 - EQUAL)
 
 
 def slowed(entering: Stream, area: Array) -> State:
@@ -119,10 +102,14 @@ def shock_at_pressure(entering: Stream, pressure: Array) -> PassageShock:
     handed on as it is. Source: Rankine-Hugoniot, see `cycle.flow.gas_shocks`.
     """
     ahead = moved(entering, entering.gas.at("sp", entering.state.entropy, pressure, start=entering.state))
-    front = gas_shocks.normal_shock(entering.gas, ahead.state, ahead.velocity)
-    none = ahead.mach < 1.0 + _WEAK
-    behind = replace(ahead, state=merge(none, ahead.state, front.state), velocity=np.where(none, ahead.velocity, front.velocity))
-    return PassageShock(ahead, behind)
+    return PassageShock(ahead, shocked(ahead))
+
+
+def shocked(ahead: Stream) -> Stream:
+    """The stream (N,) behind a normal shock; itself where it is not supersonic. Source: see `cycle.flow.gas_shocks`."""
+    front = gas_shocks.normal_shock(ahead.gas, ahead.state, ahead.velocity)
+    none = ahead.mach < 1.0 + WEAK
+    return replace(ahead, state=merge(none, ahead.state, front.state), velocity=np.where(none, ahead.velocity, front.velocity))
 
 
 @dataclass(frozen=True, slots=True)
@@ -141,7 +128,7 @@ ISENTROPIC = Line(_isentropic_pressure, widened)
 
 
 def _end_pressure(entering: Stream, value: Array, line: Line) -> tuple[State, Flags]:
-    return line.at_pressure(entering, value), value <= entering.state.pressure * (1.0 + _EQUAL)
+    return line.at_pressure(entering, value), value <= entering.state.pressure * (1.0 + EQUAL)
 
 
 def _end_area(entering: Stream, value: Array, line: Line) -> tuple[State, Flags]:
@@ -200,8 +187,8 @@ def frozen_after(entering: Stream, by: str, value: Array, end: str, end_value: A
         limit = np.minimum(end_value, kept.state.pressure) if end == "pressure" else np.maximum(end_value, kept.area)
         final, reached = _frozen_end(kept, end, limit, before, line)
         out = moved(kept, final)
-    slow = (entering.mach < 1.0 - _EQUAL) & ("area" in (by.removesuffix("_ratio"), end))
-    fault = faults_of(_FAULT, (shifting, state, final), (slow, "subsonic"), (~(fits & reached), "upstream"))
+    slow = (entering.mach < 1.0 - EQUAL) & ("area" in (by.removesuffix("_ratio"), end))
+    fault = faults_of(FAULT_CODE, (shifting, state, final), (slow, "subsonic"), (~(fits & reached), "upstream"))
     return Freezing(blanked(kept, fault > 0), blanked(out, fault > 0), before, fault)
 
 
@@ -239,128 +226,24 @@ def two_part(
     with np.errstate(all="ignore"):
         inner, fits = line.at_area(entering, area_9)
         nine = moved(entering, inner)
-        area = nine.area * (1.0 - _EQUAL)
-        over = (inner.pressure < end_value * (1.0 - _EQUAL)) if end == "pressure" else np.zeros(fits.shape, np.bool_)
+        area = nine.area * (1.0 - EQUAL)
+        over = (inner.pressure < end_value * (1.0 - EQUAL)) if end == "pressure" else np.zeros(fits.shape, np.bool_)
         start, law = (entering, line) if outside is None else (nine, outside)
         outer, goes = _END[end](start, np.minimum(end_value, inner.pressure) if end == "pressure" else end_value, law)
         outer = merge(over, inner, outer)
         ten = moved(entering, outer)
     shrinks = (end == "area") & (end_value < area)
-    slow = entering.mach < 1.0 - _EQUAL
+    slow = entering.mach < 1.0 - EQUAL
     fault = faults_of(
-        _FAULT, (inner, outer), (slow, "subsonic"), (~fits, "upstream"), (shrinks, "exit-shrinks"), (~(goes | over), "upstream")
+        FAULT_CODE, (inner, outer), (slow, "subsonic"), (~fits, "upstream"), (shrinks, "exit-shrinks"), (~(goes | over), "upstream")
     )
     return TwoPart(blanked(nine, fault > 0), blanked(ten, fault > 0), over & (fault == 0), fault)
-
-
-def separation_margin(exit_pressure: Array, ambient_pressure: Array, threshold: float = SEPARATION_PRESSURE_RATIO) -> Array:
-    """How far an exit is from leaving the wall, p9/(threshold p0) - 1, (N,), 1; negative separates.
-
-    exit_pressure, ambient_pressure: Pa (N,). threshold: see `SEPARATION_PRESSURE_RATIO`.
-    """
-    return exit_pressure / (threshold * ambient_pressure) - 1.0
-
-
-@dataclass(frozen=True, slots=True)
-class Backed:
-    """A nozzle against a back pressure, each (N,).
-
-    regime: place in `REGIME_NAMES`, -1 where there is none. exit: the stream in the exit plane, behind the shock in
-    "shock-at-exit"; its mass flow is what passes. behind: the stream behind the shock, NaN without one. shock_mach;
-    shock_area_ratio over the entry; recovery: total pressure behind over ahead of the shock, 1 without one. passed: mass flow over
-    the supplied one. separation_margin: see the function, of the supersonic stream that fills the nozzle. shock_margin: pressure
-    behind a normal shock in the exit plane over the back pressure, less 1; negative drives it inside. fault: place in `FAULT_NAMES`.
-    """
-
-    regime: Codes
-    exit: Stream
-    behind: Stream
-    shock_mach: Array
-    shock_area_ratio: Array
-    recovery: Array
-    passed: Array
-    separation_margin: Array
-    shock_margin: Array
-    fault: Codes
-
-
-def against_back_pressure(entering: Stream, exit_area: Array, back_pressure: Array, threshold: float = SEPARATION_PRESSURE_RATIO) -> Backed:
-    """What becomes of a sonic or supersonic stream in a widening nozzle that ends in a given pressure; without friction.
-
-    entering: the throat (Mach 1), or a supersonic entry. exit_area: m2 (N,). back_pressure: Pa (N,). threshold: for the margin.
-    Regimes in order of falling back pressure: unchoked (only from Mach 1), a normal shock inside, in the exit plane,
-    over-, fully and under-expanded. A shock inside is the idealised one; a real over-expanded stream separates first, which the
-    separation margin tells. Source: Shapiro (1953), ch. 5 (from memory).
-    """
-    with np.errstate(all="ignore"):
-        full, fits = widened(entering, exit_area)
-        at_exit = shock_at_pressure(entering, full.pressure)
-        at_entry = shock_at_pressure(entering, entering.state.pressure)
-        highest = slowed(at_entry.behind, exit_area)
-        regime = _regime(back_pressure, highest.pressure, at_exit.behind.state.pressure, full.pressure)
-        inside = _shock_inside(entering, exit_area, back_pressure, full.pressure, regime)
-        behind = chosen(regime == REGIME_CODE["shock-in-nozzle"], inside.behind, at_exit.behind)
-        ahead = chosen(regime == REGIME_CODE["shock-in-nozzle"], inside.ahead, at_exit.ahead)
-        out, passed = _exits(entering, exit_area, back_pressure, full, inside, at_exit, regime)
-        kept = recovery(ahead, behind)
-    sonic = np.abs(entering.mach - 1.0) < 1e-6
-    low = regime == REGIME_CODE["unchoked"]
-    fault = faults_of(
-        _FAULT, (out.state,), (entering.mach < 1.0 - 1e-6, "subsonic"), (~fits, "upstream"),
-        (low & ~sonic, "shock-expelled"), (low & ~(out.velocity > 0.0), "no-flow"),
-    )  # fmt: skip
-    bad = fault > 0
-    shock = ~bad & ((regime == REGIME_CODE["shock-in-nozzle"]) | (regime == REGIME_CODE["shock-at-exit"]))
-    return Backed(
-        np.where(bad, -1, regime), blanked(out, bad), blanked(behind, ~shock), np.where(shock, ahead.mach, np.nan),
-        np.where(shock, ahead.area / entering.area, np.nan), np.where(bad, np.nan, np.where(shock, kept, 1.0)),
-        np.where(bad, np.nan, passed), np.where(bad, np.nan, separation_margin(full.pressure, back_pressure, threshold)),
-        np.where(bad, np.nan, at_exit.behind.state.pressure / back_pressure - 1.0), fault,
-    )  # fmt: skip
-
-
-def _regime(back: Array, highest: Array, shocked: Array, full: Array) -> Codes:
-    """Regime codes (N,) from the exit pressures Pa (N,): shock at the entry, shock in the exit plane, no shock."""
-    rules = [
-        (back > highest * (1.0 + _EQUAL), "unchoked"),
-        (back > shocked * (1.0 + _EQUAL), "shock-in-nozzle"),
-        (back >= shocked * (1.0 - _EQUAL), "shock-at-exit"),
-        (back > full * (1.0 + _EQUAL), "over-expanded"),
-        (back >= full * (1.0 - _EQUAL), "fully-expanded"),
-    ]
-    return np.select([r for r, _ in rules], [REGIME_CODE[n] for _, n in rules], REGIME_CODE["under-expanded"]).astype(np.int64)
-
-
-def _shock_inside(entering: Stream, exit_area: Array, back: Array, full: Array, regime: Codes) -> PassageShock:
-    """Shock at which the exit takes the back pressure: the exit pressure falls as the shock moves downstream."""
-    wanted = regime == REGIME_CODE["shock-in-nozzle"]
-    high = np.log(entering.state.pressure)
-    low = np.where(wanted, np.log(full), high)
-
-    def excess(ln_p: Array) -> Array:
-        found = slowed(shock_at_pressure(entering, np.exp(ln_p)).behind, exit_area)
-        return np.where(wanted, np.log(found.pressure / back), 0.0)
-
-    return shock_at_pressure(entering, np.exp(roots.bracketed(excess, low, high, _TOLERANCE)))
 
 
 def chosen(first: Flags, one: Stream, other: Stream) -> Stream:
     """Points of `one` where `first`, of `other` elsewhere, both of the same gas."""
     columns = (np.where(first, getattr(one, k), getattr(other, k)) for k in ("velocity", "mass_flow", "axial_factor"))
     return Stream(one.gas, merge(first, one.state, other.state), *columns)
-
-
-def _exits(
-    entering: Stream, area: Array, back: Array, full: State, inside: PassageShock, at_exit: PassageShock, regime: Codes
-) -> tuple[Stream, Array]:
-    """The stream in the exit plane, and the mass flow that passes over the supplied one (N,)."""
-    slow = moved(entering, entering.gas.at("sp", entering.state.entropy, back, start=entering.state))
-    passed = np.where(regime == REGIME_CODE["unchoked"], slow.flux * area / entering.mass_flow, 1.0)
-    out = moved(entering, full)
-    out = chosen(regime == REGIME_CODE["shock-at-exit"], at_exit.behind, out)
-    out = chosen(regime == REGIME_CODE["shock-in-nozzle"], moved(inside.behind, slowed(inside.behind, area)), out)
-    out = chosen(regime == REGIME_CODE["unchoked"], slow, out)
-    return replace(out, mass_flow=entering.mass_flow * passed), passed
 
 
 def recovery(ahead: Stream, behind: Stream) -> Array:
@@ -392,9 +275,9 @@ def convergent(entering: Stream, back_pressure: Array) -> Convergent:
         choked = critical.pressure >= back_pressure
         free = entering.gas.at("sp", s, back_pressure, start=entering.state)
         out = moved(entering, merge(choked, critical, free))
-    fast = entering.mach > 1.0 + _EQUAL
-    back = back_pressure > entering.state.pressure * (1.0 + _EQUAL)
-    fault = faults_of(_FAULT, (out.state,), (fast, "supersonic"), (back, "no-flow"))
+    fast = entering.mach > 1.0 + EQUAL
+    back = back_pressure > entering.state.pressure * (1.0 + EQUAL)
+    fault = faults_of(FAULT_CODE, (out.state,), (fast, "supersonic"), (back, "no-flow"))
     return Convergent(
         blanked(out, fault > 0), choked & (fault == 0), np.where(fault > 0, np.nan, critical.pressure / back_pressure - 1.0), fault
     )

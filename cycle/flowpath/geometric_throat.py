@@ -15,7 +15,7 @@ from dataclasses import dataclass, replace
 import numpy as np
 
 from cycle.arrays import Array, Codes, Flags
-from cycle.flow import roots, states
+from cycle.flow import isentropic, roots, shocks, states
 from cycle.flowpath import expansion
 from cycle.flowpath.expansion import blanked, chosen, faults_of, moved, recovery
 from cycle.flowpath.stream import SOLVED, STATUS_CODE, Stream
@@ -60,6 +60,11 @@ _MET = 1e-7
 """Relative difference of needed and given throat area within which the shock has found its place."""
 
 _TOLERANCE = 1e-14
+
+_PLACES, _BEYOND = 65, 1.03
+
+_NOISE = 1e-13
+"""Relative difference of needed and given throat area at which the search ends: states are known to about that."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -145,6 +150,22 @@ class _Engine:
         p = self.entering.state.pressure
         return self.walk(p * (self.lowest / p) ** np.maximum(place, 0.0), 1.0 + np.minimum(place, 0.0))
 
+    def closed_place(self, recovery: Array) -> Array:
+        """About the place (N,) of the shock whose total-pressure ratio is `recovery` (N,) of that at station 2: at constant isentropic
+        exponent the throat area needed goes with it inversely. NaN where none of the places tried has it. NACA Report 1135, eq. 44, 99."""
+        g, mach = self.entering.state.isentropic_exponent, self.entering.mach
+        places = np.linspace(0.0, 1.0, _PLACES)[:, None]
+        total = isentropic.pressure_ratio(mach, g) * (self.lowest / self.entering.state.pressure) ** places
+        kept = np.log(shocks.normal_shock(isentropic.mach_from_pressure_ratio(total, g), g).total_pressure_ratio)
+        wanted = kept[0] + np.log(recovery)
+        # it falls from place to place
+        above, every = (kept > wanted).sum(0) - 1, np.arange(wanted.size)
+        inside = (above >= 0) & (above < _PLACES - 1)
+        at = np.where(inside, above, 0)
+        left, right = kept[at, every], kept[at + 1, every]
+        # a little beyond, so that the root lies between this and the end that is known
+        return np.where(inside, _BEYOND * (at + (wanted - left) / (right - left)) / (_PLACES - 1), np.nan)
+
     def faults(self, place: _Place, *rules: tuple[Flags, str], hopeless: Flags | None = None) -> Codes:
         """Fault codes (N,) of a walk: of the inlet, "choked" where `hopeless` (N,), of burner and states, then `rules`."""
         status, entry = place.status, place.three.state.good
@@ -179,15 +200,25 @@ def match_throat(
     target = np.broadcast_to(throat_area, entering.velocity.shape)
     with np.errstate(all="ignore"):
         engine = _engine(entering, area_3, burner, diffuser_pressure_ratio)
-        critical = engine.at(np.zeros_like(target)).needed
-        holding = engine.at(np.ones_like(target)).needed / target - 1.0
+        critical, last = (engine.at(np.full(target.shape, place)).needed for place in (0.0, 1.0))
+        holding = last / target - 1.0
         spills, margin = critical > target, target / critical - 1.0
         lower, upper = np.where(spills, _least(engine, spills), 0.0), np.where(spills, 0.0, 1.0)
-        root = roots.bracketed(lambda t: np.log(engine.at(t).needed / target), lower, upper, _TOLERANCE)
+        tried: list[tuple[Array, _Place]] = []
+
+        def miss(place: Array) -> Array:
+            tried[:] = [*tried[-1:], (place, engine.at(place))]
+            return np.log(tried[-1][1].needed / target)
+
+        at_2 = np.log(critical / target)
+        ends = np.where(spills, miss(lower), at_2) if spills.any() else at_2, np.where(spills, at_2, np.log(last / target))
+        first = np.where(spills, np.nan, engine.closed_place(critical / target))
+        root = roots.bracketed(miss, lower, upper, _TOLERANCE, enough=_NOISE, first=first, ends=ends)
         end = np.where(np.isnan(critical), 0.0, np.where(spills, lower, upper))
         place = np.where(np.abs(margin) <= _CRITICAL, 0.0, np.where(np.isfinite(root), root, end))
         overloaded = np.minimum(target / engine.area_3, 1.0 + place) - 1.0
-        return _matched(engine, target, place, np.where(np.isinf(critical), overloaded, margin), holding)
+        walk = next((walk for at, walk in tried if np.array_equal(at, place)), None) or engine.at(place)
+        return _matched(engine, target, place, walk, np.where(np.isinf(critical), overloaded, margin), holding)
 
 
 def _least(engine: _Engine, spills: Flags) -> Array:
@@ -200,9 +231,8 @@ def _least(engine: _Engine, spills: Flags) -> Array:
     return least - 1.0
 
 
-def _matched(engine: _Engine, target: Array, place: Array, margin: Array, holding: Array) -> Matched:
-    """What the shock at `place` (N,) gives."""
-    walk = engine.at(place)
+def _matched(engine: _Engine, target: Array, place: Array, walk: _Place, margin: Array, holding: Array) -> Matched:
+    """What the shock at `place` (N,) gives: `walk`."""
     ahead, behind = walk.shock.ahead, walk.shock.behind
     miss = walk.needed / target - 1.0
     open_ = ~(np.abs(miss) <= _MET)

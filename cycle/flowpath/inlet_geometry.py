@@ -336,7 +336,7 @@ def _cone_entry(flight: Stream, flow: gas_cone.Cone, half_angle: Array, ray: Arr
     """
     before, u0, gas = flight.state, flight.velocity, flight.gas
     on_wave = np.minimum(ray, flow.front.angle)
-    at = gas_cone.on_ray(gas, before, u0, flow.front.angle, on_wave)
+    at = gas_cone.on_ray(gas, before, u0, flow.front.angle, on_wave, flow.layer)
     flux = np.where(ray < flow.front.angle, -at.state.density * at.normal_velocity / np.sin(on_wave), before.density * u0)
     momentum = flux * at.axial_velocity + at.state.pressure
     additive = np.where(ray < flow.front.angle, momentum - flux * u0 - before.pressure, 0.0)

@@ -113,5 +113,6 @@ CLOSURES: dict[str, Closure] = {
     "hs": Closure(((_enthalpy, (0,)), (_entropy, (1,))), ("enthalpy", "entropy")),
     "ts": Closure(((_temperature, (0,)), (_entropy, (1,))), ("temperature", "entropy")),
     "flux": Closure(((_entropy, (0,)), (_energy, (1, 2))), ("entropy", "total enthalpy", "mass flux"), branched=True),
+    "passage": Closure(((_energy, (0, 1)), (_pressure, (2,))), ("total enthalpy", "mass flux", "pressure"), fixes_p=True),
     "momentum": Closure(((_momentum, (0, 1)), (_energy, (2, 3))), ("impulse", "mass flux", "total enthalpy", "energy flux"), branched=True),
 }

@@ -199,6 +199,16 @@ def _from_volume(guess: Guess, named: dict[str, Array]) -> Array:
     return within(named["volume"] * named["pressure"] / (GAS_CONSTANT * guess.total), 300.0, 5000.0)
 
 
+def _from_passage(guess: Guess, named: dict[str, Array]) -> Array:
+    """h + (G v)^2/2 = ht at the specific heat of rest: a quadratic in T."""
+    rest, slope = guess.temperature(guess.layout.h, named["total enthalpy"] / GAS_CONSTANT)
+    cp = GAS_CONSTANT * slope / rest
+    twice = (GAS_CONSTANT * guess.total * named["mass flux"] / named["pressure"]) ** 2
+    # without a flux the root is 0/0 in its usual form
+    T = 2.0 * cp * rest / (cp + np.sqrt(cp**2 + 2.0 * twice * cp * rest))
+    return dissociated(T, _ln_pressure(named))[0]
+
+
 def _given(guess: Guess, named: dict[str, Array]) -> Array:
     return named["temperature"]
 
@@ -211,6 +221,7 @@ TEMPERATURES: dict[str, Callable[[Guess, dict[str, Array]], Array]] = {
     "hs": _from_enthalpy,
     "sp": _from_entropy,
     "vp": _from_volume,
+    "passage": _from_passage,
 }
 """First temperature of each closure that can be started from nothing."""
 

@@ -1,6 +1,7 @@
 from __future__ import annotations
 
 import numpy as np
+import pytest
 from hypothesis import given, settings
 from hypothesis import strategies as st
 
@@ -42,3 +43,38 @@ def test_peak_is_found_to_the_asked_width() -> None:
     found = roots.peak(lambda x: -((x - place) ** 2), np.zeros(3), np.ones(3), 1e-6)
     np.testing.assert_allclose(found, place, atol=1e-6)
     assert np.isnan(roots.peak(lambda x: x, np.nan, 1.0, 1e-3))
+
+
+def test_scanned_peak_is_the_vertex_of_the_last_parabola() -> None:
+    """The third derivative is what the last parabola leaves out; NaN beside the peak, and an end that is the highest, are no obstacle."""
+    place = np.array([0.1, 0.37, 0.99])
+
+    def hump(x: Array, at: Array) -> Array:
+        return (x - place[at]) ** 3 - 2.0 * (x - place[at]) ** 2
+
+    found = roots.scanned_peak(hump, np.zeros(3), np.ones(3))
+    np.testing.assert_allclose(found, place, atol=3e-5)
+    cut = roots.scanned_peak(lambda x, at: np.where(x > 0.5, np.nan, x), np.zeros(1), np.ones(1))
+    assert 0.49 < cut[0] <= 0.5
+    assert roots.scanned_peak(lambda x, at: x, np.zeros(1), np.ones(1))[0] == 1.0
+
+
+def test_known_ends_a_first_place_and_enough_save_calls_and_keep_the_root() -> None:
+    calls: list[Array] = []
+
+    def f(x: Array) -> Array:
+        calls.append(x)
+        return np.expm1(x - 0.3)
+
+    low, high = np.zeros(1), np.ones(1)
+    plain = roots.bracketed(f, low, high, 1e-14)
+    many = len(calls)
+    ends = f(low), f(high)
+    calls.clear()
+    helped = roots.bracketed(f, low, high, 1e-14, first=np.array([0.31]), ends=ends, enough=1e-13)
+    assert len(calls) <= many - 3
+    assert helped == pytest.approx(plain, abs=1e-12) and plain[0] == pytest.approx(0.3, abs=1e-14)
+    outside = roots.bracketed(f, low, high, 1e-14, first=np.array([2.0]))
+    assert outside == pytest.approx(plain, abs=1e-14)
+    wall = roots.bracketed(lambda x: np.where(x > 0.5, np.inf, x - 0.3), low, high, 1e-14)
+    assert wall[0] == pytest.approx(0.3, abs=1e-14)

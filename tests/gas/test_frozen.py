@@ -32,7 +32,7 @@ def targets_of(kind: str, state: State, mach: np.ndarray) -> tuple[np.ndarray, .
     T, p, h, s, v = state.temperature, state.pressure, state.enthalpy, state.entropy, 1.0 / state.density
     table = {
         "tp": (T, p), "hp": (h, p), "sp": (s, p), "vp": (v, p), "hv": (h, v), "hs": (h, s), "ts": (T, s),
-        "flux": (s, ht, G), "momentum": (F, G, ht, G),
+        "flux": (s, ht, G), "momentum": (F, G, ht, G), "passage": (ht, G, p),
     }  # fmt: skip
     return table[kind]
 
