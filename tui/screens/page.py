@@ -39,14 +39,17 @@ MOVES: dict[str, Callable[[int, int, int], int]] = {
 class Page(Overlay[str]):
     """Shows a text and, where there are answers, asks for one. Gives the answer's name, "" where it was left.
 
-    Parameters: title; body, the text, which scrolls; answers; head, lines above the text that stay.
+    Parameters: title; body, the text, which scrolls; answers; head, lines above the text that stay; also, an answer by its key
+    alone, which the line of keys tells.
     """
 
     CSS = "Page { layout: vertical; } #page { height: 1fr; }"
 
-    def __init__(self, title: str, body: Body, answers: tuple[Answer, ...] = (), head: Body = lambda wide: []) -> None:
+    def __init__(
+        self, title: str, body: Body, answers: tuple[Answer, ...] = (), head: Body = lambda wide: [], also: Answer | None = None
+    ) -> None:
         super().__init__()
-        self._heading, self._body, self._answers, self._fixed = title, body, answers, head
+        self._heading, self._body, self._answers, self._fixed, self._also = title, body, answers, head, also
         self._at = 0
 
     def compose(self) -> ComposeResult:
@@ -76,6 +79,7 @@ class Page(Overlay[str]):
         shown = body[top : top + room]
         more = f" ({top + 1}-{top + len(shown)} of {len(body)})" if len(shown) < len(body) else ""
         keys = "arrows and Enter, or the letter; Escape leaves" if self._answers else "arrows scroll; Escape goes back"
+        keys += f"; {self._also.key} {self._also.words}" if self._also is not None else ""
         padding: list[Line] = [line("")] * (room - len(shown))
         head = line((fit(clean(self._heading) + more, wide), BOLD))
         self._sheet.show([head, *fixed, *shown, *choices, *padding, line((fit(keys, wide), DIM))], size)
@@ -91,6 +95,8 @@ class Page(Overlay[str]):
             self._paint(self.app.size)
         elif event.key in ("escape", "q", "ctrl+q"):
             self.leave("")
+        elif self._also is not None and event.character == self._also.key:
+            self.leave(self._also.name)
         elif self._answers:
             self._answer(event)
 
