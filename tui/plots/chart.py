@@ -113,8 +113,8 @@ class Grid:
     status: tuple[tuple[str | None, ...], ...] = ()
     here: tuple[float, float] | None = None
     pin: tuple[float, float] | None = None
-    cursor: tuple[float, float] | None = None
     notes: tuple[str, ...] = ()
+    cursor: tuple[float, float] | None = None
 
     def __post_init__(self) -> None:
         for name, places in (("x", self.x), ("y", self.y)):

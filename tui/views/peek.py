@@ -166,7 +166,7 @@ def _map(peek: Peek, curve: Curve) -> Grid:
         status,
         _point(peek, peek.here),
         _point(peek, pinned) if pinned != peek.here else None,
-        _point(peek, peek.place) if peek.place != peek.here else None,
+        cursor=_point(peek, peek.place) if peek.place != peek.here else None,
     )
 
 
