@@ -76,7 +76,7 @@ def drawable(hand: Item | None) -> str:
     if hand.input is None:
         return f"{hand.label}: choose a way to say it first (o)"
     if hand.input.kind == "choice":
-        return f"{hand.label} is a choice, nothing to draw: p pins this walk, Space goes to the next choice and the changes show"
+        return f"{hand.label} is a choice: p pins this walk, Space takes the next choice"
     if hand.input.kind != "number":
         return f"{hand.label} is no number and cannot be drawn"
     if hand.key.startswith("limits."):

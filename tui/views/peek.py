@@ -19,6 +19,7 @@ if TYPE_CHECKING:
     from cycle.sweep import Curve
 
 COMING = {"sweep": "finer points follow", "other": "the pinned case follows", "margins": "the limits follow"}
+NOTHING = "nothing here has a solution: - widens the range, < and > move it; the reason stands below"
 REFUSED = "these inputs are no case"
 CURSOR = "<"
 SOLVED = "solved"
@@ -81,7 +82,8 @@ def _line(peek: Peek, curve: Curve, borders: Mapping[str, float]) -> Chart:
         series.append(Series("the pinned case", _along(other, 0, system), _values(other, peek.figure, system), "pin"))
     marks = [*_marks(peek), *_changes(curve, entry, system, _borders(peek, borders)), *_crossings(peek)]
     unsolved = tuple(Unsolved(place, status) for place, status in zip(x, curve.status, strict=True) if status != SOLVED)
-    return Chart(title(peek), axis_of(entry, system), axis, tuple(series), tuple(marks), _cursor(peek, x, y), unsolved)
+    notes = (NOTHING,) if len(unsolved) == len(x) else ()
+    return Chart(title(peek), axis_of(entry, system), axis, tuple(series), tuple(marks), _cursor(peek, x, y), unsolved, notes)
 
 
 def _along(curve: Curve, axis: int, system: str) -> tuple[float, ...]:
