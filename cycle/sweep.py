@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import math
 from collections.abc import Callable, Iterable, Mapping, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 from itertools import product
 from typing import Any
 
@@ -37,7 +37,8 @@ class Axis:
 @dataclass(frozen=True, slots=True)
 class Curve:
     """What `curve` found. shape: (n,) or (n, m); figures, status and mode of the points in row-major order over the axes, figures
-    in SI and NaN where there is none; reasons: status -> why, in the words of the first point that has it."""
+    in SI and NaN where there is none; reasons: status -> why, in the words of the first point that has it; margins: label of a limit ->
+    its relative margin (positive is safe, NaN where it is not assessed), {} where they were not asked for."""
 
     axes: tuple[Axis, ...]
     shape: tuple[int, ...]
@@ -45,6 +46,7 @@ class Curve:
     status: tuple[str, ...]
     mode: tuple[str, ...]
     reasons: Mapping[str, str]
+    margins: Mapping[str, tuple[float, ...]] = field(default_factory=dict)
 
 
 def around(entry: Input, value: float, factor: float = 1.0, steps: int = 20) -> tuple[float, ...]:
@@ -59,11 +61,12 @@ def around(entry: Input, value: float, factor: float = 1.0, steps: int = 20) -> 
     return tuple(place for place in places if not outside(entry, place))
 
 
-def curve(case: Case, axes: Mapping[str, Sequence[float]], figures: Sequence[str] = ()) -> Curve:
+def curve(case: Case, axes: Mapping[str, Sequence[float]], figures: Sequence[str] = (), limits: bool = False) -> Curve:
     """A case over a range of one input, or over a grid of two.
 
     Parameters: case; axes, key of a number input or of a cell -> values (SI); figures, what is wanted beside the headline figures:
-    keys of the performance, or "station.key" as "4.temperature".
+    keys of the performance, or "station.key" as "4.temperature"; limits, whether the margins of all limits are wanted: for a duct they
+    cost about as much again.
     Returns: `Curve`. Values out of bounds are left out before; a point whose numbers do not fit each other has the status "refused".
     Errors: CaseError where a key is none of a number input, has no value within bounds, or cannot vary within a batch; KeyError for
     an unknown figure; ValueError for none or more than two axes.
@@ -77,6 +80,7 @@ def curve(case: Case, axes: Mapping[str, Sequence[float]], figures: Sequence[str
     points = _points(case, lines)
     there = {i: point for i, point in enumerate(points) if not isinstance(point, Refusal)}
     status, mode = [REFUSED] * len(points), ["none"] * len(points)
+    margins: dict[str, list[float]] = {}
     values = {key: [math.nan] * len(points) for key in wanted}
     reasons = {point.kind: point.words for point in reversed(points) if isinstance(point, Refusal)}
     if there:
@@ -85,8 +89,11 @@ def curve(case: Case, axes: Mapping[str, Sequence[float]], figures: Sequence[str
         _put(mode, there, modes(walk.march, of_rigs=True))
         for key, read in readers.items():
             _put(values[key], there, read(walk))
+        for limit in walk.limits if limits else ():
+            _put(margins.setdefault(limit.label, [math.nan] * len(points)), there, limit.margin)
         reasons |= {found: why for found, why in zip(walk.status[::-1], walk.reason[::-1], strict=True) if why}
-    return Curve(lines, shape, {k: tuple(v) for k, v in values.items()}, tuple(status), tuple(mode), reasons)
+    plain = ({k: tuple(v) for k, v in found.items()} for found in (values, margins))
+    return Curve(lines, shape, next(plain), tuple(status), tuple(mode), reasons, next(plain))
 
 
 def _axis(case: Case, key: str, values: Sequence[float]) -> Axis:

@@ -20,6 +20,9 @@ STATION_KEYS = tuple(o.key for o in OUTPUTS if o.where == "station")
 DEAR = ("critical_pressure", "critical_temperature", "critical_area_ratio")
 """Figures of a station that cost about as much as a solve; they come with the assessment."""
 
+ACCOUNTS = ("losses", "exergy")
+"""Accounts that need more states; they come with the assessment."""
+
 QUICK = tuple(k for k in STATION_KEYS if k not in DEAR)
 PERFORMANCE_KEYS = tuple(o.key for o in OUTPUTS if o.where == "performance")
 STATIONS = ("0", "1", "2", "3", "4", "5", "9", "10")
@@ -75,7 +78,8 @@ class Figures:
     """A walk of one point as plain numbers (SI, nan where there is no value). altitude: that of the ambient pressure
     in the standard atmosphere, m. `walk` is the walk itself, for the referee and for later questions. assessed: whether
     limits, audit and the dear figures are those of this walk; until then they are of the walk before, or absent. profile: the
-    flow along a duct, column -> values from the burner entry on; {} where the burner is none."""
+    flow along a duct, column -> values from the burner entry on; {} where the burner is none. losses, exergy: rows of these accounts,
+    () where they are not assessed; `why_not` then says why."""
 
     status: str
     mode: str
@@ -94,6 +98,8 @@ class Figures:
     audit: str = ""
     assessed: bool = False
     profile: Mapping[str, tuple[float, ...]] = field(default_factory=dict)
+    losses: tuple[Share, ...] = ()
+    exergy: tuple[Share, ...] = ()
 
     @property
     def solved(self) -> bool:
@@ -133,6 +139,10 @@ def _profile(walk: Any) -> dict[str, tuple[float, ...]]:
     return {name: tuple(values[there].tolist()) for name, values in columns.items()}
 
 
+def _shares(rows: Any) -> tuple[Share, ...]:
+    return tuple(Share(r.label, float(r.value), r.unit) for r in rows)
+
+
 def take(walk: Any) -> Figures:
     """Plain numbers of a walk of one point.
 
@@ -150,7 +160,7 @@ def take(walk: Any) -> Figures:
         performance=performance,
         why_not={k: str(walk.why_not(k)) for k, v in performance.items() if v != v},
         passages=tuple(Passage(p.name, p.label, p.start, p.end, {k: float(v) for k, v in p.figures.items()}) for p in walk.processes),
-        potentials=tuple(Share(r.label, float(r.value), r.unit) for r in walk.potentials),
+        potentials=_shares(walk.potentials),
         altitude=_altitude(stations.get("0", {}).get("pressure", NAN)),
         walk=walk,
         profile=_profile(walk),
@@ -169,6 +179,9 @@ def assess(figures: Figures) -> Figures:
             Margin(m.key, m.label, m.state, float(m.margin), float(m.actual), float(m.allowed), m.unit, bool(m.upper), m.restore, m.input)
             for m in walk.limits
         ),
+        why_not={**figures.why_not, **{name: str(walk.why_not(name)) for name in ACCOUNTS}},
+        losses=_shares(walk.losses),
+        exergy=_shares(walk.exergy),
         audit_ok=bool(walk.audit.ok),
         audit=_audit_words(walk),
         assessed=True,

@@ -270,7 +270,9 @@ def bounds(spec: Input, system: str, step: bool = True) -> str:
 
 
 def describe(before: Case, after: Case, change: Change, system: str) -> str:
-    """Words for an edit: the input's label with its old and new value, or the way a group is said now."""
+    """Words for an edit: the input's label with its old and new value, the way a group is said now, or the study made."""
+    if "study" in change:
+        return f"study {change['study'][0]} made"
     if "switch" in change:
         group, tag, _ = change["switch"]
         return f"{GROUP[group].meaning} by {way_label(group, tag)}"

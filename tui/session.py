@@ -19,7 +19,7 @@ if TYPE_CHECKING:
     from cycle.sensitivity import Sensitivities
 
 Change = dict[str, Any]
-"""What a user asked of a case, as plain data: {"set": {key: value}} or {"switch": [group, tag, value]}."""
+"""What a user asked of a case, as plain data: {"set": {key: value}}, {"switch": [group, tag, value]} or {"study": [name, study]}."""
 
 VIEWS = ("figures", "change against the pin", "change against the pin, %")
 WATCHED_FIRST = ("specific_impulse", "stream_thrust_gain")
@@ -123,8 +123,10 @@ class Session:
 def apply(case: Case, change: Change) -> Case:
     """The case with a change made.
 
-    Parameters: case; change, {"set": {key: value}} or {"switch": [group, tag, value]}. Errors: CaseError.
+    Parameters: case; change, see `Change`. Errors: CaseError.
     """
+    if "study" in change:
+        return case.with_study(*change["study"])
     if "switch" in change:
         group, tag, value = change["switch"]
         return case.switch(group, tag, value)

@@ -9,6 +9,7 @@ from typing import Any
 
 from cycle.case import checking, edits, rules
 from cycle.case.rows import view, with_cells
+from cycle.case.studies import faults_of
 from cycle.errors import CaseError, Fault, shown
 from cycle.quantities import GROUP, GROUPS, INPUT, INPUTS, Group, Input, cell, split_cell
 
@@ -98,6 +99,19 @@ class Case:
         spelled = self._edited(rest) if rest else self.spelled
         document = {"format": checking.FORMAT, "study": thawed(self.studies), **kept, **heads, **checking.nest(thawed(spelled))}
         return build(document, self.name, self.path, self.stamp, self.text)
+
+    def with_study(self, name: str, study: Mapping[str, Any]) -> Case:
+        """The case with one named study more.
+
+        Parameters: name; study: {"outputs": [keys of figures, or "4.temperature"], "vary": [{"input", "from", "to", "points"}]},
+        values in SI or text with a unit. Returns: a new Case. Errors: CaseError with every fault, also where the name is taken.
+        """
+        found = faults_of(self, name, study)
+        if found:
+            raise CaseError(found)
+        every = {**thawed(self.studies), name: thawed(study)}
+        heads = {"format": checking.FORMAT, "title": self.title, "notes": self.notes}
+        return build({**heads, "study": every, **checking.nest(thawed(self.spelled))}, self.name, self.path, self.stamp, self.text)
 
     def _edited(self, changes: Mapping[str, object]) -> dict[str, object]:
         """The keys as written after an edit."""

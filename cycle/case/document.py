@@ -13,6 +13,7 @@ from cycle.case.leaves import Body, Path, add, is_inline, item, remove, write
 from cycle.case.row_text import change_rows, drop_rows, row_tables
 from cycle.case.rows import TABLES
 from cycle.case.rules import groups_of
+from cycle.case.study_text import change_studies
 from cycle.quantities import INPUT
 
 
@@ -32,7 +33,8 @@ def edited(text: str, case: Case) -> str:
     new.update(_heads(case, old))
     homeless = _apply_leaves(document.body, old, new)
     rows = _apply_rows(document.body, before, after)
-    result = tomlkit.dumps(document) + _new_tables(homeless) + rows
+    studies = change_studies(document.body, data.get("study", {}), thawed(case.studies))
+    result = tomlkit.dumps(document) + _new_tables(homeless) + rows + studies
     if not ended:
         result = result.removesuffix("\n")
     return result.replace("\n", "\r\n") if windows else result

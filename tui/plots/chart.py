@@ -11,7 +11,7 @@ from itertools import pairwise
 from typing import Literal
 
 Role = Literal["now", "pin", "plain"]
-Kind = Literal["limit", "mode change", "here", "pin"]
+Kind = Literal["limit", "mode change", "place", "here", "pin"]
 Numbers = tuple[float, ...]
 
 NO_VALUE = "no value"
@@ -98,7 +98,8 @@ class Grid:
     """A map: a figure over a grid of two inputs.
 
     x, y: places of the grid along both axes, finite and rising. z: one row for each y, one value for each x, nan without a
-    solution. status: of the shape of z, None where solved; () where no point has one. here, pin: (x, y) to be marked.
+    solution. status: of the shape of z, None where solved; () where no point has one. here, pin, cursor: (x, y) to be marked;
+    the cursor is left out of a file.
     Raises: ValueError where the shapes differ or x or y do not rise.
     """
 
@@ -113,6 +114,7 @@ class Grid:
     here: tuple[float, float] | None = None
     pin: tuple[float, float] | None = None
     notes: tuple[str, ...] = ()
+    cursor: tuple[float, float] | None = None
 
     def __post_init__(self) -> None:
         for name, places in (("x", self.x), ("y", self.y)):

@@ -18,12 +18,12 @@ from tui.plots.scale import Scale, drawable, scale_of
 POINT_MARKS: dict[Glyphs, str] = {"unicode": "●▲■◆○△", "ascii": "*+o=~@"}
 LINES: dict[Glyphs, dict[tuple[Kind, Across], str]] = {
     "unicode": {
-        ("limit", "x"): "┃", ("mode change", "x"): "┊", ("here", "x"): "│", ("pin", "x"): "╎",
-        ("limit", "y"): "━", ("mode change", "y"): "┈", ("here", "y"): "─", ("pin", "y"): "╌",
+        ("limit", "x"): "┃", ("mode change", "x"): "┊", ("place", "x"): "┆", ("here", "x"): "│", ("pin", "x"): "╎",
+        ("limit", "y"): "━", ("mode change", "y"): "┈", ("place", "y"): "┄", ("here", "y"): "─", ("pin", "y"): "╌",
     },
     "ascii": {
-        ("limit", "x"): "!", ("mode change", "x"): ":", ("here", "x"): "|", ("pin", "x"): ";",
-        ("limit", "y"): "=", ("mode change", "y"): ".", ("here", "y"): "-", ("pin", "y"): "_",
+        ("limit", "x"): "!", ("mode change", "x"): ":", ("place", "x"): "'", ("here", "x"): "|", ("pin", "x"): ";",
+        ("limit", "y"): "=", ("mode change", "y"): ".", ("place", "y"): "~", ("here", "y"): "-", ("pin", "y"): "_",
     },
 }  # fmt: skip
 _SPOT: dict[Glyphs, str] = {"unicode": "●", "ascii": "O"}

@@ -13,7 +13,7 @@ from tui.plots.scale import Scale, Tick, drawable, heading, scale_of
 MOST = 9
 """Contours of a map, so that one digit names each."""
 
-HERE, PIN = "O", "A"
+HERE, PIN, CURSOR = "O", "A", "+"
 """Marks of the point in hand and of the pinned one."""
 
 Bands = list[list[int | str]]

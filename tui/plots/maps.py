@@ -10,7 +10,7 @@ from cycle.units import format_number
 from tui.line import BOLD, PLAIN, Cell, Line, line
 from tui.plots.board import Board, Key, Rows, lay
 from tui.plots.chart import Grid
-from tui.plots.levels import HERE, PIN, Levels, banded, edges, legend_of, levels_of, spread, statuses
+from tui.plots.levels import CURSOR, HERE, PIN, Levels, banded, edges, legend_of, levels_of, spread, statuses
 from tui.plots.paint import Glyphs, Paint
 from tui.plots.reading import Ends, marks_of, unsolved_entries
 from tui.plots.scale import Scale, scale_of
@@ -69,7 +69,7 @@ def _field(grid: Grid, levels: Levels, colours: Paint, glyphs: Glyphs, x: Scale,
         style = Style(color=grounds[own][1], bgcolor=grounds[own][0], bold=True) if grounds else PLAIN
         for r, c in spread(places) if grounds else places:
             out[r][c] = (str(own), style)
-    for mark, place in ((PIN, grid.pin), (HERE, grid.here)):
+    for mark, place in ((PIN, grid.pin), (HERE, grid.here), (CURSOR, grid.cursor)):
         if place is not None and x.low <= place[0] <= x.high and y.low <= place[1] <= y.high:
             out[rows - 1 - y.place(place[1], rows)][x.place(place[0], columns)] = (mark, Style(bold=True, reverse=True))
     return out

@@ -95,12 +95,13 @@ class Paint:
 def paint(depth: Depth) -> Paint:
     """The styles for a colour depth; "none" uses weight only."""
     if depth == "none":
-        return Paint(depth, (PLAIN,) * len(SERIES_RGB), {"limit": PLAIN, "mode change": DIM, "here": BOLD, "pin": PLAIN}, BOLD)
+        plain: dict[Kind, Style] = {"limit": PLAIN, "mode change": DIM, "place": DIM, "here": BOLD, "pin": PLAIN}
+        return Paint(depth, (PLAIN,) * len(SERIES_RGB), plain, BOLD)
     code = _cube if depth == "256" else hexadecimal
     names = _SERIES_NAMES if depth == "16" else tuple(map(code, SERIES_RGB))
     limit = "red" if depth == "16" else code(LIMIT_RGB)
     series = tuple(Style(color=name) for name in names)
-    rules: dict[Kind, Style] = {"limit": Style(color=limit), "mode change": DIM, "here": BOLD, "pin": series[1]}
+    rules: dict[Kind, Style] = {"limit": Style(color=limit), "mode change": DIM, "place": DIM, "here": BOLD, "pin": series[1]}
     return Paint(depth, series, rules, Style(color=limit, bold=True))
 
 

@@ -25,7 +25,7 @@ PATTERNS: tuple[tuple[str, str], ...] = (("solid", "1"), ("dashed", "111111000")
 
 HUES = 6
 _LETTERS = "abcdefghijklmnopqrstuvwxyz"
-_TAG: Mapping[Kind, str] = {"limit": "L", "mode change": "M", "here": "O", "pin": "A"}
+_TAG: Mapping[Kind, str] = {"limit": "L", "mode change": "M", "place": "P", "here": "O", "pin": "A"}
 _HOLDS: tuple[Kind, ...] = ("here", "pin")
 """Rules that the axes always reach."""
 

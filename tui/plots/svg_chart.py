@@ -21,6 +21,7 @@ _HOLLOW = ("ring", "open")
 _RULES: dict[Kind, tuple[str, str, str]] = {
     "limit": (hexadecimal(LIMIT_RGB), "2", ""),
     "mode change": ("#777777", "1", "2 3"),
+    "place": ("#999999", "1", "1 2"),
     "here": (INK, "1.5", ""),
     "pin": (hexadecimal(SERIES_RGB[1]), "1.5", "6 4"),
 }

@@ -35,7 +35,8 @@ WIDEST, MARK = 12, 8
 """Columns of the screen that a column of the table takes at most, and those kept for the marks."""
 
 
-def _of(found: Figures, process: str, key: str) -> float:
+def process_figure(found: Figures, process: str, key: str) -> float:
+    """A figure of a process of the walk, nan where there is none."""
     figures = next((p.figures for p in found.passages if p.name == process), {})
     return figures.get(key, NAN)
 
@@ -50,11 +51,11 @@ def _running(found: Figures, system: str) -> list[str]:
 
 def _places(found: Figures) -> list[tuple[str, float, str]]:
     return [
-        ("p3/p2", _of(found, "isolator", "pressure_ratio"), "ratio"),
-        ("peak p/p2", _of(found, "burner", "peak_pressure_ratio"), "ratio"),
-        ("train", _of(found, "isolator", "train_length"), "length"),
-        ("core fills the duct at", _of(found, "burner", "reattachment_x"), "length"),
-        ("thermal throat at", _of(found, "burner", "throat_x"), "length"),
+        ("p3/p2", process_figure(found, "isolator", "pressure_ratio"), "ratio"),
+        ("peak p/p2", process_figure(found, "burner", "peak_pressure_ratio"), "ratio"),
+        ("train", process_figure(found, "isolator", "train_length"), "length"),
+        ("core fills the duct at", process_figure(found, "burner", "reattachment_x"), "length"),
+        ("thermal throat at", process_figure(found, "burner", "throat_x"), "length"),
     ]
 
 
@@ -124,7 +125,7 @@ def _marks(session: Session, profile: Mapping[str, tuple[float, ...]]) -> dict[i
     found, case = session.figures, session.case
     assert found is not None
     places = [(row["x"], "fuel") for row in (case.rows.get("combustor.injector", ()) if case is not None else ())]
-    places += [(_of(found, "burner", "reattachment_x"), "filled"), (_of(found, "burner", "throat_x"), "throat")]
+    places += [(process_figure(found, "burner", "reattachment_x"), "filled"), (process_figure(found, "burner", "throat_x"), "throat")]
     out: dict[int, list[str]] = {}
     for x, word in places:
         row = next((i for i, here in enumerate(profile["x"]) if here >= x - 1e-9), None)

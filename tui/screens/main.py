@@ -26,6 +26,7 @@ from tui.screens.editing import Editing
 from tui.screens.filing import Filing
 from tui.screens.page import Page
 from tui.screens.peeking import Peeking
+from tui.screens.picture import Picture
 from tui.screens.pinning import Pinning
 from tui.screens.plotting import Plotting
 from tui.screens.ranking import Ranking
@@ -239,7 +240,10 @@ class MainScreen(Editing, Filing, Peeking, Plotting, Ranking, Asking, Pinning, C
         if self.session.borders is None and self.session.settled:
             self.engine.newest("borders", self.session.generation, lambda: figures.heat_limits(found))
         body, head = (partial(self._of_duct, view) for view in (ducting.duct_rows, ducting.duct_head))
-        self.app.push_screen(Page("Along the duct", body, head=head))
+        page = Page(
+            "Along the duct", body, head=head, verbs={"l": lambda: page.leave("plots")}, keys="arrows scroll; l draws it; Escape goes back"
+        )
+        self.app.push_screen(page, lambda name: self.do_plots() if name == "plots" else None)
 
     def _of_duct(self, view: Callable[[Session, int], list[Line]], wide: int) -> list[Line]:
         """A part of the duct's page, of the session as it is when it is painted."""
@@ -249,7 +253,7 @@ class MainScreen(Editing, Filing, Peeking, Plotting, Ranking, Asking, Pinning, C
         """Show the borders of the duct's regimes on the page that waits for them."""
         if result.generation == self.session.generation:
             self.put(replace(self.session, borders=result.value))
-            if isinstance(self.app.screen, Page):
+            if isinstance(self.app.screen, Page | Picture):
                 self.app.screen.paint()
 
     def do_help(self) -> None:
@@ -286,6 +290,8 @@ HANDLERS: dict[str, Callable[[MainScreen, Result], None]] = {
     "explain": MainScreen.explained,
     "influence": MainScreen.weighed,
     "limit": MainScreen.sought,
+    "peek": MainScreen.peeked,
+    "picture": MainScreen.picture_written,
 }
 """Kind of a job -> what takes its result."""
 
@@ -296,5 +302,7 @@ EXPECTED: dict[str, tuple[type[BaseException], ...]] = {
     "folder": (CaseError, OSError),
     "files": (CaseError, FileChanged, OSError),
     "keep": (OSError,),
+    "picture": (CaseError,),
+    "peek": (CaseError,),
 }
 """Kind of a job -> errors that its handler tells the user about."""

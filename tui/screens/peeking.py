@@ -4,12 +4,33 @@ from __future__ import annotations
 
 from dataclasses import replace
 
+from tui import peek
+from tui.engine import Result
+from tui.items import in_hand
 from tui.screens.desk import Desk
+from tui.screens.peek import PeekScreen
+from tui.screens.picture import Picture
 
 
 class Peeking(Desk, inherit_bindings=False):
     """Handlers of these actions."""
 
     def do_peek(self) -> None:
-        """Not there yet."""
-        self.put(replace(self.session, note="not there yet"))
+        """Draw the watched figure against the input in hand."""
+        start = peek.opened(self.session)
+        if start is None:
+            self.put(replace(self.session, note=peek.drawable(in_hand(self.session))))
+            return
+        self.app.push_screen(PeekScreen(self, start))
+
+    def peeked(self, result: Result) -> None:
+        """Hand a piece of a sweep to the peek that waits for it."""
+        for screen in self.app.screen_stack:
+            if isinstance(screen, PeekScreen):
+                screen.solved(result)
+
+    def picture_written(self, result: Result) -> None:
+        """Tell the picture that was written where its files are."""
+        for screen in self.app.screen_stack:
+            if isinstance(screen, Picture):
+                screen.was_written(result)

@@ -2,18 +2,18 @@
 
 from __future__ import annotations
 
-from dataclasses import replace
-
 from tui.screens.desk import Desk
+from tui.screens.plots import PlotsScreen
+from tui.screens.went import WentScreen
 
 
 class Plotting(Desk, inherit_bindings=False):
     """Handlers of these actions."""
 
     def do_plots(self) -> None:
-        """Not there yet."""
-        self.put(replace(self.session, note="not there yet"))
+        """Draw the walk."""
+        self.app.push_screen(PlotsScreen(self))
 
     def do_went(self) -> None:
-        """Not there yet."""
-        self.put(replace(self.session, note="not there yet"))
+        """Show where the thrust went."""
+        self.app.push_screen(WentScreen(self))
