@@ -24,6 +24,8 @@ WIDEST, NARROWEST = 4096.0, 1.0 / 64.0
 """Declared steps on each side of the middle, in units of the first ones."""
 
 STEPS = 20.0
+LIMITS_COST = 2.0
+"""What a point with its limits costs, in points without."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -117,7 +119,7 @@ def _differs(pinned: Case, case: Case, key: str) -> bool:
 def _afresh(peek: Peek, spans: tuple[Span, ...]) -> Peek:
     """The peek over other spans: what was drawn goes, the cursor stays where it can."""
     levels = LINE_LEVELS if len(spans) == 1 else MAP_LEVELS
-    sweep = Sweep(peek.case, spans, peek.sweep.figures, levels)
+    sweep = Sweep(peek.case, spans, peek.sweep.figures, levels, cost=peek.sweep.cost)
     return _beside(replace(peek, spans=spans, sweep=sweep))
 
 
@@ -163,7 +165,15 @@ def took(peek: Peek, piece: Piece) -> Peek:
     if due is None:
         return peek
     grown: dict[str, Any] = {due[0]: due[1].took(piece)}
-    return replace(peek, **grown)
+    return _weighed(replace(peek, **grown))
+
+
+def _weighed(peek: Peek) -> Peek:
+    """The peek with what a point costs told to the sweeps that have not begun, so that their pieces are short from the first one."""
+    cost = peek.sweep.cost
+    other = replace(peek.other, cost=cost) if peek.other is not None and not peek.other.cost else peek.other
+    margins = replace(peek.margins, cost=LIMITS_COST * cost) if peek.margins is not None and not peek.margins.cost else peek.margins
+    return replace(peek, other=other, margins=margins)
 
 
 def next_figure(peek: Peek) -> Peek:
