@@ -24,9 +24,9 @@ from tui.screens.beside import Comparing
 from tui.screens.browsing import Browsing
 from tui.screens.editing import Editing
 from tui.screens.filing import Filing
+from tui.screens.overlay import Overlay
 from tui.screens.page import Page
 from tui.screens.peeking import Peeking
-from tui.screens.picture import Picture
 from tui.screens.pinning import Pinning
 from tui.screens.plotting import Plotting
 from tui.screens.ranking import Ranking
@@ -253,7 +253,7 @@ class MainScreen(Editing, Filing, Peeking, Plotting, Ranking, Asking, Pinning, C
         """Show the borders of the duct's regimes on the page that waits for them."""
         if result.generation == self.session.generation:
             self.put(replace(self.session, borders=result.value))
-            if isinstance(self.app.screen, Page | Picture):
+            if isinstance(self.app.screen, Overlay):
                 self.app.screen.paint()
 
     def do_help(self) -> None:

@@ -29,6 +29,10 @@ class Overlay(Screen[Given], Generic[Given]):
         cast(Keyboard, self.app).type_on()
 
     @abstractmethod
+    def paint(self) -> None:
+        """Paint what is to be shown now."""
+
+    @abstractmethod
     def typed(self, event: events.Key) -> None:
         """Take a key."""
 

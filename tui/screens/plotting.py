@@ -1,10 +1,8 @@
-"""Pictures of the walk: along the duct, temperature-entropy, enthalpy-velocity, and the losses."""
+"""Pictures of the walk: along the duct, temperature-entropy, enthalpy-velocity, and the losses; imported when asked for."""
 
 from __future__ import annotations
 
 from tui.screens.desk import Desk
-from tui.screens.plots import PlotsScreen
-from tui.screens.went import WentScreen
 
 
 class Plotting(Desk, inherit_bindings=False):
@@ -12,8 +10,12 @@ class Plotting(Desk, inherit_bindings=False):
 
     def do_plots(self) -> None:
         """Draw the walk."""
+        from tui.screens.plots import PlotsScreen
+
         self.app.push_screen(PlotsScreen(self))
 
     def do_went(self) -> None:
         """Show where the thrust went."""
+        from tui.screens.went import WentScreen
+
         self.app.push_screen(WentScreen(self))
