@@ -202,19 +202,27 @@ class Lost:
         return total
 
 
-def core_friction(duct: Duct, scan: Scan, pressure: Array, near: Lost | None = None, settled: float = 1e-12) -> Lost:
-    """What friction takes from a core at p3 (N,) Pa along the whole duct; near: of the same ducts at a nearby pressure;
-    settled: change over the impulse of station 2 at which it stands still."""
-    lost = Lost(np.zeros(scan.segment.shape), scan.sonic.state) if near is None else near
+def core_friction(duct: Duct, scan: Scan, pressure: Array, settled: float = 1e-12) -> Lost:
+    """What friction takes from a core at p3 (N,) Pa along the whole duct; settled: change over the impulse of station 2 at which it
+    stands still."""
+    lost = Lost(np.zeros(scan.segment.shape), scan.sonic.state)
     if not duct.friction.any():
         return lost
     for _ in range(_FRICTION_TURNS):
-        core = core_at(duct, scan.mixture, pressure, lost.rows, lost.state)
-        before, lost = lost, Lost(scan.grid.running(core.friction), core.state)
-        if (np.abs(lost.rows - before.rows) < settled * duct.impulse).all():
+        lost, change = friction_turn(duct, scan, pressure, lost)
+        if (change < settled * duct.impulse).all():
             break
     return lost
 
 
+def friction_turn(duct: Duct, scan: Scan, pressure: Array, near: Lost) -> tuple[Lost, Array]:
+    """One round of the core's friction at p3 (N,) Pa, which gains about two digits, and the most that it moved, N (N,)."""
+    if not duct.friction.any():
+        return near, np.zeros(pressure.shape)
+    core = core_at(duct, scan.mixture, pressure, near.rows, near.state)
+    lost = Lost(scan.grid.running(core.friction), core.state)
+    return lost, np.abs(lost.rows - near.rows).max(0)
+
+
 _FRICTION_TURNS = 12
-"""Rounds in which the core's friction settles; each gains about two digits."""
+"""Rounds in which the core's friction settles."""

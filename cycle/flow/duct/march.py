@@ -286,12 +286,14 @@ def march(duct: Duct, begin: Array, end: Array, free: Array, branch: Array, scan
     return Branch(panels, segment, x, mixture, flow, flow.impulse - mixture.brought, worst, chokes, lost, rules, free)
 
 
-def spot(duct: Duct, segment: Codes, x: Array, free: Array, branch: Array, scan: Scan) -> tuple[Mixture, OnLine, Flags]:
+def spot(
+    duct: Duct, segment: Codes, x: Array, free: Array, branch: Array, scan: Scan, near: OnLine | None = None
+) -> tuple[Mixture, OnLine, Flags]:
     """The attached flow of F - B = free (N,) N at the places x (N,) m of a segment: mixture and state, (1, N), and whether
-    it was found."""
+    it was found. near: the flow of the same ducts and branch at places nearby, to start from."""
     mixture = duct.mixture(segment[None], x[None])
-    start: State = scan.near(segment[None], x[None])
-    model = model_about_sonic(*scan.sonic_at(segment[None], x[None]))
+    start: State = scan.near(segment[None], x[None]) if near is None else near.state
+    model = model_about_sonic(*scan.sonic_at(segment[None], x[None])) if near is None else near.model(mixture.mass_flow)
     F = free + mixture.brought
     done = np.zeros(x.shape, np.bool_)
     flow, u = None, None

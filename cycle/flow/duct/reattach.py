@@ -10,7 +10,7 @@ from dataclasses import dataclass, fields
 import numpy as np
 
 from cycle.arrays import Array, Codes, Flags
-from cycle.flow.duct.core import core_friction
+from cycle.flow.duct.core import Lost, core_friction, friction_turn
 from cycle.flow.duct.layout import Duct
 from cycle.flow.duct.march import Branch, spot
 from cycle.flow.duct.scan import Scan
@@ -18,6 +18,12 @@ from cycle.flow.duct.throat import Throat
 
 _TURNS = 40
 _SETTLED = 1e-11
+_STILL = 1e-12
+"""Momentum that the core's friction moves in a round, over the impulse, at which it stands still."""
+_DOUBT = 0.1
+"""Share of that round's move that the friction may still be wrong by: each gains about two digits."""
+_SPARE = 1e-6
+"""Room beside the bracket, over the duct's length: the friction still moved while its ends were judged."""
 _BORDER = 1e-8
 """Momentum, over the impulse, that the critical flow's may fall short of the core's by rounding."""
 
@@ -53,11 +59,12 @@ def reattachment(duct: Duct, scan: Scan, up: Branch, at: Throat) -> Fill:
     row = np.where(above.any(0), above.argmax(0) + 1, x.shape[0] - 1)
     low, high = x[row - 1, columns], x[row, columns]
     f_low, f_high = miss[row - 1, columns], miss[row, columns]
-    part = np.clip(-f_low / np.where(f_high > f_low, f_high - f_low, np.inf), 0.0, 1.0)
+    rise = np.where(f_high > f_low, f_high - f_low, np.inf)
+    part = np.clip(-f_low / rise, 0.0, 1.0)
     guess = np.where(above.any(0), low + (high - low) * part, up.x[0])
     # Friction of the core only brings the place nearer to the entry.
     first = np.where(duct.friction > 0.0, x[0], low)
-    found = _bracketed(duct, scan, up, first, high, guess)
+    found = _bracketed(duct, scan, up, first, high, guess, np.where(above.any(0), rise / (high - low), np.nan))
     if found.found.all():
         return found
     border = ~found.found & (throat_lacks(duct, scan, at) > -_BORDER * duct.impulse)
@@ -71,29 +78,33 @@ def throat_lacks(duct: Duct, scan: Scan, at: Throat, settled: float = 1e-12) -> 
     settled: see `core_friction`.
     """
     momentum = at.mass_flow * at.velocity
-    friction = core_friction(duct, scan, at.pressure, None, settled).at(scan, at.segment, at.x)
+    friction = core_friction(duct, scan, at.pressure, settled).at(scan, at.segment, at.x)
     return lacking(duct, momentum, at.pressure, momentum + at.pressure * at.area - at.free, friction)
 
 
-def _bracketed(duct: Duct, scan: Scan, up: Branch, low: Array, high: Array, x: Array) -> Fill:
-    """Secant in x inside a bracket, on the march's own F - B with the state there solved."""
+def _bracketed(duct: Duct, scan: Scan, up: Branch, low: Array, high: Array, x: Array, slope: Array) -> Fill:
+    """Secant in x inside a bracket, on the march's own F - B with the state there solved. The core's friction settles meanwhile; a
+    place is judged only where it lacks more momentum than the friction still moves."""
     throat, done = up.x[0], np.zeros(x.shape, np.bool_)
-    before, lost = np.full((2, x.size), np.nan), None
+    before, flow, lost = None, None, Lost(np.zeros(scan.segment.shape), scan.sonic.state)
     for _ in range(_TURNS):
         segment = (duct.edges[1:-1] < x).sum(0)
-        mixture, flow, solved = spot(duct, segment, x, up.free_at(x), np.full(x.shape, -1.0), scan)
-        u, p = flow.u[0], flow.pressure[0]
-        lost = core_friction(duct, scan, p, lost)
+        mixture, flow, solved = spot(duct, segment, x, up.free_at(x), np.full(x.shape, -1.0), scan, flow)
+        u, p, square = flow.u[0], flow.pressure[0], flow.mach_squared[0]
+        lost, moved = friction_turn(duct, scan, p, lost)
         friction = lost.at(scan, segment, x)
         miss = lacking(duct, mixture.mass_flow[0] * u, p, mixture.brought[0], friction)
-        low, high = np.where(miss < 0.0, x, low), np.where(miss < 0.0, high, x)
-        step = miss * (x - before[0]) / (miss - before[1])
+        sure = np.abs(miss) > _DOUBT * moved
+        low, high = np.where(sure & (miss < 0.0), x, low), np.where(sure & (miss >= 0.0), x, high)
+        step = miss / slope if before is None else miss * (x - before[0]) / (miss - before[1])
         wide = high - low > _SETTLED * duct.end
         probe = np.where(miss < 0.0, np.minimum(x + 1e-3 * duct.end, high), np.maximum(x - 1e-3 * duct.end, low))
-        secant = np.where(np.isfinite(before[0]), x - step, probe)
-        new = np.where((secant >= low) & (secant <= high), secant, 0.5 * (low + high))
-        done |= ~wide | (np.abs(new - x) < _SETTLED * duct.end)
+        secant = np.where(np.isfinite(step), x - step, probe)
+        spare = _SPARE * duct.end
+        inside = (secant >= low - spare) & (secant <= high + spare)
+        new = np.where(inside, np.clip(secant, 0.0, throat), 0.5 * (low + high))
+        done |= ~wide | ((np.abs(new - x) < _SETTLED * duct.end) & (moved < _STILL * duct.impulse))
         if done.all():
             break
         before, x = np.stack([x, miss]), np.where(done, x, new)
-    return Fill(x, segment, p, u, flow.mach_squared[0], friction, done & solved & ((x < throat) | (miss >= 0.0)))
+    return Fill(x, segment, p, u, square, friction, done & solved & ((x < throat) | (miss >= 0.0)))
