@@ -311,7 +311,7 @@ _FARTHEST = 0.3
 """Largest share moved on: the changes of the plain turns shrink by more than this, or the flow changes its mode meanwhile."""
 
 _COOLING_TURNS = 20
-_COOLED = 1e-10
+_COOLED = 1e-9
 """Change of the heat lost, over m u2^2, at which it stands still."""
 
 
