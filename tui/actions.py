@@ -12,7 +12,8 @@ class Action:
 
     name: the handler is `do_<name>` of the screen, and the id that a keymap uses; keys: names of keys; shown: the keys
     as printed; label: a word or two for the line of keys, "" to leave it out there; rank: which go first where the line is
-    short; help: one line; pair: another action whose key stands beside it on the line of keys.
+    short; help: one line; pair: another action whose key stands beside it on the line of keys; in_hand: the rank while the inputs
+    have the focus, where that is another one.
     """
 
     name: str
@@ -23,6 +24,7 @@ class Action:
     group: str
     rank: int = 2
     pair: str = ""
+    in_hand: int | None = None
 
 
 WALK, EDIT, ASK, COMPARE, FILE, PROGRAM = "walking", "editing", "asking", "comparing", "case file", "program"
@@ -40,33 +42,33 @@ ACTIONS: tuple[Action, ...] = (
     Action("table", ("escape",), "Esc", "", "back to the table; in a field: leave the value as it was", WALK),
     Action("edit", ("enter",), "Enter", "edit", "open the input in hand; a choice goes on to its next one", EDIT, 1),
     Action("cycle", ("space",), "Space", "", "next choice of the input in hand", EDIT),
-    Action("more", ("plus", "equals_sign"), "+ -", "step", "one step up, by the step declared for the input", EDIT, 1, "less"),
+    Action("more", ("plus", "equals_sign"), "+ -", "step", "one step up, by the step declared for the input", EDIT, 2, "less", in_hand=1),
     Action("less", ("minus",), "-", "", "one step down", EDIT),
     Action("more_ten", ("greater_than_sign",), ">", "", "ten steps up", EDIT),
     Action("less_ten", ("less_than_sign",), "<", "", "ten steps down", EDIT),
-    Action("ways", ("o",), "o", "other way", "say the same by another quantity; the walk keeps its value", EDIT),
+    Action("ways", ("o",), "o", "other way", "say the same by another quantity; the walk keeps its value", EDIT, 3),
     Action("add_row", ("a",), "a", "add row", "one duct section, injector or ramp more, behind the one in hand", EDIT, 3),
     Action("remove_row", ("x",), "x", "", "the duct section, injector or ramp in hand gone", EDIT),
     Action("default", ("delete",), "Del", "", "take the value back: the default holds, or none", EDIT),
-    Action("undo", ("u",), "u", "undo", "take back the last edit, without end", EDIT, 1),
-    Action("redo", ("U", "shift+u"), "U", "redo", "bring back an edit taken back", EDIT),
-    Action("peek", ("g",), "g", "graph", "draw the watched figure against the input in hand; a second input makes a map", ASK, 1),
-    Action("explain", ("e",), "e", "explain", "what the figure or input in hand is, its equation with this walk's numbers", ASK, 1),
+    Action("undo", ("u",), "u", "undo", "take back the last edit, without end", EDIT, 2, in_hand=1),
+    Action("redo", ("U", "shift+u"), "U", "redo", "bring back an edit taken back", EDIT, 4),
+    Action("peek", ("g",), "g", "graph", "draw the watched figure against the input in hand; a second makes a map", ASK, 2, in_hand=1),
+    Action("explain", ("e",), "e", "explain", "the figure or input in hand: meaning, equation with this walk's numbers", ASK, 1, in_hand=2),
     Action("influence", ("i",), "i", "influence", "the inputs that move the watched figure most, each by its own step", ASK),
     Action("watch", ("y",), "y", "", "watch the next figure: thrust, specific impulse ...; graphs and influence follow it", ASK),
     Action("plots", ("l",), "l", "plots", "lines of this walk: along the duct, temperature-entropy, enthalpy-velocity", ASK),
     Action("went", ("f",), "f", "losses", "from the ideal thrust to this one: what each process cost", ASK),
     Action("find", ("slash",), "/", "find", "find an input or a figure by name or symbol and go there", ASK, 2),
     Action("palette", ("colon", "ctrl+p"), ":", "", "any action by name", ASK),
-    Action("pin", ("p",), "p", "pin", "pin this walk: changes are shown against it", COMPARE, 1),
+    Action("pin", ("p",), "p", "pin", "pin this walk: changes are shown against it", COMPARE, 1, in_hand=2),
     Action("pin_from", ("P", "shift+p"), "P", "", "pin another: a case, a stored walk, a moment of this session", COMPARE),
-    Action("compare", ("c",), "c", "compare", "this walk beside the pinned one and others, and where the difference comes from", COMPARE),
-    Action("view", ("v",), "v", "change", "cells as figures, as change against the pin, as change in percent", COMPARE),
-    Action("why", ("w",), "w", "limits", "limits by margin and what restores them, audit, referee, thrust", COMPARE),
-    Action("duct", ("d",), "d", "duct", "the flow along the duct, and the heat at which it leaves each regime", COMPARE),
-    Action("referee", ("r",), "r", "referee", "ask an independent equilibrium code about the states", COMPARE),
-    Action("units", ("t",), "t", "units", "SI or US customary", COMPARE),
-    Action("save", ("s",), "s", "save", "save the case; comments and order of the file stay", FILE, 1),
+    Action("compare", ("c",), "c", "compare", "this walk beside the pinned one; where the difference comes from", COMPARE, 1, in_hand=2),
+    Action("view", ("v",), "v", "change", "cells as figures, as change against the pin, as change in percent", COMPARE, 3),
+    Action("why", ("w",), "w", "limits", "limits by margin and what restores them, audit, referee, thrust", COMPARE, 1),
+    Action("duct", ("d",), "d", "duct", "the flow along the duct, and the heat at which it leaves each regime", COMPARE, 3),
+    Action("referee", ("r",), "r", "referee", "ask an independent equilibrium code about the states", COMPARE, 3),
+    Action("units", ("t",), "t", "units", "SI or US customary", COMPARE, 3),
+    Action("save", ("s",), "s", "save", "save the case; comments and order of the file stay", FILE, 2),
     Action("browse", ("b",), "b", "cases", "the cases of this folder with their figures: open, copy, rename, delete, notes", FILE),
     Action("save_as", ("S", "shift+s"), "S", "", "save under another name", FILE),
     Action("redraw", ("ctrl+l",), "Ctrl-L", "", "paint the whole screen afresh", PROGRAM),

@@ -148,7 +148,8 @@ def keys(session: Session, wide: int, height: int) -> list[Line]:
         unit = f"; a bare number is in {session.entry.unit}" if session.entry.unit else ""
         return [line((fit(f"Enter commits  Escape leaves it as it was{unit}", wide), DIM))]
     room, kept = wide + 2, set()
-    for action in sorted((a for a in session.actions if a.label), key=lambda a: a.rank):
+    chosen = session.focus == "inputs"
+    for action in sorted((a for a in session.actions if a.label), key=lambda a: a.in_hand if chosen and a.in_hand else a.rank):
         size = len(action.shown) + len(action.label) + 3
         if size <= room:
             kept.add(action.name)
