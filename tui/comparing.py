@@ -135,8 +135,11 @@ def _cells(row: Figure, i: int, system: str) -> tuple[str, ...]:
 def _station_changes(found: Comparison, i: int, system: str) -> Block:
     names = station_names(found.sides)
     table: dict[Output, dict[str, str]] = {}
+    largest: dict[Output, float] = {}
     for row in found.stations:
-        table.setdefault(row.output, {})[row.station] = _change(row, i, system)
+        largest[row.output] = max([largest.get(row.output, 0.0), *(abs(v) for v in row.values if not math.isnan(v))])
+    for row in found.stations:
+        table.setdefault(row.output, {})[row.station] = _change(row, i, system, largest[row.output])
     rows = [(_change_name(o, system), *(cells.get(n, "-") for n in names)) for o, cells in table.items()]
     shown = tuple(row for row in rows if any(cell not in ("-", "0") for cell in row[1:]))
     return Table(("station", *names), shown) if shown else Lines(("none",))
@@ -146,12 +149,12 @@ def _change_name(output: Output, system: str) -> str:
     return named(output.label, output.unit, system, output.key) if output.key in DATUM else output.label
 
 
-def _change(row: Figure, i: int, system: str) -> str:
+def _change(row: Figure, i: int, system: str, largest: float) -> str:
+    """Change of a figure; largest: of all stations, beside which rounding is none."""
     change = row.changes()[i]
     if row.relative:
         return percent(change)
-    size = max(abs(value) for value in row.values if not math.isnan(value))
-    if abs(change) <= LEAST_CHANGE * size:
+    if abs(change) <= LEAST_CHANGE * largest:
         return "0"
     text = format_number(change / display_unit(row.output.unit, system, row.output.key).factor, 3)
     return "+" + text if change > 0.0 else text
