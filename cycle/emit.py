@@ -137,3 +137,31 @@ def station_sources(march: March, name: str, record: Record) -> dict[str, Callab
         return spread(march, record.index, record.stream.area / first.taken(record.index).stream.area)
 
     return sources | {"area_ratio": ratio}
+
+
+def profile(march: March) -> dict[str, Array]:
+    """The flow along the duct by name, x in m from the burner entry, (R, N): each point's rows by place, NaN behind its last one.
+    Empty where the burner is no duct."""
+    record = march.named("burner")
+    if record is None or not record.process.profile:
+        return {}
+    x = _once(record.process.profile)
+    order, longest = np.argsort(x, axis=0, kind="stable"), int(np.isfinite(x).sum(0).max(initial=0))
+    found = {}
+    for name, rows in record.process.profile.items():
+        found[name] = np.full((longest, march.setting.size), np.nan)
+        found[name][:, record.index] = np.take_along_axis(np.where(np.isnan(x), np.nan, rows), order, 0)[:longest]
+    return found
+
+
+def _once(profile: Mapping[str, Array]) -> Array:
+    """Places (R, N) of a profile, m, NaN where a row says again what another one says: a march is cut at the end of the core."""
+    x = profile["x"]
+    order = np.argsort(x, axis=0, kind="stable")
+    again = np.zeros(x.shape, np.bool_)
+    same = np.ones((max(x.shape[0] - 1, 0), x.shape[1]), np.bool_)
+    for rows in profile.values():
+        there = np.take_along_axis(rows, order, 0)
+        same &= there[1:] == there[:-1]
+    np.put_along_axis(again, order[1:], same, 0)
+    return np.where(again, np.nan, x)

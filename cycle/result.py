@@ -158,17 +158,8 @@ class Walk:
     def profile(self) -> dict[str, Any]:
         """The flow along the duct by name, x in m from the burner entry: (R,) for one point, (R, *shape) in a batch; NaN behind the
         last row of a point that has fewer. Empty where the burner is no duct."""
-        record = self.march.named("burner")
-        if record is None or not record.process.profile:
-            return {}
-        x = record.process.profile["x"]
-        order, longest = np.argsort(x, axis=0, kind="stable"), int(np.isfinite(x).sum(0).max(initial=0))
-        found = {}
-        for name, rows in record.process.profile.items():
-            whole = np.full((longest, self.size), np.nan)
-            whole[:, record.index] = np.take_along_axis(rows, order, 0)[:longest]
-            found[name] = whole[:, 0] if self.shape == () else whole.reshape(longest, *self.shape)
-        return found
+        found = emit.profile(self.march)
+        return {name: rows[:, 0] if self.shape == () else rows.reshape(-1, *self.shape) for name, rows in found.items()}
 
     def _done(self, position: int) -> dict[str, Callable[[], Array]]:
         record = self.march.records[position]

@@ -10,12 +10,14 @@ from __future__ import annotations
 
 from collections.abc import Callable, Mapping
 from functools import cache
+from pathlib import Path
 from unittest import mock
 
 import numpy as np
 import pytest
 import tomlkit
 
+import cases
 import cycle
 from cycle.evidence import Figure, Flowpath, flowpath
 from cycle.flow import gas_shocks
@@ -275,3 +277,14 @@ def test_wider_species_list_moves_little(name: str) -> None:
         assert len(shown) >= 9
         for key in shown:
             assert found[key] == pytest.approx(other[key], rel=1e-6), key
+
+
+def test_a_profile_says_nothing_twice() -> None:
+    walk = cycle.solve(
+        cycle.load(Path(cases.__file__).with_name("tidegate.toml")), {"combustor.equivalence_ratio": np.array([0.5, 0.68, 0.8])}
+    )
+    rows = np.stack(list(walk.profile.values()))
+    there = np.isfinite(rows[0])
+    assert there.sum(0).min() > 40
+    again = (rows[:, 1:] == rows[:, :-1]).all(0)
+    assert not again.any()
