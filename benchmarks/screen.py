@@ -166,6 +166,24 @@ def _edits(folder: str, edited: Edited, runs: int, columns: int = 80, rows: int 
     return times
 
 
+def typed_times(folder: str, runs: int) -> list[float]:
+    """Seconds from a key to its paint while the sensitivities of a duct are being solved: a field opened and typed into behind a step."""
+    times = []
+    with _opened(folder, DUAL_MODE.path) as terminal:
+        _to_heat(terminal, DUAL_MODE.path)
+        for _ in range(runs):
+            terminal.press("+")
+            time.sleep(0.13)
+            for key in ("enter", *"0.77"):
+                terminal.raw.clear()
+                terminal.press(key)
+                times.append(_until(terminal, lambda raw: len(raw) > 3))
+            terminal.press("escape")
+            terminal.settle(0.8)
+    _forget(folder)
+    return times
+
+
 def _p95(name: str, times: list[float], bar: float, against: str = SCREEN) -> Row:
     return at_most(f"{name}, p95", 1e3 * _quantile(times, 0.95), "ms", bar, against)
 
@@ -180,6 +198,7 @@ def rows(short: bool = False) -> list[Row]:
         shown, weighed, _, sent = _edits(folder, SIMPLE, 10 if short else 40)
         _, _, whole, wide_sent = _edits(folder, SIMPLE, 5 if short else 20, 120, 40)
         dual_shown, dual_weighed, _, dual_sent = _edits(folder, DUAL_MODE, 5 if short else 30)
+        typed = typed_times(folder, 4 if short else 12)
         paint = first_paint(3 if short else 7, folder)
     return [
         _p95("edit to table and headline painted", shown, 60.0),
@@ -188,6 +207,7 @@ def rows(short: bool = False) -> list[Row]:
         _p95("edit to limits, sensitivities and losses painted (120x40)", whole, 150.0, "the bar of the sensitivities"),
         _p95("dual-mode duct: edit to table and headline painted", dual_shown, 150.0),
         _p95("dual-mode duct: edit to sensitivities painted", dual_weighed, 500.0),
+        _p95("dual-mode duct: a character typed while sensitivities are solved", typed, 100.0, "a bar of our own"),
         at_most("bytes of an edit, most", max(*sent, *dual_sent), "B", 6000.0, SCREEN),
         at_most("bytes of an edit, most (120x40)", max(wide_sent), "B", 6000.0, "the bar of 80x24"),
         at_most("bytes of a cursor move, most", max(moves), "B", 1000.0, SCREEN),
