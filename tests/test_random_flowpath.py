@@ -26,6 +26,13 @@ def test_random_flowpath_ends_in_an_audited_walk_or_a_named_status(block: int) -
     assert statuses.count("solved") >= len(seeds) // 2
 
 
+@pytest.mark.parametrize("seed", [33682, 34063, 34850, 37530])
+def test_hard_ducts_of_large_runs_are_solved(seed: int) -> None:
+    """Heat to the wall near the border of two modes; a throat in the exit plane; a core whose friction settles slowly."""
+    status, _, words = judge(seed)
+    assert (status, words) == ("solved", [])
+
+
 @pytest.mark.parametrize("seed", [25548])
 def test_mode_that_its_own_wall_heat_refutes_gives_way(seed: int) -> None:
     """Attached, the wall takes less and the flow separates; with a shock train it takes more and the flow would attach."""

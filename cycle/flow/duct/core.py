@@ -202,13 +202,18 @@ class Lost:
         return total
 
 
+def unlost(scan: Scan) -> Lost:
+    """A core without friction."""
+    return Lost(np.zeros(scan.segment.shape), scan.sonic.state)
+
+
 def core_friction(duct: Duct, scan: Scan, pressure: Array, settled: float = 1e-12) -> Lost:
     """What friction takes from a core at p3 (N,) Pa along the whole duct; settled: change over the impulse of station 2 at which it
     stands still."""
-    lost = Lost(np.zeros(scan.segment.shape), scan.sonic.state)
+    lost = unlost(scan)
     if not duct.friction.any():
         return lost
-    for _ in range(_FRICTION_TURNS):
+    for _ in range(FRICTION_TURNS):
         lost, change = friction_turn(duct, scan, pressure, lost)
         if (change < settled * duct.impulse).all():
             break
@@ -224,5 +229,5 @@ def friction_turn(duct: Duct, scan: Scan, pressure: Array, near: Lost) -> tuple[
     return lost, np.abs(lost.rows - near.rows).max(0)
 
 
-_FRICTION_TURNS = 12
+FRICTION_TURNS = 12
 """Rounds in which the core's friction settles."""

@@ -10,7 +10,7 @@ from dataclasses import dataclass, fields
 import numpy as np
 
 from cycle.arrays import Array, Codes, Flags
-from cycle.flow.duct.core import Lost, core_friction, friction_turn
+from cycle.flow.duct.core import FRICTION_TURNS, core_friction, friction_turn, unlost
 from cycle.flow.duct.layout import Duct
 from cycle.flow.duct.march import Branch, spot
 from cycle.flow.duct.scan import Scan
@@ -20,12 +20,16 @@ _TURNS = 40
 _SETTLED = 1e-11
 _STILL = 1e-12
 """Momentum that the core's friction moves in a round, over the impulse, at which it stands still."""
-_DOUBT = 0.1
-"""Share of that round's move that the friction may still be wrong by: each gains about two digits."""
+_SURE = 0.1
+"""The same, over the momentum lacking, at which a place is judged."""
 _SPARE = 1e-6
-"""Room beside the bracket, over the duct's length: the friction still moved while its ends were judged."""
+"""Room beside the bracket, over its length: the friction still moved while its ends were judged."""
+_SECANTS = 10
+"""Turns after which the bracket is halved: it closes on a place where the momentum jumps."""
 _BORDER = 1e-8
 """Momentum, over the impulse, that the critical flow's may fall short of the core's by rounding."""
+_TOO_MUCH = 1e-6
+"""The same beyond the core's, above which the place lies upstream of the throat."""
 
 
 @dataclass(frozen=True, eq=False)
@@ -67,7 +71,8 @@ def reattachment(duct: Duct, scan: Scan, up: Branch, at: Throat) -> Fill:
     found = _bracketed(duct, scan, up, first, high, guess, np.where(above.any(0), rise / (high - low), np.nan))
     if found.found.all():
         return found
-    border = ~found.found & (throat_lacks(duct, scan, at) > -_BORDER * duct.impulse)
+    lacks = throat_lacks(duct, scan, at) / duct.impulse
+    border = ~found.found & (lacks > -_BORDER) & (lacks < _TOO_MUCH)
     ends = (at.x, at.segment, at.pressure, at.velocity, np.ones_like(x[0]), found.friction, border)
     return Fill(*(np.where(border, end, getattr(found, f.name)) for f, end in zip(fields(Fill), ends, strict=True)))
 
@@ -83,25 +88,28 @@ def throat_lacks(duct: Duct, scan: Scan, at: Throat, settled: float = 1e-12) -> 
 
 
 def _bracketed(duct: Duct, scan: Scan, up: Branch, low: Array, high: Array, x: Array, slope: Array) -> Fill:
-    """Secant in x inside a bracket, on the march's own F - B with the state there solved. The core's friction settles meanwhile; a
-    place is judged only where it lacks more momentum than the friction still moves."""
+    """Secant in x inside a bracket, on the march's own F - B with the state there solved. The core's friction settles only so
+    far that the place can be judged. What lacks may jump where fuel enters: the bracket then closes on that place."""
     throat, done = up.x[0], np.zeros(x.shape, np.bool_)
-    before, flow, lost = None, None, Lost(np.zeros(scan.segment.shape), scan.sonic.state)
-    for _ in range(_TURNS):
+    before, flow, lost = None, None, unlost(scan)
+    for turn in range(_TURNS):
         segment = (duct.edges[1:-1] < x).sum(0)
         mixture, flow, solved = spot(duct, segment, x, up.free_at(x), np.full(x.shape, -1.0), scan, flow)
         u, p, square = flow.u[0], flow.pressure[0], flow.mach_squared[0]
-        lost, moved = friction_turn(duct, scan, p, lost)
-        friction = lost.at(scan, segment, x)
-        miss = lacking(duct, mixture.mass_flow[0] * u, p, mixture.brought[0], friction)
-        sure = np.abs(miss) > _DOUBT * moved
+        for _ in range(FRICTION_TURNS):
+            lost, moved = friction_turn(duct, scan, p, lost)
+            friction = lost.at(scan, segment, x)
+            miss = lacking(duct, mixture.mass_flow[0] * u, p, mixture.brought[0], friction)
+            if (done | (moved < _SURE * np.abs(miss)) | (moved < _STILL * duct.impulse)).all():
+                break
+        sure = np.abs(miss) > moved
         low, high = np.where(sure & (miss < 0.0), x, low), np.where(sure & (miss >= 0.0), x, high)
         step = miss / slope if before is None else miss * (x - before[0]) / (miss - before[1])
         wide = high - low > _SETTLED * duct.end
         probe = np.where(miss < 0.0, np.minimum(x + 1e-3 * duct.end, high), np.maximum(x - 1e-3 * duct.end, low))
         secant = np.where(np.isfinite(step), x - step, probe)
-        spare = _SPARE * duct.end
-        inside = (secant >= low - spare) & (secant <= high + spare)
+        spare = _SPARE * (high - low)
+        inside = (secant >= low - spare) & (secant <= high + spare) & (turn < _SECANTS)
         new = np.where(inside, np.clip(secant, 0.0, throat), 0.5 * (low + high))
         done |= ~wide | ((np.abs(new - x) < _SETTLED * duct.end) & (moved < _STILL * duct.impulse))
         if done.all():
