@@ -20,13 +20,14 @@ NO_VALUE = "no value"
 
 @dataclass(frozen=True, slots=True)
 class Axis:
-    """One direction of a picture: label, unit ("" for a ratio), whether it is logarithmic, and values it has to reach
-    whatever the data are (0 for one that starts at nothing)."""
+    """One direction of a picture: label, unit ("" for a ratio), whether it is logarithmic, values it has to reach whatever
+    the data are (0 for one that starts at nothing), and the names of its places 0, 1, 2 ... where these are no numbers."""
 
     label: str
     unit: str = ""
     log: bool = False
     include: Numbers = ()
+    names: tuple[str, ...] = ()
 
 
 @dataclass(frozen=True, slots=True)

@@ -7,7 +7,7 @@ import io
 import math
 from collections.abc import Iterator
 
-from tui.plots.chart import NO_VALUE, Chart, Grid
+from tui.plots.chart import NO_VALUE, Axis, Chart, Grid
 from tui.plots.scale import heading
 
 SOLVED = "solved"
@@ -38,6 +38,11 @@ def _number(value: float) -> str:
     return repr(float(value)) if math.isfinite(value) else ""
 
 
+def _place(axis: Axis, value: float) -> str:
+    """A value of an axis, by its name where it has one."""
+    return axis.names[int(value)] if axis.names and math.isfinite(value) else _number(value)
+
+
 def _grid(grid: Grid) -> Iterator[Row]:
     for j, y in enumerate(grid.y):
         for i, x in enumerate(grid.x):
@@ -55,10 +60,10 @@ def _chart(chart: Chart) -> Iterator[Row]:
             if at is not None:
                 used.add(at)
             status = SOLVED if solved else NO_VALUE if at is None else chart.unsolved[at].status
-            yield series.label, _number(x), _number(y), status
+            yield series.label, _place(chart.x_axis, x), _number(y), status
     for n, missing in enumerate(chart.unsolved):
         if n not in used:
             yield missing.series, _number(missing.x), "", missing.status
     for spot in chart.spots:
         status = SOLVED if math.isfinite(spot.x) and math.isfinite(spot.y) else NO_VALUE
-        yield f"point {spot.label}", _number(spot.x), _number(spot.y), status
+        yield f"point {spot.label}", _place(chart.x_axis, spot.x), _number(spot.y), status

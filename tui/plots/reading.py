@@ -125,7 +125,7 @@ def refusal(picture: Chart | Grid) -> str:
         return _none_solved([u.status for u in picture.unsolved])
     sides: tuple[tuple[Across, Axis], ...] = (("x", picture.x_axis), ("y", picture.y_axis))
     for across, axis in sides:
-        words = _log_refusal(axis, held(picture, across))
+        words = log_refusal(axis, held(picture, across))
         if words:
             return words
     return "" if all(held(picture, across) for across, _ in sides) else _none_solved([])
@@ -142,7 +142,7 @@ def _grid_refusal(grid: Grid) -> str:
         known = [v for v in map(drawable, places) if v == v]
         if len(known) < len(places):
             return f"{axis.label} reaches beyond what can be drawn"
-        if words := _log_refusal(axis, known):
+        if words := log_refusal(axis, known):
             return words
     return ""
 
@@ -153,7 +153,8 @@ def _none_solved(statuses: list[str]) -> str:
     return "no solved point: " + ", ".join(f"{status} {number}" for status, number in counted(statuses))
 
 
-def _log_refusal(axis: Axis, values: list[float]) -> str:
+def log_refusal(axis: Axis, values: list[float]) -> str:
+    """Why an axis cannot be logarithmic, "" where it can or is not asked to be."""
     wrong = sum(v <= 0.0 for v in values)
     if not axis.log or not wrong:
         return ""

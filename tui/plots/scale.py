@@ -91,8 +91,10 @@ def scale_of(axis: Axis, values: Iterable[float], most: int, tight: bool = False
 
     Parameters: axis; values, at least one that can be drawn, above zero for a log axis; most, ticks that have room (3 are always
     allowed where 2 do not do); tight, whether the axis ends at the data (a map) and not at round numbers.
-    Returns: a `Scale` of at least two ticks, all of them between its ends.
+    Returns: a `Scale` of at least two ticks, all of them between its ends; one at every name where the axis has names.
     """
+    if axis.names:
+        return Scale(0.0, max(1.0, len(axis.names) - 1.0), False, tuple(Tick(float(n), name) for n, name in enumerate(axis.names)))
     known = [v for v in map(drawable, values) if v == v]
     known += [v for v in map(drawable, axis.include) if v > 0.0 or (v == v and not axis.log)]
     low, high = min(known), max(known)

@@ -2,10 +2,12 @@
 
 from __future__ import annotations
 
+from dataclasses import replace
 from typing import ClassVar
 
-from tui.line import CURSOR, DIM, PLAIN, Line, Piece, line
+from tui.line import CURSOR, DIM, OVER, PLAIN, Line, Piece, clean, line, wrap
 from tui.plots import Chart, Grid
+from tui.plots.reading import held, log_refusal
 from tui.screens.desk import Desk
 from tui.screens.picture import Picture
 from tui.views import pictures
@@ -44,7 +46,22 @@ class PlotsScreen(Picture):
         view, at = chosen
         count = min(len(view.items), 2 if self.app.size.height >= TALL else 1)
         items = [view.items[(at + n) % len(view.items)] for n in range(count)] or [""]
-        return [view.drawn(self.desk.session, item, self._log) for item in items]
+        return [self._picture(view, item) for item in items]
+
+    def _picture(self, view: pictures.View, item: str) -> Chart:
+        """One picture; even steps where a value has no logarithm, and a note of it."""
+        chart = view.drawn(self.desk.session, item, self._log)
+        lost = log_refusal(chart.y_axis, held(chart, "y"))
+        if not lost:
+            return chart
+        even = view.drawn(self.desk.session, item, False)
+        return replace(even, notes=(*even.notes, lost))
+
+    def foot(self, wide: int) -> list[Line]:
+        """Why the walk ends where it does, where it has no solution."""
+        found = self.desk.session.figures
+        words = f"no solution: {found.reason}" if found is not None and not found.solved else ""
+        return [line((part, OVER)) for part in wrap(clean(words).split(), wide)]
 
     def instead(self) -> str:
         """Why there is nothing to be drawn."""

@@ -129,16 +129,18 @@ def by_station(session: Session, item: str, log: bool) -> Chart:
     """A row of the station table as a line over the stations. Parameters: as for `along_duct`; item, a key of the table."""
     spec = OUTPUT[item]
     walks = list(_walks(session))
+    every = columns(session)
     series: list[Series] = []
     spots: list[Spot] = []
     for found, label, role in walks:
-        names = [s for s in columns(session) if s in found.stations]
+        names = [s for s in every if s in found.stations]
+        places = tuple(float(every.index(s)) for s in names)
         y = _values([found.at(s, item) for s in names], spec.unit, session, item)
-        series.append(Series(label if len(walks) > 1 else spec.label, tuple(map(float, names)), y, role))
+        series.append(Series(label if len(walks) > 1 else spec.label, places, y, role))
         if role == "now":
-            spots = [Spot(float(s), v, s) for s, v in zip(names, y, strict=True) if v == v]
+            spots = [Spot(x, v, s) for x, s, v in zip(places, names, y, strict=True) if v == v]
     title = _title(session, f"{spec.label} by station")
-    return Chart(title, Axis("station"), _axis(spec.label, spec.unit, session, item, log), tuple(series), (), tuple(spots))
+    return Chart(title, Axis("station", names=every), _axis(spec.label, spec.unit, session, item, log), tuple(series), (), tuple(spots))
 
 
 def _path(session: Session, x: Callable[[Figures, str], float], y: Callable[[Figures, str], float]) -> tuple[list[Series], list[Spot]]:
