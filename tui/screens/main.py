@@ -39,7 +39,7 @@ NEEDS_NO_CASE = ("leave", "browse", "interrupt", "help", "suspend", "redraw", "u
 EVERYWHERE = ("suspend", "redraw")
 """Actions whose keys work in a field and over every screen, where they type nothing."""
 
-WIDTHS: list[tuple[int, str]] | None = [(0, "-narrow"), (112, "-wide")]
+WIDTHS: list[tuple[int, str]] | None = [(0, "-narrow"), (112, "-wide"), (160, "-widest")]
 HEIGHTS: list[tuple[int, str]] | None = [(0, "-tiny"), (12, "-short"), (24, "-plain"), (34, "-tall")]
 """Columns and lines from which the screen has a class of its style sheet."""
 
@@ -56,7 +56,8 @@ class MainScreen(Editing, Filing, Peeking, Plotting, Ranking, Asking, Pinning, C
     MainScreen { layout: vertical; overflow: hidden; }
     #middle { height: 1fr; }
     #side { width: 40; display: none; }
-    .-wide #side { display: block; }
+    .-wide #side, .-widest #side { display: block; }
+    .-widest #side { width: 60; }
     #headline { height: 5; } #process { height: 1; } #inputs { height: 5; } #answer { height: 1; } #keys { height: 1; }
     .-tall #inputs { height: 9; } .-tall #answer { height: 2; }
     .-short #headline { height: 3; } .-short #inputs { height: 3; } .-short #keys { display: none; }
@@ -215,7 +216,10 @@ class MainScreen(Editing, Filing, Peeking, Plotting, Ranking, Asking, Pinning, C
     def do_view(self) -> None:
         """Next view of the cells."""
         view = (self.session.view + 1) % len(VIEWS)
-        self.put(replace(self.session, view=view, note=f"cells: {VIEWS[view]}"))
+        new = replace(self.session, view=view)
+        lost = "this walk has no solution" if new.failed else "no walk with a solution is pinned"
+        instead = "" if table.changes_shown(new) or not view else f"; figures until then: {lost}"
+        self.put(replace(new, note=f"cells: {VIEWS[view]}{instead}"))
 
     def do_units(self) -> None:
         """The other unit system."""

@@ -28,12 +28,22 @@ def lines(session: Session, columns: int, height: int) -> list[Line]:
     if session.case is None:
         return [line((fit(clean(f"ductwalk  {os.path.basename(session.path) or 'new case'}"), columns), BOLD))]
     body = [_title(session, columns), *_figures(session, columns), _limits(session, columns)]
+    if height == 1:
+        return [_single(session, body[1], columns)]
     if height < 4:
         return [body[i] for i in (1, -1, 0, 2)[:height]]
     if session.failed or height < 5:
         return body[:height]
     words = "" if _rig(session) else fit(f" {_installed(session)} --", columns)
     return [*body, line((words.rjust(columns, "-"), DIM))]
+
+
+def _single(session: Session, figures: Line, columns: int) -> Line:
+    """The only line there is: the headline figures, and before them how many limits are over."""
+    found = session.figures
+    over = sum(m.state == "over" for m in found.limits) if found is not None and found.solved else 0
+    mark = f"OVER {over} " if over else ""
+    return line((mark, OVER), *_figures(session, columns - len(mark))[0]) if mark else figures
 
 
 def _installed(session: Session) -> str:

@@ -17,6 +17,10 @@ NARROWEST = 38
 """Columns that one input needs for its label, its value and its mark."""
 
 
+LEAST_WORDS = 24
+"""Columns that the last words on the input in hand need, lest they be left out."""
+
+
 def per_row(wide: int) -> int:
     """Inputs side by side in a width."""
     return max(1, wide // NARROWEST)
@@ -137,6 +141,8 @@ def _input_words(session: Session, room: int) -> str:
     limits = bounds(hand.input, session.system, step=not moves[0])
     rest = [words for words in (rows, limits, other, hand.input.meaning) if words]
     told = next((m for m in moves if width(f"{m} | {rest[0]}") <= room), moves[-1])
+    while len(rest) > 1 and width(" | ".join((told, "; ".join(rest)))) - width(rest[-1]) + LEAST_WORDS > room:
+        rest.pop()
     return " | ".join(words for words in (told, "; ".join(rest)) if words)
 
 

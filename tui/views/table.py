@@ -112,8 +112,10 @@ def lines(session: Session, wide: int, height: int) -> list[Line]:
     top = first_row(session, body)
     keys = ROWS[top : top + body]
     part = f"rows {top + 1}-{top + len(keys)}/{len(ROWS)}" if len(keys) < len(ROWS) else ""
-    where = f"station   {part}".rstrip() if room >= WHOLE_LABELS else part or "station"
-    if session.view:
+    part = part if len(part) < room else f"{top + 1}/{len(ROWS)}"
+    gap = min(3, room - 8 - len(part))
+    where = f"station{' ' * gap}{part}".rstrip() if gap > 0 else part or "station"
+    if changes_shown(session):
         where = VIEWS[session.view].replace("against the pin", "vs pin")
     stale = next(words for words in STALE if len(words) < room or words == STALE[-1])
     reached = stale if session.failed and session.good is not None else "reached through"
@@ -184,8 +186,14 @@ def settled(found: Figures, station: str, key: str) -> float:
     return 0.0 if abs(value) < 1e-9 * scale else value
 
 
+def changes_shown(session: Session) -> bool:
+    """Whether the cells are changes: figures stand there as such where either walk has no solution or nothing is pinned."""
+    found, pin = session.figures, session.pin
+    return session.view > 0 and found is not None and found.solved and pin is not None and pin.figures.solved
+
+
 def _viewed(session: Session, key: str, station: str, value: float) -> str:
-    if session.view == 0 or session.failed:
+    if not changes_shown(session):
         return figure(key, value, session.system)
     base = settled(session.pin.figures, station, key) if session.pin is not None else NAN
     return difference(key, value, base, session.system) if session.view == 1 else percent(value, base)
