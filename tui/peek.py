@@ -11,6 +11,7 @@ from typing import TYPE_CHECKING, Any
 from cycle.declarations import Input
 from cycle.quantities import OUTPUT, input_of
 from tui import rows
+from tui.actions import ACTIONS, Action, key_of
 from tui.items import Item, in_hand
 from tui.session import Pin, Session, performance_keys, watched
 from tui.sweeping import LIMIT_LEVELS, LINE_LEVELS, MAP_LEVELS, Piece, Span, Sweep
@@ -71,19 +72,20 @@ class Peek:
         return index
 
 
-def drawable(hand: Item | None) -> str:
-    """Why the input in hand cannot be drawn against, "" where it can."""
+def drawable(hand: Item | None, actions: tuple[Action, ...] = ACTIONS) -> str:
+    """Why the input in hand cannot be drawn against, "" where it can. actions: those whose keys are named."""
+    way, cycle, edit, why = (key_of(actions, name) for name in ("ways", "cycle", "edit", "why"))
     if hand is None:
         return "this station has no inputs of its own"
     if hand.input is None:
-        return f"{hand.label}: choose a way to say it first (o)"
+        return f"{hand.label}: choose a way to say it first ({way})"
     if hand.input.kind == "choice":
-        return f"{hand.label} is a choice: p pins this walk, Space takes the next choice"
+        return f"{hand.label} is a choice, no curve: {cycle} takes the next one, changes stand against the pin"
     if hand.input.kind != "number":
         return f"{hand.label} is no number and cannot be drawn"
     if hand.key.startswith("limits."):
-        return f"{hand.label} moves its limit alone, no figure of the walk: w shows the limits"
-    return "" if isinstance(hand.value, int | float) else f"{hand.label} has no value yet: Enter gives it one"
+        return f"{hand.label} moves its limit alone, no figure of the walk: {why} shows the limits"
+    return "" if isinstance(hand.value, int | float) else f"{hand.label} has no value yet: {edit} gives it one"
 
 
 def opened(session: Session) -> Peek | None:

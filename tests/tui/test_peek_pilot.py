@@ -89,7 +89,7 @@ async def test_a_study_is_made_undone_saved_and_read_again(path: Path) -> None:
         await driver.press("s", "ctrl+u")
         await driver.type("heat")
         await driver.press("enter")
-        assert "study heat is in the case" in driver.screen()
+        assert "study heat made; u takes it back, s in the table saves the case" in driver.screen()
         assert driver.session.case.studies["heat"]["outputs"] == ("specific_impulse",)
         await driver.press("s", "ctrl+u")
         await driver.type("heat")

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import inspect
 import threading
 from dataclasses import replace
 from pathlib import Path
@@ -18,6 +19,7 @@ from tui.engine import Engine, Result
 from tui.figures import Figures
 from tui.journal import Journal
 from tui.line import PLAIN, cells, clean, fit, line, reach, width, wrap
+from tui.screens.desk import Desk
 from tui.screens.main import MainScreen
 from tui.session import Entry, Session
 
@@ -302,3 +304,13 @@ def test_journal_says_so_where_the_state_directory_cannot_be_written(tmp_path: P
     kept = Journal("case.toml")
     kept.append({"undo": 1})
     assert kept.failure == "edits are not kept on disk: Not a directory"
+
+
+def test_no_part_of_the_main_screen_takes_a_name_of_another() -> None:
+    parts = [c for c in MainScreen.__mro__ if issubclass(c, Desk) and c is not Desk]
+    owners: dict[str, list[str]] = {}
+    for part in parts:
+        for name, made in vars(part).items():
+            if inspect.isfunction(made) and not hasattr(Desk, name):
+                owners.setdefault(name, []).append(part.__name__)
+    assert {name: who for name, who in owners.items() if len(who) > 1} == {}

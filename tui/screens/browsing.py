@@ -57,10 +57,6 @@ class Browsing(Desk, inherit_bindings=False):
         """The cases of the folder of the case that is open."""
         self.shelf.open()
 
-    def open_case(self, path: str) -> None:
-        """Leave the present case and read another. The part that knows files does it."""
-        raise NotImplementedError
-
 
 class Shelf:
     """The list of the cases of a folder and what is done with them. Parameters: desk, the screen with the case that is open; engine."""

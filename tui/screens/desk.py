@@ -61,6 +61,10 @@ class Desk(Screen[None], inherit_bindings=False):
         """Run an action of `tui.actions`. The main screen says how."""
         raise NotImplementedError
 
+    def open_case(self, path: str) -> None:
+        """Leave the present case and read another. The part that knows files does it."""
+        raise NotImplementedError
+
     def case_read(self, got: Any) -> None:
         """A case was read and is being solved. got: `tui.screens.filing.Read`. The parts that wait for it say what they do."""
 

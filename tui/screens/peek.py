@@ -224,7 +224,7 @@ class PeekScreen(Picture):
         if not name:
             return
         if self.desk.change({"study": [name, self._study()]}):
-            self._edited(f"study {name} is in the case: s in the table saves it, u takes it back", again=False)
+            self._edited(f"study {name} made; u takes it back, s in the table saves the case", again=False)
         else:
             self._refused()
         self.paint()

@@ -22,7 +22,7 @@ class Peeking(Desk, inherit_bindings=False):
 
         start = peek.opened(self.session)
         if start is None:
-            self.put(replace(self.session, note=peek.drawable(in_hand(self.session))))
+            self.put(replace(self.session, note=peek.drawable(in_hand(self.session), self.session.actions)))
             return
         self.app.push_screen(PeekScreen(self, start))
 

@@ -6,7 +6,7 @@ from collections.abc import Callable, Iterator
 from dataclasses import dataclass, replace
 from typing import TYPE_CHECKING
 
-from cycle.quantities import OUTPUT
+from cycle.quantities import OUTPUT, input_of
 from tui import figures, items
 from tui.engine import Result
 from tui.line import Line
@@ -84,7 +84,7 @@ class Ranking(Desk, inherit_bindings=False):
     def do_why(self) -> None:
         """The list of limits with the least margin first."""
         verbs = (
-            Verb("enter", "Enter", "go to its input"),
+            Verb("enter", "Enter", "its input"),
             Verb("s", "s", "solve for the limit", stays=True),
             Verb("o", "o", "by another input", stays=True),
             Verb("a", "a", "accounts", stays=True),
@@ -105,9 +105,13 @@ class Ranking(Desk, inherit_bindings=False):
     def _search_words(self, name: str) -> str:
         search = self._seeking
         if search is not None and search.limit == name:
-            return f"solving for {search.key} at margin 0 ... {search.done} batches of walks done"
+            return f"solving for {_label(search.key)} at margin 0 ... {search.done} batches of walks done"
         goto = margins.limit(self.session, name)
-        return f"its input: {goto.input}" if goto is not None and goto.input else "no input of its own; o takes one to solve by"
+        return (
+            f"its input: {_label(goto.input)} ({goto.input})"
+            if goto is not None and goto.input
+            else "no input of its own; o takes one to solve by"
+        )
 
     def _limits_done(self, chosen: tuple[str, str] | None) -> None:
         self._seeking = None
@@ -163,7 +167,9 @@ class Ranking(Desk, inherit_bindings=False):
             self._ask_on(self._seeking)
         else:
             self._seeking = None
+            self.repaint_list()
             self._offer_value(result.value)
+            return
         self.repaint_list()
 
     def _offer_value(self, found: Reached) -> None:
@@ -173,13 +179,21 @@ class Ranking(Desk, inherit_bindings=False):
         head, *said = margins.found_words(self.session, case, found)
         takes = (Answer("t", "take", f"take it: {found.input.label}"),) if found.kind != "none" else ()
         answers = (*takes, Answer("l", "", "leave the case as it is"))
-        self.app.push_screen(Page(head, text_body(said), answers), lambda name: self._take_value(found) if name else None)
+        self.app.push_screen(Page(head, text_body(said), answers), lambda name: self._value_answered(found, bool(name)))
 
-    def _take_value(self, found: Reached) -> None:
+    def _value_answered(self, found: Reached, taken: bool) -> None:
+        """Take the value found as an edit, or not; the list below shows what holds then."""
         case = self.session.case
         assert case is not None
-        self.change(items.completed({"set": {found.input.key: margins.written(case, found)}}, case, {}))
+        if taken:
+            self.change(items.completed({"set": {found.input.key: margins.written(case, found)}}, case, {}))
         self.repaint_list()
+
+
+def _label(key: str) -> str:
+    """Label of an input."""
+    declared = input_of(key)
+    return declared.label if declared is not None else key
 
 
 def _choices(rows: list[tuple[str, Line]]) -> list[Choice]:

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from cycle.quantities import OUTPUT
 from tui.actions import Action, key_of, spelled
 from tui.figures import Figures
 from tui.keymap import path
@@ -72,5 +73,5 @@ def _accounts(found: Figures, session: Session) -> list[str]:
     if found.potentials:
         out += ["", "where the thrust potential went"]
         out += [f"  {r.label}: {quantity(r.value, r.unit, session.system)}" for r in found.potentials]
-    missing = [f"  {key}: {why}" for key, why in found.why_not.items() if why]
+    missing = [f"  {OUTPUT[key].label if key in OUTPUT else key}: {why}" for key, why in found.why_not.items() if why]
     return out + (["", "figures without a value", *missing] if missing else [])

@@ -8,7 +8,7 @@ from dataclasses import dataclass
 from typing import TYPE_CHECKING
 
 from cycle.compare import DATUM, Comparison, Figure, Setting, Side, compare, station_names
-from cycle.quantities import OUTPUT, Input, Output
+from cycle.quantities import HEADLINE, OUTPUT, Input, Output
 from cycle.units import display_unit, format_number
 from tui.comparing import percent, recomputed
 from tui.influence import change
@@ -69,7 +69,7 @@ def lines(view: Beside, system: str, watched: str, wide: int) -> list[Line]:
     found = compare([walk.side for walk in view.walks])
     body = _legend(view, wide)
     body += [line((text, NEAR)) for note in found.notes for text in _wrapped(note, wide)]
-    parts = (_headline, _shares, _settings, _margins, _stations)
+    parts = (_headline, _shares, _settings, _performance, _margins, _stations)
     return body + [row for part in parts for row in part(view, found, system, watched, wide)]
 
 
@@ -134,14 +134,33 @@ def _change_heads(view: Beside) -> list[str]:
 
 
 def _headline(view: Beside, found: Comparison, system: str, watched: str, wide: int) -> list[Line]:
+    """The figures that the main screen shows on top."""
+    keys = _judged_by(view)
+    return _figures(view, "headline figures", [row for row in found.headline if row.output.key in keys], system, wide)
+
+
+def _performance(view: Beside, found: Comparison, system: str, watched: str, wide: int) -> list[Line]:
+    """All other figures of the engine."""
+    keys = _judged_by(view)
+    return _figures(view, "other figures of the engine", [row for row in found.headline if row.output.key not in keys], system, wide)
+
+
+def _judged_by(view: Beside) -> set[str]:
+    """Keys of the headline figures of the walks."""
+    return {key for walk in view.walks for key in HEADLINE[walk.case.choices["start"]]}
+
+
+def _figures(view: Beside, title: str, figures: list[Figure], system: str, wide: int) -> list[Line]:
+    if not figures:
+        return []
     shown = view.shown(wide)
     rows = []
-    for row in found.headline:
+    for row in figures:
         o = row.output
         values = [figure(row.values[i], o.unit, system, o.key) for i in shown]
         moved = _change(o, row.values[view.hand] - row.values[0], row.values[0], system)
         rows.append(_Row(o.label, unit_label(o.unit, system, o.key), (*values, moved, percent(row.changes()[view.hand]))))
-    return _grid("performance", _heads(view, shown) + _change_heads(view), rows, wide)
+    return _grid(title, _heads(view, shown) + _change_heads(view), rows, wide)
 
 
 def _settings(view: Beside, found: Comparison, system: str, watched: str, wide: int) -> list[Line]:

@@ -20,6 +20,8 @@ SIGNS = {"above": "^", "below": "v"}
 NOTHING = 1e-7
 """Relative change of a figure below which none is told: far above rounding, also in a figure that is a small difference of large ones."""
 _LEGEND = "^ v one side only  ~ mode changes"
+TOLD = 4
+"""Lines on the input in hand, at most."""
 STEP, FIGURE, LABEL = 13, 11, 16
 """Columns of a step and of a change, and the fewest of a label."""
 
@@ -32,6 +34,13 @@ def found(session: Session) -> Sensitivities | None:
 def stale(session: Session) -> bool:
     """Whether the sensitivities to show are of the case before."""
     return session.influence is not None and session.influence.generation != session.generation
+
+
+def why_none(session: Session, known: Sensitivities) -> str:
+    """Why no input has a sensitivity: the walk's own reason where it has no solution."""
+    walk = session.figures
+    lost = walk is not None and not walk.solved and not stale(session)
+    return f"no sensitivities: no solution: {walk.reason}" if walk is not None and lost else f"no sensitivities: {known.why_not}"
 
 
 def name(key: str) -> str:
@@ -67,7 +76,7 @@ def of_input(session: Session, key: str, figures: int = 3) -> str:
     if known is None:
         return ""
     if known.why_not:
-        return f"no sensitivities: {known.why_not}"
+        return why_none(session, known)
     row = known.row(key)
     if row is None:
         why = known.left_out.get(key, "")
@@ -90,7 +99,7 @@ def most(session: Session, wide: int, deep: int) -> list[Line]:
     whole = f"{heading}, {unit(key, session.system)}".rstrip(", ")
     out = [line((whole if len(whole) <= wide else fit(heading, wide), DIM if stale(session) else BOLD))]
     if known is not None and known.why_not:
-        out.append(line((fit(f"| no sensitivities: {known.why_not}", wide), DIM)))
+        out += [line((f"| {part}", DIM)) for part in wrap(clean(why_none(session, known)).split(), wide - 2)]
     for row in known.ranked(key)[: deep - len(out)] if known is not None else ():
         right = change(known, row, key, session.system) + (f" {SIGNS[row.side]}" if row.side in SIGNS else "") if known else ""
         right += " ~" if row.modes else ""
@@ -139,7 +148,7 @@ def head(session: Session, wide: int) -> list[Line]:
     if known is None:
         return [line(("sensitivities are being solved ...", DIM))]
     if known.why_not:
-        return [line((fit(f"no sensitivities: {known.why_not}", wide), BOLD))]
+        return [line((part, BOLD)) for part in wrap(clean(why_none(session, known)).split(), wide)]
     label, _ = _room(known, key, wide)
     outputs = _outputs(known, key, wide)
     first = "of the inputs before ..." if stale(session) else f"by {name(key)}"
@@ -173,12 +182,13 @@ def told(session: Session, key: str, wide: int) -> list[Line]:
         return []
     value = quantity(row.value, row.input.unit, system, 6, row.input.key)
     if row.side == "none":
-        return [line(fit(f"{row.input.label} {value}, step {step(row, system)}: no change told", wide)), line(fit(row.reason, wide))]
+        said = (f"{row.input.label} {value}, step {step(row, system)}: no change told", row.reason)
+        return [line(part) for text in said for part in wrap(clean(text).split(), wide)][:TOLD]
     base = known.base[output]
     said = change(known, row, output, system)
     part = percent(base + _of(row, output), base)
     of = f"{figure(output, base, system)} {unit(output, system)}".rstrip()
     first = f"{row.input.label} {value}, {step(row, system)}: {name(output)} {said} of {of} ({part} %)"
-    jump = f"mode: {' - '.join(row.modes)}: the change goes over a jump" if row.modes else ""
+    jump = f"the mode changes: {', '.join(row.modes)} (below, here, above)" if row.modes else ""
     second = "; ".join(s for s in (SIDES.get(row.side, ""), row.reason, jump) if s) or row.input.meaning
-    return [line((fit(clean(first), wide), BOLD)), line(fit(clean(second), wide))]
+    return [line((part, style)) for text, style in ((first, BOLD), (second, PLAIN)) for part in wrap(clean(text).split(), wide)][:TOLD]

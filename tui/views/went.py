@@ -116,7 +116,7 @@ def lines(session: Session, account: Account, wide: int, glyphs: Glyphs) -> list
     pinned = any(b.pinned == b.pinned for b in rows)
     numbers = NUMBER * (3 if pinned else 1) + PERCENT
     sum_of = abs(rows[0].value if not account.signed else rows[-1].value) if rows else NAN
-    label = max(LEAST_LABEL, min(max((len(b.label) for b in rows), default=0) + 1, wide - numbers - max(LEAST_BAR, wide // 3)))
+    label = max(LEAST_LABEL, min(max((len(b.label) for b in rows), default=0) + 1, wide - numbers - LEAST_BAR))
     room = max(0, wide - label - numbers - 1)
     heads = f"{unit_of(session, account):>{NUMBER}}{'%':>{PERCENT}}" + (f"{'pin':>{NUMBER}}{'change':>{NUMBER}}" if pinned else "")
     low = min([0.0, *(min(b.start, b.end) for b in rows)])
@@ -140,8 +140,9 @@ def _change(b: Bar) -> float:
 
 
 def _number(value: float, signed: bool = False) -> str:
-    text = format_number(value, 4) if value == value else "-"
-    return fit(f"+{text}" if signed and value >= 0.0 else text, NUMBER - 1).rjust(NUMBER)
+    sign = "+" if signed and value >= 0.0 else ""
+    texts = [sign + format_number(value, digits) for digits in (4, 3, 2)] if value == value else ["-"]
+    return next((text for text in texts if len(text) < NUMBER), texts[-1]).rjust(NUMBER)
 
 
 def _bar(b: Bar, low: float, high: float, room: int, glyphs: Glyphs) -> Line:

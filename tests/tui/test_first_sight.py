@@ -1,0 +1,147 @@
+"""What a newcomer sees first: keys that matter at 80 columns, whole words and numbers, and reasons where there is no solution."""
+
+from __future__ import annotations
+
+from dataclasses import replace
+from itertools import pairwise
+from pathlib import Path
+
+import pytest
+
+from cycle import load
+from tests.tui.screen_support import CASES, opened
+from tui import figures
+from tui.actions import ACTIONS
+from tui.plots.csv_of import csv_text
+from tui.screens import ducting
+from tui.session import Pin, Session, loaded, with_figures
+from tui.views import headline, inputs, pictures, table, went
+
+
+def session_of(name: str) -> Session:
+    """A session that holds the walk of a shipped case, assessed."""
+    start = loaded(Session(name), load(CASES / f"{name}.toml"), None)
+    assert start.case is not None
+    found = figures.solve(start.case)
+    return with_figures(with_figures(start, start.generation, found), start.generation, figures.assess(found))
+
+
+@pytest.fixture(scope="module")
+def saltmarsh() -> Session:
+    return session_of("saltmarsh")
+
+
+@pytest.fixture(scope="module")
+def narrows() -> Session:
+    return session_of("narrows")
+
+
+@pytest.fixture(scope="module")
+def tidegate() -> Session:
+    return session_of("tidegate")
+
+
+def words(rows: list[table.Line]) -> list[str]:
+    return ["".join(text for text, _ in row) for row in rows]
+
+
+def pinned(session: Session, other: Session) -> Session:
+    assert other.case is not None and other.figures is not None
+    return replace(session, pin=Pin("another", other.case, other.figures))
+
+
+@pytest.mark.parametrize("wide", [80, 120])
+def test_keys_to_change_an_input_to_the_limits_to_compare_and_to_leave_are_on_the_line(saltmarsh: Session, wide: int) -> None:
+    told = words(inputs.keys(saltmarsh, wide, 1))[0]
+    shown = {a.name: f"{a.shown} {a.label}" for a in ACTIONS}
+    assert [name for name in ("edit", "more", "undo", "why", "compare", "help", "leave") if shown[name] not in told] == []
+
+
+@pytest.mark.parametrize("wide", [20, 80, 120, 200])
+def test_which_rows_of_the_table_are_shown_is_told_whole(tidegate: Session, wide: int) -> None:
+    assert any(f"/{len(table.ROWS)} " in row for row in words(table.lines(tidegate, wide, 8)))
+
+
+def test_figures_are_never_headed_as_changes(saltmarsh: Session, narrows: Session) -> None:
+    for session in (narrows, pinned(saltmarsh, narrows), replace(saltmarsh, pin=None)):
+        shown = words(table.lines(replace(session, view=1), 80, 8))
+        assert not any("change" in row for row in shown)
+        assert shown == words(table.lines(session, 80, 8))
+
+
+def test_the_only_line_says_that_a_limit_is_over(saltmarsh: Session) -> None:
+    assert words(headline.lines(saltmarsh, 20, 1)) == ["OVER 1 F 7.377 kN  "]
+
+
+def test_a_row_of_an_account_cuts_no_number_short(saltmarsh: Session) -> None:
+    assert [went._number(v, signed=True) for v in (-0.000851234, 1.23456789e-9)] == [" -0.000851", " +1.235e-9"]
+    session = pinned(saltmarsh, saltmarsh)
+    shown = words(went.lines(session, went.ACCOUNTS[0], 80, "unicode"))
+    assert any(row.startswith("heat at speed, mixing") for row in shown)
+
+
+def test_rows_along_a_duct_that_say_nothing_new_are_left_out(tidegate: Session) -> None:
+    shown = words(ducting.duct_rows(tidegate, 80))
+    assert [a for a, b in pairwise(shown) if a.strip() == b.strip()] == []
+    assert len(shown) > 40
+    assert any("filled" in row for row in shown) and any("throat" in row for row in shown)
+
+
+def test_stations_stand_evenly_apart_under_their_own_names(saltmarsh: Session) -> None:
+    chart = pictures.by_station(saltmarsh, "mach", False)
+    assert chart.x_axis.names == ("0", "2", "3", "4", "10")
+    assert chart.series[0].x == (0.0, 1.0, 2.0, 3.0, 4.0)
+    assert [row.split(",")[1] for row in csv_text(chart).splitlines()[1:6]] == list(chart.x_axis.names)
+
+
+@pytest.fixture
+def folder(tmp_path: Path) -> Path:
+    for name in ("saltmarsh", "narrows"):
+        (tmp_path / f"{name}.toml").write_text((CASES / f"{name}.toml").read_text())
+    return tmp_path
+
+
+async def test_pictures_of_a_walk_without_a_solution_say_why_and_a_log_axis_that_cannot_be_leaves_the_picture(folder: Path) -> None:
+    async with opened(folder / "narrows.toml") as driver:
+        await driver.settled()
+        await driver.press("l")
+        assert "no solution: burner: the heat asked for exceeds" in driver.screen()
+        await driver.press("3", "l")
+        assert "no log axis: enthalpy has" in driver.screen() and "kinetic energy" in driver.screen()
+
+
+async def test_a_change_that_cannot_be_shown_is_told(folder: Path) -> None:
+    async with opened(folder / "narrows.toml") as driver:
+        await driver.settled()
+        await driver.press("v")
+        assert "figures until then: this walk has no solution" in driver.screen()
+
+
+async def test_accounts_name_figures_by_their_labels(folder: Path) -> None:
+    async with opened(folder / "saltmarsh.toml") as driver:
+        await driver.settled()
+        await driver.press("w")
+        await driver.press("a")
+        assert "installed thrust: additive and spill drag need" in driver.screen()
+
+
+async def test_a_search_left_says_nothing_of_itself(folder: Path) -> None:
+    async with opened(folder / "saltmarsh.toml") as driver:
+        await driver.settled()
+        await driver.press("w")
+        assert "Esc back" in driver.screen()
+        await driver.press("s")
+        await driver.until(lambda: "gives margin 0" in driver.screen())
+        await driver.press("l")
+        await driver.until(lambda: "Limits by margin" in driver.screen())
+        assert "its input: pressure ratio" in driver.screen() and "solving" not in driver.screen()
+
+
+async def test_a_comparison_begins_with_what_it_is_about(folder: Path) -> None:
+    async with opened(folder / "saltmarsh.toml") as driver:
+        await driver.settled()
+        await driver.press("plus")
+        await driver.settled()
+        await driver.press("c")
+        await driver.until(lambda: "together" in driver.screen())
+        assert "inputs that differ" in driver.screen() and "fuel flow" not in driver.screen().split("where B - A")[0]
