@@ -14,6 +14,7 @@ from tui import figures
 from tui.actions import ACTIONS
 from tui.plots.csv_of import csv_text
 from tui.screens import ducting
+from tui.screens.roster import Roster
 from tui.session import Pin, Session, loaded, with_figures
 from tui.views import headline, inputs, pictures, table, went
 
@@ -145,3 +146,36 @@ async def test_a_comparison_begins_with_what_it_is_about(folder: Path) -> None:
         await driver.press("c")
         await driver.until(lambda: "together" in driver.screen())
         assert "inputs that differ" in driver.screen() and "fuel flow" not in driver.screen().split("where B - A")[0]
+
+
+def test_faults_of_a_file_stand_whole_and_the_rest_is_counted() -> None:
+    faults = tuple(f"x.toml: flight.key{n}: a fault of some words that takes more than one line of the screen: given {n}" for n in range(7))
+    session = Session("x.toml", faults=faults)
+    shown = words(table.lines(session, 60, 7))
+    assert shown[0].startswith("flight.key0") and "given 2" in shown[-2]
+    assert shown[-1] == "and 4 more: ductwalk check x.toml tells all"
+    assert len(words(table.lines(session, 60, 14))) == 14
+
+
+async def test_without_a_case_only_keys_that_do_something_are_shown(folder: Path) -> None:
+    (folder / "broken.toml").write_text("format = 1\n[flight\n")
+    async with opened(folder / "broken.toml") as driver:
+        await driver.until(lambda: "not TOML" in driver.screen())
+        line = driver.screen().splitlines()[-1]
+        assert line.split() == ["b", "cases", "?", "keys", "q", "leave"]
+
+
+async def test_the_file_that_was_made_or_renamed_is_in_hand(folder: Path) -> None:
+    def in_hand(name: str) -> bool:
+        return driver.app.screen.name_in_hand == name  # type: ignore[attr-defined]
+
+    async with opened(folder / "saltmarsh.toml") as driver:
+        await driver.settled()
+        await driver.press("b")
+        await driver.until(lambda: in_hand("saltmarsh.toml"))
+        for verb, name in (("c", "another.toml"), ("r", "zebra.toml")):
+            await driver.press(verb, "ctrl+u")
+            await driver.type(name)
+            await driver.press("enter")
+            await driver.until(lambda name=name: isinstance(driver.app.screen, Roster) and in_hand(name))
+        assert sorted(p.name for p in folder.glob("*.toml")) == ["narrows.toml", "saltmarsh.toml", "zebra.toml"]

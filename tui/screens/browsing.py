@@ -86,8 +86,9 @@ class Shelf:
         self._desk.app.push_screen(self._list, self._chosen)
         self._look("")
 
-    def _look(self, said: str) -> None:
-        """Read the folder again, then solve what is new in it, one case a job."""
+    def _look(self, said: str, hand: str = "") -> None:
+        """Read the folder again, then solve what is new in it, one case a job. hand: name of the file to take in hand, "" for the one
+        that is."""
         at = self._folder
         self.looking.clear()
 
@@ -95,8 +96,8 @@ class Shelf:
             self._said = said if error is None else f"the folder cannot be read: {trouble(error)}"
             first = not self._entries
             self._entries = found or ()
-            if first and self._list is not None:
-                self._list.point_at(os.path.basename(self._session.path))
+            if (first or hand) and self._list is not None:
+                self._list.point_at(hand or os.path.basename(self._session.path))
             for entry in self._entries:
                 if entry.stamp not in self._solved:
                     self._solve_one(entry)
@@ -160,10 +161,11 @@ class Shelf:
         elif (entry := self._entry(name)) is not None:
             self._acts[key](entry)
 
-    def _do(self, job: Callable[[], Any], failing: str, done: Callable[[Any], str]) -> None:
+    def _do(self, job: Callable[[], Any], failing: str, done: Callable[[Any], str], target: str = "") -> None:
         """Change files in the worker, then read the folder again.
 
-        Parameters: job; failing, what is said before the reason where it fails; done, told what the job gave, gives what is said then.
+        Parameters: job; failing, what is said before the reason where it fails; done, told what the job gave, gives what is said then;
+        target, path of the file to take in hand then, "" for the one that is.
         """
 
         def then(found: Any, error: BaseException | None) -> None:
@@ -172,7 +174,7 @@ class Shelf:
             elif error is not None:
                 self._look(f"{failing}: {clean(trouble(error))}")
             else:
-                self._look(done(found))
+                self._look(done(found), os.path.basename(target))
 
         self.filing.ask(job, then)
 
@@ -185,7 +187,7 @@ class Shelf:
         def named(name: str | None) -> None:
             if name:
                 target = self._target(name)
-                self._do(lambda: folder.copy(entry.path, target), "not copied", lambda _: f"copied to {os.path.basename(target)}")
+                self._do(lambda: folder.copy(entry.path, target), "not copied", lambda _: f"copied to {os.path.basename(target)}", target)
 
         self._desk.app.push_screen(Prompt(f"Copy {clean(entry.name)} to (name of a new file)", entry.name), named)
 
@@ -209,7 +211,7 @@ class Shelf:
                 left = self._move_journal(target) or left
             return f"renamed to {os.path.basename(target)}{f'; {left}' if left else ''}"
 
-        self._do(lambda: folder.rename(entry.path, target), "not renamed", done)
+        self._do(lambda: folder.rename(entry.path, target), "not renamed", done, target)
 
     def _move_journal(self, target: str) -> str:
         """The journal of this session goes with its case. Returns: why it does not, else ""."""
@@ -237,7 +239,7 @@ class Shelf:
     def _throw(self, entry: Entry) -> None:
         def done(thrown: Thrown) -> str:
             self._thrown.append(thrown)
-            return f"{entry.name} is in the trash, {thrown.file}; u brings it back"
+            return f"{entry.name} is in the trash; u brings it back ({thrown.file})"
 
         self._do(lambda: trash.throw_away(entry.path), "not deleted", done)
 
@@ -251,7 +253,7 @@ class Shelf:
             self._thrown.remove(thrown)
             return f"{os.path.basename(thrown.origin)} is back"
 
-        self._do(lambda: trash.bring_back(thrown), "not brought back", done)
+        self._do(lambda: trash.bring_back(thrown), "not brought back", done, thrown.origin)
 
     def _notes(self, entry: Entry) -> None:
         solved = self._solved.get(entry.stamp)

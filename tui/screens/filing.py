@@ -200,7 +200,7 @@ class Filing(Desk, inherit_bindings=False):
         if not got.refused and not self.journal.failure:
             journal.discard(got.left)
         refused = f", {got.refused} no longer hold (their journal is kept)" if got.refused else ""
-        note = f"restored {_counted(len(got.records))}{refused}; u takes them back"
+        note = f"restored {_counted(len(got.records))}{refused}; {key_of(self.session.actions, 'undo')} takes them back"
         self.put(replace(got.session, note=note, figures=self.session.figures, good=self.session.good, pin=self.session.pin))
         self.solve()
 

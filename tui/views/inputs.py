@@ -17,6 +17,9 @@ NARROWEST = 38
 """Columns that one input needs for its label, its value and its mark."""
 
 
+WITHOUT_CASE = ("browse", "help", "leave")
+"""Actions on the line of keys where no case is open."""
+
 LEAST_WORDS = 24
 """Columns that the last words on the input in hand need, lest they be left out."""
 
@@ -155,7 +158,9 @@ def keys(session: Session, wide: int, height: int) -> list[Line]:
         return [line((fit(f"Enter commits  Escape leaves it as it was{unit}", wide), DIM))]
     room, kept = wide + 2, set()
     chosen = session.focus == "inputs"
-    for action in sorted((a for a in session.actions if a.label), key=lambda a: a.in_hand if chosen and a.in_hand else a.rank):
+    without = session.case is None and bool(session.faults or session.note)
+    usable = [a for a in session.actions if a.label and (not without or a.name in WITHOUT_CASE)]
+    for action in sorted(usable, key=lambda a: a.in_hand if chosen and a.in_hand else a.rank):
         size = len(action.shown) + len(action.label) + 3
         if size <= room:
             kept.add(action.name)

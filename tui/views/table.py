@@ -105,7 +105,7 @@ def first_row(session: Session, body: int) -> int:
 def lines(session: Session, wide: int, height: int) -> list[Line]:
     """Heads and as many rows as the height allows; what is wrong with a file that is no case."""
     if session.case is None and session.faults:
-        return [line(part) for fault in session.faults for part in wrap(clean(fault).split(), wide)][:height]
+        return _faults(session, wide, height)
     room = _label_room(session, wide)
     shown, column = _shown_columns(session, wide - room)
     body = max(1, height - heads(height))
@@ -126,6 +126,19 @@ def lines(session: Session, wide: int, height: int) -> list[Line]:
         ),
     ]
     return [*head[-heads(height) :], *(_row(session, i + top, k, shown, column, room) for i, k in enumerate(keys))][:height]
+
+
+def _faults(session: Session, wide: int, height: int) -> list[Line]:
+    """What is wrong with a file that is no case: as many faults as there is room for, whole, and how many more there are."""
+    told = [clean(fault.removeprefix(f"{session.path}: ")) for fault in session.faults]
+    out: list[str] = []
+    for n, fault in enumerate(told):
+        part = wrap(fault.split(), wide)
+        left = len(told) - n
+        if n and len(out) + len(part) > height - (left > 1):
+            return [line(p) for p in out[: height - 1]] + [line((f"and {left} more: ductwalk check {clean(session.path)} tells all", BOLD))]
+        out += part
+    return [line(p) for p in out[:height]]
 
 
 def _beyond(session: Session, shown: tuple[str, ...]) -> bool:
