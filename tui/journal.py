@@ -12,6 +12,7 @@ import itertools
 import json
 import os
 import threading
+from collections.abc import Iterable
 from dataclasses import dataclass, field
 from pathlib import Path
 from typing import Any
@@ -63,6 +64,19 @@ class Left:
     records: tuple[Record, ...]
     written: float
     same_file: bool
+
+
+def standing(records: Iterable[Record]) -> int:
+    """How many edits of a journal hold at its end: those taken back do not count."""
+    made = undone = 0
+    for record in records:
+        if "undo" in record:
+            made, undone = made - (made > 0), undone + (made > 0)
+        elif "redo" in record:
+            made, undone = made + (undone > 0), undone - (undone > 0)
+        else:
+            made, undone = made + 1, 0
+    return made
 
 
 def _free(descriptor: int) -> bool:
@@ -120,12 +134,12 @@ def all_left(path: str) -> list[Left]:
 
 @dataclass(frozen=True, slots=True)
 class Held:
-    """A journal that holds unsaved work: its file, its case's path, how many records, when it was last written (s since the epoch), and
+    """A journal that holds unsaved work: its file, its case's path, how many edits hold, when it was last written (s since the epoch), and
     whether a session that runs holds it."""
 
     file: Path
     case: str
-    records: int
+    edits: int
     written: float
     live: bool
 
@@ -153,7 +167,7 @@ def _held(file: Path) -> Held | None:
     case = records[0].get("case") if records else None
     if len(records) < 2 or records[0].get("format") != FORMAT or not isinstance(case, str):
         return None
-    return Held(file, case, len(records) - 1, written, live)
+    return Held(file, case, standing(records[1:]), written, live)
 
 
 def move(left: Left, path: str) -> None:

@@ -10,6 +10,7 @@ from cycle.glossary import ENTRY, HEAT_WORDS, PROFILE, QUIET, SHARED, mode_of, n
 from cycle.quantities import INPUT, MODES, OUTPUTS, Input, Output
 from cycle.units import display_unit, format_number, show
 from tui.tables import Block, Heading, Lines, Table
+from tui.views.numbers import LIMIT_FIGURES
 
 if TYPE_CHECKING:
     from cycle.case import Case, Stated
@@ -28,9 +29,6 @@ _ELSEWHERE = {"flight": ("stream_thrust_gain",)}
 _NOISE = 1e-10
 _NOTHING = 1e-6
 """Booked force, power or flow, SI, below which nothing crosses."""
-_LIMIT_FIGURES = {"corridor_low": "dynamic_pressure", "corridor_high": "dynamic_pressure"}
-"""Limits whose figure has a unit of its own among those of its dimension."""
-
 _PROFILE_ROWS = 14
 _PROFILE_SHOWN = ("x", "pressure", "temperature", "mach", "area", "core_area", "burnt", "total_pressure")
 
@@ -307,7 +305,7 @@ def limit_words(limit: Any, system: str) -> str:
     """A limit as a sentence: its state, what is, what is allowed, the margin, and where it matters what would restore it."""
     if limit.state == "not assessed":
         return f"not assessed: {limit.label}: {limit.restore}"
-    actual, allowed = (with_unit(v, limit.unit, system, _LIMIT_FIGURES.get(limit.key, "")) for v in (limit.actual, limit.allowed))
+    actual, allowed = (with_unit(v, limit.unit, system, LIMIT_FIGURES.get(limit.key, "")) for v in (limit.actual, limit.allowed))
     bound = "at most" if limit.upper else "at least"
     words = f"{_STATES[limit.state]}: {limit.label}: {actual}, {bound} {allowed}, margin {100 * limit.margin:+.1f} %"
     return words if limit.state == "ok" else f"{words}; to restore it: {limit.restore}"

@@ -12,11 +12,12 @@ from cycle import load
 from tests.tui.screen_support import CASES, opened
 from tui import figures
 from tui.actions import ACTIONS
+from tui.journal import standing
 from tui.plots.csv_of import csv_text
 from tui.screens import ducting
 from tui.screens.roster import Roster
 from tui.session import Pin, Session, loaded, with_figures
-from tui.views import headline, inputs, pictures, table, went
+from tui.views import headline, inputs, margins, pictures, table, went
 
 
 def session_of(name: str) -> Session:
@@ -179,3 +180,30 @@ async def test_the_file_that_was_made_or_renamed_is_in_hand(folder: Path) -> Non
             await driver.press("enter")
             await driver.until(lambda name=name: isinstance(driver.app.screen, Roster) and in_hand(name))
         assert sorted(p.name for p in folder.glob("*.toml")) == ["narrows.toml", "saltmarsh.toml", "zebra.toml"]
+
+
+def test_edits_taken_back_are_not_counted_as_work() -> None:
+    edit, undo, redo = {"edit": {}}, {"undo": 1}, {"redo": 1}
+    assert [standing(r) for r in ([edit, edit], [edit, undo], [edit, undo, undo, redo, redo], [edit, undo, edit, redo], [])] == [
+        2,
+        0,
+        1,
+        1,
+        0,
+    ]
+
+
+def test_the_corridor_is_told_in_the_unit_of_its_input_and_once(tidegate: Session) -> None:
+    corridor, ignition = (margins.limit(tidegate, key) for key in ("corridor_high", "ignition_temperature"))
+    assert corridor is not None and ignition is not None
+    assert margins.against(corridor, "us") == "1044 of at most 2005 psf"
+    assert margins.against(ignition, "us") == "1363 of at least 1800 degR"
+
+
+def test_the_verdict_of_the_referee_is_never_its_name_alone() -> None:
+    said = ("", "referee: no solved point", "referee (Cantera) agrees: T within 1 K")
+    assert [headline.verdict(s) for s in said] == ["referee not asked", "referee has no say", "referee (Cantera) agrees"]
+
+
+def test_an_account_on_a_narrow_screen_shows_its_numbers(saltmarsh: Session) -> None:
+    assert "7.377" in words(went.lines(saltmarsh, went.ACCOUNTS[0], 20, "unicode"))[-1][:20]

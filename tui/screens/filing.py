@@ -170,7 +170,7 @@ class Filing(Desk, inherit_bindings=False):
 
     def _offer(self, left: Left) -> None:
         when = time.strftime("%Y-%m-%d %H:%M", time.localtime(left.written))
-        told = [f"Work that ended on {when} left {_counted(len(left.records))} of this case, not saved."]
+        told = [f"Work that ended on {when} left {_counted(journal.standing(left.records))} of this case, not saved."]
         if not left.same_file:
             told.append("The case file has changed since; the edits would be made on the file as it is now.")
         answers = (
@@ -200,7 +200,7 @@ class Filing(Desk, inherit_bindings=False):
         if not got.refused and not self.journal.failure:
             journal.discard(got.left)
         refused = f", {got.refused} no longer hold (their journal is kept)" if got.refused else ""
-        note = f"restored {_counted(len(got.records))}{refused}; {key_of(self.session.actions, 'undo')} takes them back"
+        note = f"restored {_counted(journal.standing(got.records))}{refused}; {key_of(self.session.actions, 'undo')} takes them back"
         self.put(replace(got.session, note=note, figures=self.session.figures, good=self.session.good, pin=self.session.pin))
         self.solve()
 

@@ -126,7 +126,8 @@ class MainScreen(Editing, Filing, Peeking, Plotting, Ranking, Asking, Pinning, C
     def refereed(self, result: Result) -> None:
         """The referee's words came back."""
         if result.generation == self.session.generation:
-            self.put(replace(self.session, referee=result.value, note=result.value))
+            more = f"; {key_of(self.session.actions, 'why')} tells the rest"
+            self.put(replace(self.session, referee=result.value, note=headline.verdict(result.value) + more))
 
     def typed(self, event: events.Key) -> None:
         """Take a key: into the field where one is open, else the action it stands for."""

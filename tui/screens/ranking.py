@@ -177,7 +177,7 @@ class Ranking(Desk, inherit_bindings=False):
         case = self.session.case
         assert case is not None
         head, *said = margins.found_words(self.session, case, found)
-        takes = (Answer("t", "take", f"take it: {found.input.label}"),) if found.kind != "none" else ()
+        takes = (Answer("t", "take", f"take it: {found.input.label}"),) if found.kind in ("zero", "jump") else ()
         answers = (*takes, Answer("l", "", "leave the case as it is"))
         self.app.push_screen(Page(head, text_body(said), answers), lambda name: self._value_answered(found, bool(name)))
 

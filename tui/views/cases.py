@@ -106,7 +106,7 @@ def _work(entry: Entry, here: bool, wide: int) -> list[Line]:
 
 def work(held: Held, here: bool = False) -> str:
     """Unsaved work in words. here: whether its case is the one that is open."""
-    edits = f"{held.records} edit{'' if held.records == 1 else 's'}"
+    edits = f"{held.edits} edit{'' if held.edits == 1 else 's'}"
     where = "in this session" if here else "in another session"
     return f"{edits}, {when(held.written)}, {where}" if held.live else f"{edits} left on {when(held.written)}"
 

@@ -9,7 +9,7 @@ from cycle.units import format_number, show
 from tui.figures import NAN, Figures, Margin
 from tui.line import BOLD, DIM, NEAR, OVER, PLAIN, Line, clean, fit, line, width, wrap
 from tui.session import Session, performance_keys
-from tui.views.numbers import difference, figure, quantity, unit
+from tui.views.numbers import LIMIT_FIGURES, difference, figure, quantity, unit
 
 NAMES = {
     "thrust": "thrust",
@@ -120,11 +120,16 @@ def _figure(session: Session, found: Figures, key: str, digits: int, by_name: bo
     return words, f" {difference(key, value, session.pin.figures.performance[key], system, digits)}"
 
 
+def verdict(words: str) -> str:
+    """What the referee said, in short. Parameters: words, all it said, "" before it is asked."""
+    first = clean(words.split(":")[0])
+    return {"": "referee not asked", "referee": "referee has no say"}.get(first, first)
+
+
 def _against(session: Session, columns: int) -> Line:
     pin = session.pin
     left = f"vs pin: {clean(pin.label)}" if pin is not None else "nothing pinned"
-    verdict = clean(session.referee.split(":")[0]) or "referee not asked"
-    right = f"{verdict}   {session.system.upper()}"
+    right = f"{verdict(session.referee)}   {session.system.upper()}"
     left = fit(left, max(columns - len(right) - 2, 10))
     return line(left, " " * max(2, columns - width(left) - len(right)), right)
 
@@ -168,7 +173,8 @@ def _margin(m: Margin) -> str:
 
 def _against_limit(m: Margin, system: str) -> str:
     """A limit that is over, with its margin, or with figure and limit."""
-    against = f" {quantity(m.actual, m.unit, system)} {'>' if m.upper else '<'} {quantity(m.allowed, m.unit, system)}"
+    actual, allowed = (quantity(v, m.unit, system, key=LIMIT_FIGURES.get(m.key, "")) for v in (m.actual, m.allowed))
+    against = f" {actual} {'>' if m.upper else '<'} {allowed}"
     return _margin(m) if m.key in MARGINS else m.label + against
 
 

@@ -4,12 +4,12 @@ from __future__ import annotations
 
 from typing import TYPE_CHECKING
 
-from cycle.units import respell
+from cycle.units import respell, show
 from tui.actions import key_of
 from tui.figures import Margin
 from tui.line import BOLD, DIM, Line, clean, fit, line, wrap
 from tui.session import Session
-from tui.views.numbers import quantity
+from tui.views.numbers import LIMIT_FIGURES, quantity
 from tui.views.side import STYLE, by_margin, margin_words
 
 if TYPE_CHECKING:
@@ -27,9 +27,14 @@ def limit(session: Session, key: str) -> Margin | None:
 
 
 def against(m: Margin, system: str) -> str:
-    """Actual against allowed; "" where nothing is known."""
-    actual, allowed = (quantity(v, m.unit, system, 4) for v in (m.actual, m.allowed))
-    return "" if actual == allowed == "-" else f"{actual} {'of at most' if m.upper else 'of at least'} {allowed}"
+    """Actual against allowed, the unit once; "" where nothing is known."""
+    key = LIMIT_FIGURES.get(m.key, "")
+    actual, allowed = (quantity(v, m.unit, system, 4, key) for v in (m.actual, m.allowed))
+    if actual == allowed == "-":
+        return ""
+    dimension = show(1.0, m.unit, system, key)[1]
+    actual = actual if allowed == "-" else actual.removesuffix(f" {dimension}")
+    return f"{actual} {'of at most' if m.upper else 'of at least'} {allowed}"
 
 
 def rows(session: Session, wide: int) -> list[tuple[str, Line]]:

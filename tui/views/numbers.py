@@ -5,6 +5,9 @@ from __future__ import annotations
 from cycle.quantities import OUTPUT
 from cycle.units import display_unit, format_number, show
 
+LIMIT_FIGURES = {"corridor_low": "dynamic_pressure", "corridor_high": "dynamic_pressure"}
+"""Limits whose figure has a unit of its own among those of its dimension: key of the limit -> key of the figure."""
+
 
 def unit(key: str, system: str) -> str:
     """Display unit of an output, "" where it has none."""

@@ -116,7 +116,8 @@ def lines(session: Session, account: Account, wide: int, glyphs: Glyphs) -> list
     pinned = any(b.pinned == b.pinned for b in rows)
     numbers = NUMBER * (3 if pinned else 1) + PERCENT
     sum_of = abs(rows[0].value if not account.signed else rows[-1].value) if rows else NAN
-    label = max(LEAST_LABEL, min(max((len(b.label) for b in rows), default=0) + 1, wide - numbers - LEAST_BAR))
+    longest = max((len(b.label) for b in rows), default=0) + 1
+    label = max(min(LEAST_LABEL, max(8, wide - NUMBER - 1)), min(longest, wide - numbers - LEAST_BAR))
     room = max(0, wide - label - numbers - 1)
     heads = f"{unit_of(session, account):>{NUMBER}}{'%':>{PERCENT}}" + (f"{'pin':>{NUMBER}}{'change':>{NUMBER}}" if pinned else "")
     low = min([0.0, *(min(b.start, b.end) for b in rows)])
