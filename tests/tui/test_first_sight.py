@@ -17,7 +17,7 @@ from tui.plots.csv_of import csv_text
 from tui.screens import ducting
 from tui.screens.roster import Roster
 from tui.session import Pin, Session, loaded, with_figures
-from tui.views import headline, inputs, margins, pictures, table, went
+from tui.views import beside, headline, inputs, margins, pictures, table, went
 
 
 def session_of(name: str) -> Session:
@@ -207,3 +207,9 @@ def test_the_verdict_of_the_referee_is_never_its_name_alone() -> None:
 
 def test_an_account_on_a_narrow_screen_shows_its_numbers(saltmarsh: Session) -> None:
     assert "7.377" in words(went.lines(saltmarsh, went.ACCOUNTS[0], 20, "unicode"))[-1][:20]
+
+
+def test_a_title_that_finds_no_room_beside_its_columns_stands_above_them() -> None:
+    rows = [beside._Row("Mach number", "", tuple("1234567"))]
+    assert words(beside._grid("stations: B - A, %", list("0123456"), rows, 80))[1].strip() == "stations: B - A, %"
+    assert words(beside._grid("stations: B - A, %", list("01"), rows, 80))[1].split() == ["stations:", "B", "-", "A,", "%", "0", "1"]

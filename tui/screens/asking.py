@@ -153,11 +153,12 @@ class Asking(Desk, inherit_bindings=False):
 def _found(found: finding.Found, wide: int) -> Line:
     """One thing found: symbol, name, value, what it is."""
     kind = fit(clean(found.kind), 18)
-    value = fit(clean(found.value), 20)
-    room = max(8, min(wide - 10 - 20 - 20, 48))
+    size = 20 if wide >= 60 else 13
+    value = fit(clean(found.value), size)
+    room = max(8, min(wide - 10 - size - (20 if wide >= 60 else 0), 48))
     style = DIM if found.rank == 6 else BOLD
     text = f"{fit(found.symbol, 8):<9} {_padded(fit(clean(found.label), room), room)}"
-    return line((text, style), f"{value:>20}", (f"  {kind}", DIM))
+    return line((text, style), f"{value:>{size}}", (f"  {kind}", DIM))
 
 
 def _padded(text: str, room: int) -> str:

@@ -145,5 +145,9 @@ class Picture(Overlay[str]):
     def was_written(self, result: Result) -> None:
         """Say where the files are, or why there are none."""
         got = result.value
-        self.message = f"written: {got.drawing} and {got.data}" if result.error is None else " | ".join(str(result.error).splitlines())
+        self.message = (
+            f"written: {got.drawing} and {os.path.splitext(got.data)[1]}"
+            if result.error is None
+            else " | ".join(str(result.error).splitlines())
+        )
         self.paint()

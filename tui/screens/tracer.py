@@ -177,7 +177,8 @@ def _below(place: Place) -> str:
 
 def _row(origin: Origin, wide: int) -> Line:
     """One origin: symbol, name, value."""
-    value = fit(clean(origin.value), 26)
-    room = max(6, min(wide - 12 - 26 - 1, 56))
+    size = max(13, min(26, wide - 39))
+    value = fit(clean(origin.value), size)
+    room = max(6, min(wide - 12 - size - 1, 56))
     label = fit(clean(origin.label), room)
-    return line((f" {fit(origin.symbol, 9):<10} ", BOLD), label + " " * (room - width(label)), f"{value:>26}")
+    return line((f" {fit(origin.symbol, 9):<10} ", BOLD), label + " " * (room - width(label)), f"{value:>{size}}")

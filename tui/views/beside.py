@@ -107,6 +107,9 @@ def _grid(title: str, heads: Sequence[str], rows: Iterable[_Row], wide: int) -> 
     room = max(LEAST_LABEL, min(MOST_LABEL, wide - unit - CELL * len(heads)))
     fitting = max(1, (wide - room - unit) // CELL)
     out: list[Line] = [line("")]
+    if width(title) >= room + unit:
+        out.append(line((fit(title, wide), BOLD)))
+        title = ""
     for start in range(0, len(heads), fitting):
         part = slice(start, start + fitting)
         out.append(line((_left(title if not start else "", room + unit), BOLD), *(_right(head) for head in heads[part])))
@@ -158,8 +161,9 @@ def _figures(view: Beside, title: str, figures: list[Figure], system: str, wide:
     for row in figures:
         o = row.output
         values = [figure(row.values[i], o.unit, system, o.key) for i in shown]
-        moved = _change(o, row.values[view.hand] - row.values[0], row.values[0], system)
-        rows.append(_Row(o.label, unit_label(o.unit, system, o.key), (*values, moved, percent(row.changes()[view.hand]))))
+        part = percent(row.changes()[view.hand])
+        moved = part if part == "0" else _change(o, row.values[view.hand] - row.values[0], row.values[0], system)
+        rows.append(_Row(o.label, unit_label(o.unit, system, o.key), (*values, moved, part)))
     return _grid(title, _heads(view, shown) + _change_heads(view), rows, wide)
 
 
