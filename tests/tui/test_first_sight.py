@@ -213,3 +213,17 @@ def test_a_title_that_finds_no_room_beside_its_columns_stands_above_them() -> No
     rows = [beside._Row("Mach number", "", tuple("1234567"))]
     assert words(beside._grid("stations: B - A, %", list("0123456"), rows, 80))[1].strip() == "stations: B - A, %"
     assert words(beside._grid("stations: B - A, %", list("01"), rows, 80))[1].split() == ["stations:", "B", "-", "A,", "%", "0", "1"]
+
+
+def test_a_value_of_the_previous_inputs_keeps_its_exponent_and_its_parentheses(tidegate: Session) -> None:
+    assert tidegate.case is not None and tidegate.figures is not None
+    fat = tidegate.case.replace({"combustor.equivalence_ratio": 1.2})
+    failing = replace(tidegate, case=fat, figures=figures.solve(fat), good=tidegate.figures)
+    assert failing.failed
+    cells = [c for row in words(table.lines(failing, 80, 30))[2:] for c in row.split() if c[0] == "("]
+    assert len(cells) > 5 and [c for c in cells if not c.endswith(")")] == []
+
+
+def test_a_potential_of_nothing_is_nothing_where_no_other_station_is_reached() -> None:
+    lost = replace(figures.solve(load(CASES / "saltmarsh.toml")), stations={"0": {"thrust_potential": 7e-12, "stream_thrust": 4e4}})
+    assert table.settled(lost, "0", "thrust_potential") == 0.0

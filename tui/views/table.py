@@ -33,6 +33,8 @@ HEADS = {
 NAMES = {"mach": "Mach", "area_ratio": "area / A0", "thrust_potential": "potential"}
 SYMBOLS = ("pressure", "temperature", "velocity", "total_pressure", "total_temperature")
 STALE = ("( ) as of the previous inputs", "( ) previous inputs", "( ) previous")
+DIFFERENCES = {"thrust_potential": ("stream_thrust",)}
+"""Rows that are differences of larger figures -> these."""
 LEAST, MOST = 9, 12
 WHOLE_LABELS, SHORT_LABELS = 21, 17
 """Columns of the labels of an 80-column screen, and the fewest."""
@@ -171,8 +173,7 @@ def _row(session: Session, index: int, key: str, shown: tuple[str, ...], column:
     here = session.focus == "table" and index == session.row
     pieces: list[Piece] = [(fit(label(key, session.system, room - 1), room - 1).ljust(room), BOLD if here else PLAIN)]
     for s in shown:
-        text, style = _cell(session, key, s)
-        text = fit(text, column - 1)
+        text, style = _cell(session, key, s, column - 1)
         if here and s == session.station:
             pieces += [(" " * (column - len(text)), PLAIN), (text, CURSOR)]
         else:
@@ -180,22 +181,29 @@ def _row(session: Session, index: int, key: str, shown: tuple[str, ...], column:
     return tuple(pieces)
 
 
-def _cell(session: Session, key: str, station: str) -> Piece:
-    """Text of a cell; a value of the last good walk stands dimmed in parentheses where the present one has none."""
+def _cell(session: Session, key: str, station: str, room: int) -> Piece:
+    """Text of a cell, with as many digits as have room; a value of the last good walk stands dimmed in parentheses where the present
+    one has none."""
     found = session.figures
     if found is None:
         return "", PLAIN
-    value = settled(found, station, key)
-    if station not in found.stations and session.failed and session.good is not None:
-        stale = figure(key, session.good.at(station, key), session.system)
-        return (f"({stale})" if stale != "-" else "-"), DIM
-    return _viewed(session, key, station, value), PLAIN
+    stale = station not in found.stations and session.failed and session.good is not None
+    texts = [_text(session, found, key, station, fewer, stale) for fewer in range(3)]
+    return next((text for text in texts if len(text) <= room), fit(texts[-1], room)), DIM if stale else PLAIN
+
+
+def _text(session: Session, found: Figures, key: str, station: str, fewer: int, stale: bool) -> str:
+    if stale and session.good is not None:
+        text = figure(key, settled(session.good, station, key), session.system, 4 - fewer)
+        return f"({text})" if text != "-" else "-"
+    return _viewed(session, key, station, settled(found, station, key), fewer)
 
 
 def settled(found: Figures, station: str, key: str) -> float:
-    """A figure of a station, zero where it is round-off beside those of the other stations."""
+    """A figure of a station, zero where it is round-off beside those of the other stations, or beside what it is a difference of."""
     value = found.at(station, key)
-    scale = max((abs(v) for s in found.stations if (v := found.at(s, key)) == v), default=0.0)
+    keys = (key, *DIFFERENCES.get(key, ()))
+    scale = max((abs(v) for k in keys for s in found.stations if (v := found.at(s, k)) == v), default=0.0)
     return 0.0 if abs(value) < 1e-9 * scale else value
 
 
@@ -205,11 +213,11 @@ def changes_shown(session: Session) -> bool:
     return session.view > 0 and found is not None and found.solved and pin is not None and pin.figures.solved
 
 
-def _viewed(session: Session, key: str, station: str, value: float) -> str:
+def _viewed(session: Session, key: str, station: str, value: float, fewer: int) -> str:
     if not changes_shown(session):
-        return figure(key, value, session.system)
+        return figure(key, value, session.system, 4 - fewer)
     base = settled(session.pin.figures, station, key) if session.pin is not None else NAN
-    return difference(key, value, base, session.system) if session.view == 1 else percent(value, base)
+    return difference(key, value, base, session.system, 3 - fewer) if session.view == 1 else percent(value, base)
 
 
 def process_line(session: Session, wide: int, height: int) -> list[Line]:
