@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from cycle.quantities import OUTPUT
+from cycle.units import show
 from tui.figures import NAN, STATION_KEYS, STATIONS, Figures, Passage
 from tui.line import BOLD, CURSOR, DIM, PLAIN, Line, Piece, clean, fit, line, wrap
 from tui.session import VIEWS, Session, columns_of
@@ -35,6 +36,10 @@ SYMBOLS = ("pressure", "temperature", "velocity", "total_pressure", "total_tempe
 STALE = ("( ) as of the previous inputs", "( ) previous inputs", "( ) previous")
 DIFFERENCES = {"thrust_potential": ("stream_thrust",)}
 """Rows that are differences of larger figures -> these."""
+FEWEST = 2
+"""Digits that a cell gives up at most."""
+LONG = 1e5
+"""Value from which the digits of a whole number find no room in parentheses."""
 LEAST, MOST = 9, 12
 WHOLE_LABELS, SHORT_LABELS = 21, 17
 """Columns of the labels of an 80-column screen, and the fewest."""
@@ -188,13 +193,16 @@ def _cell(session: Session, key: str, station: str, room: int) -> Piece:
     if found is None:
         return "", PLAIN
     stale = station not in found.stations and session.failed and session.good is not None
-    texts = [_text(session, found, key, station, fewer, stale) for fewer in range(3)]
+    texts = [_text(session, found, key, station, fewer, stale) for fewer in range(FEWEST + 1)]
     return next((text for text in texts if len(text) <= room), fit(texts[-1], room)), DIM if stale else PLAIN
 
 
 def _text(session: Session, found: Figures, key: str, station: str, fewer: int, stale: bool) -> str:
     if stale and session.good is not None:
-        text = figure(key, settled(session.good, station, key), session.system, 4 - fewer)
+        value = settled(session.good, station, key)
+        text = figure(key, value, session.system, 4 - fewer)
+        if fewer == FEWEST and abs(value) >= LONG:
+            text = f"{show(value, OUTPUT[key].unit, session.system, key)[0]:.1e}".replace("e+0", "e")
         return f"({text})" if text != "-" else "-"
     return _viewed(session, key, station, settled(found, station, key), fewer)
 
