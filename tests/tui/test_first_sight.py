@@ -227,3 +227,15 @@ def test_a_value_of_the_previous_inputs_keeps_its_exponent_and_its_parentheses(t
 def test_a_potential_of_nothing_is_nothing_where_no_other_station_is_reached() -> None:
     lost = replace(figures.solve(load(CASES / "saltmarsh.toml")), stations={"0": {"thrust_potential": 7e-12, "stream_thrust": 4e4}})
     assert table.settled(lost, "0", "thrust_potential") == 0.0
+
+
+async def test_a_name_that_another_file_has_is_told_as_such(folder: Path) -> None:
+    before = (folder / "narrows.toml").read_bytes()
+    async with opened(folder / "saltmarsh.toml") as driver:
+        await driver.settled()
+        await driver.press("S", "ctrl+u")
+        await driver.type(str(folder / "narrows.toml"))
+        await driver.press("enter")
+        await driver.until(lambda: "There is a file of that name" in driver.screen())
+        assert "changed on disk" not in driver.screen()
+    assert (folder / "narrows.toml").read_bytes() == before

@@ -253,13 +253,16 @@ class Filing(Desk, inherit_bindings=False):
             self.do_leave()
 
     def _other(self, changed: FileChanged) -> None:
-        told = [f"{changed.path} is not the file that this session read: another session or editor wrote it. It is not overwritten."]
+        own = os.path.realpath(changed.path) == os.path.realpath(self.session.path or "")
+        title = "The file has changed on disk" if own else "There is a file of that name"
+        why = "another session or editor wrote it since this one read it" if own else "it is not the file of this case"
+        told = [f"{changed.path}: {why}. It is not overwritten."]
         answers = (
             Answer("o", "other", "save under another name"),
             Answer("d", "difference", "show the difference"),
             Answer("c", "cancel", "cancel; the edits stay here"),
         )
-        page = Page("The file has changed on disk", text_body(told), answers)
+        page = Page(title, text_body(told), answers)
         self.app.push_screen(page, lambda name: self._chosen(changed, name or "cancel"))
 
     def _chosen(self, changed: FileChanged, name: str) -> None:
