@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 from dataclasses import replace
-from itertools import pairwise
 from pathlib import Path
 
 import pytest
@@ -14,7 +13,6 @@ from tui import figures
 from tui.actions import ACTIONS
 from tui.journal import standing
 from tui.plots.csv_of import csv_text
-from tui.screens import ducting
 from tui.screens.roster import Roster
 from tui.session import Pin, Session, loaded, with_figures
 from tui.views import beside, headline, inputs, margins, pictures, table, went
@@ -54,9 +52,11 @@ def pinned(session: Session, other: Session) -> Session:
 
 @pytest.mark.parametrize("wide", [80, 120])
 def test_keys_to_change_an_input_to_the_limits_to_compare_and_to_leave_are_on_the_line(saltmarsh: Session, wide: int) -> None:
-    told = words(inputs.keys(saltmarsh, wide, 1))[0]
     shown = {a.name: f"{a.shown} {a.label}" for a in ACTIONS}
-    assert [name for name in ("edit", "more", "undo", "why", "compare", "help", "leave") if shown[name] not in told] == []
+    always = ("focus", "edit", "why", "compare", "help", "leave")
+    for focus, more in (("table", ()), ("inputs", ("more", "undo"))):
+        told = words(inputs.keys(replace(saltmarsh, focus=focus), wide, 1))[0]
+        assert [name for name in (*always, *more) if shown[name] not in told] == []
 
 
 @pytest.mark.parametrize("wide", [20, 80, 120, 200])
@@ -80,13 +80,6 @@ def test_a_row_of_an_account_cuts_no_number_short(saltmarsh: Session) -> None:
     session = pinned(saltmarsh, saltmarsh)
     shown = words(went.lines(session, went.ACCOUNTS[0], 80, "unicode"))
     assert any(row.startswith("heat at speed, mixing") for row in shown)
-
-
-def test_rows_along_a_duct_that_say_nothing_new_are_left_out(tidegate: Session) -> None:
-    shown = words(ducting.duct_rows(tidegate, 80))
-    assert [a for a, b in pairwise(shown) if a.strip() == b.strip()] == []
-    assert len(shown) > 40
-    assert any("filled" in row for row in shown) and any("throat" in row for row in shown)
 
 
 def test_stations_stand_evenly_apart_under_their_own_names(saltmarsh: Session) -> None:

@@ -56,7 +56,7 @@ def session(folder: Path, columns: int, rows: int) -> Iterator[tuple[str, str]]:
         terminal.settle(0.6)
         yield "Tab, four steps down, Enter, 0.7, Enter", terminal.text
         press(terminal, "limits")
-        terminal.wait("restores it" if columns > 100 else "over")
+        terminal.wait("its input: pressure ratio")
         terminal.settle()
         yield "w", terminal.text
         terminal.press("escape")
@@ -69,6 +69,7 @@ def session(folder: Path, columns: int, rows: int) -> Iterator[tuple[str, str]]:
         yield "Tab, c", terminal.text
         terminal.press("escape")
         terminal.wait("reached through")
+        terminal.settle()
         press(terminal, "leave")
         assert terminal.status() == 0
         assert b"Work is kept" in terminal.raw

@@ -95,7 +95,9 @@ async def test_remapped_keys_work_and_are_printed(file: Path) -> None:
     file.write_text('[keys]\nunits = ["z", "f6"]\nundo = "t"\nredo = ","\nhelp = "k"\n')
     async with opened(CASES / "saltmarsh.toml") as driver:
         await driver.settled()
+        await driver.press("tab")
         assert "t undo" in driver.screen().splitlines()[-1]
+        await driver.press("tab")
         await driver.press("z")
         assert driver.session.system == "us"
         await driver.press("f6")

@@ -109,13 +109,9 @@ def duct_rows(session: Session, wide: int) -> list[Line]:
         return [line("no flow along the duct")]
     size, marks = _size(wide), _marks(session, found.profile)
     out: list[Line] = []
-    before = ""
     for i in range(len(found.profile["x"])):
         cells = "".join(_cell(found.profile[key][i], unit, session.system, size) for key, _, unit in COLUMNS)
-        # slices of no length where the core fills the duct say nothing twice
-        if cells != before or i in marks:
-            out.append(line(cells, (f" {marks[i]}" if i in marks else "", BOLD)))
-        before = cells
+        out.append(line(cells, (f" {marks[i]}" if i in marks else "", BOLD)))
     return out
 
 
