@@ -1,4 +1,4 @@
-"""Files written whole or not at all."""
+"""Files read within bounds, and written whole or not at all."""
 
 from __future__ import annotations
 
@@ -6,6 +6,41 @@ import os
 import stat
 from collections.abc import Callable
 from contextlib import suppress
+
+
+class Irregular(OSError):  # noqa: N818 (a state of a path, not a defect)
+    """The path is that of a device, a pipe or a socket."""
+
+
+def read_file(path: str | os.PathLike[str], most: int) -> tuple[bytes, os.stat_result]:
+    """Content of a regular file, and its status.
+
+    path; most: bytes that are wanted; one more is read, so that too much is seen. Raises `Irregular` where it is no regular file,
+    IsADirectoryError, OSError where it cannot be read, ValueError where the path can be none.
+    """
+    # without O_NONBLOCK a pipe that nobody writes to would hold the program for ever
+    with open(path, "rb", opener=lambda name, flags: os.open(name, flags | os.O_NONBLOCK)) as stream:
+        status = os.fstat(stream.fileno())
+        if not stat.S_ISREG(status.st_mode):
+            raise Irregular("it is no ordinary file")
+        return stream.read(most + 1), status
+
+
+def new_file(path: str | os.PathLike[str], data: bytes) -> None:
+    """Write a file that is not there yet, flushed to the disk.
+
+    Raises FileExistsError where something has that name, also where it got it a moment ago; OSError where the disk refuses: nothing
+    is then left behind.
+    """
+    with open(path, "xb") as stream:
+        try:
+            stream.write(data)
+            stream.flush()
+            os.fsync(stream.fileno())
+        except BaseException:
+            with suppress(OSError):
+                os.unlink(path)
+            raise
 
 
 def replace_file(target: str, data: bytes, before: Callable[[], None] | None = None) -> float:
@@ -16,7 +51,9 @@ def replace_file(target: str, data: bytes, before: Callable[[], None] | None = N
     file's modification time. Raises OSError where the disk refuses; the old file is then untouched.
     """
     folder = os.path.dirname(target)
-    beside = os.path.join(folder, f".{os.path.basename(target)[:200]}.{os.getpid()}.tmp")
+    # a name has at most 255 bytes, whatever its characters take
+    start = os.fsdecode(os.fsencode(os.path.basename(target))[:200])
+    beside = os.path.join(folder, f".{start}.{os.getpid()}.tmp")
     handle = os.open(beside, os.O_WRONLY | os.O_CREAT | os.O_EXCL | os.O_CLOEXEC, 0o666)
     try:
         with os.fdopen(handle, "wb") as stream:

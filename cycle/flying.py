@@ -16,11 +16,11 @@ import difflib
 import io
 import os
 import re
-import stat
 from collections.abc import Iterator, Mapping
 from dataclasses import dataclass, replace
 from typing import TYPE_CHECKING
 
+from cycle.atomic import Irregular, read_file
 from cycle.case.rules import bounds, groups_of, members_present, outside
 from cycle.errors import CaseError, Fault, UnitError, shown
 from cycle.quantities import GROUPS, INPUTS, Input, input_of
@@ -83,11 +83,9 @@ def read_trajectory(path: str | os.PathLike[str]) -> Trajectory:
     """
     name = os.fspath(path)
     try:
-        # without O_NONBLOCK a pipe that nobody writes to would hold the program for ever
-        with open(name, "rb", opener=lambda p, flags: os.open(p, flags | os.O_NONBLOCK)) as stream:
-            if not stat.S_ISREG(os.fstat(stream.fileno()).st_mode):
-                raise _one(name, "not a file of rows", "a device or pipe", "a CSV file")
-            data = stream.read(LARGEST + 1)
+        data, _ = read_file(name, LARGEST)
+    except Irregular:
+        raise _one(name, "not a file of rows", "a device or pipe", "a CSV file") from None
     except OSError as error:
         raise _one(name, f"cannot be read: {(error.strerror or str(error)).lower()}") from None
     except ValueError:

@@ -13,6 +13,7 @@ import sys
 from collections.abc import Callable, Iterable, Sequence
 from typing import Any, NoReturn
 
+from cycle.atomic import new_file
 from cycle.errors import CaseError, DuctwalkError, Fault
 from tui import crash
 from tui.output import STANDARD_INPUT, emit, load_case, prepare_streams, shipped_case, tell
@@ -152,8 +153,7 @@ def _write_new(text: str, path: str | None) -> None:
         emit(text)
         return
     try:
-        with open(path, "x", encoding="utf-8") as file:
-            file.write(text)
+        new_file(path, text.encode("utf-8"))
     except OSError as error:
         raise CaseError((Fault(path, "", f"cannot be written: {error.strerror}"),)) from error
     tell(f"written: {path}")

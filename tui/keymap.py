@@ -13,9 +13,9 @@ from __future__ import annotations
 
 import os
 import re
-import stat
 from dataclasses import dataclass
 
+from cycle.atomic import read_file
 from cycle.errors import Fault
 from cycle.errors import shown as quoted
 from tui.actions import ACTIONS, Action, bound
@@ -76,10 +76,7 @@ def read() -> Keymap:
 
 def _text(name: str) -> str:
     """The text of an ordinary file; nothing here waits for one that is none."""
-    with open(os.open(name, os.O_RDONLY | os.O_NONBLOCK), "rb") as file:
-        if not stat.S_ISREG(os.fstat(file.fileno()).st_mode):
-            raise OSError("it is no ordinary file")
-        content = file.read(LARGEST + 1)
+    content, _ = read_file(name, LARGEST)
     if len(content) > LARGEST:
         raise OSError(f"it is larger than {LARGEST // 1024} kB")
     return content.decode("utf-8")

@@ -10,12 +10,13 @@ import tomllib
 from pathlib import Path
 from typing import Any
 
-from cycle.atomic import replace_file
+from cycle.atomic import Irregular, read_file, replace_file
 from cycle.case.case import Case, Stamp, build
 from cycle.errors import CaseError, Fault, FileChanged, shown
 
 LARGEST = 1 << 20
 """Bytes read of a case file at most."""
+_DEVICE = ("not a case file", "a device or pipe", "a file, or - for standard input")
 _CHAIN = re.compile(r"(?<![\w\"'-])(?:[\w\"'-]++[ \t]*+\.[ \t]*+){32}")
 _POSITION = re.compile(r" \(at (?:line (\d+), column (\d+)|end of document)\)$")
 _SETTING = re.compile(r"\s*([A-Za-z0-9_.-]{1,80})\s*=\s*(.*?)\s*", re.DOTALL)
@@ -103,16 +104,12 @@ def _trouble(file: str, doing: str, error: OSError) -> CaseError:
 
 def _read(name: str) -> tuple[bytes, float]:
     """Bytes and modification time of a regular file."""
-    allowed = "a file, or - for standard input"
     try:
-        # without O_NONBLOCK a pipe that nobody writes to would hold the program for ever
-        with open(name, "rb", opener=lambda path, flags: os.open(path, flags | os.O_NONBLOCK)) as stream:
-            status = os.fstat(stream.fileno())
-            if not stat.S_ISREG(status.st_mode):
-                raise _one(name, "not a case file", "a device or pipe", allowed)
-            data = stream.read(LARGEST + 1)
+        data, status = read_file(name, LARGEST)
+    except Irregular:
+        raise _one(name, *_DEVICE) from None
     except IsADirectoryError:
-        raise _one(name, "not a case file", "a directory", allowed) from None
+        raise _one(name, "not a case file", "a directory", _DEVICE[-1]) from None
     except OSError as error:
         raise _trouble(name, "read", error) from None
     except ValueError:
@@ -134,6 +131,9 @@ def _decode(data: bytes, file: str) -> str:
 def _stamp(path: str) -> Stamp | None:
     """Stamp of a file as it is now, None where there is none."""
     try:
+        # a pipe would be waited for, and a device has no end
+        if not stat.S_ISREG((status := os.stat(path)).st_mode) and not stat.S_ISDIR(status.st_mode):
+            raise _one(path, *_DEVICE)
         with open(path, "rb") as stream:
             return Stamp(hashlib.file_digest(stream, "sha256").hexdigest(), os.fstat(stream.fileno()).st_mtime)
     except FileNotFoundError:
