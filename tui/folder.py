@@ -7,6 +7,7 @@ from collections.abc import Callable, Mapping
 from dataclasses import dataclass
 from typing import Any
 
+from cycle.atomic import new_file
 from cycle.errors import CaseError
 from cycle.quantities import HEADLINE
 from tui import figures, journal, keeping, sources, trash
@@ -50,13 +51,22 @@ def listing(folder: str) -> tuple[Entry, ...]:
     found = []
     for name in sources.names(folder, (".toml",)):
         path = os.path.join(folder, name)
-        try:
-            status = os.stat(path)
-        except OSError:
-            status = os.lstat(path)  # a link to nothing is shown too
+        status = _status(path)
+        if status is None:
+            continue
         stamp = (path, status.st_mtime_ns, status.st_size)
         found.append(Entry(name, path, status.st_mtime, stamp, held.get(os.path.realpath(path), ())))
     return tuple(found)
+
+
+def _status(path: str) -> os.stat_result | None:
+    """Status of a file, of the link itself where it leads nowhere; None where the file is gone by now."""
+    for look in (os.stat, os.lstat):
+        try:
+            return look(path)
+        except OSError:
+            continue
+    return None
 
 
 def by_case() -> dict[str, tuple[Held, ...]]:
@@ -93,15 +103,7 @@ def _fault(error: CaseError) -> str:
 
 def copy(path: str, target: str) -> None:
     """Copy a file byte for byte to a name that no file has. Errors: CaseError where it cannot be read, OSError."""
-    content = sources.content_of(path, LARGEST)
-    with open(target, "xb") as stream:
-        try:
-            stream.write(content)
-            stream.flush()
-            os.fsync(stream.fileno())
-        except OSError:
-            os.unlink(target)
-            raise
+    new_file(target, sources.content_of(path, LARGEST))
 
 
 def rename(path: str, target: str) -> str:

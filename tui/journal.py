@@ -13,9 +13,12 @@ import json
 import os
 import threading
 from collections.abc import Iterable
+from contextlib import suppress
 from dataclasses import dataclass, field
 from pathlib import Path
 from typing import Any
+
+from cycle.atomic import read_file
 
 FORMAT = 1
 LARGEST = 16 * 1024 * 1024
@@ -38,6 +41,14 @@ def state_directory() -> Path:
         return Path.home() / ".local" / "state" / "ductwalk"
     except RuntimeError as error:
         raise OSError("no home folder") from error
+
+
+def is_path(given: Any) -> bool:
+    """Whether something read from a file of the state directory can be a path. A stray surrogate or a zero byte names no file."""
+    try:
+        return isinstance(given, str) and bool(given) and b"\0" not in os.fsencode(given)
+    except UnicodeEncodeError:
+        return False
 
 
 def content_hash(path: str) -> str:
@@ -90,13 +101,13 @@ def _free(descriptor: int) -> bool:
     return True
 
 
-def _records(text: str) -> list[Record]:
-    """Whole records of a journal; a last line cut off by a crash is left out."""
+def _records(file: Path) -> list[Record]:
+    """Whole records of a journal; a last line cut off by a crash is left out, and so is all behind what is none. Errors: OSError."""
     out: list[Record] = []
-    for raw in text.split("\n")[:-1]:
+    for raw in read_file(file, LARGEST)[0][:LARGEST].split(b"\n")[:-1]:
         try:
             record = json.loads(raw)
-        except ValueError:
+        except (ValueError, RecursionError):
             break
         if not isinstance(record, dict):
             break
@@ -104,16 +115,40 @@ def _records(text: str) -> list[Record]:
     return out
 
 
-def _read(file: Path, path: str) -> Left | None:
-    with file.open("rb") as stream:
-        if not _free(stream.fileno()):
-            return None
-        text = stream.read(LARGEST).decode("utf-8", "replace")
-        written = os.fstat(stream.fileno()).st_mtime
-    records = _records(text)
-    if len(records) < 2 or records[0].get("format") != FORMAT:
+@dataclass(frozen=True, slots=True)
+class _Opened:
+    """A journal that holds work: whether a session that runs holds it, when it was last written (s since the epoch), its head, its
+    records."""
+
+    live: bool
+    written: float
+    head: Record
+    records: tuple[Record, ...]
+
+
+def _opened(file: Path) -> _Opened | None:
+    """A journal, None where it cannot be read or holds no work: it must not hide the others."""
+    try:
+        descriptor = os.open(file, os.O_RDONLY | os.O_NONBLOCK)
+    except OSError:
         return None
-    return Left(file, tuple(records[1:]), written, records[0].get("content") == content_hash(path))
+    try:
+        # asked first: a session that ends meanwhile has written its last record by then
+        live = not _free(descriptor)
+        head, *records = _records(file) or [{}]
+        written = os.fstat(descriptor).st_mtime
+    except OSError:
+        return None
+    finally:
+        os.close(descriptor)
+    return _Opened(live, written, head, tuple(records)) if records and head.get("format") == FORMAT else None
+
+
+def _read(file: Path, path: str) -> Left | None:
+    found = _opened(file)
+    if found is None or found.live:
+        return None
+    return Left(file, found.records, found.written, found.head.get("content") == content_hash(path))
 
 
 def left_behind(path: str) -> Left | None:
@@ -152,22 +187,23 @@ def every() -> tuple[Held, ...]:
     folder = state_directory()
     if not folder.is_dir():
         return ()
-    files = sorted(folder.glob("*.journal"), key=lambda file: file.lstat().st_mtime, reverse=True)
+    files = sorted(folder.glob("*.journal"), key=_written, reverse=True)
     return tuple(held for file in files[:MOST] if (held := _held(file)) is not None)
 
 
-def _held(file: Path) -> Held | None:
+def _written(file: Path) -> float:
+    """When a file was last written, s since the epoch; 0 where it is gone by now."""
     try:
-        with file.open("rb") as stream:
-            live = not _free(stream.fileno())
-            records = _records(stream.read(LARGEST).decode("utf-8", "replace"))
-            written = os.fstat(stream.fileno()).st_mtime
+        return file.lstat().st_mtime
     except OSError:
+        return 0.0
+
+
+def _held(file: Path) -> Held | None:
+    found = _opened(file)
+    if found is None or not is_path(found.head.get("case")):
         return None
-    case = records[0].get("case") if records else None
-    if len(records) < 2 or records[0].get("format") != FORMAT or not isinstance(case, str):
-        return None
-    return Held(file, case, standing(records[1:]), written, live)
+    return Held(file, found.head["case"], standing(found.records), found.written, found.live)
 
 
 def move(left: Left, path: str) -> None:
@@ -183,11 +219,28 @@ def move(left: Left, path: str) -> None:
 def _copied(file: Path, path: str) -> tuple[int, Path]:
     """A copy of a journal for the case at `path`: its descriptor, locked, and its file."""
     head, _, rest = file.read_bytes().partition(b"\n")
-    descriptor, new = _created(path)
     told = {**json.loads(head), "case": os.path.realpath(path)}
-    os.write(descriptor, json.dumps(told).encode() + b"\n" + rest)
-    os.fsync(descriptor)
+    descriptor, new = _created(path)
+    try:
+        _write(descriptor, json.dumps(told).encode() + b"\n" + rest)
+        os.fsync(descriptor)
+    except OSError:
+        os.close(descriptor)
+        new.unlink(missing_ok=True)
+        raise
     return descriptor, new
+
+
+def _write(descriptor: int, data: bytes) -> None:
+    """Append all of it or nothing: a disk that fills up takes a part, behind which no record could be read. Errors: OSError."""
+    size = os.fstat(descriptor).st_size
+    try:
+        while data:
+            data = data[os.write(descriptor, data) :]
+    except OSError:
+        with suppress(OSError):
+            os.ftruncate(descriptor, size)
+        raise
 
 
 def _created(path: str) -> tuple[int, Path]:
@@ -206,7 +259,7 @@ def _created(path: str) -> tuple[int, Path]:
 
 
 def discard(left: Left) -> None:
-    """Remove a journal left behind."""
+    """Remove a journal left behind. Errors: OSError where it stays."""
     left.file.unlink(missing_ok=True)
 
 
@@ -231,7 +284,7 @@ class Journal:
             if self._descriptor is None:
                 self._open()
             assert self._descriptor is not None
-            os.write(self._descriptor, (json.dumps(record) + "\n").encode())
+            _write(self._descriptor, (json.dumps(record) + "\n").encode())
         except OSError as error:
             self.failure = f"edits are not kept on disk: {error.strerror or error}"
         else:
@@ -241,7 +294,7 @@ class Journal:
     def _open(self) -> None:
         descriptor, self._file = _created(self.path)
         head = {"format": FORMAT, "case": os.path.realpath(self.path), "content": self.content}
-        os.write(descriptor, (json.dumps(head) + "\n").encode())
+        _write(descriptor, (json.dumps(head) + "\n").encode())
         self._hold(descriptor)
 
     def _hold(self, descriptor: int) -> None:
@@ -280,9 +333,10 @@ class Journal:
         self._hold(descriptor)
 
     def remove(self) -> None:
-        """Remove the journal file; the next record makes a new one."""
+        """Remove the journal file; the next record makes a new one. One that cannot be removed is offered again, which loses nothing."""
         if self._file is not None:
-            self._file.unlink(missing_ok=True)
+            with suppress(OSError):
+                self._file.unlink(missing_ok=True)
         self._let_go()
 
     def _let_go(self) -> None:

@@ -4,15 +4,16 @@ from __future__ import annotations
 
 import json
 import os
+import sys
 import time
 from collections.abc import Callable
 from dataclasses import asdict, dataclass
 from pathlib import Path
 from typing import Any
 
-from cycle.atomic import replace_file
+from cycle.atomic import read_file, replace_file
 from cycle.record import LARGEST_FILE
-from tui.journal import state_directory, stem
+from tui.journal import is_path, state_directory, stem
 
 FORMAT = 1
 RECENT = "recent.json"
@@ -55,8 +56,7 @@ def _write(file: Path, data: dict[str, Any]) -> None:
 def _read(file: Path) -> dict[str, Any] | None:
     """The data of a file, None where there is none. Errors: OSError, `Spoilt` among them."""
     try:
-        with file.open("rb") as stream:
-            content = stream.read(LARGEST_FILE + 1)
+        content, _ = read_file(file, LARGEST_FILE)
     except FileNotFoundError:
         return None
     try:
@@ -66,6 +66,15 @@ def _read(file: Path) -> dict[str, Any] | None:
     if not isinstance(data, dict) or data.get("format") != FORMAT:
         raise Spoilt("not what this version writes")
     return data
+
+
+def _is_text(words: str) -> bool:
+    """Whether a text that was read can be written: half of a surrogate pair, which JSON may hold, is none."""
+    try:
+        words.encode()
+    except UnicodeEncodeError:
+        return False
+    return True
 
 
 def _pin_file(path: str) -> Path:
@@ -83,7 +92,7 @@ def kept_pin(path: str) -> Kept | None:
     if data is None:
         return None
     words = [data.get(key) for key in Kept.__slots__]
-    if not all(isinstance(word, str) for word in words):
+    if not all(isinstance(word, str) and _is_text(word) for word in words):
         raise Spoilt("not what this version writes")
     return Kept(*words)  # type: ignore[arg-type]
 
@@ -111,8 +120,12 @@ def recent() -> tuple[Recent, ...]:
     data = _read(state_directory() / RECENT) or {}
     found = data.get("cases")
     cases = [c for c in found if isinstance(c, dict)] if isinstance(found, list) else []
-    sound = [c for c in cases if isinstance(c.get("path"), str) and isinstance(c.get("opened"), int | float)]
+    sound = [c for c in cases if is_path(c.get("path")) and _is_time(c.get("opened"))]
     return tuple(Recent(c["path"], float(c["opened"])) for c in sound[:MOST_RECENT])
+
+
+def _is_time(value: Any) -> bool:
+    return isinstance(value, int | float) and abs(value) <= sys.float_info.max
 
 
 def remember(path: str) -> None:

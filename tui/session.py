@@ -6,9 +6,9 @@ reasons why an edit is no case.
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+from collections.abc import Callable, Mapping
 from dataclasses import dataclass, field, replace
-from typing import TYPE_CHECKING, Any, Literal
+from typing import TYPE_CHECKING, Any, Literal, TypeGuard
 
 from cycle.quantities import HEADLINE
 from tui.actions import ACTIONS, Action
@@ -118,6 +118,32 @@ class Session:
     def unsaved(self) -> bool:
         """Whether the case differs from the one in the file."""
         return self.case is not None and self.case != self.saved
+
+
+def _is_set(said: Any) -> bool:
+    return isinstance(said, dict) and bool(said)
+
+
+def _is_switch(said: Any) -> bool:
+    return isinstance(said, list | tuple) and len(said) == 3 and all(isinstance(word, str) for word in said[:2])
+
+
+def _is_study(said: Any) -> bool:
+    if not (isinstance(said, list | tuple) and len(said) == 2 and isinstance(said[0], str) and isinstance(said[1], dict)):
+        return False
+    outputs, varied = said[1].get("outputs"), said[1].get("vary")
+    if not (isinstance(outputs, list) and all(isinstance(key, str) for key in outputs) and isinstance(varied, list)):
+        return False
+    return all(isinstance(one, dict) and all(isinstance(one.get(k), kind) for k, kind in _VARIED.items()) for one in varied)
+
+
+_VARIED: dict[str, Any] = {"input": str, "from": int | float | str, "to": int | float | str, "points": int}
+_KINDS: dict[str, Callable[[Any], bool]] = {"set": _is_set, "switch": _is_switch, "study": _is_study}
+
+
+def is_change(said: Any) -> TypeGuard[Change]:
+    """Whether something read from a journal has the form of a `Change`; what it says is judged by the case."""
+    return isinstance(said, dict) and len(said) == 1 and all(k in _KINDS and _KINDS[k](v) for k, v in said.items())
 
 
 def apply(case: Case, change: Change) -> Case:

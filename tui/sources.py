@@ -5,13 +5,13 @@ from __future__ import annotations
 import json
 import math
 import os
-import stat
 import time
 from collections.abc import Iterable, Mapping
 from dataclasses import asdict, dataclass, replace
 from pathlib import Path
 from typing import TYPE_CHECKING, Any
 
+from cycle.atomic import read_file
 from cycle.errors import CaseError, Fault
 from cycle.record import FORMAT, KIND, LARGEST_FILE, Json, Stored, case_of, is_stored, read_stored
 from tui import figures, keeping
@@ -77,8 +77,16 @@ def files(folder: str, besides: str = "") -> tuple[Source, ...]:
 def names(folder: str, ends: tuple[str, ...]) -> list[str]:
     """Names of a folder with one of the ends, in order, at most `MOST_FILES`; no hidden ones. Errors: OSError."""
     with os.scandir(folder or ".") as entries:
-        fitting = (e.name for e in entries if e.name.endswith(ends) and not e.name.startswith(".") and not e.is_dir())
+        fitting = (e.name for e in entries if e.name.endswith(ends) and not e.name.startswith(".") and not _is_folder(e))
         return sorted(fitting, key=lambda name: (name.casefold(), name))[:MOST_FILES]
+
+
+def _is_folder(entry: os.DirEntry[str]) -> bool:
+    """Whether an entry is a folder or a link to one; a link that leads nowhere is none."""
+    try:
+        return entry.is_dir()
+    except OSError:
+        return False
 
 
 def _holds_stored(path: str) -> bool:
@@ -91,17 +99,12 @@ def _holds_stored(path: str) -> bool:
 def content_of(path: str, most: int, cut: bool = False) -> bytes:
     """Content of a regular file of at most `most` bytes; its start where `cut`. Errors: CaseError."""
     try:
-        # without O_NONBLOCK a pipe that nobody writes to would hold the worker for ever
-        with open(path, "rb", opener=lambda name, flags: os.open(name, flags | os.O_NONBLOCK)) as stream:
-            regular = stat.S_ISREG(os.fstat(stream.fileno()).st_mode)
-            content = stream.read(most + (not cut)) if regular else b""
+        content, _ = read_file(path, most)
     except (OSError, ValueError) as error:
         raise CaseError([Fault(path, "", f"cannot be read: {getattr(error, 'strerror', None) or error}")]) from None
-    if not regular:
-        raise CaseError([Fault(path, "", "no file")])
-    if len(content) > most:
+    if len(content) > most and not cut:
         raise CaseError([Fault(path, "", "too large", f"more than {most} bytes", f"{most} bytes")])
-    return content
+    return content[:most]
 
 
 def fetch(source: Source) -> tuple[Found, ...]:

@@ -6,15 +6,21 @@ folder cannot be used, the state directory has one of the same form.
 
 from __future__ import annotations
 
+import errno
 import itertools
 import os
 import shutil
 import time
+from contextlib import suppress
 from dataclasses import dataclass
 from pathlib import Path
 from urllib.parse import quote
 
+from cycle.atomic import new_file, read_file
 from tui.journal import state_directory
+
+LARGEST = 64 * 1024 * 1024
+"""Bytes of a file that is moved to another file system at most."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -53,7 +59,7 @@ def _into(trash: Path, origin: str) -> Thrown:
     name, info = _reserved(trash, origin)
     target = trash / "files" / name
     try:
-        shutil.move(origin, target)
+        move_new(origin, str(target))
     except OSError:
         info.unlink(missing_ok=True)
         raise
@@ -63,7 +69,7 @@ def _into(trash: Path, origin: str) -> Thrown:
 def _reserved(trash: Path, origin: str) -> tuple[str, Path]:
     """A name that is free in the trash, taken by its info file."""
     base, end = os.path.splitext(os.path.basename(origin))
-    words = f"[Trash Info]\nPath={quote(origin)}\nDeletionDate={time.strftime('%Y-%m-%dT%H:%M:%S')}\n"
+    words = f"[Trash Info]\nPath={quote(os.fsencode(origin))}\nDeletionDate={time.strftime('%Y-%m-%dT%H:%M:%S')}\n"
     for number in itertools.count(1):
         name = f"{base}{f'.{number}' if number > 1 else ''}{end}"
         info = trash / "info" / f"{name}.trashinfo"
@@ -91,8 +97,23 @@ def move_new(path: str, target: str) -> None:
     except FileExistsError:
         raise
     except OSError:  # another file system, or one without links
-        if os.path.lexists(target):
-            raise FileExistsError(f"there is a file called {os.path.basename(target)} already") from None
-        shutil.move(path, target)
-    else:
+        _copied(path, target)
+    try:
         os.unlink(path)
+    except OSError:
+        with suppress(OSError):
+            os.unlink(target)
+        raise
+
+
+def _copied(path: str, target: str) -> None:
+    """A copy of a file or of a link under a name that no file has, not even one that got it a moment ago. Errors: OSError."""
+    if os.path.islink(path):
+        os.symlink(os.readlink(path), target)
+        return
+    content, _ = read_file(path, LARGEST)
+    if len(content) > LARGEST:
+        raise OSError(errno.EFBIG, os.strerror(errno.EFBIG))
+    new_file(target, content)
+    with suppress(OSError):
+        shutil.copystat(path, target)

@@ -7,6 +7,7 @@ import re
 from contextlib import suppress
 from dataclasses import dataclass
 
+from cycle.atomic import new_file
 from cycle.errors import CaseError, Fault
 
 LONGEST = 200
@@ -52,9 +53,8 @@ def write(name: str, drawing: str, data: str) -> Written:
     path = ""
     try:
         for path, text in zip(paths, (drawing, data), strict=True):
-            with open(path, "x", encoding="utf-8", newline="") as stream:
-                made.append(path)
-                stream.write(text)
+            new_file(path, text.encode("utf-8", "replace"))
+            made.append(path)
     except OSError as error:
         for done in made:
             with suppress(OSError):

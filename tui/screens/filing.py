@@ -4,8 +4,8 @@ from __future__ import annotations
 
 import difflib
 import os
-import time
 from collections.abc import Callable
+from contextlib import suppress
 from dataclasses import dataclass, replace
 from functools import partial
 from typing import TYPE_CHECKING, Any
@@ -23,6 +23,7 @@ from tui.screens.desk import Desk, fault_words
 from tui.screens.page import Answer, Page, text_body
 from tui.screens.prompt import Prompt
 from tui.session import Session
+from tui.views import cases
 
 if TYPE_CHECKING:
     from cycle.case import Case
@@ -74,7 +75,8 @@ def read(path: str) -> Read:
         pin = keeping.kept_pin(path) if path else None
     except keeping.Spoilt as error:
         trouble = f"the pin kept for this case is dropped: {error}"
-        keeping.drop_pin(path)
+        with suppress(OSError):
+            keeping.drop_pin(path)
     except OSError as error:
         trouble = trouble or f"the pin kept for this case cannot be read: {error.strerror or error}"
     return Read(case, journal.content_hash(path), left, pin, trouble)
@@ -92,21 +94,28 @@ def replay(now: Session, left: Left) -> Restored:
     kept: list[Record] = []
     for record in left.records:
         try:
-            now = _again(now, record)
-        except (CaseError, KeyError, ValueError):
+            again = _again(now, record)
+        except CaseError:
             continue
+        if again is None:
+            continue
+        now = again
         kept.append(record)
     return Restored(now, tuple(kept), len(left.records) - len(kept), left)
 
 
-def _again(now: Session, record: Record) -> Session:
+def _again(now: Session, record: Record) -> Session | None:
+    """The session with a record made again, None where the record asks for nothing that this version knows. Errors: CaseError."""
     if "undo" in record:
         return session.undone(now)
     if "redo" in record:
         return session.redone(now)
     assert now.case is not None
-    case = session.apply(now.case, record["edit"])
-    return session.edited(now, case, items.describe(now.case, case, record["edit"], now.system))
+    change = record.get("edit")
+    if not session.is_change(change):
+        return None
+    case = session.apply(now.case, change)
+    return session.edited(now, case, items.describe(now.case, case, change, now.system))
 
 
 def difference_body(changed: FileChanged) -> list[Line]:
@@ -169,7 +178,7 @@ class Filing(Desk, inherit_bindings=False):
             self._offer(got.left)
 
     def _offer(self, left: Left) -> None:
-        when = time.strftime("%Y-%m-%d %H:%M", time.localtime(left.written))
+        when = cases.when(left.written)
         told = [f"Work that ended on {when} left {_counted(journal.standing(left.records))} of this case, not saved."]
         if not left.same_file:
             told.append("The case file has changed since; the edits would be made on the file as it is now.")
@@ -186,8 +195,16 @@ class Filing(Desk, inherit_bindings=False):
             now = self.session
             self.engine.do("replay", now.generation, lambda: replay(now, left))
         elif name == "discard":
+            self.put(replace(self.session, note=self._discarded(left) or "the unsaved edits are discarded"))
+
+    @staticmethod
+    def _discarded(left: Left) -> str:
+        """Remove a journal left behind. Returns: why it stays, "" where it is gone."""
+        try:
             journal.discard(left)
-            self.put(replace(self.session, note="the unsaved edits are discarded"))
+        except OSError as error:
+            return f"the unsaved edits stay on disk: {error.strerror or error}"
+        return ""
 
     def was_replayed(self, result: Result) -> None:
         """Take the restored session; its journal is written anew before the old one goes."""
@@ -198,7 +215,7 @@ class Filing(Desk, inherit_bindings=False):
         for record in got.records:
             self.journal.append(record)
         if not got.refused and not self.journal.failure:
-            journal.discard(got.left)
+            self._discarded(got.left)
         refused = f", {got.refused} no longer hold (their journal is kept)" if got.refused else ""
         note = f"restored {_counted(journal.standing(got.records))}{refused}; {key_of(self.session.actions, 'undo')} takes them back"
         self.put(replace(got.session, note=note, figures=self.session.figures, good=self.session.good, pin=self.session.pin))

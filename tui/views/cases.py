@@ -17,17 +17,23 @@ from tui.views.numbers import figure, unit
 
 WAITING = "not solved yet"
 _MODE, _FIGURE, _WHEN = 22, 11, 12
+_FIRST, _LAST = 0.0, 250_000_000_000.0
 _LEAST_NAME, _MOST_NAME, _MOST_TITLE = 14, 30, 60
 
 
 def when(seconds: float) -> str:
-    """Day and time, local."""
-    return time.strftime("%Y-%m-%d %H:%M", time.localtime(seconds))
+    """Day and time, local. seconds: since the epoch."""
+    return time.strftime("%Y-%m-%d %H:%M", _local(seconds))
+
+
+def _local(seconds: float) -> time.struct_time:
+    """A file may claim any time; what no calendar holds is shown as the nearest that one does."""
+    return time.localtime(max(_FIRST, min(seconds, _LAST)))
 
 
 def _short(seconds: float) -> str:
     """Day and time of this year, else the day, in 11 columns."""
-    then = time.localtime(seconds)
+    then = _local(seconds)
     return time.strftime("%m-%d %H:%M" if then.tm_year == time.localtime().tm_year else "%Y-%m-%d", then)
 
 
