@@ -37,8 +37,8 @@ class Axis:
 @dataclass(frozen=True, slots=True)
 class Curve:
     """What `curve` found. shape: (n,) or (n, m); figures, status and mode of the points in row-major order over the axes, figures
-    in SI and NaN where there is none; reasons: status -> why, in the words of the first point that has it; margins: label of a limit ->
-    its relative margin (positive is safe, NaN where it is not assessed), {} where they were not asked for."""
+    in SI and NaN where there is none; reasons: status -> why, in the words of the first point that has it; margins: key of a limit -> its
+    relative margin (positive is safe, NaN where it is not assessed), {} where they were not asked for; labels: words of these limits."""
 
     axes: tuple[Axis, ...]
     shape: tuple[int, ...]
@@ -47,6 +47,7 @@ class Curve:
     mode: tuple[str, ...]
     reasons: Mapping[str, str]
     margins: Mapping[str, tuple[float, ...]] = field(default_factory=dict)
+    labels: Mapping[str, str] = field(default_factory=dict)
 
 
 def around(entry: Input, value: float, factor: float = 1.0, steps: int = 20) -> tuple[float, ...]:
@@ -81,6 +82,7 @@ def curve(case: Case, axes: Mapping[str, Sequence[float]], figures: Sequence[str
     there = {i: point for i, point in enumerate(points) if not isinstance(point, Refusal)}
     status, mode = [REFUSED] * len(points), ["none"] * len(points)
     margins: dict[str, list[float]] = {}
+    labels: dict[str, str] = {}
     values = {key: [math.nan] * len(points) for key in wanted}
     reasons = {point.kind: point.words for point in reversed(points) if isinstance(point, Refusal)}
     if there:
@@ -90,10 +92,11 @@ def curve(case: Case, axes: Mapping[str, Sequence[float]], figures: Sequence[str
         for key, read in readers.items():
             _put(values[key], there, read(walk))
         for limit in walk.limits if limits else ():
-            _put(margins.setdefault(limit.label, [math.nan] * len(points)), there, limit.margin)
+            _put(margins.setdefault(limit.key, [math.nan] * len(points)), there, limit.margin)
+            labels[limit.key] = limit.label
         reasons |= {found: why for found, why in zip(walk.status[::-1], walk.reason[::-1], strict=True) if why}
     plain = ({k: tuple(v) for k, v in found.items()} for found in (values, margins))
-    return Curve(lines, shape, next(plain), tuple(status), tuple(mode), reasons, next(plain))
+    return Curve(lines, shape, next(plain), tuple(status), tuple(mode), reasons, next(plain), labels)
 
 
 def _axis(case: Case, key: str, values: Sequence[float]) -> Axis:

@@ -6,6 +6,7 @@ A piece is solved in the worker; the rest here is plain data. Nothing knows Text
 from __future__ import annotations
 
 from dataclasses import dataclass, replace
+from itertools import takewhile
 from time import perf_counter
 from typing import TYPE_CHECKING
 
@@ -52,8 +53,8 @@ class Piece:
 @dataclass(frozen=True, slots=True)
 class Sweep:
     """A sweep under way. spans: of the input, and of the second one of a map; figures: keys beyond the headline; limits: whether their
-    margins are wanted; level: the one being
-    solved, counted from 0; parts: its pieces so far; whole: the finest level that is complete; cost: seconds a point of the last piece."""
+    margins are wanted; level: the one being solved, counted from 0; parts: its pieces so far; whole: the finest level that is complete;
+    cost: seconds a point of the last piece."""
 
     case: Case
     spans: tuple[Span, ...]
@@ -129,12 +130,19 @@ def joined(parts: tuple[Piece, ...]) -> Curve:
         shape=(len(outer.values), *first.shape[1:]),
         figures={key: tuple(v for c in curves for v in c.figures[key]) for key in first.figures},
         margins={key: tuple(v for c in curves for v in _of(c, key)) for c in curves for key in c.margins},
+        labels={key: _label([c.labels[key] for c in curves if key in c.labels]) for c in curves for key in c.labels},
         status=tuple(s for c in curves for s in c.status),
         mode=tuple(m for c in curves for m in c.mode),
         reasons=reasons,
     )
 
 
-def _of(curve: Curve, label: str) -> tuple[float, ...]:
+def _of(curve: Curve, key: str) -> tuple[float, ...]:
     """Margins of a limit, nan where a piece does not have it."""
-    return curve.margins.get(label, (float("nan"),) * len(curve.status))
+    return curve.margins.get(key, (float("nan"),) * len(curve.status))
+
+
+def _label(said: list[str]) -> str:
+    """Words that hold for all pieces: which shock or station has the least margin may change from one to the next."""
+    parts = zip(*(words.split(", ") for words in said), strict=False)
+    return ", ".join(part[0] for part in takewhile(lambda part: len(set(part)) == 1, parts)) or said[0]

@@ -91,12 +91,31 @@ def test_a_case_without_any_solution_is_drawn_as_marks_with_the_reason() -> None
 
 def test_limits_are_marked_where_they_are_crossed(drawn: Peek) -> None:
     """Gas temperature behind the burner against its limit, from the margins of the points."""
-    wide = whole(peek.widened(drawn, 2.0))
+    hot = figures.solve(drawn.case).at("4", "temperature")
+    limited = peek.of_case(drawn, drawn.case.replace({"limits.gas_temperature": hot - 5.0}), True)
+    assert limited is not None
+    wide = whole(peek.widened(limited, 2.0))
     picture = view.picture(wide, None)
     assert isinstance(picture, Chart) and wide.margins is not None and wide.margins.whole is not None
-    for label, margins in wide.margins.whole.margins.items():
-        crossings = sum(a * b < 0.0 for a, b in pairwise(margins))
-        assert sum(r.words.startswith(f"{label}, over") for r in picture.rules) == crossings
+    found = wide.margins.whole
+    marked = {key: sum(r.words.startswith(f"{found.labels[key]}, over") for r in picture.rules) for key in found.margins}
+    for key, margins in found.margins.items():
+        assert marked[key] == sum((a < 0.0) != (b < 0.0) for a, b in pairwise(margins) if a == a and b == b)
+    assert marked["gas_temperature"] == 1
+
+
+def test_a_limit_keeps_its_margin_where_its_words_change_from_piece_to_piece() -> None:
+    """The shock with the least margin is named where all points of a batch agree on it; pieces need not."""
+    case = cycle.load(CASES / "tidegate.toml")
+    pieces = []
+    for start, values in ((0, [6.0, 6.2]), (2, [6.4, 6.6])):
+        found = curve(case, {"flight.mach": values}, limits=True)
+        words = {**found.labels, "attached": f"attached inlet shocks, ramp {start}"}
+        pieces.append(Piece(0, start, 4, replace(found, labels=words), 0.1))
+    both = joined(tuple(pieces))
+    assert both.labels["attached"] == "attached inlet shocks"
+    assert all(len(margins) == 4 for margins in both.margins.values())
+    assert not any(math.isnan(m) for m in both.margins["attached"])
 
 
 def test_modes_of_a_duct_change_where_its_borders_say() -> None:

@@ -5,14 +5,18 @@ from __future__ import annotations
 import csv
 import io
 import shutil
+import threading
 import xml.etree.ElementTree as ET
 from pathlib import Path
+from typing import Any
 
 import pytest
 
 from cycle.case import load
 from tests.tui.screen_support import CASES, Driver, opened, to_input
+from tui import peek, sweeping
 from tui.screens.peek import PeekScreen
+from tui.sweeping import Piece
 
 HEAT = "combustor.equivalence_ratio"
 
@@ -49,6 +53,31 @@ async def test_a_point_of_the_curve_is_taken_and_given_back(path: Path) -> None:
         assert driver.session.watched == "specific_thrust" and driver.screen().startswith("specific thrust against")
         await driver.press("escape")
         assert driver.app.screen is driver.main
+
+
+async def test_a_piece_of_a_peek_that_is_closed_is_not_drawn_in_the_next_one(path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    solve, hold = sweeping.solve, threading.Event()
+
+    def slow(*asked: Any) -> Piece:
+        hold.wait(10)
+        return solve(*asked)
+
+    async with opened(path) as driver:
+        await driver.settled()
+        monkeypatch.setattr(sweeping, "solve", slow)
+        await to_input(driver, "flight.mach")
+        await driver.press("g", "escape")
+        await driver.press("right", "right", "right")
+        await to_input(driver, HEAT)
+        await driver.press("g")
+        screen = driver.app.screen
+        assert isinstance(screen, PeekScreen)
+        taken: list[str] = []
+        took = peek.took
+        monkeypatch.setattr(peek, "took", lambda one, piece: taken.append(piece.curve.axes[0].input.key) or took(one, piece))
+        hold.set()
+        await driver.until(lambda: screen.peek.due is None)
+        assert set(taken) == {HEAT}
 
 
 async def test_wider_than_choking_the_cursor_gives_the_reason(path: Path) -> None:

@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+import itertools
+from collections.abc import Iterator
 from dataclasses import replace
 from typing import ClassVar
 
@@ -32,6 +34,9 @@ class PeekScreen(Picture):
         "y": "do_figure", "m": "do_map", "s": "do_study", "enter": "do_take", "u": "do_undo", "w": "do_write", "g": "do_leave",
     }  # fmt: skip
     WORDS = "arrows  + - range  < > shift  y figure  m map  Enter take  s study  w file  Esc"
+
+    _numbers: ClassVar[Iterator[int]] = itertools.count(1)
+    """Numbers of what is asked for, of all peeks: a piece of one that is closed must not be taken for one of the next."""
 
     def __init__(self, desk: Desk, start: Peek) -> None:
         super().__init__(desk)
@@ -67,7 +72,7 @@ class PeekScreen(Picture):
         if due is None:
             self._ask_borders()
             return
-        self._asked += 1
+        self._asked = next(self._numbers)
         sweep = due[1]
         self.desk.engine.newest("peek", self._asked, sweep.piece)
 

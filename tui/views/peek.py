@@ -140,11 +140,11 @@ def _crossings(peek: Peek) -> Iterator[Rule]:
     if curve is None:
         return
     entry, system = peek.spans[0].input, peek.system
-    for label, margins in curve.margins.items():
+    for key, margins in curve.margins.items():
         for (left, low), (right, high) in pairwise(zip(curve.axes[0].values, margins, strict=True)):
-            if low * high < 0.0:
+            if (low < 0.0 <= high) or (high < 0.0 <= low):
                 place = left + (right - left) * low / (low - high)
-                words = f"{label}, {'over above' if high < 0.0 else 'over below'} {of_input(entry, place, system, 3)}"
+                words = f"{curve.labels[key]}, {'over above' if high < 0.0 else 'over below'} {of_input(entry, place, system, 3)}"
                 yield _rule(entry, place, words, system, "limit")
 
 
