@@ -95,6 +95,29 @@ async def test_a_walk_without_a_solution_has_no_sensitivities_and_says_why(path:
         assert "no sensitivities: no solution: burner: the heat" in driver.screen()
 
 
+async def test_a_limit_of_the_walk_before_is_not_searched_for_in_a_case_that_has_none(path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    assess, hold = figures.assess, threading.Event()
+
+    def slow(found: Figures) -> Figures:
+        hold.wait(10)
+        return assess(found)
+
+    async with opened(path) as driver:
+        await weighed(driver)
+        monkeypatch.setattr(figures, "assess", slow)
+        assert driver.main.change({"set": {"gas.model": "constant-gamma", "nozzle.chemistry": None}})
+        await driver.until(lambda: driver.session.settled)
+        await to_list(driver, "w")
+        await to_row(driver, "data_high")
+        await driver.press("s")
+        assert driver.main._seeking is None and isinstance(driver.app.screen, Roster)
+        assert "limits are being assessed" in driver.screen()
+        await driver.press("o")
+        assert driver.app.screen._heading() == "Limits by margin"
+        hold.set()
+        await driver.settled()
+
+
 async def test_stale_sensitivities_are_dropped_and_those_before_stand_dimmed(path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
     weigh, hold, asked = figures.influence, threading.Event(), []
 

@@ -14,19 +14,21 @@ from tui.screens import telling
 from tui.screens.desk import Desk
 from tui.screens.page import Answer, Page, text_body
 from tui.screens.roster import Choice, Roster, Verb
-from tui.session import Influence, influenced, performance_keys, watched
+from tui.session import ASSESSING, Influence, influenced, performance_keys, watched
 from tui.views import margins, moving
 
 if TYPE_CHECKING:
+    from cycle.case import Case
     from cycle.limit_solving import Reached
 
 
 @dataclass(frozen=True, slots=True)
 class Seeking:
-    """A search for the value at which a limit is reached. number: which search of the session it is; steps: its pieces, run in the
-    worker only; done: how many came back."""
+    """A search for the value at which a limit is reached. number: which search of the session it is; case: whose; steps: its pieces, run
+    in the worker only; done: how many came back."""
 
     number: int
+    case: Case
     limit: str
     key: str
     steps: Iterator[Reached | None]
@@ -102,10 +104,18 @@ class Ranking(Desk, inherit_bindings=False):
     def _limit_told(self, name: str, wide: int) -> list[Line]:
         return margins.told(self.session, name, wide, self._search_words(name))
 
+    @property
+    def _limits_known(self) -> bool:
+        """Whether the limits listed are those of the case: the one before may have others."""
+        found = self.session.figures
+        return found is not None and self.session.settled and found.assessed
+
     def _search_words(self, name: str) -> str:
         search = self._seeking
         if search is not None and search.limit == name:
             return f"solving for {_label(search.key)} at margin 0 ... {search.done} batches of walks done"
+        if not self._limits_known:
+            return ASSESSING
         goto = margins.limit(self.session, name)
         return (
             f"its input: {_label(goto.input)} ({goto.input})"
@@ -129,7 +139,7 @@ class Ranking(Desk, inherit_bindings=False):
     def solve_limit(self, name: str) -> None:
         """Search for the value of the limit's own input, or of the one in hand, at which its margin is zero."""
         case, goto = self.session.case, margins.limit(self.session, name)
-        if case is None or goto is None:
+        if case is None or goto is None or not self._limits_known:
             return
         hand = items.in_hand(self.session)
         asked = (goto.input, hand.key if hand is not None else "")
@@ -142,6 +152,8 @@ class Ranking(Desk, inherit_bindings=False):
 
     def solve_by(self, name: str) -> None:
         """Ask by which input to reach the limit, then search along that one."""
+        if not self._limits_known:
+            return
         rows = lambda wide, text: _choices(margins.numbers(self.session, wide, text))  # noqa: E731
         list_ = Roster("Reach the limit by which input?", rows, (Verb("enter", "Enter", "solve by it"),), typing=True)
         self.app.push_screen(list_, lambda chosen: self._seek(name, chosen[1]) if chosen and chosen[1] else None)
@@ -150,7 +162,7 @@ class Ranking(Desk, inherit_bindings=False):
         case = self.session.case
         assert case is not None
         self._searches += 1
-        self._seeking = Seeking(self._searches, name, key, figures.reaching(case, name, key))
+        self._seeking = Seeking(self._searches, case, name, key, figures.reaching(case, name, key))
         self._ask_on(self._seeking)
         self.repaint_list()
 
@@ -161,6 +173,9 @@ class Ranking(Desk, inherit_bindings=False):
         """Take a piece of a search: ask for the next one, or show what was found. Pieces of a search left are dropped."""
         search = self._seeking
         if search is None or result.generation != search.number:
+            return
+        if search.case is not self.session.case:
+            self._seeking = None
             return
         if result.value is None:
             self._seeking = replace(search, done=search.done + 1)
