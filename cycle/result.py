@@ -20,6 +20,7 @@ from cycle.flowpath.stream import SOLVED, STATUS_NAMES
 from cycle.gas.state import State
 from cycle.quantities import INPUT, OUTPUTS, RESTORES, STATUSES
 from cycle.walk import March, Record, march, modes
+from cycle.why_not import no_figure, no_rows
 
 if TYPE_CHECKING:
     from cycle.case import Case
@@ -225,47 +226,15 @@ class Walk:
         """Why a figure of `performance`, or "losses" or "exergy", has no value; "" where it has one."""
         if key in ("losses", "exergy"):
             found = self.losses if key == "losses" else self.exergy
-            return "" if found else self._no_rows(key)
+            return "" if found else no_rows(self.march, key)
         value = self.performance[key]
         if np.all(np.isfinite(value)):
             return ""
         if self.shape == () and self.status != "solved":
             return f"no solution: {self.status}"
-        return self._no_figure(key)
-
-    def _no_figure(self, key: str) -> str:
-        choices = self.march.setting.choices
-        if self.march.chain[0] == "entry" and key != "stream_thrust_gain":
-            return "a rig has no flight thrust"
-        if key == "installed_thrust":
-            return "additive and spill drag need the inlet's lip"
-        if key == "altitude":
-            return "pressure and temperature are given, not a place in the standard atmosphere"
-        if key == "total_temperature_rise_efficiency":
-            return self._no_rise()
-        if key in ("throat_area", "burner_exit_over_throat"):
-            return "the engine has no throat"
-        if key == "stream_thrust_gain":
-            return "for a rig only"
-        if key in ("equivalence_ratio", "stoichiometric_ratio") and choices["fuel.identity"] == "heating_value":
-            return "the fuel has no formula"
-        return "no fuel" if np.any(self._performance["fuel_flow"] == 0.0) else "a state it needs is out of range"
-
-    def _no_rise(self) -> str:
-        if not account.one_pair(self.march):
-            return "several constant-gamma pairs have no common datum"
-        return "complete burning would not raise the total temperature"
-
-    def _no_rows(self, key: str) -> str:
         if not self.march.solved.size:
             return "no solution"
-        if self.march.chain[0] == "entry":
-            return "a rig has no flight thrust"
-        if not account.one_pair(self.march):
-            return "several constant-gamma pairs have no common datum"
-        if key == "exergy":
-            return "needs fuel.supply_pressure, above the burner's, and the fuel's standard entropy"
-        return "a state it needs is out of range"
+        return no_figure(self.march, key, self._performance["fuel_flow"])
 
     def _rows(self, rows: tuple[account.Row, ...]) -> tuple[Row, ...]:
         if any(np.isnan(r.value[self.march.solved]).all() for r in rows if self.march.solved.size):

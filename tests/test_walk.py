@@ -242,3 +242,10 @@ def test_referee_agrees_on_the_shipped_cases(name: str) -> None:
     assert report.compared >= 2
     for row in report.rows:
         assert not row.temperature > 1e-4 and not row.mole_fraction > 1e-8 and not row.sound_speed > 1e-6, row
+
+
+def test_a_batch_without_any_solution_says_why_it_has_no_figures() -> None:
+    """Not even the burner is reached: there is no fuel flow to ask about."""
+    walk = cycle.solve(cycle.load(CASES / "saltmarsh.toml"), {"inlet.pressure_ratio": [1e4, 2e4]})
+    assert not walk.march.solved.size and "burner" not in {p.name for p in walk.processes}
+    assert {walk.why_not(key) for key in ("thrust", "specific_impulse", "throat_area", "losses")} == {"no solution"}
