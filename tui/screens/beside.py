@@ -157,10 +157,13 @@ class Comparison:
 
     def _add_source(self, source: Source) -> None:
         self._say(f"{clean(source.label)} is being solved ...")
+        asked = self._view
 
         def then(found: tuple[Found, ...] | None, error: BaseException | None) -> None:
+            if self._view is not asked:
+                return  # the comparison that asked is closed
             self._say("" if error is None else f"not added: {clean(trouble(error))}")
-            if found is not None and self._view is not None:
+            if found is not None:
                 self._desk.one_of(found, self._added)
 
         self._desk.fetching.ask(lambda: sources.fetch(source), then)

@@ -8,6 +8,7 @@ from dataclasses import replace
 from typing import TYPE_CHECKING, Any
 
 from tui import folder, journal, keeping, trash
+from tui.actions import key_of
 from tui.engine import Engine, Result
 from tui.errands import Errands
 from tui.folder import Entry, Solved, Stamp
@@ -149,7 +150,8 @@ class Shelf:
         elif key == "enter" and (entry := self._entry(name)) is not None:
             self._open(entry.path)
         elif self._session.case is None and not self._session.faults:
-            self._desk.put(replace(self._session, note="no case is open: b lists those of the folder, q leaves"))
+            browse, leave = (key_of(self._session.actions, name) for name in ("browse", "leave"))
+            self._desk.put(replace(self._session, note=f"no case is open: {browse} lists those of the folder, {leave} leaves"))
 
     def _open(self, path: str) -> None:
         if self._session.case is None or not self._here(path):

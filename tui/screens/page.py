@@ -7,12 +7,10 @@ from dataclasses import dataclass
 from types import MappingProxyType
 
 from textual import events
-from textual.app import ComposeResult
 from textual.geometry import Size
 
 from tui.line import BOLD, CURSOR, DIM, PLAIN, Line, clean, fit, line
 from tui.screens.overlay import Overlay
-from tui.widgets.sheet import Sheet
 
 Body = Callable[[int], list[Line]]
 """Lines of a page for a width."""
@@ -44,8 +42,6 @@ class Page(Overlay[str]):
     does, and keys, the words for them on the last line.
     """
 
-    CSS = "Page { layout: vertical; } #page { height: 1fr; }"
-
     def __init__(
         self,
         title: str,
@@ -60,22 +56,7 @@ class Page(Overlay[str]):
         self._heading, self._body, self._answers, self._fixed = title, body, answers, head
         self._at = 0
 
-    def compose(self) -> ComposeResult:
-        """One sheet, painted before it is laid out, so that the screen is sent once."""
-        self._sheet = Sheet(id="page")
-        self._paint(self.app.size)
-        yield self._sheet
-
-    def on_resize(self) -> None:
-        """Paint for the new size, all of it: the terminal may have cut what stands there."""
-        self._paint(self.app.size)
-        self.refresh()
-
-    def paint(self) -> None:
-        """Paint what the text says now."""
-        self._paint(self.app.size)
-
-    def _paint(self, size: Size) -> None:
+    def lines_for(self, size: Size) -> list[Line]:
         """Title, as much of the text as fits, the answers, the keys."""
         wide, height = size
         body, fixed = self._body(wide), self._fixed(wide)[: max(0, height - 3)]
@@ -89,7 +70,7 @@ class Page(Overlay[str]):
         keys = "arrows and Enter, or the letter; Escape leaves" if self._answers else self._keys
         padding: list[Line] = [line("")] * (room - len(shown))
         head = line((fit(clean(self._heading) + more, wide), BOLD))
-        self._sheet.show([head, *fixed, *shown, *choices, *padding, line((fit(keys, wide), DIM))], size)
+        return [head, *fixed, *shown, *choices, *padding, line((fit(keys, wide), DIM))]
 
     def _choices(self, wide: int) -> list[Line]:
         return [line((fit(f" {a.key}  {clean(a.words)}", wide), CURSOR if i == self._at else PLAIN)) for i, a in enumerate(self._answers)]
@@ -99,7 +80,7 @@ class Page(Overlay[str]):
         if event.key in MOVES:
             last = len(self._answers) - 1 if self._answers else len(self._body(self.size.width))
             self._at = max(0, min(MOVES[event.key](self._at, max(1, self._room - 1), last), max(last, 0)))
-            self._paint(self.app.size)
+            self.paint()
         elif event.key in ("escape", "q", "ctrl+q"):
             self.leave("")
         elif (act := self._verbs.get(event.key) or self._verbs.get(event.character or "")) is not None:

@@ -8,7 +8,6 @@ from collections.abc import Callable
 from typing import ClassVar
 
 from textual import events
-from textual.app import ComposeResult
 from textual.geometry import Size
 
 from tui import plots, writing
@@ -21,7 +20,6 @@ from tui.screens.desk import Desk
 from tui.screens.overlay import Overlay
 from tui.screens.prompt import Prompt
 from tui.session import toggled
-from tui.widgets.sheet import Sheet
 
 LEAST_PICTURE = 8
 """Lines below which a picture keeps the screen to itself."""
@@ -35,7 +33,6 @@ class Picture(Overlay[str]):
     Parameters: desk, the main screen. A subclass says what is drawn, what stands below, and the line of keys.
     """
 
-    CSS = "Picture { layout: vertical; } #picture { height: 1fr; }"
     KEYS: ClassVar[dict[str, str]] = {}
     WORDS: ClassVar[str] = ""
     """The line of keys."""
@@ -83,22 +80,7 @@ class Picture(Overlay[str]):
         name = writing.plain_name(case.name if case is not None else "", first.y_axis.label, first.x_axis.label)
         return name, lambda: (svg(first), csv_text(first))
 
-    def compose(self) -> ComposeResult:
-        """One sheet, painted before it is laid out, so that the screen is sent once."""
-        self._sheet = Sheet(id="picture")
-        self._paint(self.app.size)
-        yield self._sheet
-
-    def on_resize(self) -> None:
-        """Paint for the new size, all of it: the terminal may have cut what stands there."""
-        self._paint(self.app.size)
-        self.refresh()
-
-    def paint(self) -> None:
-        """Paint what there is now."""
-        self._paint(self.app.size)
-
-    def _paint(self, size: Size) -> None:
+    def lines_for(self, size: Size) -> list[Line]:
         wide, height = size
         head, foot = self.head(wide), self.foot(wide)
         keys = line((fit(clean(self.message), wide), BOLD)) if self.message else line((fit(self.WORDS, wide), DIM))
@@ -107,7 +89,7 @@ class Picture(Overlay[str]):
         room = max(1, height - 1 - len(head) - len(foot))
         body = self.body(wide, room)[:room]
         padding: list[Line] = [()] * (room - len(body))
-        self._sheet.show([*head, *body, *padding, *foot, keys][:height], size)
+        return [*head, *body, *padding, *foot, keys][:height]
 
     def typed(self, event: events.Key) -> None:
         """Do what a key means here, or leave."""

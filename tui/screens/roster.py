@@ -6,7 +6,6 @@ from collections.abc import Callable
 from dataclasses import dataclass, replace
 
 from textual import events
-from textual.app import ComposeResult
 from textual.geometry import Size
 
 from tui import keying
@@ -14,7 +13,6 @@ from tui.line import BOLD, CURSOR, DIM, Line, clean, fit, line, width
 from tui.screens.overlay import Overlay
 from tui.screens.page import MOVES
 from tui.session import Entry
-from tui.widgets.sheet import Sheet
 
 
 @dataclass(frozen=True, slots=True)
@@ -59,8 +57,6 @@ class Roster(Overlay[tuple[str, str]]):
     counted, whether the title says how many rows there are.
     """
 
-    CSS = "Roster { layout: vertical; } #roster { height: 1fr; }"
-
     def __init__(
         self,
         title: str | Callable[[], str],
@@ -80,22 +76,7 @@ class Roster(Overlay[tuple[str, str]]):
         self._head, self._told, self._typing, self._act = head, told, typing, act
         self._name, self._at, self._top, self._room = start, 0, 0, 1
         self._field = Entry("", "", 0, fresh=False)
-        self._sheet = Sheet(id="roster")
         self._counted = counted
-
-    def compose(self) -> ComposeResult:
-        """One sheet, painted before it is laid out, so that the screen is sent once."""
-        self._paint(self.app.size)
-        yield self._sheet
-
-    def on_resize(self) -> None:
-        """Paint for the new size, all of it: the terminal may have cut what stands there."""
-        self._paint(self.app.size)
-        self.refresh()
-
-    def paint(self) -> None:
-        """Paint what the rows say now; the row in hand stays in hand while it is there."""
-        self._paint(self.app.size)
 
     def point_at(self, name: str) -> None:
         """Take a row in hand, where it is there, and paint."""
@@ -111,7 +92,7 @@ class Roster(Overlay[tuple[str, str]]):
         """Take a row in hand, the first one where none has that name; for `act`, which changes what the rows are."""
         self._name, self._at, self._top = name, 0, 0
 
-    def _paint(self, size: Size) -> None:
+    def lines_for(self, size: Size) -> list[Line]:
         wide, height = size
         rows = self._rows(wide, self._field.text)
         self._keep(rows)
@@ -126,7 +107,7 @@ class Roster(Overlay[tuple[str, str]]):
         shown = [marked(c.shown, wide) if self._top + i == self._at else c.shown for i, c in enumerate(rows[self._top : self._top + room])]
         padding: list[Line] = [line("")] * (room - len(shown))
         keys = line((fit(self._keys(), wide), DIM))
-        self._sheet.show([*above, *head, *shown, *padding, *told, keys][:height], size)
+        return [*above, *head, *shown, *padding, *told, keys][:height]
 
     def _keep(self, rows: list[Choice]) -> None:
         names = [c.name for c in rows]

@@ -6,7 +6,6 @@ from collections.abc import Callable
 from dataclasses import replace
 
 from textual import events
-from textual.app import ComposeResult
 from textual.geometry import Size
 
 from tui import keying
@@ -14,7 +13,6 @@ from tui.line import BOLD, CURSOR, DIM, OVER, Line, clean, fit, line
 from tui.screens.overlay import Overlay
 from tui.screens.page import Answer, Page, text_body
 from tui.session import Entry
-from tui.widgets.sheet import Sheet
 
 LONGEST = 20_000
 """Characters of a line; the case says how many the whole may have."""
@@ -32,8 +30,6 @@ class Writing(Overlay[Text | None]):
 
     Parameters: question; title; notes, with line ends. A line end at the end of the notes stays.
     """
-
-    CSS = "Writing { layout: vertical; } #writing { height: 1fr; }"
 
     def __init__(self, question: str, title: str, notes: str) -> None:
         super().__init__()
@@ -53,18 +49,7 @@ class Writing(Overlay[Text | None]):
     def _said(self) -> Text:
         return self._lines[0].text, "\n".join(entry.text for entry in self._lines[1:])
 
-    def compose(self) -> ComposeResult:
-        """One sheet, painted before it is laid out, so that the screen is sent once."""
-        self._sheet = Sheet(id="writing")
-        self._paint(self.app.size)
-        yield self._sheet
-
-    def on_resize(self) -> None:
-        """Paint for the new size, all of it: the terminal may have cut what stands there."""
-        self._paint(self.app.size)
-        self.refresh()
-
-    def _paint(self, size: Size) -> None:
+    def lines_for(self, size: Size) -> list[Line]:
         wide, height = max(8, size.width), size.height
         self._room = room = max(1, height - 4)
         self._top = max(0, min(self._top, self._at - 1, len(self._lines) - 1 - room), self._at - room)
@@ -74,7 +59,7 @@ class Writing(Overlay[Text | None]):
         told = (f"notes, {count} characters" if count else "notes", OVER if count > LONGEST else DIM)
         keys = line((fit("Ctrl-S takes it; Escape leaves; Enter begins a line", wide), DIM))
         head = line((fit(clean(self._question), wide), BOLD))
-        self._sheet.show([head, self._shown(0, wide), line(told), *notes, *padding, keys][: max(height, 1)], size)
+        return [head, self._shown(0, wide), line(told), *notes, *padding, keys][: max(height, 1)]
 
     def _shown(self, i: int, wide: int) -> Line:
         entry, text = self._lines[i], clean(self._lines[i].text)
@@ -120,7 +105,7 @@ class Writing(Overlay[Text | None]):
             move()
         else:
             self._lines[self._at] = keying.press(self._lines[self._at], event.key, event.character, LONGEST)
-        self._paint(self.app.size)
+        self.paint()
 
     def _ask_to_leave(self) -> None:
         """Leave at once where nothing was written, else ask."""
@@ -149,4 +134,4 @@ class Writing(Overlay[Text | None]):
         for text in rest:
             self._split()
             self._lines[self._at] = keying.insert(self._lines[self._at], text, LONGEST)
-        self._paint(self.app.size)
+        self.paint()
