@@ -22,10 +22,11 @@ Stamp = tuple[str, int, int]
 
 @dataclass(frozen=True, slots=True)
 class Entry:
-    """A file of the folder. held: the journals with unsaved work of it, newest first."""
+    """A file of the folder. real: its path without links; held: the journals with unsaved work of it, newest first."""
 
     name: str
     path: str
+    real: str
     changed: float
     stamp: Stamp
     held: tuple[Held, ...] = ()
@@ -46,7 +47,7 @@ class Solved:
 
 
 def listing(folder: str) -> tuple[Entry, ...]:
-    """The case files of a folder by name. Errors: OSError."""
+    """The case files of a folder by name, at most `sources.MOST_FILES`. Errors: OSError."""
     held = by_case()
     found = []
     for name in sources.names(folder, (".toml",)):
@@ -54,8 +55,8 @@ def listing(folder: str) -> tuple[Entry, ...]:
         status = _status(path)
         if status is None:
             continue
-        stamp = (path, status.st_mtime_ns, status.st_size)
-        found.append(Entry(name, path, status.st_mtime, stamp, held.get(os.path.realpath(path), ())))
+        stamp, real = (path, status.st_mtime_ns, status.st_size), os.path.realpath(path)
+        found.append(Entry(name, path, real, status.st_mtime, stamp, held.get(real, ())))
     return tuple(found)
 
 

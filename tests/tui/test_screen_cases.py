@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+import os
+import threading
 from pathlib import Path
 from urllib.parse import unquote
 
@@ -10,7 +12,7 @@ import pytest
 import cycle
 from tests.tui.screen_support import Driver, opened, to_input
 from tests.tui.test_screen_parts import TEXT
-from tui import journal, keeping, trash
+from tui import journal, keeping, sources, trash
 from tui.keeping import Kept
 from tui.screens.main import MainScreen
 from tui.screens.page import Page
@@ -346,3 +348,45 @@ async def test_list_and_writing_stand_at_every_size(path: Path, size: tuple[int,
         await driver.until(lambda: "opened" in driver.screen() or size[0] < 40)
         await driver.press("q")
         await driver.until(lambda: isinstance(driver.app.screen, MainScreen))
+
+
+async def test_a_long_folder_is_cut_and_says_so(path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    monkeypatch.setattr(sources, "MOST_FILES", 3)
+    async with opened(path) as driver:
+        await driver.settled()
+        await listed(driver)
+        assert "no more than 3 cases of a folder are listed" in driver.screen()
+
+
+async def test_names_with_line_ends_and_escapes_are_shown_and_opened(path: Path) -> None:
+    odd = path.with_name("a\x1b[31m\nb.toml")
+    odd.write_text(OTHER)
+    os.symlink("loop.toml", path.with_name("loop.toml"))
+    path.with_name("binary.toml").write_bytes(bytes(range(256)) * 100)
+    async with opened(path) as driver:
+        await driver.settled()
+        await listed(driver)
+        assert "\x1b" not in driver.screen() and "a?[31m b" in driver.screen()
+        await point(driver, odd.name)
+        await driver.press("enter")
+        await driver.settled()
+        assert driver.session.path == str(odd)
+
+
+async def test_what_became_of_a_file_is_told_where_the_list_is_left_by_then(path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    hold = threading.Event()
+
+    def refuse(file: str) -> None:
+        hold.wait(10)
+        raise PermissionError(13, "permission denied")
+
+    monkeypatch.setattr(trash, "throw_away", refuse)
+    async with opened(path) as driver:
+        await driver.settled()
+        await listed(driver)
+        await point(driver, "other.toml")
+        await driver.press("d")
+        await driver.until(lambda: isinstance(driver.app.screen, Page))
+        await driver.press("d", "escape")
+        hold.set()
+        await driver.until(lambda: "not deleted: permission denied" in driver.session.note)

@@ -7,7 +7,7 @@ from collections.abc import Callable
 from dataclasses import replace
 from typing import TYPE_CHECKING, Any
 
-from tui import folder, journal, keeping, trash
+from tui import folder, journal, keeping, sources, trash
 from tui.actions import key_of
 from tui.engine import Engine, Result
 from tui.errands import Errands
@@ -97,7 +97,9 @@ class Shelf:
             self._said = said if error is None else f"the folder cannot be read: {trouble(error)}"
             first = not self._entries
             self._entries = found or ()
-            if (first or hand) and self._list is not None:
+            if len(self._entries) == sources.MOST_FILES:
+                self._said = f"{said}; " * bool(said) + f"no more than {sources.MOST_FILES} cases of a folder are listed"
+            if (first or hand) and self._list is not None and self._list.is_attached:
                 self._list.point_at(hand or os.path.basename(self._session.path))
             for entry in self._entries:
                 if entry.stamp not in self._solved:
@@ -129,7 +131,8 @@ class Shelf:
 
     def _rows(self, wide: int, text: str) -> list[Choice]:
         system = self._session.system
-        shown = (cases.row(e, self._solved.get(e.stamp), self._here(e.path), system, wide) for e in self._entries)
+        here = os.path.realpath(self._session.path) if self._session.path else ""
+        shown = (cases.row(e, self._solved.get(e.stamp), e.real == here, system, wide) for e in self._entries)
         return [Choice(e.name, row) for e, row in zip(self._entries, shown, strict=True)]
 
     def _entry(self, name: str) -> Entry | None:
@@ -164,7 +167,7 @@ class Shelf:
             self._acts[key](entry)
 
     def _do(self, job: Callable[[], Any], failing: str, done: Callable[[Any], str], target: str = "") -> None:
-        """Change files in the worker, then read the folder again.
+        """Change files in the worker, then read the folder again; where the list is left by then the answer line tells it.
 
         Parameters: job; failing, what is said before the reason where it fails; done, told what the job gave, gives what is said then;
         target, path of the file to take in hand then, "" for the one that is.
@@ -172,11 +175,13 @@ class Shelf:
 
         def then(found: Any, error: BaseException | None) -> None:
             if isinstance(error, FileExistsError):
-                self._look(f"{failing}: there is a file of that name")
-            elif error is not None:
-                self._look(f"{failing}: {clean(trouble(error))}")
+                said = f"{failing}: there is a file of that name"
             else:
-                self._look(done(found), os.path.basename(target))
+                said = done(found) if error is None else f"{failing}: {clean(trouble(error))}"
+            if self._list is not None and self._list.is_attached:
+                self._look(said, os.path.basename(target) if error is None else "")
+            else:
+                self._desk.put(replace(self._session, note=clean(said)))
 
         self.filing.ask(job, then)
 
