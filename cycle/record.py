@@ -302,7 +302,7 @@ def _check_figures(walk: Json, file: str) -> None:
 
 def _check_table(table: Json, keys: Iterable[str], where: str, file: str) -> None:
     for key in keys:
-        if not _is_figure(table.get(key)):
+        if not is_figure(table.get(key)):
             raise _fault(file, f"{where}.{key}", "neither a number nor null", repr(table.get(key))[:40])
 
 
@@ -330,22 +330,23 @@ def case_value(case: Json, entry: Input) -> Any:
     return table.get(entry.name) if isinstance(table, dict) else _NO_TABLE
 
 
-def _is_figure(value: Any) -> bool:
+def is_figure(value: Any) -> bool:
+    """Whether something in a record can be a figure: a number that a float can hold, or None for none. Parameters: value, plain data."""
     return value is None or (isinstance(value, int | float) and not isinstance(value, bool) and abs(value) <= sys.float_info.max)
 
 
 def _is_row(row: Any) -> bool:
-    return isinstance(row, dict) and all(_is_figure(x) and x is not None for x in row.values())
+    return isinstance(row, dict) and all(is_figure(x) and x is not None for x in row.values())
 
 
 LONGEST_TABLE = max(i.most for i in INPUTS)
 _KINDS: dict[str, Callable[[Any], bool]] = {
-    "number": _is_figure,
+    "number": is_figure,
     "choice": lambda value: isinstance(value, str),
     "text": lambda value: isinstance(value, str),
     "flag": lambda value: isinstance(value, bool),
     "rows": lambda value: isinstance(value, list) and len(value) <= LONGEST_TABLE and all(_is_row(row) for row in value),
-    "fractions": lambda value: isinstance(value, dict) and all(_is_figure(x) and x is not None for x in value.values()),
+    "fractions": lambda value: isinstance(value, dict) and all(is_figure(x) and x is not None for x in value.values()),
 }
 
 

@@ -13,7 +13,7 @@ from typing import TYPE_CHECKING, Any
 
 from cycle.atomic import read_file
 from cycle.errors import CaseError, Fault
-from cycle.record import FORMAT, KIND, LARGEST_FILE, Json, Stored, case_of, is_stored, read_stored
+from cycle.record import FORMAT, KIND, LARGEST_FILE, Json, Stored, case_of, is_figure, is_stored, read_stored
 from tui import figures, keeping
 from tui.figures import NAN, PERFORMANCE_KEYS, STATION_KEYS, STATIONS, Figures, Passage
 from tui.keeping import Kept
@@ -139,7 +139,7 @@ def _apart(stored: Stored) -> str:
 
 
 def _number(value: Any) -> float:
-    return float(value) if isinstance(value, int | float) and not isinstance(value, bool) else NAN
+    return float(value) if value is not None and is_figure(value) else NAN
 
 
 def _numbers(table: Mapping[str, Any], keys: Iterable[str]) -> dict[str, float]:

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import json
+import math
 import os
 from pathlib import Path
 from typing import Any
@@ -11,6 +12,7 @@ from urllib.parse import unquote_to_bytes
 import pytest
 
 import cycle
+from cycle.record import read_stored, stored
 from tests.tui.test_screen_parts import TEXT
 from tui import folder, journal, keeping, sources, trash, writing
 from tui.journal import Journal, Left
@@ -178,3 +180,13 @@ def test_a_link_is_moved_as_a_link(path: str, monkeypatch: pytest.MonkeyPatch) -
 def test_a_picture_of_a_case_whose_name_is_no_text_is_written(tmp_path: Path) -> None:
     got = writing.write(str(tmp_path / "a"), "<svg>\udcff</svg>", "x")
     assert Path(got.drawing).read_text(encoding="utf-8") == "<svg>?</svg>"
+
+
+@pytest.mark.parametrize("wrong", [10**400, "x", [], {}, True, None])
+def test_a_stored_figure_that_is_no_number_has_no_value(path: str, wrong: Any) -> None:
+    """Mole fractions and profiles are not judged when a stored walk is read: whatever stands there is shown as none."""
+    item = json.loads(json.dumps(stored(cycle.solve(cycle.load(path)), cycle.__version__)))
+    item["walk"]["stations"]["4"]["mole_fractions"]["H2O"] = wrong
+    item["walk"]["profile"] = {"x": [0.0, wrong]}
+    found = sources.of_stored(read_stored(json.dumps(item).encode(), "a file")[0]).figures
+    assert math.isnan(found.fractions["4"]["H2O"]) and math.isnan(found.profile["x"][1])
