@@ -16,7 +16,7 @@ from cycle.flow import gas_shocks, roots
 from cycle.flowpath import assembly, combustor, inlet_limits
 from cycle.flowpath.inlet_limits import Bound
 from cycle.flowpath.setting import Setting
-from cycle.flowpath.stream import SOLVED, Stream
+from cycle.flowpath.stream import Stream
 from cycle.gas.species import HIGHEST, LOWEST
 from cycle.walk import March
 
@@ -329,8 +329,3 @@ def largest_heat(walked: March, ceiling: float) -> float:
         return np.nan
     low, high = tried[choked[0] - 1], tried[choked[0]]
     return float(roots.bracketed(room, np.array([low]), np.array([high]), 1e-9)[0])
-
-
-def is_solved(walked: March) -> bool:
-    """Whether every point has a solution."""
-    return bool(np.all(walked.status == SOLVED))

@@ -37,11 +37,6 @@ class Report:
     agrees: bool
     words: str
 
-    @property
-    def worst_temperature(self) -> float:
-        """Largest temperature deviation, K; NaN without rows."""
-        return max((r.temperature for r in self.rows if np.isfinite(r.temperature)), default=np.nan)
-
 
 def report(march: March) -> Report:
     """Recompute every station of up to `SAMPLE` solved points; slow, and it imports cantera."""

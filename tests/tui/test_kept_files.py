@@ -5,6 +5,7 @@ from __future__ import annotations
 import json
 import math
 import os
+from dataclasses import replace
 from pathlib import Path
 from typing import Any
 from urllib.parse import unquote_to_bytes
@@ -14,12 +15,12 @@ import pytest
 import cycle
 from cycle.record import read_stored, stored
 from tests.tui.test_screen_parts import TEXT
-from tui import folder, journal, keeping, sources, trash, writing
+from tui import figures, folder, journal, keeping, plots, sources, trash, writing
 from tui.journal import Journal, Left
 from tui.keeping import Kept
 from tui.screens.filing import read, replay
-from tui.session import Session, is_change, loaded
-from tui.views import cases
+from tui.session import Pin, Session, is_change, loaded, with_figures
+from tui.views import cases, pictures
 
 DEEP = "[" * 100_000
 
@@ -190,3 +191,16 @@ def test_a_stored_figure_that_is_no_number_has_no_value(path: str, wrong: Any) -
     item["walk"]["profile"] = {"x": [0.0, wrong]}
     found = sources.of_stored(read_stored(json.dumps(item).encode(), "a file")[0]).figures
     assert math.isnan(found.fractions["4"]["H2O"]) and math.isnan(found.profile["x"][1])
+
+
+def test_a_stored_speed_beyond_all_measure_can_be_drawn(path: str) -> None:
+    case = cycle.load(path)
+    item = json.loads(json.dumps(stored(cycle.solve(case), cycle.__version__)))
+    item["walk"]["stations"]["4"]["velocity"] = -1e300
+    found = sources.of_stored(read_stored(json.dumps(item).encode(), "a file")[0])
+    now = loaded(Session(path), case, case.stamp)
+    now = with_figures(now, now.generation, figures.solve(case))
+    pinned = replace(now, pin=Pin(found.label, found.case, found.figures, found.stored, chosen=True))
+    for view in pictures.views(pinned):
+        for quantity in view.items or ("",):
+            assert plots.draw(view.drawn(pinned, quantity, False), 80, 20, plots.depth_of_terminal({}), plots.glyphs_of({}, "utf-8"))

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Callable
-from dataclasses import dataclass, replace
+from dataclasses import dataclass
 
 from textual import events
 from textual.geometry import Size
@@ -170,8 +170,3 @@ class Roster(Overlay[tuple[str, str]]):
             self._field = keying.insert(self._field, event.text)
             self._name, self._at = "", 0
             self.paint()
-
-    def type_in(self, text: str) -> None:
-        """Put a text into the field, as if it had been typed."""
-        self._field = replace(self._field, text=text, caret=len(text))
-        self.paint()

@@ -173,7 +173,7 @@ def enthalpy_velocity(session: Session, item: str, log: bool) -> Chart:
     station. Parameters: as for `along_duct`; item is not used."""
 
     def kinetic(found: Figures, station: str) -> float:
-        return show(0.5 * found.at(station, "velocity") ** 2, "specific energy", session.system)[0]
+        return show(0.5 * found.at(station, "velocity") * found.at(station, "velocity"), "specific energy", session.system)[0]
 
     enthalpy = _at("enthalpy", session)
     series, spots = _path(session, kinetic, enthalpy)
