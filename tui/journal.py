@@ -34,13 +34,25 @@ def state_directory() -> Path:
 
     Errors: OSError where there is no home folder.
     """
-    given = os.environ.get("XDG_STATE_HOME", "")
+    return user_folder("XDG_STATE_HOME", ".local", "state") / "ductwalk"
+
+
+def user_folder(variable: str, *below: str) -> Path:
+    """A folder of the user's own.
+
+    Parameters: variable, of the environment, counts where it is an absolute path (XDG Base Directory specification); below, the
+    folder's place under the home folder else. Errors: OSError where there is no home folder.
+    """
+    given = os.environ.get(variable, "")
     if os.path.isabs(given):
-        return Path(given) / "ductwalk"
+        return Path(given)
     try:
-        return Path.home() / ".local" / "state" / "ductwalk"
+        home = Path.home()
     except RuntimeError as error:
         raise OSError("no home folder") from error
+    if not home.is_absolute():
+        raise OSError("no home folder")
+    return home.joinpath(*below)
 
 
 def is_path(given: Any) -> bool:

@@ -19,6 +19,7 @@ from cycle.atomic import read_file
 from cycle.errors import Fault
 from cycle.errors import shown as quoted
 from tui.actions import ACTIONS, Action, bound
+from tui.journal import user_folder
 
 NAMED = (
     "up", "down", "left", "right", "pageup", "pagedown", "home", "end", "insert", "delete", "backspace", "enter", "escape", "space", "tab",
@@ -56,9 +57,10 @@ class Keymap:
 
 def path() -> str:
     """The file of keys: `$XDG_CONFIG_HOME/ductwalk/keys.toml`, else under `~/.config`; "" where there is no home."""
-    given = os.environ.get("XDG_CONFIG_HOME", "")
-    base = given if os.path.isabs(given) else os.path.join(os.path.expanduser("~"), ".config")
-    return os.path.join(base, "ductwalk", "keys.toml") if os.path.isabs(base) else ""
+    try:
+        return str(user_folder("XDG_CONFIG_HOME", ".config") / "ductwalk" / "keys.toml")
+    except OSError:
+        return ""
 
 
 def read() -> Keymap:

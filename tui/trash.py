@@ -17,7 +17,7 @@ from pathlib import Path
 from urllib.parse import quote
 
 from cycle.atomic import new_file, read_file
-from tui.journal import state_directory
+from tui.journal import state_directory, user_folder
 
 LARGEST = 64 * 1024 * 1024
 """Bytes of a file that is moved to another file system at most."""
@@ -34,13 +34,7 @@ class Thrown:
 
 def home_trash() -> Path:
     """The user's trash. Errors: OSError where there is no home folder."""
-    given = os.environ.get("XDG_DATA_HOME", "")
-    if os.path.isabs(given):
-        return Path(given) / "Trash"
-    try:
-        return Path.home() / ".local" / "share" / "Trash"
-    except RuntimeError as error:
-        raise OSError("no home folder") from error
+    return user_folder("XDG_DATA_HOME", ".local", "share") / "Trash"
 
 
 def throw_away(path: str) -> Thrown:
