@@ -183,8 +183,9 @@ def _solved(cases: Sequence[Case], outputs: Sequence[str]) -> list[_Corner]:
             varying.add(entry.key)  # else it would follow in the batch where some of the cases give it
     arrays: dict[str, ArrayLike] = {key: np.array([case.numbers[key] for case in cases]) for key in first.numbers if key in varying}
     walk = solve(first, arrays)
-    figures = {key: np.ravel(walk.performance[key]).tolist() for key in outputs}
-    status, place = ([walk.status], [walk.failed_process]) if walk.shape == () else (walk.status, walk.failed_process)
+    # a swap may change nothing in a combination: then one walk stands for all
+    figures = {key: np.broadcast_to(walk.performance[key], len(cases)).tolist() for key in outputs}
+    status, place = (np.broadcast_to(np.array(words, dtype=object), len(cases)) for words in (walk.status, walk.failed_process))
     whys = ("" if found == "solved" else f"no solution, {found} ({where})" for found, where in zip(status, place, strict=True))
     return [_Corner({key: figures[key][i] for key in outputs}, why) for i, why in enumerate(whys)]
 

@@ -153,6 +153,22 @@ def test_a_lost_side_a_rig_and_a_twin_have_no_shares() -> None:
     assert shares(quick, quick).why_not == "the inputs do not differ"
 
 
+def test_a_swap_that_changes_nothing_in_some_combinations_has_its_share_of_the_others() -> None:
+    """Humid air is none of a constant-gamma case: with the gas swapped, air of either side is the same case."""
+    a = cycle.load(ROOT / "cases" / "lantern.toml").replace(
+        {"combustor.equivalence_ratio": None, "combustor.fuel_air_ratio": 0.02, "air.relative_humidity": 0.5, "nozzle.chemistry": None}
+    )
+    a = a.replace({"gas.model": "frozen"})
+    b = a.replace({"gas.model": "constant-gamma", "air.relative_humidity": None})
+    assert taking(a, b, ["gas"]) == b
+    found = shares(a, b)
+    held(found)
+    dry = a.replace({"air.relative_humidity": None})
+    humid, without = (cycle.solve(case).performance.thrust for case in (a, dry))
+    (air,) = [part.shares["thrust"] for part in found.parts if part.groups == ("air",)]
+    assert air == pytest.approx(0.5 * (without - humid), rel=1e-6)
+
+
 def test_followers_keep_their_own_value_where_one_side_gives_it() -> None:
     a = cycle.loads(QUICK).replace({"gas.cp_compression": 1000.0})
     b = a.replace({"gas.cp_compression": 1050.0, "gas.cp_combustion": 1000.0, "flight.mach": 8.5})
