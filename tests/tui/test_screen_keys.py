@@ -93,7 +93,7 @@ def test_whatever_is_asked_no_key_has_two_actions_and_one_can_always_leave(asked
 
 async def test_remapped_keys_work_and_are_printed(file: Path) -> None:
     file.write_text('[keys]\nunits = ["z", "f6"]\nundo = "t"\nredo = ","\nhelp = "k"\n')
-    async with opened(CASES / "saltmarsh.toml") as driver:
+    async with opened(CASES / "saltmarsh.toml", size=(160, 24)) as driver:
         await driver.settled()
         await driver.press("tab")
         assert "t undo" in driver.screen().splitlines()[-1]
