@@ -15,6 +15,8 @@ import cycle
 from cycle.quantities import GROUPS, INPUT, INPUTS, MODES, OUTPUTS, STATUSES
 
 ROOT = Path(__file__).parents[1]
+LONGEST = 400
+"""Lines of a file."""
 
 
 def child(code: str) -> set[str]:
@@ -30,6 +32,15 @@ def test_import_arrows_point_down() -> None:
     tool = Path(sys.executable).parent / "lint-imports"
     run = subprocess.run([str(tool), "--no-cache"], capture_output=True, text=True, cwd=ROOT)
     assert run.returncode == 0, run.stdout + run.stderr
+
+
+def test_no_file_is_longer_than_can_be_read_at_once() -> None:
+    long = {str(p): n for d in ("cycle", "tui", "tests", "benchmarks") for p in (ROOT / d).rglob("*.py") if (n := lines_of(p)) > LONGEST}
+    assert not long
+
+
+def lines_of(path: Path) -> int:
+    return len(path.read_text(encoding="utf-8").splitlines())
 
 
 def test_importing_the_model_pulls_in_nothing_heavy() -> None:
