@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from pathlib import Path
+
 import numpy as np
 import pytest
 
@@ -78,3 +80,11 @@ def test_fuel_sweep_is_smooth_but_where_the_mode_changes(changes: dict[str, floa
     assert 1 <= changed.sum() <= MOST_CHANGES, list(dict.fromkeys(walk.mode))
     assert steps.size > 300 and steps.max() < SMOOTH
     assert np.array_equal(np.isfinite(impulse), walk.status == "solved")
+
+
+def test_every_point_close_to_unstart_finds_where_its_core_fills_the_duct() -> None:
+    """The search closes by secants on the last digits, too: halving from its tenth turn on would leave one point in ten open."""
+    case = cycle.load(Path(__file__).parents[1] / "cases" / "tidegate.toml").replace({"isolator.momentum_thickness": None})
+    unstart = cycle.solve(case).heat_limits["unstart"]
+    walk = cycle.solve(case, {"combustor.equivalence_ratio": unstart * (1.0 - np.linspace(1e-9, 3e-4, 60))})
+    assert set(walk.status) == {"solved"}

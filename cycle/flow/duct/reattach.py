@@ -16,7 +16,7 @@ from cycle.flow.duct.march import Branch, spot
 from cycle.flow.duct.scan import Scan
 from cycle.flow.duct.throat import Throat
 
-_TURNS = 40
+_TURNS = 48
 _SETTLED = 1e-11
 _STILL = 1e-12
 """Momentum that the core's friction moves in a round, over the impulse, at which it stands still."""
@@ -26,6 +26,8 @@ _SPARE = 1e-6
 """Room beside the bracket, over its length: the friction still moved while its ends were judged."""
 _SECANTS = 10
 """Turns after which the bracket is halved: it closes on a place where the momentum jumps."""
+_NEAR = 1e-8
+"""Momentum lacking, over the impulse, below which there is no jump and the secant has the last turns."""
 _BORDER = 1e-8
 """Momentum, over the impulse, that the critical flow's may fall short of the core's by rounding."""
 _TOO_MUCH = 1e-6
@@ -109,7 +111,8 @@ def _bracketed(duct: Duct, scan: Scan, up: Branch, low: Array, high: Array, x: A
         probe = np.where(miss < 0.0, np.minimum(x + 1e-3 * duct.end, high), np.maximum(x - 1e-3 * duct.end, low))
         secant = np.where(np.isfinite(step), x - step, probe)
         spare = _SPARE * (high - low)
-        inside = (secant >= low - spare) & (secant <= high + spare) & (turn < _SECANTS)
+        closes = (turn < _SECANTS) | (np.abs(miss) < _NEAR * duct.impulse)
+        inside = (secant >= low - spare) & (secant <= high + spare) & closes
         new = np.where(inside, np.clip(secant, 0.0, throat), 0.5 * (low + high))
         done |= ~wide | ((np.abs(new - x) < _SETTLED * duct.end) & (moved < _STILL * duct.impulse))
         if done.all():
