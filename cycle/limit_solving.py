@@ -19,7 +19,7 @@ from cycle import limits
 from cycle.arrays import Array
 from cycle.case import Case
 from cycle.case.moves import Refusal, moved
-from cycle.flowpath.setting import FIXED_IN_BATCH
+from cycle.flowpath.setting import why_fixed
 from cycle.quantities import STATUSES, Input, input_of
 from cycle.result import solve
 from cycle.units import format_number
@@ -126,8 +126,8 @@ def search(case: Case, limit: str, key: str) -> Iterator[Reached | None]:
     if not isinstance(now, int | float):
         yield _none(limit, spec, math.nan, f"{spec.label} has no value in this case")
         return
-    if key in FIXED_IN_BATCH and case.choices["fuel.identity"] == "formula":
-        yield _none(limit, spec, float(now), "what a fuel of your own is cannot vary within a batch")
+    if fixed := why_fixed(key, case.choices):
+        yield _none(limit, spec, float(now), fixed)
         return
     tried = _Tries(case, limit, spec, float(now))
     tried.take(tried.first())
@@ -171,7 +171,7 @@ class _Tries:
     def take(self, values: Array) -> None:
         """Try values: those that are in bounds and fit the case are walked in one batch."""
         fresh = [x for x in dict.fromkeys(values.tolist()) if x not in self.points]
-        changes = {x: moved(self.case, {self.spec.key: self._whole(x)}) for x in fresh}
+        changes = {x: moved(self.case, {self.spec.key: x}) for x in fresh}
         good = {x: change for x, change in changes.items() if not isinstance(change, Refusal)}
         self.points |= {x: _Point(x, math.nan, change.kind) for x, change in changes.items() if isinstance(change, Refusal)}
         if not good:
@@ -180,9 +180,6 @@ class _Tries:
         walk = solve(self.case, {k: np.array([change[k] for change in good.values()]) for k in keys})
         margins = self._margins(walk.march, list(walk.status))
         self.points |= {x: _Point(x, m, s) for x, m, s in zip(good, margins, walk.status, strict=True)}
-
-    def _whole(self, x: float) -> float:
-        return float(round(x)) if self.spec.whole else x
 
     def _margins(self, march: March, status: list[str]) -> list[float]:
         """Margins of a batch. Choking has none there: a choked point is beyond the limit, a solved one is not, and no more is known."""
@@ -220,7 +217,7 @@ class _Tries:
 
     def _is_narrow(self, gap: _Gap) -> bool:
         part = _NARROW if gap.signs else _NARROW_EDGE
-        return gap.width <= (1.0 if self.spec.whole else part * max(abs(gap.near.x), abs(gap.far.x), self.spec.step))
+        return gap.width <= part * max(abs(gap.near.x), abs(gap.far.x), self.spec.step)
 
     def _between(self, gap: _Gap, low: float, high: float) -> Array:
         """Points of the next batch: even ones, or where the margin is a number at both ends, dense about its straight line's zero."""

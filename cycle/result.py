@@ -15,7 +15,7 @@ from cycle.account import spread, usable
 from cycle.arrays import Array, ArrayLike
 from cycle.figures import Audit, Figures, Limit, Process, Residual, Row, Station, shaped
 from cycle.flowpath import assembly, combustor
-from cycle.flowpath.setting import FIXED_IN_BATCH, setting
+from cycle.flowpath.setting import setting, why_fixed
 from cycle.flowpath.stream import SOLVED, STATUS_NAMES
 from cycle.gas.state import State
 from cycle.quantities import INPUT, OUTPUTS, RESTORES, STATUSES
@@ -350,7 +350,7 @@ def solve(case: Case, changes: Mapping[str, ArrayLike] | None = None) -> Walk:
         from cycle.case import check_batch
 
         case, arrays = check_batch(case, changes)
-        _same_fuel(case, arrays)
+        _same_in_all(case, arrays)
     shape = np.broadcast_shapes(*(a.shape for a in arrays.values()))
     size = int(np.prod(shape, dtype=int))
     flat = {k: np.ascontiguousarray(np.broadcast_to(a, shape)).reshape(size) for k, a in arrays.items()}
@@ -358,15 +358,10 @@ def solve(case: Case, changes: Mapping[str, ArrayLike] | None = None) -> Walk:
     return Walk(case, march(asked), shape)
 
 
-def _same_fuel(case: Case, arrays: Mapping[str, Array]) -> None:
+def _same_in_all(case: Case, arrays: Mapping[str, Array]) -> None:
     from cycle.errors import CaseError, Fault
 
-    if case.choices["fuel.identity"] != "formula":
-        return
-    faults = [
-        Fault(case.name, key, "what a fuel of your own is cannot vary within a batch", "several values", "one value")
-        for key in FIXED_IN_BATCH
-        if key in arrays and np.ptp(arrays[key]) != 0.0
-    ]
+    varied = ((key, why_fixed(key, case.choices)) for key, values in arrays.items() if values.size and np.ptp(values))
+    faults = [Fault(case.name, key, why, "several values", "one value") for key, why in varied if why]
     if faults:
         raise CaseError(tuple(faults))

@@ -11,7 +11,7 @@ import numpy as np
 
 from cycle.case import Case
 from cycle.case.moves import Moved, Refusal, moved
-from cycle.flowpath.setting import FIXED_IN_BATCH
+from cycle.flowpath.setting import why_fixed
 from cycle.quantities import HEADLINE, Input, input_of
 from cycle.result import Walk, solve
 from cycle.walk import modes
@@ -147,8 +147,8 @@ def _without(case: Case, outputs: Sequence[str], here: _Point) -> Sensitivities:
 
 def _tried(case: Case, entry: Input, sign: int, apart: bool) -> Moved | Refusal:
     """The numbers of the point a step away, or why there is no such point."""
-    if entry.key in FIXED_IN_BATCH and case.choices["fuel.identity"] == "formula" and not apart:
-        return Refusal("apart", "what a fuel of your own is cannot vary within a batch")
+    if (fixed := why_fixed(entry.key, case.choices)) and not apart:
+        return Refusal("apart", fixed)
     value = case.numbers[entry.key]
     # a step that takes all of a quantity which cannot be negative says nothing about its neighbourhood
     if sign < 0 and _positive(entry) and 0.0 < value <= entry.step * (1.0 + 1e-9):
@@ -166,7 +166,7 @@ Places = Mapping[tuple[str, int], Moved]
 
 def _solved(case: Case, asked: Places, outputs: Sequence[str]) -> dict[tuple[str, int], _Point]:
     """The points asked for: one batch, and one by one those that cannot be in it."""
-    alone = {place for place in asked if place[0] in FIXED_IN_BATCH and case.choices["fuel.identity"] == "formula"}
+    alone = {place for place in asked if why_fixed(place[0], case.choices)}
     found = {place: _points(solve(case.replace(asked[place])), outputs)[0] for place in asked if place in alone}
     together = [place for place in asked if place not in alone]
     if together:

@@ -18,7 +18,7 @@ import numpy as np
 from cycle.case import INPUT_GROUPS, Case, differences, taking
 from cycle.case.difference import group_of
 from cycle.errors import CaseError
-from cycle.flowpath.setting import FIXED_IN_BATCH
+from cycle.flowpath.setting import why_fixed
 from cycle.quantities import HEADLINE, INPUTS
 from cycle.result import solve
 
@@ -169,9 +169,9 @@ def _corners(a: Case, b: Case, groups: Sequence[str], outputs: Sequence[str], mo
 
 def _likeness(case: Case) -> object:
     """What cases must have in common to be solved in one batch."""
-    fuel = tuple(case.numbers.get(key) for key in FIXED_IN_BATCH) if case.choices["fuel.identity"] == "formula" else ()
+    fixed = tuple(value for key, value in sorted(case.numbers.items()) if why_fixed(key, case.choices))
     parts = (case.choices, case.texts, case.fractions)
-    return (*(tuple(sorted(part.items())) for part in parts), frozenset(case.numbers), fuel, case.numbers.get("combustor.slices"))
+    return (*(tuple(sorted(part.items())) for part in parts), frozenset(case.numbers), fixed)
 
 
 def _solved(cases: Sequence[Case], outputs: Sequence[str]) -> list[_Corner]:

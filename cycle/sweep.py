@@ -14,7 +14,7 @@ from cycle.case import Case
 from cycle.case.moves import Moved, Refusal, moved
 from cycle.case.rules import outside
 from cycle.errors import CaseError, Fault
-from cycle.flowpath.setting import FIXED_IN_BATCH
+from cycle.flowpath.setting import why_fixed
 from cycle.quantities import HEADLINE, OUTPUTS, Input, input_of
 from cycle.result import Walk, solve
 from cycle.walk import modes
@@ -104,8 +104,8 @@ def _axis(case: Case, key: str, values: Sequence[float]) -> Axis:
     file = case.path or case.name
     if entry is None or entry.kind != "number":
         raise CaseError([Fault(file, key, "not an input that takes numbers", key, "the key of a number input")])
-    if entry.whole or (key in FIXED_IN_BATCH and case.choices["fuel.identity"] == "formula"):
-        raise CaseError([Fault(file, key, "cannot vary within a batch")])
+    if fixed := why_fixed(key, case.choices):
+        raise CaseError([Fault(file, key, fixed)])
     inside = tuple(float(v) for v in values if math.isfinite(v) and not outside(entry, float(v)))
     if not inside:
         raise CaseError([Fault(file, key, "no value within the bounds")])

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import math
+from pathlib import Path
 
 import CoolProp.CoolProp as coolprop
 import numpy as np
@@ -11,6 +12,7 @@ import pytest
 import cycle
 from cycle.atmosphere import atmosphere
 from cycle.flowpath.flight import saturation_pressure
+from cycle.limit_solving import solve_for_limit
 
 BODY = """
 [gas]
@@ -139,6 +141,16 @@ def test_fuel_numbers_cannot_vary_within_a_batch() -> None:
     case = walk("mach = 6.0\naltitude = 26000.0", fuel=base).case
     with pytest.raises(cycle.CaseError, match="cannot vary within a batch"):
         cycle.solve(case, {"fuel.formation_enthalpy": np.array([5.2e4, 5.3e4])})
+
+
+def test_slices_cannot_vary_within_a_batch() -> None:
+    """All ducts of a batch are cut alike: with two numbers of slices one of them would not be the case asked for."""
+    case = cycle.load(Path(__file__).parents[1] / "cases" / "tidegate.toml")
+    with pytest.raises(cycle.CaseError, match="slices cannot vary within a batch"):
+        cycle.solve(case, {"combustor.slices": np.array([16.0, 48.0])})
+    assert cycle.solve(case, {"combustor.slices": np.array([48.0, 48.0])}).status.tolist() == ["solved", "solved"]
+    found = solve_for_limit(case, "unstart", "combustor.slices")
+    assert found.kind == "none" and "slices cannot vary" in found.words
 
 
 @pytest.mark.parametrize("model", ["frozen", "equilibrium"])

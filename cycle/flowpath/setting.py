@@ -86,8 +86,17 @@ _FUEL_NUMBERS = (
     "standard_entropy",
 )  # fmt: skip
 
-FIXED_IN_BATCH = tuple(f"fuel.{name}" for name in _FUEL_NUMBERS)
+_FIXED_IN_BATCH = tuple(f"fuel.{name}" for name in _FUEL_NUMBERS)
 """Numbers that make the fuel what it is where it has a formula: one value for a whole batch."""
+
+
+def why_fixed(key: str, choices: Mapping[str, str]) -> str:
+    """Why a number has one value for a whole batch, "" where it may vary. Parameters: key; choices of the case."""
+    if key == "combustor.slices":
+        return "the ducts of a batch are cut alike: slices cannot vary within a batch"
+    own = key in _FIXED_IN_BATCH and choices["fuel.identity"] == "formula"
+    return "what a fuel of your own is cannot vary within a batch" if own else ""
+
 
 _IDENTITY: dict[str, Callable[[Mapping[str, float], Mapping[str, str], Mapping[str, str]], Fuel | None]] = {
     "name": lambda numbers, choices, texts: FUELS[choices["fuel.name"]],
