@@ -112,10 +112,30 @@ async def test_a_limit_of_the_walk_before_is_not_searched_for_in_a_case_that_has
         await driver.press("s")
         assert driver.main._seeking is None and isinstance(driver.app.screen, Roster)
         assert "limits are being assessed" in driver.screen()
-        await driver.press("o")
-        assert driver.app.screen._heading() == "Limits by margin"
         hold.set()
         await driver.settled()
+        assert driver.main._seeking is None and driver.main._wanted is None and "data_high" not in driver.screen()
+
+
+async def test_a_search_asked_for_early_begins_when_the_limits_are_there(path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    assess, hold = figures.assess, threading.Event()
+
+    def slow(found: Figures) -> Figures:
+        hold.wait(10)
+        return assess(found)
+
+    async with opened(path) as driver:
+        await weighed(driver)
+        monkeypatch.setattr(figures, "assess", slow)
+        assert driver.main.change({"set": {"flight.mach": 8.1}})
+        await driver.until(lambda: driver.session.settled)
+        await to_list(driver, "w")
+        await to_row(driver, "ignition_temperature")
+        await driver.press("s")
+        assert driver.main._seeking is None and "limits are being assessed" in driver.screen()
+        hold.set()
+        await driver.until(lambda: isinstance(driver.app.screen, Page))
+        assert "gives margin 0" in driver.screen()
 
 
 async def test_stale_sensitivities_are_dropped_and_those_before_stand_dimmed(path: Path, monkeypatch: pytest.MonkeyPatch) -> None:

@@ -40,6 +40,8 @@ class Ranking(Desk, inherit_bindings=False):
 
     _seeking: Seeking | None = None
     _searches = 0
+    _wanted: tuple[str, str] | None = None
+    """Limit and input of a search that waits until the limits are those of the case."""
 
     def do_influence(self) -> None:
         """The list of all inputs by what their step does to the watched figure."""
@@ -124,7 +126,7 @@ class Ranking(Desk, inherit_bindings=False):
         )
 
     def _limits_done(self, chosen: tuple[str, str] | None) -> None:
-        self._seeking = None
+        self._seeking = self._wanted = None
         key, name = chosen or ("", "")
         goto = margins.limit(self.session, name) if key else None
         if goto is None:
@@ -139,7 +141,7 @@ class Ranking(Desk, inherit_bindings=False):
     def solve_limit(self, name: str) -> None:
         """Search for the value of the limit's own input, or of the one in hand, at which its margin is zero."""
         case, goto = self.session.case, margins.limit(self.session, name)
-        if case is None or goto is None or not self._limits_known:
+        if case is None or goto is None:
             return
         hand = items.in_hand(self.session)
         asked = (goto.input, hand.key if hand is not None else "")
@@ -152,8 +154,6 @@ class Ranking(Desk, inherit_bindings=False):
 
     def solve_by(self, name: str) -> None:
         """Ask by which input to reach the limit, then search along that one."""
-        if not self._limits_known:
-            return
         rows = lambda wide, text: _choices(margins.numbers(self.session, wide, text))  # noqa: E731
         list_ = Roster("Reach the limit by which input?", rows, (Verb("enter", "Enter", "solve by it"),), typing=True)
         self.app.push_screen(list_, lambda chosen: self._seek(name, chosen[1]) if chosen and chosen[1] else None)
@@ -161,10 +161,20 @@ class Ranking(Desk, inherit_bindings=False):
     def _seek(self, name: str, key: str) -> None:
         case = self.session.case
         assert case is not None
+        self._wanted = None if self._limits_known else (name, key)
+        if self._wanted is not None or margins.limit(self.session, name) is None:
+            self.repaint_list()
+            return
         self._searches += 1
         self._seeking = Seeking(self._searches, case, name, key, figures.reaching(case, name, key))
         self._ask_on(self._seeking)
         self.repaint_list()
+
+    def came(self, generation: int, found: figures.Figures) -> None:
+        """A walk, or its limits: a search that waited for them begins."""
+        super().came(generation, found)
+        if self._wanted is not None and self._limits_known:
+            self._seek(*self._wanted)
 
     def _ask_on(self, search: Seeking) -> None:
         self.engine.newest("limit", search.number, lambda: next(search.steps))
