@@ -232,10 +232,19 @@ def _copied(file: Path, path: str) -> tuple[int, Path]:
     """A copy of a journal for the case at `path`: its descriptor, locked, and its file."""
     head, _, rest = file.read_bytes().partition(b"\n")
     told = {**json.loads(head), "case": os.path.realpath(path)}
+    return _begun(path, json.dumps(told).encode() + b"\n" + rest, flushed=True)
+
+
+def _begun(path: str, data: bytes, flushed: bool) -> tuple[int, Path]:
+    """A new journal for the case at `path` with this in it: its descriptor, locked, and its file. Errors: OSError; there is none then.
+
+    flushed: whether to wait until it is on the disk.
+    """
     descriptor, new = _created(path)
     try:
-        _write(descriptor, json.dumps(told).encode() + b"\n" + rest)
-        os.fsync(descriptor)
+        _write(descriptor, data)
+        if flushed:
+            os.fsync(descriptor)
     except OSError:
         os.close(descriptor)
         new.unlink(missing_ok=True)
@@ -304,9 +313,8 @@ class Journal:
             self._dirty.set()
 
     def _open(self) -> None:
-        descriptor, self._file = _created(self.path)
         head = {"format": FORMAT, "case": os.path.realpath(self.path), "content": self.content}
-        _write(descriptor, (json.dumps(head) + "\n").encode())
+        descriptor, self._file = _begun(self.path, (json.dumps(head) + "\n").encode(), flushed=False)
         self._hold(descriptor)
 
     def _hold(self, descriptor: int) -> None:

@@ -118,21 +118,23 @@ def test_a_pin_that_could_not_be_written_is_spoilt(path: str, monkeypatch: pytes
 
 
 def test_a_record_that_did_not_fit_on_the_disk_leaves_no_half_line(path: str, monkeypatch: pytest.MonkeyPatch) -> None:
-    kept = Journal(path)
-    kept.append({"edit": 1})
-    write, calls = os.write, iter((4, None))
+    """Nor a file without a head where the disk is full from the beginning."""
+    write, written = os.write, [0]
 
     def full(descriptor: int, data: bytes) -> int:
-        if next(calls, None) is None:
+        written[0] += 1
+        if written[0] % 2 == 0:
             raise OSError(28, "no space left on device")
         return write(descriptor, data[:4])
 
-    monkeypatch.setattr(os, "write", full)
-    kept.append({"edit": 2})
-    assert "no space" in kept.failure
-    monkeypatch.setattr(os, "write", write)
-    kept.append({"edit": 3})
-    assert [held.records for held in journal.every()] == [2]
+    kept = Journal(path)
+    for record in ({"edit": 1}, {"edit": 2}, {"edit": 3}):
+        monkeypatch.setattr(os, "write", full)
+        kept.append(record)
+        assert "no space" in kept.failure and len(list(journal.state_directory().iterdir())) == (record != {"edit": 1})
+        monkeypatch.setattr(os, "write", write)
+        kept.append(record)
+    assert [held.edits for held in journal.every()] == [3]
     kept.remove()
 
 

@@ -116,7 +116,7 @@ class Ranking(Desk, inherit_bindings=False):
         search = self._seeking
         if search is not None and search.limit == name:
             return f"solving for {_label(search.key)} at margin 0 ... {search.done} batches of walks done"
-        if not self._limits_known:
+        if self._wanted is not None and self._wanted[0] == name:
             return ASSESSING
         goto = margins.limit(self.session, name)
         return (
