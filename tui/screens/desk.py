@@ -20,6 +20,9 @@ from tui.session import ASSESSING, SOLVING, Change, Session
 PAINT_EVERY = 0.25
 """Seconds between two paints while a step key is held."""
 
+MOMENT = 0.05
+"""Seconds that a single edit waits for its walk, so that both are one paint, before it is painted without."""
+
 PATIENCE = 0.1
 """Seconds that a step waits for its walk before it is painted without."""
 
@@ -142,6 +145,8 @@ class Desk(Screen[None], inherit_bindings=False):
             self._held, self._stepped = rapid and monotonic() - self._stepped < HELD, monotonic()
         if self._rapid:
             self._paint_within(max(PATIENCE, self._painted + PAINT_EVERY - monotonic()))
+        elif changed:
+            self._paint_within(MOMENT)
         else:
             self.paint_now()
 
