@@ -83,7 +83,7 @@ class Shelf:
         path = os.path.abspath(self._session.path or "case.toml")
         self._folder = path if os.path.isdir(path) else os.path.dirname(path)
         self._entries, self._said = (), "the folder is being read ..."
-        self._list = Roster(f"Cases of {self._folder}", self._rows, VERBS, head=self._head, told=self._told, act=self._act)
+        self._list = Roster(f"Cases of {cases.homely(self._folder)}", self._rows, VERBS, head=self._head, told=self._told, act=self._act)
         self._desk.app.push_screen(self._list, self._chosen)
         self._look("")
 

@@ -122,13 +122,14 @@ def recent_row(recent: Recent | None, path: str, held: Held | None, here: bool, 
     words = work(held, here) if held is not None else f"opened {when(recent.opened)}" if recent is not None else ""
     gone = "" if there else "missing  "
     room = max(10, wide - 46)
-    shown = _tail(_homely(path), room - 1)
+    shown = _tail(homely(path), room - 1)
     mark = "*" if held is not None else " "
     told = (fit(words, wide - room - 2 - len(gone)), PLAIN if there else DIM)
     return line(f"{mark} ", shown + " " * (room - width(shown)), (gone, OVER), told)
 
 
-def _homely(path: str) -> str:
+def homely(path: str) -> str:
+    """A path as printed, the home folder as ~."""
     home = os.path.expanduser("~")
     return clean("~" + path[len(home) :] if home != "~" and path.startswith(home + os.sep) else path)
 
