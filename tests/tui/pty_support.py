@@ -14,6 +14,8 @@ import ptyprocess
 import pyte
 
 ROOT = Path(__file__).resolve().parents[2]
+READY = "audit ok"
+"""Words of the screen when a walk is there and assessed."""
 START = "import sys; from tui.app import run; sys.exit(run(sys.argv[1]))"
 KEYS = {
     "up": "\x1b[A",

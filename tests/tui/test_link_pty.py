@@ -8,36 +8,15 @@ import shutil
 import subprocess
 import sys
 import time
-from collections.abc import Iterator
 from pathlib import Path
 
 import pytest
 
-from tests.tui.pty_support import ROOT, START, Terminal
+from tests.tui.pty_support import READY, ROOT, START, Terminal
 from tests.tui.test_screen_parts import TEXT
-from tests.tui.test_screen_pty import READY, cpu_seconds, ended_without_reading, journals
+from tests.tui.test_screen_pty import cpu_seconds, ended_without_reading, journals
 
 COMMAND = "import sys; from tui.commands import main; sys.exit(main(sys.argv[1:]))"
-
-
-@pytest.fixture
-def path(tmp_path: Path) -> Path:
-    file = tmp_path / "case.toml"
-    file.write_text(TEXT)
-    return file
-
-
-@pytest.fixture
-def env(tmp_path: Path) -> dict[str, str]:
-    return {"XDG_STATE_HOME": str(tmp_path / "state")}
-
-
-@pytest.fixture
-def terminal(path: Path, env: dict[str, str]) -> Iterator[Terminal]:
-    with Terminal([str(path)], env=env) as opened:
-        opened.wait(READY)
-        opened.settle()
-        yield opened
 
 
 def stall(terminal: Terminal) -> None:

@@ -8,36 +8,14 @@ import signal
 import subprocess
 import sys
 import time
-from collections.abc import Iterator
 from pathlib import Path
 
 import pytest
 
-from tests.tui.pty_support import ROOT, START, Terminal
+from tests.tui.pty_support import READY, ROOT, START, Terminal
 from tests.tui.test_screen_parts import TEXT
 
-READY = "audit ok"
 LEFT = b"\x1b[?1049l"
-
-
-@pytest.fixture
-def path(tmp_path: Path) -> Path:
-    file = tmp_path / "case.toml"
-    file.write_text(TEXT)
-    return file
-
-
-@pytest.fixture
-def env(tmp_path: Path) -> dict[str, str]:
-    return {"XDG_STATE_HOME": str(tmp_path / "state")}
-
-
-@pytest.fixture
-def terminal(path: Path, env: dict[str, str]) -> Iterator[Terminal]:
-    with Terminal([str(path)], env=env) as opened:
-        opened.wait(READY)
-        opened.settle()
-        yield opened
 
 
 def journals(env: dict[str, str]) -> list[Path]:
