@@ -82,7 +82,7 @@ def written(stated: Stated, system: str) -> str:
     """A value as the user wrote it, else in the display unit; "-" where an optional one is absent."""
     value = stated.value
     if stated.input.kind == "fractions":
-        return f"given, {len(value)} species" if isinstance(value, dict) and value else "standard"
+        return f"given, {len(value)} species" if isinstance(value, Mapping) and value else "standard"
     if value is None:
         return "-"
     if isinstance(value, bool):
@@ -137,7 +137,7 @@ def entry_for(item: Item, session: Session) -> Entry:
     """A field open on an input, its present value in it."""
     spec = item.input
     if spec is not None and spec.kind == "fractions":
-        given = item.value if isinstance(item.value, dict) else {}
+        given = item.value if isinstance(item.value, Mapping) else {}
         text = ", ".join(f"{name} {share:.6g}" for name, share in given.items())
     else:
         text = "" if item.written == "-" else item.written

@@ -17,7 +17,7 @@ NAMES = {
     "specific_thrust": "per kg air",
     "overall_efficiency": "overall",
     "stream_thrust_gain": "stream-thrust gain",
-    "total_temperature_rise_efficiency": "temperature rise",
+    "total_temperature_rise_efficiency": "eta_dT",
     "equivalence_ratio": "phi",
 }
 """Short names of headline figures; the others go by their label."""
