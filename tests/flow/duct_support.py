@@ -22,8 +22,10 @@ def constant(n: int) -> ConstantGas:
     return ConstantGas(np.full(n, CP), np.full(n, R))
 
 
-def perfect_duct(mach, x, ratio, *, heat=0.0, friction=0.0, theta=3.0, length=None, n=1, temperature=600.0, section="circular", width=None):
-    """Constant gamma; heat: J per kg of stream in full, released along the duct, without mass."""
+def perfect_duct(
+    mach, x, ratio, *, heat=0.0, friction=0.0, theta=3.0, length=None, n=1, temperature=600.0, section="circular", width=None, place=0.0
+):
+    """Constant gamma; heat: J per kg of stream in full, released along the duct from `place`, without mass."""
     gas = constant(n)
     state = gas.at("tp", np.full(n, temperature), np.full(n, 5e4))
     u = np.broadcast_to(np.asarray(mach, float), (n,)) * state.sound_speed
@@ -31,7 +33,7 @@ def perfect_duct(mach, x, ratio, *, heat=0.0, friction=0.0, theta=3.0, length=No
     return duct_of(
         gas, state.enthalpy + 0.5 * u**2, u, state.pressure, state.density * u * area, area,
         AreaLaw(np.asarray(x, float), np.asarray(ratio, float), section, width),
-        Injectors([0.0], [1.0], [0.0], [theta], None if length is None else [length]),
+        Injectors([place], [1.0], [0.0], [theta], None if length is None else [length]),
         Supply(None, np.ones(n), 0.0, heat, 1.0, 0.0), Walls(friction),
     )  # fmt: skip
 

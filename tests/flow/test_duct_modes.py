@@ -9,11 +9,14 @@ import pytest
 from hypothesis import given, settings
 from hypothesis import strategies as st
 
+from cycle.flow.duct import modes
 from cycle.flow.duct.core import find_train
+from cycle.flow.duct.march import march
 from cycle.flow.duct.margins import margins
 from cycle.flow.duct.modes import MODES, STATUSES, TRIED, solve_block
 from cycle.flow.duct.scan import scan_of
 from cycle.flow.duct.summits import CORNER, EXIT, SMOOTH
+from cycle.flow.duct.throat import candidates, throat
 from tests.flow.duct_support import perfect_duct, random_ducts
 
 NONE, SCRAMJET, TRAIN, THROAT = range(4)
@@ -210,13 +213,48 @@ def test_every_point_ends_in_a_mode_or_a_reason_and_refining_keeps_it(model, fue
     assert np.isnan(found.pressure_3[unsolved]).all()
 
 
-def test_two_critical_sections_without_a_continuous_flow_are_choked():
-    """Fuel staged so far apart that the flow chokes twice would need a shock between: no mode, and it says so."""
-    duct, limit = random_ducts(300, "constant-gamma", seed=5)
+def test_two_critical_sections_without_a_continuous_flow_have_no_mode():
+    """Fuel staged so far apart that the stream behind a shock train chokes again: no mode is consistent, and it says so."""
+    duct, limit = random_ducts(300, "frozen", "methane", seed=77)
     found = solve_block(duct, limit)
-    choked = (found.mode == NONE) & (found.status == STATUSES.index("choked"))
-    assert choked.any()
-    assert {TRIED[t] for t in found.throat[choked]} <= {"chokes", "no core meets it"}
+    without = (found.mode == NONE) & (found.status == STATUSES.index("no-mode"))
+    assert without.any()
+    assert {TRIED[t] for t in found.train[without]} == {"chokes"}
+    assert {TRIED[t] for t in found.throat[without]} <= {"chokes", "no core meets it"}
+
+
+@pytest.mark.parametrize("model", ["constant-gamma", "frozen", "equilibrium"])
+def test_what_is_found_does_not_move_with_the_density_of_the_scan(model, monkeypatch):
+    """Modes and exits with three times the panels in which critical sections and cores are looked for. 1e-6: the core's friction."""
+    duct, limit = random_ducts(400 if model != "equilibrium" else 100, model, seed=21)
+    found = solve_block(duct, limit)
+    monkeypatch.setattr(modes, "SCANNED", 3 * modes.SCANNED)
+    dense = solve_block(duct, limit)
+    assert (found.mode == dense.mode).all()
+    assert (found.status == dense.status).all()
+    assert dense.velocity == pytest.approx(found.velocity, rel=1e-6, nan_ok=True)
+    assert dense.x_throat == pytest.approx(found.x_throat, abs=1e-6, nan_ok=True)
+
+
+def test_a_branch_that_chokes_upstream_of_the_reattachment_is_no_matter():
+    """Ahead of the place where the core fills the duct the flow is separated: what an attached one would do there is nothing to it.
+    The exit's impulse has no jump and no gap over the heat."""
+    heat = np.linspace(1.0e6, 2.0e6, 200)
+    duct = perfect_duct(
+        2.0, [0.0, 0.15, 0.5, 0.8, 1.2], [1.0, 1.0, 1.8, 2.2, 3.3], heat=heat, theta=3.0, length=0.7, place=0.35, n=heat.size
+    )
+    found = solve_block(duct, np.full(heat.size, 1.0 + 0.3 * 2.0**2))
+    through = found.mode == THROAT
+    assert through.sum() > 40
+    assert (found.mode != NONE).all()
+    with np.errstate(all="ignore"):
+        scan = scan_of(duct)
+        at = throat(duct, scan, candidates(duct, scan), 0)
+        up = march(duct, at.x, np.zeros(heat.size), at.free, -np.ones(heat.size), scan, 12, graded=True)
+    assert (up.chokes & through).sum() > 20
+    exit_ = found.state.pressure * duct.area_at(np.full((1, heat.size), len(duct.edges) - 2), duct.end[None])[0]
+    exit_ = exit_ + duct.mass_flow * found.velocity
+    assert (np.abs(np.diff(exit_, 2)) < 1e-3 * exit_[1:-1]).all()
 
 
 @settings(max_examples=25, deadline=None)

@@ -134,8 +134,34 @@ def find_train(duct: Duct, scan: Scan) -> Train:
     if not some.size:
         return _nowhere(n)
     part, cut = (duct, scan) if some.size == n else (duct.take(some), scan.take(some))
-    found = _polished(part, cut, search.at[some], x[some], segment[some], smooth[some], lost[:, some])
+    found = _confirmed(part, cut, search.at[some], x[some], segment[some], smooth[some], lost[:, some])
     return found if some.size == n else _spread(found, some, n)
+
+
+_OVER = 1e-7
+"""Core area over the duct's, less 1, at which a core is too large."""
+
+_PLACES = 3
+
+
+def _confirmed(duct: Duct, scan: Scan, ln_p: Array, x: Array, segment: Codes, smooth: Flags, lost: Array) -> Train:
+    """Polish, then look at the whole core: where it is larger than the duct elsewhere, that is the place where it fills it."""
+    found = _polished(duct, scan, ln_p, x, segment, smooth, lost)
+    for _ in range(_PLACES):
+        w = np.flatnonzero(found.found)
+        if not w.size:
+            break
+        part, cut = duct.take(w), scan.take(w)
+        core = core_at(part, cut.mixture, found.pressure[w], core_friction(part, cut, found.pressure[w]).rows, None)
+        top = summits(cut.grid, core.ln_share, cut.grid.derivative(core.ln_share), np.ones(w.size), 1)
+        over = (core.ln_share.max(0) > _OVER) & (np.abs(top.x[0] - found.x[w]) > _WIDTH * part.end)
+        if not over.any():
+            break
+        v, tops = w[over], (top.x[0][over], top.segment[0][over], top.kind[0][over] == SMOOTH)
+        again = _polished(duct.take(v), scan.take(v), np.log(found.pressure[v]), *tops, lost[:, v])
+        for f in fields(Train):
+            getattr(found, f.name)[v] = getattr(again, f.name)
+    return found
 
 
 def _nowhere(n: int) -> Train:
@@ -195,6 +221,10 @@ class Lost:
 
     rows: Array
     state: State
+
+    def take(self, index: Codes) -> Lost:
+        """Of the chosen points."""
+        return Lost(self.rows[:, index], self.state.take(flat(len(self.rows), self.rows.shape[1], index)))
 
     def at(self, scan: Scan, segment: Codes, x: Array) -> Array:
         """N, at x (N,) m in a segment."""

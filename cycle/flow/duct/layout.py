@@ -6,6 +6,7 @@ corner of the area, injection plane and end of a burning law: inside a segment a
 
 from __future__ import annotations
 
+import math
 from collections.abc import Callable
 from dataclasses import dataclass, fields
 from typing import Any
@@ -134,7 +135,8 @@ class Duct:
     """A duct of N points and the stream that comes to it.
 
     Entering stream: gas, total_enthalpy J/kg, mass_flow kg/s, velocity m/s, pressure Pa, entry_area m2. edges: (K + 1, N)
-    of the segments, m; at their left ends, each (K, N): area m2, perimeter m (tabulated), and both slopes; injected: share
+    of the segments, m; grades: (G + 1, N), the edges and the places between which a burning law hardly
+    bends; at their left ends, each (K, N): area m2, perimeter m (tabulated), and both slopes; injected: share
     of the fuel upstream of a segment; brought: its axial impulse, N. Injectors: inject_x, share, theta, length (J, N).
     """
 
@@ -166,6 +168,7 @@ class Duct:
     theta: Array
     length: Array
     wall_temperature: Array
+    grades: Array
     cooling: Cooling | None = None
 
     @property
@@ -262,6 +265,19 @@ def _edges(places: Array) -> Array:
     return kept
 
 
+_BEND = 2.5
+"""Largest ratio of 1 + (theta - 1) X at the two ends of a panel: a polynomial follows the burning law there to about 1e-4."""
+
+
+def _grades(edges: Array, place: Array, length: Array, theta: Array) -> Array:
+    """The edges and, of each injector, the places that cut its burning law theta X/(1 + (theta - 1) X) into pieces of equal bend."""
+    steep = np.log(np.maximum(theta, 1.0 + 1e-9))
+    pieces = np.maximum(1.0, np.ceil(steep / math.log(_BEND)))
+    parts = (np.minimum(k / pieces, 1.0) for k in range(1, int(pieces.max())))
+    inner = [np.minimum(place + length * np.expm1(part * steep) / np.expm1(steep), edges[-1]) for part in parts]
+    return _edges(np.vstack([edges, *inner]))
+
+
 def _interpolated(table_x: Array, table_y: Array, edges: Array) -> tuple[Array, Array]:
     """Value at the left end and slope of each segment, (K, N), of a table linear between its entries (E, N)."""
     middle = 0.5 * (edges[1:] + edges[:-1])
@@ -309,6 +325,7 @@ def duct_of(
         perimeter, perimeter_slope, (entered * share[None]).sum(1),
         mass_flow * mass * f * (entered * (share * speed)[None]).sum(1), place, share, _rows(injectors.theta, n, count), length,
         _spread(np.nan if walls.temperature is None else walls.temperature, n),
+        _grades(edges, place, length, _rows(injectors.theta, n, count)),
     )  # fmt: skip
 
 

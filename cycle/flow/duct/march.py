@@ -44,7 +44,8 @@ _SONIC = 1e-14
 class Branch:
     """A march of N points. Rows: the start, then the nodes of each panel in the order marched, (1 + P s, N).
 
-    free: F - B at the rows, N; chokes: (N,) no flow on this branch; lost: (N,) not converged or outside the data.
+    free: F - B at the rows, N; chokes: (N,) no flow on this branch at the end; reach: (N,) panels from the start that have one; lost:
+    (N,) not converged or outside the data.
     """
 
     panels: Panels
@@ -53,7 +54,7 @@ class Branch:
     mixture: Mixture
     flow: OnLine
     free: Array
-    discriminant: Array
+    reach: Codes
     chokes: Flags
     lost: Flags
     rules: list[Rule]
@@ -63,7 +64,7 @@ class Branch:
         """The marches of the chosen points."""
         return Branch(
             self.panels.take(index), self.segment[:, index], self.x[:, index], self.mixture.take(index), self.flow.take(index),
-            self.free[:, index], self.discriminant[index], self.chokes[index], self.lost[index], self.rules,
+            self.free[:, index], self.reach[index], self.chokes[index], self.lost[index], self.rules,
             self.begin_free[index],
         )  # fmt: skip
 
@@ -71,6 +72,18 @@ class Branch:
     def passes(self) -> Flags:
         """(N,)."""
         return ~(self.chokes | self.lost)
+
+    @property
+    def on_the_way(self) -> Flags:
+        """Rows that have a flow, (1 + P s, N)."""
+        return _on_the_way(self.reach, self.panels.count)
+
+    @property
+    def blocked(self) -> Array:
+        """x m of the end of the first panel without a flow, of the last one where all have one, (N,)."""
+        at = np.minimum(self.reach, self.panels.count - 1), np.arange(self.reach.size)
+        end: Array = self.panels.start[at] + self.panels.length[at]
+        return end
 
     @property
     def sources(self) -> Array:
@@ -153,7 +166,7 @@ class Branch:
         last, before = np.abs(terms[:, 1]), np.abs(terms[:, 0])
         ratio = np.clip(last / np.maximum(before, 1e-300), 0.02, 1.0)
         left = np.abs(self.panels.length) * last * ratio ** (STAGES - 1)
-        total: Array = left.sum(0) / np.abs(self.flow.impulse[-1])
+        total: Array = np.where(np.arange(len(left))[:, None] < self.reach, left, 0.0).sum(0) / np.abs(self.flow.impulse[-1])
         return total
 
 
@@ -171,6 +184,17 @@ def _legendre_tail() -> dict[bool, Array]:
 def _rules(count: int, graded: bool) -> list[Rule]:
     """The first panel is graded where the march may start at Mach 1."""
     return [radau(graded)] + [radau(False)] * (count - 1)
+
+
+def _reach(room: Array, least: float) -> Codes:
+    """Panels from the start whose least discriminant, (P, N), is at least `least`, (N,)."""
+    count: Codes = np.logical_and.accumulate(room >= least, axis=0).sum(0)
+    return count
+
+
+def _on_the_way(reach: Codes, count: int) -> Flags:
+    panel = np.repeat(np.arange(-1, count), [1, *[STAGES] * count])
+    return panel[:, None] < reach
 
 
 def _by_panel(rows: Array) -> Array:
@@ -198,15 +222,14 @@ def _balance(rules: list[Rule], panels: Panels, mixture: Mixture, branch: Array)
 
 
 def _sweep(balance: _Balance, model: Model, free: Array, source: Array | None) -> tuple[Array, ...]:
-    """Velocities, F - B, sources at the rows and the least discriminant (N,), all nodes once in the order marched.
+    """Velocities and sources at the rows and the least discriminant of each panel (P, N), all nodes once in the order marched.
 
     source: of the last sweep, (1 + P s, N), or None.
     """
-    u, level, new = (np.empty(balance.a.shape) for _ in range(3))
-    worst = np.full(free.shape, np.inf)
+    u, new = np.empty(balance.a.shape), np.empty(balance.a.shape)
+    worst = np.full((len(balance.rules), free.size), np.inf)
 
     def solve(row: int, step: Array | float, known: Array) -> None:
-        nonlocal worst
         alpha = 1.0 - step * balance.a[row]
         middle = known + balance.brought[row] - alpha * model.c0[row]
         q2 = alpha * model.c1[row] + step * balance.b[row]
@@ -214,10 +237,10 @@ def _sweep(balance: _Balance, model: Model, free: Array, source: Array | None) -
         square = middle * middle
         left = square - 4.0 * q2 * q0
         if row:
-            worst = np.minimum(worst, left / square)
+            panel = (row - 1) // STAGES
+            worst[panel] = np.minimum(worst[panel], left / square)
         u[row] = (middle + balance.branch * np.sqrt(np.where(left > _SONIC * square, left, 0.0))) / (2.0 * q2)
         F = model.c0[row] + model.c1[row] * u[row] + model.c2[row] / u[row]
-        level[row] = F - balance.brought[row]
         new[row] = balance.a[row] * F - balance.b[row] * u[row]
 
     solve(0, 0.0, free)
@@ -231,7 +254,7 @@ def _sweep(balance: _Balance, model: Model, free: Array, source: Array | None) -
             solve(row, h * rule.sweep[j, j], known)
             row += 1
         free = free + h * (rule.integral[-1] @ new[first:row])
-    return u, level, new, worst
+    return u, new, worst
 
 
 def _solved(balance: _Balance, model: Model, free: Array, source: Array | None, tolerance: Array) -> tuple[Array, ...]:
@@ -239,7 +262,7 @@ def _solved(balance: _Balance, model: Model, free: Array, source: Array | None, 
     found = _sweep(balance, model, free, source)
     done = np.zeros(free.shape, np.bool_)
     for _ in range(_SWEEPS):
-        again = _sweep(balance, model, free, found[2])
+        again = _sweep(balance, model, free, found[1])
         change = np.abs(again[0][1:] / found[0][1:] - 1.0).max(0)
         found = tuple(np.where(done, a, b) for a, b in zip(found, again, strict=True)) if done.any() else again
         done = done | (change < tolerance) | ~np.isfinite(change)
@@ -248,22 +271,28 @@ def _solved(balance: _Balance, model: Model, free: Array, source: Array | None, 
     return found
 
 
-def march(duct: Duct, begin: Array, end: Array, free: Array, branch: Array, scan: Scan, count: int, graded: bool) -> Branch:
+def march(
+    duct: Duct, begin: Array, end: Array, free: Array, branch: Array, scan: Scan, count: int, graded: bool, partly: Flags | None = None
+) -> Branch:
     """March N points from begin to end (N,), m, on the supersonic (branch +1) or subsonic (-1) side.
 
-    free: F - B at begin, N (N,); scan: sonic states of the same points; count: panels, at least the segments on the way;
-    graded: whether the march may start at or near Mach 1. end may lie upstream of begin.
+    free: F - B at begin, N (N,); scan: sonic states of the same points; count: panels, at least the stretches between grades on the way;
+    graded: whether the march may start at or near Mach 1. end may lie upstream of begin. partly: (N,) points whose panels ahead of the
+    first one that chokes are solved all the same.
     """
-    panels = allot(duct.edges, begin, end, count)
+    partly = np.zeros(free.shape, np.bool_) if partly is None else partly
+    panels = allot(duct.edges, duct.grades, begin, end, count)
     rules = _rules(count, graded)
     x, segment = _rows(rules, panels)
     mixture = duct.mixture(segment, x)
     balance = _balance(rules, panels, mixture, branch)
     impulse, velocity = scan.sonic_at(segment, x)
     model = model_about_sonic(impulse, velocity)
-    u, _, source, worst = _solved(balance, model, free, None, np.full(free.shape, 1e-2))
-    done = worst < _FIRST_HOPELESS
-    hopeless = done.copy()
+    u, source, worst = _solved(balance, model, free, None, np.full(free.shape, 1e-2))
+    reach = _reach(worst, _FIRST_HOPELESS)
+    hopeless = (reach == 0) | ~partly & (reach < count)
+    done = hopeless.copy()
+    u = np.where(_on_the_way(np.where(partly, reach, count), count), u, velocity)
     flow = _states(mixture, u, model, scan.near(segment, x))
     tolerance = np.full(free.shape, 1e-5)
     for _ in range(ROUNDS):
@@ -273,17 +302,23 @@ def march(duct: Duct, begin: Array, end: Array, free: Array, branch: Array, scan
         part, cut = mixture.take(live), flow.take(live)
         bal = balance.take(live)
         refit = cut.model(part.mass_flow)
-        new, _, src, disc = _solved(bal, refit, free[live], source[:, live], tolerance[live])
-        change = np.abs(new[1:] / u[1:, live] - 1.0).max(0)
+        new, src, room = _solved(bal, refit, free[live], source[:, live], tolerance[live])
+        reach = _reach(room, _HOPELESS)
+        there = _on_the_way(np.where(partly[live], reach, count), count)
+        new = np.where(there, new, velocity[:, live])
+        change = np.where(there, np.abs(new / u[:, live] - 1.0), 0.0)[1:].max(0)
         tolerance[live] = np.clip(_AHEAD * change**2, _SWEPT, tolerance[live])
         renewed = _states(part, new, refit, cut.state)
         flow = renewed if live.size == free.size else _widen(flow, renewed, live)
-        u[:, live], source[:, live], worst[live] = new, src, disc
-        hopeless[live] |= disc < _HOPELESS
+        u[:, live], source[:, live], worst[:, live] = new, src, room
+        hopeless[live] |= (reach == 0) | ~partly[live] & (reach < count)
         done[live] = (change < _SETTLED) | ~np.isfinite(change) | hopeless[live]
-    chokes = hopeless | (worst < _CHOKES)
-    lost = ~chokes & (~done | ~flow.good.all(0) | ~np.isfinite(worst))
-    return Branch(panels, segment, x, mixture, flow, flow.impulse - mixture.brought, worst, chokes, lost, rules, free)
+    reach = _reach(worst, _CHOKES)
+    chokes = hopeless | (reach < count)
+    there = _on_the_way(reach, count)
+    unknown = ~hopeless & np.isnan(worst[np.minimum(reach, count - 1), np.arange(reach.size)])
+    lost = (partly | ~chokes) & (~done | ~(flow.good | ~there).all(0)) | unknown
+    return Branch(panels, segment, x, mixture, flow, flow.impulse - mixture.brought, reach, chokes, lost, rules, free)
 
 
 def spot(

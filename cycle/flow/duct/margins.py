@@ -38,7 +38,7 @@ def margins(duct: Duct, separation: Array, panels: int = PANELS) -> Margins:
     """Margins of N ducts, each with one critical section (the most demanding); separation: pressure ratio over p2 that
     separates, (N,)."""
     with np.errstate(all="ignore"):
-        return _margins(duct, separation, max(panels, duct.edges.shape[0] - 1))
+        return _margins(duct, separation, max(panels, duct.grades.shape[0] - 1))
 
 
 def _margins(duct: Duct, separation: Array, count: int) -> Margins:

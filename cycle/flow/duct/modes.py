@@ -19,7 +19,8 @@ from cycle.flow.duct.cooling import first_loss, lost_heat
 from cycle.flow.duct.core import Train, find_train
 from cycle.flow.duct.layout import Cooling, Duct
 from cycle.flow.duct.march import Branch, march, spot
-from cycle.flow.duct.reattach import reattachment, throat_lacks
+from cycle.flow.duct.reattach import Miss, miss_along, reattachment, throat_lacks
+from cycle.flow.duct.scan import PANELS as SCANNED
 from cycle.flow.duct.scan import Scan, scan_of
 from cycle.flow.duct.solution import (
     ATTACHED,
@@ -28,6 +29,7 @@ from cycle.flow.duct.solution import (
     LOST,
     MODES,
     NO_CORE,
+    NO_MODE,
     NO_PRESSURE,
     NO_START,
     NO_THROAT,
@@ -62,6 +64,9 @@ PANELS = 12
 _SURE = 0.02
 """Momentum lacking at the throat, over the impulse, above which no shock train needs to be looked for."""
 
+_FURTHER = 5
+"""Marches that close in on the place where a subsonic branch chokes, halving the way."""
+
 
 Kept = TypeVar("Kept", Train, Throat)
 
@@ -71,8 +76,8 @@ class Solver:
 
     def __init__(self, duct: Duct, separation: Array, panels: int, least: Codes) -> None:
         self.duct, self.separation, self.least = duct, separation, least
-        self.count = max(panels, duct.edges.shape[0] - 1)
-        self.scan = scan_of(duct)
+        self.count = max(panels, duct.grades.shape[0] - 1)
+        self.scan = scan_of(duct, self.count * SCANNED // PANELS)
         self.summits = candidates(duct, self.scan)
         self.found = nothing_yet(duct, self.scan, self.count)
         self.open = np.ones(duct.size, np.bool_)
@@ -147,45 +152,69 @@ class Solver:
         return throat(duct, scan, tops, rank)
 
     def try_throat(self) -> None:
-        """Both ways from the critical section; the candidates in turn until one marches through."""
+        """Both ways from the critical section; the candidates in turn until one stands."""
         for rank in range(CANDIDATES):
-            index = np.flatnonzero(self.open & (self.found.throat != NO_START) & self.summits.there[rank])
+            index = np.flatnonzero(self.open & self.summits.there[rank])
             if not index.size:
                 continue
             duct, scan = self.part(index)
             at = self._throat(index, duct, scan, rank)
             for graded in (False, True):
-                part = np.flatnonzero((at.kind != SMOOTH) == graded)
+                part = np.flatnonzero(at.there & ((at.kind != SMOOTH) == graded))
                 if part.size:
                     self._from_throat(index[part], duct.take(part), scan.take(part), _taken(at, part), graded)
         nowhere = self.open & (self.found.throat == NOT_TRIED)
         self.found.throat[nowhere] = NO_THROAT
 
     def _from_throat(self, index: Codes, duct: Duct, scan: Scan, at: Throat, graded: bool) -> None:
+        """March down to the exit, and up as far as the core is met: what chokes further up lies in the separated zone."""
         n = index.size
         twice = np.tile(np.arange(n), 2)
         both = march(
             duct.take(twice), np.tile(at.x, 2), np.concatenate([duct.end, np.zeros(n)]), np.tile(at.free, 2),
-            np.repeat([1.0, -1.0], n), scan.take(twice), self.count, graded,
+            np.repeat([1.0, -1.0], n), scan.take(twice), self.count, graded, np.repeat([False, True], n),
         )  # fmt: skip
         down, up = both.take(np.arange(n)), both.take(np.arange(n, 2 * n))
-        passes = down.passes & up.passes & at.there
-        needed = up.free[-1]
-        starts = needed <= duct.impulse
-        self.found.throat[index] = np.select([~passes & (down.lost | up.lost), ~passes], [UNSETTLED, CHOKES], NO_START)
-        w = index[passes]
-        self.found.x_throat[w], self.found.throat_kind[w] = at.x[passes], at.kind[passes]
-        self.found.needed[w] = needed[passes]
-        runs = np.flatnonzero(passes & starts)
-        if not runs.size:
-            return
-        index, duct, scan, up, down = index[runs], duct.take(runs), scan.take(runs), up.take(runs), down.take(runs)
-        fill = reattachment(duct, scan, up, _taken(at, runs))
-        self.found.throat[index] = np.where(fill.found, STANDS, NO_CORE)
-        w = index[fill.found]
-        self.found.pressure_3[w], self.found.x_fill[w] = fill.pressure[fill.found], fill.x[fill.found]
-        self.found.peak[w] = np.maximum(fill.pressure, down.flow.pressure.max(0))[fill.found]
-        self._book(index, fill.found, THROAT, [(up, False), (down, True)], fill.x, fill.pressure, fill.friction)
+        blocked = np.zeros(n)
+        for turn in range(_FURTHER + 1):
+            along = miss_along(duct, scan, up)
+            short = along.ends & ~up.lost & (turn < _FURTHER)
+            w = np.flatnonzero(~short)
+            if w.size:
+                self._judge(index[w], duct.take(w), scan.take(w), _taken(at, w), down.take(w), up.take(w), along.take(w))
+            w = np.flatnonzero(short)
+            if not w.size:
+                break
+            blocked = np.where(up.chokes, up.blocked, blocked)[w]
+            index, duct, scan, at, down = index[w], duct.take(w), scan.take(w), _taken(at, w), down.take(w)
+            head, one = 0.5 * (along.reached[w] + blocked), np.ones(w.size)
+            up = march(duct, at.x, head, at.free, -one, scan, self.count, graded, one > 0.0)
+
+    def _judge(self, index: Codes, duct: Duct, scan: Scan, at: Throat, down: Branch, up: Branch, along: Miss) -> None:
+        """What becomes of a critical section whose marches and momentum lacking are known."""
+        found, fails = self.found, ~down.passes
+        needs = (along.least >= 0.0) & (along.reached < at.x)
+        code = np.select([up.lost, needs, fails & down.lost, fails], [UNSETTLED, NO_START, UNSETTLED, CHOKES], NO_CORE)
+        needed = duct.impulse + along.least
+        runs = np.flatnonzero(code == NO_CORE)
+        if runs.size:
+            cut, own = duct.take(runs), scan.take(runs)
+            below, above, here = up.take(runs), down.take(runs), _taken(at, runs)
+            fill = reattachment(cut, own, below, here, along.take(runs))
+            meets: Flags = along.rises.any(0)
+            code[runs] = np.where(fill.found, STANDS, np.where(meets[runs], UNSETTLED, NO_CORE))
+            w = index[runs][fill.found]
+            found.pressure_3[w], found.x_fill[w] = fill.pressure[fill.found], fill.x[fill.found]
+            found.places[w] = fill.places[fill.found]
+            found.peak[w] = np.maximum(fill.pressure, above.flow.pressure.max(0))[fill.found]
+            self._book(index[runs], fill.found, THROAT, [(below, False), (above, True)], fill.x, fill.pressure, fill.friction)
+        old = found.throat[index]
+        first = (code == STANDS) | ~np.isin(old, [STANDS, NO_START])
+        nearer = (code == NO_START) & ((old != NO_START) | (needed < found.needed[index]))
+        takes = np.where(code == NO_START, nearer, first)
+        w = index[takes]
+        found.throat[w], found.x_throat[w], found.throat_kind[w] = code[takes], at.x[takes], at.kind[takes]
+        found.needed[w] = np.where(np.isin(code, [STANDS, NO_START]), needed, np.nan)[takes]
 
     def _book(self, index: Codes, good: Flags, mode: int, runs: list[tuple[Branch, bool]], fill: Array, p3: Array, friction: Array) -> None:
         """Write down the exit, the forces and the profile of the points where a mode stands."""
@@ -324,10 +353,10 @@ def _solved(duct: Duct, separation: Array, asked: str, panels: int, second: bool
     found = solver.found
     unsolved = found.mode == NONE
     outside = (scan_range(solver.scan) == 2).any(0)
-    settled = np.isin(found.throat, [CHOKES, NO_START, NO_CORE])
-    lost = ~settled & ((found.throat == UNSETTLED) | (found.attached == UNSETTLED) | (found.train == UNSETTLED))
-    rules = [outside, found.throat == NO_START, lost, np.full(duct.size, asked == "thermal-throat")]
-    found.status[unsolved] = np.select(rules, [OUTSIDE, UNSTARTED, LOST, REFUSED], CHOKED)[unsolved]
+    lost = (found.throat == UNSETTLED) | (found.attached == UNSETTLED) | (found.train == UNSETTLED) | ~solver.scan.sonic.good.all(0)
+    rules = [outside, found.throat == NO_START, lost]
+    otherwise = {"supersonic": CHOKED, "thermal-throat": REFUSED}.get(asked, NO_MODE)
+    found.status[unsolved] = np.select(rules, [OUTSIDE, UNSTARTED, LOST], otherwise)[unsolved]
     return found
 
 

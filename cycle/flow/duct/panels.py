@@ -8,7 +8,7 @@ II, section IV.5), found by sweeps with the lower triangular factor of the integ
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from functools import lru_cache
 
 import numpy as np
@@ -162,11 +162,18 @@ class Panels:
         return self.start[:, None] + fractions[:, None] * self.length[:, None]
 
 
-def allot(edges: Array, begin: Array, end: Array, count: int) -> Panels:
-    """`count` panels from begin to end (N,), m, that never reach across an edge (K + 1, N); end may lie upstream.
+def allot(edges: Array, grades: Array, begin: Array, end: Array, count: int) -> Panels:
+    """`count` panels from begin to end (N,), m, that never reach across a grade (G + 1, N); end may lie upstream.
 
-    Every segment on the way gets one, the others go where panels are longest. A march of no length gets panels of none.
+    grades: the edges (K + 1, N) of the segments and the places between them where the duct bends. Every stretch between grades on the
+    way gets a panel, the others go where panels are longest. A march of no length gets panels of none.
     """
+    panels = _over(grades, begin, end, count)
+    middle = panels.start + 0.5 * panels.length
+    return replace(panels, segment=(middle[:, None] > edges[None, 1:-1]).sum(1))
+
+
+def _over(edges: Array, begin: Array, end: Array, count: int) -> Panels:
     low, high = np.minimum(begin, end), np.maximum(begin, end)
     left, right = np.clip(edges[:-1], low, high), np.clip(edges[1:], low, high)
     size = right - left
@@ -258,6 +265,6 @@ class Lattice:
         return value
 
 
-def lattice(edges: Array, count: int) -> Lattice:
-    """`count` panels on ducts of these segment edges (K + 1, N), at least one a segment."""
-    return Lattice(allot(edges, edges[0], edges[-1], max(count, edges.shape[0] - 1)))
+def lattice(edges: Array, grades: Array, count: int) -> Lattice:
+    """`count` panels on ducts of these edges and grades (see `allot`), at least one between two grades."""
+    return Lattice(allot(edges, grades, edges[0], edges[-1], max(count, grades.shape[0] - 1)))

@@ -1,16 +1,19 @@
 """Where the separated core of a thermally choked duct meets the attached subsonic flow upstream of the throat.
 
-There the wall pressure is p3 and the core's momentum is that of the attached flow: m u = F2 - p3 A2 + B - core friction.
+There the wall pressure is p3 and the core's momentum is that of the attached flow: m u = F2 - p3 A2 + B - core friction. What the
+attached flow has beyond the core at its own pressure is `lacking`. Along the subsonic branch d(lacking)/dx = -(A - A2) dp/dx but for
+friction, so it is least where the pressure is highest. Behind that place it may rise through zero: there the core fills the duct, and
+the flow upstream of it does not matter. Where it is nowhere negative the critical flow asks for more impulse than arrives.
 """
 
 from __future__ import annotations
 
-from dataclasses import dataclass, fields
+from dataclasses import dataclass, fields, replace
 
 import numpy as np
 
 from cycle.arrays import Array, Codes, Flags
-from cycle.flow.duct.core import FRICTION_TURNS, core_friction, friction_turn, unlost
+from cycle.flow.duct.core import FRICTION_TURNS, Lost, core_friction, friction_turn, unlost
 from cycle.flow.duct.layout import Duct
 from cycle.flow.duct.march import Branch, spot
 from cycle.flow.duct.scan import Scan
@@ -36,16 +39,15 @@ _TOO_MUCH = 1e-6
 
 @dataclass(frozen=True, eq=False)
 class Fill:
-    """Each (N,): x m, its segment, p3 Pa, velocity m/s and Mach number squared of the attached flow there, friction of the
-    core so far N, and whether the place was found."""
+    """Each (N,): x m, p3 Pa, friction of the core so far N, and whether the place was found. least: smallest momentum
+    lacking on the way, N; places: how many there are."""
 
     x: Array
-    segment: Codes
     pressure: Array
-    velocity: Array
-    mach_squared: Array
     friction: Array
     found: Flags
+    least: Array
+    places: Codes
 
 
 def lacking(duct: Duct, momentum: Array, pressure: Array, brought: Array, friction: Array) -> Array:
@@ -54,28 +56,81 @@ def lacking(duct: Duct, momentum: Array, pressure: Array, brought: Array, fricti
     return momentum - (duct.impulse - pressure * duct.entry_area + brought - friction)
 
 
-def reattachment(duct: Duct, scan: Scan, up: Branch, at: Throat) -> Fill:
-    """Follow the subsonic branch `up`, marched upstream from the throat, from the entry: the first place where the core
-    has no more momentum than the attached flow. Where there is none, the throat itself, if the core has no more momentum
-    than the critical flow there: so close to the border to the shock train the march cannot tell."""
-    m, flow = up.mixture, up.flow
-    miss = lacking(duct, m.mass_flow * flow.u, flow.pressure, m.brought, np.zeros(duct.size))[::-1]
-    columns, x = np.arange(duct.size), up.x[::-1]
-    above = (miss[1:] >= 0.0) & (miss[:-1] < 0.0)
-    row = np.where(above.any(0), above.argmax(0) + 1, x.shape[0] - 1)
-    low, high = x[row - 1, columns], x[row, columns]
-    f_low, f_high = miss[row - 1, columns], miss[row, columns]
+@dataclass(frozen=True, eq=False)
+class Miss:
+    """Momentum lacking along a subsonic branch, from its upstream end to the throat: x m and miss N, (R, N), inf where there is no flow.
+    reached: the upstream end, m; low: place of the least one, m, least: its value, N; ends: it falls still
+    at the upstream end; each (N,)."""
+
+    x: Array
+    miss: Array
+    reached: Array
+    low: Array
+    least: Array
+    ends: Flags
+
+    def take(self, index: Codes) -> Miss:
+        """Of the chosen points."""
+        return Miss(*(getattr(self, f.name)[..., index] for f in fields(self)))
+
+    @property
+    def rises(self) -> Flags:
+        """Rows ahead of which it rises through zero, (R - 1, N)."""
+        rises: Flags = (self.miss[1:] >= 0.0) & (self.miss[:-1] < 0.0) & np.isfinite(self.miss[1:])
+        return rises
+
+
+def miss_along(duct: Duct, scan: Scan, up: Branch) -> Miss:
+    """What lacks along the branch `up`, marched upstream from the throat; the core's friction is that at the pressure where least lacks."""
+    m, flow, columns = up.mixture, up.flow, np.arange(duct.size)
+    there, x = up.on_the_way[::-1], up.x[::-1]
+    bare = lacking(duct, m.mass_flow * flow.u, flow.pressure, m.brought, np.zeros(duct.size))[::-1]
+    miss = np.where(there, bare, np.inf)
+    row = miss.argmin(0)
+    if duct.friction.any():
+        taken = core_friction(duct, scan, flow.pressure[::-1][row, columns], 1e-9).rows
+        miss = miss + scan.grid.interpolated(taken, *scan.grid.locate(up.segment, up.x))[::-1]
+        row = miss.argmin(0)
+    low, least = _lowest(x, miss, row)
+    first = there.argmax(0)
+    reached = x[first, columns]
+    return Miss(x, miss, reached, low, least, (row == first) & (least >= 0.0) & (reached > 0.0))
+
+
+def _lowest(x: Array, y: Array, row: Codes) -> tuple[Array, Array]:
+    """Place and value of the least y (R, N) by a parabola about its row (N,); the row itself at an end or beside a jump."""
+    columns, middle = np.arange(row.size), np.clip(row, 1, len(x) - 2)
+    (x0, x1, x2), (y0, y1, y2) = (tuple(v[middle + k, columns] for k in (-1, 0, 1)) for v in (x, y))
+    left, right = (y1 - y0) / (x1 - x0), (y2 - y1) / (x2 - x1)
+    bend = (right - left) / (x2 - x0)
+    place = 0.5 * (x0 + x1) - left / (2.0 * bend)
+    value = y1 + (place - x1) * (left + bend * (place - x0))
+    inside = (middle == row) & (bend > 0.0) & (place > x0) & (place < x2) & (value <= y1)
+    return np.where(inside, place, x[row, columns]), np.where(inside, value, y[row, columns])
+
+
+def reattachment(duct: Duct, scan: Scan, up: Branch, at: Throat, along: Miss) -> Fill:
+    """Follow the subsonic branch `up` from its upstream end: the first place where the core has no more momentum than the attached flow,
+    having had more. Where there is none, the throat itself, if the core has no more momentum than the critical flow there: so close to
+    the border to the shock train the march cannot tell."""
+    columns, x, rises = np.arange(duct.size), along.x, along.rises
+    row = np.where(rises.any(0), rises.argmax(0) + 1, np.clip((x < along.low).sum(0), 1, len(x) - 1))
+    # between two rows the least may dip below zero unseen
+    low = np.where(rises.any(0), x[row - 1, columns], along.low)
+    f_low = np.where(rises.any(0), along.miss[row - 1, columns], along.least)
+    high, f_high = x[row, columns], along.miss[row, columns]
     rise = np.where(f_high > f_low, f_high - f_low, np.inf)
-    part = np.clip(-f_low / rise, 0.0, 1.0)
-    guess = np.where(above.any(0), low + (high - low) * part, up.x[0])
-    # Friction of the core only brings the place nearer to the entry.
-    first = np.where(duct.friction > 0.0, x[0], low)
-    found = _bracketed(duct, scan, up, first, high, guess, np.where(above.any(0), rise / (high - low), np.nan))
+    known = (f_low < 0.0) & (f_high >= 0.0) & np.isfinite(f_high)
+    guess = np.where(known, low + (high - low) * np.clip(-f_low / rise, 0.0, 1.0), up.x[0])
+    # the friction of the core at another pressure moves the place: it has room as far as the flow goes
+    first = np.where(duct.friction > 0.0, along.reached, low)
+    found = _bracketed(duct, scan, up, first, high, guess, np.where(known, rise / (high - low), np.nan))
+    found = replace(found, least=along.least, places=rises.sum(0))
     if found.found.all():
         return found
     lacks = throat_lacks(duct, scan, at) / duct.impulse
     border = ~found.found & (lacks > -_BORDER) & (lacks < _TOO_MUCH)
-    ends = (at.x, at.segment, at.pressure, at.velocity, np.ones_like(x[0]), found.friction, border)
+    ends = (at.x, at.pressure, found.friction, border, found.least, found.places)
     return Fill(*(np.where(border, end, getattr(found, f.name)) for f, end in zip(fields(Fill), ends, strict=True)))
 
 
@@ -92,12 +147,12 @@ def throat_lacks(duct: Duct, scan: Scan, at: Throat, settled: float = 1e-12) -> 
 def _bracketed(duct: Duct, scan: Scan, up: Branch, low: Array, high: Array, x: Array, slope: Array) -> Fill:
     """Secant in x inside a bracket, on the march's own F - B with the state there solved. The core's friction settles only so
     far that the place can be judged. What lacks may jump where fuel enters: the bracket then closes on that place."""
-    throat, done = up.x[0], np.zeros(x.shape, np.bool_)
+    done = np.zeros(x.shape, np.bool_)
     before, flow, lost = None, None, unlost(scan)
     for turn in range(_TURNS):
         segment = (duct.edges[1:-1] < x).sum(0)
         mixture, flow, solved = spot(duct, segment, x, up.free_at(x), np.full(x.shape, -1.0), scan, flow)
-        u, p, square = flow.u[0], flow.pressure[0], flow.mach_squared[0]
+        u, p = flow.u[0], flow.pressure[0]
         for _ in range(FRICTION_TURNS):
             lost, moved = friction_turn(duct, scan, p, lost)
             friction = lost.at(scan, segment, x)
@@ -113,9 +168,27 @@ def _bracketed(duct: Duct, scan: Scan, up: Branch, low: Array, high: Array, x: A
         spare = _SPARE * (high - low)
         closes = (turn < _SECANTS) | (np.abs(miss) < _NEAR * duct.impulse)
         inside = (secant >= low - spare) & (secant <= high + spare) & closes
-        new = np.where(inside, np.clip(secant, 0.0, throat), 0.5 * (low + high))
+        new = np.where(inside, np.clip(secant, 0.0, up.x[0]), 0.5 * (low + high))
         done |= ~wide | ((np.abs(new - x) < _SETTLED * duct.end) & (moved < _STILL * duct.impulse))
         if done.all():
             break
         before, x = np.stack([x, miss]), np.where(done, x, new)
-    return Fill(x, segment, p, u, square, friction, done & solved & ((x < throat) | (miss >= 0.0)))
+    found = done & solved & ((x < up.x[0]) | (miss >= 0.0))
+    jumps = np.flatnonzero(found & (np.abs(miss) > _NEAR * duct.impulse))
+    if jumps.size:
+        cut, own, taken = duct.take(jumps), scan.take(jumps), lost.take(jumps)
+        p[jumps], friction[jumps] = _at_plane(cut, own, segment[jumps], x[jumps], up.free_at(x)[jumps], p[jumps], taken)
+    return Fill(x, p, friction, found, miss, np.zeros(x.shape, np.int64))
+
+
+def _at_plane(duct: Duct, scan: Scan, segment: Codes, x: Array, free: Array, pressure: Array, lost: Lost) -> tuple[Array, Array]:
+    """p3 Pa and friction of the core N where it fills the duct in the plane in which fuel enters: by the impulse that the attached flow
+    behind it has, F - B = F2 + p3 (A - A2) - friction."""
+    rise = duct.area_at(segment[None], x[None])[0] - duct.entry_area
+    for _ in range(FRICTION_TURNS):
+        lost, moved = friction_turn(duct, scan, pressure, lost)
+        friction = lost.at(scan, segment, x)
+        pressure = (free - duct.impulse + friction) / rise
+        if (moved < _STILL * duct.impulse).all():
+            break
+    return pressure, friction

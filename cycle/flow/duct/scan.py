@@ -49,6 +49,6 @@ class Scan:
 
 def scan_of(duct: Duct, count: int = PANELS) -> Scan:
     """Sonic states of a duct on at least `count` panels, to the third order of a first guess: what is decided by them is refined."""
-    grid = lattice(duct.edges, count)
+    grid = lattice(duct.edges, duct.grades, count)
     mixture = duct.mixture(grid.segment, grid.x)
     return Scan(grid, grid.segment, mixture, sonic(mixture, rounds=1))

@@ -17,8 +17,8 @@ from cycle.gas.state import State, scatter
 MODES = ("none", "scramjet", "scramjet-shock-train", "ramjet-thermal-throat")
 NONE, ATTACHED, TRAIN, THROAT = range(4)
 
-STATUSES = ("solved", "choked", "unstarted", "mode-refused", "out-of-range", "not-converged")
-SOLVED, CHOKED, UNSTARTED, REFUSED, OUTSIDE, LOST = range(6)
+STATUSES = ("solved", "choked", "unstarted", "mode-refused", "out-of-range", "not-converged", "no-mode")
+SOLVED, CHOKED, UNSTARTED, REFUSED, OUTSIDE, LOST, NO_MODE = range(7)
 
 TRIED = (
     "not tried", "stands", "chokes", "separates", "no such pressure", "core subsonic", "no throat", "unstarted",
@@ -45,6 +45,7 @@ class Solution:
     """What was found for N points, filled in as the modes are tried; each (N,), NaN where it has no meaning.
 
     mode, status, attached, train, throat: codes of `MODES`, `STATUSES`, `TRIED`; throat_kind: see `summits`, -1 none.
+    places: where the core of a thermal throat may fill the duct, the first is taken.
     x_throat, x_fill m; pressure_3 Pa of the separated zone; peak: highest wall pressure Pa; needed: impulse that the
     critical flow asks at the entry, N; velocity m/s and state at the exit; wall_force, friction N; error: estimate of the
     discretisation error of the exit impulse, over it; lost_heat: to a wall of stated temperature, at the rows of
@@ -57,6 +58,7 @@ class Solution:
     train: Codes
     throat: Codes
     throat_kind: Codes
+    places: Codes
     x_throat: Array
     x_fill: Array
     pressure_3: Array
@@ -81,9 +83,9 @@ def nothing_yet(duct: Duct, scan: Scan, panels: int) -> Solution:
     state = scan.sonic.state.take(np.arange((rows - 1) * n, rows * n)).flagged(np.ones(n, np.bool_))
     profile = {name: np.full((core_rows(duct) + 2 * (1 + STAGES * panels), n), np.nan) for name in PROFILE}
     lost = None if duct.cooling is None else duct.cooling.lost.copy()
-    mode, status, attached, train, throat = np.zeros((5, n), np.int64)
+    mode, status, attached, train, throat, places = np.zeros((6, n), np.int64)
     a, b, c, d, e, f, g, h, i, j = np.full((10, n), np.nan)
-    return Solution(mode, status, attached, train, throat, mode - 1, a, b, c, d, e, f, g, h, i, j, state, lost, profile)
+    return Solution(mode, status, attached, train, throat, mode - 1, places, a, b, c, d, e, f, g, h, i, j, state, lost, profile)
 
 
 def refuse(found: Solution, points: Flags) -> None:

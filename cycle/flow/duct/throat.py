@@ -18,12 +18,12 @@ from cycle.flow.duct.panels import chebyshev
 from cycle.flow.duct.scan import Scan
 from cycle.flow.duct.summits import SMOOTH, Summits, summits, window
 
-CANDIDATES = 3
+CANDIDATES = 4
 _POINTS = 7
-_WIDTH = 0.02
-"""Width of the window in which a throat is refined, over the duct's length."""
+_WIDE, _WIDTH = 0.06, 0.02
+"""Width of the windows in which a throat is looked for and refined, over the duct's length."""
 
-_TURNS = 3
+_TURNS = 5
 
 
 @dataclass(frozen=True, eq=False)
@@ -60,11 +60,12 @@ def candidates(duct: Duct, scan: Scan) -> Summits:
 
 
 def throat(duct: Duct, scan: Scan, found: Summits, rank: int) -> Throat:
-    """The candidate of a rank, refined: sonic states on a small window about it, the root of their polynomial's excess."""
+    """The candidate of a rank, refined: sonic states on a small window about it, the root of their polynomial's excess. A smooth one
+    about which the excess does not fall through zero is none."""
     segment, kind = found.segment[rank], found.kind[rank]
     x, smooth = found.x[rank], found.kind[rank] == SMOOTH
     rule = chebyshev(_POINTS)
-    width = np.full(duct.size, _WIDTH) * duct.end
+    width = np.where(smooth, _WIDE, _WIDTH) * duct.end
     for _ in range(_TURNS):
         places, size = window(duct.edges, segment, x, width, rule.nodes)
         segments = np.broadcast_to(segment, places.shape)
@@ -73,14 +74,15 @@ def throat(duct: Duct, scan: Scan, found: Summits, rank: int) -> Throat:
         at = sonic(mixture, scan.near(segments, places), guess)
         slope = np.tensordot(rule.derivative, at.impulse - mixture.brought, axes=1) / size
         root = rule.fall(excess(mixture, slope, at))
-        better = np.where(smooth, places[0] + root * size, x)
-        outside = smooth & ((root <= 0.0) | (root >= 1.0)) & (np.abs(better - x) > 1e-12 * duct.end)
-        x = better
-        if not outside.any():
+        outside = smooth & ((root <= 0.0) | (root >= 1.0))
+        x = np.where(smooth, places[0] + root * size, x)
+        again = outside | smooth & (width > _WIDTH * duct.end)
+        if not again.any():
             break
+        width = np.where(outside, width, _WIDTH * duct.end)
     part = np.clip((x - places[0]) / size, 0.0, 1.0)
     impulse, u = rule.at(at.impulse, part), rule.at(at.velocity, part)
     here = duct.mixture(segment[None], x[None])
     area, flow = here.area[0], here.mass_flow[0]
-    there = found.there[rank] & at.good.all(0)
+    there = found.there[rank] & at.good.all(0) & ~outside
     return Throat(x, segment, kind, there, u, (impulse - flow * u) / area, impulse - here.brought[0], area, flow)
