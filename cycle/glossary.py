@@ -161,10 +161,9 @@ def _border(key: str, label: str, meaning: str) -> Output:
 
 
 HEAT: tuple[Output, ...] = (
-    _border("attached-separates", "heat, attached until it separates", "Heat up to which the attached flow of a duct stands"),
-    _border("attached-chokes", "heat, attached until it chokes", "Heat up to which the attached flow of a duct passes, separated or not"),
-    _border("train", "heat, shock train", "Heat up to which a shock train stands ahead of a burner that stays supersonic"),
-    _border("unstart", "heat, before unstart", "Heat up to which the critical flow asks no more impulse than station 2 brings"),
+    _border("attached", "heat, attached flow", "Heat up to which the attached flow of a duct stands, nearest to the heat of the case"),
+    _border("train", "heat, shock train", "Heat up to which the burner stays supersonic, attached or behind a shock train"),
+    _border("unstart", "heat, before unstart", "Heat up to which the duct has a mode and its shock train fits the isolator"),
 )
 """Borders of a duct's heat input, the keys of `Walk.heat_limits`."""
 
@@ -220,12 +219,11 @@ ENTRIES: tuple[Output, ...] = (*PROCESS_FIGURES, *PROFILE, *LIMITS, *HEAT, *POTE
 ENTRY = {entry.key: entry for entry in ENTRIES}
 
 HEAT_WORDS: dict[str, tuple[str, str, str]] = {
-    "attached-separates": ("attached to {}", "attached throughout", "no attached flow"),
-    "train": ("shock train to {}", "shock train throughout", "no shock train"),
-    "unstart": ("before unstart {}", "no unstart", "unstarts without heat"),
+    "attached": ("attached to {}", "attached throughout", "no attached flow"),
+    "train": ("shock train to {}", "supersonic throughout", "no supersonic burner"),
+    "unstart": ("unstart at {}", "no unstart", "no heat at which it runs"),
 }
-"""Borders of the modes of a duct: words for a value, for one that is not reached, and for 0. Where the attached flow chokes first,
-"attached-separates" is where it chokes."""
+"""Ends of the modes of a duct: words for a value, for one that is not reached, and for 0."""
 
 _FLAG = "mode_"
 _NUMBERED = re.compile(r"(wave_angle)_(\d+)")

@@ -61,14 +61,15 @@ def state_of(margin: float) -> str:
     return "near" if margin < NEAR else "ok"
 
 
-def limits(walked: March, largest_heat: float | None = None) -> tuple[Limit, ...]:
-    """All limits of a march, in fixed order. largest_heat: the heat input at which the burner chokes, where known."""
+def limits(walked: March, largest_heat: Array | None = None, cause: str = "") -> tuple[Limit, ...]:
+    """All limits of a march, in fixed order. largest_heat: (N,) the heat input at which the burner chokes, or a duct has no solution any
+    more, where solved for; cause: what sets it in a duct."""
     flight = _flight(walked) if walked.named("flight") is not None else ()
     return (
         *flight,
         *_burner(walked),
         _fuel_supply(walked),
-        _choking(walked, largest_heat),
+        _heat(walked, largest_heat, cause),
         *_hot(walked),
         *_nozzle(walked),
         *_inlet_geometry(walked),
@@ -146,20 +147,24 @@ def heat_words(setting: Setting) -> tuple[str, str]:
     return _HEAT_WORDS[setting.choices["combustor.heat"]]
 
 
-def _choking(walked: March, largest: float | None) -> Limit:
+def _heat(walked: March, largest: Array | None, cause: str) -> Limit:
+    """The largest heat: before thermal choking of a simple burner, before a duct unstarts or has no mode."""
     setting, key = walked.setting, heat_key(walked.setting)
     label, unit = heat_words(setting)
     duct = setting.choices["combustor.process"] == "duct"
-    allowed = np.full(setting.size, np.nan if largest is None else largest)
-    missing = (
-        "see the unstart margin"
-        if duct
-        else "no choking within the range of the input"
-        if largest is not None and np.isnan(largest)
-        else "solved for one point only"
-    )
-    less = "less heat, a faster burner entry (less compression), or a larger burner area"
-    return Limit("thermal_choking", f"thermal choking, {label}", setting[key], allowed, unit, True, less, key, missing)
+    allowed = np.full(setting.size, np.nan) if largest is None else np.where(np.isinf(largest), np.nan, largest)
+    if largest is None:
+        missing = "solved for when asked"
+    else:
+        missing = (
+            "not reached within the range of the input" if np.isinf(largest).any() or not duct else "not known: the heat is no fuel ratio"
+        )
+    if not duct:
+        less = "less heat, a faster burner entry (less compression), or a larger burner area"
+        return Limit("thermal_choking", f"thermal choking, {label}", setting[key], allowed, unit, True, less, key, missing)
+    less = "a longer isolator or less heat" if cause == "isolator length" else "less heat, or a larger burner area behind the injection"
+    words = f"unstart by {cause}, {label}" if cause else f"unstart, {label}"
+    return Limit("unstart_heat", words, setting[key], allowed, unit, True, less, key, missing)
 
 
 def _hot(walked: March) -> tuple[Limit, ...]:
@@ -194,7 +199,7 @@ def _nozzle(walked: March) -> tuple[Limit, ...]:
     station = "9" if walked.reached("9") is not None else "10"
     ambient = _at(walked, "0", "pressure")
     # with a shock inside, the exit has left the state that the two limits speak of
-    full, shocked = (_of(walked, "nozzle", f"{name}_pressure") for name in ("full_flow", "exit_shock"))
+    full, shocked = (walked.figure("nozzle", f"{name}_pressure") for name in ("full_flow", "exit_shock"))
     inside = np.isfinite(shocked)
     behind = np.where(inside, shocked, _behind_exit_shock(walked, station))
     ratio = np.where(inside, full, _at(walked, station, "pressure")) / ambient
@@ -218,14 +223,6 @@ def _behind_exit_shock(walked: March, station: str) -> Array:
         part = stream.take(fast)
         found[fast] = gas_shocks.normal_shock(part.gas, part.state, part.velocity).state.pressure
     return spread(walked, record.index, found)
-
-
-def _of(walked: March, process: str, figure: str) -> Array:
-    """A figure of a process over all points, NaN where it has none."""
-    record = walked.named(process)
-    if record is None or figure not in record.process.figures:
-        return np.full(walked.setting.size, np.nan)
-    return spread(walked, record.index, record.process.figures[figure])
 
 
 def _share(walked: March, key: str, label: str, margin: Array, restore: str, goto: str, missing: str) -> Limit:
@@ -287,17 +284,17 @@ def _modes(walked: March) -> tuple[Limit, ...]:
     setting, heat = walked.setting, heat_key(walked.setting)
     less = "less heat, or a larger burner area behind the injection"
     rows = []
-    separation, unstart = (_of(walked, "isolator", f"{name}_margin") for name in ("separation", "unstart"))
+    separation, unstart = (walked.figure("isolator", f"{name}_margin") for name in ("separation", "unstart"))
     if setting.choices["combustor.process"] == "duct":
         rows += [
             _share(walked, "duct_separation", "attached burner flow, peak pressure", separation, less, heat, "no attached flow"),
             _share(walked, "unstart", "unstart, impulse at burner entry", unstart, less, heat, "no critical section"),
         ]
     if setting.has("nozzle.throat_area"):
-        capacity, label = _of(walked, "isolator", "throat_margin"), "throat capacity, supercritical margin"
+        capacity, label = walked.figure("isolator", "throat_margin"), "throat capacity, supercritical margin"
         rows.append(_share(walked, "throat_capacity", label, capacity, "a larger throat or less heat", "nozzle.throat_area", "no match"))
     why = "no shock train" if setting.has("isolator.momentum_thickness") else "needs isolator.momentum_thickness"
-    length, longer = _of(walked, "isolator", "isolator_margin"), "a longer isolator or less heat"
+    length, longer = walked.figure("isolator", "isolator_margin"), "a longer isolator or less heat"
     rows.append(_share(walked, "isolator_length", "isolator length, shock train", length, longer, "isolator.length", why))
     return tuple(rows)
 

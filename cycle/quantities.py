@@ -167,6 +167,16 @@ MODES: dict[str, str] = {
 }
 """Closed list of the engine modes that are found."""
 
+CAUSES: dict[str, str] = {
+    "separation": "separation",
+    "choking": "thermal choking",
+    "impulse": "impulse at burner entry",
+    "isolator-length": "isolator length",
+    "no-mode": "no consistent mode",
+    "out-of-range": "range of the gas data",
+}
+"""What sets the heat at which a mode of a duct ends, with the words for each; another one is a status."""
+
 INPUT = {i.key: i for i in INPUTS}
 GROUP = {g.name: g for g in GROUPS}
 OUTPUT = {o.key: o for o in OUTPUTS}

@@ -12,13 +12,13 @@ from cycle import account, emit
 from cycle import audit as auditing
 from cycle import limits as margins
 from cycle.account import spread, usable
-from cycle.arrays import Array, ArrayLike
+from cycle.arrays import Array, ArrayLike, Codes
 from cycle.figures import Audit, Figures, Limit, Process, Residual, Row, Station, shaped
-from cycle.flowpath import assembly, combustor
+from cycle.flowpath import assembly, combustor, duct_limits
 from cycle.flowpath.setting import setting, why_fixed
 from cycle.flowpath.stream import SOLVED, STATUS_NAMES
 from cycle.gas.state import State
-from cycle.quantities import INPUT, OUTPUTS, RESTORES, STATUSES
+from cycle.quantities import CAUSES, INPUT, OUTPUTS, RESTORES, STATUSES
 from cycle.walk import March, Record, march, modes
 from cycle.why_not import no_figure, no_rows
 
@@ -73,23 +73,19 @@ class Walk:
             label, _ = margins.heat_words(self.march.setting)
             if np.isfinite(self._largest):
                 words = f"{words}; largest {label} here {self._largest:.4g}"
-        if name == "unstarted" and self.heat_limits:
-            words = f"{words}; {self._unstart_words()}"
+        if name in ("unstarted", "no-mode") and self.shape == () and self.heat_limits:
+            words = f"{words}; {self._heat_words()}"
         return f"{words}; {RESTORES[name]}"
 
-    def _unstart_words(self) -> str:
-        """What the unstart comes from: the heat, or an isolator shorter than its shock train."""
+    def _heat_words(self) -> str:
+        """The heat of a duct without a solution against that at which it has one, and what sets the limit."""
         label, _ = margins.heat_words(self.march.setting)
-        most = self.heat_limits.get("unstart", np.nan)
-        if not np.isfinite(most):
-            return (
-                "no heat below the search's end starts it"
-                if self.heat_limits
-                else "the heat at which it starts is solved for one duct only"
-            )
-        if float(self.march.setting[margins.heat_key(self.march.setting)][0]) < most:
-            return "its shock train is longer than the isolator"
-        return f"largest {label} before unstart {most:.4g}"
+        most, cause = self.heat_limits["unstart"], self.heat_limit_causes["unstart"]
+        if not most > 0.0:
+            return "no heat below the search's end starts it" if most == 0.0 else "the heat at which it starts is not known"
+        here = float(self.march.setting[margins.heat_key(self.march.setting)][0])
+        why = {"impulse": "impulse at burner entry", "isolator-length": "the shock train is longer than the isolator"}.get(cause, cause)
+        return f"{label} {here:.4g}, at most {most:.4g} ({why})" if here > most else f"{label} {here:.4g}, at least {most:.4g}"
 
     @cached_property
     def _records(self) -> dict[str, Record]:
@@ -261,7 +257,7 @@ class Walk:
         key = margins.heat_key(self.march.setting)
         bound = INPUT[key]
         assert bound.upper is not None
-        if "3" not in self._records or self.march.setting.choices["combustor.process"] == "duct":
+        if "3" not in self._records or self._has_duct:
             return np.nan
         return margins.largest_heat(self.march, min(bound.upper, _SEARCH[key]))
 
@@ -272,29 +268,58 @@ class Walk:
         return self._largest
 
     @cached_property
-    def heat_limits(self) -> dict[str, float]:
-        """The heat input, SI, at which one duct leaves each regime: "attached-separates", "attached-chokes" (no attached flow),
-        "train" (no shock train) and "unstart"; inf where it is not reached, empty where the burner is no duct. Solved for when
-        first asked; one point only."""
+    def heat_limits(self) -> dict[str, Any]:
+        """The heat input, SI, at which the modes of a duct end: "attached" (no attached flow), "train" (nor a shock train), "unstart" (no
+        solution); of each the end nearest to the heat of the case. inf where it is not reached, 0 where the mode stands nowhere, NaN where
+        it is not known; empty where the burner is no duct. Solved for when first asked, with the decision of the solution itself."""
+        return {name: shaped(value, self.shape) for name, (value, _) in self._heat_ends.items()}
+
+    @property
+    def heat_limit_causes(self) -> dict[str, Any]:
+        """What sets each of `heat_limits`, a key of `duct_limits.CAUSES`: "separation", "choking", "impulse", "isolator-length", or the
+        status beyond; "" where the limit is not reached or not known."""
+        return {name: self._words([duct_limits.CAUSES[code] for code in cause]) for name, (_, cause) in self._heat_ends.items()}
+
+    @cached_property
+    def _heat_ends(self) -> dict[str, tuple[Array, Codes]]:
         walked = self.march
         record = walked.named("gas change") or walked.reached("2")
-        if self.shape != () or walked.setting.choices["combustor.process"] != "duct" or record is None or not record.index.size:
+        if not self._has_duct or record is None or not record.index.size:
             return {}
-        unit = self._unit_of_heat()
-        found = assembly.largest_ratios(record.stream, walked.setting, _SEARCH[margins.heat_key(walked.setting)] * unit)
-        return {name: ratio / unit for name, ratio in found.items()}
-
-    def _unit_of_heat(self) -> float:
-        """Fuel-air ratio of one unit of the heat input; NaN where it is no ratio."""
-        setting = self.march.setting
-        units = {"equivalence_ratio": float(setting.stoichiometric_ratio[0]), "fuel_air_ratio": 1.0}
-        return units.get(setting.choices["combustor.heat"], np.nan)
+        heat, setting = margins.heat_key(walked.setting), walked.setting.take(record.index)
+        units = {"equivalence_ratio": setting.stoichiometric_ratio, "fuel_air_ratio": np.ones(record.index.size)}
+        unit = units.get(setting.choices["combustor.heat"])
+        if unit is None:
+            nothing = np.full(self.size, np.nan), np.zeros(self.size, np.int64)
+            return dict.fromkeys(duct_limits.ENDS, nothing)
+        found = assembly.heat_limits(record.stream, setting, _SEARCH[heat] * unit)
+        causes = {name: np.zeros(self.size, np.int64) for name in found}
+        for name, end in found.items():
+            causes[name][record.index] = end.cause
+        return {name: (spread(walked, record.index, end.ratio / unit), causes[name]) for name, end in found.items()}
 
     @cached_property
     def limits(self) -> tuple[Limit, ...]:
-        """All limits with their margins; for one point the largest heat before choking is solved for."""
-        largest = self._largest if self.shape == () else None
-        return tuple(self._limit(row) for row in margins.limits(self.march, largest))
+        """All limits with their margins; for one point the largest heat is solved for."""
+        if self.shape == () and self._has_duct:
+            _ = self._heat_ends
+        return self.limits_so_far
+
+    @property
+    def limits_so_far(self) -> tuple[Limit, ...]:
+        """All limits; of a duct, or of a batch, without the largest heat unless `heat_limits` has been asked for."""
+        if not self._has_duct:
+            largest, cause = (np.array([self._largest]) if self.shape == () else None), ""
+        elif self.__dict__.get("_heat_ends"):
+            largest, codes = self._heat_ends["unstart"]
+            cause = CAUSES.get(duct_limits.CAUSES[codes[0]], "") if (codes == codes[0]).all() else ""
+        else:
+            largest, cause = None, ""
+        return tuple(self._limit(row) for row in margins.limits(self.march, largest, cause))
+
+    @property
+    def _has_duct(self) -> bool:
+        return self.march.setting.choices["combustor.process"] == "duct"
 
     def _limit(self, row: margins.Limit) -> Limit:
         margin = row.margin

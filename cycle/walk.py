@@ -5,7 +5,7 @@ Points that fail drop out where they fail; the rest go on. Nothing here knows a 
 
 from __future__ import annotations
 
-from collections.abc import Callable
+from collections.abc import Callable, Mapping
 from dataclasses import dataclass, replace
 from functools import partial
 
@@ -40,13 +40,25 @@ class Record:
 @dataclass(frozen=True, slots=True)
 class March:
     """A walked batch: the setting, status codes (N,), the position of the failed process (N,) or -1, the chain of
-    process names, and the records in order."""
+    process names, the records in order, and ended: name of a process, the points that it ended, and its figures there."""
 
     setting: Setting
     status: Codes
     failed: Codes
     chain: tuple[str, ...]
     records: tuple[Record, ...]
+    ended: tuple[tuple[str, Codes, Mapping[str, Array]], ...] = ()
+
+    def figure(self, process: str, figure: str) -> Array:
+        """A figure of a process over all points (N,), also of those that it ended; NaN where it has none."""
+        found = np.full(self.setting.size, np.nan)
+        record = self.named(process)
+        if record is not None and figure in record.process.figures:
+            found[record.index] = record.process.figures[figure]
+        for name, index, figures in self.ended:
+            if name == process and figure in figures:
+                found[index] = figures[figure]
+        return found
 
     @property
     def solved(self) -> Codes:
@@ -166,6 +178,7 @@ class _Walked:
         self.failed: Codes = np.full(setting.size, -1)
         self.chain: list[str] = []
         self.records: list[Record] = []
+        self.ended: list[tuple[str, Codes, Mapping[str, Array]]] = []
 
     @property
     def stream(self) -> Stream:
@@ -201,6 +214,9 @@ class _Walked:
         through = status == SOLVED
         self.status[self.alive] = status
         self.failed[self.alive[~through]] = len(self.chain) - 1
+        if step.process.figures and not through.all():
+            figures = {name: values[keep[~through]] for name, values in step.process.figures.items()}
+            self.ended.append((step.process.name, self.alive[~through], figures))
         self.alive, keep = self.alive[through], keep[through]
         if keep.size:
             everyone = keep.size == step.status.size
@@ -228,7 +244,7 @@ class _Walked:
 
     def march(self) -> March:
         """What was walked."""
-        return March(self.setting, self.status, self.failed, tuple(self.chain), tuple(self.records))
+        return March(self.setting, self.status, self.failed, tuple(self.chain), tuple(self.records), tuple(self.ended))
 
 
 def _with_points(stream: Stream, at: Codes, new: Stream) -> Stream:

@@ -27,7 +27,7 @@ QUICK = tuple(k for k in STATION_KEYS if k not in DEAR)
 PERFORMANCE_KEYS = tuple(o.key for o in OUTPUTS if o.where == "performance")
 STATIONS = ("0", "1", "2", "3", "4", "5", "9", "10")
 NAN = float("nan")
-LATE_REASONS = ("unstarted",)
+LATE_REASONS = ("unstarted", "no-mode")
 """Statuses whose reason names a solved limit, which costs more than the walk; it comes with the assessment."""
 
 
@@ -175,16 +175,20 @@ def assess(figures: Figures) -> Figures:
         figures,
         reason=str(walk.reason),
         stations={s: {**known, **dear[s]} for s, known in figures.stations.items()},
-        limits=tuple(
-            Margin(m.key, m.label, m.state, float(m.margin), float(m.actual), float(m.allowed), m.unit, bool(m.upper), m.restore, m.input)
-            for m in walk.limits
-        ),
+        limits=_margins(walk),
         why_not={**figures.why_not, **{name: str(walk.why_not(name)) for name in ACCOUNTS}},
         losses=_shares(walk.losses),
         exergy=_shares(walk.exergy),
         audit_ok=bool(walk.audit.ok),
         audit=_audit_words(walk),
         assessed=True,
+    )
+
+
+def _margins(walk: Any) -> tuple[Margin, ...]:
+    return tuple(
+        Margin(m.key, m.label, m.state, float(m.margin), float(m.actual), float(m.allowed), m.unit, bool(m.upper), m.restore, m.input)
+        for m in walk.limits_so_far
     )
 
 
@@ -204,9 +208,18 @@ def solve(case: Case) -> Figures:
     return take(cycle.solve(case))
 
 
-def heat_limits(figures: Figures) -> dict[str, float]:
-    """The heat input at which a duct leaves each regime, SI. Slow; call it in the worker thread."""
-    return {name: float(value) for name, value in figures.walk.heat_limits.items()}
+@dataclass(frozen=True, slots=True)
+class HeatLimits:
+    """The heat input at which the modes of a duct end, SI, and all limits with it."""
+
+    ends: Mapping[str, float]
+    limits: tuple[Margin, ...]
+
+
+def heat_limits(figures: Figures) -> HeatLimits:
+    """The heat at which the modes of a duct end. Slow; call it in the worker thread."""
+    ends = {name: float(value) for name, value in figures.walk.heat_limits.items()}
+    return HeatLimits(ends, _margins(figures.walk))
 
 
 def influence(figures: Figures) -> Sensitivities:

@@ -7,7 +7,7 @@ from collections.abc import Callable, Iterable, Mapping
 from typing import TYPE_CHECKING, Any
 
 from cycle.glossary import ENTRY, HEAT_WORDS, PROFILE, QUIET, SHARED, mode_of, no_value, process_figure
-from cycle.quantities import INPUT, MODES, OUTPUTS, Input, Output
+from cycle.quantities import CAUSES, INPUT, MODES, OUTPUTS, Input, Output
 from cycle.units import display_unit, format_number, show
 from tui.tables import Block, Heading, Lines, Table
 from tui.views.numbers import LIMIT_FIGURES
@@ -114,7 +114,7 @@ def mode_sentences(walk: Walk, system: str) -> tuple[str, ...]:
     if walk.status == "solved" and "throat_margin" in isolator:
         sentences += _throat_sentences(isolator, system)
     if walk.heat_limits:
-        sentences.append(heat_sentence(walk.case, walk.heat_limits, system))
+        sentences.append(heat_sentence(walk.case, walk.heat_limits, walk.heat_limit_causes, system))
     return tuple(sentences)
 
 
@@ -147,21 +147,22 @@ def _margin(figures: Mapping[str, float], key: str) -> str:
     return f"not assessed: {no_value(key)}" if math.isnan(value) else f"{100.0 * value:+.1f} %"
 
 
-def heat_sentence(case: Case, limits: Mapping[str, float], system: str) -> str:
-    """Where the modes of a duct end as its heat rises. limits: `Walk.heat_limits`."""
+def heat_sentence(case: Case, limits: Mapping[str, float], causes: Mapping[str, str], system: str) -> str:
+    """Where the modes of a duct end as its heat rises. limits, causes: `Walk.heat_limits` and `Walk.heat_limit_causes`."""
     entry = INPUT[f"combustor.{case.choices['combustor.heat']}"]
-    words = [heat_limit(name, limits[name], entry, system) for name in HEAT_WORDS]
+    words = [heat_limit(name, limits[name], entry, system, causes[name]) for name in HEAT_WORDS]
     known = ", ".join(w for w in words if w)
     here = with_unit(case.numbers[entry.key], entry.unit, system, entry.key)
     return f"With rising {entry.label} (here {here}): {known or 'limits not known, the heat is no fuel ratio'}."
 
 
-def heat_limit(name: str, value: float, entry: Input, system: str) -> str:
-    """One border of a duct's heat in words, "" where it is not known. value: of the input `entry`, SI."""
+def heat_limit(name: str, value: float, entry: Input, system: str, cause: str = "") -> str:
+    """One end of a duct's heat in words, "" where it is not known. value: of the input `entry`, SI; cause: what sets it."""
     at, never, always = HEAT_WORDS[name]
     if math.isnan(value):
         return ""
-    return never if math.isinf(value) else at.format(with_unit(value, entry.unit, system, entry.key)) if value > 0.0 else always
+    why = f" ({CAUSES.get(cause, cause)})" if cause else ""
+    return never if math.isinf(value) else at.format(with_unit(value, entry.unit, system, entry.key)) + why if value > 0.0 else always
 
 
 def _along(walk: Walk, system: str) -> Iterable[Block]:

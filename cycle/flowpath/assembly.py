@@ -179,7 +179,7 @@ def _isolator(entering: Stream, setting: Setting) -> Isolator | None:
     return Isolator(setting["isolator.length"], setting["isolator.hydraulic_diameter"], setting["isolator.momentum_thickness"], mu, section)
 
 
-def flow_of(entering: Stream, setting: Setting, ratio: Array, second: bool = False) -> Flow:
+def flow_of(entering: Stream, setting: Setting, ratio: Array, total_pressures: bool = False) -> Flow:
     """The duct at the fuel-air ratio `ratio` (N,); entering: station 2 with the gas that burns."""
     return solve_duct(
         entering,
@@ -191,30 +191,15 @@ def flow_of(entering: Stream, setting: Setting, ratio: Array, second: bool = Fal
         isolator=_isolator(entering, setting),
         asked=setting.choices["engine.mode"],
         panels=_panels(setting),
-        second=second,
-        total_pressures=setting.size <= _FEW,
+        total_pressures=total_pressures,
     )
 
 
-def largest_ratios(stream: Stream, setting: Setting, upper: float) -> dict[str, float]:
-    """Largest fuel-air ratio of one duct before each of `duct_limits.BORDERS`; stream: station 2 of one point."""
+def heat_limits(stream: Stream, setting: Setting, upper: Array) -> dict[str, duct_limits.End]:
+    """The fuel-air ratios at which the modes of N ducts end, up to `upper`, (N,); stream: station 2."""
     entering = combustor.burner_gas(stream, setting)
-
-    def at(ratio: Array) -> tuple[Stream, Supply]:
-        same = np.zeros(ratio.size, np.int64)
-        many = entering.take(same)
-        return many, fuel_supply(many, setting.take(same), ratio)
-
-    ratio = _heat(entering, setting)
-    separation = float(setting["combustor.separation_limit"][0]) if setting.has("combustor.separation_limit") else None
-    return duct_limits.largest_ratios(
-        at,
-        _area_law(setting, entering.area),
-        _injectors(setting),
-        _walls(setting, np.nan_to_num(ratio), entering.mass_flow),
-        upper,
-        separation=separation,
-        panels=_panels(setting),
+    return duct_limits.heat_limits(
+        lambda points, ratio: flow_of(entering.take(points), setting.take(points), ratio), _heat(entering, setting), upper
     )
 
 
@@ -228,10 +213,8 @@ def duct(stream: Stream, setting: Setting) -> Steps:
     ratio = _heat(entering, setting)
     lacking = ~np.isfinite(ratio)
     usable = np.where(lacking, 0.0, ratio)
-    found = flow_of(entering, setting, usable)
+    found = flow_of(entering, setting, usable, setting.size <= _FEW)
     status = np.where(lacking, STATUS_CODE["no-fuel"], named_status(found.status, DUCT_STATUSES, {}))
-    # a shock train that outgrows its isolator reaches the inlet
-    status = np.where((status == SOLVED) & (found.figures["isolator_margin"] < 0.0), STATUS_CODE["unstarted"], status)
     status = np.where(_steps_at_entry(setting, entering.area), STATUS_CODE["area-step"], status)
     ahead = np.isin(status, [SOLVED, STATUS_CODE["choked"], STATUS_CODE["no-fuel"]]) & found.entry.state.good
     mode = {f"mode_{name}": (found.mode == i).astype(float) for i, name in enumerate(DUCT_MODES)}

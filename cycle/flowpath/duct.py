@@ -17,7 +17,7 @@ from cycle.flow.duct.cooling import with_loss
 from cycle.flow.duct.core import core_at
 from cycle.flow.duct.layout import AreaLaw, Duct, Injectors, Supply, Walls, duct_of
 from cycle.flow.duct.modes import PANELS, solve_block
-from cycle.flow.duct.solution import MODES, PROFILE, SOLVED, STATUSES, Solution, core_places, core_rows, refuse, side_by_side
+from cycle.flow.duct.solution import MODES, PROFILE, SOLVED, STATUSES, UNSTARTED, Solution, core_places, core_rows, refuse, side_by_side
 from cycle.flow.duct.summits import CORNER, ENTRY, EXIT, SMOOTH
 from cycle.flowpath.stream import Booking, Stream, stream
 
@@ -44,7 +44,8 @@ class Isolator:
 class Flow:
     """How N ducts run.
 
-    mode, status: codes (N,) of `MODES` and `STATUSES`. entry, exit: streams at 3 and 4; where the status is not solved
+    mode, status: codes (N,) of `MODES` and `STATUSES`; a shock train longer than its isolator is
+    unstarted. entry, exit: streams at 3 and 4; where the status is not solved
     they mean nothing. isolator, burner: what crosses the control surfaces 2-3 and 3-4. figures: each (N,), NaN where it
     has no meaning: see `FIGURES`. tried: codes (N,) of `TRIED` of "attached", "train", "throat". throat: codes (N,), keys
     of `THROATS`. rows: the flow along x by name (R, N), `PROFILE` and "total_pressure" if asked for; rows before the
@@ -159,8 +160,10 @@ def _flow(entering: Stream, duct: Duct, found: Solution, limit: Array, isolator:
     }
     tried = {"attached": found.attached, "train": found.train, "throat": found.throat}
     rows = _rows(duct, found, total_pressures)
+    short = (found.status == SOLVED) & (figures["isolator_margin"] < 0.0)
+    isolated = Booking(zero, zero, zero, zero, zero, zero, -beside)
     return Flow(
-        found.mode, found.status, core, behind, Booking(zero, zero, zero, zero, zero, zero, -beside), burner, figures, tried,
+        found.mode, np.where(short, UNSTARTED, found.status), core, behind, isolated, burner, figures, tried,
         found.throat_kind, rows,
     )  # fmt: skip
 

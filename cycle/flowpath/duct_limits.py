@@ -1,121 +1,173 @@
-"""How much fuel a duct takes: the largest ratio at which each mode still stands, solved for.
+"""How much heat a duct takes: the fuel ratio at which each of its modes ends, found with the same decision as a solution itself.
 
-Each limit is the root of a smooth margin of the most demanding critical section (see `cycle.flow.duct.margins`).
+Each point has its own limits. From the ratio of the case the nearest end of each mode is looked for: above it where the mode stands
+there, below it where it does not. A scan brackets the end, and the bracket closes on what the decision says at both of its ends; a
+margin that is known at both and changes sign only tells where to look first.
 """
 
 from __future__ import annotations
 
 from collections.abc import Callable
+from dataclasses import dataclass
 
 import numpy as np
 
-from cycle.arrays import Array
-from cycle.flow import limits
-from cycle.flow.duct.layout import AreaLaw, Duct, Injectors, Supply, Walls, duct_of
-from cycle.flow.duct.margins import Margins, margins
-from cycle.flow.duct.modes import PANELS
-from cycle.flowpath.stream import Stream
+from cycle.arrays import Array, Codes
+from cycle.flow.duct.solution import ATTACHED, CHOKES, LOST, NONE, NOT_TRIED, SOLVED, STATUSES, THROAT, TRAIN, UNSETTLED
+from cycle.flowpath.duct import Flow
 
-BORDERS: dict[str, Callable[[Margins], Array]] = {
-    "attached-chokes": lambda m: m.attached,
-    "attached-separates": lambda m: m.separation,
-    "train": lambda m: m.train,
-    "unstart": lambda m: m.start,
-}
-"""Margin whose root is each limit."""
+ENDS: dict[str, int] = {"attached": ATTACHED, "train": TRAIN, "unstart": THROAT}
+"""Each limit, and the last mode that stands before it."""
 
-_SCAN = 13
-_SPREAD = np.array([-0.3, -0.03, -0.003, 0.0, 0.003, 0.03, 0.3])
-_SPLIT = len(_SPREAD)
-_TURNS = 12
-_SETTLED = 1e-9
+CAUSES = ("", "separation", "choking", "impulse", "isolator-length", *STATUSES)
+"""What sets a limit, by code: separation or choking of the attached flow, choking of the stream behind the shock train, impulse or
+isolator length at unstart; or the status of the points beyond."""
 
-At = Callable[[Array], tuple[Stream, Supply]]
-"""Stream at station 2 and fuel of as many points as there are ratios, (K,): all equal but for the ratio."""
+_SCANNED = 25
+_BUNCHED = 1.5
+"""Exponent of the scan's ratios over the even ones: denser at little heat."""
+_SETTLED = 1e-6
+"""Width of the last bracket, over the ratio."""
+_TURNS = 30
+_PROBES = 48
+"""Ducts of a turn below which more of them cost little: the brackets share them."""
+_NEAREST = 1e-6
+"""How near the nearest probes stand to the zero of a straight line, over the bracket."""
+
+At = Callable[[Codes, Array], Flow]
+"""The ducts of the points (K,) at fuel ratios (K,)."""
 
 
-def largest_ratios(
-    at: At,
-    law: AreaLaw,
-    injectors: Injectors,
-    walls: Walls,
-    upper: float,
-    *,
-    separation: float | None = None,
-    panels: int = PANELS,
-) -> dict[str, float]:
-    """Largest fuel ratio (as `Supply.ratio`) of one duct before each of `BORDERS`, from upper/500 up to `upper`.
+@dataclass(frozen=True, slots=True)
+class End:
+    """Largest fuel ratio of N points before a mode ends, (N,): inf where it does not end below the search's end, 0 where the mode stands
+    nowhere, NaN where it is not known. cause: codes of `CAUSES`."""
 
-    separation: pressure ratio over p2 that separates, after Korkegi (1975) where None. inf: not reached below `upper`;
-    NaN: no margin is known there. Where the attached flow chokes before it separates, "attached-separates" is where it
-    chokes.
+    ratio: Array
+    cause: Codes
+
+
+_MARGINS = ("separation_margin", "unstart_margin", "isolator_margin")
+_WHICH = np.array([{"separation": 0, "impulse": 1, "isolator-length": 2}.get(cause, -1) for cause in CAUSES])
+"""By cause, which of them tells how far a point is from it; -1: none."""
+
+
+@dataclass(frozen=True, eq=False)
+class _Seen:
+    """What ducts say: stands (ends, ...), 1 or 0, NaN where it is not known; cause (ends, ...) of what does not stand, codes of `CAUSES`;
+    margins (margins, ...)."""
+
+    stands: Array
+    cause: Codes
+    margins: Array
+
+    def at(self, row: Codes, point: Codes) -> _Seen:
+        """Of chosen ducts: (ends, K)."""
+        return _Seen(self.stands[:, row, point], self.cause[:, row, point], self.margins[:, row, point])
+
+    def shaped(self, *shape: int) -> _Seen:
+        """The ducts in rows."""
+        return _Seen(self.stands.reshape(-1, *shape), self.cause.reshape(-1, *shape), self.margins.reshape(-1, *shape))
+
+
+def _seen(flow: Flow) -> _Seen:
+    mode = np.where(flow.status == SOLVED, flow.mode, NONE)
+    unknown = (flow.status == LOST) | (flow.tried["attached"] == UNSETTLED)
+    stands = np.array([np.where(unknown, np.nan, (mode != NONE) & (mode <= last)) for last in ENDS.values()])
+    margins = np.array([flow.figures[name] for name in _MARGINS])
+    unstarted = np.where(margins[2] < 0.0, CAUSES.index("isolator-length"), CAUSES.index("impulse"))
+    ended = np.where(flow.status == STATUSES.index("unstarted"), unstarted, CAUSES.index("solved") + flow.status)
+    choking = np.full(mode.shape, CAUSES.index("choking"))
+    attached = np.where(np.isin(flow.tried["attached"], [CHOKES, NOT_TRIED]), choking, CAUSES.index("separation"))
+    return _Seen(stands, np.array([attached, np.where(mode == NONE, ended, choking), ended]), margins)
+
+
+def heat_limits(at: At, now: Array, upper: Array) -> dict[str, End]:
+    """The end of each mode nearest to the fuel ratio of each point; see `ENDS` and `End`.
+
+    at: the ducts of some points at some ratios; now: the ratio of each point, (N,), NaN unknown; upper: end of the search,
+    (N,).
     """
-
-    def all_margins(ratio: Array) -> Margins:
-        duct, mach = _duct(at, ratio, law, injectors, walls)
-        limit = limits.separation_pressure_ratio(mach) if separation is None else np.full(ratio.size, separation)
-        return margins(duct, limit, panels)
-
-    ratio = upper * np.geomspace(2e-3, 1.0, _SCAN)
-    known = _by_name(all_margins(ratio))
-    searches = {name: _Search(ratio, margin) for name, margin in known.items()}
-    for _ in range(_TURNS):
-        probes = {name: search.probes() for name, search in searches.items() if search.open}
-        if not probes:
-            break
-        found = _by_name(all_margins(np.concatenate(list(probes.values()))))
-        for i, (name, ratios) in enumerate(probes.items()):
-            searches[name].learn(ratios, found[name][i * _SPLIT : (i + 1) * _SPLIT])
-    return {name: search.root for name, search in searches.items()}
+    n = now.size
+    even = upper * ((np.arange(_SCANNED) / (_SCANNED - 1.0)) ** _BUNCHED)[:, None]
+    ratio = np.sort(np.vstack([even, np.clip(np.nan_to_num(now), 0.0, upper)]), axis=0)
+    rows = len(ratio)
+    scan = _seen(at(np.tile(np.arange(n), rows), ratio.ravel())).shaped(rows, n)
+    here = (ratio < now).sum(0)
+    lows, highs, limits = (np.array(rows) for rows in zip(*(_bracket(stands, here) for stands in scan.stands), strict=True))
+    limits[:, np.isnan(now)] = np.nan
+    e, point = np.nonzero((lows >= 0) & ~np.isnan(now))
+    low, high = lows[e, point], highs[e, point]
+    search = _Search(e, point, ratio[low, point], ratio[high, point], scan.at(low, point), scan.at(high, point))
+    search.close(at)
+    causes = np.zeros(limits.shape, np.int64)
+    limits[e, point], causes[e, point] = search.low, search.cause
+    return {name: End(limits[i], causes[i]) for i, name in enumerate(ENDS)}
 
 
-def _by_name(found: Margins) -> dict[str, Array]:
-    return {name: pick(found) for name, pick in BORDERS.items()}
-
-
-def _duct(at: At, ratio: Array, law: AreaLaw, injectors: Injectors, walls: Walls) -> tuple[Duct, Array]:
-    entering, supply = at(ratio)
-    duct = duct_of(
-        entering.gas, entering.total_enthalpy, entering.velocity, entering.state.pressure, entering.mass_flow,
-        entering.area, law, injectors, supply, walls,
-    )  # fmt: skip
-    return duct, entering.mach
+def _bracket(stands: Array, here: Codes) -> tuple[Codes, Codes, Array]:
+    """Rows (N,) of the last ratio at which a mode stands and the first at which it does not, nearest to the row `here`, and the limit
+    that needs no search: inf, 0, or NaN where there is a search; rows are -1 where there is none. stands: (R, N)."""
+    rows, columns = np.arange(len(stands))[:, None], np.arange(here.size)
+    known = ~np.isnan(stands)
+    before = np.maximum.accumulate(np.where(known, rows, -1), axis=0)
+    before = np.vstack([np.full((1, here.size), -1), before[:-1]])
+    ends = (stands == 0.0) & (before >= 0) & (stands[before, columns] == 1.0)
+    above, below = ends & (before >= here), ends & (before < here)
+    now = stands[here, columns]
+    up = above.any(0) & ((now == 1.0) | ~below.any(0))
+    high = np.where(up, above.argmax(0), len(stands) - 1 - below[::-1].argmax(0))
+    searched = (up | (below.any(0) & (now == 0.0))) & ~np.isnan(now)
+    limit = np.select([searched | np.isnan(now), now == 1.0], [np.nan, np.inf], 0.0)
+    return np.where(searched, before[high, columns], -1), np.where(searched, high, -1), limit
 
 
 class _Search:
-    """First fall of one margin through zero, or into the unknown beyond a choking march, where it is extrapolated."""
+    """Brackets (K,) of ends of modes, closed in on together. end: which mode; point: of which point; low stands, high does not."""
 
-    def __init__(self, ratio: Array, margin: Array) -> None:
-        self.ratio, self.margin = ratio, margin
-        self.root, self.open = float("nan"), False
-        if not np.isfinite(margin).any():
-            return
-        safe = margin >= 0.0
-        if not safe[0]:
-            self.root = 0.0 if margin[0] < 0.0 else self.root
-        elif safe.all():
-            self.root = float("inf")
-        else:
-            self.open = True
-            self._aim()
+    def __init__(self, end: Codes, point: Codes, low: Array, high: Array, at_low: _Seen, at_high: _Seen) -> None:
+        own = np.arange(end.size)
+        self.end, self.point, self.low, self.high = end, point, low, high
+        self.margins = np.stack([at_low.margins, at_high.margins])
+        self.cause = at_high.cause[end, own]
 
-    def _aim(self) -> None:
-        bad = int(np.argmax(~(self.margin >= 0.0)))
-        self.low, self.high = self.ratio[bad - 1], self.ratio[bad]
-        other = bad if np.isfinite(self.margin[bad]) or bad < 2 else bad - 2
-        rise = (self.margin[other] - self.margin[bad - 1]) / (self.ratio[other] - self.low)
-        guess = self.low - self.margin[bad - 1] / rise if rise < 0.0 else 0.5 * (self.low + self.high)
-        self.root = float(np.clip(guess, self.low, self.high))
-        self.open = bool(self.high - self.low > _SETTLED * self.high)
+    @property
+    def open(self) -> Codes:
+        """Which are not narrow yet."""
+        return np.flatnonzero(self.high - self.low > _SETTLED * self.high)
 
-    def probes(self) -> Array:
-        """Ratios to look at: close about the present guess, wide at the ends of the bracket."""
-        side = np.where(_SPREAD < 0.0, self.root - self.low, self.high - self.root)
-        found: Array = np.clip(self.root + _SPREAD * side, self.low, self.high)
-        return found
+    def close(self, at: At) -> None:
+        """Narrow all brackets, a batch of ducts a turn."""
+        for _ in range(_TURNS):
+            w = self.open
+            if not w.size:
+                return
+            tried = self._probes(w, max(3, _PROBES // w.size))
+            points = np.repeat(self.point[w], tried.shape[1])
+            self._learn(w, tried, _seen(at(points, tried.ravel())).shaped(*tried.shape))
 
-    def learn(self, ratio: Array, margin: Array) -> None:
-        """Take in what was found there."""
-        every, first = np.unique(np.concatenate([self.ratio, ratio]), return_index=True)
-        self.ratio, self.margin = every, np.concatenate([self.margin, margin])[first]
-        self._aim()
+    def _probes(self, w: Codes, count: int) -> Array:
+        """Ratios to look at (len(w), count), rising: even ones, or dense about the zero of a margin that is known at both ends."""
+        low, high = self.low[w, None], self.high[w, None]
+        even = np.arange(1.0, count + 1.0) / (count + 1.0)
+        which = _WHICH[self.cause[w]]
+        a, b = self.margins[:, which, w]
+        known = (which >= 0) & (a > 0.0) & (b < 0.0)
+        zero = np.where(known, a / np.where(known, a - b, 1.0), 0.5)[:, None]
+        side = _NEAREST ** (1.0 - np.abs(2.0 * even - 1.0)) * np.sign(2.0 * even - 1.0)
+        about = zero + side * np.where(side < 0.0, zero, 1.0 - zero) * (1.0 - 1e-3)
+        return low + (high - low) * np.where(known[:, None], about, even)
+
+    def _learn(self, w: Codes, tried: Array, seen: _Seen) -> None:
+        own = np.arange(w.size)
+        stands = seen.stands[self.end[w], own]
+        fails = stands == 0.0
+        high = np.where(fails.any(1), fails.argmax(1), tried.shape[1])
+        before = (np.arange(tried.shape[1]) < high[:, None]) & (stands == 1.0)
+        low = np.where(before.any(1), tried.shape[1] - 1 - before[:, ::-1].argmax(1), -1)
+        for side, row, edge in ((1, high, self.high), (0, low, self.low)):
+            new = np.flatnonzero((row >= 0) & (row < tried.shape[1]))
+            edge[w[new]] = tried[new, row[new]]
+            self.margins[side][:, w[new]] = seen.margins[:, new, row[new]]
+            if side:
+                self.cause[w[new]] = seen.cause[self.end[w[new]], new, row[new]]

@@ -12,7 +12,6 @@ from hypothesis import strategies as st
 from cycle.flow.duct import modes
 from cycle.flow.duct.core import find_train
 from cycle.flow.duct.march import march
-from cycle.flow.duct.margins import margins
 from cycle.flow.duct.modes import MODES, STATUSES, TRIED, solve_block
 from cycle.flow.duct.scan import scan_of
 from cycle.flow.duct.summits import CORNER, EXIT, SMOOTH
@@ -55,13 +54,10 @@ def test_more_heat_takes_the_duct_through_every_mode_in_order():
 def test_shock_train_and_thermal_throat_join_without_a_jump(friction):
     """p3, the exit speed and where the core fills the duct, on both sides of the border, which is first solved for."""
     heats = np.linspace(5e5, 2.2e6, 60)
-    margin = margins(heated(heats, friction), np.full(60, KORKEGI)).train
-    low = int(np.flatnonzero(margin > 0.0)[-1])
-    for _ in range(4):
-        fine = np.linspace(heats[low], heats[low + 1], 60)
-        margin = margins(heated(fine, friction), np.full(60, KORKEGI)).train
-        heats, low = fine, int(np.flatnonzero(margin > 0.0)[-1])
-    border = heats[low]
+    for _ in range(6):
+        low = int(np.flatnonzero(np.isin(solved(heated(heats, friction)).mode, [SCRAMJET, TRAIN]))[-1])
+        heats = np.linspace(heats[low], heats[low + 1], 60)
+    border = heats[0]
     found = solved(heated(border * (1.0 + np.array([-1e-3, -1e-5, -1e-7, 1e-7, 1e-5, 1e-3])), friction))
     assert list(found.mode) == [TRAIN] * 3 + [THROAT] * 3
     for name, slope in (("pressure_3", 3.0), ("velocity", 3.0)):
@@ -219,7 +215,7 @@ def test_two_critical_sections_without_a_continuous_flow_have_no_mode():
     found = solve_block(duct, limit)
     without = (found.mode == NONE) & (found.status == STATUSES.index("no-mode"))
     assert without.any()
-    assert {TRIED[t] for t in found.train[without]} == {"chokes"}
+    assert "chokes" in {TRIED[t] for t in found.train[without]} <= {"chokes", "no such pressure"}
     assert {TRIED[t] for t in found.throat[without]} <= {"chokes", "no core meets it"}
 
 

@@ -24,8 +24,7 @@ COLUMNS = (
 """Columns of the table: key of the profile, head, dimension."""
 
 BORDERS = {
-    "attached-separates": "the attached flow separates",
-    "attached-chokes": "the attached flow chokes",
+    "attached": "no attached flow",
     "train": "thermal throat",
     "unstart": "unstart",
 }

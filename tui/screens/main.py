@@ -242,8 +242,7 @@ class MainScreen(Editing, Filing, Peeking, Plotting, Ranking, Asking, Pinning, C
         if found is None or case is None or case.value("combustor.process") != "duct":
             self.put(replace(self.session, note="no duct: the burner process duct gives one"))
             return
-        if self.session.borders is None and self.session.settled:
-            self.engine.newest("borders", self.session.generation, lambda: figures.heat_limits(found))
+        self.ask_heat_limits()
         body, head = (partial(self._of_duct, view) for view in (ducting.duct_rows, ducting.duct_head))
         page = Page(
             "Along the duct", body, head=head, verbs={"l": lambda: page.leave("plots")}, keys="arrows scroll; l draws it; Escape goes back"
@@ -255,9 +254,10 @@ class MainScreen(Editing, Filing, Peeking, Plotting, Ranking, Asking, Pinning, C
         return view(self.session, wide)
 
     def bordered(self, result: Result) -> None:
-        """Show the borders of the duct's regimes on the page that waits for them."""
-        if result.generation == self.session.generation:
-            self.put(replace(self.session, borders=result.value))
+        """Show the heat at which the duct's modes end, in the limits and on the page that waits for it."""
+        found, got = self.session.figures, result.value
+        if result.generation == self.session.generation and found is not None:
+            self.put(replace(self.session, borders=got.ends, figures=replace(found, limits=got.limits)))
             if isinstance(self.app.screen, Overlay):
                 self.app.screen.paint()
 

@@ -8,7 +8,7 @@ from dataclasses import replace
 from typing import ClassVar
 
 from cycle.units import respell
-from tui import figures, peek
+from tui import peek
 from tui.engine import Result
 from tui.items import completed, written
 from tui.line import Line, clean, line, wrap
@@ -78,13 +78,9 @@ class PeekScreen(Picture):
 
     def _ask_borders(self) -> None:
         """Ask for the borders of a duct's regimes where its heat is drawn: they cost more than the line, so they come last."""
-        session = self.desk.session
-        found = session.figures
         heat = f"combustor.{self.peek.case.value('combustor.heat')}"
-        if found is None or not found.profile or session.borders is not None or not session.settled:
-            return
         if [s.input.key for s in self.peek.spans] == [heat]:
-            self.desk.engine.newest("borders", session.generation, lambda: figures.heat_limits(found))
+            self.desk.ask_heat_limits()
 
     def solved(self, result: Result) -> None:
         """Take a piece; one of a line that is no longer drawn is dropped."""

@@ -201,13 +201,12 @@ class Solver:
             cut, own = duct.take(runs), scan.take(runs)
             below, above, here = up.take(runs), down.take(runs), _taken(at, runs)
             fill = reattachment(cut, own, below, here, along.take(runs))
-            meets: Flags = along.rises.any(0)
-            code[runs] = np.where(fill.found, STANDS, np.where(meets[runs], UNSETTLED, NO_CORE))
-            w = index[runs][fill.found]
-            found.pressure_3[w], found.x_fill[w] = fill.pressure[fill.found], fill.x[fill.found]
-            found.places[w] = fill.places[fill.found]
-            found.peak[w] = np.maximum(fill.pressure, above.flow.pressure.max(0))[fill.found]
-            self._book(index[runs], fill.found, THROAT, [(below, False), (above, True)], fill.x, fill.pressure, fill.friction)
+            good, places = fill.found & ~fill.over, along.rises.sum(0)[runs]
+            code[runs] = np.select([good, ~fill.found & (places > 0)], [STANDS, UNSETTLED], NO_CORE)
+            w = index[runs][good]
+            found.pressure_3[w], found.x_fill[w], found.places[w] = fill.pressure[good], fill.x[good], places[good]
+            found.peak[w] = np.maximum(fill.pressure, above.flow.pressure.max(0))[good]
+            self._book(index[runs], good, THROAT, [(below, False), (above, True)], fill.x, fill.pressure, fill.friction)
         old = found.throat[index]
         first = (code == STANDS) | ~np.isin(old, [STANDS, NO_START])
         nearer = (code == NO_START) & ((old != NO_START) | (needed < found.needed[index]))

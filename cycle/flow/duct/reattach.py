@@ -8,12 +8,12 @@ the flow upstream of it does not matter. Where it is nowhere negative the critic
 
 from __future__ import annotations
 
-from dataclasses import dataclass, fields, replace
+from dataclasses import dataclass, fields
 
 import numpy as np
 
 from cycle.arrays import Array, Codes, Flags
-from cycle.flow.duct.core import FRICTION_TURNS, Lost, core_friction, friction_turn, unlost
+from cycle.flow.duct.core import FRICTION_TURNS, Lost, core_at, core_friction, friction_turn, unlost
 from cycle.flow.duct.layout import Duct
 from cycle.flow.duct.march import Branch, spot
 from cycle.flow.duct.scan import Scan
@@ -31,6 +31,11 @@ _SECANTS = 10
 """Turns after which the bracket is halved: it closes on a place where the momentum jumps."""
 _NEAR = 1e-8
 """Momentum lacking, over the impulse, below which there is no jump and the secant has the last turns."""
+_ROOM, _OVER = 1e-6, 1e-6
+"""Place ahead of the filling, over the duct's length, from which a core is looked at, and its area over the duct's, less 1, at which it is
+too large."""
+_PLANE = 1e-9
+"""Distance from a plane in which fuel enters, over the duct's length, that is none."""
 _BORDER = 1e-8
 """Momentum, over the impulse, that the critical flow's may fall short of the core's by rounding."""
 _TOO_MUCH = 1e-6
@@ -39,15 +44,14 @@ _TOO_MUCH = 1e-6
 
 @dataclass(frozen=True, eq=False)
 class Fill:
-    """Each (N,): x m, p3 Pa, friction of the core so far N, and whether the place was found. least: smallest momentum
-    lacking on the way, N; places: how many there are."""
+    """Each (N,): x m, p3 Pa, friction of the core so far N, whether the place was found, and whether the core is larger than the duct
+    somewhere ahead of it."""
 
     x: Array
     pressure: Array
     friction: Array
     found: Flags
-    least: Array
-    places: Codes
+    over: Flags
 
 
 def lacking(duct: Duct, momentum: Array, pressure: Array, brought: Array, friction: Array) -> Array:
@@ -58,12 +62,12 @@ def lacking(duct: Duct, momentum: Array, pressure: Array, brought: Array, fricti
 
 @dataclass(frozen=True, eq=False)
 class Miss:
-    """Momentum lacking along a subsonic branch, from its upstream end to the throat: x m and miss N, (R, N), inf where there is no flow.
-    reached: the upstream end, m; low: place of the least one, m, least: its value, N; ends: it falls still
-    at the upstream end; each (N,)."""
+    """Momentum lacking along a subsonic branch, from its upstream end to the throat: x m and bare N, (R, N), without the core's friction,
+    which only adds to it; inf where there is no flow. reached: the upstream end, m; low: place of the least one with friction, m, least:
+    its value, N; ends: it falls still at the upstream end; each (N,)."""
 
     x: Array
-    miss: Array
+    bare: Array
     reached: Array
     low: Array
     least: Array
@@ -76,7 +80,7 @@ class Miss:
     @property
     def rises(self) -> Flags:
         """Rows ahead of which it rises through zero, (R - 1, N)."""
-        rises: Flags = (self.miss[1:] >= 0.0) & (self.miss[:-1] < 0.0) & np.isfinite(self.miss[1:])
+        rises: Flags = (self.bare[1:] >= 0.0) & (self.bare[:-1] < 0.0) & np.isfinite(self.bare[1:])
         return rises
 
 
@@ -94,7 +98,7 @@ def miss_along(duct: Duct, scan: Scan, up: Branch) -> Miss:
     low, least = _lowest(x, miss, row)
     first = there.argmax(0)
     reached = x[first, columns]
-    return Miss(x, miss, reached, low, least, (row == first) & (least >= 0.0) & (reached > 0.0))
+    return Miss(x, np.where(there, bare, np.inf), reached, low, least, (row == first) & (least >= 0.0) & (reached > 0.0))
 
 
 def _lowest(x: Array, y: Array, row: Codes) -> tuple[Array, Array]:
@@ -109,28 +113,47 @@ def _lowest(x: Array, y: Array, row: Codes) -> tuple[Array, Array]:
     return np.where(inside, place, x[row, columns]), np.where(inside, value, y[row, columns])
 
 
+PLACES = 3
+"""Places of reattachment that are looked at, from the entry."""
+
+
 def reattachment(duct: Duct, scan: Scan, up: Branch, at: Throat, along: Miss) -> Fill:
     """Follow the subsonic branch `up` from its upstream end: the first place where the core has no more momentum than the attached flow,
-    having had more. Where there is none, the throat itself, if the core has no more momentum than the critical flow there: so close to
-    the border to the shock train the march cannot tell."""
-    columns, x, rises = np.arange(duct.size), along.x, along.rises
+    having had more, and nowhere ahead of it fills more than the duct."""
+    found = _at_rise(duct, scan, up, at, along, along.rises)
+    for rank in range(1, PLACES):
+        w = np.flatnonzero(~(found.found & ~found.over) & (along.rises.sum(0) > rank))
+        if not w.size:
+            break
+        cut, own = along.take(w), duct.take(w)
+        later = cut.rises & (cut.rises.cumsum(0) > rank)
+        part = _at_rise(own, scan.take(w), up.take(w), Throat(*(getattr(at, f.name)[w] for f in fields(Throat))), cut, later)
+        for f in fields(Fill):
+            getattr(found, f.name)[w] = getattr(part, f.name)
+    return found
+
+
+def _at_rise(duct: Duct, scan: Scan, up: Branch, at: Throat, along: Miss, rises: Flags) -> Fill:
+    """The first of these places. Where there is none, the throat itself, if the core has no more momentum than the critical flow there:
+    so close to the border to the shock train the march cannot tell."""
+    columns, x = np.arange(duct.size), along.x
     row = np.where(rises.any(0), rises.argmax(0) + 1, np.clip((x < along.low).sum(0), 1, len(x) - 1))
     # between two rows the least may dip below zero unseen
     low = np.where(rises.any(0), x[row - 1, columns], along.low)
-    f_low = np.where(rises.any(0), along.miss[row - 1, columns], along.least)
-    high, f_high = x[row, columns], along.miss[row, columns]
+    f_low = np.where(rises.any(0), along.bare[row - 1, columns], along.least)
+    high, f_high = x[row, columns], along.bare[row, columns]
     rise = np.where(f_high > f_low, f_high - f_low, np.inf)
     known = (f_low < 0.0) & (f_high >= 0.0) & np.isfinite(f_high)
+    high = np.where(known, high, up.x[0])
     guess = np.where(known, low + (high - low) * np.clip(-f_low / rise, 0.0, 1.0), up.x[0])
-    # the friction of the core at another pressure moves the place: it has room as far as the flow goes
-    first = np.where(duct.friction > 0.0, along.reached, low)
+    # friction of the core only brings the place nearer to the entry
+    first = np.where((duct.friction > 0.0) & (along.low < low), along.low, low)
     found = _bracketed(duct, scan, up, first, high, guess, np.where(known, rise / (high - low), np.nan))
-    found = replace(found, least=along.least, places=rises.sum(0))
     if found.found.all():
         return found
     lacks = throat_lacks(duct, scan, at) / duct.impulse
     border = ~found.found & (lacks > -_BORDER) & (lacks < _TOO_MUCH)
-    ends = (at.x, at.pressure, found.friction, border, found.least, found.places)
+    ends = (at.x, at.pressure, found.friction, border, np.zeros_like(border))
     return Fill(*(np.where(border, end, getattr(found, f.name)) for f, end in zip(fields(Fill), ends, strict=True)))
 
 
@@ -174,11 +197,17 @@ def _bracketed(duct: Duct, scan: Scan, up: Branch, low: Array, high: Array, x: A
             break
         before, x = np.stack([x, miss]), np.where(done, x, new)
     found = done & solved & ((x < up.x[0]) | (miss >= 0.0))
-    jumps = np.flatnonzero(found & (np.abs(miss) > _NEAR * duct.impulse))
+    plane = ((np.abs(duct.edges - x) < _PLANE * duct.end)[1:-1] & (np.diff(duct.injected, axis=0) > 0.0)).any(0)
+    off = np.abs(miss) > _NEAR * duct.impulse
+    found &= ~off | plane
+    jumps = np.flatnonzero(found & off)
     if jumps.size:
         cut, own, taken = duct.take(jumps), scan.take(jumps), lost.take(jumps)
         p[jumps], friction[jumps] = _at_plane(cut, own, segment[jumps], x[jumps], up.free_at(x)[jumps], p[jumps], taken)
-    return Fill(x, p, friction, found, miss, np.zeros(x.shape, np.int64))
+    core = core_at(duct, scan.mixture, p, lost.rows, lost.state)
+    ahead = scan.grid.x < x - _ROOM * duct.end
+    largest = np.where(ahead, core.ln_share, -1.0).max(0)
+    return Fill(x, p, friction, found, largest > _OVER)
 
 
 def _at_plane(duct: Duct, scan: Scan, segment: Codes, x: Array, free: Array, pressure: Array, lost: Lost) -> tuple[Array, Array]:
