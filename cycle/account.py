@@ -64,8 +64,9 @@ def _along(x: Array, values: Array, at: Array) -> Array:
     x, values = np.take_along_axis(x, order, 0), np.take_along_axis(values, order, 0)
     row = np.clip((x <= at).sum(0), 1, np.isfinite(x).sum(0) - 1)
     (low, high), (first, last) = (np.take_along_axis(v, np.stack([row - 1, row]), 0) for v in (x, values))
-    part = np.clip((at - low) / np.where(high > low, high - low, 1.0), 0.0, 1.0)
-    found: Array = first + part * (last - first)
+    with np.errstate(invalid="ignore"):  # a point without a solution has no profile
+        part = np.clip((at - low) / np.where(high > low, high - low, 1.0), 0.0, 1.0)
+        found: Array = first + part * (last - first)
     return found
 
 

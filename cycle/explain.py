@@ -259,6 +259,7 @@ _SIDES: dict[str, tuple[_Side, _Side]] = {
     "ignition_temperature": (_side("temperature", "station 3"), _side("limits.ignition_temperature")),
     "ignition_pressure": (_side("pressure", "station 3"), _side("limits.ignition_pressure")),
     "thermal_choking": (_heat, _nowhere),
+    "unstart_heat": (_heat, _nowhere),
     "gas_temperature": (_extreme(max), _side("limits.gas_temperature")),
     "model_range": (_extreme(max), _nowhere),
     "data_high": (_extreme(max), _nowhere),

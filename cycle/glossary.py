@@ -129,6 +129,7 @@ LIMITS: tuple[Output, ...] = (
            "Burner pressure where the fuel enters against the fuel's supply pressure, below which none can flow."),
     _limit("thermal_choking", "thermal choking", "Heat at which the burner chokes, solved for.",
            source="Shapiro (1953), ch. 7 (from memory)"),
+    _limit("unstart_heat", "unstart, heat", "Heat at which a duct has no mode any more, or its train outgrows the isolator."),
     _limit("gas_temperature", "gas temperature", "Hottest station against what the walls stand."),
     _limit("model_range", "gas without dissociation", "Hottest station against where dissociation matters and the model leaves it out."),
     _limit("data_high", "species data, highest T", "Hottest station against the end of the species data.", source="NASA/TP-2002-211556"),

@@ -43,7 +43,7 @@ _DECADES = 10.0 ** -np.arange(1.0, 9.0)
 _ROUNDS = 12
 _PLACES = 3
 """Places that are closed in on at most, the nearest first."""
-_CHOKING = "thermal_choking"
+_BY_STATUS = ("thermal_choking", "unstart_heat")
 _DIGITS = range(6, 12)
 """Digits of a value that is given: the fewest that keep it at the limit."""
 
@@ -154,7 +154,7 @@ class _Tries:
         self.case, self.limit, self.spec, self.now = case, limit, spec, now
         self.points: dict[float, _Point] = {}
         self.missing = ""
-        self.by_status = limit == _CHOKING and case.choices["combustor.process"] != "duct"
+        self.by_status = limit in _BY_STATUS
 
     def first(self) -> Array:
         """The case's own value and steps from it that grow up to the bounds."""
@@ -182,13 +182,14 @@ class _Tries:
         self.points |= {x: _Point(x, m, s) for x, m, s in zip(good, margins, walk.status, strict=True)}
 
     def _margins(self, march: March, status: list[str]) -> list[float]:
-        """Margins of a batch. Choking has none there: a choked point is beyond the limit, a solved one is not, and no more is known."""
+        """Margins of a batch. The largest heat has none there: a choked or unstarted point is beyond it, a solved one is not, and no more
+        is known."""
         row = next((r for r in limits.limits(march) if r.key == self.limit), None)
         if row is None:
             raise KeyError(self.limit)
         self.missing = row.missing
         if self.by_status:
-            return [{"solved": 1.0, "choked": -1.0}.get(s, math.nan) for s in status]
+            return [{"solved": 1.0, "choked": -1.0, "unstarted": -1.0, "no-mode": -1.0}.get(s, math.nan) for s in status]
         return [float(m) if s == "solved" else math.nan for m, s in zip(row.margin, status, strict=True)]
 
     def _sorted(self) -> list[_Point]:

@@ -51,7 +51,7 @@ LOSSES = {
     "inlet": "inlet", "isolator_or_diffuser": "isolator", "incomplete_combustion": "incomplete_burning", "burner": "burner",
     "nozzle": "nozzle",
 }  # fmt: skip
-FUEL_LIMITS = {"attached_chokes_above": "attached-chokes", "oblique_train_gives_way_above": "train", "unstart_above": "unstart"}
+FUEL_LIMITS = {"attached_chokes_above": "attached", "oblique_train_gives_way_above": "train", "unstart_above": "unstart"}
 
 SPECIES = ("N2", "O2", "CO2", "CO", "H2O", "H2", "OH", "H", "O", "N", "NO", "NO2", "N2O", "HO2", "H2O2", "CH4")
 """What the solutions let react, and ethylene where it is the fuel."""
@@ -164,7 +164,9 @@ def ramjet_figures(walk: cycle.Walk) -> dict[str, float]:
 
 
 def fuel_limits(walk: cycle.Walk) -> dict[str, float]:
-    return {key: walk.heat_limits[own] for key, own in FUEL_LIMITS.items()}
+    """The attached flow's end is that by choking: nothing separates."""
+    unseparated = cycle.solve(walk.case.replace({"combustor.separation_limit": 99.0}))
+    return {key: (unseparated if own == "attached" else walk).heat_limits[own] for key, own in FUEL_LIMITS.items()}
 
 
 def shock_figures(walk: cycle.Walk) -> dict[str, float]:

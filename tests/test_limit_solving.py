@@ -52,13 +52,21 @@ def test_the_heat_at_choking_is_that_of_the_closed_search() -> None:
     assert found.value == pytest.approx(cycle.solve(shipped("saltmarsh")).largest_heat(), rel=ZERO)
 
 
-@pytest.mark.parametrize(("limit", "name"), [("duct_separation", "attached-separates"), ("unstart", "unstart")])
-def test_the_heat_at_the_borders_of_a_duct_is_that_of_the_closed_search(limit: str, name: str) -> None:
+@pytest.mark.parametrize(("limit", "name"), [("duct_separation", "attached"), ("unstart", "unstart"), ("unstart_heat", "unstart")])
+def test_the_heat_at_the_ends_of_the_modes_is_that_of_the_search_for_it(limit: str, name: str) -> None:
     # without the length of its shock train only the impulse unstarts it
     case = shipped("tidegate").replace({"isolator.momentum_thickness": None})
     found = solve_for_limit(case, limit, "combustor.equivalence_ratio")
     assert found.kind == "zero"
     assert found.value == pytest.approx(cycle.solve(case).heat_limits[name], rel=1e-5)
+
+
+def test_unstart_by_the_isolator_is_found_where_the_solution_ends() -> None:
+    case = shipped("tidegate")
+    walk = cycle.solve(case)
+    found = solve_for_limit(case, "unstart_heat", "combustor.equivalence_ratio")
+    assert walk.heat_limit_causes["unstart"] == "isolator-length"
+    assert found.value == pytest.approx(walk.heat_limits["unstart"], rel=1e-5)
 
 
 def test_where_the_solution_ends_first_its_last_point_is_told() -> None:
@@ -75,7 +83,6 @@ def test_a_limit_out_of_reach_or_not_assessed_says_why() -> None:
     assert never.kind == "none" and math.isnan(never.value) and "not reached within the bounds" in never.words
     unknown = solve_for_limit(case, "gas_temperature", "combustor.equivalence_ratio")
     assert unknown.kind == "none" and "not given" in unknown.words
-    assert "unstart" in solve_for_limit(shipped("tidegate"), "thermal_choking", "combustor.equivalence_ratio").words
     assert "no value" in solve_for_limit(case, "data_low", "flight.altitude").words
 
 

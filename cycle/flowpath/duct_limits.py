@@ -26,7 +26,7 @@ isolator length at unstart; or the status of the points beyond."""
 _SCANNED = 25
 _BUNCHED = 1.5
 """Exponent of the scan's ratios over the even ones: denser at little heat."""
-_SETTLED = 1e-6
+_SETTLED = 3e-9
 """Width of the last bracket, over the ratio."""
 _TURNS = 30
 _PROBES = 48

@@ -29,7 +29,7 @@ _FRICTION_TURNS = 3
 
 def first_loss(duct: Duct) -> Duct:
     """The duct with the heat that a stream at Mach 1 everywhere would lose: near enough to decide whether it chokes."""
-    grid = lattice(duct.edges, duct.grades, LATTICE_PANELS)
+    grid = lattice(duct.edges, duct.edges, LATTICE_PANELS)
     mixture = duct.mixture(grid.segment, grid.x)
     at = sonic(mixture)
     rate = flux(mixture, at.state, at.velocity, duct.wall_temperature, mixture.mass_flow * mixture.drag)
@@ -38,7 +38,7 @@ def first_loss(duct: Duct) -> Duct:
 
 def with_loss(duct: Duct, lost: Array) -> Duct:
     """The duct with the heat lost up to the rows of its lattice, W (P n, N)."""
-    return replace(duct, cooling=Cooling(lattice(duct.edges, duct.grades, LATTICE_PANELS), lost))
+    return replace(duct, cooling=Cooling(lattice(duct.edges, duct.edges, LATTICE_PANELS), lost))
 
 
 def flux(mixture: Mixture, state: State, velocity: Array, wall: Array, exchange: Array) -> Array:

@@ -64,6 +64,18 @@ PANELS = 12
 _SURE = 0.02
 """Momentum lacking at the throat, over the impulse, above which no shock train needs to be looked for."""
 
+_NEAR_SONIC = 1.2
+"""Square of the Mach number below which a march may have less impulse at a critical section than it shows."""
+
+_WIDTH = 0.02
+"""Distance over the duct's length from where a march begins, below which a critical section is that one."""
+
+_LEAST = 1e-7
+"""Impulse lacking, over that of station 2, that is none."""
+
+_UNSURE = 1e-3
+"""Momentum that the core has beyond the critical flow's least, over the impulse of station 2, below which a place may be missed."""
+
 _FURTHER = 5
 """Marches that close in on the place where a subsonic branch chokes, halving the way."""
 
@@ -100,9 +112,10 @@ class Solver:
         peak = spot(duct, segment, x, run.free_at(x), one, scan)[1].pressure[0]
         peak = np.maximum(peak, run.flow.pressure.max(0))
         separates = (peak > self.separation[index] * duct.pressure) | (self.least[index] > ATTACHED)
-        self.found.attached[index] = np.select([run.lost, run.chokes, separates], [UNSETTLED, CHOKES, SEPARATES], STANDS)
-        self.found.attached_peak[index] = np.where(run.passes, peak, np.nan)
-        stands = run.passes & ~separates
+        short = self._short(index, run)
+        self.found.attached[index] = np.select([run.lost, run.chokes | short, separates], [UNSETTLED, CHOKES, SEPARATES], STANDS)
+        self.found.attached_peak[index] = np.where(run.passes & ~short, peak, np.nan)
+        stands = run.passes & ~short & ~separates
         w = index[stands]
         self.found.pressure_3[w], self.found.x_fill[w], self.found.peak[w] = duct.pressure[stands], 0.0, peak[stands]
         self._book(index, stands, ATTACHED, [(run, True)], np.zeros(index.size), duct.pressure, np.zeros(index.size))
@@ -115,10 +128,11 @@ class Solver:
         if looked is None:
             return
         index, train, run = looked
-        w = index[run.passes]
-        self.found.pressure_3[w], self.found.x_fill[w] = train.pressure[run.passes], train.x[run.passes]
-        self.found.peak[w] = np.maximum(run.flow.pressure.max(0), train.pressure)[run.passes]
-        self._book(index, run.passes, TRAIN, [(run, True)], train.x, train.pressure, train.friction)
+        stands = self.found.train[index] == STANDS
+        w = index[stands]
+        self.found.pressure_3[w], self.found.x_fill[w] = train.pressure[stands], train.x[stands]
+        self.found.peak[w] = np.maximum(run.flow.pressure.max(0), train.pressure)[stands]
+        self._book(index, stands, TRAIN, [(run, True)], train.x, train.pressure, train.friction)
 
     def look_for_second(self) -> None:
         """Where the attached flow stands: whether a shock train would stand too."""
@@ -137,8 +151,24 @@ class Solver:
             return None
         index, duct, scan, train = index[kept], duct.take(kept), scan.take(kept), _taken(train, kept)
         run = march(duct, train.x, duct.end, train.free, np.ones(kept.size), scan, self.count, graded=False)
-        self.found.train[index] = np.select([run.lost, run.chokes], [UNSETTLED, CHOKES], STANDS)
+        short = self._short(index, run)
+        self.found.train[index] = np.select([run.lost, run.chokes | short], [UNSETTLED, CHOKES], STANDS)
         return index, train, run
+
+    def _short(self, index: Codes, run: Branch) -> Flags:
+        """Where a march that passes close to Mach 1 has less impulse at a critical section than the flow needs there, (index.size,): the
+        march alone tells only to about a thousandth of the heat."""
+        short = np.zeros(index.size, np.bool_)
+        near = np.flatnonzero(run.passes & (run.flow.mach_squared.min(0) < _NEAR_SONIC))
+        for rank in range(CANDIDATES if near.size else 0):
+            behind = self.summits.x[rank, index[near]] > run.x[0, near] + _WIDTH * self.duct.end[index[near]]
+            w = near[self.summits.there[rank, index[near]] & behind]
+            if not w.size:
+                continue
+            duct, scan = self.part(index[w])
+            at, cut = self._throat(index[w], duct, scan, rank), run.take(w)
+            short[w] |= at.there & (at.x > cut.x[0]) & (cut.free_at(at.x) < at.free - _LEAST * duct.impulse)
+        return short
 
     def _surely_choked(self, index: Codes) -> Flags:
         """Where the throat lacks so much momentum that no shock train reaches past it, (index.size,)."""
@@ -192,7 +222,7 @@ class Solver:
 
     def _judge(self, index: Codes, duct: Duct, scan: Scan, at: Throat, down: Branch, up: Branch, along: Miss) -> None:
         """What becomes of a critical section whose marches and momentum lacking are known."""
-        found, fails = self.found, ~down.passes
+        found, fails = self.found, ~down.passes | self._short(index, down)
         needs = (along.least >= 0.0) & (along.reached < at.x)
         code = np.select([up.lost, needs, fails & down.lost, fails], [UNSETTLED, NO_START, UNSETTLED, CHOKES], NO_CORE)
         needed = duct.impulse + along.least
@@ -202,13 +232,16 @@ class Solver:
             below, above, here = up.take(runs), down.take(runs), _taken(at, runs)
             fill = reattachment(cut, own, below, here, along.take(runs))
             good, places = fill.found & ~fill.over, along.rises.sum(0)[runs]
-            code[runs] = np.select([good, ~fill.found & (places > 0)], [STANDS, UNSETTLED], NO_CORE)
+            # so close to unstart, or to a plane in which fuel enters, the rows of a march do not show that the core nowhere has more
+            hair = along.least[runs] > -_UNSURE * cut.impulse
+            code[runs] = np.select([good, ~fill.found & hair, ~fill.found & (places > 0)], [STANDS, NO_START, UNSETTLED], NO_CORE)
+            needed[runs] = np.maximum(needed[runs], np.where(code[runs] == NO_START, cut.impulse, -np.inf))
             w = index[runs][good]
             found.pressure_3[w], found.x_fill[w], found.places[w] = fill.pressure[good], fill.x[good], places[good]
             found.peak[w] = np.maximum(fill.pressure, above.flow.pressure.max(0))[good]
             self._book(index[runs], good, THROAT, [(below, False), (above, True)], fill.x, fill.pressure, fill.friction)
         old = found.throat[index]
-        first = (code == STANDS) | ~np.isin(old, [STANDS, NO_START])
+        first = (code == STANDS) | ~np.isin(old, [STANDS, NO_START, UNSETTLED])
         nearer = (code == NO_START) & ((old != NO_START) | (needed < found.needed[index]))
         takes = np.where(code == NO_START, nearer, first)
         w = index[takes]

@@ -36,7 +36,7 @@ _ROOM, _OVER = 1e-6, 1e-6
 too large."""
 _PLANE = 1e-9
 """Distance from a plane in which fuel enters, over the duct's length, that is none."""
-_BORDER = 1e-8
+_BORDER = 1e-6
 """Momentum, over the impulse, that the critical flow's may fall short of the core's by rounding."""
 _TOO_MUCH = 1e-6
 """The same beyond the core's, above which the place lies upstream of the throat."""
@@ -95,21 +95,22 @@ def miss_along(duct: Duct, scan: Scan, up: Branch) -> Miss:
         taken = core_friction(duct, scan, flow.pressure[::-1][row, columns], 1e-9).rows
         miss = miss + scan.grid.interpolated(taken, *scan.grid.locate(up.segment, up.x))[::-1]
         row = miss.argmin(0)
-    low, least = _lowest(x, miss, row)
+    low, least = _lowest(x, miss, row, m.ratio[::-1])
     first = there.argmax(0)
     reached = x[first, columns]
     return Miss(x, np.where(there, bare, np.inf), reached, low, least, (row == first) & (least >= 0.0) & (reached > 0.0))
 
 
-def _lowest(x: Array, y: Array, row: Codes) -> tuple[Array, Array]:
-    """Place and value of the least y (R, N) by a parabola about its row (N,); the row itself at an end or beside a jump."""
+def _lowest(x: Array, y: Array, row: Codes, ratio: Array) -> tuple[Array, Array]:
+    """Place and value of the least y (R, N) by a parabola about its row (N,); the row itself at an end or where the fuel `ratio` jumps."""
     columns, middle = np.arange(row.size), np.clip(row, 1, len(x) - 2)
     (x0, x1, x2), (y0, y1, y2) = (tuple(v[middle + k, columns] for k in (-1, 0, 1)) for v in (x, y))
     left, right = (y1 - y0) / (x1 - x0), (y2 - y1) / (x2 - x1)
     bend = (right - left) / (x2 - x0)
     place = 0.5 * (x0 + x1) - left / (2.0 * bend)
     value = y1 + (place - x1) * (left + bend * (place - x0))
-    inside = (middle == row) & (bend > 0.0) & (place > x0) & (place < x2) & (value <= y1)
+    same = ratio[middle - 1, columns] == ratio[middle + 1, columns]
+    inside = same & (middle == row) & (bend > 0.0) & (place > x0) & (place < x2) & (value <= y1)
     return np.where(inside, place, x[row, columns]), np.where(inside, value, y[row, columns])
 
 
