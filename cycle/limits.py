@@ -12,8 +12,8 @@ import numpy as np
 
 from cycle.account import injection_pressure, spread
 from cycle.arrays import Array, Codes
-from cycle.flow import gas_shocks, roots
-from cycle.flowpath import assembly, combustor, inlet_limits
+from cycle.flow import roots
+from cycle.flowpath import assembly, combustor, expansion, inlet_limits
 from cycle.flowpath.inlet_limits import Bound
 from cycle.flowpath.setting import Setting
 from cycle.flowpath.stream import Stream
@@ -213,10 +213,9 @@ def _behind_exit_shock(walked: March, station: str) -> Array:
     if record is None:
         return np.full(walked.setting.size, np.nan)
     stream, found = record.stream, np.full(record.index.size, np.nan)
-    fast = np.flatnonzero(stream.mach > 1.0)
+    fast = np.flatnonzero(stream.mach > 1.0 - expansion.WEAK)
     if fast.size:
-        part = stream.take(fast)
-        found[fast] = gas_shocks.normal_shock(part.gas, part.state, part.velocity).state.pressure
+        found[fast] = expansion.shocked(stream.take(fast)).state.pressure
     return spread(walked, record.index, found)
 
 

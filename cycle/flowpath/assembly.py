@@ -337,7 +337,8 @@ def expansion(entering: Stream, setting: Setting, ambient: Array) -> Step | Step
         step = Step(_diverging(frozen.exit, factor), Process("nozzle", start, "10"), status)
         return _closed(frozen.plane, step, ambient, entering) if kind == "area" else step
     if setting.has("nozzle.internal_area_ratio"):
-        found = widening.two_part(entering, entering.area * setting["nozzle.internal_area_ratio"], kind, end, _line(setting))
+        area = entering.area * setting["nozzle.internal_area_ratio"]
+        found = widening.two_part(entering, area, kind, end, _line(setting), from_throat=nozzle.has_throat(setting))
         status = named_status(found.fault, widening.FAULT_NAMES, _EXPANSION_FAULTS)
         over = {"over_expanded": found.over_expanded.astype(float)}
         return Steps(
