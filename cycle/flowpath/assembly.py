@@ -159,16 +159,13 @@ def fuel_supply(entering: Stream, setting: Setting, ratio: Array) -> Supply:
     return Supply(None, ratio, brought - released * stretch, heat, burnt, 1.0 if counted else 0.0)
 
 
-def _walls(setting: Setting, ratio: Array, flow: Array) -> Walls:
+def _walls(setting: Setting) -> Walls:
     friction = setting["combustor.friction_coefficient"]
     if setting.has("combustor.wall_temperature"):
         return Walls(friction, 0.0, setting["combustor.wall_temperature"])
     if setting.has("combustor.wall_heat_fraction"):
         return Walls(friction, setting["combustor.wall_heat_fraction"] * setting.heating_value)
-    burnt = ratio * flow * setting["combustor.burnt_fraction"]
-    with np.errstate(divide="ignore", invalid="ignore"):
-        lost = np.where(burnt > 0.0, setting.get("combustor.wall_heat", 0.0) / burnt, 0.0)
-    return Walls(friction, lost)
+    return Walls(friction, power=setting.get("combustor.wall_heat", 0.0))
 
 
 def _isolator(entering: Stream, setting: Setting) -> Isolator | None:
@@ -186,7 +183,7 @@ def flow_of(entering: Stream, setting: Setting, ratio: Array, second: bool = Fal
         _area_law(setting, entering.area),
         _injectors(setting),
         fuel_supply(entering, setting, ratio),
-        _walls(setting, ratio, entering.mass_flow),
+        _walls(setting),
         separation=setting["combustor.separation_limit"] if setting.has("combustor.separation_limit") else None,
         isolator=_isolator(entering, setting),
         asked=setting.choices["engine.mode"],
@@ -211,7 +208,7 @@ def largest_ratios(stream: Stream, setting: Setting, upper: float) -> dict[str, 
         at,
         _area_law(setting, entering.area),
         _injectors(setting),
-        _walls(setting, np.nan_to_num(ratio), entering.mass_flow),
+        _walls(setting),
         upper,
         separation=separation,
         panels=_panels(setting),
