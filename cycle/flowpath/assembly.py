@@ -202,7 +202,6 @@ def largest_ratios(stream: Stream, setting: Setting, upper: float) -> dict[str, 
         many = entering.take(same)
         return many, fuel_supply(many, setting.take(same), ratio)
 
-    ratio = _heat(entering, setting)
     separation = float(setting["combustor.separation_limit"][0]) if setting.has("combustor.separation_limit") else None
     return duct_limits.largest_ratios(
         at,
