@@ -160,7 +160,7 @@ INPUTS: tuple[Input, ...] = (
     Input("fuel.standard_entropy", "S0", "standard entropy", "Of the stored phase at 298.15 K and 1 bar; exergy needs it.",
           unit="molar entropy", above=0.0, upper=5e3, step=1.0, when=(("fuel.identity", ("formula",)),)),
     Input("fuel.temperature", "Tf", "fuel temperature", "Total temperature of the fuel as injected.", unit="temperature", lower=15.0,
-          upper=1500.0, default=300.0, step=10.0),
+          upper=3500.0, flight_upper=1500.0, default=300.0, step=10.0),
     Input("fuel.supply_pressure", "pf", "fuel supply pressure", "Total pressure of the fuel as injected; exergy needs it.",
           unit="pressure", above=0.0, upper=1e9, step=1e5),
     # combustor

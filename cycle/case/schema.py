@@ -206,4 +206,14 @@ def _plain(value: Any) -> Any:
 def json_schema() -> dict[str, Any]:
     """JSON Schema (2020-12) of a case file as plain data, made from the model that checks a case."""
     schema = model().model_json_schema()
-    return {"$schema": "https://json-schema.org/draft/2020-12/schema", **schema}
+    flight = {"if": {"not": {"required": ["entry"]}}, "then": {"properties": _flight_bounds()}}
+    return {"$schema": "https://json-schema.org/draft/2020-12/schema", **schema, "allOf": [flight]}
+
+
+def _flight_bounds() -> dict[str, Any]:
+    """What a case in flight, which has no table [entry], bounds more closely."""
+    found: dict[str, Any] = {}
+    for entry in (i for i in INPUTS if i.flight_upper is not None):
+        table = found.setdefault(entry.section, {"properties": {}})
+        table["properties"][entry.name] = {"maximum": entry.flight_upper}
+    return found
