@@ -15,7 +15,8 @@ class Input:
 
     unit: a dimension name of `cycle.units` (SI inside); lower and upper are inclusive bounds in SI, above and below
     exclusive ones; flight_upper: the upper bound, where it is lower, of a case in flight. default None: the key is optional, or
-    required where `required`. step: the natural step of an edit. whole: whole numbers only. follows: the key whose value holds when this one is absent.
+    required where `required`. step: the natural step of an edit. whole: whole numbers only. follows: the key whose value holds when
+    this one is absent.
     when: (choice, allowed values) pairs that must hold for the key to mean anything; the value "" holds where that choice
     does not apply itself.
     Kind "rows", an array of tables: columns, whose keys are plain names; fewest and most rows; one_of, columns of which each

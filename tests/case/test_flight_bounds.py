@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from pathlib import Path
 
+import jsonschema
 import numpy as np
 import pytest
 
@@ -64,5 +65,11 @@ def test_json_schema_and_entry_state_both_bounds() -> None:
     assert number["maximum"] == INPUT[KEY].upper == 3500.0
     flight = next(part for part in schema["allOf"] if part["if"] == {"not": {"required": ["entry"]}})
     assert flight["then"]["properties"]["fuel"]["properties"]["temperature"] == {"maximum": 1500.0}
+    good = {"format": 1, "fuel": {"temperature": 1500.0}}
+    jsonschema.validate(good, schema)
+    jsonschema.validate({"format": 1, "entry": {}, "fuel": {"temperature": 3500.0}}, schema)
+    for wrong in ({**good, "fuel": {"temperature": 1600.0}}, {"format": 1, "entry": {}, "fuel": {"temperature": 3600.0}}):
+        with pytest.raises(jsonschema.ValidationError):
+            jsonschema.validate(wrong, schema)
     assert bounds(INPUT[KEY]) == "at least 15, at most 3500 K, at most 1500 K in flight"
     assert "to 1500 K in flight" in dict(facts(INPUT[KEY], "si"))["allowed"]
