@@ -172,7 +172,7 @@ def _number(entry: Output, walk: Walk, where: str) -> Number:
     value = float(getattr(walk.station[where] if where else walk.performance, entry.key))
     place = f"station {where}" if where else ""
     if not math.isfinite(value):
-        return Number(place, math.nan, walk.reason if where else walk.why_not(entry.key), "", ())
+        return Number(place, math.nan, walk.why_not_at(where, entry.key) if where else walk.why_not(entry.key), "", ())
     entering = entry.equation.partition(" at ")[2] or entry.equation
     found = {s: _term(s, walk, where) for s in formula.symbols(entering)}
     return _with_terms(entry, place, value, (t for t in found.values() if t is not None))

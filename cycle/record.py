@@ -51,6 +51,8 @@ def record(walk: Walk, referee: bool = False) -> Json:
     reasons |= {f"performance.{k}": walk.why_not(k) for k, v in performance.items() if v is None}
     stations = {name: _station(station) for name, station in walk.station.items()}
     reasons |= {f"stations.{n}": walk.reason for n, station in walk.station.items() if not station.has_value}
+    lost = ((n, key) for n, station in stations.items() for key in _STATION_KEYS if station[key] is None)
+    reasons |= {f"stations.{n}.{key}": walk.why_not_at(n, key) for n, key in lost}
     for name in ("losses", "exergy"):
         if not getattr(walk, name):
             reasons[name] = walk.why_not(name)

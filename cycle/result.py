@@ -20,7 +20,7 @@ from cycle.flowpath.stream import SOLVED, STATUS_NAMES
 from cycle.gas.state import State
 from cycle.quantities import INPUT, OUTPUTS, RESTORES, STATUSES
 from cycle.walk import March, Record, march, modes
-from cycle.why_not import no_figure, no_rows
+from cycle.why_not import no_figure, no_rows, no_station_figure
 
 if TYPE_CHECKING:
     from cycle.case import Case
@@ -145,6 +145,17 @@ class Walk:
             return {species: spread(self.march, index, x[j]) for j, species in enumerate(record.stream.gas.species)}
 
         return Station(order, self.shape, fractions)
+
+    def why_not_at(self, station: str, key: str) -> str:
+        """Why a figure of a station has no value; "" where it has one. In a batch of the first point without one."""
+        known = np.isfinite(np.reshape(self.station[station][key], -1))
+        if known.all():
+            return ""
+        record = self._records[station]
+        if known[record.index].all():
+            return "no solution reaches this station"
+        states = self._totals if key.startswith("total_") else self._critical if key.startswith("critical_") else {}
+        return no_station_figure(self.march, record, key, states.get(station))
 
     @cached_property
     def processes(self) -> tuple[Process, ...]:

@@ -227,6 +227,20 @@ def _stations(walk: Walk, system: str) -> Iterable[Block]:
             rows.append((named(output.label, output.unit, system, output.key), *cells))
     yield Heading("Stations")
     yield Table(("reached through", *reached.values()), tuple(rows))
+    yield from _missing_at_stations(walk)
+
+
+def _missing_at_stations(walk: Walk) -> Iterable[Block]:
+    """One sentence a reason: the figures and the stations that lack a value for it; a rig's thrust potential is not missed."""
+    found: dict[str, tuple[dict[str, None], dict[str, None]]] = {}
+    for output in (o for o in OUTPUTS if o.where == "station"):
+        for name, station in walk.station.items():
+            flies = output.key != "thrust_potential" or walk.case.choices["start"] == "flight"
+            if flies and math.isnan(float(getattr(station, output.key))):
+                labels, names = found.setdefault(walk.why_not_at(name, output.key), ({}, {}))
+                labels[output.label] = names[name] = None
+    if found:
+        yield Lines(tuple(f"No value for {', '.join(a)} at station {', '.join(b)}: {why}" for why, (a, b) in found.items()))
 
 
 def _composition(walk: Walk, system: str) -> Iterable[Block]:
