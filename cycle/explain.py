@@ -258,6 +258,8 @@ _SIDES: dict[str, tuple[_Side, _Side]] = {
     "corridor_high": (_side("dynamic_pressure", "station 0"), _side("limits.dynamic_pressure_high")),
     "ignition_temperature": (_side("temperature", "station 3"), _side("limits.ignition_temperature")),
     "ignition_pressure": (_side("pressure", "station 3"), _side("limits.ignition_pressure")),
+    "slow_ignition": (_side("temperature", "station 3"), _nowhere),
+    "burner_separation": (_side("pressure", "station 4"), _side("combustor.separation_limit")),
     "thermal_choking": (_heat, _nowhere),
     "gas_temperature": (_extreme(max), _side("limits.gas_temperature")),
     "model_range": (_extreme(max), _nowhere),

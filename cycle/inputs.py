@@ -22,6 +22,11 @@ _ISOLATOR = (*_ISOLATED, ("isolator.size", ("length",)))
 _FREEZE = (("nozzle.chemistry", ("frozen-after",)),)
 _TURN = 0.7853981633974483
 """45 deg: no ramp turns further."""
+_IGNITION = (
+    ("hydrogen", 1000.0), ("methane", 1400.0), ("ethylene", 1200.0), ("propane", 1250.0), ("kerosene", 1200.0), ("jp-10", 1200.0),
+    ("", 1200.0),
+)  # fmt: skip
+"""Static temperature, K, below which a fuel hardly lights by itself within a burner; common practice, as is that of any other fuel."""
 _LIQUID = (("fuel.identity", ("formula",)), ("fuel.phase", ("liquid",)))
 _HEISER = "Heiser and Pratt, Hypersonic Airbreathing Propulsion (1994), from memory"
 
@@ -226,7 +231,7 @@ INPUTS: tuple[Input, ...] = (
     Input("combustor.burning_length", "lb", "burning length", "From each injector without its own; to the end of the duct when absent.",
           unit="length", above=0.0, upper=1e3, step=0.01, when=_DUCT),
     Input("combustor.separation_limit", "", "separation limit", "Largest peak over entry pressure of attached flow; Korkegi's when absent.",
-          above=1.0, upper=100.0, step=0.1, when=_DUCT, source="Korkegi (1975), from memory"),
+          above=1.0, upper=100.0, step=0.1, when=(("combustor.process", ("duct", "constant-area")),), source="Korkegi (1975), from memory"),
     Input("combustor.slices", "", "slices", "Slices of each smooth piece of the duct.", lower=8.0, upper=400.0, default=48.0, step=8.0,
           whole=True, when=_DUCT),
     # nozzle
@@ -279,8 +284,9 @@ INPUTS: tuple[Input, ...] = (
           default=24e3, step=1e3, when=_FLIGHT, source="common practice: 500 lbf/ft2"),
     Input("limits.dynamic_pressure_high", "", "corridor, highest q", "Highest flight dynamic pressure.", unit="pressure", above=0.0,
           upper=1e6, default=96e3, step=1e3, when=_FLIGHT, source="common practice: 2000 lbf/ft2"),
-    Input("limits.ignition_temperature", "", "self-ignition temperature", "Lowest static temperature at burner entry.", unit="temperature",
-          above=0.0, upper=4000.0, default=1000.0, step=10.0),
+    Input("limits.ignition_temperature", "", "self-ignition temperature",
+          "Lowest static temperature at burner entry; a threshold, not a delay.", unit="temperature",
+          above=0.0, upper=4000.0, by_fuel=_IGNITION, step=10.0),
     Input("limits.ignition_pressure", "", "self-ignition pressure", "Lowest static pressure at burner entry.", unit="pressure", above=0.0,
           upper=1e7, default=50e3, step=1e3),
     Input("limits.gas_temperature", "", "highest gas temperature", "Highest static temperature allowed anywhere; not assessed when absent.",

@@ -179,7 +179,7 @@ def _row(row: Any) -> Json:
 
 def _limit(limit: Any) -> Json:
     numbers = {key: _number(getattr(limit, key)) for key in ("actual", "allowed", "margin")}
-    words = {"upper": limit.upper, "state": limit.state, "restore": limit.restore, "input": limit.input}
+    words = {"upper": limit.upper, "state": limit.state, "restore": limit.restore, "input": limit.input, "note": limit.note}
     return {"key": limit.key, "label": limit.label, "unit": si_unit(limit.unit), **numbers, **words}
 
 

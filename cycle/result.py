@@ -314,7 +314,7 @@ class Walk:
         words = row.missing or "no value at this station" if unassessed else row.restore
         return Limit(
             row.key, row.label, shaped(row.actual, self.shape), shaped(row.allowed, self.shape), shaped(margin, self.shape), state,
-            row.unit, row.upper, words, row.input,
+            row.unit, row.upper, words, row.input, row.note,
         )  # fmt: skip
 
     def emitted(self) -> auditing.Emitted:

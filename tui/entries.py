@@ -80,6 +80,9 @@ def _default(entry: Input, system: str) -> str:
     if entry.default is not None:
         unit = _unit(entry, system) if entry.kind == "number" else ""
         return f"{_value(entry, entry.default, system)} {unit}".strip()
+    if entry.by_fuel:
+        fuels = ", ".join(f"{name or 'any other fuel'} {_value(entry, value, system)}" for name, value in entry.by_fuel)
+        return f"{fuels} {_unit(entry, system)}"
     return "none, it must be given" if entry.required else "none"
 
 

@@ -176,7 +176,18 @@ def assess(figures: Figures) -> Figures:
         reason=str(walk.reason),
         stations={s: {**known, **dear[s]} for s, known in figures.stations.items()},
         limits=tuple(
-            Margin(m.key, m.label, m.state, float(m.margin), float(m.actual), float(m.allowed), m.unit, bool(m.upper), m.restore, m.input)
+            Margin(
+                m.key,
+                m.label,
+                m.state,
+                float(m.margin),
+                float(m.actual),
+                float(m.allowed),
+                m.unit,
+                bool(m.upper),
+                f"{m.restore}; {m.note}" if m.note and m.state != "not assessed" else m.restore,
+                m.input,
+            )  # fmt: skip
             for m in walk.limits
         ),
         why_not={**figures.why_not, **{name: str(walk.why_not(name)) for name in ACCOUNTS}},

@@ -321,7 +321,8 @@ def limit_words(limit: Any, system: str) -> str:
         return f"not assessed: {limit.label}: {limit.restore}"
     actual, allowed = (with_unit(v, limit.unit, system, LIMIT_FIGURES.get(limit.key, "")) for v in (limit.actual, limit.allowed))
     bound = "at most" if limit.upper else "at least"
-    words = f"{_STATES[limit.state]}: {limit.label}: {actual}, {bound} {allowed}, margin {100 * limit.margin:+.1f} %"
+    note = f" ({limit.note})" if limit.note else ""
+    words = f"{_STATES[limit.state]}: {limit.label}: {actual}, {bound} {allowed}{note}, margin {100 * limit.margin:+.1f} %"
     return words if limit.state == "ok" else f"{words}; to restore it: {limit.restore}"
 
 

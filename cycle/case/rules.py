@@ -290,6 +290,12 @@ def bounds(entry: Input) -> str:
     return f"{'a whole number, ' if entry.whole else ''}{words} {si_unit(entry.unit)}".rstrip() + flight
 
 
+def by_fuel(entry: Input) -> str:
+    """The defaults of an input that has one for each fuel, in words."""
+    words = ", ".join(f"{name or 'any other fuel'} {format_number(value, 6)}" for name, value in entry.by_fuel)
+    return f"{words} {si_unit(entry.unit)}".rstrip()
+
+
 def in_case(entry: Input, choices: Choices) -> Input:
     """An input with the bounds that it has beside these choices."""
     if entry.flight_upper is None:

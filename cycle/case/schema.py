@@ -13,7 +13,7 @@ from pydantic.json_schema import JsonSchemaValue
 from pydantic_core import CoreSchema, PydanticCustomError
 
 from cycle.case.checking import FORMAT, owner
-from cycle.case.rules import bounds, section_of, ways
+from cycle.case.rules import bounds, by_fuel, section_of, ways
 from cycle.errors import UnitError
 from cycle.quantities import GROUPS, INPUTS, SECTIONS, TABLES, Input
 from cycle.units import LONGEST, UNITS, read
@@ -93,7 +93,8 @@ _TYPES = {"rows": _rows, "number": _number, "choice": _choice, "text": _text, "f
 
 def _describe(entry: Input) -> str:
     symbol = f"{entry.symbol}: " if entry.symbol else ""
-    return f"{symbol}{entry.meaning} Allowed: {bounds(entry)}."
+    default = f" Default: {by_fuel(entry)}." if entry.by_fuel else ""
+    return f"{symbol}{entry.meaning} Allowed: {bounds(entry)}.{default}"
 
 
 def _drop_null_default(schema: dict[str, Any]) -> None:
