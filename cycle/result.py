@@ -18,6 +18,7 @@ from cycle.flowpath import assembly, combustor
 from cycle.flowpath.setting import setting, why_fixed
 from cycle.flowpath.stream import SOLVED, STATUS_NAMES
 from cycle.gas.state import State
+from cycle.notes import STORAGE, HeatedFuel, heats_fuel
 from cycle.quantities import INPUT, OUTPUTS, RESTORES, STATUSES
 from cycle.walk import March, Record, march, modes
 from cycle.why_not import no_figure, no_rows, no_station_figure
@@ -316,6 +317,20 @@ class Walk:
             row.key, row.label, shaped(row.actual, self.shape), shaped(row.allowed, self.shape), shaped(margin, self.shape), state,
             row.unit, row.upper, words, row.input, row.note,
         )  # fmt: skip
+
+    @cached_property
+    def notes(self) -> tuple[HeatedFuel, ...]:
+        """What is to be known of the solution beside its figures; one more solution when first asked for, () in a batch."""
+        burner = self.march.named("burner")
+        if self.shape != () or burner is None or burner.process.booking is None:
+            return ()
+        booking = burner.process.booking
+        if not heats_fuel(self.march, booking.wall_heat) or not booking.fuel_flow[0] > 0.0:
+            return ()
+        cold = solve(self.case.replace({"fuel.temperature": STORAGE}))
+        now, stored = (float(w.performance.specific_impulse) for w in (self, cold))
+        # a balance that leaves the fuel's enthalpy out does not know its temperature
+        return () if now == stored else (HeatedFuel(float(self.march.setting["fuel.temperature"][0]), now, stored, str(cold.status)),)
 
     def emitted(self) -> auditing.Emitted:
         """The figures that the audit reads, of the solved points."""

@@ -95,7 +95,7 @@ def _headline(walk: Walk, system: str) -> Iterable[Block]:
         rows = ((o.label, o.symbol, figure(values[o.key], o.unit, system, o.key), unit_label(o.unit, system, o.key)) for o in known)
         yield Table(("", "symbol", "value", "unit"), tuple(rows), left=(1, 3))
     missing = tuple(_missing(walk, [o for o in outputs if o not in known])) if walk.status == "solved" else ("no solution",)
-    yield Lines(missing)
+    yield Lines((*missing, *(note.words(system) for note in walk.notes)))
 
 
 def _modes(walk: Walk, system: str) -> Iterable[Block]:
