@@ -52,7 +52,7 @@ def test_random_slow_rigs_pass_the_audit(model: str, process: str, standard: boo
             "combustor.fuel_air_ratio": np.where(rng.uniform(size=n) < 0.4, 0.0, 10.0 ** rng.uniform(-9.0, -2.0, n)),
         },
     )
-    assert (walk.status == "solved").sum() > 0.9 * n
+    assert (walk.status == "solved").sum() > 0.9 * n and set(walk.status.tolist()) <= {"solved", "choked"}
     assert walk.audit.ok, walk.audit.worst
     assert float(walk.audit.worst.value) < 1e-11
 

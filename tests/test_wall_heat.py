@@ -88,3 +88,17 @@ def test_random_ducts_lose_the_power_that_is_stated(model: str) -> None:
     left = before.mass_flow * before.total_enthalpy + brought - heat
     scale = np.abs(before.mass_flow * before.total_enthalpy) + np.abs(brought)
     assert (np.abs(after.mass_flow * after.total_enthalpy - left) / scale)[solved].max() < 1e-9
+
+
+@pytest.mark.parametrize(("model", "excess"), [("constant-gamma", ""), ("frozen", ""), ("equilibrium", "inert"), ("equilibrium", "reacts")])
+def test_wall_heat_fraction_is_of_the_heat_released_above_stoichiometric_too(model: str, excess: str) -> None:
+    """Of the fuel that the oxygen allows, where no other burns: heating value, burnt fraction and fuel flow make it."""
+    start = {"gas.model": model, "combustor.wall_heat_fraction": 0.1, "combustor.burnt_fraction": 0.5}
+    start |= {"combustor.excess_fuel": excess} if excess else {"nozzle.chemistry": None, "inlet.chemistry": None}
+    phi = np.array([0.5, 1.0, 1.4, 2.0])
+    walk = cycle.solve(TIDEGATE.replace(start), {"combustor.equivalence_ratio": phi, "flight.mach": 8.0})
+    burner = next(p for p in walk.processes if p.name == "burner")
+    burnt = 1.0 if excess == "reacts" else np.minimum(1.0, 1.0 / phi)
+    expected = 0.1 * walk.performance.heating_value * 0.5 * burnt * walk.performance.fuel_flow
+    assert (walk.status == "solved").all() and walk.audit.ok
+    assert np.abs(burner.figures["wall_heat"] / expected - 1.0).max() < 1e-12

@@ -159,13 +159,20 @@ def fuel_supply(entering: Stream, setting: Setting, ratio: Array) -> Supply:
     return Supply(None, ratio, brought - released * stretch, heat, burnt, 1.0 if counted else 0.0)
 
 
-def _walls(setting: Setting) -> Walls:
+def _walls(setting: Setting, ratio: Array) -> Walls:
     friction = setting["combustor.friction_coefficient"]
     if setting.has("combustor.wall_temperature"):
         return Walls(friction, 0.0, setting["combustor.wall_temperature"])
     if setting.has("combustor.wall_heat_fraction"):
-        return Walls(friction, setting["combustor.wall_heat_fraction"] * setting.heating_value)
+        return Walls(friction, setting["combustor.wall_heat_fraction"] * setting.heating_value * _releasing(setting, ratio))
     return Walls(friction, power=setting.get("combustor.wall_heat", 0.0))
+
+
+def _releasing(setting: Setting, ratio: Array) -> Array:
+    """Share of the fuel (N,) whose burning the oxygen allows; all of it where the excess reacts, too."""
+    if setting.choices.get("combustor.excess_fuel") == "reacts":
+        return np.ones(setting.size)
+    return np.fmin(1.0, setting.stoichiometric_ratio / np.maximum(ratio, 1e-300))
 
 
 def _isolator(entering: Stream, setting: Setting) -> Isolator | None:
@@ -183,7 +190,7 @@ def flow_of(entering: Stream, setting: Setting, ratio: Array, second: bool = Fal
         _area_law(setting, entering.area),
         _injectors(setting),
         fuel_supply(entering, setting, ratio),
-        _walls(setting),
+        _walls(setting, ratio),
         separation=setting["combustor.separation_limit"] if setting.has("combustor.separation_limit") else None,
         isolator=_isolator(entering, setting),
         asked=setting.choices["engine.mode"],
@@ -207,7 +214,7 @@ def largest_ratios(stream: Stream, setting: Setting, upper: float) -> dict[str, 
         at,
         _area_law(setting, entering.area),
         _injectors(setting),
-        _walls(setting),
+        _walls(setting, np.nan_to_num(_heat(entering, setting))),
         upper,
         separation=separation,
         panels=_panels(setting),
