@@ -38,7 +38,7 @@ class HeatedFuel:
 
     def words(self, system: str = "si") -> str:
         """The note as a sentence. system: of the units, "si" or "us"."""
-        now, cold = (_told(value, "temperature", system) for value in (self.temperature, STORAGE))
+        now, cold = (_told(value, "temperature", system, 5) for value in (self.temperature, STORAGE))
         start = f"The fuel enters at {now}, stored it has {cold}, and no wall gives it that heat"
         if math.isnan(self.stored):
             return f"{start}: as stored there is no solution, {self.status}."
@@ -48,9 +48,9 @@ class HeatedFuel:
         return f"{start}: it {does} {_told(abs(self.gain), 'time', system)} ({share} %) {to} the specific impulse."
 
 
-def _told(value: float, dimension: str, system: str) -> str:
+def _told(value: float, dimension: str, system: str, digits: int = 4) -> str:
     shown, unit = show(value, dimension, system)
-    return f"{format_number(shown, 4)} {unit}"
+    return f"{format_number(shown, digits)} {unit}"
 
 
 def heats_fuel(march: March, wall_heat: Array) -> bool:

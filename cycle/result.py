@@ -246,7 +246,8 @@ class Walk:
             return f"no solution: {self.status}"
         if not self.march.solved.size:
             return "no solution"
-        return no_figure(self.march, key, self._performance["fuel_flow"])
+        lost = (self.why_not_at(n, "total_temperature") for n in ("3", "4") if key == "total_temperature_rise_efficiency")
+        return next((why for why in lost if why), "") or no_figure(self.march, key, self._performance["fuel_flow"])
 
     def _rows(self, rows: tuple[account.Row, ...]) -> tuple[Row, ...]:
         if any(np.isnan(r.value[self.march.solved]).all() for r in rows if self.march.solved.size):

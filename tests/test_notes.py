@@ -34,7 +34,7 @@ def test_heat_from_nowhere_is_flagged_with_what_it_adds() -> None:
     assert note.gain == pytest.approx(walk.performance.specific_impulse - cold.performance.specific_impulse, rel=1e-12)
     assert note.gain > 10.0 and not cold.notes
     words = note.words()
-    assert words.startswith("The fuel enters at 900 K, stored it has 298.1 K") and f"adds {note.gain:.4g} s" in words
+    assert words.startswith("The fuel enters at 900 K, stored it has 298.15 K") and f"adds {note.gain:.4g} s" in words
 
 
 @pytest.mark.parametrize(

@@ -55,6 +55,10 @@ def test_reason_is_in_the_text_and_in_explain() -> None:
     assert f"at station 0, 2, 3: {ABOVE_SONIC}" in words
 
 
+def test_temperature_rise_beyond_the_data_is_not_blamed_on_the_heat() -> None:
+    assert cycle.solve(fast("equilibrium", 15.0)).why_not("total_temperature_rise_efficiency") == ABOVE_TOTAL
+
+
 def test_sonic_state_below_the_data_and_a_rig_without_potential() -> None:
     rig = cycle.load(CASES / "bench-three.toml")
     cold = cycle.solve(rig.replace({"entry.mach": 0.001, "entry.temperature": 150.0, "combustor.wall_heat": 0.0}))
