@@ -1,7 +1,8 @@
 """The audit: conservation and the second law, recomputed from the figures a walk emits.
 
 Nothing of the solver is used: densities, enthalpies and entropies are evaluated afresh, species by species, from the
-emitted temperature, pressure, composition, speed and area. A residual is relative to the size of what is balanced.
+emitted temperature, pressure, composition, speed and area. A residual is relative to the size of what is balanced. Enthalpy and
+entropy count from a datum and may vanish: p/rho, the flow work, and R stand beside them, which do not.
 """
 
 from __future__ import annotations
@@ -122,6 +123,12 @@ def check(emitted: Emitted) -> tuple[Residual, ...]:
     return (*rows, *_thrust(emitted))
 
 
+def _specific_gas_constant(f: Figures, fresh: _Fresh) -> Array:
+    """R = p/(rho T), J/(kg K)."""
+    constant: Array = f["pressure"] / (fresh.density * f["temperature"])
+    return constant
+
+
 def _station(f: Figures, fresh: _Fresh, name: str) -> list[Residual]:
     """Each emitted figure of a station against what the others make it."""
     where = f"station {name}"
@@ -129,12 +136,14 @@ def _station(f: Figures, fresh: _Fresh, name: str) -> list[Residual]:
     kinetic = 0.5 * u**2
     thrust = f["axial_factor"] * m * u + p * A
     q = fresh.density * kinetic
+    energy = kinetic + np.abs(fresh.enthalpy) + p / fresh.density
     pairs = (
         ("mass", fresh.density * u * A - m, m),
         ("density", f["density"] - fresh.density, fresh.density),
-        ("enthalpy", f["enthalpy"] - fresh.enthalpy, kinetic + np.abs(fresh.enthalpy) + p / fresh.density),
-        ("entropy", f["entropy"] - fresh.entropy, fresh.entropy),
-        ("total enthalpy", f["total_enthalpy"] - fresh.enthalpy - kinetic, kinetic + np.abs(fresh.enthalpy)),
+        ("molar mass", f["molar_mass"] * p - fresh.density * GAS_CONSTANT * f["temperature"], f["molar_mass"] * p),
+        ("enthalpy", f["enthalpy"] - fresh.enthalpy, energy),
+        ("entropy", f["entropy"] - fresh.entropy, np.abs(fresh.entropy) + _specific_gas_constant(f, fresh)),
+        ("total enthalpy", f["total_enthalpy"] - fresh.enthalpy - kinetic, energy),
         ("Mach number", f["mach"] * f["sound_speed"] - u, u),
         ("sound speed", f["sound_speed"] ** 2 - f["isentropic_exponent"] * p / fresh.density, f["sound_speed"] ** 2),
         ("stream thrust", f["stream_thrust"] - thrust, thrust),
@@ -150,10 +159,10 @@ def _process(emitted: Emitted, fresh: Mapping[str, _Fresh], c: Crossing) -> list
     where = f"{c.name} {c.start} to {c.end}"
     m1, m2 = first.density * a["velocity"] * a["area"], last.density * b["velocity"] * b["area"]
     e1, e2 = m1 * (first.enthalpy + 0.5 * a["velocity"] ** 2), m2 * (last.enthalpy + 0.5 * b["velocity"] ** 2)
-    kinetic = 0.5 * m2 * b["velocity"] ** 2
+    kinetic, work = 0.5 * m2 * b["velocity"] ** 2, m2 * b["pressure"] / last.density
     rows = [
         Residual("mass", where, _relative(m2 - m1 - c.mass_added, m2)),
-        Residual("energy", where, _relative(e2 - e1 - c.energy_added, e1, e2, kinetic, c.energy_added)),
+        Residual("energy", where, _relative(e2 - e1 - c.energy_added, e1, e2, kinetic, c.energy_added, work)),
     ]
     if c.balances_momentum:
         f1, f2 = m1 * a["velocity"] + a["pressure"] * a["area"], m2 * b["velocity"] + b["pressure"] * b["area"]
@@ -163,7 +172,7 @@ def _process(emitted: Emitted, fresh: Mapping[str, _Fresh], c: Crossing) -> list
     made = m2 * last.entropy - m1 * first.entropy - c.mass_added * c.fuel_entropy
     made = made + c.wall_heat / np.minimum(a["temperature"], b["temperature"])
     if emitted.table is not None or c.adiabatic:
-        size = np.abs(m2 * last.entropy) + np.abs(m1 * first.entropy)
+        size = np.abs(m2 * last.entropy) + np.abs(m1 * first.entropy) + m2 * _specific_gas_constant(b, last)
         lost = np.where(np.isnan(made), 0.0, np.maximum(-made, 0.0))
         rows.append(Residual("second law", where, _relative(lost, size)))
     return rows

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from collections.abc import Mapping
 from dataclasses import dataclass
 from typing import Literal
 
@@ -14,8 +15,9 @@ class Input:
     """One key of a case file.
 
     unit: a dimension name of `cycle.units` (SI inside); lower and upper are inclusive bounds in SI, above and below
-    exclusive ones. default None: the key is optional, or required where `required`. step: the natural step of an edit.
-    whole: whole numbers only. follows: the key whose value holds when this one is absent.
+    exclusive ones; flight_upper: the upper bound, where it is lower, of a case in flight. default None: the key is optional, or
+    required where `required`. step: the natural step of an edit. whole: whole numbers only. follows: the key whose value holds when
+    this one is absent. by_fuel: the default for each built-in fuel; the one named "" is that of every other fuel.
     when: (choice, allowed values) pairs that must hold for the key to mean anything; the value "" holds where that choice
     does not apply itself.
     Kind "rows", an array of tables: columns, whose keys are plain names; fewest and most rows; one_of, columns of which each
@@ -30,12 +32,14 @@ class Input:
     kind: Kind = "number"
     lower: float | None = None
     upper: float | None = None
+    flight_upper: float | None = None
     above: float | None = None
     below: float | None = None
     default: float | str | bool | None = None
     required: bool = False
     whole: bool = False
     follows: str = ""
+    by_fuel: tuple[tuple[str, float], ...] = ()
     step: float = 0.01
     choices: tuple[str, ...] = ()
     when: When = ()
@@ -44,6 +48,11 @@ class Input:
     fewest: int = 1
     most: int = 64
     one_of: tuple[str, ...] = ()
+
+    def default_in(self, choices: Mapping[str, str | None]) -> float | str | bool | None:
+        """The default beside these choices of a case."""
+        fuels = dict(self.by_fuel)
+        return fuels.get(choices.get("fuel.name") or "", fuels[""]) if fuels else self.default
 
     @property
     def section(self) -> str:

@@ -172,7 +172,7 @@ def _number(entry: Output, walk: Walk, where: str) -> Number:
     value = float(getattr(walk.station[where] if where else walk.performance, entry.key))
     place = f"station {where}" if where else ""
     if not math.isfinite(value):
-        return Number(place, math.nan, walk.reason if where else walk.why_not(entry.key), "", ())
+        return Number(place, math.nan, walk.why_not_at(where, entry.key) if where else walk.why_not(entry.key), "", ())
     entering = entry.equation.partition(" at ")[2] or entry.equation
     found = {s: _term(s, walk, where) for s in formula.symbols(entering)}
     return _with_terms(entry, place, value, (t for t in found.values() if t is not None))
@@ -258,6 +258,8 @@ _SIDES: dict[str, tuple[_Side, _Side]] = {
     "corridor_high": (_side("dynamic_pressure", "station 0"), _side("limits.dynamic_pressure_high")),
     "ignition_temperature": (_side("temperature", "station 3"), _side("limits.ignition_temperature")),
     "ignition_pressure": (_side("pressure", "station 3"), _side("limits.ignition_pressure")),
+    "slow_ignition": (_side("temperature", "station 3"), _nowhere),
+    "burner_separation": (_side("pressure", "station 4"), _side("combustor.separation_limit")),
     "thermal_choking": (_heat, _nowhere),
     "unstart_heat": (_heat, _nowhere),
     "gas_temperature": (_extreme(max), _side("limits.gas_temperature")),

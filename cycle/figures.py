@@ -73,7 +73,8 @@ class Row:
 class Limit:
     """One limit; margin positive is safe. state: ok, near, over or "not assessed" (array of these in a batch).
 
-    restore: what gives margin back, or why it is not assessed; input: the case key to go to, or "".
+    restore: what gives margin back, or why it is not assessed; input: the case key to go to, or ""; note: what is to be known of the
+    limit in any state, or "".
     """
 
     key: str
@@ -86,6 +87,7 @@ class Limit:
     upper: bool
     restore: str
     input: str
+    note: str = ""
 
 
 @dataclass(frozen=True, slots=True)

@@ -22,6 +22,11 @@ _ISOLATOR = (*_ISOLATED, ("isolator.size", ("length",)))
 _FREEZE = (("nozzle.chemistry", ("frozen-after",)),)
 _TURN = 0.7853981633974483
 """45 deg: no ramp turns further."""
+_IGNITION = (
+    ("hydrogen", 1000.0), ("methane", 1400.0), ("ethylene", 1200.0), ("propane", 1250.0), ("kerosene", 1200.0), ("jp-10", 1200.0),
+    ("", 1200.0),
+)  # fmt: skip
+"""Static temperature, K, below which a fuel hardly lights by itself within a burner; common practice, as is that of any other fuel."""
 _LIQUID = (("fuel.identity", ("formula",)), ("fuel.phase", ("liquid",)))
 _HEISER = "Heiser and Pratt, Hypersonic Airbreathing Propulsion (1994), from memory"
 
@@ -160,7 +165,7 @@ INPUTS: tuple[Input, ...] = (
     Input("fuel.standard_entropy", "S0", "standard entropy", "Of the stored phase at 298.15 K and 1 bar; exergy needs it.",
           unit="molar entropy", above=0.0, upper=5e3, step=1.0, when=(("fuel.identity", ("formula",)),)),
     Input("fuel.temperature", "Tf", "fuel temperature", "Total temperature of the fuel as injected.", unit="temperature", lower=15.0,
-          upper=1500.0, default=300.0, step=10.0),
+          upper=3500.0, flight_upper=1500.0, default=300.0, step=10.0),
     Input("fuel.supply_pressure", "pf", "fuel supply pressure", "Total pressure of the fuel as injected; exergy needs it.",
           unit="pressure", above=0.0, upper=1e9, step=1e5),
     # combustor
@@ -176,16 +181,19 @@ INPUTS: tuple[Input, ...] = (
     Input("combustor.exit_total_temperature", "Tt4", "exit total temperature", "Total temperature at the burner exit; fuel follows.",
           unit="temperature", above=0.0, upper=6000.0, step=10.0),
     Input("combustor.burnt_fraction", "eta_b", "burnt fraction",
-          "Fraction that burns of the fuel that the oxygen allows; of all fuel in equilibrium gas.",
+          "Fraction that burns of the fuel that the oxygen allows; of all fuel where combustor.excess_fuel = reacts. The rest is inert.",
           above=0.0, upper=1.0, default=1.0, step=0.005),
+    Input("combustor.excess_fuel", "", "fuel beyond the oxygen",
+          "Above equivalence ratio 1 in equilibrium gas: reacts, to CO and H2 among others; inert, as in the other gases: it stays vapour.",
+          kind="choice", unit="none", choices=("reacts", "inert"), default="reacts", when=(("gas.model", ("equilibrium",)),)),
     Input("combustor.fuel_axial_speed", "uf", "fuel axial speed", "Axial speed of the fuel at injection; 0 is normal injection.",
           unit="speed", lower=0.0, upper=6e3, step=20.0, when=_MOMENTUM),
     Input("combustor.fuel_axial_speed_ratio", "uf/u3", "fuel axial speed ratio", "Axial speed of the fuel over that of the stream.",
           lower=0.0, upper=2.0, step=0.01, when=_MOMENTUM, source=_HEISER),
     Input("combustor.friction_area_ratio", "CfAw/A3", "friction area ratio", "Skin-friction coefficient times wetted over flow area.",
           lower=0.0, upper=5.0, default=0.0, step=0.01, when=_MOMENTUM, source=_HEISER),
-    Input("combustor.wall_heat", "Qw", "wall heat", "Heat that leaves the stream through the burner wall.", unit="power", lower=0.0,
-          upper=1e10, default=0.0, step=1e4),
+    Input("combustor.wall_heat", "Qw", "wall heat", "Heat that leaves the stream through the burner wall, evenly along a duct.",
+          unit="power", lower=0.0, upper=1e10, default=0.0, step=1e4),
     Input("combustor.wall_heat_fraction", "", "wall heat fraction", "Heat through the wall over the heat released.", lower=0.0, upper=1.0,
           step=0.01, when=_DUCT),
     Input("combustor.wall_temperature", "Tw", "wall temperature", "Of the burner's wall; heat follows from its friction.",
@@ -223,7 +231,7 @@ INPUTS: tuple[Input, ...] = (
     Input("combustor.burning_length", "lb", "burning length", "From each injector without its own; to the end of the duct when absent.",
           unit="length", above=0.0, upper=1e3, step=0.01, when=_DUCT),
     Input("combustor.separation_limit", "", "separation limit", "Largest peak over entry pressure of attached flow; Korkegi's when absent.",
-          above=1.0, upper=100.0, step=0.1, when=_DUCT, source="Korkegi (1975), from memory"),
+          above=1.0, upper=100.0, step=0.1, when=(("combustor.process", ("duct", "constant-area")),), source="Korkegi (1975), from memory"),
     Input("combustor.slices", "", "slices", "Slices of each smooth piece of the duct.", lower=8.0, upper=400.0, default=48.0, step=8.0,
           whole=True, when=_DUCT),
     # nozzle
@@ -276,8 +284,9 @@ INPUTS: tuple[Input, ...] = (
           default=24e3, step=1e3, when=_FLIGHT, source="common practice: 500 lbf/ft2"),
     Input("limits.dynamic_pressure_high", "", "corridor, highest q", "Highest flight dynamic pressure.", unit="pressure", above=0.0,
           upper=1e6, default=96e3, step=1e3, when=_FLIGHT, source="common practice: 2000 lbf/ft2"),
-    Input("limits.ignition_temperature", "", "self-ignition temperature", "Lowest static temperature at burner entry.", unit="temperature",
-          above=0.0, upper=4000.0, default=1000.0, step=10.0),
+    Input("limits.ignition_temperature", "", "self-ignition temperature",
+          "Lowest static temperature at burner entry; a threshold, not a delay.", unit="temperature",
+          above=0.0, upper=4000.0, by_fuel=_IGNITION, step=10.0),
     Input("limits.ignition_pressure", "", "self-ignition pressure", "Lowest static pressure at burner entry.", unit="pressure", above=0.0,
           upper=1e7, default=50e3, step=1e3),
     Input("limits.gas_temperature", "", "highest gas temperature", "Highest static temperature allowed anywhere; not assessed when absent.",

@@ -20,7 +20,7 @@ from cycle.arrays import Array
 from cycle.case import Case
 from cycle.case.moves import Refusal, moved
 from cycle.flowpath.setting import why_fixed
-from cycle.quantities import STATUSES, Input, input_of
+from cycle.quantities import STATUSES, Input
 from cycle.result import solve
 from cycle.units import format_number
 from cycle.walk import March
@@ -119,7 +119,7 @@ def solve_for_limit(case: Case, limit: str, key: str) -> Reached:
 
 def search(case: Case, limit: str, key: str) -> Iterator[Reached | None]:
     """`solve_for_limit` in pieces: None after every batch of walks, then what was found. Parameters and errors as there."""
-    spec = input_of(key)
+    spec = case.declared(key)
     if spec is None or spec.kind != "number":
         raise KeyError(key)
     now = case.value(key)

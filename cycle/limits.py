@@ -12,8 +12,9 @@ import numpy as np
 
 from cycle.account import injection_pressure, spread
 from cycle.arrays import Array, Codes
-from cycle.flow import gas_shocks, roots
-from cycle.flowpath import assembly, combustor, inlet_limits
+from cycle.flow import limits as laws
+from cycle.flow import roots
+from cycle.flowpath import assembly, combustor, expansion, inlet_limits
 from cycle.flowpath.inlet_limits import Bound
 from cycle.flowpath.setting import Setting
 from cycle.flowpath.stream import Stream
@@ -32,6 +33,7 @@ class Limit:
     """One limit of N points: actual and allowed figure (N,), margin (N,), NaN where not assessed.
 
     upper: whether `allowed` is an upper limit. restore: what would give margin back; input: the case key to go to.
+    missing: why it is not assessed. note: what is to be known of the limit in any state.
     """
 
     key: str
@@ -43,6 +45,7 @@ class Limit:
     restore: str
     input: str
     missing: str = ""
+    note: str = ""
 
     @property
     def margin(self) -> Array:
@@ -110,16 +113,55 @@ def _burner(walked: March) -> tuple[Limit, ...]:
     entry = key == "entry.pressure"
     hotter = "raise the entry temperature" if entry else "compress more or fly faster"
     denser = "raise the entry pressure" if entry else "compress more or fly lower"
-    record = walked.stations().get("3")
-    fast = np.full(setting.size, np.nan) if record is None else spread(walked, record.index, record.stream.mach)
+    fast = _entry_mach(walked)
     held = np.where(fast > 1.0, 1.0, np.nan)
     missing = "a subsonic burner has its flameholder" if np.any(fast <= 1.0) else ""
-    return (
-        Limit("ignition_temperature", "self-ignition, T3", held * _at(walked, "3", "temperature"), setting["limits.ignition_temperature"],
-              "temperature", False, hotter, "entry.temperature" if entry else key, missing),
-        Limit("ignition_pressure", "self-ignition, p3", held * _at(walked, "3", "pressure"), setting["limits.ignition_pressure"],
-              "pressure", False, denser, key, missing),
-    )  # fmt: skip
+    T3, p3 = (held * _at(walked, "3", figure) for figure in ("temperature", "pressure"))
+    goto = "entry.temperature" if entry else key
+    lit = [
+        Limit("ignition_temperature", "self-ignition, T3", T3, setting["limits.ignition_temperature"], "temperature", False, hotter, goto,
+              missing, "a threshold, not a delay"),
+        Limit("ignition_pressure", "self-ignition, p3", p3, setting["limits.ignition_pressure"], "pressure", False, denser, key, missing),
+    ]  # fmt: skip
+    if setting.fuel is not None and set(setting.fuel.atoms) == {"H"}:
+        late = np.where(p3 > SLOW_ABOVE, T3, np.nan)
+        why = missing or "below 100 kPa hydrogen lights ahead of its second limit"
+        lit.append(
+            Limit("slow_ignition", "slow ignition of hydrogen, T3", late, SLOW_BELOW * np.ones(setting.size), "temperature", False,
+                  f"{hotter}, or burn at a lower pressure", goto, why, "above 100 kPa; a threshold, not a delay"),
+        )  # fmt: skip
+    return (*lit, _burner_separation(walked, fast))
+
+
+SLOW_ABOVE, SLOW_BELOW = 100e3, 1050.0
+"""Pressure, Pa, from which hydrogen lights slowly, beyond its second explosion limit, and the temperature, K, that ends it; common
+practice."""
+
+
+def _entry_mach(walked: March) -> Array:
+    """Mach number at the burner entry, (N,)."""
+    record = walked.stations().get("3")
+    return np.full(walked.setting.size, np.nan) if record is None else spread(walked, record.index, record.stream.mach)
+
+
+_NO_SEPARATION = {
+    "duct": "a duct has its own limit, the peak of its attached march",
+    "constant-pressure": "at constant pressure no pressure rise separates the flow",
+    "pressure-loss": "a stated loss of total pressure says nothing of the pressure along the burner",
+}
+
+
+def _burner_separation(walked: March, fast: Array) -> Limit:
+    """Pressure rise of a supersonic burner of constant area against what separates its boundary layer: fast, the Mach number at 3 (N,).
+    Korkegi (1975), as in a duct."""
+    setting, process = walked.setting, walked.setting.choices["combustor.process"]
+    rise = np.where(fast > 1.0, _at(walked, "4", "pressure") / _at(walked, "3", "pressure"), np.nan)
+    own = setting.get("combustor.separation_limit", np.nan)
+    allowed = np.where(np.isnan(own), laws.separation_pressure_ratio(fast), own)
+    missing = _NO_SEPARATION.get(process, "a subsonic burner has no supersonic flow to separate" if np.any(fast <= 1.0) else "")
+    nothing = np.full(setting.size, np.nan)
+    return Limit("burner_separation", "burner separation, p4/p3", nothing if process in _NO_SEPARATION else rise, allowed, "ratio", True,
+                 "less heat, or combustor.process = duct with an area that opens", heat_key(setting), missing)  # fmt: skip
 
 
 def _fuel_supply(walked: March) -> Limit:
@@ -218,10 +260,9 @@ def _behind_exit_shock(walked: March, station: str) -> Array:
     if record is None:
         return np.full(walked.setting.size, np.nan)
     stream, found = record.stream, np.full(record.index.size, np.nan)
-    fast = np.flatnonzero(stream.mach > 1.0)
+    fast = np.flatnonzero(stream.mach > 1.0 - expansion.WEAK)
     if fast.size:
-        part = stream.take(fast)
-        found[fast] = gas_shocks.normal_shock(part.gas, part.state, part.velocity).state.pressure
+        found[fast] = expansion.shocked(stream.take(fast)).state.pressure
     return spread(walked, record.index, found)
 
 

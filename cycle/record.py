@@ -51,6 +51,8 @@ def record(walk: Walk, referee: bool = False) -> Json:
     reasons |= {f"performance.{k}": walk.why_not(k) for k, v in performance.items() if v is None}
     stations = {name: _station(station) for name, station in walk.station.items()}
     reasons |= {f"stations.{n}": walk.reason for n, station in walk.station.items() if not station.has_value}
+    lost = ((n, key) for n, station in stations.items() for key in _STATION_KEYS if station[key] is None)
+    reasons |= {f"stations.{n}.{key}": walk.why_not_at(n, key) for n, key in lost}
     for name in ("losses", "exergy"):
         if not getattr(walk, name):
             reasons[name] = walk.why_not(name)
@@ -75,6 +77,7 @@ def record(walk: Walk, referee: bool = False) -> Json:
         "losses": [_row(r) for r in walk.losses],
         "exergy": [_row(r) for r in walk.exergy],
         "limits": [_limit(limit) for limit in walk.limits],
+        "notes": [{"key": n.key, "words": n.words(), "value": _number(n.gain), "unit": si_unit("time")} for n in walk.notes],
         "audit": _audit(walk),
         "referee": _referee(walk, referee),
         "units": _units(),
@@ -177,7 +180,7 @@ def _row(row: Any) -> Json:
 
 def _limit(limit: Any) -> Json:
     numbers = {key: _number(getattr(limit, key)) for key in ("actual", "allowed", "margin")}
-    words = {"upper": limit.upper, "state": limit.state, "restore": limit.restore, "input": limit.input}
+    words = {"upper": limit.upper, "state": limit.state, "restore": limit.restore, "input": limit.input, "note": limit.note}
     return {"key": limit.key, "label": limit.label, "unit": si_unit(limit.unit), **numbers, **words}
 
 

@@ -18,9 +18,10 @@ from cycle.flowpath import assembly, combustor, duct_limits
 from cycle.flowpath.setting import setting, why_fixed
 from cycle.flowpath.stream import SOLVED, STATUS_NAMES
 from cycle.gas.state import State
+from cycle.notes import STORAGE, HeatedFuel, heats_fuel
 from cycle.quantities import CAUSES, INPUT, OUTPUTS, RESTORES, STATUSES
 from cycle.walk import March, Record, march, modes
-from cycle.why_not import no_figure, no_rows
+from cycle.why_not import no_figure, no_rows, no_station_figure
 
 if TYPE_CHECKING:
     from cycle.case import Case
@@ -142,6 +143,17 @@ class Walk:
 
         return Station(order, self.shape, fractions)
 
+    def why_not_at(self, station: str, key: str) -> str:
+        """Why a figure of a station has no value; "" where it has one. In a batch of the first point without one."""
+        known = np.isfinite(np.reshape(self.station[station][key], -1))
+        if known.all():
+            return ""
+        record = self._records[station]
+        if known[record.index].all():
+            return "no solution reaches this station"
+        states = self._totals if key.startswith("total_") else self._critical if key.startswith("critical_") else {}
+        return no_station_figure(self.march, record, key, states.get(station))
+
     @cached_property
     def processes(self) -> tuple[Process, ...]:
         """What each component did, in order along the stream."""
@@ -230,7 +242,8 @@ class Walk:
             return f"no solution: {self.status}"
         if not self.march.solved.size:
             return "no solution"
-        return no_figure(self.march, key, self._performance["fuel_flow"])
+        lost = (self.why_not_at(n, "total_temperature") for n in ("3", "4") if key == "total_temperature_rise_efficiency")
+        return next((why for why in lost if why), "") or no_figure(self.march, key, self._performance["fuel_flow"])
 
     def _rows(self, rows: tuple[account.Row, ...]) -> tuple[Row, ...]:
         if any(np.isnan(r.value[self.march.solved]).all() for r in rows if self.march.solved.size):
@@ -328,8 +341,22 @@ class Walk:
         words = row.missing or "no value at this station" if unassessed else row.restore
         return Limit(
             row.key, row.label, shaped(row.actual, self.shape), shaped(row.allowed, self.shape), shaped(margin, self.shape), state,
-            row.unit, row.upper, words, row.input,
+            row.unit, row.upper, words, row.input, row.note,
         )  # fmt: skip
+
+    @cached_property
+    def notes(self) -> tuple[HeatedFuel, ...]:
+        """What is to be known of the solution beside its figures; one more solution when first asked for, () in a batch."""
+        burner = self.march.named("burner")
+        if self.shape != () or burner is None or burner.process.booking is None:
+            return ()
+        booking = burner.process.booking
+        if not heats_fuel(self.march, booking.wall_heat) or not booking.fuel_flow[0] > 0.0:
+            return ()
+        cold = solve(self.case.replace({"fuel.temperature": STORAGE}))
+        now, stored = (float(w.performance.specific_impulse) for w in (self, cold))
+        # a balance that leaves the fuel's enthalpy out does not know its temperature
+        return () if now == stored else (HeatedFuel(float(self.march.setting["fuel.temperature"][0]), now, stored, str(cold.status)),)
 
     def emitted(self) -> auditing.Emitted:
         """The figures that the audit reads, of the solved points."""

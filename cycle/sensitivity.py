@@ -12,7 +12,7 @@ import numpy as np
 from cycle.case import Case
 from cycle.case.moves import Moved, Refusal, moved
 from cycle.flowpath.setting import why_fixed
-from cycle.quantities import HEADLINE, Input, input_of
+from cycle.quantities import HEADLINE, Input
 from cycle.result import Walk, solve
 from cycle.walk import modes
 
@@ -115,7 +115,7 @@ def sensitivities(case: Case, walk: Walk | None = None, apart: bool = False) -> 
     base = _points(walk, outputs)[0] if walk is not None else None
     if base is not None and base.status != "solved":
         return _without(case, outputs, base)
-    rows = [entry for key in case.numbers if not left_out(key) and (entry := input_of(key)) is not None]
+    rows = [entry for key in case.numbers if not left_out(key) and (entry := case.declared(key)) is not None]
     tried = {(entry.key, sign): _tried(case, entry, sign, apart) for entry in rows for sign in (-1, 1)}
     asked = {place: point for place, point in tried.items() if isinstance(point, dict)}
     if base is None:

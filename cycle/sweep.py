@@ -15,7 +15,7 @@ from cycle.case.moves import Moved, Refusal, moved
 from cycle.case.rules import outside
 from cycle.errors import CaseError, Fault
 from cycle.flowpath.setting import why_fixed
-from cycle.quantities import HEADLINE, OUTPUTS, Input, input_of
+from cycle.quantities import HEADLINE, OUTPUTS, Input
 from cycle.result import Walk, solve
 from cycle.walk import modes
 
@@ -100,7 +100,7 @@ def curve(case: Case, axes: Mapping[str, Sequence[float]], figures: Sequence[str
 
 
 def _axis(case: Case, key: str, values: Sequence[float]) -> Axis:
-    entry = input_of(key)
+    entry = case.declared(key)
     file = case.path or case.name
     if entry is None or entry.kind != "number":
         raise CaseError([Fault(file, key, "not an input that takes numbers", key, "the key of a number input")])

@@ -72,13 +72,17 @@ def _input_facts(entry: Input, system: str) -> Iterable[tuple[str, str]]:
 def _bounds(entry: Input, system: str) -> str:
     sides = (("from", entry.lower), ("above", entry.above), ("to", entry.upper), ("below", entry.below))
     unit = _unit(entry, system)
-    return " ".join(f"{word} {_value(entry, x, system)}" for word, x in sides if x is not None) + (f" {unit}" if unit else "")
+    words = " ".join(f"{word} {_value(entry, x, system)}" for word, x in sides if x is not None) + (f" {unit}" if unit else "")
+    return words if entry.flight_upper is None else f"{words}; to {_value(entry, entry.flight_upper, system)} {unit} in flight"
 
 
 def _default(entry: Input, system: str) -> str:
     if entry.default is not None:
         unit = _unit(entry, system) if entry.kind == "number" else ""
         return f"{_value(entry, entry.default, system)} {unit}".strip()
+    if entry.by_fuel:
+        fuels = ", ".join(f"{name or 'any other fuel'} {_value(entry, value, system)}" for name, value in entry.by_fuel)
+        return f"{fuels} {_unit(entry, system)}"
     return "none, it must be given" if entry.required else "none"
 
 

@@ -14,6 +14,7 @@ from cycle.quantities import OUTPUTS, RESTORES, STATUSES
 if TYPE_CHECKING:
     from cycle.case import Case
     from cycle.limit_solving import Reached
+    from cycle.notes import HeatedFuel
     from cycle.sensitivity import Sensitivities
 
 STATION_KEYS = tuple(o.key for o in OUTPUTS if o.where == "station")
@@ -79,7 +80,7 @@ class Figures:
     in the standard atmosphere, m. `walk` is the walk itself, for the referee and for later questions. assessed: whether
     limits, audit and the dear figures are those of this walk; until then they are of the walk before, or absent. profile: the
     flow along a duct, column -> values from the burner entry on; {} where the burner is none. losses, exergy: rows of these accounts,
-    () where they are not assessed; `why_not` then says why."""
+    () where they are not assessed; `why_not` then says why. notes: what is to be known beside the figures."""
 
     status: str
     mode: str
@@ -94,6 +95,7 @@ class Figures:
     altitude: float
     walk: Any
     limits: tuple[Margin, ...] = ()
+    notes: tuple[HeatedFuel, ...] = ()
     audit_ok: bool = False
     audit: str = ""
     assessed: bool = False
@@ -167,6 +169,12 @@ def take(walk: Any) -> Figures:
     )
 
 
+def _margin(m: Any) -> Margin:
+    numbers = (float(value) for value in (m.margin, m.actual, m.allowed))
+    words = f"{m.restore}; {m.note}" if m.note and m.state != "not assessed" else m.restore
+    return Margin(m.key, m.label, m.state, *numbers, m.unit, bool(m.upper), words, m.input)
+
+
 def assess(figures: Figures) -> Figures:
     """The figures with limits, audit and the dear figures of their walk. Call it in the worker thread."""
     walk = figures.walk
@@ -176,6 +184,7 @@ def assess(figures: Figures) -> Figures:
         reason=str(walk.reason),
         stations={s: {**known, **dear[s]} for s, known in figures.stations.items()},
         limits=_margins(walk),
+        notes=tuple(walk.notes),
         why_not={**figures.why_not, **{name: str(walk.why_not(name)) for name in ACCOUNTS}},
         losses=_shares(walk.losses),
         exergy=_shares(walk.exergy),
@@ -186,10 +195,7 @@ def assess(figures: Figures) -> Figures:
 
 
 def _margins(walk: Any) -> tuple[Margin, ...]:
-    return tuple(
-        Margin(m.key, m.label, m.state, float(m.margin), float(m.actual), float(m.allowed), m.unit, bool(m.upper), m.restore, m.input)
-        for m in walk.limits_so_far
-    )
+    return tuple(_margin(m) for m in walk.limits_so_far)
 
 
 def carried(figures: Figures, before: Figures | None) -> Figures:

@@ -9,7 +9,7 @@ from dataclasses import dataclass, replace
 from typing import TYPE_CHECKING, Any
 
 from cycle.declarations import Input
-from cycle.quantities import OUTPUT, input_of
+from cycle.quantities import OUTPUT
 from tui import rows
 from tui.actions import ACTIONS, Action, key_of
 from tui.items import Item, in_hand
@@ -94,7 +94,7 @@ def opened(session: Session) -> Peek | None:
     if drawable(hand) or hand is None or hand.input is None or case is None:
         return None
     figures = (*performance_keys(session), f"{session.station}.{ROWS[session.row]}")
-    entry = input_of(hand.key)
+    entry = case.declared(hand.key)
     assert entry is not None
     span = Span(entry, case.numbers[hand.key], STEPS)
     sweep = Sweep(case, (span,), figures[-1:])
@@ -148,7 +148,7 @@ def with_second(peek: Peek, key: str) -> Peek:
     first = peek.spans[0]
     if not key:
         return replace(_afresh(peek, (first,)), place=peek.place[:1])
-    entry = input_of(key)
+    entry = peek.case.declared(key)
     assert entry is not None
     span = Span(entry, peek.case.numbers[key], STEPS)
     return replace(_afresh(peek, (first, span)), place=(peek.place[0], span.centre))

@@ -95,7 +95,7 @@ def _headline(walk: Walk, system: str) -> Iterable[Block]:
         rows = ((o.label, o.symbol, figure(values[o.key], o.unit, system, o.key), unit_label(o.unit, system, o.key)) for o in known)
         yield Table(("", "symbol", "value", "unit"), tuple(rows), left=(1, 3))
     missing = tuple(_missing(walk, [o for o in outputs if o not in known])) if walk.status == "solved" else ("no solution",)
-    yield Lines(missing)
+    yield Lines((*missing, *(note.words(system) for note in walk.notes)))
 
 
 def _modes(walk: Walk, system: str) -> Iterable[Block]:
@@ -228,6 +228,20 @@ def _stations(walk: Walk, system: str) -> Iterable[Block]:
             rows.append((named(output.label, output.unit, system, output.key), *cells))
     yield Heading("Stations")
     yield Table(("reached through", *reached.values()), tuple(rows))
+    yield from _missing_at_stations(walk)
+
+
+def _missing_at_stations(walk: Walk) -> Iterable[Block]:
+    """One sentence a reason: the figures and the stations that lack a value for it; a rig's thrust potential is not missed."""
+    found: dict[str, tuple[dict[str, None], dict[str, None]]] = {}
+    for output in (o for o in OUTPUTS if o.where == "station"):
+        for name, station in walk.station.items():
+            flies = output.key != "thrust_potential" or walk.case.choices["start"] == "flight"
+            if flies and math.isnan(float(getattr(station, output.key))):
+                labels, names = found.setdefault(walk.why_not_at(name, output.key), ({}, {}))
+                labels[output.label] = names[name] = None
+    if found:
+        yield Lines(tuple(f"No value for {', '.join(a)} at station {', '.join(b)}: {why}" for why, (a, b) in found.items()))
 
 
 def _composition(walk: Walk, system: str) -> Iterable[Block]:
@@ -308,7 +322,8 @@ def limit_words(limit: Any, system: str) -> str:
         return f"not assessed: {limit.label}: {limit.restore}"
     actual, allowed = (with_unit(v, limit.unit, system, LIMIT_FIGURES.get(limit.key, "")) for v in (limit.actual, limit.allowed))
     bound = "at most" if limit.upper else "at least"
-    words = f"{_STATES[limit.state]}: {limit.label}: {actual}, {bound} {allowed}, margin {100 * limit.margin:+.1f} %"
+    note = f" ({limit.note})" if limit.note else ""
+    words = f"{_STATES[limit.state]}: {limit.label}: {actual}, {bound} {allowed}{note}, margin {100 * limit.margin:+.1f} %"
     return words if limit.state == "ok" else f"{words}; to restore it: {limit.restore}"
 
 

@@ -39,6 +39,10 @@ def check_batch(case: Case, values: Mapping[str, ArrayLike | str]) -> tuple[Case
     if faults:
         raise CaseError(faults)
     chosen = case.replace({key: float(array.flat[0]) for key, array in arrays.items()})
+    bounded = (_array_fault(file, entry, array) for key, array in arrays.items() if (entry := chosen.declared(key)))
+    faults = [fault for fault in bounded if fault]
+    if faults:
+        raise CaseError(faults)
     for entry in INPUTS:
         if entry.follows in arrays and entry.key in chosen.numbers and entry.key not in chosen.given:
             arrays[entry.key] = arrays[entry.follows]

@@ -11,7 +11,7 @@ from cycle.case import checking, edits, rules
 from cycle.case.rows import view, with_cells
 from cycle.case.studies import faults_of
 from cycle.errors import CaseError, Fault, shown
-from cycle.quantities import GROUP, GROUPS, INPUT, INPUTS, Group, Input, cell, split_cell
+from cycle.quantities import GROUP, GROUPS, INPUT, INPUTS, Group, Input, cell, input_of, split_cell
 
 Value = float | str | bool | Mapping[str, float] | tuple[Mapping[str, float], ...] | None
 
@@ -146,6 +146,11 @@ class Case:
             return self.numbers.get(key)
         return _VALUES[INPUT[key].kind](self, key)
 
+    def declared(self, key: str) -> Input | None:
+        """The declaration of an input, or of a cell, with the bounds that it has in this case; None for another key. Parameters: key."""
+        entry = input_of(key)
+        return None if entry is None else rules.in_case(entry, self.choices)
+
     def inputs(self) -> list[Stated]:
         """Inputs that apply, in declared order; optional ones without a value are among them, with value None.
 
@@ -214,7 +219,8 @@ class Case:
 
     def _stated(self, entry: Input) -> Stated:
         written = self.spelled.get(entry.key)
-        return Stated(entry, self.value(entry.key), entry.key in self.given, written, self._group_of(entry.key))
+        bounded = rules.in_case(entry, self.choices)
+        return Stated(bounded, self.value(entry.key), entry.key in self.given, written, self._group_of(entry.key))
 
     def _group_of(self, key: str) -> str | None:
         groups = [g.name for g in rules.groups_of().get(key, ()) if g.name in self.choices]

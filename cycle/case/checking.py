@@ -136,7 +136,7 @@ def _content(values: Mapping[str, Any], resolved: Resolved) -> Content:
     numbers: dict[str, float] = {}
     for entry in INPUTS:
         if entry.kind == "number" and entry.key in resolved.applicable:
-            value = values.get(entry.key, numbers.get(entry.follows, entry.default))
+            value = values.get(entry.key, numbers.get(entry.follows, entry.default_in(resolved.choices)))
             if value is not None:
                 numbers[entry.key] = float(value)
         elif entry.kind == "rows" and entry.key in resolved.applicable:

@@ -7,7 +7,7 @@ from collections.abc import Iterable
 from cycle.case.case import Case, Value, build, thawed
 from cycle.case.checking import FORMAT, nest
 from cycle.case.edits import without_unused
-from cycle.quantities import GROUPS, INPUTS, Input, cell_key
+from cycle.quantities import GROUPS, INPUT, INPUTS, Input, cell_key
 
 INPUT_GROUPS = ("flight", "air", "gas", "inlet", "fuel", "combustor", "nozzle", "engine")
 """Groups of inputs by which a difference between two walks is shared out."""
@@ -29,7 +29,7 @@ def differences(a: Case, b: Case) -> list[tuple[str, Value, Value]]:
     notes and studies are left out.
     """
     keys = ["start", *(g.name for g in GROUPS), *(key for i in INPUTS for key in _keys(i, a, b))]
-    pairs = ((key, a.value(key), b.value(key)) for key in keys)
+    pairs = ((key, a.value(key), b.value(key)) for key in keys if not _of_the_fuel(key, a, b))
     return [(key, one, other) for key, one, other in pairs if one != other]
 
 
@@ -39,6 +39,11 @@ def _keys(entry: Input, a: Case, b: Case) -> list[str]:
     if not count or count != len(b.rows.get(entry.key, ())):
         return [entry.key]
     return [cell_key(entry.key, n, column.key) for n in range(1, count + 1) for column in entry.columns]
+
+
+def _of_the_fuel(key: str, a: Case, b: Case) -> bool:
+    """Whether an input has in both cases the default of its fuel: then only the fuel differs."""
+    return key in INPUT and bool(INPUT[key].by_fuel) and key not in a.given and key not in b.given
 
 
 def taking(a: Case, b: Case, groups: Iterable[str]) -> Case:

@@ -6,9 +6,10 @@ from collections.abc import Iterator, Mapping, Sequence
 from dataclasses import dataclass
 
 from cycle.case.rows import ROW_RULES, TABLES, place
-from cycle.case.rules import Choices, bounds
+from cycle.case.rules import Choices, bounds, in_case, outside
 from cycle.errors import Fault
 from cycle.quantities import INPUT
+from cycle.units import format_number, si_unit
 
 
 @dataclass(frozen=True, slots=True)
@@ -135,5 +136,16 @@ def corridor(facts: Facts) -> Iterator[Fault]:
         yield Fault("", "limits.dynamic_pressure_low", "the corridor is upside down", given, "at most limits.dynamic_pressure_high")
 
 
-JOINT_RULES = (_fractions, _throat, _given_throat, _freezing, _mode, _lip, _rows, _perimeter, _fuel, _formula, corridor)
+def _in_flight(facts: Facts) -> Iterator[Fault]:
+    """Bounds that a flight case has and a rig has not."""
+    for key, value in facts.values.items():
+        entry = INPUT.get(key)
+        if entry is None or entry.flight_upper is None or not isinstance(value, (int, float)):
+            continue
+        bounded = in_case(entry, facts.choices)
+        if outside(bounded, value):
+            yield Fault("", key, "out of bounds in flight", f"{format_number(value, 8)} {si_unit(entry.unit)}", bounds(bounded))
+
+
+JOINT_RULES = (_fractions, _throat, _given_throat, _freezing, _mode, _lip, _rows, _perimeter, _fuel, _formula, corridor, _in_flight)
 """Rules that join several values; each takes Facts and yields faults."""

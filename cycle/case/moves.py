@@ -9,7 +9,7 @@ from cycle.case.case import Case
 from cycle.case.joint import Facts, corridor
 from cycle.case.rows import ROW_RULES, other_shares, view
 from cycle.case.rules import bounds, outside
-from cycle.quantities import INPUTS, cell_key, input_of, split_cell
+from cycle.quantities import INPUTS, cell_key, split_cell
 
 Moved = dict[str, float]
 """Key -> value, SI."""
@@ -34,7 +34,7 @@ def moved(case: Case, asked: Mapping[str, float]) -> Moved | Refusal:
     Errors: KeyError where a key is none of a number input.
     """
     for key, value in asked.items():
-        entry = input_of(key)
+        entry = case.declared(key)
         if entry is None or entry.kind != "number":
             raise KeyError(key)
         if outside(entry, value):

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Iterable, Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from functools import lru_cache
 from graphlib import TopologicalSorter
 
@@ -286,7 +286,22 @@ def bounds(entry: Input) -> str:
         return _KINDS[entry.kind] if entry.kind in _KINDS else ", ".join(entry.choices)
     limits = (("above", entry.above), ("at least", entry.lower), ("below", entry.below), ("at most", entry.upper))
     words = ", ".join(f"{word} {format_number(limit, 10)}" for word, limit in limits if limit is not None)
-    return f"{'a whole number, ' if entry.whole else ''}{words} {si_unit(entry.unit)}".rstrip()
+    flight = "" if entry.flight_upper is None else f", at most {format_number(entry.flight_upper, 10)} {si_unit(entry.unit)} in flight"
+    return f"{'a whole number, ' if entry.whole else ''}{words} {si_unit(entry.unit)}".rstrip() + flight
+
+
+def by_fuel(entry: Input) -> str:
+    """The defaults of an input that has one for each fuel, in words."""
+    words = ", ".join(f"{name or 'any other fuel'} {format_number(value, 6)}" for name, value in entry.by_fuel)
+    return f"{words} {si_unit(entry.unit)}".rstrip()
+
+
+def in_case(entry: Input, choices: Choices) -> Input:
+    """An input with the bounds that it has beside these choices."""
+    if entry.flight_upper is None:
+        return entry
+    upper = entry.flight_upper if choices.get("start") == "flight" else entry.upper
+    return replace(entry, upper=upper, flight_upper=None)
 
 
 def outside(entry: Input, value: float) -> bool:

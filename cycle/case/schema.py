@@ -13,7 +13,7 @@ from pydantic.json_schema import JsonSchemaValue
 from pydantic_core import CoreSchema, PydanticCustomError
 
 from cycle.case.checking import FORMAT, owner
-from cycle.case.rules import bounds, section_of, ways
+from cycle.case.rules import bounds, by_fuel, section_of, ways
 from cycle.errors import UnitError
 from cycle.quantities import GROUPS, INPUTS, SECTIONS, TABLES, Input
 from cycle.units import LONGEST, UNITS, read
@@ -93,7 +93,8 @@ _TYPES = {"rows": _rows, "number": _number, "choice": _choice, "text": _text, "f
 
 def _describe(entry: Input) -> str:
     symbol = f"{entry.symbol}: " if entry.symbol else ""
-    return f"{symbol}{entry.meaning} Allowed: {bounds(entry)}."
+    default = f" Default: {by_fuel(entry)}." if entry.by_fuel else ""
+    return f"{symbol}{entry.meaning} Allowed: {bounds(entry)}.{default}"
 
 
 def _drop_null_default(schema: dict[str, Any]) -> None:
@@ -206,4 +207,14 @@ def _plain(value: Any) -> Any:
 def json_schema() -> dict[str, Any]:
     """JSON Schema (2020-12) of a case file as plain data, made from the model that checks a case."""
     schema = model().model_json_schema()
-    return {"$schema": "https://json-schema.org/draft/2020-12/schema", **schema}
+    flight = {"if": {"not": {"required": ["entry"]}}, "then": {"properties": _flight_bounds()}}
+    return {"$schema": "https://json-schema.org/draft/2020-12/schema", **schema, "allOf": [flight]}
+
+
+def _flight_bounds() -> dict[str, Any]:
+    """What a case in flight, which has no table [entry], bounds more closely."""
+    found: dict[str, Any] = {}
+    for entry in (i for i in INPUTS if i.flight_upper is not None):
+        table = found.setdefault(entry.section, {"properties": {}})
+        table["properties"][entry.name] = {"maximum": entry.flight_upper}
+    return found

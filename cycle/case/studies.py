@@ -7,7 +7,7 @@ from typing import TYPE_CHECKING, Any
 
 from cycle.case.rules import outside
 from cycle.errors import Fault, UnitError, shown
-from cycle.quantities import OUTPUT, Input, input_of
+from cycle.quantities import OUTPUT, Input
 from cycle.units import format_number, read, si_unit
 
 if TYPE_CHECKING:
@@ -42,7 +42,7 @@ def _of_station(key: str) -> bool:
 
 
 def _varied(case: Case, file: str, place: str, vary: Mapping[str, Any]) -> Iterator[Fault]:
-    entry = input_of(vary["input"])
+    entry = case.declared(vary["input"])
     if entry is None or entry.kind != "number" or not case.applies(entry.key):
         yield Fault(file, f"{place}.vary", "no number input of this case", shown(vary["input"]))
         return

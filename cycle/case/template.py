@@ -5,7 +5,7 @@ from __future__ import annotations
 import textwrap
 
 from cycle.case.checking import FORMAT
-from cycle.case.rules import bounds, section_of, ways
+from cycle.case.rules import bounds, by_fuel, section_of, ways
 from cycle.quantities import GROUPS, INPUTS, SECTIONS, Input
 
 _WIDTH = 100
@@ -109,6 +109,8 @@ def _only(entry: Input) -> str:
 def _default(entry: Input) -> str:
     if entry.default is not None:
         return f"default {entry.default}"
+    if entry.by_fuel:
+        return f"default {by_fuel(entry)}"
     if entry.follows:
         return f"default that of {entry.follows}"
     return "no default"

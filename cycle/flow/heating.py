@@ -160,7 +160,8 @@ def _near_sonic(impulse: Array, flux: Array, total_enthalpy: Array, supersonic: 
     gas_constant = sonic.pressure / (sonic.density * sonic.temperature)
     for _ in range(2):
         energy = total_enthalpy - 0.5 * (flux * volume) ** 2 - sonic.enthalpy
-        temperature = np.clip(sonic.temperature + energy / sonic.specific_heat, 300.0, 5000.0)
+        coldest = np.minimum(300.0, 0.3 * sonic.temperature)
+        temperature = np.clip(sonic.temperature + energy / sonic.specific_heat, coldest, 5000.0)
         root = np.sqrt(np.maximum(impulse**2 - 4.0 * flux**2 * gas_constant * temperature, 0.0))
         volume = (impulse + sign * root) / (2.0 * flux**2)
     return replace(sonic, temperature=temperature, pressure=impulse - flux**2 * volume, density=1.0 / volume)

@@ -12,7 +12,7 @@ import numpy as np
 from cycle.arrays import Array, Flags
 from cycle.flow import isentropic
 from cycle.gas.base import Gas
-from cycle.gas.state import NOT_CONVERGED, State
+from cycle.gas.state import NOT_CONVERGED, State, merge, scatter
 
 _TURNS = 30
 _TOLERANCE = 1e-12
@@ -101,7 +101,9 @@ def at_flux(gas: Gas, total_enthalpy: Array, entropy: Array, flux: Array, supers
 def expanded_to_flux(gas: Gas, total_enthalpy: Array, entropy: Array, flux: Array, before: State) -> State:
     """Supersonic state (N,) where the stream (ht, s), sonic or supersonic in `before`, has widened to `flux` kg/(s m2).
 
-    The flux must not exceed that of `before`; no sonic state is needed. Start as in `at_flux`.
+    The flux must not exceed that of `before`; no sonic state is needed. Start as in `at_flux`. Close to Mach 1, where the flux is flat,
+    by `_past_sonic`; at the flux of a sonic `before` that state itself. `before` may be a little subsonic, as a throat's stream whose
+    composition is kept from there is.
     """
     g = before.isentropic_exponent
     mach = np.maximum(velocity(total_enthalpy, before) / before.sound_speed, 1.0)
@@ -110,4 +112,44 @@ def expanded_to_flux(gas: Gas, total_enthalpy: Array, entropy: Array, flux: Arra
     relative = (1.0 + 0.5 * (g - 1.0) * wide**2) / (1.0 + 0.5 * (g - 1.0) * mach**2)
     with np.errstate(all="ignore"):
         guess = gas.at("sp", entropy, before.pressure * relative ** (-g / (g - 1.0)))
-        return gas.at("flux", entropy, total_enthalpy, flux, start=guess)
+        state = gas.at("flux", entropy, total_enthalpy, flux, start=guess)
+        drop = _drop_past_sonic(total_enthalpy, flux, before)
+        slow = velocity(total_enthalpy, before) < before.sound_speed * (1.0 - _SLOW)
+        near = np.flatnonzero(np.abs(drop) < np.where(slow, _FLAT_FROM_BELOW, _FLAT))
+        if near.size:
+            part = (total_enthalpy[near], entropy[near], flux[near], before.take(near), drop[near])
+            state = scatter(state, near, _past_sonic(gas.take(near), *part))
+    return state
+
+
+_FLAT, _FLAT_FROM_BELOW, _SAME, _SLOW = 1e-3, 0.3, 3e-8, 1e-6
+"""Change of ln p from a nearly sonic state below which the flux is too flat for Newton; the same from a state that is subsonic by more
+than the last; below which it is rounding."""
+
+
+def _drop_past_sonic(total_enthalpy: Array, flux: Array, before: State) -> Array:
+    """Change of ln p (N,), negative, from the nearly sonic state `before` to `flux` behind Mach 1, to second order.
+
+    d ln G/d ln p = (1 - 1/M^2)/gamma_s, and at Mach 1 d2 ln G/d ln p2 = -(gamma_s + 1)/gamma_s^2 at constant exponent. Shapiro (1953),
+    ch. 4. Of use close to Mach 1 only.
+    """
+    u, g = velocity(total_enthalpy, before), before.isentropic_exponent
+    slope, curvature = (1.0 - (before.sound_speed / u) ** 2) / g, (g + 1.0) / g**2
+    fall = np.minimum(np.log(flux / (before.density * u)), 0.0)
+    drop: Array = (slope - np.sqrt(slope**2 - 2.0 * curvature * fall)) / curvature
+    return drop
+
+
+def _past_sonic(gas: Gas, total_enthalpy: Array, entropy: Array, flux: Array, before: State, drop: Array) -> State:
+    """The state (N,) of `expanded_to_flux` where it lies close to Mach 1: Newton in ln p from the change `drop`, held near it because the
+    slope vanishes at Mach 1."""
+    first = np.log(before.pressure)
+    change, held = drop, 0.2 * np.abs(drop)
+    for _ in range(6):
+        state = gas.at("sp", entropy, np.exp(first + change), start=before)
+        u = velocity(total_enthalpy, state)
+        slope = (1.0 - (state.sound_speed / u) ** 2) / state.isentropic_exponent
+        step = np.nan_to_num(-np.log(state.density * u / flux) / slope)
+        change = np.clip(change + step, drop - held, drop + held)
+    state = gas.at("sp", entropy, np.exp(first + change), start=before)
+    return merge(np.abs(drop) < _SAME, before, state)

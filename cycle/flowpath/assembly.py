@@ -159,16 +159,20 @@ def fuel_supply(entering: Stream, setting: Setting, ratio: Array) -> Supply:
     return Supply(None, ratio, brought - released * stretch, heat, burnt, 1.0 if counted else 0.0)
 
 
-def _walls(setting: Setting, ratio: Array, flow: Array) -> Walls:
+def _walls(setting: Setting, ratio: Array) -> Walls:
     friction = setting["combustor.friction_coefficient"]
     if setting.has("combustor.wall_temperature"):
         return Walls(friction, 0.0, setting["combustor.wall_temperature"])
     if setting.has("combustor.wall_heat_fraction"):
-        return Walls(friction, setting["combustor.wall_heat_fraction"] * setting.heating_value)
-    burnt = ratio * flow * setting["combustor.burnt_fraction"]
-    with np.errstate(divide="ignore", invalid="ignore"):
-        lost = np.where(burnt > 0.0, setting.get("combustor.wall_heat", 0.0) / burnt, 0.0)
-    return Walls(friction, lost)
+        return Walls(friction, setting["combustor.wall_heat_fraction"] * setting.heating_value * _releasing(setting, ratio))
+    return Walls(friction, power=setting.get("combustor.wall_heat", 0.0))
+
+
+def _releasing(setting: Setting, ratio: Array) -> Array:
+    """Share of the fuel (N,) whose burning the oxygen allows; all of it where the excess reacts, too."""
+    if setting.choices.get("combustor.excess_fuel") == "reacts":
+        return np.ones(setting.size)
+    return np.fmin(1.0, setting.stoichiometric_ratio / np.maximum(ratio, 1e-300))
 
 
 def _isolator(entering: Stream, setting: Setting) -> Isolator | None:
@@ -186,7 +190,7 @@ def flow_of(entering: Stream, setting: Setting, ratio: Array, total_pressures: b
         _area_law(setting, entering.area),
         _injectors(setting),
         fuel_supply(entering, setting, ratio),
-        _walls(setting, ratio, entering.mass_flow),
+        _walls(setting, ratio),
         separation=setting["combustor.separation_limit"] if setting.has("combustor.separation_limit") else None,
         isolator=_isolator(entering, setting),
         asked=setting.choices["engine.mode"],
@@ -320,7 +324,8 @@ def expansion(entering: Stream, setting: Setting, ambient: Array) -> Step | Step
         step = Step(_diverging(frozen.exit, factor), Process("nozzle", start, "10"), status)
         return _closed(frozen.plane, step, ambient, entering) if kind == "area" else step
     if setting.has("nozzle.internal_area_ratio"):
-        found = widening.two_part(entering, entering.area * setting["nozzle.internal_area_ratio"], kind, end, _line(setting))
+        area = entering.area * setting["nozzle.internal_area_ratio"]
+        found = widening.two_part(entering, area, kind, end, _line(setting), from_throat=nozzle.has_throat(setting))
         status = named_status(found.fault, widening.FAULT_NAMES, _EXPANSION_FAULTS)
         over = {"over_expanded": found.over_expanded.astype(float)}
         return Steps(

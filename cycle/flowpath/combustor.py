@@ -7,7 +7,7 @@ kinetic energy is not added again. Heiser and Pratt (1994), ch. 6, for the strea
 from __future__ import annotations
 
 from collections.abc import Callable
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 
@@ -17,6 +17,7 @@ from cycle.flowpath.setting import Setting
 from cycle.flowpath.stream import SOLVED, STATUS_CODE, Booking, Process, Step, Stream, status_of, stream
 from cycle.gas.base import Gas
 from cycle.gas.constant import ConstantGas
+from cycle.gas.equilibrium import EquilibriumGas
 from cycle.gas.frozen import FrozenGas
 from cycle.gas.state import State
 
@@ -41,9 +42,12 @@ def burner_gas(entering: Stream, setting: Setting) -> Stream:
     gas = entering.gas
     if isinstance(gas, ConstantGas):
         return _repaired(entering, gas.with_cp(combustion_cp(setting)))
-    if setting.choices["gas.model"] == "equilibrium" and isinstance(gas, FrozenGas):
-        return Stream(gas.reacting(), entering.state, entering.velocity, entering.mass_flow, entering.axial_factor)
-    return entering
+    if setting.choices["gas.model"] != "equilibrium" or not isinstance(gas, FrozenGas | EquilibriumGas):
+        return entering
+    reacting = gas.reacting()
+    if setting.choices["combustor.excess_fuel"] == "inert":
+        reacting = reacting.with_excess_inert()
+    return replace(entering, gas=reacting)
 
 
 def combustion_cp(setting: Setting) -> Array:

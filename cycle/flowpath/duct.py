@@ -137,7 +137,7 @@ def _flow(entering: Stream, duct: Duct, found: Solution, limit: Array, isolator:
     zero = np.zeros(duct.size)
     fuel = mass * duct.ratio
     burnt = duct.burnt_fraction * duct.burning(duct.end[None])[0]
-    heat = fuel * burnt * duct.lost_heat + (0.0 if found.lost_heat is None else found.lost_heat[-1])
+    heat = fuel * burnt * duct.lost_heat + duct.wall_power + (0.0 if found.lost_heat is None else found.lost_heat[-1])
     burner = Booking(
         fuel, fuel * duct.fuel_mass, duct.fuel_enthalpy + burnt * duct.heat, duct.brought[-1], heat,
         found.friction, found.wall_force + beside,

@@ -36,6 +36,9 @@ FAULT_CODE = {name: i for i, name in enumerate(FAULT_NAMES)}
 EQUAL = 1e-9
 """Relative difference below which two pressures or areas are the same one."""
 
+NEARLY_SONIC = 0.9
+"""Mach number of kept composition above which a stream that is sonic in its own gas may stand."""
+
 WEAK = 1e-7
 """Excess over Mach 1 below which a shock changes nothing that double precision could show."""
 
@@ -70,8 +73,6 @@ def widened(entering: Stream, area: Array) -> tuple[State, Flags]:
     and not larger than `area`."""
     flux = np.minimum(entering.mass_flow / area, entering.flux)
     state = states.expanded_to_flux(entering.gas, entering.total_enthalpy, entering.state.entropy, flux, entering.state)
-    # at Mach 1 the flux does not tell the state; the entry is known
-    state = merge(np.abs(area / entering.area - 1.0) <= EQUAL, entering.state, state)
     return state, (area >= entering.area * (1.0 - EQUAL)) & (entering.mach >= 1.0 - EQUAL)
 
 
@@ -197,7 +198,9 @@ def _frozen_end(kept: Stream, end: str, value: Array, before: Flags, line: Line)
     if end == "pressure":
         return _END[end](kept, value, line)
     state, fits = line.at_area(kept, value)
-    return state, fits | (before & (kept.mach > 0.9) & state.good & (value >= kept.area))
+    if line is ISENTROPIC:
+        fits = fits | (before & (kept.mach > NEARLY_SONIC) & state.good & (value >= kept.area))
+    return state, fits
 
 
 @dataclass(frozen=True, slots=True)
@@ -215,13 +218,20 @@ class TwoPart:
 
 
 def two_part(
-    entering: Stream, area_9: Array, end: str, end_value: Array, line: Line = ISENTROPIC, outside: Line | None = ISENTROPIC
+    entering: Stream,
+    area_9: Array,
+    end: str,
+    end_value: Array,
+    line: Line = ISENTROPIC,
+    outside: Line | None = ISENTROPIC,
+    from_throat: bool = False,
 ) -> TwoPart:
     """Expansion to the end of the internal nozzle, then outside it to the end on which thrust is booked.
 
     entering: sonic or supersonic. area_9: m2 (N,). end: "pressure" Pa or "area" m2 of station 10; end_value (N,). line: the
     expansion inside. outside: the expansion from 9 on; None continues `line` from the entry, so that its loss covers the whole
-    drop. KeyError for another `end`.
+    drop. from_throat: the entry is a choked throat, a little subsonic where its composition is kept from there. KeyError for another
+    `end`.
     """
     with np.errstate(all="ignore"):
         inner, fits = line.at_area(entering, area_9)
@@ -233,7 +243,7 @@ def two_part(
         outer = merge(over, inner, outer)
         ten = moved(entering, outer)
     shrinks = (end == "area") & (end_value < area)
-    slow = entering.mach < 1.0 - EQUAL
+    slow = entering.mach < (NEARLY_SONIC if from_throat else 1.0 - EQUAL)
     fault = faults_of(
         FAULT_CODE, (inner, outer), (slow, "subsonic"), (~fits, "upstream"), (shrinks, "exit-shrinks"), (~(goes | over), "upstream")
     )

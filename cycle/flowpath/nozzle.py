@@ -11,7 +11,7 @@ from cycle.arrays import Array, Flags
 from cycle.flow import roots, states
 from cycle.flowpath.setting import Setting
 from cycle.flowpath.stream import Process, Step, Stream, status_of, stream
-from cycle.gas.state import State, scatter
+from cycle.gas.state import State, merge, scatter
 
 
 def has_throat(setting: Setting) -> bool:
@@ -78,15 +78,16 @@ _QUALITY: dict[str, Callable[[Stream, Setting, State], Array]] = {
 }
 
 
-def _lossless(setting: Setting) -> bool:
-    quality = setting.choices["nozzle.quality"]
-    return bool(np.all(setting[f"nozzle.{quality}"] == 1.0))
+def _lossless(setting: Setting) -> Flags:
+    """Points whose expansion has no loss, (N,)."""
+    none: Flags = setting[f"nozzle.{setting.choices['nozzle.quality']}"] == 1.0
+    return none
 
 
 def expanded(entering: Stream, setting: Setting, pressure: Array, start: State | None = None) -> State:
     """State at `pressure` (N,) behind the real expansion."""
     ideal = entering.gas.at("sp", entering.state.entropy, pressure, start=start)
-    if _lossless(setting):
+    if _lossless(setting).all():
         return ideal
     h = _QUALITY[setting.choices["nozzle.quality"]](entering, setting, ideal)
     return entering.gas.at("hp", h, pressure, start=ideal)
@@ -96,13 +97,30 @@ def to_area(entering: Stream, setting: Setting, area: Array) -> tuple[State, Fla
     """Supersonic state that fills `area` (N,), not below the entering one, and whether there is one.
 
     Isentropic first, then the pressure at which the real expansion keeps the mass flow, by Newton and then secant in ln p.
-    Just behind a throat the losses can leave no such pressure: those that do not settle are looked at by `_near_throat`.
+    Just behind a throat the losses can leave no such pressure: what does not settle, or is subsonic, is looked at by `_near_throat`.
     """
     flux = np.minimum(entering.mass_flow / area, entering.flux)
     state = states.expanded_to_flux(entering.gas, entering.total_enthalpy, entering.state.entropy, flux, entering.state)
     fits = np.ones(area.shape, np.bool_)
-    if _lossless(setting):
-        return state, fits
+    known = _lossless(setting)
+    if setting.choices["nozzle.quality"] == "expansion_efficiency":
+        # a drop counted from the entering state leaves that state as it is
+        same = (flux >= entering.flux * (1.0 - SAME)) & (entering.mach >= 1.0 - SAME)
+        state, known = merge(same, entering.state, state), known | same
+    lossy = np.flatnonzero(~known)
+    if lossy.size:
+        found, fits[lossy] = _with_loss(entering.take(lossy), setting.take(lossy), flux[lossy], state.take(lossy))
+        state = scatter(state, lossy, found)
+    return state, fits
+
+
+SAME = 1e-9
+"""Relative difference below which two mass fluxes are the same one."""
+
+
+def _with_loss(entering: Stream, setting: Setting, flux: Array, ideal: State) -> tuple[State, Flags]:
+    """`to_area` of points with losses; ideal: the isentropic state (N,) of the same flux."""
+    state, fits = ideal, np.ones(flux.shape, np.bool_)
     ln_p = np.log(state.pressure)
     at, before, slope = ln_p, np.full_like(ln_p, np.nan), np.ones_like(ln_p)
     done = np.zeros(ln_p.shape, np.bool_)
@@ -118,36 +136,62 @@ def to_area(entering: Stream, setting: Setting, area: Array) -> tuple[State, Fla
             break
         before, at = np.where(done, before, miss), np.where(done, at, ln_p)
         ln_p = np.where(done, ln_p, ln_p + np.clip(-miss / slope, -1.0, 1.0))
-    left = np.flatnonzero(~done)
+    left = np.flatnonzero(~done | ~(u >= state.sound_speed))
     if left.size:
-        found, fits[left] = _near_throat(entering.take(left), setting.take(left), flux[left])
+        found, fits[left] = _near_throat(entering.take(left), setting.take(left), flux[left], ideal.take(left))
         state = scatter(state, left, found)
     return state, fits
 
 
-_SCAN = 65
+_SCAN, _TOP = 65, 0.77
+"""Pressures tried between the bracket's ends; isentropic Mach number below which no loss puts the largest flux, which for a velocity
+coefficient near 0 lies at gamma_s^(-1/2)."""
 
 
-def _near_throat(entering: Stream, setting: Setting, flux: Array) -> tuple[State, Flags]:
+def _near_throat(entering: Stream, setting: Setting, flux: Array, ideal: State) -> tuple[State, Flags]:
     """The real expansion where its largest mass flux lies close to `flux` (N,): beyond that maximum by bisection, or no
-    state at all where even the maximum is below it."""
-    span = np.linspace(0.0, -1.5, _SCAN)
-    n = flux.size
-    many = np.repeat(np.arange(n), _SCAN)
-    wide, asked = entering.take(many), setting.take(many)
+    state at all where even the maximum is below it.
+
+    The isentropic state of that flux, `ideal`, has too little of it with the losses: the bracket's other end.
+    """
 
     def excess(ln_p: Array, stream: Stream, part: Setting, target: Array) -> Array:
         state = expanded(stream, part, np.exp(ln_p))
         return np.log(state.density * states.velocity(stream.total_enthalpy, state) / target)
 
-    ln_p = np.log(wide.state.pressure) + np.tile(span, n)
-    scanned = np.nan_to_num(excess(ln_p, wide, asked, flux[many]).reshape(n, _SCAN), nan=-np.inf)
-    peak = scanned.argmax(1)
-    fits = (scanned.max(1) >= 0.0) & (scanned[:, -1] < 0.0)
-    entry = np.log(entering.state.pressure)
-    root = roots.bracketed(lambda x: excess(x, entering, setting, flux), entry + span[peak], entry + span[-1], 1e-15)
-    state = expanded(entering, setting, np.exp(np.where(fits, root, entry)))
-    return state.flagged(fits & ~np.isfinite(root)), fits
+    def around(middle: Array, width: Array) -> tuple[Array, Array]:
+        """Largest excess (N,) of the `_SCAN` places tried about `middle`, inside the bracket, and its place."""
+        places = np.clip(middle + width * np.linspace(1.0, -1.0, _SCAN)[:, None], low, high)
+        found = excess(places.ravel(), wide, asked, np.tile(flux, _SCAN)).reshape(_SCAN, n)
+        found = np.where(np.isfinite(found), found, -np.inf)
+        best = found.argmax(0), np.arange(n)
+        return found[best], places[best]
+
+    n = flux.size
+    many = np.tile(np.arange(n), _SCAN)
+    wide, asked = entering.take(many), setting.take(many)
+    high, low = _highest(entering, setting), np.log(ideal.pressure)
+    half = 0.5 * (high - low)
+    most, peak = around(low + half, half)
+    for closer in (_SCAN / 4.0, _SCAN**2 / 16.0, _SCAN**3 / 64.0):
+        most, peak = around(peak, half / closer)
+    fits = most >= -SAME
+    root = roots.bracketed(lambda x: excess(x, entering, setting, flux), peak, np.minimum(low, peak), 1e-15)
+    root = np.where(most > SAME, root, peak)
+    state = expanded(entering, setting, np.exp(np.where(fits, root, high)))
+    return state.flagged(~fits | ~np.isfinite(root)), fits
+
+
+def _highest(entering: Stream, setting: Setting) -> Array:
+    """ln of the highest pressure at which an expansion with losses may end, (N,): at constant exponent that of the isentropic Mach number
+    `_TOP`. A drop counted from the entering state ends no higher than that: the entropy would fall."""
+    ln_p = np.log(entering.state.pressure)
+    if setting.choices["nozzle.quality"] == "expansion_efficiency":
+        return ln_p
+    g = entering.state.isentropic_exponent
+    relative = (1.0 + 0.5 * (g - 1.0) * np.maximum(entering.mach, _TOP) ** 2) / (1.0 + 0.5 * (g - 1.0) * _TOP**2)
+    top: Array = ln_p + g / (g - 1.0) * np.log(relative)
+    return top
 
 
 def _area_over_capture(entering: Stream, setting: Setting) -> Array:

@@ -98,10 +98,12 @@ class EquilibriumGas(Gas):
     negative amount of O2; inert: (I, N) mol/kg. Condensed carbon is not a species: see `carbon_activity`. Between 150 and
     200 K the heat capacities are held and the composition is that of equilibrium with them: for air, undissociated.
     The potentials of its states are z of the basis species, `ABSENT` where an element is not there.
+    excess_inert: whether fuel that is added beyond what the free oxygen burns stays vapour; otherwise it reacts like the rest.
     """
 
-    def __init__(self, table: SpeciesTable, basis: Array, inert: Array) -> None:
+    def __init__(self, table: SpeciesTable, basis: Array, inert: Array, excess_inert: bool = False) -> None:
         self.table = table
+        self.excess_inert = excess_inert
         # A balance that cancels to rounding is an absent element, not a trace of one.
         self.basis = np.where(np.abs(basis) < 1e-12, 0.0, basis)
         self.inert = inert
@@ -114,7 +116,7 @@ class EquilibriumGas(Gas):
 
     def take(self, index: Codes | Flags) -> Self:
         """The gas of the chosen points."""
-        return type(self)(self.table, self.basis[:, index], self.inert[:, index])
+        return type(self)(self.table, self.basis[:, index], self.inert[:, index], self.excess_inert)
 
     def frozen(self, state: State) -> FrozenGas:
         """A gas that keeps the composition of `state` from here on."""
@@ -128,16 +130,22 @@ class EquilibriumGas(Gas):
         """The products of complete combustion of the same atoms: see `complete_products`."""
         return complete_products(self.table, self.basis, self.inert)
 
-    def fuelled(self, fuel: Fuel, ratio: Array, burnt: Array) -> EquilibriumGas:
-        """The burnt fraction of the fuel joins the reacting atoms, however rich; the rest is inert vapour.
+    def with_excess_inert(self) -> EquilibriumGas:
+        """This gas, in which fuel beyond the free oxygen will stay vapour."""
+        return type(self)(self.table, self.basis, self.inert, True)
 
-        ValueError where the table was not made for this fuel.
+    def fuelled(self, fuel: Fuel, ratio: Array, burnt: Array) -> EquilibriumGas:
+        """The burnt fraction of the fuel joins the reacting atoms, however rich, or with `excess_inert` of the fuel that the free oxygen
+        burns; the rest is inert vapour. ValueError where the table was not made for this fuel.
         """
         supplied = ratio / per_mole(self.table, fuel)
-        basis = self.basis + self.table.fuel_in_basis[:, None] * (burnt * supplied)
+        allowed = supplied
+        if self.excess_inert:
+            allowed = np.minimum(supplied, np.maximum(self.basis[self.table.index["O2"]], 0.0) / fuel.oxygen_need())
+        basis = self.basis + self.table.fuel_in_basis[:, None] * (burnt * allowed)
         inert = self.inert.copy()
-        inert[-1] += (1.0 - burnt) * supplied
-        return EquilibriumGas(self.table, basis / (1.0 + ratio), inert / (1.0 + ratio))
+        inert[-1] += (1.0 - burnt) * allowed + (supplied - allowed)
+        return EquilibriumGas(self.table, basis / (1.0 + ratio), inert / (1.0 + ratio), self.excess_inert)
 
     def guess_heated(self, impulse: Array, flux: Array, total_enthalpy: Array, supersonic: Flags) -> tuple[State, Array]:
         """From the products of complete combustion: see `Gas.guess_heated`."""

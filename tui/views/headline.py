@@ -142,6 +142,7 @@ def audit_words(found: Figures) -> str:
 MARGINS = {
     "unstart": "unstart",
     "duct_separation": "burner separation",
+    "burner_separation": "burner separation",
     "isolator_length": "isolator",
     "throat_capacity": "throat",
     "attached": "attached shocks",

@@ -60,6 +60,8 @@ def head(session: Session, wide: int) -> list[Line]:
     out.append(
         line((fit(clean(session.referee) or f"referee not asked; {key_of(session.actions, 'referee')} on the main screen asks", wide), DIM))
     )
+    for note in found.notes:
+        out += [line((part, STYLE["near"])) for part in wrap(clean(note.words(session.system)).split(), wide)[:3]]
     if not found.solved:
         out += [line((part, STYLE["over"])) for part in wrap(clean(f"no solution: {found.reason}").split(), wide)[:3]]
     return out

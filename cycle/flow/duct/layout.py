@@ -68,11 +68,13 @@ class Supply:
 @dataclass(frozen=True, slots=True)
 class Walls:
     """friction: Fanning factor Cf; lost_heat: J to the wall a kg of fuel burnt, a stated fraction of the heat released;
-    temperature: K of a wall that takes heat by Reynolds analogy (see `cooling`), None: an adiabatic one."""
+    temperature: K of a wall that takes heat by Reynolds analogy (see `cooling`), None: an adiabatic one; power: W to the wall, evenly
+    along the duct."""
 
     friction: ArrayLike = 0.0
     lost_heat: ArrayLike = 0.0
     temperature: ArrayLike | None = None
+    power: ArrayLike = 0.0
 
 
 @dataclass(frozen=True, eq=False)
@@ -137,7 +139,8 @@ class Duct:
     Entering stream: gas, total_enthalpy J/kg, mass_flow kg/s, velocity m/s, pressure Pa, entry_area m2. edges: (K + 1, N)
     of the segments, m; grades: (G + 1, N), the edges and the places between which a burning law hardly
     bends; at their left ends, each (K, N): area m2, perimeter m (tabulated), and both slopes; injected: share
-    of the fuel upstream of a segment; brought: its axial impulse, N. Injectors: inject_x, share, theta, length (J, N).
+    of the fuel upstream of a segment; brought: its axial impulse, N. Injectors: inject_x, share, theta, length (J, N). The walls: see
+    `Walls`.
     """
 
     gas: Gas
@@ -168,6 +171,7 @@ class Duct:
     theta: Array
     length: Array
     wall_temperature: Array
+    wall_power: Array
     grades: Array
     cooling: Cooling | None = None
 
@@ -208,6 +212,7 @@ class Duct:
         released = self.ratio * self.burnt_fraction * burning
         flow = self.mass_flow * (1.0 + self.fuel_mass * ratio)
         energy = self.total_enthalpy + ratio * self.fuel_enthalpy + released * (self.heat - self.lost_heat)
+        energy = energy - self.wall_power * (x / self.end) / self.mass_flow
         if self.cooling is not None:
             energy = energy - self.cooling.at(segment, x) / self.mass_flow
         burnt = self.burnt_fraction * burning / np.maximum(injected, 1e-300)
@@ -324,7 +329,7 @@ def duct_of(
         _spread(walls.lost_heat, n), law.section, _spread(1.0 if law.width is None else law.width, n), edges, area, slope,
         perimeter, perimeter_slope, (entered * share[None]).sum(1),
         mass_flow * mass * f * (entered * (share * speed)[None]).sum(1), place, share, _rows(injectors.theta, n, count), length,
-        _spread(np.nan if walls.temperature is None else walls.temperature, n),
+        _spread(np.nan if walls.temperature is None else walls.temperature, n), _spread(walls.power, n),
         _grades(edges, place, length, _rows(injectors.theta, n, count)),
     )  # fmt: skip
 
