@@ -46,7 +46,7 @@ def _internal(setting: Setting) -> Internal:
     shock = np.ones(setting.size) if setting.choices.get("inlet.terminal") == "terminal_shock" else None
     contraction = setting["inlet.internal_contraction"] if setting.has("inlet.internal_contraction") else None
     throat = setting["inlet.throat_area"] if setting.has("inlet.throat_area") else None
-    return Internal(turn, throat_area=throat, contraction=contraction, shock_area_ratio=shock)
+    return Internal(turn, throat_area=throat, contraction=contraction, shock_area_ratio=shock, axial=True)
 
 
 def _lip(setting: Setting) -> tuple[Array, Array] | None:
