@@ -146,6 +146,9 @@ LIMITS: tuple[Output, ...] = (
            source=_KORKEGI),
     _limit("start", "inlet start", "Internal contraction of the inlet against the one that swallows its starting shock.",
            source="Kantrowitz and Donaldson, NACA WR L-713 (1945) (from memory)"),
+    _limit("shock_on_lip", "shock on lip, flight Mach number",
+           "Flight Mach number against the one at which the first external shock meets the lip; above it the shock enters the cowl, "
+           "which is not followed.", source="NACA Report 1135 (1953); Taylor and Maccoll (1933) for a cone"),
     _limit("duct_separation", "attached burner flow, peak pressure", "Peak pressure of the attached march as a share of what separates.",
            source=_KORKEGI),
     _limit("unstart", "unstart, impulse at burner entry",

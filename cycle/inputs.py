@@ -118,7 +118,7 @@ INPUTS: tuple[Input, ...] = (
     Input("inlet.isentropic_ramp.first_wedge", "d1", "first wedge", "Straight turn, an oblique shock, ahead of the curved ramp.",
           unit="angle", above=0.0, upper=_TURN, step=0.005, when=(*_FLIGHT, ("inlet.compression", ("isentropic_ramp",)))),
     Input("inlet.cowl_angle", "dcowl", "cowl turn",
-          "Turn back by the shock from the lip, all of it when absent; a second shock turns what is left, so that the stream is axial at 2.",
+          "Turn back by the shock from the lip, all of it when absent; a second shock turns what is left: the stream is axial at 2.",
           unit="angle", lower=0.0, upper=1.0471975511965976, step=0.005, when=_GEOMETRY),
     Input("inlet.lip_x", "xl", "lip place", "Along the flight direction, from the first corner or the tip.", unit="length", lower=0.0,
           upper=1e3, step=0.01, when=_WITH_LIP),
@@ -268,8 +268,8 @@ INPUTS: tuple[Input, ...] = (
     Input("nozzle.divergence_shape", "", "divergence shape", "conical (1 + cos a)/2, planar sin(a)/a.", kind="choice", unit="none",
           choices=("conical", "planar"), default="conical", when=(("nozzle.divergence", ("divergence_angle",)),)),
     # engine
-    Input("engine.capture_area", "Ac", "capture area", "Area of the captured stream tube at the lip.", unit="area", above=0.0, upper=1e3,
-          default=1.0, step=0.01, when=_FLIGHT),
+    Input("engine.capture_area", "Ac", "capture area", "Area of the captured stream tube at the lip; of a cone with a lip, its circle.",
+          unit="area", above=0.0, upper=1e3, default=1.0, step=0.01, when=_FLIGHT),
     Input("engine.mode", "", "mode asked for", "auto: as found; supersonic, thermal-throat, geometric-throat: that or none.", kind="choice",
           unit="none", choices=("auto", "supersonic", "thermal-throat", "geometric-throat"), default="auto"),
     # limits: thresholds

@@ -14,6 +14,7 @@ from cycle.account import injection_pressure, spread
 from cycle.arrays import Array, Codes
 from cycle.flow import gas_shocks, roots
 from cycle.flowpath import assembly, combustor, inlet_limits
+from cycle.flowpath.inlet_geometry import Inlet
 from cycle.flowpath.inlet_limits import Bound
 from cycle.flowpath.setting import Setting
 from cycle.flowpath.stream import Stream
@@ -22,6 +23,9 @@ from cycle.walk import March
 
 NEAR = 0.1
 """Margin below which a limit is called near; common practice."""
+
+_ON_LIP = 1e-6
+"""Relative distance of the flight Mach number from that of shock on lip within which the shock is on the lip."""
 
 DISSOCIATION = 2200.0
 """Temperature above which a gas without dissociation is out of its range, K; common practice."""
@@ -243,15 +247,17 @@ def _inlet_geometry(walked: March) -> tuple[Limit, ...]:
         ("attached", "attached inlet shocks", "needs inlet geometry"),
         ("separation", "shock separation in the inlet", "needs inlet geometry"),
         ("start", "inlet start", "needs the internal contraction of an inlet geometry"),
+        ("shock_on_lip", "shock on lip, flight Mach number", "needs the inlet's lip"),
     )
     missing = tuple(Limit(k, label, nothing, nothing, "ratio", True, why, "", why) for k, label, why in lacking)
     if setting.choices.get("inlet.quality") != "geometry" or not flight.index.size:
         return missing
     inlet = assembly.solved_inlet(_whole_capture(walked), setting.take(flight.index))
-    found = inlet_limits.bounds(inlet)
+    found = (*inlet_limits.bounds(inlet), *_shock_on_lip(walked, setting.take(flight.index), inlet))
     key = {"ramp": "inlet.ramp.1.angle", "cone": "inlet.cone.half_angle", "isentropic_ramp": "inlet.isentropic_ramp.turning"}
     goto = key[setting.choices["inlet.compression"]]
-    words = {"attached": "less turning or a faster flight", "separation": "more and weaker shocks", "start": "less internal contraction"}
+    words = {"attached": "less turning or a faster flight", "separation": "more and weaker shocks", "start": "less internal contraction",
+             "shock_on_lip": "fly slower, or a lip further back or lower: the shock enters the cowl, which is not followed"}  # fmt: skip
     rows = []
     for name, label, why in lacking:
         own = [b for b in found if b.key == name]
@@ -259,9 +265,24 @@ def _inlet_geometry(walked: March) -> tuple[Limit, ...]:
             why = "no such shock meets a boundary layer" if name == "separation" else why
             rows.append(Limit(name, label, nothing, nothing, "ratio", True, "", "", why))
             continue
-        to = "inlet.internal_contraction" if name == "start" else goto
+        to = {"start": "inlet.internal_contraction", "shock_on_lip": "flight.mach"}.get(name, goto)
         rows.append(_worst(walked, flight.index, own, label, words[name], to))
     return tuple(rows)
+
+
+def _shock_on_lip(walked: March, setting: Setting, inlet: Inlet) -> list[Bound]:
+    """Flight Mach number against the one at which the first external shock meets the lip; setting, inlet: of the points in flight."""
+    if setting.choices.get("inlet.lip") != "lip":
+        return []
+    cone, before = setting.choices["inlet.compression"] == "cone", _whole_capture(walked)
+    angle, search = ("cone.half_angle", inlet_limits.cone_lip_mach) if cone else ("ramp.1.angle", inlet_limits.ramp_lip_mach)
+    allowed = search(before, setting[f"inlet.{angle}"], setting["inlet.lip_x"], setting["inlet.lip_y"])
+    # a lip that was placed on the shock is on it to the digits of its place
+    on_it = np.abs(before.mach - allowed) <= _ON_LIP * allowed
+    # behind where shocks cross they are steeper than the first: it has no lip to meet
+    crossed = ~on_it & (before.mach > allowed) & ~inlet.inside[0]
+    allowed = np.where(on_it, before.mach, np.where(crossed, np.nan, allowed))
+    return [Bound("shock_on_lip", "", "ratio", before.mach, allowed)]
 
 
 def _worst(walked: March, index: Codes, own: list[Bound], label: str, restore: str, goto: str) -> Limit:

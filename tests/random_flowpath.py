@@ -212,7 +212,16 @@ def _duct_engine(rng: Rng, model: str) -> Case:
         case["isolator"] = _isolator(rng)
     case["nozzle"] = _nozzle(rng, model == "equilibrium", False, False)
     mode = pick(rng, (*["auto"] * 8, "supersonic", "thermal-throat"))
-    return case | {"engine": {"capture_area": capture, "mode": mode}}
+    return _round_lip(case | {"engine": {"capture_area": capture, "mode": mode}})
+
+
+def _round_lip(case: Case) -> Case:
+    """The lip of a cone is the circle of its capture area."""
+    inlet = case["inlet"]
+    if "cone" in inlet and "lip_y" in inlet:
+        scale = math.sqrt(case["engine"]["capture_area"] / math.pi) / inlet["lip_y"]
+        inlet |= {key: scale * inlet[key] for key in ("lip_x", "lip_y")}
+    return case
 
 
 def _duct_rig(rng: Rng, model: str) -> Case:
@@ -245,13 +254,9 @@ def _normal_shock(rng: Rng, model: str) -> Case:
     flight = _flight(rng, 2.5, 4.5)
     inlet = _by_geometry(rng, flight["mach"]) | {"terminal_shock": True}
     nozzle = _nozzle(rng, model == "equilibrium", True, False) | {"throat": "sized"}
-    return {
-        "flight": flight,
-        "inlet": inlet,
-        "combustor": _at_rest_burner(rng, _total(flight["mach"])),
-        "nozzle": nozzle,
-        "engine": {"capture_area": between(rng, 0.1, 0.8)},
-    }
+    burner = _at_rest_burner(rng, _total(flight["mach"]))
+    engine = {"capture_area": between(rng, 0.1, 0.8)}
+    return _round_lip({"flight": flight, "inlet": inlet, "combustor": burner, "nozzle": nozzle, "engine": engine})
 
 
 def random_flowpath(seed: int) -> Case:

@@ -11,6 +11,7 @@ import pytest
 import tomlkit
 
 import cycle
+from cycle.case.moves import moved
 from cycle.flow import shocks
 
 CASES = Path(__file__).parents[1] / "cases"
@@ -28,10 +29,10 @@ GAMMA_CASE: dict[str, Any] = {
 
 
 def case_with(**tables: Any) -> cycle.Case:
-    """The case above with tables changed key by key."""
+    """The case above with another inlet, or other tables changed key by key."""
     document = {name: GAMMA_CASE[name] for name in GAMMA_CASE}
     for name, table in tables.items():
-        document[name] = {**GAMMA_CASE.get(name, {}), **table}
+        document[name] = table if name == "inlet" else {**GAMMA_CASE.get(name, {}), **table}
     return cycle.loads(tomlkit.dumps(document), "invented")
 
 
@@ -83,3 +84,85 @@ def test_the_stream_is_axial_at_the_burner_whatever_the_cowl(inlet: dict[str, An
 def test_shipped_conical_inlet_still_holds_its_shock() -> None:
     walk = cycle.solve(cycle.load(CASES / "lighthouse.toml"))
     assert walk.status == "solved" and walk.mode == "ramjet-supercritical"
+
+
+# where a lip can stand
+
+THREE = {"ramp": [{"angle": "6 deg", "length": 0.9}, {"angle": "7 deg", "length": 0.9}, {"angle": "5 deg"}], "lip_x": 2.0, "lip_y": 0.6}
+TWO = {"ramp": [{"angle": "6 deg", "length": 0.9}, {"angle": "7 deg"}], "lip_x": 1.8, "lip_y": 0.52}
+CONE = {"cone": {"half_angle": "14 deg"}, "lip_x": 0.9, "lip_y": 0.35}
+CIRCLE = math.pi * 0.35**2
+
+
+def test_a_lip_under_an_earlier_ramp_is_refused() -> None:
+    """Upstream of the third corner and under the second ramp, but above the line of the third: it would capture less than nothing."""
+    walk = cycle.solve(case_with(inlet={**THREE, "lip_x": 1.2, "lip_y": 0.10}))
+    assert walk.status == "lip-blocked"
+
+
+def test_random_lips_capture_between_nothing_and_all() -> None:
+    rng, n = np.random.default_rng(11), 3000
+    changes = {"inlet.lip_x": rng.uniform(0.0, 4.0, n), "inlet.lip_y": rng.uniform(1e-3, 1.5, n), "flight.mach": rng.uniform(3.0, 10.0, n)}
+    walk = cycle.solve(case_with(inlet=THREE), changes)
+    captured, found = walk.performance.captured_mass_fraction, walk.station["1"]
+    there = np.isfinite(found.mach)
+    fraction = np.where(there, walk.station["0"].area / 0.35, np.nan)[there]
+    assert there.sum() > 1000 and set(walk.status) == {"solved", "choked", "lip-blocked", "waves-merge"}
+    assert ((fraction > 0.0) & (fraction <= 1.0 + 1e-12)).all() and (found.mass_flow[there] > 0.0).all()
+    beyond = _limit(walk, "shock_on_lip").margin[there] < 0.0
+    assert beyond.sum() > 100 and np.allclose(fraction[beyond], 1.0, rtol=0.0, atol=1e-12)
+    assert np.isfinite(captured[walk.status == "solved"]).all()
+
+
+def _limit(walk: cycle.Walk, key: str) -> Any:
+    return next(row for row in walk.limits if row.key == key)
+
+
+@pytest.mark.parametrize(("inlet", "area"), [(TWO, 0.35), (CONE, CIRCLE)])
+def test_flight_above_shock_on_lip_is_flagged_and_spills_nothing(inlet: dict[str, Any], area: float) -> None:
+    case = case_with(inlet=inlet, engine={"capture_area": area})
+    row = _limit(cycle.solve(case), "shock_on_lip")
+    assert row.state in ("ok", "near", "over") and row.actual == pytest.approx(6.0, rel=1e-12)
+    below, above = (cycle.solve(case.replace({"flight.mach": factor * row.allowed})) for factor in (0.98, 1.02))
+    assert (_limit(below, "shock_on_lip").state, _limit(above, "shock_on_lip").state) == ("near", "over")
+    flows = [walk.station["0"].area / area for walk in (below, above)]
+    assert flows[0] < 1.0 - 1e-3 and flows[1] == pytest.approx(1.0, abs=1e-12)
+    first = next(iter(above.processes)).figures.wave_angle_1
+    assert first < math.atan2(inlet["lip_y"], inlet["lip_x"])
+
+
+def test_without_a_lip_shock_on_lip_is_not_assessed() -> None:
+    row = _limit(cycle.solve(case_with()), "shock_on_lip")
+    assert row.state == "not assessed" and row.restore == "needs the inlet's lip"
+
+
+@pytest.mark.parametrize("name", ["breakwater", "lighthouse", "tidegate"])
+def test_shipped_cases_fly_below_shock_on_lip(name: str) -> None:
+    assert _limit(cycle.solve(cycle.load(CASES / f"{name}.toml")), "shock_on_lip").margin > 0.0
+
+
+def test_capture_area_that_is_not_the_lip_of_a_cone_is_refused() -> None:
+    assert refusal(inlet=CONE).startswith(
+        "invented: engine.capture_area: not the circle of the cone's lip: given 0.35 m2 with inlet.lip_y = 0.35 m"
+    )
+    case = case_with(inlet=CONE, engine={"capture_area": CIRCLE})
+    with pytest.raises(cycle.CaseError, match="at every point"):
+        cycle.solve(case, {"inlet.lip_y": np.array([0.35, 0.36])})
+    both = cycle.solve(case, {"inlet.lip_y": np.array([0.35, 0.36]), "engine.capture_area": math.pi * np.array([0.35, 0.36]) ** 2})
+    assert both.shape == (2,)
+
+
+def test_capture_area_of_a_cone_that_states_none_is_its_lip() -> None:
+    document = {name: table for name, table in GAMMA_CASE.items() if name != "engine"} | {"inlet": CONE}
+    case = cycle.loads(tomlkit.dumps(document), "invented")
+    assert case.numbers["engine.capture_area"] == pytest.approx(CIRCLE, rel=1e-15)
+    walk = cycle.solve(case, {"inlet.lip_y": np.array([0.35, 0.4])})
+    areas = walk.station["0"].area / walk.performance.captured_mass_fraction
+    assert areas == pytest.approx(math.pi * np.array([0.35, 0.4]) ** 2, rel=1e-12)
+
+
+def test_a_cone_keeps_its_shape_when_its_capture_area_moves() -> None:
+    case = case_with(inlet=CONE, engine={"capture_area": CIRCLE})
+    larger = moved(case, {"engine.capture_area": 4.0 * CIRCLE})
+    assert larger == pytest.approx({"engine.capture_area": 4.0 * CIRCLE, "inlet.lip_x": 1.8, "inlet.lip_y": 0.7})
+    assert moved(case, {"inlet.lip_y": 0.7}) == pytest.approx({"engine.capture_area": 4.0 * CIRCLE, "inlet.lip_y": 0.7})
