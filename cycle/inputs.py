@@ -19,6 +19,7 @@ _WITH_LIP = (*_FLIGHT, ("inlet.compression", ("ramp", "cone")))
 # a flight has no entry station, a rig that starts at the burner no isolator
 _ISOLATED = (("entry.station", ("", "2")),)
 _ISOLATOR = (*_ISOLATED, ("isolator.size", ("length",)))
+_RECTANGLE = (*_ISOLATOR, ("isolator.shape", ("rectangular",)))
 _FREEZE = (("nozzle.chemistry", ("frozen-after",)),)
 _TURN = 0.7853981633974483
 """45 deg: no ramp turns further."""
@@ -134,13 +135,22 @@ INPUTS: tuple[Input, ...] = (
     # isolator
     Input("isolator.length", "Li", "isolator length", "Of the constant-area duct ahead of the burner.", unit="length", above=0.0,
           upper=100.0, step=0.01, when=_ISOLATED),
-    Input("isolator.hydraulic_diameter", "Dh", "hydraulic diameter", "Four times the area over the perimeter.", unit="length", above=0.0,
-          upper=10.0, step=0.001, when=_ISOLATED),
+    Input("isolator.shape", "", "isolator shape", "Cross-section of the isolator; its area is that of the stream at 2.", kind="choice",
+          unit="none", choices=("circular", "rectangular"), default="circular", when=_ISOLATOR),
+    Input("isolator.width", "wi", "isolator width", "Of a rectangular isolator; the height follows from the area at 2.", unit="length",
+          above=0.0, upper=100.0, step=0.01, when=_RECTANGLE),
+    Input("isolator.height", "Hi", "isolator height", "Of a rectangular isolator; the width follows from the area at 2.", unit="length",
+          above=0.0, upper=100.0, step=0.001, when=_RECTANGLE),
+    Input("isolator.hydraulic_diameter", "Dh", "hydraulic diameter",
+          "Held against shape and area of station 2; gives the sides of a rectangle that states none.", unit="length", above=0.0,
+          upper=10.0, step=0.001, when=_ISOLATOR),
     Input("isolator.momentum_thickness", "theta", "momentum thickness",
           "Of the boundary layer at isolator entry; the length of a shock train needs it.",
           unit="length", above=0.0, upper=1.0, step=1e-4, when=_ISOLATOR, source="Waltrup and Billig (1973)"),
-    Input("isolator.shape", "", "isolator shape", "Cross-section of the isolator.", kind="choice", unit="none",
-          choices=("circular", "rectangular"), default="circular", when=_ISOLATOR),
+    Input("isolator.boundary_layer_length", "lbl", "boundary-layer run", "Turbulent, along an adiabatic flat plate ahead of the isolator.",
+          unit="length", above=0.0, upper=1e3, step=0.1, when=_ISOLATOR, source="Schlichting; Eckert (1955); from memory"),
+    Input("isolator.friction_coefficient", "Cfi", "isolator friction coefficient", "Fanning factor of the isolator's wall.", lower=0.0,
+          upper=0.05, default=0.0, step=5e-4, when=_ISOLATOR),
     # fuel
     Input("fuel.name", "", "fuel", "A fuel of the built-in list.", kind="choice", unit="none",
           choices=("hydrogen", "methane", "ethylene", "propane", "kerosene", "jp-10")),
@@ -314,8 +324,13 @@ GROUPS: tuple[Group, ...] = (
           default="none", when=_GEOMETRY),
     Group("inlet.throat", "inlet throat", tuple(Member(k, (f"inlet.{k}",)) for k in ("internal_contraction", "throat_area")),
           required=False, default="free", when=_GEOMETRY),
-    Group("isolator.size", "size of the isolator", (Member("length", ("isolator.length", "isolator.hydraulic_diameter")),),
-          required=False, default="none", when=_ISOLATED),
+    Group("isolator.size", "size of the isolator", (Member("length", ("isolator.length",)),), required=False, default="none",
+          when=_ISOLATED),
+    Group("isolator.side", "side of the rectangular isolator", tuple(Member(k, (f"isolator.{k}",)) for k in ("width", "height")),
+          required=False, default="of-diameter", when=_RECTANGLE),
+    Group("isolator.boundary_layer", "boundary layer at isolator entry",
+          tuple(Member(k, (f"isolator.{k}",)) for k in ("momentum_thickness", "boundary_layer_length")), required=False, default="none",
+          when=_ISOLATOR),
     Group("fuel.identity", "fuel",
           (Member("name", ("fuel.name",)),
            Member("formula", ("fuel.formula",), also=("fuel.heating_value",)),

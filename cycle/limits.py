@@ -11,9 +11,9 @@ from dataclasses import dataclass, replace
 import numpy as np
 
 from cycle.account import injection_pressure, spread
-from cycle.arrays import Array, Codes
+from cycle.arrays import Array, Codes, Flags
 from cycle.flow import gas_shocks, roots
-from cycle.flowpath import assembly, combustor, inlet_limits
+from cycle.flowpath import assembly, combustor, inlet_limits, isolator_limits
 from cycle.flowpath.inlet_geometry import Inlet
 from cycle.flowpath.inlet_limits import Bound
 from cycle.flowpath.setting import Setting
@@ -24,9 +24,6 @@ from cycle.walk import March
 NEAR = 0.1
 """Margin below which a limit is called near; common practice."""
 
-_ON_LIP = 1e-6
-"""Relative distance of the flight Mach number from that of shock on lip within which the shock is on the lip."""
-
 DISSOCIATION = 2200.0
 """Temperature above which a gas without dissociation is out of its range, K; common practice."""
 
@@ -35,7 +32,7 @@ DISSOCIATION = 2200.0
 class Limit:
     """One limit of N points: actual and allowed figure (N,), margin (N,), NaN where not assessed.
 
-    upper: whether `allowed` is an upper limit. restore: what would give margin back; input: the case key to go to.
+    upper: whether `allowed` is an upper limit, one for all or (N,). restore: what would give margin back; input: the case key to go to.
     """
 
     key: str
@@ -43,7 +40,7 @@ class Limit:
     actual: Array
     allowed: Array
     unit: str
-    upper: bool
+    upper: bool | Flags
     restore: str
     input: str
     missing: str = ""
@@ -53,7 +50,7 @@ class Limit:
         """(allowed - actual)/allowed, sign reversed for a lower limit."""
         with np.errstate(all="ignore"):
             room = (self.allowed - self.actual) / np.abs(self.allowed)
-        return room if self.upper else -room
+        return np.where(self.upper, room, -room)
 
 
 def state_of(margin: float) -> str:
@@ -77,6 +74,7 @@ def limits(walked: March, largest_heat: float | None = None) -> tuple[Limit, ...
         *_nozzle(walked),
         *_inlet_geometry(walked),
         *_modes(walked),
+        *_isolator(walked),
     )
 
 
@@ -271,18 +269,11 @@ def _inlet_geometry(walked: March) -> tuple[Limit, ...]:
 
 
 def _shock_on_lip(walked: March, setting: Setting, inlet: Inlet) -> list[Bound]:
-    """Flight Mach number against the one at which the first external shock meets the lip; setting, inlet: of the points in flight."""
+    """Whether the first external shock meets the lip or enters the cowl; setting, inlet: of the points in flight."""
     if setting.choices.get("inlet.lip") != "lip":
         return []
-    cone, before = setting.choices["inlet.compression"] == "cone", _whole_capture(walked)
-    angle, search = ("cone.half_angle", inlet_limits.cone_lip_mach) if cone else ("ramp.1.angle", inlet_limits.ramp_lip_mach)
-    allowed = search(before, setting[f"inlet.{angle}"], setting["inlet.lip_x"], setting["inlet.lip_y"])
-    # a lip that was placed on the shock is on it to the digits of its place
-    on_it = np.abs(before.mach - allowed) <= _ON_LIP * allowed
-    # behind where shocks cross they are steeper than the first: it has no lip to meet
-    crossed = ~on_it & (before.mach > allowed) & ~inlet.inside[0]
-    allowed = np.where(on_it, before.mach, np.where(crossed, np.nan, allowed))
-    return [Bound("shock_on_lip", "", "ratio", before.mach, allowed)]
+    angle = "inlet.cone.half_angle" if setting.choices["inlet.compression"] == "cone" else "inlet.ramp.1.angle"
+    return [inlet_limits.shock_on_lip(_whole_capture(walked), inlet, setting[angle], setting["inlet.lip_x"], setting["inlet.lip_y"])]
 
 
 def _worst(walked: March, index: Codes, own: list[Bound], label: str, restore: str, goto: str) -> Limit:
@@ -321,6 +312,17 @@ def _modes(walked: March) -> tuple[Limit, ...]:
     length, longer = _of(walked, "isolator", "isolator_margin"), "a longer isolator or less heat"
     rows.append(_share(walked, "isolator_length", "isolator length, shock train", length, longer, "isolator.length", why))
     return tuple(rows)
+
+
+def _isolator(walked: March) -> tuple[Limit, ...]:
+    """The isolator's stated size against its area, and where its shock train lies in the data of its correlation."""
+    setting, two = walked.setting, walked.stations().get("2")
+    if two is None or not setting.has("isolator.length"):
+        return ()
+    names = ("train_length", "train_mach", "momentum_reynolds")
+    told = {name: _of(walked, "isolator", name) for name in names}
+    rows = isolator_limits.bounds(setting, spread(walked, two.index, two.stream.area), *(told[name] for name in names))
+    return tuple(Limit(r.key, r.label, r.actual, r.allowed, "ratio", r.upper, r.restore, r.input, r.missing) for r in rows)
 
 
 _SCAN = 25

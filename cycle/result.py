@@ -14,7 +14,7 @@ from cycle import limits as margins
 from cycle.account import spread, usable
 from cycle.arrays import Array, ArrayLike
 from cycle.figures import Audit, Figures, Limit, Process, Residual, Row, Station, shaped
-from cycle.flowpath import assembly, combustor
+from cycle.flowpath import assembly, combustor, isolator
 from cycle.flowpath.setting import setting, why_fixed
 from cycle.flowpath.stream import SOLVED, STATUS_NAMES
 from cycle.gas.state import State
@@ -186,7 +186,11 @@ class Walk:
         if self._has_potential:
             sources["thrust_potential_change"] = lambda: self._potentials[position] - self._potentials[position - 1]
         own: dict[str, Callable[[], Array]] = {k: partial(spread, self.march, record.index, v) for k, v in record.process.figures.items()}
-        if record.process.solves_momentum and self.march.setting.choices["combustor.process"] == "constant-area":
+        if (
+            "fuel_air_ratio" in own
+            and record.process.solves_momentum
+            and self.march.setting.choices["combustor.process"] == "constant-area"
+        ):
             own["choking_margin"] = on(lambda: self._choking_margin(position))
         booking = record.process.booking
         if booking is not None:
@@ -281,7 +285,11 @@ class Walk:
         if self.shape != () or walked.setting.choices["combustor.process"] != "duct" or record is None or not record.index.size:
             return {}
         unit = self._unit_of_heat()
-        found = assembly.largest_ratios(record.stream, walked.setting, _SEARCH[margins.heat_key(walked.setting)] * unit)
+        entering = combustor.burner_gas(record.stream, walked.setting)
+        worn = isolator.worn(entering, walked.setting)
+        found = assembly.largest_ratios(
+            entering if worn is None else worn.stream, walked.setting, _SEARCH[margins.heat_key(walked.setting)] * unit
+        )
         return {name: ratio / unit for name, ratio in found.items()}
 
     def _unit_of_heat(self) -> float:
@@ -303,7 +311,7 @@ class Walk:
         words = row.missing or "no value at this station" if unassessed else row.restore
         return Limit(
             row.key, row.label, shaped(row.actual, self.shape), shaped(row.allowed, self.shape), shaped(margin, self.shape), state,
-            row.unit, row.upper, words, row.input,
+            row.unit, bool(np.all(row.upper)), words, row.input,
         )  # fmt: skip
 
     def emitted(self) -> auditing.Emitted:

@@ -12,7 +12,7 @@ from functools import partial
 import numpy as np
 
 from cycle.arrays import Array, Codes
-from cycle.flowpath import assembly, combustor, flight, inlet, nozzle
+from cycle.flowpath import assembly, combustor, flight, inlet, isolator, nozzle
 from cycle.flowpath.setting import Setting
 from cycle.flowpath.stream import SOLVED, Process, Step, Steps, Stream
 from cycle.gas.base import Gas
@@ -79,11 +79,6 @@ class March:
 Part = Callable[[Stream, Setting], Step | Steps | None]
 
 
-def _as_station_3(stream: Stream, setting: Setting) -> Step:
-    """Without an isolator the burner entry is the inlet throat."""
-    return Step(stream, Process("isolator", "2", "3"), np.zeros(setting.size, np.int64))
-
-
 def _burn(stream: Stream, setting: Setting) -> Step:
     return combustor.burner(combustor.burner_gas(stream, setting), setting)
 
@@ -122,11 +117,11 @@ def _entry(setting: Setting) -> list[tuple[str, Part]]:
 def _to_burner_exit(setting: Setting) -> list[tuple[str, Part]]:
     """From station 2 (or a rig's 3) to 4."""
     if setting.choices["combustor.process"] == "duct":
-        return [("gas change", _to_combustion("2")), ("duct", assembly.duct)]
+        return [("gas change", _to_combustion("2")), ("duct", isolator.ahead_of(assembly.duct))]
     at_3 = setting.choices["start"] == "entry" and setting.choices["entry.station"] == "3"
-    diffuser = assembly.diffuser if setting.has("nozzle.throat_area") else _as_station_3
-    isolator: list[tuple[str, Part]] = [] if at_3 else [("isolator", diffuser)]
-    return [*isolator, ("gas change", _to_combustion("3")), ("burner", _burn)]
+    diffuser = assembly.diffuser if setting.has("nozzle.throat_area") else isolator.straight
+    ahead: list[tuple[str, Part]] = [] if at_3 else [("isolator", diffuser)]
+    return [*ahead, ("gas change", _to_combustion("3")), ("burner", _burn)]
 
 
 def _parts(setting: Setting) -> list[tuple[str, Part]]:

@@ -118,7 +118,13 @@ def _inlet(rng: Rng, flight: float) -> Case:
 
 def _isolator(rng: Rng) -> Case:
     own = {"length": between(rng, 0.2, 2.0), "hydraulic_diameter": between(rng, 0.03, 0.2)}
-    return own | pick(rng, ({}, {"momentum_thickness": between(rng, 1e-4, 2e-3), "shape": pick(rng, ("circular", "rectangular"))}))
+    own |= pick(rng, ({}, {"momentum_thickness": between(rng, 1e-4, 2e-3), "shape": pick(rng, ("circular", "rectangular"))}))
+    apart = np.random.default_rng(int(1e9 * own["length"]))  # leaves what is drawn behind it as it was
+    if own.get("shape") == "rectangular":
+        own |= pick(apart, ({}, {"width": between(apart, 0.1, 1.0)}, {"height": between(apart, 0.03, 0.2)}))
+    if "momentum_thickness" not in own:
+        own |= pick(apart, ({}, {"boundary_layer_length": between(apart, 0.3, 5.0)}))
+    return own | pick(apart, ({}, {}, {"friction_coefficient": between(apart, 5e-4, 6e-3)}))
 
 
 def _heat(rng: Rng, most: float, total: float) -> Case:

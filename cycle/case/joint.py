@@ -125,6 +125,17 @@ def _cone_lip(facts: Facts) -> Iterator[Fault]:
         yield from lip_circle(facts.choices, radius, area)
 
 
+def _isolator(facts: Facts) -> Iterator[Fault]:
+    """A rectangle has two sides: the area at station 2 gives one of them. A diffuser's shock has no friction."""
+    sides = ("isolator.width", "isolator.height", "isolator.hydraulic_diameter")
+    if facts.choices.get("isolator.shape") == "rectangular" and not any(key in facts.values for key in sides):
+        yield Fault("", "isolator.shape", "a rectangle has one side stated", "none", "isolator.width or isolator.height")
+    friction = facts.number("isolator.friction_coefficient")
+    if facts.choices.get("nozzle.throat_size") == "throat_area" and friction is not None and friction > 0.0:
+        allowed = "0 with nozzle.throat_area"
+        yield Fault("", "isolator.friction_coefficient", "a diffuser with a shock in it has no friction here", f"{friction:.6g}", allowed)
+
+
 def _perimeter(facts: Facts) -> Iterator[Fault]:
     stated = [key for key in ("combustor.section", "combustor.width") if key in facts.values]
     if stated and any("perimeter" in row for row in facts.rows("combustor.area")):
@@ -171,5 +182,7 @@ def corridor(facts: Facts) -> Iterator[Fault]:
         yield Fault("", "limits.dynamic_pressure_low", "the corridor is upside down", given, "at most limits.dynamic_pressure_high")
 
 
-JOINT_RULES = (_fractions, _throat, _given_throat, _freezing, _mode, _lip, _cone_lip, _rows, _perimeter, _fuel, _formula, corridor)
+JOINT_RULES = (
+    _fractions, _throat, _given_throat, _freezing, _mode, _lip, _cone_lip, _isolator, _rows, _perimeter, _fuel, _formula, corridor,
+)  # fmt: skip
 """Rules that join several values; each takes Facts and yields faults."""
