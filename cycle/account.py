@@ -23,7 +23,7 @@ from cycle.gas.equilibrium import EquilibriumGas
 from cycle.gas.frozen import FrozenGas
 from cycle.gas.join import Request, apply_together, solve_together
 from cycle.gas.state import State
-from cycle.walk import March, Record, case_gas
+from cycle.walk import RELEASED, March, Record, case_gas
 
 
 @dataclass(frozen=True, slots=True)
@@ -72,6 +72,11 @@ def _along(x: Array, values: Array, at: Array) -> Array:
 def usable(state: State, values: Array) -> Array:
     """Values, NaN where the state they come from is out of range or not converged."""
     return np.where(state.good, values, np.nan)
+
+
+def rest(stream: Stream) -> State:
+    """Stagnation state of a stream, (N,)."""
+    return states.rest(stream.gas, stream.total_enthalpy, stream.state.entropy)
 
 
 def totals(march: March, names: tuple[str, ...]) -> dict[str, State]:
@@ -269,7 +274,8 @@ def losses(march: March, total: Mapping[str, State], potential: list[Array]) -> 
     """Losses against the ideal engine, N: ideal thrust, what each process took in order, thrust. For solved points.
 
     I_k is the thrust with the real processes up to k and the rest ideal: complete burning at rest without loss of total
-    pressure, then isentropic expansion to p0 in the case's gas. Riggins (1997).
+    pressure, then isentropic expansion to p0 in the case's gas. Riggins (1997). A composition that the inlet held rests at less
+    pressure than one in equilibrium: its release is a row of its own, a gain.
     """
     points, stations = march.solved, march.stations()
     if not points.size or not potential or "10" not in stations or not one_pair(march):
@@ -279,7 +285,13 @@ def losses(march: March, total: Mapping[str, State], potential: list[Array]) -> 
     free = march.records[0].taken(points).stream
     p0 = free.state.pressure
     at_rest = {n: total[n].take(np.searchsorted(stations[n].index, points)).pressure for n in ("0", "2", "3")}
-    cases = [("0", one), ("2", one), ("3", one), ("3", own)]
+    names, labels = ["0", "2", "3"], [("inlet", "inlet"), ("isolator", "isolator")]
+    released = march.named(RELEASED)
+    if released is not None:
+        at_rest[RELEASED], place = rest(released.taken(points).stream).pressure, names.index(released.process.end)
+        names.insert(place + 1, RELEASED)
+        labels.insert(place, ("composition_released", RELEASED))
+    cases = [*((n, one) for n in names), (names[-1], own)]
     mixtures = [_complete(march, burnt, points) for _, burnt in cases]
     hot = solve_together("hp", [Request(g, (h, at_rest[n])) for (n, _), (g, h, _) in zip(cases, mixtures, strict=True)])
     cold = solve_together("sp", [Request(g, (s.entropy, p0)) for s, (g, _, _) in zip(hot, mixtures, strict=True)])
@@ -290,10 +302,10 @@ def losses(march: March, total: Mapping[str, State], potential: list[Array]) -> 
         ]
     position = next(i for i, r in enumerate(march.records) if r.process.name == "burner")
     steps = [*ideal, potential[position][points], thrust(march)[points]]
-    labels = (
-        ("inlet", "inlet"), ("isolator", "isolator"), ("incomplete_burning", "incomplete burning"),
-        ("burner", "heat at speed, mixing, friction, wall heat"), ("nozzle", "nozzle and exit"),
-    )  # fmt: skip
+    labels += [
+        ("incomplete_burning", "incomplete burning"), ("burner", "heat at speed, mixing, friction, wall heat"),
+        ("nozzle", "nozzle and exit"),
+    ]  # fmt: skip
     lost = [Row(k, label, spread(march, points, a - b)) for (k, label), a, b in zip(labels, steps[:-1], steps[1:], strict=True)]
     return (
         Row("ideal", "ideal thrust", spread(march, points, steps[0])),

@@ -195,8 +195,8 @@ def _potential(key: str, label: str, meaning: str) -> Output:
 _CHANGE = "Change of thrust potential, Phi behind less Phi ahead of it"
 POTENTIALS: tuple[Output, ...] = (
     *(_potential(name.replace(" ", "_"), name, f"{_CHANGE}: {name}.") for name in (
-        "inlet", "external compression", "internal compression", "isolator", "gas change", "frozen chemistry", "throat", "nozzle",
-        "external expansion")),
+        "inlet", "external compression", "internal compression", "isolator", "gas change", "composition released", "frozen chemistry",
+        "throat", "nozzle", "external expansion")),
     _potential("burner", "burner gain", f"{_CHANGE}: what the heat gives."),
     _potential("divergence", "divergence", "Momentum that leaves sideways."),
     _potential("pressure_mismatch", "under- or over-expansion", "Thrust less the thrust potential of the exit and the divergence."),
@@ -213,6 +213,9 @@ LOSSES: tuple[Output, ...] = (
     _loss("ideal", "ideal thrust", "No losses in the inlet, complete burning at rest, isentropic expansion to ambient pressure."),
     _loss("inlet", "inlet", f"{_FURTHER} by the total pressure that the inlet takes."),
     _loss("isolator", "isolator", f"{_FURTHER} by the total pressure that the shock train or terminal shock takes."),
+    _loss("composition_released", "composition released",
+          f"{_FURTHER} where the composition held by the inlet goes to equilibrium ahead of the burner. Negative: a gas whose "
+          "composition is held rests at less total pressure than the same gas in equilibrium: part of the inlet's loss is given back."),
     _loss("incomplete_burning", "incomplete burning", f"{_FURTHER} by fuel that stays unburnt."),
     _loss("burner", "heat at speed, mixing, friction, wall heat", f"{_FURTHER} by burning in motion, injection, friction, wall heat."),
     _loss("nozzle", "nozzle and exit", f"{_FURTHER} by the nozzle, frozen chemistry and an exit off ambient pressure."),

@@ -12,14 +12,14 @@ from cycle import account, emit
 from cycle import audit as auditing
 from cycle import limits as margins
 from cycle.account import spread, usable
-from cycle.arrays import Array, ArrayLike
+from cycle.arrays import Array, ArrayLike, Codes
 from cycle.figures import Audit, Figures, Limit, Process, Residual, Row, Station, shaped
 from cycle.flowpath import assembly, combustor, isolator
 from cycle.flowpath.setting import setting, why_fixed
 from cycle.flowpath.stream import SOLVED, STATUS_NAMES
 from cycle.gas.state import State
 from cycle.quantities import INPUT, OUTPUTS, RESTORES, STATUSES
-from cycle.walk import March, Record, march, modes
+from cycle.walk import RELEASED, March, Record, march, modes
 from cycle.why_not import no_figure, no_rows
 
 if TYPE_CHECKING:
@@ -172,9 +172,7 @@ class Walk:
             return lambda: spread(self.march, record.index, values())
 
         def total_ratio() -> Array:
-            first, last = self._totals[names[0]], self._totals[names[1]]
-            first = first.take(np.searchsorted(self._records[names[0]].index, record.index))
-            last = last.take(np.searchsorted(self._records[names[1]].index, record.index))
+            first, last = self._total(position - 1, names[0], record.index), self._total(position, names[1], record.index)
             return usable(first, usable(last, last.pressure / first.pressure))
 
         sources = {
@@ -196,6 +194,13 @@ class Walk:
         if booking is not None:
             own |= {k: partial(spread, self.march, record.index, getattr(booking, k)) for k in booking.__slots__}
         return sources | own
+
+    def _total(self, position: int, station: str, points: Codes) -> State:
+        """Stagnation state of `points` at a station, behind the release of the composition where that is the process at `position`."""
+        record = self.march.records[position]
+        if record.process.name == RELEASED:
+            return account.rest(record.taken(points).stream)
+        return self._totals[station].take(np.searchsorted(self._records[station].index, points))
 
     def _choking_margin(self, position: int) -> Array:
         """Room left before the burner chokes; the sonic point behind it is dear, so the walk itself does without."""

@@ -20,6 +20,9 @@ from cycle.gas.frozen import FrozenGas
 from cycle.gas.state import scatter
 from cycle.quantities import MODES
 
+RELEASED = "composition released"
+"""Process in which a composition that the inlet held goes to equilibrium ahead of the burner."""
+
 
 @dataclass(frozen=True, slots=True)
 class Record:
@@ -96,6 +99,16 @@ def _to_expansion(stream: Stream, setting: Setting) -> Step | None:
     return combustor.gas_change(stream, combustor.expansion_cp(setting), "4")
 
 
+def _release(station: str) -> Part:
+    def release(stream: Stream, setting: Setting) -> Step | None:
+        released = stream if setting.constant_gamma else combustor.burner_gas(stream, setting)
+        if released is stream:
+            return None
+        return Step(released, Process(RELEASED, station, station), np.zeros(setting.size, np.int64))
+
+    return release
+
+
 def _freeze(station: str) -> Part:
     def freeze(stream: Stream, setting: Setting) -> Step | None:
         frozen = nozzle.nozzle_gas(stream, setting, station)
@@ -117,11 +130,11 @@ def _entry(setting: Setting) -> list[tuple[str, Part]]:
 def _to_burner_exit(setting: Setting) -> list[tuple[str, Part]]:
     """From station 2 (or a rig's 3) to 4."""
     if setting.choices["combustor.process"] == "duct":
-        return [("gas change", _to_combustion("2")), ("duct", isolator.ahead_of(assembly.duct))]
+        return [("gas change", _to_combustion("2")), (RELEASED, _release("2")), ("duct", isolator.ahead_of(assembly.duct))]
     at_3 = setting.choices["start"] == "entry" and setting.choices["entry.station"] == "3"
     diffuser = assembly.diffuser if setting.has("nozzle.throat_area") else isolator.straight
     ahead: list[tuple[str, Part]] = [] if at_3 else [("isolator", diffuser)]
-    return [*ahead, ("gas change", _to_combustion("3")), ("burner", _burn)]
+    return [*ahead, ("gas change", _to_combustion("3")), (RELEASED, _release("3")), ("burner", _burn)]
 
 
 def _parts(setting: Setting) -> list[tuple[str, Part]]:
