@@ -17,13 +17,15 @@ from cycle.constants import STANDARD_GRAVITY
 from cycle.flow import states
 from cycle.flowpath import assembly, combustor
 from cycle.flowpath.stream import Stream
+from cycle.flowpath.viscous import VISCOUS
 from cycle.gas.base import Gas
 from cycle.gas.constant import ConstantGas
 from cycle.gas.equilibrium import EquilibriumGas
 from cycle.gas.frozen import FrozenGas
 from cycle.gas.join import Request, apply_together, solve_together
 from cycle.gas.state import State
-from cycle.walk import RELEASED, March, Record, case_gas
+from cycle.resting import before_burning
+from cycle.walk import March, Record, case_gas
 
 
 @dataclass(frozen=True, slots=True)
@@ -72,11 +74,6 @@ def _along(x: Array, values: Array, at: Array) -> Array:
 def usable(state: State, values: Array) -> Array:
     """Values, NaN where the state they come from is out of range or not converged."""
     return np.where(state.good, values, np.nan)
-
-
-def rest(stream: Stream) -> State:
-    """Stagnation state of a stream, (N,)."""
-    return states.rest(stream.gas, stream.total_enthalpy, stream.state.entropy)
 
 
 def totals(march: March, names: tuple[str, ...]) -> dict[str, State]:
@@ -189,7 +186,7 @@ _NEEDS_FUEL = (
 
 
 def _potential_gas(record: Record, march: March) -> Gas:
-    upstream = record.process.name in ("flight", "inlet", "external compression", "internal compression", "isolator", "entry")
+    upstream = record.process.name in ("flight", "inlet", "external compression", "internal compression", VISCOUS, "isolator", "entry")
     return case_gas(record.stream.gas, march.setting) if upstream else record.stream.gas
 
 
@@ -284,16 +281,10 @@ def losses(march: March, total: Mapping[str, State], potential: list[Array]) -> 
     one, own = np.ones(points.size), setting["combustor.burnt_fraction"]
     free = march.records[0].taken(points).stream
     p0 = free.state.pressure
-    at_rest = {n: total[n].take(np.searchsorted(stations[n].index, points)).pressure for n in ("0", "2", "3")}
-    names, labels = ["0", "2", "3"], [("inlet", "inlet"), ("isolator", "isolator")]
-    released = march.named(RELEASED)
-    if released is not None:
-        at_rest[RELEASED], place = rest(released.taken(points).stream).pressure, names.index(released.process.end)
-        names.insert(place + 1, RELEASED)
-        labels.insert(place, ("composition_released", RELEASED))
-    cases = [*((n, one) for n in names), (names[-1], own)]
+    labels, at_rest = before_burning(march, total, points)
+    cases = [*((p, one) for p in at_rest), (at_rest[-1], own)]
     mixtures = [_complete(march, burnt, points) for _, burnt in cases]
-    hot = solve_together("hp", [Request(g, (h, at_rest[n])) for (n, _), (g, h, _) in zip(cases, mixtures, strict=True)])
+    hot = solve_together("hp", [Request(g, (h, p)) for (p, _), (g, h, _) in zip(cases, mixtures, strict=True)])
     cold = solve_together("sp", [Request(g, (s.entropy, p0)) for s, (g, _, _) in zip(hot, mixtures, strict=True)])
     with np.errstate(invalid="ignore"):
         ideal = [

@@ -39,6 +39,8 @@ PROCESS_FIGURES: tuple[Output, ...] = (
     _process("additive_drag", "additive drag", "Axial pressure force on the captured streamtube ahead of the lip.", "force"),
     _process("separated_pressure", "pressure at burner entry", "Wall pressure p3 of the separated zone; p2 where the flow is attached.",
              "pressure"),
+    _process("viscous_force", "friction of the inlet", "Stream thrust that the viscous loss at the inlet throat takes.", "force",
+             source="momentum at constant area"),
     _process("isolator_height", "isolator height", "Height of the isolator, or its diameter: what the length of a shock train scales with.",
              "length", source="area of station 2 and the stated shape"),
     _process("momentum_thickness", "momentum thickness", "Of the boundary layer at isolator entry.", "length",
@@ -156,6 +158,9 @@ LIMITS: tuple[Output, ...] = (
     _limit("shock_on_lip", "shock on lip, flight Mach number",
            "Flight Mach number against the one at which the first external shock meets the lip; above it the shock enters the cowl, "
            "which is not followed.", source="NACA Report 1135 (1953); Taylor and Maccoll (1933) for a cone"),
+    _limit("viscous_data", "viscous correlation, M2/M0",
+           "Mach number behind the compression over that of flight against what the correlation is drawn for: a limit of the data.",
+           "distance from the nearer end over that end", "Waltrup, Billig and Stockbridge (1982), from memory"),
     _limit("duct_separation", "attached burner flow, peak pressure", "Peak pressure of the attached march as a share of what separates.",
            source=_KORKEGI),
     _limit("unstart", "unstart, impulse at burner entry",
@@ -195,8 +200,8 @@ def _potential(key: str, label: str, meaning: str) -> Output:
 _CHANGE = "Change of thrust potential, Phi behind less Phi ahead of it"
 POTENTIALS: tuple[Output, ...] = (
     *(_potential(name.replace(" ", "_"), name, f"{_CHANGE}: {name}.") for name in (
-        "inlet", "external compression", "internal compression", "isolator", "gas change", "composition released", "frozen chemistry",
-        "throat", "nozzle", "external expansion")),
+        "inlet", "external compression", "internal compression", "viscous loss", "isolator", "gas change", "composition released",
+        "frozen chemistry", "throat", "nozzle", "external expansion")),
     _potential("burner", "burner gain", f"{_CHANGE}: what the heat gives."),
     _potential("divergence", "divergence", "Momentum that leaves sideways."),
     _potential("pressure_mismatch", "under- or over-expansion", "Thrust less the thrust potential of the exit and the divergence."),
@@ -212,6 +217,7 @@ _FURTHER = "Ideal thrust lost"
 LOSSES: tuple[Output, ...] = (
     _loss("ideal", "ideal thrust", "No losses in the inlet, complete burning at rest, isentropic expansion to ambient pressure."),
     _loss("inlet", "inlet", f"{_FURTHER} by the total pressure that the inlet takes."),
+    _loss("viscous_loss", "viscous loss", f"{_FURTHER} by the friction stated for the inlet's throat, beside its shocks."),
     _loss("isolator", "isolator", f"{_FURTHER} by the total pressure that the shock train or terminal shock takes."),
     _loss("composition_released", "composition released",
           f"{_FURTHER} where the composition held by the inlet goes to equilibrium ahead of the burner. Negative: a gas whose "

@@ -12,8 +12,12 @@ _ENTRY = (("start", ("entry",)),)
 _MOMENTUM = (("combustor.process", ("constant-area", "constant-pressure")),)
 _LOSS = (("combustor.process", ("pressure-loss",)),)
 _DUCT = (("combustor.process", ("duct",)),)
-_PERFORMANCE = ("kinetic_energy_efficiency", "adiabatic_efficiency", "diffuser_efficiency", "total_pressure_recovery", "military_recovery")
+_PERFORMANCE = (
+    "kinetic_energy_efficiency", "adiabatic_efficiency", "diffuser_efficiency", "total_pressure_recovery", "military_recovery",
+    "viscous_correlation",
+)  # fmt: skip
 _GEOMETRY = (*_FLIGHT, ("inlet.quality", ("geometry",)))
+_VISCOUS = (*_GEOMETRY, ("inlet.terminal", ("none",)))
 _ENDED = (*_FLIGHT, ("inlet.quality", _PERFORMANCE))
 _WITH_LIP = (*_FLIGHT, ("inlet.compression", ("ramp", "cone")))
 # a flight has no entry station, a rig that starts at the burner no isolator
@@ -95,6 +99,8 @@ INPUTS: tuple[Input, ...] = (
     Input("inlet.total_pressure_recovery", "pi_d", "total-pressure recovery", "pt2/pt0.", above=0.0, upper=1.0, step=0.01, when=_FLIGHT),
     Input("inlet.military_recovery", "", "military-specification recovery", "Ram recovery of MIL-E-5008B as a function of M0.",
           kind="flag", unit="none", when=_FLIGHT, source="MIL-E-5008B, from memory"),
+    Input("inlet.viscous_correlation", "", "viscous correlation", "Kinetic-energy efficiency 1 - 0.4 (1 - M2/M0)^4, by how far it slows.",
+          kind="flag", unit="none", when=_FLIGHT, source="Waltrup, Billig and Stockbridge (1982), from memory"),
     Input("inlet.temperature_ratio", "T2/T0", "temperature ratio", "Static temperature ratio that ends the compression.", above=0.0,
           upper=50.0, step=0.1, when=_ENDED),
     Input("inlet.pressure_ratio", "p2/p0", "pressure ratio", "Static pressure ratio that ends the compression.", above=0.0,
@@ -132,6 +138,11 @@ INPUTS: tuple[Input, ...] = (
           unit="area", above=0.0, upper=1e3, step=1e-3, when=_GEOMETRY),
     Input("inlet.terminal_shock", "", "terminal shock", "A normal shock at the inlet throat: the stream enters the burner subsonic.",
           kind="flag", unit="none", when=_GEOMETRY),
+    Input("inlet.viscous_recovery", "pi_v", "viscous recovery", "Share of total pressure that friction leaves at the inlet throat.",
+          above=0.0, upper=1.0, step=0.01, when=_VISCOUS),
+    Input("inlet.viscous_efficiency", "eta_v", "viscous efficiency",
+          "Kinetic energy at ambient pressure that friction leaves at the throat, over that behind the shocks.",
+          above=0.0, upper=1.0, step=0.002, when=_VISCOUS),
     # isolator
     Input("isolator.length", "Li", "isolator length", "Of the constant-area duct ahead of the burner.", unit="length", above=0.0,
           upper=100.0, step=0.01, when=_ISOLATED),
@@ -324,6 +335,8 @@ GROUPS: tuple[Group, ...] = (
           default="none", when=_GEOMETRY),
     Group("inlet.throat", "inlet throat", tuple(Member(k, (f"inlet.{k}",)) for k in ("internal_contraction", "throat_area")),
           required=False, default="free", when=_GEOMETRY),
+    Group("inlet.viscous", "friction of the inlet", tuple(Member(k, (f"inlet.{k}",)) for k in ("viscous_recovery", "viscous_efficiency")),
+          required=False, default="none", when=_VISCOUS),
     Group("isolator.size", "size of the isolator", (Member("length", ("isolator.length",)),), required=False, default="none",
           when=_ISOLATED),
     Group("isolator.side", "side of the rectangular isolator", tuple(Member(k, (f"isolator.{k}",)) for k in ("width", "height")),

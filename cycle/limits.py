@@ -13,6 +13,7 @@ import numpy as np
 from cycle.account import injection_pressure, spread
 from cycle.arrays import Array, Codes, Flags
 from cycle.flow import gas_shocks, roots
+from cycle.flow.limits import MACH_LOSS_DATA
 from cycle.flowpath import assembly, combustor, inlet_limits, isolator_limits
 from cycle.flowpath.inlet_geometry import Inlet
 from cycle.flowpath.inlet_limits import Bound
@@ -73,6 +74,7 @@ def limits(walked: March, largest_heat: float | None = None) -> tuple[Limit, ...
         *_hot(walked),
         *_nozzle(walked),
         *_inlet_geometry(walked),
+        *_viscous(walked),
         *_modes(walked),
         *_isolator(walked),
     )
@@ -274,6 +276,19 @@ def _shock_on_lip(walked: March, setting: Setting, inlet: Inlet) -> list[Bound]:
         return []
     angle = "inlet.cone.half_angle" if setting.choices["inlet.compression"] == "cone" else "inlet.ramp.1.angle"
     return [inlet_limits.shock_on_lip(_whole_capture(walked), inlet, setting[angle], setting["inlet.lip_x"], setting["inlet.lip_y"])]
+
+
+def _viscous(walked: March) -> tuple[Limit, ...]:
+    """The range of the correlation that says the quality of the inlet."""
+    if walked.setting.choices.get("inlet.quality") != "viscous_correlation":
+        return ()
+    two, flight = walked.stations().get("2"), walked.records[0]
+    slowed = np.full(walked.setting.size, np.nan)
+    if two is not None:
+        slowed = spread(walked, two.index, two.stream.mach / flight.taken(two.index).stream.mach)
+    row = isolator_limits.within("viscous_data", "viscous correlation, M2/M0", slowed, MACH_LOSS_DATA, _inlet_key(walked.setting))
+    restore = "beyond the data: the efficiency is an extrapolation"
+    return (Limit(row.key, row.label, row.actual, row.allowed, "ratio", row.upper, restore, row.input, "no such state"),)
 
 
 def _worst(walked: March, index: Codes, own: list[Bound], label: str, restore: str, goto: str) -> Limit:

@@ -19,6 +19,7 @@ from cycle.flowpath.setting import setting, why_fixed
 from cycle.flowpath.stream import SOLVED, STATUS_NAMES
 from cycle.gas.state import State
 from cycle.quantities import INPUT, OUTPUTS, RESTORES, STATUSES
+from cycle.resting import rest
 from cycle.walk import RELEASED, March, Record, march, modes
 from cycle.why_not import no_figure, no_rows
 
@@ -196,10 +197,10 @@ class Walk:
         return sources | own
 
     def _total(self, position: int, station: str, points: Codes) -> State:
-        """Stagnation state of `points` at a station, behind the release of the composition where that is the process at `position`."""
+        """Stagnation state of `points` at a station; of the record itself where the station's own figures lie before or behind it."""
         record = self.march.records[position]
-        if record.process.name == RELEASED:
-            return account.rest(record.taken(points).stream)
+        if record.process.name in (RELEASED, "internal compression"):
+            return rest(record.taken(points).stream)
         return self._totals[station].take(np.searchsorted(self._records[station].index, points))
 
     def _choking_margin(self, position: int) -> Array:

@@ -5,16 +5,17 @@ Points that fail drop out where they fail; the rest go on. Nothing here knows a 
 
 from __future__ import annotations
 
-from collections.abc import Callable
+from collections.abc import Callable, Sequence
 from dataclasses import dataclass, replace
 from functools import partial
 
 import numpy as np
 
 from cycle.arrays import Array, Codes
-from cycle.flowpath import assembly, combustor, flight, inlet, isolator, nozzle
+from cycle.flowpath import assembly, combustor, flight, inlet, isolator, nozzle, viscous
 from cycle.flowpath.setting import Setting
 from cycle.flowpath.stream import SOLVED, Process, Step, Steps, Stream
+from cycle.flowpath.viscous import VISCOUS
 from cycle.gas.base import Gas
 from cycle.gas.frozen import FrozenGas
 from cycle.gas.state import scatter
@@ -65,11 +66,8 @@ class March:
         return next((r for r in self.records if r.process.name == name), None)
 
     def stations(self) -> dict[str, Record]:
-        """Station name -> the record that first reached it, in order along the stream."""
-        found: dict[str, Record] = {}
-        for record in self.records:
-            found.setdefault(record.process.end, record)
-        return dict(sorted(found.items(), key=lambda item: int(item[0])))
+        """Station name -> the record that first reached it, behind its friction at the inlet throat, in order along the stream."""
+        return _stations(self.records)
 
     def ambient_pressure(self, points: Codes) -> Array:
         """Ambient pressure of `points`, Pa; NaN for a rig, which has none."""
@@ -77,6 +75,15 @@ class March:
         if record is None:
             return np.full(points.shape, np.nan)
         return record.stream.state.pressure[np.searchsorted(record.index, points)]
+
+
+def _stations(records: Sequence[Record]) -> dict[str, Record]:
+    found: dict[str, Record] = {}
+    for record in records:
+        if record.process.name == VISCOUS:
+            found[record.process.end] = record
+        found.setdefault(record.process.end, record)
+    return dict(sorted(found.items(), key=lambda item: int(item[0])))
 
 
 Part = Callable[[Stream, Setting], Step | Steps | None]
@@ -138,8 +145,8 @@ def _to_burner_exit(setting: Setting) -> list[tuple[str, Part]]:
 
 
 def _parts(setting: Setting) -> list[tuple[str, Part]]:
-    """The processes that this case's stream goes through, in order, after it has entered."""
-    parts = [*_entry(setting), *_to_burner_exit(setting)]
+    """The processes that this case's stream goes through behind the inlet, in order."""
+    parts = _to_burner_exit(setting)
     if setting.choices["nozzle.exit"] == "absent":
         return parts
     parts += [("gas change", _to_expansion), ("frozen chemistry", _freeze("4"))]
@@ -153,6 +160,10 @@ def march(setting: Setting) -> March:
     entering = {"flight": flight.flight, "entry": flight.entry}[setting.choices["start"]]
     walked = _Walked(setting)
     walked.take(setting.choices["start"], entering)
+    for name, part in _entry(setting):
+        walked.take(name, partial(_continue, walked, part))
+    if setting.choices.get("inlet.viscous", "none") != "none":
+        walked.take(VISCOUS, lambda s: viscous.loss(walked.stream, s, walked.ambient()))
     for name, part in _parts(setting):
         walked.take(name, partial(_continue, walked, part))
     if setting.choices["nozzle.exit"] != "absent":
@@ -222,13 +233,14 @@ class _Walked:
             return
         entered = np.flatnonzero(found.steps[0].status == SOLVED)
         solved = np.flatnonzero(np.all([s.status == SOLVED for s in found.steps], axis=0))
+        own = _stations(self.records)
         for i, record in enumerate(self.records):
             stream = record.stream
             if found.captured is not None:
                 flow = stream.mass_flow.copy()
                 flow[np.searchsorted(record.index, self.alive[entered])] *= found.captured[entered]
                 stream = replace(stream, mass_flow=flow)
-            if record.process.end in found.replaced:
+            if record.process.end in found.replaced and own[record.process.end] is record:
                 at = np.searchsorted(record.index, self.alive[solved])
                 new = found.replaced[record.process.end].take(solved)
                 stream = _with_points(stream, at, new)

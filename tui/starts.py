@@ -147,6 +147,7 @@ STARTS: dict[tuple[str, str], Start] = {
     ("inlet.quality", "diffuser_efficiency"): _end,
     ("inlet.quality", "total_pressure_recovery"): _end,
     ("inlet.quality", "military_recovery"): _end,
+    ("inlet.quality", "viscous_correlation"): _end,
     ("inlet.compression", "ramp"): _ramps,
     ("inlet.compression", "cone"): _cone,
     ("inlet.compression", "isentropic_ramp"): _curved,

@@ -41,6 +41,10 @@ SHOCK_TRAIN_DATA = {
 """Section -> what `shock_train_length` was measured at. A margin about it is a question of data, not of the engine."""
 
 
+MACH_LOSS_DATA = Span(0.3, 0.7)
+"""M3/M0 for which `mach_loss_efficiency` is commonly drawn; from memory, least surely of all here."""
+
+
 class Compression(NamedTuple):
     """Adiabatic compression, (N,) each, 1: p3/p0, pt3/pt0, kinetic-energy efficiency, and Mach number after it."""
 

@@ -42,8 +42,8 @@ def bounds(setting: Setting, area: Array, length: Array, mach: Array, reynolds: 
     data, there = limits.SHOCK_TRAIN_DATA[setting.choices["isolator.shape"]], np.where(length > 0.0, 1.0, np.nan)
     return [
         *rows,
-        _within("train_mach", "shock-train data, Mach number", there * mach, data.mach, "flight.mach"),
-        _within("train_reynolds", "shock-train data, Reynolds number", there * reynolds, data.reynolds, "isolator.momentum_thickness"),
+        within("train_mach", "shock-train data, Mach number", there * mach, data.mach, "flight.mach"),
+        within("train_reynolds", "shock-train data, Reynolds number", there * reynolds, data.reynolds, "isolator.momentum_thickness"),
     ]
 
 
@@ -58,8 +58,11 @@ def _section(setting: Setting, area: Array) -> Held:
     )  # fmt: skip
 
 
-def _within(key: str, label: str, value: Array, span: limits.Span, goto: str) -> Held:
-    """A value that the data of a correlation span, held to the end that it is nearer to."""
+def within(key: str, label: str, value: Array, span: limits.Span, goto: str) -> Held:
+    """A value that the data of a correlation span, held to the end that it is nearer to.
+
+    key, label: of the limit. value: (N,), NaN where it is not known. span: of the data. goto: the input that moves it. Source: definition.
+    """
     upper = 1.0 - value / span.high < value / span.low - 1.0
     allowed = np.where(np.isnan(value), np.nan, np.where(upper, span.high, span.low))
     return Held(key, label, value, allowed, upper, _EXTRAPOLATED, goto, "no shock train, or its length is not known")
