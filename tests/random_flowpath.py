@@ -210,10 +210,20 @@ def _nozzle(rng: Rng, equilibrium: bool, throat: bool, rig: bool) -> Case:
     return found
 
 
+def _throat_friction(inlet: Case, mach: float) -> Case:
+    """Friction at the throat of an inlet by geometry now and then; leaves what is drawn behind it as it was."""
+    apart = np.random.default_rng(int(1e9 * mach))
+    if not {"ramp", "cone", "isentropic_ramp"} & set(inlet):
+        return {}
+    ways: tuple[Case, ...] = ({}, {}, {"viscous_recovery": between(apart, 0.6, 1.0)}, {"viscous_efficiency": between(apart, 0.97, 1.0)})
+    return pick(apart, ways)
+
+
 def _duct_engine(rng: Rng, model: str) -> Case:
     flight = _flight(rng, 4.0, 11.0)
     capture = between(rng, 0.05, 0.8)
     case = {"flight": flight, "inlet": _inlet(rng, flight["mach"]), "combustor": _duct(rng, capture, _total(flight["mach"]))}
+    case["inlet"] |= _throat_friction(case["inlet"], flight["mach"])
     if rng.random() < 0.5:
         case["isolator"] = _isolator(rng)
     case["nozzle"] = _nozzle(rng, model == "equilibrium", False, False)
