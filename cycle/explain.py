@@ -268,6 +268,8 @@ _SIDES: dict[str, tuple[_Side, _Side]] = {
     "duct_separation": (_of_process("isolator", "separation_margin"), _nowhere),
     "unstart": (_of_process("isolator", "unstart_margin"), _nowhere),
     "throat_capacity": (_of_process("isolator", "throat_margin"), _nowhere),
+    "train_mach": (_of_process("isolator", "train_mach"), _nowhere),
+    "train_reynolds": (_of_process("isolator", "momentum_reynolds"), _nowhere),
     "isolator_length": (_of_process("isolator", "isolator_margin"), _nowhere),
 }
 """Limit -> where its actual and its allowed figure come from."""
