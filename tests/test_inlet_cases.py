@@ -96,7 +96,7 @@ CIRCLE = math.pi * 0.35**2
 
 def test_a_lip_under_an_earlier_ramp_is_refused() -> None:
     """Upstream of the third corner and under the second ramp, but above the line of the third: it would capture less than nothing."""
-    walk = cycle.solve(case_with(inlet={**THREE, "lip_x": 1.2, "lip_y": 0.10}))
+    walk = cycle.solve(case_with(inlet={**THREE, "lip_x": 1.2, "lip_y": 0.13}))
     assert walk.status == "lip-blocked"
 
 
