@@ -17,12 +17,14 @@ from cycle.constants import STANDARD_GRAVITY
 from cycle.flow import states
 from cycle.flowpath import assembly, combustor
 from cycle.flowpath.stream import Stream
+from cycle.flowpath.viscous import VISCOUS
 from cycle.gas.base import Gas
 from cycle.gas.constant import ConstantGas
 from cycle.gas.equilibrium import EquilibriumGas
 from cycle.gas.frozen import FrozenGas
 from cycle.gas.join import Request, apply_together, solve_together
 from cycle.gas.state import State
+from cycle.resting import before_burning
 from cycle.walk import March, Record, case_gas
 
 
@@ -185,7 +187,7 @@ _NEEDS_FUEL = (
 
 
 def _potential_gas(record: Record, march: March) -> Gas:
-    upstream = record.process.name in ("flight", "inlet", "external compression", "internal compression", "isolator", "entry")
+    upstream = record.process.name in ("flight", "inlet", "external compression", "internal compression", VISCOUS, "isolator", "entry")
     return case_gas(record.stream.gas, march.setting) if upstream else record.stream.gas
 
 
@@ -270,7 +272,8 @@ def losses(march: March, total: Mapping[str, State], potential: list[Array]) -> 
     """Losses against the ideal engine, N: ideal thrust, what each process took in order, thrust. For solved points.
 
     I_k is the thrust with the real processes up to k and the rest ideal: complete burning at rest without loss of total
-    pressure, then isentropic expansion to p0 in the case's gas. Riggins (1997).
+    pressure, then isentropic expansion to p0 in the case's gas. Riggins (1997). A composition that the inlet held rests at less
+    pressure than one in equilibrium: its release is a row of its own, a gain.
     """
     points, stations = march.solved, march.stations()
     if not points.size or not potential or "10" not in stations or not one_pair(march):
@@ -279,10 +282,10 @@ def losses(march: March, total: Mapping[str, State], potential: list[Array]) -> 
     one, own = np.ones(points.size), setting["combustor.burnt_fraction"]
     free = march.records[0].taken(points).stream
     p0 = free.state.pressure
-    at_rest = {n: total[n].take(np.searchsorted(stations[n].index, points)).pressure for n in ("0", "2", "3")}
-    cases = [("0", one), ("2", one), ("3", one), ("3", own)]
+    labels, at_rest = before_burning(march, total, points)
+    cases = [*((p, one) for p in at_rest), (at_rest[-1], own)]
     mixtures = [_complete(march, burnt, points) for _, burnt in cases]
-    hot = solve_together("hp", [Request(g, (h, at_rest[n])) for (n, _), (g, h, _) in zip(cases, mixtures, strict=True)])
+    hot = solve_together("hp", [Request(g, (h, p)) for (p, _), (g, h, _) in zip(cases, mixtures, strict=True)])
     cold = solve_together("sp", [Request(g, (s.entropy, p0)) for s, (g, _, _) in zip(hot, mixtures, strict=True)])
     with np.errstate(invalid="ignore"):
         ideal = [
@@ -291,10 +294,10 @@ def losses(march: March, total: Mapping[str, State], potential: list[Array]) -> 
         ]
     position = next(i for i, r in enumerate(march.records) if r.process.name == "burner")
     steps = [*ideal, potential[position][points], thrust(march)[points]]
-    labels = (
-        ("inlet", "inlet"), ("isolator", "isolator"), ("incomplete_burning", "incomplete burning"),
-        ("burner", "heat at speed, mixing, friction, wall heat"), ("nozzle", "nozzle and exit"),
-    )  # fmt: skip
+    labels += [
+        ("incomplete_burning", "incomplete burning"), ("burner", "heat at speed, mixing, friction, wall heat"),
+        ("nozzle", "nozzle and exit"),
+    ]  # fmt: skip
     lost = [Row(k, label, spread(march, points, a - b)) for (k, label), a, b in zip(labels, steps[:-1], steps[1:], strict=True)]
     return (
         Row("ideal", "ideal thrust", spread(march, points, steps[0])),

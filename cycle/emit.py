@@ -10,6 +10,7 @@ import numpy as np
 from cycle.account import injection_pressure, spread
 from cycle.arrays import Array, Codes
 from cycle.audit import Crossing, Emitted
+from cycle.flowpath.isolator import viscosity
 from cycle.flowpath.stream import Stream
 from cycle.gas.constant import ConstantGas
 from cycle.walk import March, Record
@@ -18,12 +19,6 @@ _STATE = (
     "pressure", "temperature", "density", "sound_speed", "enthalpy", "entropy", "gamma_frozen", "isentropic_exponent",
     "specific_heat", "molar_mass",
 )  # fmt: skip
-
-
-def viscosity(temperature: Array) -> Array:
-    """Dynamic viscosity of air, Pa s (N,), by Sutherland's law; U.S. Standard Atmosphere 1976, eq. 51."""
-    mu: Array = 1.458e-6 * temperature**1.5 / (temperature + 110.4)
-    return mu
 
 
 def _dynamic_pressure(s: Stream) -> Array:

@@ -267,9 +267,12 @@ _SIDES: dict[str, tuple[_Side, _Side]] = {
     "data_high": (_extreme(max), _nowhere),
     "data_low": (_extreme(min), _nowhere),
     "nozzle_separation": (_nowhere, _side("limits.nozzle_separation")),
+    "shock_on_lip": (_side("mach", "station 0"), _nowhere),
     "duct_separation": (_of_process("isolator", "separation_margin"), _nowhere),
     "unstart": (_of_process("isolator", "unstart_margin"), _nowhere),
     "throat_capacity": (_of_process("isolator", "throat_margin"), _nowhere),
+    "train_mach": (_of_process("isolator", "train_mach"), _nowhere),
+    "train_reynolds": (_of_process("isolator", "momentum_reynolds"), _nowhere),
     "isolator_length": (_of_process("isolator", "isolator_margin"), _nowhere),
 }
 """Limit -> where its actual and its allowed figure come from."""

@@ -73,8 +73,8 @@ class Row:
 class Limit:
     """One limit; margin positive is safe. state: ok, near, over or "not assessed" (array of these in a batch).
 
-    restore: what gives margin back, or why it is not assessed; input: the case key to go to, or ""; note: what is to be known of the
-    limit in any state, or "".
+    upper: whether `allowed` is an upper limit, at all points of a batch. restore: what gives margin back, or why it is not assessed;
+    input: the case key to go to, or ""; note: what is to be known of the limit in any state, or "".
     """
 
     key: str

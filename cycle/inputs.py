@@ -12,13 +12,18 @@ _ENTRY = (("start", ("entry",)),)
 _MOMENTUM = (("combustor.process", ("constant-area", "constant-pressure")),)
 _LOSS = (("combustor.process", ("pressure-loss",)),)
 _DUCT = (("combustor.process", ("duct",)),)
-_PERFORMANCE = ("kinetic_energy_efficiency", "adiabatic_efficiency", "diffuser_efficiency", "total_pressure_recovery", "military_recovery")
+_PERFORMANCE = (
+    "kinetic_energy_efficiency", "adiabatic_efficiency", "diffuser_efficiency", "total_pressure_recovery", "military_recovery",
+    "viscous_correlation",
+)  # fmt: skip
 _GEOMETRY = (*_FLIGHT, ("inlet.quality", ("geometry",)))
+_VISCOUS = (*_GEOMETRY, ("inlet.terminal", ("none",)))
 _ENDED = (*_FLIGHT, ("inlet.quality", _PERFORMANCE))
 _WITH_LIP = (*_FLIGHT, ("inlet.compression", ("ramp", "cone")))
 # a flight has no entry station, a rig that starts at the burner no isolator
 _ISOLATED = (("entry.station", ("", "2")),)
 _ISOLATOR = (*_ISOLATED, ("isolator.size", ("length",)))
+_RECTANGLE = (*_ISOLATOR, ("isolator.shape", ("rectangular",)))
 _FREEZE = (("nozzle.chemistry", ("frozen-after",)),)
 _TURN = 0.7853981633974483
 """45 deg: no ramp turns further."""
@@ -99,6 +104,8 @@ INPUTS: tuple[Input, ...] = (
     Input("inlet.total_pressure_recovery", "pi_d", "total-pressure recovery", "pt2/pt0.", above=0.0, upper=1.0, step=0.01, when=_FLIGHT),
     Input("inlet.military_recovery", "", "military-specification recovery", "Ram recovery of MIL-E-5008B as a function of M0.",
           kind="flag", unit="none", when=_FLIGHT, source="MIL-E-5008B, from memory"),
+    Input("inlet.viscous_correlation", "", "viscous correlation", "Kinetic-energy efficiency 1 - 0.4 (1 - M2/M0)^4, by how far it slows.",
+          kind="flag", unit="none", when=_FLIGHT, source="Waltrup, Billig and Stockbridge (1982), from memory"),
     Input("inlet.temperature_ratio", "T2/T0", "temperature ratio", "Static temperature ratio that ends the compression.", above=0.0,
           upper=50.0, step=0.1, when=_ENDED),
     Input("inlet.pressure_ratio", "p2/p0", "pressure ratio", "Static pressure ratio that ends the compression.", above=0.0,
@@ -122,7 +129,8 @@ INPUTS: tuple[Input, ...] = (
           above=0.0, upper=1.0471975511965976, step=0.005, when=_FLIGHT, source="NACA Report 1135 (1953)"),
     Input("inlet.isentropic_ramp.first_wedge", "d1", "first wedge", "Straight turn, an oblique shock, ahead of the curved ramp.",
           unit="angle", above=0.0, upper=_TURN, step=0.005, when=(*_FLIGHT, ("inlet.compression", ("isentropic_ramp",)))),
-    Input("inlet.cowl_angle", "dcowl", "cowl turn", "Turn back by the shock from the lip; through the whole turning when absent.",
+    Input("inlet.cowl_angle", "dcowl", "cowl turn",
+          "Turn back by the shock from the lip, all of it when absent; a second shock turns what is left: the stream is axial at 2.",
           unit="angle", lower=0.0, upper=1.0471975511965976, step=0.005, when=_GEOMETRY),
     Input("inlet.lip_x", "xl", "lip place", "Along the flight direction, from the first corner or the tip.", unit="length", lower=0.0,
           upper=1e3, step=0.01, when=_WITH_LIP),
@@ -135,16 +143,30 @@ INPUTS: tuple[Input, ...] = (
           unit="area", above=0.0, upper=1e3, step=1e-3, when=_GEOMETRY),
     Input("inlet.terminal_shock", "", "terminal shock", "A normal shock at the inlet throat: the stream enters the burner subsonic.",
           kind="flag", unit="none", when=_GEOMETRY),
+    Input("inlet.viscous_recovery", "pi_v", "viscous recovery", "Share of total pressure that friction leaves at the inlet throat.",
+          above=0.0, upper=1.0, step=0.01, when=_VISCOUS),
+    Input("inlet.viscous_efficiency", "eta_v", "viscous efficiency",
+          "Kinetic energy at ambient pressure that friction leaves at the throat, over that behind the shocks.",
+          above=0.0, upper=1.0, step=0.002, when=_VISCOUS),
     # isolator
     Input("isolator.length", "Li", "isolator length", "Of the constant-area duct ahead of the burner.", unit="length", above=0.0,
           upper=100.0, step=0.01, when=_ISOLATED),
-    Input("isolator.hydraulic_diameter", "Dh", "hydraulic diameter", "Four times the area over the perimeter.", unit="length", above=0.0,
-          upper=10.0, step=0.001, when=_ISOLATED),
+    Input("isolator.shape", "", "isolator shape", "Cross-section of the isolator; its area is that of the stream at 2.", kind="choice",
+          unit="none", choices=("circular", "rectangular"), default="circular", when=_ISOLATOR),
+    Input("isolator.width", "wi", "isolator width", "Of a rectangular isolator; the height follows from the area at 2.", unit="length",
+          above=0.0, upper=100.0, step=0.01, when=_RECTANGLE),
+    Input("isolator.height", "Hi", "isolator height", "Of a rectangular isolator; the width follows from the area at 2.", unit="length",
+          above=0.0, upper=100.0, step=0.001, when=_RECTANGLE),
+    Input("isolator.hydraulic_diameter", "Dh", "hydraulic diameter",
+          "Held against shape and area of station 2; gives the sides of a rectangle that states none.", unit="length", above=0.0,
+          upper=10.0, step=0.001, when=_ISOLATOR),
     Input("isolator.momentum_thickness", "theta", "momentum thickness",
           "Of the boundary layer at isolator entry; the length of a shock train needs it.",
           unit="length", above=0.0, upper=1.0, step=1e-4, when=_ISOLATOR, source="Waltrup and Billig (1973)"),
-    Input("isolator.shape", "", "isolator shape", "Cross-section of the isolator.", kind="choice", unit="none",
-          choices=("circular", "rectangular"), default="circular", when=_ISOLATOR),
+    Input("isolator.boundary_layer_length", "lbl", "boundary-layer run", "Turbulent, along an adiabatic flat plate ahead of the isolator.",
+          unit="length", above=0.0, upper=1e3, step=0.1, when=_ISOLATOR, source="Schlichting; Eckert (1955); from memory"),
+    Input("isolator.friction_coefficient", "Cfi", "isolator friction coefficient", "Fanning factor of the isolator's wall.", lower=0.0,
+          upper=0.05, default=0.0, step=5e-4, when=_ISOLATOR),
     # fuel
     Input("fuel.name", "", "fuel", "A fuel of the built-in list.", kind="choice", unit="none",
           choices=("hydrogen", "methane", "ethylene", "propane", "kerosene", "jp-10")),
@@ -275,8 +297,8 @@ INPUTS: tuple[Input, ...] = (
     Input("nozzle.divergence_shape", "", "divergence shape", "conical (1 + cos a)/2, planar sin(a)/a.", kind="choice", unit="none",
           choices=("conical", "planar"), default="conical", when=(("nozzle.divergence", ("divergence_angle",)),)),
     # engine
-    Input("engine.capture_area", "Ac", "capture area", "Area of the captured stream tube at the lip.", unit="area", above=0.0, upper=1e3,
-          default=1.0, step=0.01, when=_FLIGHT),
+    Input("engine.capture_area", "Ac", "capture area", "Area of the captured stream tube at the lip; of a cone with a lip, its circle.",
+          unit="area", above=0.0, upper=1e3, default=1.0, step=0.01, when=_FLIGHT),
     Input("engine.mode", "", "mode asked for", "auto: as found; supersonic, thermal-throat, geometric-throat: that or none.", kind="choice",
           unit="none", choices=("auto", "supersonic", "thermal-throat", "geometric-throat"), default="auto"),
     # limits: thresholds
@@ -322,8 +344,15 @@ GROUPS: tuple[Group, ...] = (
           default="none", when=_GEOMETRY),
     Group("inlet.throat", "inlet throat", tuple(Member(k, (f"inlet.{k}",)) for k in ("internal_contraction", "throat_area")),
           required=False, default="free", when=_GEOMETRY),
-    Group("isolator.size", "size of the isolator", (Member("length", ("isolator.length", "isolator.hydraulic_diameter")),),
-          required=False, default="none", when=_ISOLATED),
+    Group("inlet.viscous", "friction of the inlet", tuple(Member(k, (f"inlet.{k}",)) for k in ("viscous_recovery", "viscous_efficiency")),
+          required=False, default="none", when=_VISCOUS),
+    Group("isolator.size", "size of the isolator", (Member("length", ("isolator.length",)),), required=False, default="none",
+          when=_ISOLATED),
+    Group("isolator.side", "side of the rectangular isolator", tuple(Member(k, (f"isolator.{k}",)) for k in ("width", "height")),
+          required=False, default="of-diameter", when=_RECTANGLE),
+    Group("isolator.boundary_layer", "boundary layer at isolator entry",
+          tuple(Member(k, (f"isolator.{k}",)) for k in ("momentum_thickness", "boundary_layer_length")), required=False, default="none",
+          when=_ISOLATOR),
     Group("fuel.identity", "fuel",
           (Member("name", ("fuel.name",)),
            Member("formula", ("fuel.formula",), also=("fuel.heating_value",)),

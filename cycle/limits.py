@@ -11,10 +11,11 @@ from dataclasses import dataclass, replace
 import numpy as np
 
 from cycle.account import injection_pressure, spread
-from cycle.arrays import Array, Codes
+from cycle.arrays import Array, Codes, Flags
 from cycle.flow import limits as laws
-from cycle.flow import roots
-from cycle.flowpath import assembly, combustor, expansion, inlet_limits
+from cycle.flow.limits import MACH_LOSS_DATA
+from cycle.flowpath import assembly, expansion, inlet_limits, isolator_limits
+from cycle.flowpath.inlet_geometry import Inlet
 from cycle.flowpath.inlet_limits import Bound
 from cycle.flowpath.setting import Setting
 from cycle.flowpath.stream import Stream
@@ -32,7 +33,7 @@ DISSOCIATION = 2200.0
 class Limit:
     """One limit of N points: actual and allowed figure (N,), margin (N,), NaN where not assessed.
 
-    upper: whether `allowed` is an upper limit. restore: what would give margin back; input: the case key to go to.
+    upper: whether `allowed` is an upper limit, one for all or (N,). restore: what would give margin back; input: the case key to go to.
     missing: why it is not assessed. note: what is to be known of the limit in any state.
     """
 
@@ -41,7 +42,7 @@ class Limit:
     actual: Array
     allowed: Array
     unit: str
-    upper: bool
+    upper: bool | Flags
     restore: str
     input: str
     missing: str = ""
@@ -52,7 +53,7 @@ class Limit:
         """(allowed - actual)/allowed, sign reversed for a lower limit."""
         with np.errstate(all="ignore"):
             room = (self.allowed - self.actual) / np.abs(self.allowed)
-        return room if self.upper else -room
+        return np.where(self.upper, room, -room)
 
 
 def state_of(margin: float) -> str:
@@ -76,7 +77,9 @@ def limits(walked: March, largest_heat: Array | None = None, cause: str = "") ->
         *_hot(walked),
         *_nozzle(walked),
         *_inlet_geometry(walked),
+        *_viscous(walked),
         *_modes(walked),
+        *_isolator(walked),
     )
 
 
@@ -281,15 +284,17 @@ def _inlet_geometry(walked: March) -> tuple[Limit, ...]:
         ("attached", "attached inlet shocks", "needs inlet geometry"),
         ("separation", "shock separation in the inlet", "needs inlet geometry"),
         ("start", "inlet start", "needs the internal contraction of an inlet geometry"),
+        ("shock_on_lip", "shock on lip, flight Mach number", "needs the inlet's lip"),
     )
     missing = tuple(Limit(k, label, nothing, nothing, "ratio", True, why, "", why) for k, label, why in lacking)
     if setting.choices.get("inlet.quality") != "geometry" or not flight.index.size:
         return missing
     inlet = assembly.solved_inlet(_whole_capture(walked), setting.take(flight.index))
-    found = inlet_limits.bounds(inlet)
+    found = (*inlet_limits.bounds(inlet), *_shock_on_lip(walked, setting.take(flight.index), inlet))
     key = {"ramp": "inlet.ramp.1.angle", "cone": "inlet.cone.half_angle", "isentropic_ramp": "inlet.isentropic_ramp.turning"}
     goto = key[setting.choices["inlet.compression"]]
-    words = {"attached": "less turning or a faster flight", "separation": "more and weaker shocks", "start": "less internal contraction"}
+    words = {"attached": "less turning or a faster flight", "separation": "more and weaker shocks", "start": "less internal contraction",
+             "shock_on_lip": "fly slower, or a lip further back or lower: the shock enters the cowl, which is not followed"}  # fmt: skip
     rows = []
     for name, label, why in lacking:
         own = [b for b in found if b.key == name]
@@ -297,9 +302,30 @@ def _inlet_geometry(walked: March) -> tuple[Limit, ...]:
             why = "no such shock meets a boundary layer" if name == "separation" else why
             rows.append(Limit(name, label, nothing, nothing, "ratio", True, "", "", why))
             continue
-        to = "inlet.internal_contraction" if name == "start" else goto
+        to = {"start": "inlet.internal_contraction", "shock_on_lip": "flight.mach"}.get(name, goto)
         rows.append(_worst(walked, flight.index, own, label, words[name], to))
     return tuple(rows)
+
+
+def _shock_on_lip(walked: March, setting: Setting, inlet: Inlet) -> list[Bound]:
+    """Whether the first external shock meets the lip or enters the cowl; setting, inlet: of the points in flight."""
+    if setting.choices.get("inlet.lip") != "lip":
+        return []
+    angle = "inlet.cone.half_angle" if setting.choices["inlet.compression"] == "cone" else "inlet.ramp.1.angle"
+    return [inlet_limits.shock_on_lip(_whole_capture(walked), inlet, setting[angle], setting["inlet.lip_x"], setting["inlet.lip_y"])]
+
+
+def _viscous(walked: March) -> tuple[Limit, ...]:
+    """The range of the correlation that says the quality of the inlet."""
+    if walked.setting.choices.get("inlet.quality") != "viscous_correlation":
+        return ()
+    two, flight = walked.stations().get("2"), walked.records[0]
+    slowed = np.full(walked.setting.size, np.nan)
+    if two is not None:
+        slowed = spread(walked, two.index, two.stream.mach / flight.taken(two.index).stream.mach)
+    row = isolator_limits.within("viscous_data", "viscous correlation, M2/M0", slowed, MACH_LOSS_DATA, _inlet_key(walked.setting))
+    restore = "beyond the data: the efficiency is an extrapolation"
+    return (Limit(row.key, row.label, row.actual, row.allowed, "ratio", row.upper, restore, row.input, "no such state"),)
 
 
 def _worst(walked: March, index: Codes, own: list[Bound], label: str, restore: str, goto: str) -> Limit:
@@ -340,30 +366,12 @@ def _modes(walked: March) -> tuple[Limit, ...]:
     return tuple(rows)
 
 
-_SCAN = 25
-
-
-def largest_heat(walked: March, ceiling: float) -> float:
-    """Largest heat input of one point before the burner chokes.
-
-    walked: a march of one point that reached the burner. ceiling: end of the search, SI. NaN where nothing chokes below
-    it. The room left before choking is scanned over the input in one batch; its first change of sign is then a root.
-    """
-    entry = walked.stations()["3"]
-    before = combustor.burner_gas(entry.stream, walked.setting)
-    key = heat_key(walked.setting)
-    # below the entering total temperature there is no heat to add
-    floor = ceiling / 4.0 if walked.setting.choices["combustor.heat"] == "exit_total_temperature" else 0.0
-
-    def room(values: Array) -> Array:
-        points = np.zeros(values.size, np.int64)
-        many = walked.setting.take(points)
-        return combustor.choking_room(before.take(points), replace(many, numbers={**many.numbers, key: values}))
-
-    tried = np.linspace(floor, ceiling, _SCAN)
-    left = room(tried)
-    choked = np.flatnonzero(left < 0.0)
-    if not choked.size or choked[0] == 0 or not left[choked[0] - 1] >= 0.0:
-        return np.nan
-    low, high = tried[choked[0] - 1], tried[choked[0]]
-    return float(roots.bracketed(room, np.array([low]), np.array([high]), 1e-9)[0])
+def _isolator(walked: March) -> tuple[Limit, ...]:
+    """The isolator's stated size against its area, and where its shock train lies in the data of its correlation."""
+    setting, two = walked.setting, walked.stations().get("2")
+    if two is None or not setting.has("isolator.length"):
+        return ()
+    names = ("train_length", "train_mach", "momentum_reynolds")
+    told = {name: walked.figure("isolator", name) for name in names}
+    rows = isolator_limits.bounds(setting, spread(walked, two.index, two.stream.area), *(told[name] for name in names))
+    return tuple(Limit(r.key, r.label, r.actual, r.allowed, "ratio", r.upper, r.restore, r.input, r.missing) for r in rows)

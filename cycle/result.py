@@ -8,19 +8,20 @@ from typing import TYPE_CHECKING, Any
 
 import numpy as np
 
-from cycle import account, emit
+from cycle import account, emit, heat
 from cycle import audit as auditing
 from cycle import limits as margins
 from cycle.account import spread, usable
 from cycle.arrays import Array, ArrayLike, Codes
 from cycle.figures import Audit, Figures, Limit, Process, Residual, Row, Station, shaped
-from cycle.flowpath import assembly, combustor, duct_limits
+from cycle.flowpath import combustor, duct_limits
 from cycle.flowpath.setting import setting, why_fixed
 from cycle.flowpath.stream import SOLVED, STATUS_NAMES
 from cycle.gas.state import State
 from cycle.notes import STORAGE, HeatedFuel, heats_fuel
-from cycle.quantities import CAUSES, INPUT, OUTPUTS, RESTORES, STATUSES
-from cycle.walk import March, Record, march, modes
+from cycle.quantities import CAUSES, OUTPUTS, RESTORES, STATUSES
+from cycle.resting import rest
+from cycle.walk import RELEASED, March, Record, march, modes
 from cycle.why_not import no_figure, no_rows, no_station_figure
 
 if TYPE_CHECKING:
@@ -75,18 +76,8 @@ class Walk:
             if np.isfinite(self._largest):
                 words = f"{words}; largest {label} here {self._largest:.4g}"
         if name in ("unstarted", "no-mode") and self.shape == () and self.heat_limits:
-            words = f"{words}; {self._heat_words()}"
+            words = f"{words}; {heat.words(self.march, self.heat_limits, self.heat_limit_causes)}"
         return f"{words}; {RESTORES[name]}"
-
-    def _heat_words(self) -> str:
-        """The heat of a duct without a solution against that at which it has one, and what sets the limit."""
-        label, _ = margins.heat_words(self.march.setting)
-        most, cause = self.heat_limits["unstart"], self.heat_limit_causes["unstart"]
-        if not most > 0.0:
-            return "no heat below the search's end starts it" if most == 0.0 else "the heat at which it starts is not known"
-        here = float(self.march.setting[margins.heat_key(self.march.setting)][0])
-        why = {"impulse": "impulse at burner entry", "isolator-length": "the shock train is longer than the isolator"}.get(cause, cause)
-        return f"{label} {here:.4g}, at most {most:.4g} ({why})" if here > most else f"{label} {here:.4g}, at least {most:.4g}"
 
     @cached_property
     def _records(self) -> dict[str, Record]:
@@ -180,9 +171,7 @@ class Walk:
             return lambda: spread(self.march, record.index, values())
 
         def total_ratio() -> Array:
-            first, last = self._totals[names[0]], self._totals[names[1]]
-            first = first.take(np.searchsorted(self._records[names[0]].index, record.index))
-            last = last.take(np.searchsorted(self._records[names[1]].index, record.index))
+            first, last = self._total(position - 1, names[0], record.index), self._total(position, names[1], record.index)
             return usable(first, usable(last, last.pressure / first.pressure))
 
         sources = {
@@ -194,12 +183,23 @@ class Walk:
         if self._has_potential:
             sources["thrust_potential_change"] = lambda: self._potentials[position] - self._potentials[position - 1]
         own: dict[str, Callable[[], Array]] = {k: partial(spread, self.march, record.index, v) for k, v in record.process.figures.items()}
-        if record.process.solves_momentum and self.march.setting.choices["combustor.process"] == "constant-area":
+        if (
+            "fuel_air_ratio" in own
+            and record.process.solves_momentum
+            and self.march.setting.choices["combustor.process"] == "constant-area"
+        ):
             own["choking_margin"] = on(lambda: self._choking_margin(position))
         booking = record.process.booking
         if booking is not None:
             own |= {k: partial(spread, self.march, record.index, getattr(booking, k)) for k in booking.__slots__}
         return sources | own
+
+    def _total(self, position: int, station: str, points: Codes) -> State:
+        """Stagnation state of `points` at a station; of the record itself where the station's own figures lie before or behind it."""
+        record = self.march.records[position]
+        if record.process.name in (RELEASED, "internal compression"):
+            return rest(record.taken(points).stream)
+        return self._totals[station].take(np.searchsorted(self._records[station].index, points))
 
     def _choking_margin(self, position: int) -> Array:
         """Room left before the burner chokes; the sonic point behind it is dear, so the walk itself does without."""
@@ -267,12 +267,7 @@ class Walk:
 
     @cached_property
     def _largest(self) -> float:
-        key = margins.heat_key(self.march.setting)
-        bound = INPUT[key]
-        assert bound.upper is not None
-        if "3" not in self._records or self._has_duct:
-            return np.nan
-        return margins.largest_heat(self.march, min(bound.upper, _SEARCH[key]))
+        return np.nan if "3" not in self._records or self._has_duct else heat.largest_before_choking(self.march)
 
     def largest_heat(self) -> float:
         """Largest value of the heat input before thermal choking, SI; NaN where nothing chokes. One point only."""
@@ -295,21 +290,7 @@ class Walk:
 
     @cached_property
     def _heat_ends(self) -> dict[str, tuple[Array, Codes]]:
-        walked = self.march
-        record = walked.named("gas change") or walked.reached("2")
-        if not self._has_duct or record is None or not record.index.size:
-            return {}
-        heat, setting = margins.heat_key(walked.setting), walked.setting.take(record.index)
-        units = {"equivalence_ratio": setting.stoichiometric_ratio, "fuel_air_ratio": np.ones(record.index.size)}
-        unit = units.get(setting.choices["combustor.heat"])
-        if unit is None:
-            nothing = np.full(self.size, np.nan), np.zeros(self.size, np.int64)
-            return dict.fromkeys(duct_limits.ENDS, nothing)
-        found = assembly.heat_limits(record.stream, setting, _SEARCH[heat] * unit)
-        causes = {name: np.zeros(self.size, np.int64) for name in found}
-        for name, end in found.items():
-            causes[name][record.index] = end.cause
-        return {name: (spread(walked, record.index, end.ratio / unit), causes[name]) for name, end in found.items()}
+        return heat.ends_of_modes(self.march) if self._has_duct else {}
 
     @cached_property
     def limits(self) -> tuple[Limit, ...]:
@@ -341,7 +322,7 @@ class Walk:
         words = row.missing or "no value at this station" if unassessed else row.restore
         return Limit(
             row.key, row.label, shaped(row.actual, self.shape), shaped(row.allowed, self.shape), shaped(margin, self.shape), state,
-            row.unit, row.upper, words, row.input, row.note,
+            row.unit, bool(np.all(row.upper)), words, row.input, row.note,
         )  # fmt: skip
 
     @cached_property
@@ -384,10 +365,6 @@ class Walk:
         from cycle.referee import report
 
         return report(self.march)
-
-
-_SEARCH = {"combustor.equivalence_ratio": 3.0, "combustor.fuel_air_ratio": 0.5, "combustor.exit_total_temperature": 5000.0}
-"""Where the search for the largest heat ends, SI."""
 
 
 def solve(case: Case, changes: Mapping[str, ArrayLike] | None = None) -> Walk:

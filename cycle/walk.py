@@ -5,20 +5,24 @@ Points that fail drop out where they fail; the rest go on. Nothing here knows a 
 
 from __future__ import annotations
 
-from collections.abc import Callable, Mapping
+from collections.abc import Callable, Mapping, Sequence
 from dataclasses import dataclass, replace
 from functools import partial
 
 import numpy as np
 
 from cycle.arrays import Array, Codes
-from cycle.flowpath import assembly, combustor, flight, inlet, nozzle
+from cycle.flowpath import assembly, combustor, flight, inlet, isolator, nozzle, viscous
 from cycle.flowpath.setting import Setting
 from cycle.flowpath.stream import SOLVED, Process, Step, Steps, Stream
+from cycle.flowpath.viscous import VISCOUS
 from cycle.gas.base import Gas
 from cycle.gas.frozen import FrozenGas
 from cycle.gas.state import scatter
 from cycle.quantities import MODES
+
+RELEASED = "composition released"
+"""Process in which a composition that the inlet held goes to equilibrium ahead of the burner."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -74,11 +78,8 @@ class March:
         return next((r for r in self.records if r.process.name == name), None)
 
     def stations(self) -> dict[str, Record]:
-        """Station name -> the record that first reached it, in order along the stream."""
-        found: dict[str, Record] = {}
-        for record in self.records:
-            found.setdefault(record.process.end, record)
-        return dict(sorted(found.items(), key=lambda item: int(item[0])))
+        """Station name -> the record that first reached it, behind its friction at the inlet throat, in order along the stream."""
+        return _stations(self.records)
 
     def ambient_pressure(self, points: Codes) -> Array:
         """Ambient pressure of `points`, Pa; NaN for a rig, which has none."""
@@ -88,12 +89,16 @@ class March:
         return record.stream.state.pressure[np.searchsorted(record.index, points)]
 
 
+def _stations(records: Sequence[Record]) -> dict[str, Record]:
+    found: dict[str, Record] = {}
+    for record in records:
+        if record.process.name == VISCOUS:
+            found[record.process.end] = record
+        found.setdefault(record.process.end, record)
+    return dict(sorted(found.items(), key=lambda item: int(item[0])))
+
+
 Part = Callable[[Stream, Setting], Step | Steps | None]
-
-
-def _as_station_3(stream: Stream, setting: Setting) -> Step:
-    """Without an isolator the burner entry is the inlet throat."""
-    return Step(stream, Process("isolator", "2", "3"), np.zeros(setting.size, np.int64))
 
 
 def _burn(stream: Stream, setting: Setting) -> Step:
@@ -111,6 +116,16 @@ def _to_expansion(stream: Stream, setting: Setting) -> Step | None:
     if not setting.constant_gamma:
         return None
     return combustor.gas_change(stream, combustor.expansion_cp(setting), "4")
+
+
+def _release(station: str) -> Part:
+    def release(stream: Stream, setting: Setting) -> Step | None:
+        released = stream if setting.constant_gamma else combustor.burner_gas(stream, setting)
+        if released is stream:
+            return None
+        return Step(released, Process(RELEASED, station, station), np.zeros(setting.size, np.int64))
+
+    return release
 
 
 def _freeze(station: str) -> Part:
@@ -134,16 +149,16 @@ def _entry(setting: Setting) -> list[tuple[str, Part]]:
 def _to_burner_exit(setting: Setting) -> list[tuple[str, Part]]:
     """From station 2 (or a rig's 3) to 4."""
     if setting.choices["combustor.process"] == "duct":
-        return [("gas change", _to_combustion("2")), ("duct", assembly.duct)]
+        return [("gas change", _to_combustion("2")), (RELEASED, _release("2")), ("duct", isolator.ahead_of(assembly.duct))]
     at_3 = setting.choices["start"] == "entry" and setting.choices["entry.station"] == "3"
-    diffuser = assembly.diffuser if setting.has("nozzle.throat_area") else _as_station_3
-    isolator: list[tuple[str, Part]] = [] if at_3 else [("isolator", diffuser)]
-    return [*isolator, ("gas change", _to_combustion("3")), ("burner", _burn)]
+    diffuser = assembly.diffuser if setting.has("nozzle.throat_area") else isolator.straight
+    ahead: list[tuple[str, Part]] = [] if at_3 else [("isolator", diffuser)]
+    return [*ahead, ("gas change", _to_combustion("3")), (RELEASED, _release("3")), ("burner", _burn)]
 
 
 def _parts(setting: Setting) -> list[tuple[str, Part]]:
-    """The processes that this case's stream goes through, in order, after it has entered."""
-    parts = [*_entry(setting), *_to_burner_exit(setting)]
+    """The processes that this case's stream goes through behind the inlet, in order."""
+    parts = _to_burner_exit(setting)
     if setting.choices["nozzle.exit"] == "absent":
         return parts
     parts += [("gas change", _to_expansion), ("frozen chemistry", _freeze("4"))]
@@ -157,6 +172,10 @@ def march(setting: Setting) -> March:
     entering = {"flight": flight.flight, "entry": flight.entry}[setting.choices["start"]]
     walked = _Walked(setting)
     walked.take(setting.choices["start"], entering)
+    for name, part in _entry(setting):
+        walked.take(name, partial(_continue, walked, part))
+    if setting.choices.get("inlet.viscous", "none") != "none":
+        walked.take(VISCOUS, lambda s: viscous.loss(walked.stream, s, walked.ambient()))
     for name, part in _parts(setting):
         walked.take(name, partial(_continue, walked, part))
     if setting.choices["nozzle.exit"] != "absent":
@@ -230,13 +249,14 @@ class _Walked:
             return
         entered = np.flatnonzero(found.steps[0].status == SOLVED)
         solved = np.flatnonzero(np.all([s.status == SOLVED for s in found.steps], axis=0))
+        own = _stations(self.records)
         for i, record in enumerate(self.records):
             stream = record.stream
             if found.captured is not None:
                 flow = stream.mass_flow.copy()
                 flow[np.searchsorted(record.index, self.alive[entered])] *= found.captured[entered]
                 stream = replace(stream, mass_flow=flow)
-            if record.process.end in found.replaced:
+            if record.process.end in found.replaced and own[record.process.end] is record:
                 at = np.searchsorted(record.index, self.alive[solved])
                 new = found.replaced[record.process.end].take(solved)
                 stream = _with_points(stream, at, new)

@@ -118,7 +118,13 @@ def _inlet(rng: Rng, flight: float) -> Case:
 
 def _isolator(rng: Rng) -> Case:
     own = {"length": between(rng, 0.2, 2.0), "hydraulic_diameter": between(rng, 0.03, 0.2)}
-    return own | pick(rng, ({}, {"momentum_thickness": between(rng, 1e-4, 2e-3), "shape": pick(rng, ("circular", "rectangular"))}))
+    own |= pick(rng, ({}, {"momentum_thickness": between(rng, 1e-4, 2e-3), "shape": pick(rng, ("circular", "rectangular"))}))
+    apart = np.random.default_rng(int(1e9 * own["length"]))  # leaves what is drawn behind it as it was
+    if own.get("shape") == "rectangular":
+        own |= pick(apart, ({}, {"width": between(apart, 0.1, 1.0)}, {"height": between(apart, 0.03, 0.2)}))
+    if "momentum_thickness" not in own:
+        own |= pick(apart, ({}, {"boundary_layer_length": between(apart, 0.3, 5.0)}))
+    return own | pick(apart, ({}, {}, {"friction_coefficient": between(apart, 5e-4, 6e-3)}))
 
 
 def _heat(rng: Rng, most: float, total: float) -> Case:
@@ -204,15 +210,34 @@ def _nozzle(rng: Rng, equilibrium: bool, throat: bool, rig: bool) -> Case:
     return found
 
 
+def _throat_friction(inlet: Case, mach: float) -> Case:
+    """Friction at the throat of an inlet by geometry now and then; leaves what is drawn behind it as it was."""
+    apart = np.random.default_rng(int(1e9 * mach))
+    if not {"ramp", "cone", "isentropic_ramp"} & set(inlet):
+        return {}
+    ways: tuple[Case, ...] = ({}, {}, {"viscous_recovery": between(apart, 0.6, 1.0)}, {"viscous_efficiency": between(apart, 0.97, 1.0)})
+    return pick(apart, ways)
+
+
 def _duct_engine(rng: Rng, model: str) -> Case:
     flight = _flight(rng, 4.0, 11.0)
     capture = between(rng, 0.05, 0.8)
     case = {"flight": flight, "inlet": _inlet(rng, flight["mach"]), "combustor": _duct(rng, capture, _total(flight["mach"]))}
+    case["inlet"] |= _throat_friction(case["inlet"], flight["mach"])
     if rng.random() < 0.5:
         case["isolator"] = _isolator(rng)
     case["nozzle"] = _nozzle(rng, model == "equilibrium", False, False)
     mode = pick(rng, (*["auto"] * 8, "supersonic", "thermal-throat"))
-    return case | {"engine": {"capture_area": capture, "mode": mode}}
+    return _round_lip(case | {"engine": {"capture_area": capture, "mode": mode}})
+
+
+def _round_lip(case: Case) -> Case:
+    """The lip of a cone is the circle of its capture area."""
+    inlet = case["inlet"]
+    if "cone" in inlet and "lip_y" in inlet:
+        scale = math.sqrt(case["engine"]["capture_area"] / math.pi) / inlet["lip_y"]
+        inlet |= {key: scale * inlet[key] for key in ("lip_x", "lip_y")}
+    return case
 
 
 def _duct_rig(rng: Rng, model: str) -> Case:
@@ -245,13 +270,9 @@ def _normal_shock(rng: Rng, model: str) -> Case:
     flight = _flight(rng, 2.5, 4.5)
     inlet = _by_geometry(rng, flight["mach"]) | {"terminal_shock": True}
     nozzle = _nozzle(rng, model == "equilibrium", True, False) | {"throat": "sized"}
-    return {
-        "flight": flight,
-        "inlet": inlet,
-        "combustor": _at_rest_burner(rng, _total(flight["mach"])),
-        "nozzle": nozzle,
-        "engine": {"capture_area": between(rng, 0.1, 0.8)},
-    }
+    burner = _at_rest_burner(rng, _total(flight["mach"]))
+    engine = {"capture_area": between(rng, 0.1, 0.8)}
+    return _round_lip({"flight": flight, "inlet": inlet, "combustor": burner, "nozzle": nozzle, "engine": engine})
 
 
 def random_flowpath(seed: int) -> Case:

@@ -90,7 +90,7 @@ GEOMETRIES = {
     "ramps, shock train": (built(THREE, DUCT, 6.0, 0.5, "constant-gamma"), "scramjet-shock-train"),
     "ramps of given lengths": (built(LENGTHS, DUCT, 8.0, 0.4), "scramjet"),
     "contraction, planar duct": (built(TWO, PLANAR, 8.0, 0.5), "scramjet"),
-    "no cowl shock, shock train": (built(OPEN, DUCT, 6.0, 0.9), "scramjet-shock-train"),
+    "lip along the ramp, shock train": (built(OPEN, DUCT, 6.0, 0.7), "scramjet-shock-train"),
     "cone": (built({"cone": {"half_angle": "12 deg"}}, DUCT, 7.0, 0.4, "frozen"), "scramjet"),
     "cone, cowl": (built(CONE, CONSTANT_AREA, 8.0, 0.5), "scramjet"),
     "performance, duct": (built(BY_PERFORMANCE, DUCT, 7.0, 0.4), "scramjet"),

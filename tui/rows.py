@@ -57,12 +57,12 @@ def _written(case: Case, table: str) -> list[Row]:
 
 
 def cell_changes(case: Case, key: str, value: Any) -> dict[str, object]:
-    """What an edit of one cell changes: the cell, and those that follow from it.
+    """What an edit of one input or cell changes: it, and those that follow from it.
 
     Parameters: case; key, that of any input; value, as typed, None to take it back. Returns: key -> value.
     """
     place = place_of(key)
-    follow = _FOLLOW.get((place[0], place[2])) if place is not None else None
+    follow = _FOLLOW.get((place[0], place[2]) if place is not None else ("", key))
     return {key: value, **(follow(case, key, value) if follow is not None else {})}
 
 
@@ -87,9 +87,24 @@ def _perimeters(case: Case, key: str, value: Any) -> dict[str, object]:
     return {k: value for i in range(len(rows)) if (k := cell_key(AREA, i + 1, "perimeter")) != key}
 
 
+def _lip(case: Case, key: str, value: Any) -> dict[str, object]:
+    """A cone's lip and its capture area, each with the other."""
+    from cycle.case.moves import lip_follows
+    from cycle.quantities import INPUT
+
+    try:
+        number = None if value is None else read(value, INPUT[key].unit)
+    except UnitError:
+        return {}
+    follows = lip_follows(case, key, number) if number is not None and number > 0.0 else {}
+    return {name: value for name, value in follows.items() if name in case.given}
+
+
 _FOLLOW: dict[tuple[str, str], Callable[[Case, str, Any], dict[str, object]]] = {
     (INJECTOR, "share"): _shares,
     (AREA, "perimeter"): _perimeters,
+    ("", "inlet.lip_y"): _lip,
+    ("", "engine.capture_area"): _lip,
 }
 
 

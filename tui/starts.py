@@ -111,8 +111,14 @@ _LIP: dict[str, Callable[[Case, list[float]], Changes]] = {"ramp": _ramp_lip, "c
 
 def _isolator(case: Case, found: Figures | None) -> Changes:
     """A round one of the area of station 2."""
-    diameter = float(f"{(4.0 * _area(found, '2', 0.01) / 3.141592653589793) ** 0.5:.3g}")
-    return {"isolator.length": float(f"{STRETCH * diameter:.3g}"), "isolator.hydraulic_diameter": diameter}
+    diameter = (4.0 * _area(found, "2", 0.01) / 3.141592653589793) ** 0.5
+    return {"isolator.length": float(f"{STRETCH * diameter:.3g}")}
+
+
+def _side(case: Case, found: Figures | None) -> Changes:
+    """A square one, unless a hydraulic diameter says its sides."""
+    known = case.value("isolator.hydraulic_diameter") is not None
+    return {} if known else {"isolator.width": float(f"{_area(found, '2', 0.01) ** 0.5:.3g}")}
 
 
 def _duct(case: Case, found: Figures | None) -> Changes:
@@ -141,11 +147,13 @@ STARTS: dict[tuple[str, str], Start] = {
     ("inlet.quality", "diffuser_efficiency"): _end,
     ("inlet.quality", "total_pressure_recovery"): _end,
     ("inlet.quality", "military_recovery"): _end,
+    ("inlet.quality", "viscous_correlation"): _end,
     ("inlet.compression", "ramp"): _ramps,
     ("inlet.compression", "cone"): _cone,
     ("inlet.compression", "isentropic_ramp"): _curved,
     ("inlet.lip", "lip"): _lip,
     ("isolator.size", "length"): _isolator,
+    ("isolator.shape", "rectangular"): _side,
     ("combustor.process", "duct"): _duct,
     ("combustor.process", "pressure-loss"): _loss,
     ("combustor.section", "planar"): _width,

@@ -2,11 +2,13 @@
 
 from __future__ import annotations
 
+import math
 from collections.abc import Mapping
 from dataclasses import replace
 from typing import TYPE_CHECKING
 
 from cycle.case.case import Case
+from cycle.case.joint import has_lip_circle, lip_circle
 from cycle.case.rows import ROW_RULES, view
 from cycle.case.rules import bounds
 from cycle.errors import CaseError, Fault, UnitError, shown
@@ -24,8 +26,8 @@ def check_batch(case: Case, values: Mapping[str, ArrayLike | str]) -> tuple[Case
     replaces the group, as in `Case.replace`.
     Returns: the case with the first element of each array as its own value, so that its choices hold for the batch; and
     key -> float64 array (SI, own shape, not broadcast) for these keys and for those that follow them.
-    Errors: CaseError with every fault: not a number input, not numeric, empty, NaN, infinite, out of bounds, or rows that do
-    not fit each other.
+    Errors: CaseError with every fault: not a number input, not numeric, empty, NaN, infinite, out of bounds, rows that do
+    not fit each other, or a cone's lip that does not fit the capture area.
     """
     file = case.path or case.name
     arrays: dict[str, Array] = {}
@@ -46,8 +48,24 @@ def check_batch(case: Case, values: Mapping[str, ArrayLike | str]) -> tuple[Case
     for entry in INPUTS:
         if entry.follows in arrays and entry.key in chosen.numbers and entry.key not in chosen.given:
             arrays[entry.key] = arrays[entry.follows]
+    if has_lip_circle(chosen.choices) and "inlet.lip_y" in arrays and "engine.capture_area" not in {*chosen.given, *arrays}:
+        arrays["engine.capture_area"] = math.pi * arrays["inlet.lip_y"] ** 2
     _check_rows(file, chosen, arrays)
+    _check_lip(file, chosen, arrays)
     return chosen, arrays
+
+
+def _check_lip(file: str, case: Case, arrays: Mapping[str, Array]) -> None:
+    """Hold every element of a cone's lip and capture area to each other; arrays that do not fit each other are not compared."""
+    pair = [arrays.get(key, case.numbers.get(key)) for key in ("inlet.lip_y", "engine.capture_area")]
+    if pair[0] is None or pair[1] is None:
+        return
+    try:
+        faults = [replace(fault, file=file) for fault in lip_circle(case.choices, *pair)]
+    except ValueError:
+        return
+    if faults:
+        raise CaseError(faults)
 
 
 def _check_rows(file: str, case: Case, arrays: Mapping[str, Array]) -> None:

@@ -3,11 +3,12 @@
 from __future__ import annotations
 
 import difflib
+import math
 from collections.abc import Callable, Iterator, Mapping
 from dataclasses import dataclass, replace
 from typing import TYPE_CHECKING, Any
 
-from cycle.case.joint import JOINT_RULES, Facts
+from cycle.case.joint import JOINT_RULES, Facts, has_lip_circle
 from cycle.case.rows import cells, place
 from cycle.case.rules import Resolved, bounds, resolve
 from cycle.errors import MOST_FAULTS, CaseError, Fault, shown
@@ -141,6 +142,8 @@ def _content(values: Mapping[str, Any], resolved: Resolved) -> Content:
                 numbers[entry.key] = float(value)
         elif entry.kind == "rows" and entry.key in resolved.applicable:
             numbers.update(cells(entry.key, values.get(entry.key, [])))
+    if has_lip_circle(resolved.choices) and "engine.capture_area" not in values:
+        numbers["engine.capture_area"] = math.pi * numbers["inlet.lip_y"] ** 2
     fractions = dict(values.get("air.mole_fractions", {}))
     total = sum(fractions.values())
     return Content(

@@ -2,8 +2,10 @@
 
 from __future__ import annotations
 
+import math
 from collections.abc import Iterator, Mapping, Sequence
 from dataclasses import dataclass
+from typing import Any
 
 from cycle.case.rows import ROW_RULES, TABLES, place
 from cycle.case.rules import Choices, bounds, in_case, outside
@@ -90,6 +92,51 @@ def _lip(facts: Facts) -> Iterator[Fault]:
         yield Fault("", place("inlet.ramp", row, "length"), "needed with inlet.lip_x and inlet.lip_y", "none", "the ramp's length")
 
 
+LIP_CIRCLE = 0.01
+"""Relative difference of the capture area from the circle of the lip that typed digits explain; common practice."""
+_LIP_KEYS = ("inlet.lip_y", "engine.capture_area")
+
+
+def has_lip_circle(choices: Choices) -> bool:
+    """Whether the capture area is the circle of a cone's lip. Parameters: choices of a case."""
+    return choices.get("inlet.lip") == "lip" and choices.get("inlet.compression") == "cone"
+
+
+def lip_circle(choices: Choices, radius: Any, area: Any) -> Iterator[Fault]:
+    """The fault of a capture area that is not the circle of the cone's lip.
+
+    Parameters: choices of a case; radius of the lip, m, and capture area, m2, numbers or arrays. A half cone and other parts of
+    a circle are no inlet of this model.
+    """
+    circle = math.pi * radius**2
+    wrong = abs(area - circle) > LIP_CIRCLE * circle
+    if not has_lip_circle(choices) or not (wrong.any() if hasattr(wrong, "any") else wrong):
+        return
+    if hasattr(wrong, "any"):
+        given, allowed = "some points", "pi inlet.lip_y^2 at every point"
+    else:
+        given = f"{area:.5g} m2 with inlet.lip_y = {radius:.5g} m"
+        allowed = f"{circle:.5g} m2, or inlet.lip_y = {math.sqrt(area / math.pi):.5g} m"
+    yield Fault("", "engine.capture_area", "not the circle of the cone's lip", given, allowed)
+
+
+def _cone_lip(facts: Facts) -> Iterator[Fault]:
+    radius, area = (facts.number(key) for key in _LIP_KEYS)
+    if radius is not None and area is not None and _LIP_KEYS[1] in facts.values:
+        yield from lip_circle(facts.choices, radius, area)
+
+
+def _isolator(facts: Facts) -> Iterator[Fault]:
+    """A rectangle has two sides: the area at station 2 gives one of them. A diffuser's shock has no friction."""
+    sides = ("isolator.width", "isolator.height", "isolator.hydraulic_diameter")
+    if facts.choices.get("isolator.shape") == "rectangular" and not any(key in facts.values for key in sides):
+        yield Fault("", "isolator.shape", "a rectangle has one side stated", "none", "isolator.width or isolator.height")
+    friction = facts.number("isolator.friction_coefficient")
+    if facts.choices.get("nozzle.throat_size") == "throat_area" and friction is not None and friction > 0.0:
+        allowed = "0 with nozzle.throat_area"
+        yield Fault("", "isolator.friction_coefficient", "a diffuser with a shock in it has no friction here", f"{friction:.6g}", allowed)
+
+
 def _perimeter(facts: Facts) -> Iterator[Fault]:
     stated = [key for key in ("combustor.section", "combustor.width") if key in facts.values]
     if stated and any("perimeter" in row for row in facts.rows("combustor.area")):
@@ -147,5 +194,8 @@ def _in_flight(facts: Facts) -> Iterator[Fault]:
             yield Fault("", key, "out of bounds in flight", f"{format_number(value, 8)} {si_unit(entry.unit)}", bounds(bounded))
 
 
-JOINT_RULES = (_fractions, _throat, _given_throat, _freezing, _mode, _lip, _rows, _perimeter, _fuel, _formula, corridor, _in_flight)
+JOINT_RULES = (
+    _fractions, _throat, _given_throat, _freezing, _mode, _lip, _cone_lip, _isolator, _rows, _perimeter, _fuel, _formula, corridor,
+    _in_flight,
+)  # fmt: skip
 """Rules that join several values; each takes Facts and yields faults."""

@@ -2,11 +2,12 @@
 
 from __future__ import annotations
 
+import math
 from collections.abc import Mapping
 from dataclasses import dataclass
 
 from cycle.case.case import Case
-from cycle.case.joint import Facts, corridor
+from cycle.case.joint import Facts, corridor, has_lip_circle
 from cycle.case.rows import ROW_RULES, other_shares, view
 from cycle.case.rules import bounds, outside
 from cycle.quantities import INPUTS, cell_key, split_cell
@@ -29,8 +30,9 @@ def moved(case: Case, asked: Mapping[str, float]) -> Moved | Refusal:
     """The numbers that change when some do.
 
     Parameters: case; asked, key of a number input, or of a cell of a row that is there -> value (SI).
-    Returns: key -> value of these and of those that follow: inputs that take another one's value when absent, and the shares of the other
-    injectors. A Refusal where a value is out of bounds, the rows do not fit each other or the corridor is upside down.
+    Returns: key -> value of these and of those that follow: inputs that take another one's value when absent, the shares of the other
+    injectors, and what a cone's lip and its capture area are to each other. A Refusal
+    where a value is out of bounds, the rows do not fit each other or the corridor is upside down.
     Errors: KeyError where a key is none of a number input.
     """
     for key, value in asked.items():
@@ -39,7 +41,8 @@ def moved(case: Case, asked: Mapping[str, float]) -> Moved | Refusal:
             raise KeyError(key)
         if outside(entry, value):
             return Refusal("bound", bounds(entry))
-    changes = {k: part for key, value in asked.items() for k, part in _shares(case, key, value).items()} | dict(asked)
+    follow = (part for key, value in asked.items() for part in (_shares(case, key, value), lip_follows(case, key, value)))
+    changes = {k: v for part in follow for k, v in part.items()} | dict(asked)
     for other in INPUTS:
         if other.follows in changes and other.key in case.numbers and other.key not in (*case.given, *asked):
             changes[other.key] = changes[other.follows]
@@ -67,3 +70,18 @@ def _shares(case: Case, key: str, value: float) -> Moved:
         return {}
     rows = case.rows[_SHARE[0]]
     return {cell_key(_SHARE[0], i + 1, "share"): part for i, part in other_shares(rows, parts[1] - 1, value).items()}
+
+
+def lip_follows(case: Case, key: str, value: float) -> Moved:
+    """What moves with a cone's lip radius or capture area: the area is the circle of the lip, and another area is the same shape, larger.
+
+    Parameters: case; key of an input; value, its new one (SI), above 0. Returns: key -> value of the others; none for another key or inlet.
+    """
+    if not has_lip_circle(case.choices):
+        return {}
+    if key == "inlet.lip_y":
+        return {"engine.capture_area": math.pi * value**2}
+    if key == "engine.capture_area":
+        scale = math.sqrt(value / math.pi) / case.numbers["inlet.lip_y"]
+        return {name: scale * case.numbers[name] for name in ("inlet.lip_x", "inlet.lip_y")}
+    return {}

@@ -107,12 +107,13 @@ def ramp_lengths(shape: Shape) -> Array:
 
 
 def clearance(shape: Shape, turns: Array) -> Array:
-    """Distance of the lip from the last ramp, across the stream along it, (N,), m; negative under the ramp.
+    """Distance of the lip from the nearest ramp, across the stream along that ramp, (N,), m; negative under a ramp.
 
-    shape: `Shape`. turns: (n, N), rad. Source: plane geometry.
+    shape: `Shape`. turns: (n, N), rad, none negative, so that the ramps are the highest of their own lines wherever the lip stands.
+    Source: plane geometry.
     """
-    ramp = turns.sum(0)
-    across: Array = (shape.lip_y - shape.corner_y[-1]) * np.cos(ramp) - (shape.lip_x - shape.corner_x[-1]) * np.sin(ramp)
+    along = np.cumsum(turns, axis=0)
+    across: Array = np.min((shape.lip_y - shape.corner_y) * np.cos(along) - (shape.lip_x - shape.corner_x) * np.sin(along), axis=0)
     return across
 
 

@@ -19,6 +19,32 @@ _KORKEGI_BREAK = 4.5
 _PEAK_WIDTH = 1.0e-8
 
 
+class Span(NamedTuple):
+    """Lowest and highest value of what a correlation was measured at."""
+
+    low: float
+    high: float
+
+
+class ShockTrainData(NamedTuple):
+    """Span of the Mach number ahead of the train and of the Reynolds number on the momentum thickness there, and their source."""
+
+    mach: Span
+    reynolds: Span
+    source: str
+
+
+SHOCK_TRAIN_DATA = {
+    "circular": ShockTrainData(Span(1.5, 2.7), Span(5e3, 6e4), "Waltrup and Billig, AIAA Journal 11 (1973) 1404; the span from memory"),
+    "rectangular": ShockTrainData(Span(1.5, 2.7), Span(5e3, 6e4), "that of circular ducts, from memory; its own is not known here"),
+}
+"""Section -> what `shock_train_length` was measured at. A margin about it is a question of data, not of the engine."""
+
+
+MACH_LOSS_DATA = Span(0.3, 0.7)
+"""M3/M0 for which `mach_loss_efficiency` is commonly drawn; from memory, least surely of all here."""
+
+
 class Compression(NamedTuple):
     """Adiabatic compression, (N,) each, 1: p3/p0, pt3/pt0, kinetic-energy efficiency, and Mach number after it."""
 

@@ -15,7 +15,7 @@ from cycle.flow import inlet_shape, states
 from cycle.flow.duct.layout import AreaLaw, Injectors, Supply, Walls
 from cycle.flow.duct.solution import MODES as DUCT_MODES
 from cycle.flow.duct.solution import STATUSES as DUCT_STATUSES
-from cycle.flowpath import back_pressure, combustor, duct_limits, geometric_throat, inlet_geometry, nozzle
+from cycle.flowpath import back_pressure, combustor, duct_limits, geometric_throat, inlet_geometry, isolator, nozzle
 from cycle.flowpath import expansion as widening
 from cycle.flowpath.duct import Flow, Isolator, solve_duct
 from cycle.flowpath.inlet_geometry import Inlet, Internal
@@ -46,7 +46,7 @@ def _internal(setting: Setting) -> Internal:
     shock = np.ones(setting.size) if setting.choices.get("inlet.terminal") == "terminal_shock" else None
     contraction = setting["inlet.internal_contraction"] if setting.has("inlet.internal_contraction") else None
     throat = setting["inlet.throat_area"] if setting.has("inlet.throat_area") else None
-    return Internal(turn, throat_area=throat, contraction=contraction, shock_area_ratio=shock)
+    return Internal(turn, throat_area=throat, contraction=contraction, shock_area_ratio=shock, axial=True)
 
 
 def _lip(setting: Setting) -> tuple[Array, Array] | None:
@@ -176,11 +176,11 @@ def _releasing(setting: Setting, ratio: Array) -> Array:
 
 
 def _isolator(entering: Stream, setting: Setting) -> Isolator | None:
-    if not setting.has("isolator.momentum_thickness"):
+    thickness = isolator.momentum_thickness(entering, setting) if setting.has("isolator.length") else None
+    if thickness is None:
         return None
-    section = {"circular": "circular", "rectangular": "rectangular"}[setting.choices["isolator.shape"]]
-    mu = 1.458e-6 * entering.state.temperature**1.5 / (entering.state.temperature + 110.4)
-    return Isolator(setting["isolator.length"], setting["isolator.hydraulic_diameter"], setting["isolator.momentum_thickness"], mu, section)
+    height, mu = isolator.section(setting, entering.area).height, isolator.viscosity(entering.state.temperature)
+    return Isolator(setting["isolator.length"], height, thickness, mu, setting.choices["isolator.shape"])
 
 
 def flow_of(entering: Stream, setting: Setting, ratio: Array, total_pressures: bool = False) -> Flow:
@@ -224,9 +224,9 @@ def duct(stream: Stream, setting: Setting) -> Steps:
     mode = {f"mode_{name}": (found.mode == i).astype(float) for i, name in enumerate(DUCT_MODES)}
     shared = {k: v for k, v in found.figures.items() if k in _ISOLATOR_FIGURES}
     own = {k: v for k, v in found.figures.items() if k not in _ISOLATOR_FIGURES}
-    isolator = Process("isolator", "2", "3", {**shared, **mode}, found.isolator, solves_momentum=True)
+    ahead_of_it = Process("isolator", "2", "3", {**shared, **mode}, found.isolator, solves_momentum=True)
     burner = Process("burner", "3", "4", {**own, "fuel_air_ratio": usable}, found.burner, solves_momentum=True, profile=found.rows)
-    return Steps((Step(found.entry, isolator, np.where(ahead, SOLVED, status)), Step(found.exit, burner, status)))
+    return Steps((Step(found.entry, ahead_of_it, np.where(ahead, SOLVED, status)), Step(found.exit, burner, status)))
 
 
 def _heat(entering: Stream, setting: Setting) -> Array:

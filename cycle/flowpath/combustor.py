@@ -19,7 +19,7 @@ from cycle.gas.base import Gas
 from cycle.gas.constant import ConstantGas
 from cycle.gas.equilibrium import EquilibriumGas
 from cycle.gas.frozen import FrozenGas
-from cycle.gas.state import State
+from cycle.gas.state import State, merge
 
 
 @dataclass(frozen=True, slots=True)
@@ -37,7 +37,8 @@ class Mixed:
 def burner_gas(entering: Stream, setting: Setting) -> Stream:
     """The entering stream with the gas that burns: the combustion pair at constant gamma, reacting in equilibrium.
 
-    p, T and u are kept; at constant gamma the datum of h and s moves with the pair.
+    At constant gamma p, T and u are kept and the datum of h and s moves with the pair. A composition that was held is released: it goes
+    to equilibrium at constant area. The same stream where nothing changes but at constant gamma.
     """
     gas = entering.gas
     if isinstance(gas, ConstantGas):
@@ -47,7 +48,18 @@ def burner_gas(entering: Stream, setting: Setting) -> Stream:
     reacting = gas.reacting()
     if setting.choices["combustor.excess_fuel"] == "inert":
         reacting = reacting.with_excess_inert()
-    return replace(entering, gas=reacting)
+    return _set_free(entering, reacting) if isinstance(gas, FrozenGas) else replace(entering, gas=reacting)
+
+
+def _set_free(entering: Stream, gas: Gas) -> Stream:
+    """The stream whose held composition has gone to equilibrium: mass, momentum, energy and area are kept."""
+    with np.errstate(all="ignore"):
+        impulse = entering.state.pressure + entering.flux * entering.velocity
+        found = heating.heated(gas, impulse, entering.flux, entering.total_enthalpy, entering.mach > 1.0)
+        settled = found.passes & found.state.good
+        state = merge(settled, found.state, entering.state)
+        velocity = np.where(settled, entering.flux / found.state.density, entering.velocity)
+    return Stream(gas, state, velocity, entering.mass_flow, entering.axial_factor)
 
 
 def combustion_cp(setting: Setting) -> Array:

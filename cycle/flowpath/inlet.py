@@ -1,7 +1,7 @@
 """Inlet by performance: how good the compression is, and where it ends.
 
-Every quality but one fixes the entropy at station 2 by the flight state alone; the end of compression then finds the
-state on that isentrope. The adiabatic efficiency ties both and is iterated.
+Most qualities fix the entropy at station 2 by the flight state alone; the end of compression then finds the state on that
+isentrope. The adiabatic efficiency and the viscous correlation tie both and are iterated.
 """
 
 from __future__ import annotations
@@ -82,7 +82,10 @@ def _to_contraction(flight: Stream, setting: Setting, entropy: Array) -> Ended:
     return states.at_flux(flight.gas, flight.total_enthalpy, entropy, flux, _always(critical), critical)
 
 
-_END: dict[str, Callable[[Stream, Setting, Array], Ended]] = {
+End = Callable[[Stream, Setting, Array], Ended]
+"""End of the compression on the isentrope of an entropy (N,)."""
+
+_END: dict[str, End] = {
     "pressure_ratio": _to_pressure,
     "temperature_ratio": _to_temperature,
     "exit_mach": _to_mach,
@@ -90,19 +93,41 @@ _END: dict[str, Callable[[Stream, Setting, Array], Ended]] = {
 }
 
 
-def _adiabatic(flight: Stream, setting: Setting, end: Callable[[Stream, Setting, Array], Ended]) -> Ended:
+Missed = tuple[Array, State, Flags, State]
+"""What lacks at an entropy, the end of the compression there, whether it is reached, and the state back at p0."""
+
+
+def _adiabatic(flight: Stream, setting: Setting, end: End) -> Ended:
     """(h2 - hX) = eta (h2 - h0), X at p0 with the entropy of 2. Heiser and Pratt (1994), ch. 4 (from memory).
 
-    Secant in the entropy. At constant pressure ratio and low efficiency no entropy may satisfy it: the compression asked
-    for is then beyond what this efficiency can reach.
+    At constant pressure ratio and low efficiency no entropy may satisfy it: the compression asked for is then beyond what this
+    efficiency can reach.
     """
     eta, h0 = setting["inlet.adiabatic_efficiency"], flight.state.enthalpy
 
-    def miss(entropy: Array) -> tuple[Array, State, Flags, State]:
+    def miss(entropy: Array) -> Missed:
         state, reached = end(flight, setting, entropy)
         back = flight.gas.at("sp", entropy, flight.state.pressure)
         return back.enthalpy - state.enthalpy + eta * (state.enthalpy - h0), state, reached, back
 
+    return _settled(flight, miss)
+
+
+def _viscous(flight: Stream, setting: Setting, end: End) -> Ended:
+    """Kinetic-energy efficiency by `limits.mach_loss_efficiency` of the Mach number at the end of the compression, which it moves."""
+
+    def miss(entropy: Array) -> Missed:
+        state, reached = end(flight, setting, entropy)
+        back = flight.gas.at("sp", entropy, flight.state.pressure)
+        mach = states.velocity(flight.total_enthalpy, state) / state.sound_speed
+        eta = limits.mach_loss_efficiency(flight.mach, np.minimum(np.nan_to_num(mach), flight.mach))
+        return back.enthalpy - flight.total_enthalpy + eta * 0.5 * flight.velocity**2, state, reached, back
+
+    return _settled(flight, miss)
+
+
+def _settled(flight: Stream, miss: Callable[[Array], Missed]) -> Ended:
+    """End of the compression where nothing lacks: secant in the entropy."""
     at = flight.state.entropy
     before, state, reached, _ = miss(at)
     done = np.zeros(at.shape, np.bool_)
@@ -121,6 +146,10 @@ def _adiabatic(flight: Stream, setting: Setting, end: Callable[[Stream, Setting,
     return state, reached & done
 
 
+_TIED: dict[str, Callable[[Stream, Setting, End], Ended]] = {"adiabatic_efficiency": _adiabatic, "viscous_correlation": _viscous}
+"""Qualities that need the end of the compression."""
+
+
 def inlet(flight: Stream, setting: Setting) -> Step:
     """Station 0 to 2 without heat exchange at full capture.
 
@@ -129,8 +158,8 @@ def inlet(flight: Stream, setting: Setting) -> Step:
     """
     end, quality = _END[setting.choices["inlet.end"]], setting.choices["inlet.quality"]
     with np.errstate(all="ignore"):
-        if quality == "adiabatic_efficiency":
-            state, reached = _adiabatic(flight, setting, end)
+        if quality in _TIED:
+            state, reached = _TIED[quality](flight, setting, end)
         else:
             state, reached = end(flight, setting, _ENTROPY[quality](flight, setting))
         u = states.velocity(flight.total_enthalpy, state)

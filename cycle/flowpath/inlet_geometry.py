@@ -37,6 +37,9 @@ _CODE = {name: i for i, name in enumerate(FAULT_NAMES)}
 _FACETS = 32
 """Straight pieces that stand for an isentropic ramp in its geometry."""
 
+_ALONG = 1e-9
+"""Direction within which a stream runs along the flight, rad: above the rounding of a sum of turns; no shock turns by so little."""
+
 
 @dataclass(frozen=True, slots=True)
 class Internal:
@@ -46,12 +49,14 @@ class Internal:
     the stream as it is. throat_area: isentropic contraction to that area, m2; or
     contraction: to the lip's stream area over this. shock_area_ratio: normal shock where the area
     is this multiple of the area before it, at least 1; the stream is subsonic behind it.
+    axial: whether a second shock turns what `cowl_turn` leaves, so that the stream ends in the flight direction.
     """
 
     cowl_turn: Array | None = None
     throat_area: Array | None = None
     shock_area_ratio: Array | None = None
     contraction: Array | None = None
+    axial: bool = False
 
 
 @dataclass(frozen=True, slots=True)
@@ -147,10 +152,12 @@ class _Path:
         self.direction = np.where(on, direction, self.direction)
         self.raw.append(_Raw(name, kind, self.state, self.velocity, self.direction, turn, angle, wall))
 
-    def shock(self, name: str, kind: str, turn: Array, sign: float = 1.0) -> None:
+    def shock(self, name: str, kind: str, turn: Array, sign: float | Array = 1.0) -> None:
         front = gas_shocks.oblique_shock(self.gas, self.state, self.velocity, turn)
-        self.fail(~front.attached, "detached", len(self.raw))
-        self.add(name, kind, (front.state, front.velocity, self.direction + sign * turn), turn, front.angle)
+        still = turn < _ALONG  # a point of the batch that has no such shock
+        self.fail(~(front.attached | still), "detached", len(self.raw))
+        state, velocity = merge(still, self.state, front.state), np.where(still, self.velocity, front.velocity)
+        self.add(name, kind, (state, velocity, self.direction + sign * turn), turn, front.angle)
 
     def finish(self, captured: Capture, external: int, internal: Internal, assessed: bool) -> Inlet:
         full, inside = self.arriving, captured.inside if assessed else captured.inside[:0]
@@ -204,6 +211,9 @@ def _inside_cowl(path: _Path, internal: Internal, flow: Array) -> None:
     back = path.direction if internal.cowl_turn is None else internal.cowl_turn
     if np.any(back != 0.0):
         path.shock("cowl shock", "cowl", back, -1.0)
+    left = np.where((np.abs(path.direction) > _ALONG) & (path.fault == 0), path.direction, 0.0)
+    if internal.axial and np.any(left != 0.0):
+        path.shock("second cowl shock", "cowl", np.abs(left), -np.sign(left))
     if internal.throat_area is not None:
         _contract(path, flow / internal.throat_area)
     elif internal.contraction is not None:

@@ -21,12 +21,14 @@ from cycle.gas.state import State
 _TOLERANCE = 1e-10
 _SCAN = 9
 _FASTEST = 30.0
+_ON_LIP = 1e-6
+"""Relative distance of the flight Mach number from that of shock on lip within which the shock is on the lip."""
 
 
 @dataclass(frozen=True, slots=True)
 class Bound:
-    """One upper limit of N points. key: "attached", "separation", "start" or "contraction"; stage: name of the stage, or "";
-    unit: a dimension name; actual, allowed (N,), NaN where the point has no such state."""
+    """One upper limit of N points. key: "attached", "separation", "start", "contraction" or "shock_on_lip"; stage: name of the stage,
+    or ""; unit: a dimension name; actual, allowed (N,), NaN where the point has no such state."""
 
     key: str
     stage: str
@@ -209,6 +211,21 @@ def cone_lip_mach(flight: Stream, half_angle: Array, lip_x: Array, lip_y: Array)
         return gas_cone.closeness(flight.gas, before, mach * before.sound_speed, beta, half_angle)
 
     return roots.bracketed(short, (1.0 + 1e-4) / np.sin(beta), fastest, _TOLERANCE)
+
+
+def shock_on_lip(flight: Stream, inlet: Inlet, angle: Array, lip_x: Array, lip_y: Array) -> Bound:
+    """Flight Mach number against the one at which the first external shock meets the lip.
+
+    flight: station 0. inlet: solved there, with this lip. angle: of the first ramp or of the cone, (N,), rad. lip_x, lip_y: (N,), m.
+    Returns `Bound`, NaN where shocks cross ahead of the lip: there they are steeper than the first, which meets no lip.
+    Source: as `ramp_lip_mach` and `cone_lip_mach`.
+    """
+    search = cone_lip_mach if inlet.stages[0].kind == "cone" else ramp_lip_mach
+    mach, allowed = flight.mach, search(flight, angle, lip_x, lip_y)
+    # a lip that was placed on the shock is on it to the digits of its place
+    on_it = np.abs(mach - allowed) <= _ON_LIP * allowed
+    crossed = ~on_it & (mach > allowed) & ~inlet.inside[0]
+    return Bound("shock_on_lip", "", "ratio", mach, np.where(on_it, mach, np.where(crossed, np.nan, allowed)))
 
 
 @np.errstate(all="ignore")

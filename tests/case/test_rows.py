@@ -157,7 +157,7 @@ BAD = {
     "a ramp without its length": (GEOMETRY, ('length = "0.9 m"            # along the surface\n', ""), "inlet.ramp row 1, length: needed with inlet.lip_x and inlet.lip_y: given none"),
     "sub-table as a value": (DUCT, ("exit_mach = 3.0", "exit_mach = 3.0\ncone = 3"), "inlet.cone: wrong type: given 3; allowed a table"),
     "unknown key of a sub-table": (GEOMETRY, ("[isolator]", "[inlet.cone]\nhalf_angel = 0.2\n[isolator]"), "inlet.cone.half_angel: unknown key (did you mean half_angle?): given 0.2; allowed half_angle"),
-    "half an isolator": (GEOMETRY, ('hydraulic_diameter = "8 cm"\n', ""), "isolator.hydraulic_diameter: needed with length"),
+    "half an isolator": (GEOMETRY, ('hydraulic_diameter = "8 cm"\n', 'shape = "rectangular"\n'), "isolator.shape: a rectangle has one side stated: given none; allowed isolator.width or isolator.height"),
     "thickness alone": (GEOMETRY, ('length = 0.5\nhydraulic_diameter = "8 cm"\n', "momentum_thickness = 1e-3\n"), "isolator.momentum_thickness: not used with isolator.size = none"),
     "thermal throat without a duct": (GEOMETRY, ("[nozzle]", '[engine]\nmode = "thermal-throat"\n[nozzle]'), "engine.mode: a thermal throat needs a duct: given combustor.process = constant-area"),
     "geometric throat without a throat": (GEOMETRY, ("[nozzle]", '[engine]\nmode = "geometric-throat"\n[nozzle]'), 'engine.mode: there is no throat: given nozzle.throat = none; allowed nozzle.throat = "sized" or nozzle.throat_area'),

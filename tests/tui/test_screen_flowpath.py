@@ -135,7 +135,7 @@ def test_the_walk_stays_where_an_inlet_throat_takes_its_value(duct: Case, key: s
 
 def test_every_input_of_a_flowpath_stands_at_its_component(duct: Case, throat: Case) -> None:
     assert {"inlet.ramp.1.angle", "inlet.ramp.2.length", "inlet.lip_x"} <= keys_at(duct, "1")
-    assert keys_at(duct, "2") == {"inlet.cowl_angle", "inlet.throat", "inlet.terminal"}
+    assert keys_at(duct, "2") == {"inlet.cowl_angle", "inlet.throat", "inlet.terminal", "inlet.viscous"}
     assert "isolator.length" in keys_at(duct, "3")
     assert {"combustor.area.3.area_ratio", "combustor.injector.1.x", "fuel.heating_value"} <= keys_at(duct, "4")
     assert keys_at(throat, "5") == {"nozzle.throat"}

@@ -27,6 +27,7 @@ HEADS = {
     "external compression": "external",
     "internal compression": "internal",
     "external expansion": "outside",
+    "composition released": "released",
     "frozen chemistry": "frozen",
 }
 """Names of processes over their columns where the whole one does not fit."""

@@ -1,0 +1,83 @@
+"""How much heat a solution takes: where a simple burner chokes, and where the modes of a duct end."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from dataclasses import replace
+
+import numpy as np
+
+from cycle import limits
+from cycle.account import spread
+from cycle.arrays import Array, Codes
+from cycle.flow import roots
+from cycle.flowpath import assembly, combustor, duct_limits, isolator
+from cycle.quantities import INPUT
+from cycle.walk import March
+
+_SEARCH = {"combustor.equivalence_ratio": 3.0, "combustor.fuel_air_ratio": 0.5, "combustor.exit_total_temperature": 5000.0}
+"""Where the search for the largest heat ends, SI."""
+
+
+def ends_of_modes(walked: March) -> dict[str, tuple[Array, Codes]]:
+    """The heat input, SI, at which each mode of the duct ends, (N,), and what sets it, codes of `duct_limits.CAUSES` (N,). NaN where it is
+    not known, as where the heat is no fuel ratio; {} where no point reached station 2."""
+    record = walked.named("gas change") or walked.reached("2")
+    if record is None or not record.index.size:
+        return {}
+    key, setting = limits.heat_key(walked.setting), walked.setting.take(record.index)
+    units = {"equivalence_ratio": setting.stoichiometric_ratio, "fuel_air_ratio": np.ones(record.index.size)}
+    unit = units.get(setting.choices["combustor.heat"])
+    size = walked.setting.size
+    if unit is None:
+        return dict.fromkeys(duct_limits.ENDS, (np.full(size, np.nan), np.zeros(size, np.int64)))
+    entering = combustor.burner_gas(record.stream, setting)
+    worn = isolator.worn(entering, setting)
+    found = assembly.heat_limits(entering if worn is None else worn.stream, setting, _SEARCH[key] * unit)
+    causes = {name: np.zeros(size, np.int64) for name in found}
+    for name, end in found.items():
+        causes[name][record.index] = end.cause
+    return {name: (spread(walked, record.index, end.ratio / unit), causes[name]) for name, end in found.items()}
+
+
+def words(walked: March, ends: Mapping[str, float], causes: Mapping[str, str]) -> str:
+    """The heat of a duct without a solution against that at which it has one, and what sets the limit. One point."""
+    label, _ = limits.heat_words(walked.setting)
+    most, cause = ends["unstart"], causes["unstart"]
+    if not most > 0.0:
+        return "no heat below the search's end starts it" if most == 0.0 else "the heat at which it starts is not known"
+    here = float(walked.setting[limits.heat_key(walked.setting)][0])
+    why = {"impulse": "impulse at burner entry", "isolator-length": "the shock train is longer than the isolator"}.get(cause, cause)
+    return f"{label} {here:.4g}, at most {most:.4g} ({why})" if here > most else f"{label} {here:.4g}, at least {most:.4g}"
+
+
+_SCAN = 25
+
+
+def largest_before_choking(walked: March) -> float:
+    """Largest heat input of one point before the burner chokes.
+
+    walked: a march of one point that reached the burner. NaN where nothing chokes below the end of the search. The
+    room left before choking is scanned over the input in one batch; its first change of sign is then a root.
+    """
+    entry = walked.stations()["3"]
+    before = combustor.burner_gas(entry.stream, walked.setting)
+    key = limits.heat_key(walked.setting)
+    bound = INPUT[key].upper
+    assert bound is not None
+    ceiling = min(bound, _SEARCH[key])
+    # below the entering total temperature there is no heat to add
+    floor = ceiling / 4.0 if walked.setting.choices["combustor.heat"] == "exit_total_temperature" else 0.0
+
+    def room(values: Array) -> Array:
+        points = np.zeros(values.size, np.int64)
+        many = walked.setting.take(points)
+        return combustor.choking_room(before.take(points), replace(many, numbers={**many.numbers, key: values}))
+
+    tried = np.linspace(floor, ceiling, _SCAN)
+    left = room(tried)
+    choked = np.flatnonzero(left < 0.0)
+    if not choked.size or choked[0] == 0 or not left[choked[0] - 1] >= 0.0:
+        return np.nan
+    low, high = tried[choked[0] - 1], tried[choked[0]]
+    return float(roots.bracketed(room, np.array([low]), np.array([high]), 1e-9)[0])
