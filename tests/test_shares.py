@@ -12,6 +12,7 @@ import cycle
 from cycle.case import taking
 from cycle.record import case_of, case_record
 from cycle.shares import Shares, shapley, shares, shares_in_steps
+from tests.case_files import case_file
 from tests.tui.command_support import CHOKED, DUCT, HOT, QUICK, RIG, ROOT
 
 EPSILON = 2.0**-52
@@ -119,7 +120,7 @@ def test_shares_of_any_change_close(changes: dict[str, float]) -> None:
 
 
 def test_choices_may_differ_too() -> None:
-    a, b = cycle.loads(HOT), cycle.load(ROOT / "cases" / "saltmarsh.toml")
+    a, b = cycle.loads(HOT), cycle.load(case_file("plain"))
     held(shares(a, b))
     assert a.choices["combustor.process"] != b.choices["combustor.process"]
 
@@ -134,12 +135,12 @@ def test_groups_that_only_make_sense_together_are_taken_together() -> None:
 
 
 def test_groups_that_have_no_solution_apart_are_taken_together_and_said() -> None:
-    saltmarsh, lantern = (cycle.load(ROOT / "cases" / f"{name}.toml") for name in ("saltmarsh", "lantern"))
-    found = shares(saltmarsh, lantern)
+    plain, lantern = (cycle.load(case_file(name)) for name in ("plain", "lantern"))
+    found = shares(plain, lantern)
     held(found)
     assert ("flight", "inlet") in [part.groups for part in found.parts]
     assert found.notes == ("flight and inlet are taken together: with inlet alone swapped there is no solution, choked (burner)",)
-    assert cycle.solve(taking(saltmarsh, lantern, ["inlet"])).status == "choked"
+    assert cycle.solve(taking(plain, lantern, ["inlet"])).status == "choked"
     lost = [part.groups for part in found.parts if len(part.groups) == 1]
     assert {g for (g,) in lost} == {"fuel", "combustor", "nozzle", "engine"}
 

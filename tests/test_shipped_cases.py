@@ -1,0 +1,62 @@
+"""What the shipped cases are for: the first one is safe to play with; each other one shows one thing and violates nothing else."""
+
+from __future__ import annotations
+
+from functools import cache
+from pathlib import Path
+
+import numpy as np
+import pytest
+
+import cycle
+from tui import shipped
+
+CASES = Path(__file__).resolve().parents[1] / "cases"
+FIRST = CASES / f"{shipped.FIRST}.toml"
+CLOSE = 0.1
+"""Margin below which a limit is close: common practice of this program, restated here."""
+
+
+def box() -> list[tuple[float, float]]:
+    """Mach number and equivalence ratio: the corners and edges of +-1 and +-30 % about the first case, and places inside."""
+    case = cycle.load(FIRST)
+    mach, phi = case.value("flight.mach"), case.value("combustor.equivalence_ratio")
+    corners = [(mach + a, phi * (1.0 + b)) for a in (-1.0, 0.0, 1.0) for b in (-0.3, 0.0, 0.3)]
+    inside = np.random.default_rng(20).uniform((-1.0, -0.3), (1.0, 0.3), (8, 2))
+    return corners + [(mach + a, phi * (1.0 + b)) for a, b in inside]
+
+
+@cache
+def first(mach: float, phi: float) -> cycle.Walk:
+    return cycle.solve(cycle.load(FIRST).replace({"flight.mach": mach, "combustor.equivalence_ratio": phi}))
+
+
+@pytest.mark.parametrize(("mach", "phi"), box())
+def test_the_first_case_stays_lit_and_breaks_no_limit_about_its_point(mach: float, phi: float) -> None:
+    walk = first(mach, phi)
+    assert (walk.status, walk.mode) == ("solved", "scramjet")
+    assert walk.audit.ok
+    margins = {row.key: row.margin for row in walk.limits if row.margin is not None}
+    assert {"ignition_temperature", "ignition_pressure", "thermal_choking", "corridor_low", "corridor_high"} <= set(margins)
+    assert walk.station["3"].temperature > 1000.0
+    assert [key for key, margin in margins.items() if margin < 0.0] == []
+    assert [key for key, margin in margins.items() if margin <= CLOSE] == ["ignition_temperature"]
+
+
+@pytest.mark.parametrize(("mach", "phi"), box())
+def test_the_first_case_keeps_its_shock_train_in_the_burner(mach: float, phi: float) -> None:
+    """A constant-area burner holds a pressure rise of 1 + 0.3 M3^2 up to Mach 4.5 and of 0.17 M3^2.5 above: from memory."""
+    walk = first(mach, phi)
+    before, behind = walk.station["3"], walk.station["4"]
+    held = 1.0 + 0.3 * before.mach**2 if before.mach <= 4.5 else 0.17 * before.mach**2.5
+    assert behind.pressure / before.pressure < (1.0 - CLOSE) * held
+
+
+def test_the_first_case_has_the_losses_of_a_real_engine() -> None:
+    case = cycle.load(FIRST)
+    assert case.value("combustor.equivalence_ratio") == 0.5
+    assert case.value("combustor.friction_area_ratio") > 0.0
+    assert case.value("combustor.wall_heat") > 0.0
+    assert case.value("nozzle.velocity_coefficient") == 0.98
+    assert case.value("nozzle.divergence_factor") == 0.99
+    assert first(*box()[4]).station["3"].temperature == pytest.approx(1100.0, abs=30.0)
