@@ -60,3 +60,40 @@ def test_the_first_case_has_the_losses_of_a_real_engine() -> None:
     assert case.value("nozzle.velocity_coefficient") == 0.98
     assert case.value("nozzle.divergence_factor") == 0.99
     assert first(*box()[4]).station["3"].temperature == pytest.approx(1100.0, abs=30.0)
+
+
+SHOWS: dict[str, tuple[str, str, set[str]]] = {
+    "bench-three": ("solved", "rig", set()),
+    "heron": ("solved", "scramjet", {"ignition_temperature"}),
+    "lantern": ("solved", "scramjet", set()),
+    "lighthouse": ("solved", "ramjet-supercritical", set()),
+    "narrows": ("choked", "none", {"thermal_choking"}),
+    "saltmarsh": ("solved", "scramjet", set()),
+    "sandbar": ("solved", "ramjet-critical", set()),
+    "breakwater": ("solved", "scramjet", {"start"}),
+    "tidegate": ("solved", "ramjet-thermal-throat", {"start"}),
+}
+"""Shipped case -> its status, its mode, and the limits it violates: what it is about, and nothing else."""
+
+
+def test_the_table_has_every_shipped_case() -> None:
+    assert set(SHOWS) == set(shipped.names())
+
+
+@pytest.mark.parametrize("name", SHOWS)
+def test_a_shipped_case_violates_only_what_it_is_about(name: str) -> None:
+    status, mode, violated = SHOWS[name]
+    walk = cycle.solve(cycle.load(CASES / f"{name}.toml"))
+    assert (walk.status, walk.mode) == (status, mode)
+    assert {row.key for row in walk.limits if row.margin is not None and row.margin < 0.0} == violated
+
+
+@pytest.mark.parametrize("name", [name for name, (_, _, violated) in SHOWS.items() if violated])
+def test_the_notes_say_which_limit_is_violated(name: str) -> None:
+    words = {
+        "ignition_temperature": "self-ignition is the only limit violated",
+        "thermal_choking": "Thermal choking is the only limit violated",
+    }
+    notes = " ".join(cycle.load(CASES / f"{name}.toml").notes.split())
+    for key in SHOWS[name][2]:
+        assert words.get(key, "") in notes
