@@ -38,7 +38,7 @@ def change(value: float, output: Output, base: float, system: str) -> str:
 def sensitivity_blocks(found: Sensitivities, system: str) -> list[Block]:
     """Sensitivities as blocks, the largest first. system: "si" or "us"."""
     outputs = [OUTPUT[key] for key in found.outputs if key not in _WITHOUT_COLUMN]
-    heading = Heading(f"Sensitivities: what one step up of each input gives, by {outputs[0].label}")
+    heading = Heading(f"Sensitivities: what one step of each input gives, by {outputs[0].label}")
     if found.why_not:
         return [heading, Lines((f"Not assessed: {found.why_not}",))]
     ranked = found.ranked()
@@ -50,7 +50,8 @@ def sensitivity_blocks(found: Sensitivities, system: str) -> list[Block]:
 
 def _step(row: Sensitivity, system: str) -> str:
     unit = display_unit(row.input.unit, system, row.input.key)
-    return f"{format_number(row.step / unit.factor, 3)} {unit.label}".strip()
+    sign = "" if row.step < 0.0 else "+"
+    return f"{sign}{format_number(row.step / unit.factor, 3)} {unit.label}".strip()
 
 
 def _changes(found: Sensitivities, row: Sensitivity, outputs: Iterable[Output], system: str) -> Iterable[str]:

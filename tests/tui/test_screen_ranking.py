@@ -76,7 +76,7 @@ async def test_one_sided_and_left_out_inputs_say_so(path: Path) -> None:
         await weighed(driver)
         await driver.press("end")
         await to_input(driver, "nozzle.divergence_factor")
-        assert answer(driver).startswith("+0.005 (below only): thrust ")
+        assert answer(driver).startswith("-0.005 (below only): thrust -")
         await driver.press("home")
         await to_input(driver, "limits.dynamic_pressure_low")
         assert answer(driver).startswith("not varied: a threshold of a limit")
