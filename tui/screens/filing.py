@@ -115,6 +115,9 @@ def _again(now: Session, record: Record) -> Session | None:
     if not session.is_change(change):
         return None
     case = session.apply(now.case, change)
+    back = record.get("back")
+    if isinstance(back, dict):  # a session that saved in between had set it aside, and the file has it no more
+        case = case.replace({key: value for key, value in back.items() if key not in case.spelled})
     return session.edited(now, case, items.describe(now.case, case, change, now.system))
 
 
