@@ -9,6 +9,10 @@ import numpy as np
 import pytest
 
 import cycle
+from cycle.case import template
+from cycle.declarations import Optimistic
+from cycle.inputs import FLATTERED, OPTIMISTIC
+from cycle.quantities import INPUT
 from tui import shipped
 
 CASES = Path(__file__).resolve().parents[1] / "cases"
@@ -97,3 +101,20 @@ def test_the_notes_say_which_limit_is_violated(name: str) -> None:
     notes = " ".join(cycle.load(CASES / f"{name}.toml").notes.split())
     for key in SHOWS[name][2]:
         assert words.get(key, "") in notes
+
+
+@pytest.mark.parametrize("told", OPTIMISTIC, ids=lambda told: told.key)
+def test_how_far_a_default_flatters_is_computed_to_the_second_shown(told: Optimistic) -> None:
+    assert FLATTERED == shipped.FIRST
+    case = cycle.load(FIRST)
+    default, usual = (cycle.solve(case.replace({told.key: value})) for value in (told.default, told.usual))
+    assert default.status == usual.status == "solved"
+    assert round(usual.performance.specific_impulse - default.performance.specific_impulse) == told.change
+    assert INPUT[told.key].default == told.default
+
+
+@pytest.mark.parametrize("told", OPTIMISTIC, ids=lambda told: told.key)
+def test_the_template_says_which_defaults_are_optimistic_and_by_how_much(told: Optimistic) -> None:
+    words = " ".join(template().replace("\n#", " ").split())
+    said = f"{told.default} is optimistic: with {told.usual} the specific impulse of saltmarsh is {-told.change} s lower."
+    assert words.count(said) == 1

@@ -6,6 +6,7 @@ import textwrap
 
 from cycle.case.checking import FORMAT
 from cycle.case.rules import bounds, section_of, ways
+from cycle.inputs import FLATTERED, OPTIMISTIC
 from cycle.quantities import GROUPS, INPUTS, SECTIONS, Input
 
 _WIDTH = 100
@@ -46,7 +47,7 @@ _HEAD = """\
 # A case for ductwalk. The figures are invented, for demonstration; replace them by your own.
 # A value is a number in SI or text with a unit, such as "27 km", "1500 psf" or "15 deg".
 # A line that begins with # is not read; take the # away to use it. Where several keys say the same
-# thing, exactly one of them is given.
+# thing, exactly one of them is given. Some defaults are optimistic; each says by how much.
 """
 
 
@@ -96,7 +97,7 @@ def _comment(text: str) -> str:
 
 def _entry(entry: Input, values: dict[str, str]) -> str:
     symbol = f"{entry.symbol}: " if entry.symbol else ""
-    words = f"{symbol}{entry.meaning} [{bounds(entry)}; {_default(entry)}]{_only(entry)}"
+    words = f"{symbol}{entry.meaning} [{bounds(entry)}; {_default(entry)}]{_only(entry)}{_flattery(entry)}"
     line = f"{entry.name} = {values[entry.key]}" if entry.key in values else f"# {entry.name} = {_sample(entry)}"
     return f"{_comment(words)}\n{line}"
 
@@ -104,6 +105,14 @@ def _entry(entry: Input, values: dict[str, str]) -> str:
 def _only(entry: Input) -> str:
     """The conditions of an input as sentences."""
     return "".join(f" Only with {name} = {' or '.join(tag or 'none' for tag in tags)}." for name, tags in entry.when if name != "start")
+
+
+def _flattery(entry: Input) -> str:
+    """How far the default of an input flatters, "" where it does not."""
+    told = next((one for one in OPTIMISTIC if one.key == entry.key), None)
+    if told is None:
+        return ""
+    return f" {told.default} is optimistic: with {told.usual} the specific impulse of {FLATTERED} is {-told.change} s lower."
 
 
 def _default(entry: Input) -> str:
