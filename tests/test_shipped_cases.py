@@ -9,7 +9,7 @@ import numpy as np
 import pytest
 
 import cycle
-from cycle.case import template
+from cycle.case import differences, template
 from cycle.declarations import Optimistic
 from cycle.inputs import FLATTERED, OPTIMISTIC
 from cycle.quantities import INPUT
@@ -118,3 +118,8 @@ def test_the_template_says_which_defaults_are_optimistic_and_by_how_much(told: O
     words = " ".join(template().replace("\n#", " ").split())
     said = f"{told.default} is optimistic: with {told.usual} the specific impulse of saltmarsh is {-told.change} s lower."
     assert words.count(said) == 1
+
+
+def test_a_new_case_begins_where_the_first_one_stands() -> None:
+    new, first = cycle.loads(template()), cycle.load(FIRST)
+    assert [(key, one, other) for key, one, other in differences(new, first)] == []

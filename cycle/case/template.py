@@ -12,20 +12,23 @@ from cycle.quantities import GROUPS, INPUTS, SECTIONS, Input
 _WIDTH = 100
 
 _FLIGHT: dict[str, str] = {
-    "flight.mach": "8.0",
-    "flight.dynamic_pressure": '"50 kPa"',
+    "flight.mach": "9.5",
+    "flight.dynamic_pressure": '"60 kPa"',
     "gas.model": '"equilibrium"',
-    "inlet.kinetic_energy_efficiency": "0.975",
-    "inlet.pressure_ratio": "60.0",
-    "inlet.chemistry": '"frozen"',
+    "inlet.kinetic_energy_efficiency": "0.98",
+    "inlet.temperature_ratio": "4.75",
     "fuel.name": '"hydrogen"',
     "fuel.temperature": '"300 K"',
+    "fuel.supply_pressure": '"2 MPa"',
     "combustor.process": '"constant-area"',
-    "combustor.equivalence_ratio": "0.6",
-    "combustor.burnt_fraction": "0.92",
+    "combustor.equivalence_ratio": "0.5",
+    "combustor.burnt_fraction": "0.9",
+    "combustor.friction_area_ratio": "0.06",
+    "combustor.wall_heat": '"1.5 MW"',
     "nozzle.chemistry": '"shifting"',
-    "nozzle.exit_area_over_capture": "1.5",
-    "nozzle.velocity_coefficient": "0.985",
+    "nozzle.exit_area_over_capture": "2.0",
+    "nozzle.velocity_coefficient": "0.98",
+    "nozzle.divergence_factor": "0.99",
     "engine.capture_area": '"0.4 m^2"',
 }
 _ENTRY: dict[str, str] = {
