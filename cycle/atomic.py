@@ -1,11 +1,33 @@
-"""Files read within bounds, and written whole or not at all."""
+"""Files read within bounds, and written whole or not at all; those of the installed program are never changed."""
 
 from __future__ import annotations
 
+import errno
 import os
 import stat
 from collections.abc import Callable
 from contextlib import suppress
+
+_ROOT = os.path.dirname(os.path.dirname(os.path.realpath(__file__)))
+OWN = tuple(os.path.join(_ROOT, name) for name in ("cycle", "tui", "cases"))
+"""Folders of the installed program, without links."""
+
+
+class ReadOnly(PermissionError):  # noqa: N818 (a state of a path, not a defect)
+    """The path lies in the installed program, whose files are never written, renamed or deleted."""
+
+
+def is_own(path: str | os.PathLike[str]) -> bool:
+    """Whether a file of this name lies in a folder of the installed program. path: a last part that is a link is not followed."""
+    folder, name = os.path.split(os.path.abspath(os.fspath(path)))
+    place = os.path.join(os.path.realpath(folder), name)
+    return any(place == own or place.startswith(own + os.sep) for own in OWN)
+
+
+def refuse_own(path: str | os.PathLike[str]) -> None:
+    """Raise `ReadOnly` where a file of this name lies in a folder of the installed program. path: as of `is_own`."""
+    if is_own(path):
+        raise ReadOnly(errno.EACCES, "part of the installed program, which is read-only; give a name outside it", os.fspath(path))
 
 
 class Irregular(OSError):  # noqa: N818 (a state of a path, not a defect)
@@ -29,9 +51,10 @@ def read_file(path: str | os.PathLike[str], most: int) -> tuple[bytes, os.stat_r
 def new_file(path: str | os.PathLike[str], data: bytes) -> None:
     """Write a file that is not there yet, flushed to the disk.
 
-    Raises FileExistsError where something has that name, also where it got it a moment ago; OSError where the disk refuses: nothing
-    is then left behind.
+    Raises FileExistsError where something has that name, also where it got it a moment ago; `ReadOnly` in the installed program;
+    OSError where the disk refuses: nothing is then left behind.
     """
+    refuse_own(path)
     with open(path, "xb") as stream:
         try:
             stream.write(data)
@@ -48,8 +71,10 @@ def replace_file(target: str, data: bytes, before: Callable[[], None] | None = N
 
     target: path of a regular file or of none yet; an existing one keeps its mode. before: called when the new file is
     ready and before it takes the place of the old one; whatever it raises leaves the old one untouched. Returns the new
-    file's modification time. Raises OSError where the disk refuses; the old file is then untouched.
+    file's modification time. Raises `ReadOnly` in the installed program, OSError where the disk refuses; the old file is then
+    untouched.
     """
+    refuse_own(target)
     folder = os.path.dirname(target)
     # a name has at most 255 bytes, whatever its characters take
     start = os.fsdecode(os.fsencode(os.path.basename(target))[:200])

@@ -98,3 +98,14 @@ class Output:
     where: str = "station"
     equation: str = ""
     source: str = "definition"
+
+
+@dataclass(frozen=True, slots=True)
+class Optimistic:
+    """A default that flatters. key: of the input; default: what holds where nothing is given; usual: what an engine is more likely to
+    have, common practice; change: of specific impulse from default to usual, s, this input alone, on the case `inputs.FLATTERED`."""
+
+    key: str
+    default: float | str
+    usual: float | str
+    change: int

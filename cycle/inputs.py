@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from cycle.declarations import Group, Input, Member
+from cycle.declarations import Group, Input, Member, Optimistic
 
 _REAL = ("frozen", "equilibrium")
 _CG = (("gas.model", ("constant-gamma",)),)
@@ -385,3 +385,14 @@ GROUPS: tuple[Group, ...] = (
           (Member("divergence_factor", ("nozzle.divergence_factor",)), Member("divergence_angle", ("nozzle.divergence_angle",))),
           required=False, default="divergence_factor"),
 )  # fmt: skip
+
+FLATTERED = "saltmarsh"
+"""Shipped case on which it is computed how far a default flatters."""
+OPTIMISTIC: tuple[Optimistic, ...] = (
+    Optimistic("combustor.friction_area_ratio", 0.0, 0.1, -200),
+    Optimistic("combustor.burnt_fraction", 1.0, 0.9, -231),
+    Optimistic("nozzle.velocity_coefficient", 1.0, 0.98, -420),
+    Optimistic("nozzle.divergence_factor", 1.0, 0.98, -431),
+    Optimistic("nozzle.chemistry", "shifting", "frozen", -197),
+)
+"""Defaults that are optimistic, and by how much; a test computes the changes again."""

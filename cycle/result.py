@@ -8,7 +8,7 @@ from typing import TYPE_CHECKING, Any
 
 import numpy as np
 
-from cycle import account, emit, heat
+from cycle import account, emit, heat, noise
 from cycle import audit as auditing
 from cycle import limits as margins
 from cycle.account import spread, usable
@@ -116,7 +116,7 @@ class Walk:
 
         def potential() -> Array:
             at = next(i for i, r in enumerate(self.march.records) if r is record)
-            return self._potentials[at] if self._potentials else np.full(self.size, np.nan)
+            return noise.settled(self._potentials[at], self._thrust_scale) if self._potentials else np.full(self.size, np.nan)
 
         sources |= {
             "total_pressure": total("pressure"),
@@ -178,10 +178,12 @@ class Walk:
             "total_pressure_ratio": on(total_ratio),
             "pressure_ratio": on(lambda: after.pressure / before.pressure),
             "temperature_ratio": on(lambda: after.temperature / before.temperature),
-            "entropy_rise": on(lambda: after.entropy - before.entropy),
+            "entropy_rise": on(lambda: noise.change(after.entropy, before.entropy)),
         }
         if self._has_potential:
-            sources["thrust_potential_change"] = lambda: self._potentials[position] - self._potentials[position - 1]
+            sources["thrust_potential_change"] = lambda: noise.settled(
+                self._potentials[position] - self._potentials[position - 1], self._thrust_scale
+            )
         own: dict[str, Callable[[], Array]] = {k: partial(spread, self.march, record.index, v) for k, v in record.process.figures.items()}
         if (
             "fuel_air_ratio" in own
@@ -211,6 +213,12 @@ class Walk:
     @property
     def _has_potential(self) -> bool:
         return self.march.chain[0] == "flight"
+
+    @cached_property
+    def _thrust_scale(self) -> Array:
+        """The largest stream thrust of each point (N,), N: potentials are differences of these."""
+        thrusts = [spread(self.march, r.index, r.stream.stream_thrust) for r in self.march.records]
+        return np.asarray(noise.largest(thrusts))
 
     @cached_property
     def _performance(self) -> dict[str, Array]:
@@ -248,7 +256,8 @@ class Walk:
     def _rows(self, rows: tuple[account.Row, ...]) -> tuple[Row, ...]:
         if any(np.isnan(r.value[self.march.solved]).all() for r in rows if self.march.solved.size):
             return ()
-        return tuple(Row(r.key, r.label, shaped(r.value, self.shape), r.unit) for r in rows)
+        values = noise.rows([r.value for r in rows])
+        return tuple(Row(r.key, r.label, shaped(v, self.shape), r.unit) for r, v in zip(rows, values, strict=True))
 
     @cached_property
     def potentials(self) -> tuple[Row, ...]:

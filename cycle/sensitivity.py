@@ -32,12 +32,12 @@ LEFT_OUT: dict[str, str] = {
 class Sensitivity:
     """What a step of one input gives.
 
-    value and step: SI; side: "central" for (f(x + h) - f(x - h))/2, "above" for f(x + h) - f(x), "below" for f(x) - f(x - h),
-    "none"; changes: output -> its change for +step, SI, NaN where the case has no such figure, {} for side "none"; below and above: what
-    became of x - step and x + step: a status of `quantities.STATUSES`, "bound" (out of bounds, or a step as large as the value), "refused"
-    (the rows of a table would not fit each other), "no-value" (solved, but a figure has no value there) or "apart" (not varied
-    within a batch); reason: in words why the change is one-sided or missing; modes: those below, here and above where they are
-    not all the same, so that the change goes over a jump and is no derivative, else ().
+    value and step: SI; the step is one that the input can take: h, or -h for side "below"; side: "central" for (f(x + h) - f(x - h))/2,
+    "above" for f(x + h) - f(x), "below" for f(x - h) - f(x), "none"; changes: output -> its change for the step, SI, NaN where the case
+    has no such figure, {} for side "none"; below and above: what became of x - h and x + h: a status of `quantities.STATUSES`, "bound"
+    (out of bounds, or a step as large as the value), "refused" (the rows of a table would not fit each other), "no-value" (solved,
+    but a figure has no value there) or "apart" (not varied within a batch); reason: in words why the change is one-sided or missing;
+    modes: those below, here and above where they are not all the same, so that the change goes over a jump and is no derivative, else ().
     """
 
     input: Input
@@ -203,11 +203,11 @@ def _row(entry: Input, value: float, below: _Point, here: _Point, above: _Point)
     there = (below.status == "solved", above.status == "solved")
     side = {(True, True): "central", (False, True): "above", (True, False): "below", (False, False): "none"}[there]
     used = [point for point, has in zip((below, here, above), (there[0], any(there), there[1]), strict=True) if has]
-    changes = _changes(used) if side != "none" else {}
+    sign = -1.0 if side == "below" else 1.0
+    changes = _changes(used, sign) if side != "none" else {}
     found = tuple(point.mode for point in used)
-    return Sensitivity(
-        entry, value, entry.step, side, changes, below.status, above.status, _reason(below, above), found if len(set(found)) > 1 else ()
-    )
+    jump = found if len(set(found)) > 1 else ()
+    return Sensitivity(entry, value, sign * entry.step, side, changes, below.status, above.status, _reason(below, above), jump)
 
 
 def _judged(point: _Point, here: _Point) -> _Point:
@@ -218,10 +218,10 @@ def _judged(point: _Point, here: _Point) -> _Point:
     return _Point("no-value", point.mode, words="a figure has no value") if lost else point
 
 
-def _changes(used: Sequence[_Point]) -> dict[str, float]:
-    """Change over one step from the outermost of two or three neighbouring points."""
+def _changes(used: Sequence[_Point], sign: float) -> dict[str, float]:
+    """Change over one step from the outermost of two or three neighbouring points. sign: of the step."""
     first, last = _figures(used[0]), _figures(used[-1])
-    return {key: (last[key] - first[key]) / (len(used) - 1) for key in first}
+    return {key: sign * (last[key] - first[key]) / (len(used) - 1) for key in first}
 
 
 def _reason(below: _Point, above: _Point) -> str:

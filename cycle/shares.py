@@ -1,7 +1,8 @@
 """Where the difference between two cases comes from: shares by groups of inputs, swapped over all orders.
 
 The share of a group is what swapping it adds, averaged over all orders in which the groups can be swapped: the shares add
-up to the difference, equal groups have equal ones, and a group that changes nothing has none.
+up to the difference, equal groups have equal ones, and a group that changes nothing has none. Orders that pass a combination
+without a solution are left out of the average; which combination that is, is said.
 Source: Shapley, A value for n-person games, Annals of Mathematics Studies 28 (1953) 307.
 """
 
@@ -44,7 +45,7 @@ class Part:
 @dataclass(frozen=True, slots=True)
 class Shares:
     """What `shares` found. outputs: headline figures that both cases have; first and second: their values, SI; notes: which groups are
-    taken together and why; why_not: why nothing is shared out, or ""."""
+    taken together and why, which combinations have no solution and how many orders are left; why_not: why nothing is shared out, or ""."""
 
     parts: tuple[Part, ...]
     outputs: tuple[str, ...]
@@ -56,18 +57,19 @@ class Shares:
 
 @dataclass(frozen=True, slots=True)
 class _Corner:
-    """One combination: its figures, or why it has none."""
+    """One combination: its figures, or why it has none; case: whether it is a case at all."""
 
     figures: Mapping[str, float]
     why: str = ""
+    case: bool = True
 
 
-def shares(a: Case, b: Case) -> Shares:
+def shares(a: Case, b: Case, names: tuple[str, str] | None = None) -> Shares:
     """Where the headline figures of b less those of a come from, found at once; see `shares_in_steps`.
 
-    Parameters: a, b, two cases. Returns: `Shares`.
+    Parameters: a, b, two cases; names, what sentences call them. Returns: `Shares`.
     """
-    steps = shares_in_steps(a, b, 1 << len(INPUT_GROUPS))
+    steps = shares_in_steps(a, b, 1 << len(INPUT_GROUPS), names)
     while True:
         try:
             next(steps)
@@ -75,50 +77,127 @@ def shares(a: Case, b: Case) -> Shares:
             return cast(Shares, done.value)
 
 
-def shares_in_steps(a: Case, b: Case, most: int = 8) -> Generator[None, None, Shares]:
+def shares_in_steps(a: Case, b: Case, most: int = 8, names: tuple[str, str] | None = None) -> Generator[None, None, Shares]:
     """Where the headline figures of b less those of a come from, in steps between which something else may be done.
 
-    Parameters: a, b, two cases; most, combinations that a step solves at most.
-    Returns: `Shares`; groups that differ are swapped in every combination, 256 at most. Groups of which a combination is no
-    case, or has no solution, are taken together, and the notes say so; where nothing is left to share out `why_not` does.
+    Parameters: a, b, two cases; most, combinations that a step solves at most; names, what sentences call the cases, their own names
+    for None.
+    Returns: `Shares`; groups that differ are swapped in every combination, 256 at most. Groups of which a combination is no case
+    are taken together. Where a combination has no solution the shares are averaged over the orders that do not pass it; where no
+    order is left, groups are taken together until none is lost. The notes say so; where nothing is left to share out `why_not` does.
     """
     if a.choices["start"] != b.choices["start"]:
         return Shares((), (), {}, {}, (), "a flight and a rig have no headline figure in common")
-    keys = _keys(a, b)
+    keys, called = _keys(a, b), names or (a.name, b.name)
     groups = [group for group in INPUT_GROUPS if group in keys]
     outputs = HEADLINE[a.choices["start"]]
     corners = yield from _corners(a, b, groups, outputs, most)
     first, second = corners[frozenset()], corners[frozenset(groups)]
     shown = tuple(key for key in outputs if not any(math.isnan(end.figures.get(key, math.nan)) for end in (first, second)))
-    why = _nothing(a, b, groups, first, second, shown)
-    players, notes = ([(group,) for group in groups], []) if why else _together(groups, _lost(corners, shown))
+    why = _nothing(called, groups, first, second, shown)
+    lost = {} if why else _lost(corners, shown)
+    players, notes = ([(group,) for group in groups], []) if why else _players(groups, corners, lost, _Namer(*called, keys))
     if not why and len(players) == 1 < len(groups):
-        why = "no group can be swapped without the others"
-    found = {} if why else {key: _of(players, corners, key) for key in shown}
+        why, notes = f"no group can be swapped without the others: {notes[0]}", notes[1:-1]
+    found = {} if why else {key: _of(players, corners, lost, key) for key in shown}
     parts = (Part(p, tuple(k for g in p for k in keys[g]), {key: found[key][i] for key in found}) for i, p in enumerate(players))
     return Shares(tuple(parts), shown, dict(first.figures), dict(second.figures), tuple(notes), why)
 
 
-def _of(players: Sequence[tuple[str, ...]], corners: Mapping[Groups, _Corner], key: str) -> tuple[float, ...]:
+@dataclass(frozen=True, slots=True)
+class _Namer:
+    """Says which inputs a combination takes from where. first and second: names of the cases; keys: of each group that differ."""
+
+    first: str
+    second: str
+    keys: Mapping[str, Sequence[str]]
+
+    def told(self, taken: Groups, why: str) -> str:
+        """A combination in words, and why it is lost."""
+        own = _and([f"{group} ({', '.join(_few(keys))})" for group, keys in self.keys.items() if group in taken])
+        return f"with {own} of {self.second} and all else of {self.first} there is {why}"
+
+
+def _few(keys: Sequence[str], most: int = 3) -> list[str]:
+    return [*keys[:most], *([f"{len(keys) - most} more"] if len(keys) > most else [])]
+
+
+_TOLD = 3
+"""Combinations without a solution that are told at most."""
+
+
+def _players(
+    groups: Sequence[str], corners: Mapping[Groups, _Corner], lost: Mapping[Groups, str], names: _Namer
+) -> tuple[list[tuple[str, ...]], list[str]]:
+    """Groups that are swapped as one each, and notes on what is lost."""
+    players, notes = _together(groups, {taken: why for taken, why in lost.items() if not corners[taken].case})
+    there = _exists(players, lost)
+    (before, _), all_of = _orders(len(players), there), frozenset(range(len(players)))
+    gaps = [t for t in _joint(players) if t in lost]
+    if not gaps:
+        return players, notes
+    least = [t for t in gaps if not any(other < t for other in gaps)]
+    told = [names.told(t, lost[t]) for t in least[:_TOLD]]
+    if before[all_of]:
+        others = len(gaps) - len(told)
+        more = f", nor with {others} other{'s' * (others > 1)}" if others else ""
+        count = f"the shares are means over the {before[all_of]} of {math.factorial(len(players))} orders without such a step"
+        return players, [*notes, *told[:-1], told[-1] + more, count]
+    joined, why = _together(groups, lost)
+    return joined, [*notes, *told, *why]
+
+
+def _joint(players: Sequence[tuple[str, ...]]) -> list[Groups]:
+    """Every combination of players as groups, those of few players first."""
+    sets = (chosen for size in range(len(players) + 1) for chosen in combinations(players, size))
+    return [frozenset(group for player in chosen for group in player) for chosen in sets]
+
+
+def _exists(players: Sequence[tuple[str, ...]], lost: Mapping[Groups, str]) -> Callable[[frozenset[int]], bool]:
+    return lambda taken: frozenset(group for i in taken for group in players[i]) not in lost
+
+
+def _of(players: Sequence[tuple[str, ...]], corners: Mapping[Groups, _Corner], lost: Mapping[Groups, str], key: str) -> tuple[float, ...]:
     def value(taken: frozenset[int]) -> float:
         return corners[frozenset(group for i in taken for group in players[i])].figures[key]
 
-    return shapley(len(players), value)
+    return shapley(len(players), value, _exists(players, lost))
 
 
-def shapley(count: int, value: Callable[[frozenset[int]], float]) -> tuple[float, ...]:
-    """Shapley's shares of a game.
+Set = frozenset[int]
 
-    Parameters: count, number of players; value, of every set of players. Returns: the share of each; they sum to the value
-    of all less that of none, to rounding.
-    """
+
+def _orders(count: int, exists: Callable[[Set], bool]) -> tuple[dict[Set, int], dict[Set, int]]:
+    """Of every set of players, in how many orders they can come before the others, and the others behind them, where no set on the way
+    is lost."""
     sets = [frozenset(chosen) for size in range(count + 1) for chosen in combinations(range(count), size)]
-    values = {taken: value(taken) for taken in sets}
-    weight = [1.0 / (count * math.comb(count - 1, size)) for size in range(count)]
-    return tuple(
-        math.fsum(weight[len(s)] * sign * v for s in sets if i not in s for sign, v in ((1.0, values[s | {i}]), (-1.0, values[s])))
-        for i in range(count)
-    )
+    before, behind = {sets[0]: 1}, {sets[-1]: 1}
+    for taken in sets[1:]:
+        before[taken] = sum(before[taken - {i}] for i in taken) if exists(taken) else 0
+    for taken in reversed(sets[:-1]):
+        behind[taken] = sum(behind[taken | {i}] for i in sets[-1] - taken) if exists(taken) else 0
+    return before, behind
+
+
+def shapley(count: int, value: Callable[[Set], float], exists: Callable[[Set], bool] = lambda taken: True) -> tuple[float, ...]:
+    """Shapley's shares of a game, averaged over the orders in which every set of players on the way exists.
+
+    Parameters: count, number of players; value, of every set of players that exists; exists, whether one does; no set and all players
+    always do. Returns: the share of each; they sum to the value of all less that of none, to rounding. NaN where no order is left.
+    """
+    before, behind = _orders(count, exists)
+    every = before[frozenset(range(count))]
+    if not every:
+        return (math.nan,) * count
+    values = {taken: value(taken) for taken in before if before[taken] and behind[taken]}
+
+    def terms(i: int) -> Iterable[float]:
+        for taken in values:
+            weight = before[taken] * behind.get(taken | {i}, 0) / every if i not in taken else 0.0
+            if weight:
+                yield from (weight * values[taken | {i}], -weight * values[taken])
+
+    return tuple(math.fsum(terms(i)) for i in range(count))
 
 
 def _keys(a: Case, b: Case) -> dict[str, list[str]]:
@@ -129,11 +208,11 @@ def _keys(a: Case, b: Case) -> dict[str, list[str]]:
     return found
 
 
-def _nothing(a: Case, b: Case, groups: Sequence[str], first: _Corner, second: _Corner, shown: Sequence[str]) -> str:
+def _nothing(names: tuple[str, str], groups: Sequence[str], first: _Corner, second: _Corner, shown: Sequence[str]) -> str:
     """Why there is no difference to share out; "" where there is."""
-    for case, corner in ((a, first), (b, second)):
+    for name, corner in zip(names, (first, second), strict=True):
         if corner.why:
-            return f"{case.name}: {corner.why}"
+            return f"{name}: {corner.why}"
     if not groups:
         return "the inputs do not differ"
     return "" if shown else "no headline figure has a value on both sides"
@@ -157,7 +236,7 @@ def _corners(a: Case, b: Case, groups: Sequence[str], outputs: Sequence[str], mo
         try:
             mixed = {0: a, len(groups): b}.get(len(taken)) or taking(a, b, taken)
         except CaseError as error:
-            found[taken] = _Corner({}, f"no case, {error.faults[0].text}")
+            found[taken] = _Corner({}, f"no case, {error.faults[0].text}", case=False)
             continue
         alike.setdefault(_likeness(mixed), []).append((taken, mixed))
     for same in alike.values():

@@ -16,6 +16,7 @@ from scipy.optimize import minimize_scalar
 import cycle
 from cycle.constants import STANDARD_GRAVITY
 from cycle.evidence import Check
+from tests.case_files import case_file
 from tests.evidence_support import Solver, assert_met, number, parametrised, unmapped
 
 GAMMA = 1.4
@@ -323,7 +324,7 @@ def test_whole_cycle(check: Check, solver: Solver, run) -> None:
 @pytest.mark.memory
 def test_specific_impulse_lies_in_the_band_of_the_literature() -> None:
     """isp-bands: hydrogen scramjets at Mach 6 to 10, 2000 to 3500 s with the bands' own tolerance (recalled)."""
-    case = cycle.load(Path(__file__).parents[1] / "cases" / "saltmarsh.toml")
+    case = cycle.load(case_file("plain"))
     walk = cycle.solve(case, {"flight.mach": np.array([7.0, 8.0, 9.0, 10.0]), "combustor.equivalence_ratio": 0.4})
     impulse = walk.performance.specific_impulse
     assert np.all((impulse > 1700.0) & (impulse < 4000.0)), impulse

@@ -15,6 +15,7 @@ from hypothesis import strategies as st
 import cycle
 from cycle.case import save
 from cycle.fixing import fixed_case
+from tests.case_files import case_file
 from tests.random_cases import random_case, written
 
 CASES = Path(__file__).parents[1] / "cases"
@@ -183,7 +184,7 @@ exit_pressure = "20 kPa"
 LOSS = {"process": "pressure-loss", "pressure_ratio": 0.2, "exit_mach": 0.5}
 LOST = {"ramp": [{"angle": "4 deg", "length": 1.2}, {"angle": "5 deg", "length": 0.6}, {"angle": "6 deg"}]}
 PART = {"ramp": [{"angle": "4 deg", "length": 1.2}, {"angle": "5 deg"}, {"angle": "6 deg"}]}
-SALTMARSH = (CASES / "saltmarsh.toml").read_text(encoding="utf-8")
+PLAIN = case_file("plain").read_text(encoding="utf-8")
 REFUSED = {
     "the area of a constant-pressure burner follows its heat": built(BY_PERFORMANCE, {"process": "constant-pressure"}, 8.0, 0.3),
     "a curved ramp has no lip": built({"isentropic_ramp": {"turning": "12 deg"}}, CONSTANT_AREA, 7.0, 0.2),
@@ -192,7 +193,7 @@ REFUSED = {
     "the burner passes Mach 1 on the way": built(BY_PERFORMANCE, LOSS, 8.0, 0.4, nozzle={"throat": "sized"}),
     "only a supersonic end": cycle.load(CASES / "sandbar.toml"),
     "at its own area the ambient pressure drives a shock": cycle.loads(
-        SALTMARSH.replace("exit_area_over_capture = 1.5", 'exit_pressure = "8 Pa"')
+        PLAIN.replace("exit_area_over_capture = 1.5", 'exit_pressure = "8 Pa"')
     ),
     "there is no walk to fix: burner: the heat": cycle.load(CASES / "narrows.toml"),
 }
@@ -239,17 +240,17 @@ def test_another_solution_at_the_design_point_is_not_passed_off_as_the_sized_one
 
 
 def test_several_points_are_refused() -> None:
-    walk = cycle.solve(cycle.load(CASES / "saltmarsh.toml"), {"flight.mach": np.array([7.0, 8.0])})
+    walk = cycle.solve(cycle.load(case_file("plain")), {"flight.mach": np.array([7.0, 8.0])})
     with pytest.raises(cycle.CaseError, match="fixed at one point: given 2 points"):
         fixed_case(walk)
 
 
 def test_fixed_case_is_a_new_file_with_the_old_comments(tmp_path: Path) -> None:
-    case = cycle.load(CASES / "saltmarsh.toml")
+    case = cycle.load(case_file("plain"))
     fixed = fixed_case(cycle.solve(case))
-    assert fixed.path is None and fixed.stamp is None and fixed.name == "saltmarsh-fixed"
+    assert fixed.path is None and fixed.stamp is None and fixed.name == "plain-fixed"
     assert fixed.title == f"{case.title} (fixed)" and fixed.notes.startswith(case.notes.rstrip())
-    assert "(saltmarsh), sized at Mach 8, " in fixed.notes and "# invented, for demonstration" in fixed.text
+    assert "(plain), sized at Mach 8, " in fixed.notes and "# invented, for the tests" in fixed.text
     target = tmp_path / "new.toml"
     save(fixed, target)
     assert target.read_text(encoding="utf-8") == fixed.text and cycle.load(target) == fixed
@@ -261,6 +262,6 @@ def test_fixed_case_has_nothing_left_to_fix() -> None:
 
 
 def test_long_title_stays_within_its_bound() -> None:
-    case = cycle.load(CASES / "saltmarsh.toml").replace({"title": "t" * 200})
+    case = cycle.load(case_file("plain")).replace({"title": "t" * 200})
     title = fixed_case(cycle.solve(case)).title
     assert title.endswith("t (fixed)") and len(title) == 200

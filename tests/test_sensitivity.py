@@ -11,7 +11,7 @@ from hypothesis import strategies as st
 import cycle
 from cycle.case import thawed
 from cycle.errors import CaseError
-from cycle.quantities import HEADLINE
+from cycle.quantities import HEADLINE, input_of
 from cycle.sensitivity import Sensitivities, left_out, plain, sensitivities
 from tests.random_cases import random_case, written
 from tests.tui.command_support import CHOKED, DUCT, DUCT_RIG, HOT, QUICK, RIG, ROOT
@@ -33,7 +33,8 @@ def alone(case: cycle.Case, key: str, value: float) -> cycle.Walk:
 
 def by_hand(case: cycle.Case, key: str, step: float, side: str) -> dict[str, float]:
     value = case.numbers[key]
-    places = {"central": (value - step, value + step), "above": (value, value + step), "below": (value - step, value)}[side]
+    places = {"central": (value - step, value + step), "above": (value, value + step), "below": (value, value + step)}[side]
+    assert (step < 0.0) == (side == "below")
     below, above = (alone(case, key, place).performance for place in places)
     share = 0.5 if side == "central" else 1.0
     return {output: share * (above[output] - below[output]) for output in HEADLINE[case.choices["start"]]}
@@ -94,7 +95,27 @@ def test_a_step_beyond_a_bound_is_taken_to_the_other_side_and_marked() -> None:
     assert highest is not None and lowest is not None
     assert (highest.side, highest.above, highest.reason) == ("below", "bound", "above: out of bounds")
     assert (lowest.side, lowest.below, lowest.reason) == ("above", "bound", "below: out of bounds")
-    assert highest.changes["thrust"] > 0.0 > lowest.changes["thrust"]
+    assert highest.step < 0.0 < lowest.step
+    assert highest.changes["thrust"] < 0.0 and lowest.changes["thrust"] < 0.0
+
+
+@settings(max_examples=12)
+@given(st.integers(0, 10**6), st.floats(0.0, 1.0))
+def test_a_step_that_is_offered_is_one_that_the_input_can_take(seed: int, place: float) -> None:
+    """A number near one of its bounds, by less than its step: the value a step away is a case, whichever side is offered."""
+    case = cycle.loads(written(random_case(seed)))
+    keys = [key for key in case.numbers if not left_out(key) and (entry := input_of(key)) and entry.upper is not None]
+    for key in keys:
+        entry = input_of(key)
+        assert entry is not None and entry.upper is not None
+        try:
+            edge = case.replace({key: entry.upper - place * entry.step})
+        except cycle.CaseError:
+            continue
+        for row in sensitivities(edge).rows:
+            if row.side != "none":
+                alone(edge, row.input.key, row.value + row.step)
+        break
 
 
 def test_a_step_as_large_as_the_value_is_taken_upwards_only() -> None:
@@ -105,8 +126,11 @@ def test_a_step_as_large_as_the_value_is_taken_upwards_only() -> None:
 
 
 def test_a_point_without_a_solution_names_its_status() -> None:
-    # the narrow burner passes an equivalence ratio of 0.3073 (its own walk says so): a step up from 0.3 chokes
-    case = shipped("narrows").replace({"combustor.equivalence_ratio": 0.3})
+    # half a step below what the narrow burner passes: a step up chokes
+    narrow = shipped("narrows")
+    largest = cycle.solve(narrow).largest_heat()
+    assert largest is not None
+    case = narrow.replace({"combustor.equivalence_ratio": largest - 0.005})
     row = sensitivities(case).row("combustor.equivalence_ratio")
     assert row is not None
     assert (row.side, row.below, row.above, row.reason) == ("below", "solved", "choked", "above: no solution, choked")

@@ -3,6 +3,8 @@
 from __future__ import annotations
 
 import math
+from itertools import permutations
+from random import Random
 
 import pytest
 from hypothesis import given, settings
@@ -12,6 +14,7 @@ import cycle
 from cycle.case import taking
 from cycle.record import case_of, case_record
 from cycle.shares import Shares, shapley, shares, shares_in_steps
+from tests.case_files import case_file
 from tests.tui.command_support import CHOKED, DUCT, HOT, QUICK, RIG, ROOT
 
 EPSILON = 2.0**-52
@@ -119,7 +122,7 @@ def test_shares_of_any_change_close(changes: dict[str, float]) -> None:
 
 
 def test_choices_may_differ_too() -> None:
-    a, b = cycle.loads(HOT), cycle.load(ROOT / "cases" / "saltmarsh.toml")
+    a, b = cycle.loads(HOT), cycle.load(case_file("plain"))
     held(shares(a, b))
     assert a.choices["combustor.process"] != b.choices["combustor.process"]
 
@@ -133,15 +136,65 @@ def test_groups_that_only_make_sense_together_are_taken_together() -> None:
     assert len(found.notes) == 1 and "are taken together: with" in found.notes[0] and "no case" in found.notes[0]
 
 
-def test_groups_that_have_no_solution_apart_are_taken_together_and_said() -> None:
-    saltmarsh, lantern = (cycle.load(ROOT / "cases" / f"{name}.toml") for name in ("saltmarsh", "lantern"))
-    found = shares(saltmarsh, lantern)
+def restricted(count: int, value: dict[frozenset[int], float], lost: set[frozenset[int]]) -> list[float] | None:
+    """Means over the orders without a lost set, order by order; None where there is none."""
+    orders = [o for o in permutations(range(count)) if not any(frozenset(o[:k]) in lost for k in range(count + 1))]
+    gains = [{o[k]: value[frozenset(o[: k + 1])] - value[frozenset(o[:k])] for k in range(count)} for o in orders]
+    return [math.fsum(g[i] for g in gains) / len(gains) for i in range(count)] if gains else None
+
+
+@given(games(4), st.randoms(use_true_random=False))
+def test_orders_that_pass_a_lost_set_are_left_out_of_the_mean(game: tuple[int, dict[frozenset[int], float]], chance: Random) -> None:
+    count, value = game
+    lost = {s for s in value if 0 < len(s) < count and chance.random() < 0.3}
+    kept = {s: v for s, v in value.items() if s not in lost}  # a lost set has no value to be asked for
+    found = shapley(count, kept.__getitem__, lambda s: s not in lost)
+    expected = restricted(count, value, lost)
+    if expected is None:
+        assert all(map(math.isnan, found))
+        return
+    size = max(map(abs, value.values()))
+    assert found == pytest.approx(expected, rel=0.0, abs=64.0 * EPSILON * size)
+    assert abs(math.fsum(found) - value[frozenset(range(count))] + value[frozenset()]) <= 64.0 * EPSILON * size
+
+
+def test_a_combination_without_a_solution_is_named_and_the_orders_that_avoid_it_are_averaged() -> None:
+    plain, lantern = (cycle.load(case_file(name)) for name in ("plain", "lantern"))
+    assert cycle.solve(taking(plain, lantern, ["inlet"])).status == "choked"
+    found = shares(plain, lantern, ("A", "B"))
     held(found)
-    assert ("flight", "inlet") in [part.groups for part in found.parts]
-    assert found.notes == ("flight and inlet are taken together: with inlet alone swapped there is no solution, choked (burner)",)
-    assert cycle.solve(taking(saltmarsh, lantern, ["inlet"])).status == "choked"
-    lost = [part.groups for part in found.parts if len(part.groups) == 1]
-    assert {g for (g,) in lost} == {"fuel", "combustor", "nozzle", "engine"}
+    assert [part.groups for part in found.parts] == [(g,) for g in ("flight", "inlet", "fuel", "combustor", "nozzle", "engine")]
+    *told, count = found.notes
+    assert told[0].startswith("with inlet (inlet.") and " of B and all else of A there is no solution, choked (burner)" in told[0]
+    assert count.endswith("of 720 orders without such a step")
+
+
+def test_shares_over_the_orders_that_exist_are_those_computed_by_hand() -> None:
+    """Slower flight and more fuel: with the fuel first it chokes, so the flight of the only order left comes first."""
+    first = cycle.load(case_file("narrows")).replace({"combustor.equivalence_ratio": 0.3})
+    second = first.replace({"flight.mach": 9.0, "combustor.equivalence_ratio": 0.6})
+    assert cycle.solve(taking(first, second, ["combustor"])).status == "choked"
+    found = shares(first, second, ("A", "B"))
+    held(found)
+    thrust = [cycle.solve(case).performance.thrust for case in (first, taking(first, second, ["flight"]), second)]
+    assert [part.shares["thrust"] for part in found.parts] == pytest.approx([thrust[1] - thrust[0], thrust[2] - thrust[1]], rel=1e-7)
+    assert found.notes == (
+        "with combustor (combustor.equivalence_ratio) of B and all else of A there is no solution, choked (burner)",
+        "the shares are means over the 1 of 2 orders without such a step",
+    )
+
+
+def test_where_no_order_is_left_the_combinations_are_named() -> None:
+    """A fast flight with a small compression, a slow one with a large one: neither flight has a solution with the other's inlet."""
+    narrows = cycle.load(case_file("narrows"))
+    first = narrows.replace({"flight.mach": 18.0, "inlet.exit_mach": 9.0, "combustor.equivalence_ratio": 0.1})
+    second = first.replace({"flight.mach": 5.0, "inlet.exit_mach": 2.0})
+    found = shares(first, second, ("A", "B"))
+    assert found.why_not == (
+        "no group can be swapped without the others: "
+        "with flight (flight.mach) of B and all else of A there is no solution, out-of-range (inlet)"
+    )
+    assert found.notes == ("with inlet (inlet.exit_mach) of B and all else of A there is no solution, out-of-range (inlet)",)
 
 
 def test_a_lost_side_a_rig_and_a_twin_have_no_shares() -> None:

@@ -15,6 +15,7 @@ from hypothesis import strategies as st
 import cycle
 from cycle import audit, limits
 from cycle.quantities import MODES, STATUSES
+from tests.case_files import case_file
 from tests.random_cases import random_case, written
 
 CASES = Path(__file__).parents[1] / "cases"
@@ -24,7 +25,7 @@ SHOWN = (
 
 
 def shipped(name: str) -> cycle.Walk:
-    return cycle.solve(cycle.load(CASES / f"{name}.toml"))
+    return cycle.solve(cycle.load(case_file(name)))
 
 
 def closes(rows: tuple[Any, ...], total: float) -> None:
@@ -109,7 +110,7 @@ def test_frozen_and_shifting_expansion_part_where_the_gas_dissociates() -> None:
 
 
 def test_potential_starts_at_nothing_and_falls_but_in_the_burner() -> None:
-    walk = shipped("saltmarsh")
+    walk = shipped("plain")
     assert walk.station["0"].thrust_potential == pytest.approx(0.0, abs=1e-9 * walk.station["0"].stream_thrust)
     rows = {r.key: r.value for r in walk.potentials}
     assert rows["inlet"] < 0.0 < rows["burner"] and rows["nozzle"] < 0.0 and rows["pressure_mismatch"] < 0.0
@@ -134,7 +135,7 @@ def test_throat_is_sonic_and_passes_the_flow() -> None:
 
 def test_friction_and_wall_heat_take_from_impulse_and_energy() -> None:
     """Constant area: the stream thrust falls by friction alone; the total enthalpy flow by the wall heat alone."""
-    case = cycle.load(CASES / "saltmarsh.toml")
+    case = cycle.load(case_file("plain"))
     plain = cycle.solve(case)
     lossy = cycle.solve(case.replace({"combustor.friction_area_ratio": 0.05, "combustor.wall_heat": "2 MW"}))
     s = plain.station["3"]
@@ -153,7 +154,7 @@ STATION_FIGURES = (
 @pytest.mark.parametrize("station", ["0", "3", "4", "10"])
 @pytest.mark.parametrize("figure", STATION_FIGURES)
 def test_audit_fails_when_one_emitted_figure_is_off_by_a_millionth(station: str, figure: str) -> None:
-    walk = shipped("saltmarsh")
+    walk = shipped("plain")
     honest = walk.emitted()
     assert walk.judge(honest).ok
     changed = {**honest.stations[station], figure: honest.stations[station][figure] * (1.0 + 1e-6)}
@@ -163,14 +164,14 @@ def test_audit_fails_when_one_emitted_figure_is_off_by_a_millionth(station: str,
 
 @pytest.mark.parametrize("figure", ["thrust", "specific_thrust", "specific_impulse"])
 def test_audit_fails_when_the_headline_is_off_by_a_millionth(figure: str) -> None:
-    walk = shipped("saltmarsh")
+    walk = shipped("plain")
     honest = walk.emitted()
     forged = dataclasses.replace(honest, performance={**honest.performance, figure: honest.performance[figure] * (1.0 + 1e-6)})
     assert not walk.judge(forged).ok
 
 
 def test_audit_fails_when_the_composition_is_off_by_a_millionth() -> None:
-    walk = shipped("saltmarsh")
+    walk = shipped("plain")
     honest = walk.emitted()
     for row in np.flatnonzero(honest.fractions["4"][:, 0] > 1e-3):
         x = honest.fractions["4"].copy()
@@ -181,7 +182,7 @@ def test_audit_fails_when_the_composition_is_off_by_a_millionth() -> None:
 
 def test_audit_sees_a_second_law_violation() -> None:
     """An inlet that made entropy vanish: same enthalpy at a higher pressure, area kept by the mass flow."""
-    walk = shipped("saltmarsh")
+    walk = shipped("plain")
     honest = walk.emitted()
     free, two = honest.stations["0"], honest.stations["2"]
     pressure = two["pressure"] * np.exp((two["entropy"] - free["entropy"] + 5.0) / (8.314 / 0.028964))
@@ -192,7 +193,7 @@ def test_audit_sees_a_second_law_violation() -> None:
 
 
 def test_limits_speak_of_what_is_not_assessed() -> None:
-    found = {row.key: row for row in shipped("saltmarsh").limits}
+    found = {row.key: row for row in shipped("plain").limits}
     assert found["start"].state == found["isolator_length"].state == "not assessed" and found["start"].restore
     assert found["ignition_temperature"].state == "over" and found["ignition_temperature"].margin < 0.0
     assert found["thermal_choking"].margin == pytest.approx(1.0 - 0.6 / found["thermal_choking"].allowed, rel=1e-12)
@@ -203,7 +204,7 @@ def test_limits_speak_of_what_is_not_assessed() -> None:
 
 def test_fuel_below_the_burner_pressure_is_over_its_limit_and_has_no_exergy() -> None:
     """At 84 kPa ahead of the fuel: too low, high enough, and both in a batch; the walk itself does not depend on it."""
-    case = cycle.load(CASES / "saltmarsh.toml")
+    case = cycle.load(case_file("plain"))
     batch = cycle.solve(case, {"fuel.supply_pressure": np.array([5e4, 2e6])})
     limit = next(row for row in batch.limits if row.key == "fuel_supply")
     assert list(limit.state) == ["over", "ok"] and limit.input == "fuel.supply_pressure"
@@ -246,6 +247,6 @@ def test_referee_agrees_on_the_shipped_cases(name: str) -> None:
 
 def test_a_batch_without_any_solution_says_why_it_has_no_figures() -> None:
     """Not even the burner is reached: there is no fuel flow to ask about."""
-    walk = cycle.solve(cycle.load(CASES / "saltmarsh.toml"), {"inlet.pressure_ratio": [1e4, 2e4]})
+    walk = cycle.solve(cycle.load(case_file("plain")), {"inlet.pressure_ratio": [1e4, 2e4]})
     assert not walk.march.solved.size and "burner" not in {p.name for p in walk.processes}
     assert {walk.why_not(key) for key in ("thrust", "specific_impulse", "throat_area", "losses")} == {"no solution"}

@@ -6,20 +6,20 @@ Only what reads the command line is imported at the top, so that help and versio
 from __future__ import annotations
 
 import argparse
-import difflib
 import os
 import shlex
 import sys
-from collections.abc import Callable, Iterable, Sequence
+from collections.abc import Callable, Sequence
 from typing import Any, NoReturn
 
 from cycle.atomic import new_file
 from cycle.errors import CaseError, DuctwalkError, Fault
-from tui import crash
-from tui.output import STANDARD_INPUT, emit, load_case, prepare_streams, shipped_case, tell
+from tui import crash, shipped
+from tui.output import STANDARD_INPUT, emit, load_case, near, prepare_streams, tell
 
 PROGRAM = "ductwalk"
 BAD_INPUT, INTERRUPTED = 2, 130
+STANDARD_OUTPUT = "-"
 LATER = ("study", "optimise", "report")
 """Commands that are planned and refused in this version."""
 
@@ -48,14 +48,9 @@ def _one_of(*names: str) -> Callable[[str], str]:
     def read(text: str) -> str:
         if text in names:
             return text
-        raise argparse.ArgumentTypeError(f"{text!r} is none of {', '.join(names)}{_near(text, names)}")
+        raise argparse.ArgumentTypeError(f"{text!r} is none of {', '.join(names)}{near(text, names)}")
 
     return read
-
-
-def _near(given: str, names: Iterable[str]) -> str:
-    found = difflib.get_close_matches(given[:80], list(names), 1, 0.6)
-    return f"; did you mean {found[0]}?" if found else ""
 
 
 def _units(parser: argparse.ArgumentParser) -> None:
@@ -94,6 +89,11 @@ def _check_options(parser: argparse.ArgumentParser) -> None:
 def _new_options(parser: argparse.ArgumentParser) -> None:
     parser.add_argument("--rig", action="store_true", help="a direct-connect rig instead of a flight engine")
     parser.add_argument("-o", dest="output", metavar="FILE", help="write a new file instead of standard output")
+
+
+def _cases_options(parser: argparse.ArgumentParser) -> None:
+    parser.add_argument("name", nargs="?", metavar="NAME", help="copy this one to NAME.toml in the working folder")
+    parser.add_argument("-o", dest="output", metavar="FILE", help="name of the copy, - for standard output; never overwritten")
 
 
 def _schema_options(parser: argparse.ArgumentParser) -> None:
@@ -159,6 +159,18 @@ def _write_new(text: str, path: str | None) -> None:
     tell(f"written: {path}")
 
 
+def _cases(options: argparse.Namespace) -> int:
+    if options.name is None and options.output is not None:
+        raise UsageError(f"{PROGRAM} cases: -o needs the NAME of a case; see {PROGRAM} cases --help")
+    if options.name is None:
+        emit(shipped.listing())
+        return 0
+    text = shipped.content(options.name).decode("utf-8")
+    target = options.output or os.path.basename(shipped.path_of(options.name))
+    _write_new(text, None if target == STANDARD_OUTPUT else target)
+    return 0
+
+
 def _fix(options: argparse.Namespace) -> int:
     from cycle.fixing import fixed_case
     from tui.solve import exit_status, outcome
@@ -208,6 +220,7 @@ COMMANDS: dict[str, tuple[str, Options, Callable[[argparse.Namespace], int]]] = 
     "fix-geometry": ("print the fixed flowpath that a sized case amounts to, as a new case", _fix_options, _fix),
     "check": ("validate cases without solving them", _check_options, _check),
     "new": ("print a new case with every key explained", _new_options, _new),
+    "cases": ("list the shipped cases, or copy one to a file of yours", _cases_options, _cases),
     "schema": ("print the JSON Schema of case files", _schema_options, _schema),
     "keys": ("print the keys of the screen as a keys.toml to start from", _keys_options, _keys),
 }
@@ -246,7 +259,7 @@ def _parsed(arguments: Sequence[str]) -> int:
     options, extra = top.parse_known_args(arguments)
     if extra:
         known = _options_of(top, options.command)
-        raise UsageError(f"{PROGRAM}: {extra[0]!r} is not understood{_near(extra[0].split('=')[0], known)}; see {PROGRAM} --help")
+        raise UsageError(f"{PROGRAM}: {extra[0]!r} is not understood{near(extra[0].split('=')[0], known)}; see {PROGRAM} --help")
     if options.version:
         return _version()
     return COMMANDS[options.command][2](options)
@@ -262,14 +275,15 @@ def _options_of(top: _Parser, command: str | None) -> list[str]:
 
 def _screen(name: str | None) -> int:
     """Open the screen on a case, or print the walk where there is no terminal to draw on."""
-    path = name or shipped_case()
+    path = name or shipped.path_of(shipped.FIRST)
     if _has_terminal() and path != STANDARD_INPUT:
         from tui.app import run
 
         return run(path)
     status = _parsed(["solve", path])
     if status != BAD_INPUT and path != STANDARD_INPUT:
-        tell(f"no screen here; to open it run '{PROGRAM} {shlex.quote(path)}' in a terminal (TERM other than dumb)")
+        line = PROGRAM if name is None else f"{PROGRAM} {shlex.quote(path)}"
+        tell(f"no screen here; to open it run '{line}' in a terminal (TERM other than dumb)")
     return status
 
 
@@ -288,7 +302,9 @@ def _dispatch(arguments: Sequence[str]) -> int:
         return _screen(first)
     if _is_path(first):
         raise UsageError(f"{PROGRAM}: the screen takes one case and no options; for options use {PROGRAM} solve {first} ...")
-    raise UsageError(f"{PROGRAM}: no command or file is called {first!r}{_near(first, [*COMMANDS, *LATER])}; see {PROGRAM} --help")
+    if first in shipped.names():
+        raise UsageError(f"{PROGRAM}: {first} is a shipped case; {PROGRAM} cases {first} copies it to {first}.toml")
+    raise UsageError(f"{PROGRAM}: no command or file is called {first!r}{near(first, [*COMMANDS, *LATER])}; see {PROGRAM} --help")
 
 
 def _is_path(name: str) -> bool:

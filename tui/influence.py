@@ -6,6 +6,7 @@ import math
 from collections.abc import Iterable
 from typing import TYPE_CHECKING
 
+from cycle import noise
 from cycle.quantities import OUTPUT, Output
 from cycle.units import display_unit, format_number
 from tui.tables import Block, Heading, Lines, Table
@@ -14,9 +15,6 @@ from tui.text import named
 if TYPE_CHECKING:
     from cycle.sensitivity import Sensitivities, Sensitivity
     from cycle.shares import Shares
-
-_NOTHING = 1e-8
-"""Relative change of a figure that is rounding."""
 
 _WITHOUT_COLUMN = ("overall_efficiency", "equivalence_ratio")
 """Headline figures that follow from the others; the other forms of the output have them."""
@@ -31,7 +29,7 @@ def change(value: float, output: Output, base: float, system: str) -> str:
     """
     if math.isnan(value):
         return "-"
-    if abs(value) <= _NOTHING * abs(base):
+    if noise.settled(value, base, noise.STEP) == 0.0:
         return "0"
     text = format_number(value / display_unit(output.unit, system, output.key).factor, 3)
     return f"+{text}" if value > 0.0 else text
@@ -40,7 +38,7 @@ def change(value: float, output: Output, base: float, system: str) -> str:
 def sensitivity_blocks(found: Sensitivities, system: str) -> list[Block]:
     """Sensitivities as blocks, the largest first. system: "si" or "us"."""
     outputs = [OUTPUT[key] for key in found.outputs if key not in _WITHOUT_COLUMN]
-    heading = Heading(f"Sensitivities: what one step up of each input gives, by {outputs[0].label}")
+    heading = Heading(f"Sensitivities: what one step of each input gives, by {outputs[0].label}")
     if found.why_not:
         return [heading, Lines((f"Not assessed: {found.why_not}",))]
     ranked = found.ranked()
@@ -52,7 +50,8 @@ def sensitivity_blocks(found: Sensitivities, system: str) -> list[Block]:
 
 def _step(row: Sensitivity, system: str) -> str:
     unit = display_unit(row.input.unit, system, row.input.key)
-    return f"{format_number(row.step / unit.factor, 3)} {unit.label}".strip()
+    sign = "" if row.step < 0.0 else "+"
+    return f"{sign}{format_number(row.step / unit.factor, 3)} {unit.label}".strip()
 
 
 def _changes(found: Sensitivities, row: Sensitivity, outputs: Iterable[Output], system: str) -> Iterable[str]:

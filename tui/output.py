@@ -3,9 +3,10 @@
 from __future__ import annotations
 
 import contextlib
+import difflib
 import os
 import sys
-from pathlib import Path
+from collections.abc import Iterable
 from typing import TYPE_CHECKING, TextIO
 
 from cycle.errors import CaseError, Fault
@@ -18,9 +19,10 @@ LARGEST_CASE = 1024 * 1024
 """Bytes of a case that are read from standard input."""
 
 
-def shipped_case() -> str:
-    """Path of the invented case that comes with the program."""
-    return str(Path(__file__).resolve().parent.parent / "cases" / "saltmarsh.toml")
+def near(given: str, names: Iterable[str]) -> str:
+    """Words that ask for the name that was probably meant, "" where none comes near."""
+    found = difflib.get_close_matches(given[:80], list(names), 1, 0.6)
+    return f"; did you mean {found[0]}?" if found else ""
 
 
 def prepare_streams() -> None:

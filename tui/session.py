@@ -159,6 +159,16 @@ def apply(case: Case, change: Change) -> Case:
     return case.replace(change["set"])
 
 
+def came_back(before: Case, after: Case) -> dict[str, Any]:
+    """What a choice brought back of the inputs that were set aside: key -> value as written, plain data for the journal."""
+    back = {key: value for key, value in after.spelled.items() if key in before.aside and key not in before.spelled}
+    if not back:
+        return {}
+    from cycle.case import thawed
+
+    return {key: thawed(value) for key, value in back.items()}
+
+
 def loaded(session: Session, case: Case, stamp: Any) -> Session:
     """The session with the case of the file, nothing undone yet."""
     start = columns_of(case)[0]

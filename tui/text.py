@@ -6,6 +6,7 @@ import math
 from collections.abc import Callable, Iterable, Mapping
 from typing import TYPE_CHECKING, Any
 
+from cycle import noise
 from cycle.glossary import ENTRY, HEAT_WORDS, PROFILE, QUIET, SHARED, mode_of, no_value, process_figure
 from cycle.quantities import CAUSES, INPUT, MODES, OUTPUTS, Input, Output
 from cycle.units import display_unit, format_number, show
@@ -26,7 +27,6 @@ LEAST_SHOWN = 1e-4
 _ELSEWHERE = {"flight": ("stream_thrust_gain",)}
 """Figures that a case of this start never has and nobody misses."""
 
-_NOISE = 1e-10
 _NOTHING = 1e-6
 """Booked force, power or flow, SI, below which nothing crosses."""
 _PROFILE_ROWS = 14
@@ -52,12 +52,6 @@ def named(label: str, dimension: str, system: str, key: str = "") -> str:
     """A row's name with the unit behind a comma."""
     unit = unit_label(dimension, system, key)
     return f"{label}, {unit}" if unit else label
-
-
-def settled(values: list[float]) -> list[float]:
-    """The values of one row or account with rounding noise, far below the largest of them, as zero."""
-    largest = max((abs(v) for v in values if math.isfinite(v)), default=0.0)
-    return [0.0 if abs(v) < _NOISE * largest else v for v in values]
 
 
 def walk_blocks(walk: Walk, system: str, referee: bool, more: Iterable[Block] = ()) -> list[Block]:
@@ -224,7 +218,7 @@ def _stations(walk: Walk, system: str) -> Iterable[Block]:
     for output in (o for o in OUTPUTS if o.where == "station"):
         values = [float(getattr(s, output.key)) for s in walk.station.values()]
         if any(math.isfinite(v) for v in values):
-            cells = (figure(v, output.unit, system, output.key) for v in settled(values))
+            cells = (figure(v, output.unit, system, output.key) for v in noise.rows(values))
             rows.append((named(output.label, output.unit, system, output.key), *cells))
     yield Heading("Stations")
     yield Table(("reached through", *reached.values()), tuple(rows))
@@ -260,7 +254,7 @@ def _processes(walk: Walk, system: str) -> Iterable[Block]:
     rows = [("stations", *(f"{p.start} to {p.end}" for p in walk.processes))]
     for key in SHARED:
         declared = ENTRY[f"process.{key}"]
-        values = settled([float(p.figures.get(key, math.nan)) for p in walk.processes])
+        values = noise.rows([float(p.figures.get(key, math.nan)) for p in walk.processes])
         cells = (figure(v, declared.unit, system) for v in values)
         rows.append((named(declared.label, declared.unit, system), *cells))
     if walk.processes:
@@ -286,8 +280,7 @@ def _own_figures(walk: Walk, system: str) -> Iterable[Block]:
 
 def _rows(rows: Iterable[Any], system: str) -> Table:
     rows = tuple(rows)
-    values = settled([float(r.value) for r in rows])
-    cells = ((r.label, figure(v, r.unit, system), unit_label(r.unit, system)) for r, v in zip(rows, values, strict=True))
+    cells = ((r.label, figure(float(r.value), r.unit, system), unit_label(r.unit, system)) for r in rows)
     return Table(("", "value", "unit"), tuple(cells), left=(2,))
 
 

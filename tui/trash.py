@@ -16,7 +16,7 @@ from dataclasses import dataclass
 from pathlib import Path
 from urllib.parse import quote
 
-from cycle.atomic import new_file, read_file
+from cycle.atomic import new_file, read_file, refuse_own
 from tui.journal import state_directory, user_folder
 
 LARGEST = 64 * 1024 * 1024
@@ -38,7 +38,8 @@ def home_trash() -> Path:
 
 
 def throw_away(path: str) -> Thrown:
-    """Move a file to the trash. Errors: OSError; the file is then where it was."""
+    """Move a file to the trash. Errors: OSError, `ReadOnly` in the installed program among them; the file is then where it was."""
+    refuse_own(path)
     origin = os.path.join(os.path.realpath(os.path.dirname(path) or "."), os.path.basename(path))
     os.lstat(origin)
     try:
@@ -85,7 +86,10 @@ def bring_back(thrown: Thrown) -> None:
 
 
 def move_new(path: str, target: str) -> None:
-    """Move a file to a name that no file has. Errors: FileExistsError, OSError; the file is then where it was."""
+    """Move a file to a name that no file has. Errors: FileExistsError, OSError, `ReadOnly` where one of both is in the installed
+    program; the file is then where it was."""
+    refuse_own(path)
+    refuse_own(target)
     try:
         os.link(path, target, follow_symlinks=False)
     except FileExistsError:

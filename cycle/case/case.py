@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Callable, Iterator, Mapping
+from contextlib import suppress
 from dataclasses import dataclass, field, fields
 from types import MappingProxyType
 from typing import Any
@@ -59,8 +60,9 @@ class Case:
     numbers: SI values of all number inputs and cells of rows ("combustor.area.2.x", rows from 1) that apply and have a value;
     choices: choice inputs, groups (name -> tag) and
     "start"; texts, fractions: the other kinds; studies: plain data; given: keys that are stated, the others are defaults;
-    applicable: keys that mean something here; spelled: values as written; text: the TOML the case came from. Equality
-    looks at the content, not at name, path or spelling.
+    applicable: keys that mean something here; spelled: values as written; text: the TOML the case came from; aside: values as
+    written that a choice left without a meaning, which come back when it is made back. Equality looks at the content, not at
+    name, path or spelling.
     """
 
     title: str
@@ -77,6 +79,7 @@ class Case:
     stamp: Stamp | None = field(default=None, compare=False)
     text: str = field(default="", compare=False, repr=False)
     spelled: Mapping[str, object] = field(default_factory=dict, compare=False, repr=False)
+    aside: Mapping[str, object] = field(default_factory=dict, compare=False, repr=False)
 
     def __reduce__(self) -> tuple[Callable[[dict[str, Any]], Case], tuple[dict[str, Any]]]:
         return _restore, ({f.name: thawed(getattr(self, f.name)) for f in fields(self)},)
@@ -86,7 +89,8 @@ class Case:
 
         Parameters: changes, key of an input or a cell -> number (SI), text with a unit, choice, True, table of mole fractions,
         list of rows, or None to remove it; "title" and "notes" too. A member of a group replaces the group; entry.* replaces
-        flight and inlet, and the other way round; keys that lose their meaning and are not named in the changes are dropped.
+        flight and inlet, and the other way round; keys that lose their meaning and are not named in the changes are dropped, and those
+        that a choice (the gas model, say) drops come back when it is made back.
         Returns: a new Case. Errors: CaseError with every fault.
         """
         if not changes:
@@ -96,9 +100,30 @@ class Case:
         dropped = {name for name in ("title", "notes") if name in given and given[name] is None}
         kept = {name: getattr(self, name) for name in ("title", "notes") if name not in dropped}
         rest = {key: value for key, value in given.items() if key not in ("title", "notes")}
-        spelled = self._edited(rest) if rest else self.spelled
-        document = {"format": checking.FORMAT, "study": thawed(self.studies), **kept, **heads, **checking.nest(thawed(spelled))}
-        return build(document, self.name, self.path, self.stamp, self.text)
+        spelled = self._edited(rest) if rest else thawed(self.spelled)
+        aside = edits.set_aside(thawed(self.spelled), spelled, rest, thawed(self.aside))
+        head = {"format": checking.FORMAT, "study": thawed(self.studies), **kept, **heads}
+        return self._recalling(head, spelled, aside, edits.recalled(spelled, aside, rest))
+
+    def _recalling(self, head: Mapping[str, Any], spelled: dict[str, Any], aside: dict[str, Any], back: Mapping[str, Any]) -> Case:
+        """The case of an edit with those of the keys set aside that fit it: all of them, else one after the other. Errors: CaseError."""
+
+        def made(more: Mapping[str, Any]) -> Case:
+            left = {key: value for key, value in aside.items() if key not in more}
+            document = {**head, **checking.nest({**spelled, **more})}
+            return build(document, self.name, self.path, self.stamp, self.text, left)
+
+        if not back:
+            return made({})
+        try:
+            return made(back)
+        except CaseError:
+            case, kept = made({}), dict[str, Any]()
+        for key, value in back.items():
+            with suppress(CaseError):
+                case = made({**kept, key: value})
+                kept[key] = value
+        return case
 
     def with_study(self, name: str, study: Mapping[str, Any]) -> Case:
         """The case with one named study more.
@@ -111,7 +136,8 @@ class Case:
             raise CaseError(found)
         every = {**thawed(self.studies), name: thawed(study)}
         heads = {"format": checking.FORMAT, "title": self.title, "notes": self.notes}
-        return build({**heads, "study": every, **checking.nest(thawed(self.spelled))}, self.name, self.path, self.stamp, self.text)
+        document = {**heads, "study": every, **checking.nest(thawed(self.spelled))}
+        return build(document, self.name, self.path, self.stamp, self.text, self.aside)
 
     def _edited(self, changes: Mapping[str, object]) -> dict[str, object]:
         """The keys as written after an edit."""
@@ -241,10 +267,18 @@ def _restore(state: dict[str, Any]) -> Case:
     return Case(**{name: _frozen(value) if isinstance(value, Mapping) else value for name, value in state.items()})
 
 
-def build(document: Mapping[str, Any], name: str, path: str | None = None, stamp: Stamp | None = None, text: str = "") -> Case:
+def build(
+    document: Mapping[str, Any],
+    name: str,
+    path: str | None = None,
+    stamp: Stamp | None = None,
+    text: str = "",
+    aside: Mapping[str, object] | None = None,
+) -> Case:
     """A case from the tables of a case file.
 
-    Parameters: document, nested plain tables with "format"; name, of the case; path and stamp of its file; text, its TOML.
+    Parameters: document, nested plain tables with "format"; name, of the case; path and stamp of its file; text, its TOML; aside, see
+    `Case`.
     Returns: the validated Case. Errors: CaseError with every fault.
     """
     content = checking.examine(document, path or name)
@@ -264,4 +298,5 @@ def build(document: Mapping[str, Any], name: str, path: str | None = None, stamp
         stamp,
         text,
         _frozen(spelled),
+        _frozen(aside or {}),
     )

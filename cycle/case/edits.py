@@ -1,4 +1,4 @@
-"""What an edit does to the keys of a case: groups are replaced whole, keys that lose their meaning go."""
+"""What an edit does to the keys of a case: groups are replaced whole, keys that lose their meaning go, and come back with it."""
 
 from __future__ import annotations
 
@@ -96,3 +96,35 @@ def changed(spelled: Mapping[str, object], changes: Mapping[str, object]) -> dic
     for key, value in new.items():
         left[key] = _respelled(key, value, spelled.get(key))
     return without_unused(left, touched)
+
+
+def _chooses(changes: Mapping[str, object]) -> bool:
+    """Whether an edit makes a choice, such as that of the gas model."""
+    return any(key in INPUT and INPUT[key].kind == "choice" for key in changes)
+
+
+def set_aside(
+    before: Mapping[str, object], after: Mapping[str, object], changes: Mapping[str, object], aside: Mapping[str, object]
+) -> dict[str, object]:
+    """Keys that an edit leaves without a meaning, with those of the edits before that still have none.
+
+    Parameters: before and after, key -> value as written, around the edit; changes, the edit; aside, those of the edits before.
+    Returns: key -> value as written. What the edit removes, replaces by another way to say it or gives anew is not among them; only a
+    choice sets keys aside.
+    """
+    removed = {key for key, value in changes.items() if value is None}
+    gone = removed | _replaced_by({key for key in changes if key in INPUT} - removed, {**before, **aside})
+    lost = {key: value for key, value in before.items() if key not in after} if _chooses(changes) else {}
+    return {key: value for key, value in {**aside, **lost}.items() if key not in gone and key not in after}
+
+
+def recalled(left: Mapping[str, object], aside: Mapping[str, object], changes: Mapping[str, object]) -> dict[str, object]:
+    """Keys set aside that mean something again after an edit that makes a choice, and say nothing that is said otherwise.
+
+    Parameters: left, key -> value as written after the edit; aside, see `set_aside`; changes, the edit. Returns: key -> value as written.
+    """
+    if not _chooses(changes):
+        return {}
+    said = {key for key in left for group in groups_of().get(key, ()) for key in keys_of(group)}
+    whole = without_unused({**left, **{key: value for key, value in aside.items() if key not in said}})
+    return {key: value for key, value in whole.items() if key not in left}

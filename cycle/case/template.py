@@ -6,25 +6,29 @@ import textwrap
 
 from cycle.case.checking import FORMAT
 from cycle.case.rules import bounds, by_fuel, section_of, ways
+from cycle.inputs import FLATTERED, OPTIMISTIC
 from cycle.quantities import GROUPS, INPUTS, SECTIONS, Input
 
 _WIDTH = 100
 
 _FLIGHT: dict[str, str] = {
-    "flight.mach": "8.0",
-    "flight.dynamic_pressure": '"50 kPa"',
+    "flight.mach": "9.5",
+    "flight.dynamic_pressure": '"60 kPa"',
     "gas.model": '"equilibrium"',
-    "inlet.kinetic_energy_efficiency": "0.975",
-    "inlet.pressure_ratio": "60.0",
-    "inlet.chemistry": '"frozen"',
+    "inlet.kinetic_energy_efficiency": "0.98",
+    "inlet.temperature_ratio": "4.75",
     "fuel.name": '"hydrogen"',
     "fuel.temperature": '"300 K"',
+    "fuel.supply_pressure": '"2 MPa"',
     "combustor.process": '"constant-area"',
-    "combustor.equivalence_ratio": "0.6",
-    "combustor.burnt_fraction": "0.92",
+    "combustor.equivalence_ratio": "0.5",
+    "combustor.burnt_fraction": "0.9",
+    "combustor.friction_area_ratio": "0.06",
+    "combustor.wall_heat": '"1.5 MW"',
     "nozzle.chemistry": '"shifting"',
-    "nozzle.exit_area_over_capture": "1.5",
-    "nozzle.velocity_coefficient": "0.985",
+    "nozzle.exit_area_over_capture": "2.0",
+    "nozzle.velocity_coefficient": "0.98",
+    "nozzle.divergence_factor": "0.99",
     "engine.capture_area": '"0.4 m^2"',
 }
 _ENTRY: dict[str, str] = {
@@ -46,7 +50,7 @@ _HEAD = """\
 # A case for ductwalk. The figures are invented, for demonstration; replace them by your own.
 # A value is a number in SI or text with a unit, such as "27 km", "1500 psf" or "15 deg".
 # A line that begins with # is not read; take the # away to use it. Where several keys say the same
-# thing, exactly one of them is given.
+# thing, exactly one of them is given. Some defaults are optimistic; each says by how much.
 """
 
 
@@ -96,7 +100,7 @@ def _comment(text: str) -> str:
 
 def _entry(entry: Input, values: dict[str, str]) -> str:
     symbol = f"{entry.symbol}: " if entry.symbol else ""
-    words = f"{symbol}{entry.meaning} [{bounds(entry)}; {_default(entry)}]{_only(entry)}"
+    words = f"{symbol}{entry.meaning} [{bounds(entry)}; {_default(entry)}]{_only(entry)}{_flattery(entry)}"
     line = f"{entry.name} = {values[entry.key]}" if entry.key in values else f"# {entry.name} = {_sample(entry)}"
     return f"{_comment(words)}\n{line}"
 
@@ -104,6 +108,14 @@ def _entry(entry: Input, values: dict[str, str]) -> str:
 def _only(entry: Input) -> str:
     """The conditions of an input as sentences."""
     return "".join(f" Only with {name} = {' or '.join(tag or 'none' for tag in tags)}." for name, tags in entry.when if name != "start")
+
+
+def _flattery(entry: Input) -> str:
+    """How far the default of an input flatters, "" where it does not."""
+    told = next((one for one in OPTIMISTIC if one.key == entry.key), None)
+    if told is None:
+        return ""
+    return f" {told.default} is optimistic: with {told.usual} the specific impulse of {FLATTERED} is {-told.change} s lower."
 
 
 def _default(entry: Input) -> str:

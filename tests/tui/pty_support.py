@@ -49,11 +49,12 @@ class Terminal:
         rows: int = 24,
         env: dict[str, str] | None = None,
         program: str = START,
+        cwd: Path = ROOT,
     ) -> None:
         own = {k: v for k, v in os.environ.items() if k not in ("NO_COLOR", "COLORTERM", "SSH_CONNECTION")}
         own |= {"TERM": "xterm-256color", "PYTHONPATH": str(ROOT), "OMP_NUM_THREADS": "1", **(env or {})}
         command = [sys.executable, "-c", program, *arguments]
-        self.process = ptyprocess.PtyProcess.spawn(command, env=own, dimensions=(rows, columns), cwd=str(ROOT))
+        self.process = ptyprocess.PtyProcess.spawn(command, env=own, dimensions=(rows, columns), cwd=str(cwd))
         self.screen = QuietScreen(columns, rows)
         self.stream = pyte.ByteStream(self.screen)
         self.sent = 0

@@ -56,7 +56,7 @@ def session(folder: Path, columns: int, rows: int) -> Iterator[tuple[str, str]]:
         terminal.settle(0.6)
         yield "Tab, four steps down, Enter, 0.7, Enter", terminal.text
         press(terminal, "limits")
-        terminal.wait("its input: pressure ratio")
+        terminal.wait("its input: temperature ratio")
         terminal.settle()
         yield "w", terminal.text
         terminal.press("escape")
@@ -82,7 +82,7 @@ def session(folder: Path, columns: int, rows: int) -> Iterator[tuple[str, str]]:
 @pytest.mark.parametrize(("columns", "rows"), SIZES)
 def test_a_newcomer_finds_the_way_by_what_the_screen_says(tmp_path: Path, columns: int, rows: int) -> None:
     seen = dict(session(tmp_path, columns, rows))
-    assert "OVER self-ignition, T3" in seen["opened"]
+    assert "near: self-ignition, T3" in seen["opened"]
     edited = seen["Tab, four steps down, Enter, 0.7, Enter"]
     assert "equivalence ratio" in edited
     assert "+0.01" in edited

@@ -15,6 +15,7 @@ from cycle.case import Case, load
 from cycle.declarations import Input
 from cycle.quantities import input_of
 from cycle.sweep import Axis, Curve, around, curve
+from tests.case_files import case_file
 from tests.tui.screen_support import CASES
 from tui import figures, peek
 from tui.peek import Peek
@@ -28,7 +29,7 @@ HEAT = "combustor.equivalence_ratio"
 
 def session_of(name: str, station: str, key: str) -> Session:
     """A session with the walk of a shipped case, an input in hand."""
-    now = loaded(Session(name), load(CASES / f"{name}.toml"), None)
+    now = loaded(Session(name), load(case_file(name)), None)
     assert now.case is not None
     now = with_figures(now, now.generation, figures.solve(now.case))
     return replace(now, station=station, focus="inputs", inputs={station: key})
@@ -45,22 +46,22 @@ def whole(one: Peek) -> Peek:
 
 
 @pytest.fixture(scope="module")
-def saltmarsh() -> Session:
-    return session_of("saltmarsh", "4", HEAT)
+def plain() -> Session:
+    return session_of("plain", "4", HEAT)
 
 
 @pytest.fixture(scope="module")
-def drawn(saltmarsh: Session) -> Peek:
-    start = peek.opened(saltmarsh)
+def drawn(plain: Session) -> Peek:
+    start = peek.opened(plain)
     assert start is not None
     return whole(start)
 
 
-def test_the_curve_holds_what_solving_one_by_one_gives(drawn: Peek, saltmarsh: Session) -> None:
-    assert saltmarsh.case is not None and drawn.curve is not None
+def test_the_curve_holds_what_solving_one_by_one_gives(drawn: Peek, plain: Session) -> None:
+    assert plain.case is not None and drawn.curve is not None
     assert len(drawn.curve.status) == 2 * LINE_LEVELS[-1] + 1
     for i in (0, 13, 40):
-        walk = cycle.solve(saltmarsh.case.replace({HEAT: drawn.curve.axes[0].values[i]}))
+        walk = cycle.solve(plain.case.replace({HEAT: drawn.curve.axes[0].values[i]}))
         assert drawn.curve.figures["specific_impulse"][i] == pytest.approx(walk.performance.specific_impulse, rel=1e-10)
     picture = view.picture(drawn, None)
     assert isinstance(picture, Chart) and picture.series[0].y == drawn.curve.figures["specific_impulse"]  # s in both systems
@@ -130,10 +131,10 @@ def test_modes_of_a_duct_change_where_its_borders_say() -> None:
     assert any(w.startswith("scramjet to scramjet-shock-train near") for w in words)
 
 
-def test_the_pinned_case_has_a_line_of_its_own_where_it_differs_elsewhere(saltmarsh: Session) -> None:
-    assert saltmarsh.case is not None
-    same = peek.opened(replace(saltmarsh, case=saltmarsh.case.replace({HEAT: 0.7})))
-    other = peek.opened(replace(saltmarsh, case=saltmarsh.case.replace({"inlet.pressure_ratio": 60.0})))
+def test_the_pinned_case_has_a_line_of_its_own_where_it_differs_elsewhere(plain: Session) -> None:
+    assert plain.case is not None
+    same = peek.opened(replace(plain, case=plain.case.replace({HEAT: 0.7})))
+    other = peek.opened(replace(plain, case=plain.case.replace({"inlet.pressure_ratio": 60.0})))
     assert same is not None and same.other is None and other is not None and other.other is not None
     picture = view.picture(whole(other), None)
     assert isinstance(picture, Chart) and [s.role for s in picture.series] == ["now", "pin"]
@@ -150,15 +151,15 @@ def test_the_next_figure_is_there_at_once_and_the_row_in_hand_is_among_them(draw
     assert seen[-1] == "specific impulse" and "Mach number at 4" in seen and len(set(seen)) == 5
 
 
-def test_a_map_is_row_by_row_the_lines_it_is_made_of(drawn: Peek, saltmarsh: Session) -> None:
-    assert saltmarsh.case is not None
+def test_a_map_is_row_by_row_the_lines_it_is_made_of(drawn: Peek, plain: Session) -> None:
+    assert plain.case is not None
     one = whole(peek.with_second(drawn, "flight.mach"))
     picture = view.picture(one, None)
     assert isinstance(picture, Grid) and picture.here == (0.6, 8.0) and picture.cursor is None
     assert len(picture.x) == len(picture.y) == 21
     assert one.curve is not None
     j = 5
-    alone = curve(saltmarsh.case.replace({"flight.mach": picture.y[j]}), {HEAT: one.curve.axes[1].values})
+    alone = curve(plain.case.replace({"flight.mach": picture.y[j]}), {HEAT: one.curve.axes[1].values})
     assert [s or "solved" for s in picture.status[j]] == list(alone.status)
     solved = [i for i, s in enumerate(alone.status) if s == "solved"]
     assert [picture.z[j][i] for i in solved] == pytest.approx([alone.figures["specific_impulse"][i] for i in solved], rel=1e-9)
@@ -176,8 +177,8 @@ def test_a_map_is_row_by_row_the_lines_it_is_made_of(drawn: Peek, saltmarsh: Ses
         ("10", "nozzle.internal_area_ratio", "no value yet"),
     ],
 )
-def test_what_cannot_be_drawn_says_so(saltmarsh: Session, station: str, key: str, words: str) -> None:
-    now = replace(saltmarsh, station=station, inputs={station: key})
+def test_what_cannot_be_drawn_says_so(plain: Session, station: str, key: str, words: str) -> None:
+    now = replace(plain, station=station, inputs={station: key})
     assert peek.opened(now) is None and words in peek.drawable(peek.in_hand(now))
 
 

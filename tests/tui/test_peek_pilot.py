@@ -13,6 +13,7 @@ from typing import Any
 import pytest
 
 from cycle.case import load
+from tests.case_files import case_file
 from tests.tui.screen_support import CASES, Driver, opened, to_input
 from tui import peek, sweeping
 from tui.screens.peek import PeekScreen
@@ -23,7 +24,7 @@ HEAT = "combustor.equivalence_ratio"
 
 @pytest.fixture
 def path(tmp_path: Path, state: Path) -> Path:
-    return Path(shutil.copy(CASES / "saltmarsh.toml", tmp_path / "saltmarsh.toml"))
+    return Path(shutil.copy(case_file("plain"), tmp_path / "plain.toml"))
 
 
 async def to_peek(driver: Driver) -> PeekScreen:
@@ -130,7 +131,7 @@ async def test_a_study_is_made_undone_saved_and_read_again(path: Path) -> None:
         await driver.until(lambda: not driver.session.unsaved)
         vary = load(path).studies["heat"]["vary"][0]
         assert dict(vary) == {"input": HEAT, "from": 0.4, "to": 0.8, "points": 41}
-        assert 'title = "Saltmarsh test article, hydrogen"   # invented' in path.read_text()
+        assert 'title = "Plain hydrogen scramjet"   # invented' in path.read_text()
 
 
 async def test_picture_and_data_are_written_and_nothing_is_overwritten(path: Path, tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:

@@ -12,7 +12,7 @@ import pytest
 
 from cycle.case import load
 from cycle.errors import CaseError
-from tests.tui.screen_support import CASES
+from tests.case_files import case_file
 from tui import figures, session, writing
 from tui.session import Session, loaded, with_figures
 from tui.views import pictures, went
@@ -21,7 +21,7 @@ from tui.views.went import ACCOUNTS
 
 def walked(name: str, **changes: object) -> Session:
     """A session with the assessed walk of a shipped case, pinned; then, where changes are given, with that of the changed case."""
-    now = loaded(Session(name), load(CASES / f"{name}.toml"), None)
+    now = loaded(Session(name), load(case_file(name)), None)
     assert now.case is not None
     now = with_figures(now, now.generation, figures.assess(figures.solve(now.case)))
     if changes:
@@ -33,7 +33,7 @@ def walked(name: str, **changes: object) -> Session:
 
 @pytest.fixture(scope="module")
 def changed() -> Session:
-    return walked("saltmarsh", combustor__equivalence_ratio=0.7)
+    return walked("plain", combustor__equivalence_ratio=0.7)
 
 
 @pytest.mark.parametrize("account", ACCOUNTS, ids=lambda a: a.key)

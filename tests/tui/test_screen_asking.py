@@ -7,6 +7,7 @@ from pathlib import Path
 import pytest
 
 from cycle.units import show
+from tests.case_files import case_file
 from tests.tui.screen_support import CASES, Driver, opened, to_input
 from tui import finding, tracing
 from tui.screens.roster import Roster
@@ -18,7 +19,7 @@ from tui.tracing import HEADLINE, Place
 def path(tmp_path: Path, state: Path) -> Path:
     """A case with its place of flight said by the dynamic pressure."""
     file = tmp_path / "case.toml"
-    file.write_text((CASES / "saltmarsh.toml").read_text())
+    file.write_text(case_file("plain").read_text())
     return file
 
 

@@ -11,7 +11,8 @@ from cycle.case import Case, template
 from cycle.limit_solving import solve_for_limit
 from cycle.sensitivity import Sensitivities, sensitivities
 from cycle.units import format_number
-from tests.tui.screen_support import CASES, Driver, opened, to_input
+from tests.case_files import case_file
+from tests.tui.screen_support import Driver, opened, to_input
 from tui import figures, items
 from tui.figures import Figures
 from tui.screens import desk
@@ -23,13 +24,13 @@ from tui.session import watched
 
 def copied(name: str, folder: Path) -> Path:
     path = folder / f"{name}.toml"
-    path.write_bytes((CASES / f"{name}.toml").read_bytes())
+    path.write_bytes(case_file(name).read_bytes())
     return path
 
 
 @pytest.fixture
 def path(tmp_path: Path, state: Path) -> Path:
-    return copied("saltmarsh", tmp_path)
+    return copied("plain", tmp_path)
 
 
 async def weighed(driver: Driver) -> Sensitivities:
@@ -75,7 +76,7 @@ async def test_one_sided_and_left_out_inputs_say_so(path: Path) -> None:
         await weighed(driver)
         await driver.press("end")
         await to_input(driver, "nozzle.divergence_factor")
-        assert answer(driver).startswith("+0.005 (below only): thrust ")
+        assert answer(driver).startswith("-0.005 (below only): thrust -")
         await driver.press("home")
         await to_input(driver, "limits.dynamic_pressure_low")
         assert answer(driver).startswith("not varied: a threshold of a limit")

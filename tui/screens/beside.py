@@ -92,7 +92,7 @@ class Comparison:
             return
         walk = view.walks[view.hand]
         self.sharing.clear()
-        self._share_on(walk, _pieces(view.walks[0].case, walk.case))
+        self._share_on(walk, _pieces(view.walks[0].case, walk.case, ("A", view.letter)))
 
     def _share_on(self, walk: Walked, pieces: Iterator[Shares | None]) -> None:
         """Ask for the next piece of the shares of a walk, until they are there."""
@@ -180,11 +180,11 @@ class Comparison:
         self._repaint()
 
 
-def _pieces(first: Case, other: Case) -> Iterator[Shares | None]:
+def _pieces(first: Case, other: Case, names: tuple[str, str]) -> Iterator[Shares | None]:
     """The shares of a difference, None while they are not there yet. Each piece is computed where it is asked for."""
     from cycle.shares import shares_in_steps
 
-    steps = shares_in_steps(first, other)
+    steps = shares_in_steps(first, other, names=names)
     while True:
         try:
             yield next(steps)

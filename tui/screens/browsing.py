@@ -7,7 +7,8 @@ from collections.abc import Callable
 from dataclasses import replace
 from typing import TYPE_CHECKING, Any
 
-from tui import folder, journal, keeping, sources, trash
+from cycle.atomic import is_own
+from tui import folder, journal, keeping, shipped, sources, trash
 from tui.actions import key_of
 from tui.engine import Engine, Result
 from tui.errands import Errands
@@ -37,6 +38,13 @@ VERBS = (
     Verb("n", "n", "notes", stays=True),
     Verb("R", "R", "recent", bare=True),
 )
+
+OF_SHIPPED = (
+    *(replace(verb, shown="") if verb.key in "rdnu" else verb for verb in VERBS),
+    Verb("S", "S", "cases of the working folder", bare=True),
+)
+"""Verbs of the shipped cases: what would change a file is told why not, and is not offered."""
+READ_ONLY = "shipped cases are read-only; c copies one to the working folder"
 
 
 class Browsing(Desk, inherit_bindings=False):
@@ -78,12 +86,14 @@ class Shelf:
     def _session(self) -> Session:
         return self._desk.session
 
-    def open(self) -> None:
-        """Show the cases of the folder of the case that is open."""
-        path = os.path.abspath(self._session.path or "case.toml")
+    def open(self, at: str = "") -> None:
+        """Show the cases of a folder. at: the folder, "" for that of the case that is open."""
+        path = os.path.abspath(at or self._session.path or "case.toml")
         self._folder = path if os.path.isdir(path) else os.path.dirname(path)
         self._entries, self._said = (), "the folder is being read ..."
-        self._list = Roster(f"Cases of {cases.homely(self._folder)}", self._rows, VERBS, head=self._head, told=self._told, act=self._act)
+        own = shipped.is_shipped(self._folder)
+        title = "Shipped cases, read-only" if own else f"Cases of {cases.homely(self._folder)}"
+        self._list = Roster(title, self._rows, OF_SHIPPED if own else VERBS, head=self._head, told=self._told, act=self._act)
         self._desk.app.push_screen(self._list, self._chosen)
         self._look("")
 
@@ -150,6 +160,8 @@ class Shelf:
         self.looking.clear()
         if key == "R":
             self._ask_recent()
+        elif key == "S":
+            self.open(os.getcwd())
         elif key == "enter" and (entry := self._entry(name)) is not None:
             self._open(entry.path)
         elif self._session.case is None and not self._session.faults:
@@ -186,19 +198,24 @@ class Shelf:
         self.filing.ask(job, then)
 
     def _target(self, name: str) -> str:
-        """Path of a name typed; without an ending it is that of a case."""
+        """Path of a name typed; without an ending it is that of a case, and from the shipped cases it leads to the working folder."""
         typed = os.path.expanduser(name)
-        return os.path.join(self._folder, typed if os.path.splitext(typed)[1] else f"{typed}.toml")
+        at = os.getcwd() if shipped.is_shipped(self._folder) else self._folder
+        return os.path.join(at, typed if os.path.splitext(typed)[1] else f"{typed}.toml")
 
     def _copy(self, entry: Entry) -> None:
         def named(name: str | None) -> None:
             if name:
                 target = self._target(name)
-                self._do(lambda: folder.copy(entry.path, target), "not copied", lambda _: f"copied to {os.path.basename(target)}", target)
+                where = cases.homely(target) if os.path.dirname(target) != self._folder else os.path.basename(target)
+                self._do(lambda: folder.copy(entry.path, target), "not copied", lambda _: f"copied to {where}", target)
 
         self._desk.app.push_screen(Prompt(f"Copy {clean(entry.name)} to (name of a new file)", entry.name), named)
 
     def _rename(self, entry: Entry) -> None:
+        if is_own(entry.path):
+            self._say(READ_ONLY)
+            return
         if any(held.live for held in entry.held) and not self._here(entry.path):
             self._say("not renamed: another session has unsaved work of it")
             return
@@ -229,6 +246,9 @@ class Shelf:
         return ""
 
     def _delete(self, entry: Entry) -> None:
+        if is_own(entry.path):
+            self._say(READ_ONLY)
+            return
         if self._here(entry.path):
             self._say("the case that is open is not deleted; open another one first")
             return
@@ -265,6 +285,9 @@ class Shelf:
     def _notes(self, entry: Entry) -> None:
         solved = self._solved.get(entry.stamp)
         case = self._session.case if self._here(entry.path) else None
+        if case is None and shipped.is_shipped(entry.path):
+            self._say(READ_ONLY)
+            return
         if case is None and (solved is None or solved.fault):
             self._say("a file that is no case has no notes to edit" if solved is not None else cases.WAITING)
             return
@@ -312,12 +335,17 @@ class Shelf:
 
         def chosen(answer: tuple[str, str] | None) -> None:
             key, path = answer or ("", "")
-            if key == "b":
-                self.open()
+            if key in ("b", "S"):
+                self.open(str(shipped.FOLDER) if key == "S" else "")
             elif key == "enter":
                 self._open(path)
 
-        verbs = (Verb("enter", "Enter", "open"), Verb("x", "x", "forget", stays=True), Verb("b", "b", "cases of the folder", bare=True))
+        verbs = (
+            Verb("enter", "Enter", "open"),
+            Verb("x", "x", "forget", stays=True),
+            Verb("b", "b", "cases of the folder", bare=True),
+            Verb("S", "S", "shipped cases", bare=True),
+        )
         roster = Roster("Cases opened last, and unsaved work", shown, verbs, head=lambda wide: [line((fit(words, wide), DIM))], act=act)
         self._desk.app.push_screen(roster, chosen)
 

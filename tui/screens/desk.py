@@ -126,7 +126,8 @@ class Desk(Screen[None], inherit_bindings=False):
             self._refused(fault_words(error, self.session.entry.key if self.session.entry is not None else ""))
             return False
         words = items.describe(old, case, change, self.session.system)
-        self.adopt(session.edited(self.session, case, words), {"edit": change}, rapid)
+        back = session.came_back(old, case)
+        self.adopt(session.edited(self.session, case, words), {"edit": change, **({"back": back} if back else {})}, rapid)
         return True
 
     def _refused(self, faults: tuple[str, ...]) -> None:

@@ -3,11 +3,13 @@
 from __future__ import annotations
 
 from collections.abc import Callable, Mapping
+from contextlib import suppress
 from dataclasses import replace
 from typing import TYPE_CHECKING
 
 from textual import events
 
+from cycle.errors import CaseError
 from cycle.quantities import GROUP, INPUT
 from cycle.units import format_number, show
 from tui import items, keying, rows, session, starts
@@ -101,9 +103,16 @@ class Editing(Desk, inherit_bindings=False):
         return held
 
     def _cycle(self, hand: Item, sign: int) -> None:
-        """The next choice, with start values for what it needs."""
+        """The next choice, with start values for what it needs and what was set aside does not give."""
         choice = items.next_choice(hand, sign)
-        self._set(hand.key, choice, beside=self._beside(hand.key, choice))
+        beside = self._beside(hand.key, choice)
+        case = self.session.case
+        if case is not None and any(key in case.aside for key in beside):
+            own = {key: value for key, value in beside.items() if key not in case.aside}
+            with suppress(CaseError):
+                case.replace({hand.key: choice, **own})
+                beside = own
+        self._set(hand.key, choice, beside=beside)
 
     def _beside(self, name: str, tag: str) -> Mapping[str, object]:
         """Start values of what a way or a choice needs beside itself."""

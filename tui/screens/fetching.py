@@ -6,7 +6,7 @@ import os
 from collections.abc import Callable
 
 from cycle.errors import CaseError, FileChanged
-from tui import sources
+from tui import shipped, sources
 from tui.engine import Engine, Result
 from tui.errands import Errands
 from tui.figures import Figures
@@ -73,7 +73,8 @@ class Fetching(Desk, inherit_bindings=False):
         def chosen(answer: tuple[str, str] | None) -> None:
             source = offered[int(answer[1])] if answer and answer[1] else None
             if source is BY_NAME:
-                question = Prompt("Name of a case or of a file of stored walks", os.path.join(folder, ""))
+                start = "" if shipped.is_shipped(path) else os.path.join(folder, "")
+                question = Prompt("Name of a case or of a file of stored walks", start)
                 self.app.push_screen(question, lambda name: _named(name, then))
             elif source is not None:
                 then(source)

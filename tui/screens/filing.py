@@ -13,7 +13,7 @@ from typing import TYPE_CHECKING, Any
 from rich.text import Text
 
 from cycle.errors import CaseError, FileChanged
-from tui import items, journal, keeping, session
+from tui import items, journal, keeping, session, shipped
 from tui.actions import key_of
 from tui.engine import Result
 from tui.journal import Left, Record
@@ -115,6 +115,9 @@ def _again(now: Session, record: Record) -> Session | None:
     if not session.is_change(change):
         return None
     case = session.apply(now.case, change)
+    back = record.get("back")
+    if isinstance(back, dict):  # a session that saved in between had set it aside, and the file has it no more
+        case = case.replace({key: value for key, value in back.items() if key not in case.spelled})
     return session.edited(now, case, items.describe(now.case, case, change, now.system))
 
 
@@ -171,11 +174,19 @@ class Filing(Desk, inherit_bindings=False):
         got: Read = result.value
         self.journal.content = got.content
         self.session = session.loaded(replace(self.session, faults=()), got.case, got.case.stamp)
-        self.put(replace(self.session, note=got.trouble))
+        self.put(replace(self.session, note=got.trouble or self._read_only()))
         self.solve()
         self.case_read(got)
         if got.left is not None:
             self._offer(got.left)
+
+    def _read_only(self) -> str:
+        """What is said of a shipped case when it opens, "" for one of the user's."""
+        path = self.session.path
+        if not shipped.is_shipped(path):
+            return ""
+        name = clean(os.path.splitext(os.path.basename(path))[0])
+        return f"shipped case {name}, read-only: {key_of(self.session.actions, 'save')} saves a copy under a name of yours"
 
     def _offer(self, left: Left) -> None:
         when = cases.when(left.written)
@@ -222,16 +233,18 @@ class Filing(Desk, inherit_bindings=False):
         self.solve()
 
     def do_save(self) -> None:
-        """Save to the file the case was read from."""
-        if not self.session.path:
+        """Save to the file the case was read from; a case without one, and a shipped case, ask for a name."""
+        if not self.session.path or shipped.is_shipped(self.session.path):
             self.do_save_as()
         else:
             self._save(self.session.path, self.session.stamp)
 
     def do_save_as(self) -> None:
-        """Ask for a name and save there; an existing file is never overwritten."""
-        start = self.session.path or "case.toml"
-        self.app.push_screen(Prompt("Save the case as (name of a new file)", start), self._named)
+        """Ask for a name and save there; an existing file is never overwritten. A shipped case is saved to the working folder."""
+        path = self.session.path or "case.toml"
+        copied = shipped.is_shipped(path)
+        question = "Save a copy of the shipped case as (name of a new file)" if copied else "Save the case as (name of a new file)"
+        self.app.push_screen(Prompt(question, os.path.basename(path) if copied else path), self._named)
 
     def _named(self, name: str | None) -> None:
         if not name:
@@ -299,7 +312,7 @@ class Filing(Desk, inherit_bindings=False):
         elif self.session.unsaved and self.journal.failure:
             self._ask_to_lose("Leave?", lambda: self.app.exit(return_code=0))
         elif self.session.unsaved:
-            name = self.session.path or "without a name"
+            name = shipped.named(self.session.path) or "without a name"
             self.app.exit(return_code=0, message=Text(f"Work is kept: the unsaved edits of {clean(name)} are offered next time."))
         else:
             self.journal.remove()

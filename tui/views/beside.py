@@ -258,7 +258,11 @@ def _shares(view: Beside, found: Comparison, system: str, watched: str, wide: in
     if shares is None:
         return [line(""), line(title), line(WAITING)]
     if shares.why_not:
-        return [line(""), line(title), *(line(text) for text in _wrapped(f"not shared out: {shares.why_not}", wide))]
+        return [
+            line(""),
+            line(title),
+            *(line(text) for text in _wrapped("; ".join((f"not attributed: {shares.why_not}", *shares.notes)), wide)),
+        ]
     bars = watched if watched in shares.outputs else shares.outputs[0]
     ends = {"A": (found.sides[0], shares.first), view.letter: (found.sides[view.hand], shares.second)}
     said = [*recomputed(ends), *shares.notes]

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from typing import TYPE_CHECKING
 
+from cycle import noise
 from cycle.quantities import OUTPUT
 from tui.figures import NAN
 from tui.line import BOLD, DIM, PLAIN, Line, clean, fit, line, wrap
@@ -17,8 +18,6 @@ if TYPE_CHECKING:
 SIDES = {"above": "above only", "below": "below only"}
 """Sides of a change that is none about the value -> words."""
 SIGNS = {"above": "^", "below": "v"}
-NOTHING = 1e-7
-"""Relative change of a figure below which none is told: far above rounding, also in a figure that is a small difference of large ones."""
 _LEGEND = "^ v one side only  ~ mode changes"
 TOLD = 4
 """Lines on the input in hand, at most."""
@@ -56,7 +55,7 @@ def step(row: Sensitivity, system: str) -> str:
 def change(known: Sensitivities, row: Sensitivity, key: str, system: str) -> str:
     """What the step gives of a figure, signed, without its unit; "-" where nothing is told."""
     base, moved = known.base.get(key, NAN), _of(row, key)
-    return difference(key, base + (0.0 if abs(moved) <= NOTHING * abs(base) else moved), base, system)
+    return difference(key, base + noise.settled(moved, base, noise.STEP), base, system)
 
 
 def _of(row: Sensitivity, key: str) -> float:

@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from cycle import noise
 from cycle.quantities import OUTPUT
 from cycle.units import display_unit, format_number, show
 
@@ -26,9 +27,7 @@ def difference(key: str, value: float, base: float, system: str, digits: int = 3
     change = show(value, spec.unit, system, key)[0] - show(base, spec.unit, system, key)[0]
     if change != change:
         return "-"
-    # below the noise of the solution a change is none
-    scale = max(abs(value), abs(base))
-    if scale == 0.0 or abs(value - base) <= 1e-9 * scale:
+    if noise.change(value, base) == 0.0:
         return "+0"
     return f"{'+' if change > 0 else ''}{format_number(change, digits)}"
 
@@ -44,8 +43,8 @@ def percent(value: float, base: float) -> str:
     """Change against a base in percent, signed; "-" where there is none to tell."""
     if value != value or base != base or base == 0.0:
         return "-"
-    change = 100.0 * (value - base) / abs(base)
-    return "+0" if abs(change) < 5e-8 else f"{'+' if change > 0 else ''}{format_number(change, 3)}"
+    change = 100.0 * noise.change(value, base) / abs(base)
+    return f"{'+' if change >= 0.0 else ''}{format_number(change, 3)}"
 
 
 def quantity(value: float, dimension: str, system: str, digits: int = 4, key: str = "") -> str:

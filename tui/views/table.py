@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+from cycle import noise
 from cycle.quantities import OUTPUT
 from cycle.units import show
 from tui.figures import NAN, STATION_KEYS, STATIONS, Figures, Passage
@@ -212,8 +213,7 @@ def settled(found: Figures, station: str, key: str) -> float:
     """A figure of a station, zero where it is round-off beside those of the other stations, or beside what it is a difference of."""
     value = found.at(station, key)
     keys = (key, *DIFFERENCES.get(key, ()))
-    scale = max((abs(v) for k in keys for s in found.stations if (v := found.at(s, k)) == v), default=0.0)
-    return 0.0 if abs(value) < 1e-9 * scale else value
+    return float(noise.settled(value, noise.largest(found.at(s, k) for k in keys for s in found.stations)))
 
 
 def changes_shown(session: Session) -> bool:

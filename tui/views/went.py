@@ -7,6 +7,7 @@ import io
 from collections.abc import Callable
 from dataclasses import dataclass
 
+from cycle import noise
 from cycle.units import format_number, show
 from tui.figures import NAN, Figures, Share
 from tui.line import BOLD, DIM, PLAIN, Line, clean, fit, line
@@ -22,8 +23,6 @@ PERCENT = 7
 
 LEAST_LABEL, LEAST_BAR = 20, 10
 BLOCKS: dict[Glyphs, str] = {"unicode": "█", "ascii": "="}
-NOTHING = 1e-9
-"""Share of the largest part below which one is nothing."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -47,7 +46,7 @@ ACCOUNTS: tuple[Account, ...] = (
 @dataclass(frozen=True, slots=True)
 class Bar:
     """One row of an account in the unit shown: its words, the number, that of the pinned walk (nan where it has none), and where
-    its bar begins and ends. whole: whether it is a sum and no part."""
+    its bar begins and ends. whole: whether it is a sum and no part; change: against the pinned walk."""
 
     label: str
     value: float
@@ -55,6 +54,7 @@ class Bar:
     start: float
     end: float
     whole: bool
+    change: float
 
 
 def bars(session: Session, account: Account) -> list[Bar]:
@@ -62,7 +62,7 @@ def bars(session: Session, account: Account) -> list[Bar]:
     found, pin = shown_walk(session), pinned_walk(session)
     rows = account.rows(found) if found is not None else ()
     theirs = {r.label: r for r in account.rows(pin)} if pin is not None else {}
-    most = max((abs(r.value) for r in rows), default=0.0)
+    most = noise.largest(_shown(r, session) for r in (*rows, *theirs.values()))
     out: list[Bar] = []
     level = 0.0
     for n, row in enumerate(rows):
@@ -76,9 +76,9 @@ def bars(session: Session, account: Account) -> list[Bar]:
             whole = n == 0 or (account.key == "losses" and n == len(rows) - 1)
             start, end = (0.0, own) if whole else (level, level - own)
         level = end
-        if whole or any(abs(v) > NOTHING * most for v in (row.value, other.value if other is not None else 0.0)):
-            out.append(Bar(clean(row.label), own if whole or account.signed else -own, pinned if whole or account.signed else -pinned,
-                           start, end, whole))  # fmt: skip
+        if whole or any(noise.settled(v, most) for v in (own, pinned if other is not None else 0.0)):
+            sign = 1.0 if whole or account.signed else -1.0
+            out.append(Bar(clean(row.label), sign * own, sign * pinned, start, end, whole, noise.settled(sign * (own - pinned), most)))
     return out
 
 
@@ -125,7 +125,7 @@ def lines(session: Session, account: Account, wide: int, glyphs: Glyphs) -> list
     out: list[Line] = [line((" " * label + heads, DIM))]
     for b in rows:
         style = BOLD if b.whole else PLAIN
-        change = f"{_number(b.pinned)}{_number(_change(b), signed=True)}" if pinned else ""
+        change = f"{_number(b.pinned)}{_number(b.change, signed=True)}" if pinned else ""
         words = f"{fit(b.label, label - 1):<{label}}{_number(b.value)}{_percent(b.value, sum_of)}{change} "
         out.append(line((words, style), *_bar(b, low, high, room, glyphs)))
     return out
@@ -133,11 +133,6 @@ def lines(session: Session, account: Account, wide: int, glyphs: Glyphs) -> list
 
 def _percent(value: float, whole: float) -> str:
     return f"{100.0 * value / whole:{PERCENT}.1f}" if whole else " " * PERCENT
-
-
-def _change(b: Bar) -> float:
-    change = b.value - b.pinned
-    return 0.0 if abs(change) <= NOTHING * max(abs(b.value), abs(b.pinned)) else change
 
 
 def _number(value: float, signed: bool = False) -> str:
@@ -180,5 +175,5 @@ def table_csv(session: Session, account: Account) -> str:
     writer.writerow(["row", *(f"{head}, {unit}" if unit else head for head in ("value", "pinned", "change"))])
     for b in bars(session, account):
         known = b.pinned == b.pinned
-        writer.writerow([b.label, repr(b.value), repr(b.pinned) if known else "", repr(b.value - b.pinned) if known else ""])
+        writer.writerow([b.label, repr(b.value), repr(b.pinned) if known else "", repr(b.change) if known else ""])
     return out.getvalue()
