@@ -98,9 +98,13 @@ def try_train(duct: Duct) -> tuple[Flow | None, str, dict[str, float]]:
         return None, f"train: no p3 whose core just fills the duct (last Ac/A {after + 1.0:.4g})", {"train_fill": after}
     p3 = float(brentq(lambda p: _fullest(duct, core(duct, p))[0] - 1.0, a, b, xtol=1e-12 * a, rtol=1e-13))
     found = core(duct, p3)
-    _, k, x = _fullest(duct, found)
+    return _train(duct, found, *_fullest(duct, found)[1:])
+
+
+def _train(duct: Duct, found: Core, k: int, x: float) -> tuple[Flow | None, str, dict[str, float]]:
+    """The flow behind a train whose core just fills the duct at x in piece k."""
+    p3, place = found.pressure, _place(duct, k, x)
     momentum = float(np.interp(x, [place.x for place in duct.pieces[k].places], found.momentum[k]))
-    place = _place(duct, k, x)
     mach = duct.mach_of(k, x, (momentum / place.mass_flow) ** 2, p3)
     margins = {"core_mach": mach - 1.0}
     where = f"p3/p2 {p3 / duct.pressure:.6g}, fills at {x:.5g} m, core M {mach:.5g}"
@@ -111,6 +115,18 @@ def try_train(duct: Duct) -> tuple[Flow | None, str, dict[str, float]]:
         return None, f"train: chokes at {choked:.4f} m behind it: {where}", margins
     margins["room"] = _least_room(rows)
     return _leaves(duct, "scramjet-shock-train", rows[-1], pressure=p3, filled=x, **margins), f"train stands: {where}", margins
+
+
+def other_train(duct: Duct, pressure: float) -> Flow | None:
+    """The flow behind a core of this pressure that just fills the duct at a place, and would overfill it behind, were it still separated."""
+    found = core(duct, pressure)
+    for k, (part, fill) in enumerate(zip(duct.pieces, found.fill, strict=True)):
+        x, top = _top(np.array([place.x for place in part.places]), fill)
+        if abs(top - 1.0) < 1e-4:
+            return _train(duct, found, k, x)[0]
+        if top > 1.0:
+            return None
+    return None
 
 
 def _place(duct: Duct, piece: int, x: float) -> Place:
