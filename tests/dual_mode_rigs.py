@@ -122,7 +122,7 @@ class Comparison:
 
 def _apart(own: str, impulse: float, plain: scalar_modes.Verdict) -> float:
     """Difference of the exit impulse to the nearest flow of the plain march in the same mode; NaN where there is none."""
-    flows = [flow for flow in dict.fromkeys((plain.flow, *plain.throats)) if flow is not None and flow.mode == own]
+    flows = [flow for flow in (plain.flow, *plain.throats) if flow is not None and flow.mode == own]
     return min((impulse / flow.impulse - 1.0 for flow in flows), key=abs, default=float("nan"))
 
 

@@ -117,7 +117,7 @@ class Equilibrium(_Real):
     fuel: str
     air: dict[str, float]
 
-    def _phase(self, ratio: float, burnt: float):  # type: ignore[no-untyped-def]  # noqa: ANN202
+    def _phase(self, ratio: float, burnt: float):  # type: ignore[no-untyped-def]
         phase, W = _phase(self.fuel), _species(self.fuel)[0]
         phase.TPX = 1000.0, 1e5, {**self.air_moles(), self.fuel: burnt / W, "inert": (ratio - burnt) / W}
         return phase
@@ -181,7 +181,7 @@ def _heat_capacity(low: np.ndarray, high: np.ndarray, T: np.ndarray) -> np.ndarr
 
 
 @cache
-def _data():  # type: ignore[no-untyped-def]  # noqa: ANN202
+def _data():  # type: ignore[no-untyped-def]
     import cantera as ct
 
     return {s.name: s for s in ct.Species.list_from_file("nasa_gas.yaml") if s.name in {*EQUILIBRIUM, *ATOMS}}
@@ -197,17 +197,18 @@ def _species(name: str) -> tuple[float, np.ndarray, np.ndarray]:
 
 
 @cache
-def _phase(fuel: str):  # type: ignore[no-untyped-def]  # noqa: ANN202
+def _phase(fuel: str):  # type: ignore[no-untyped-def]
     """Cantera's gas of these species and the fuel a second time, of an element of its own, which cannot react."""
     import cantera as ct
 
     thermo = _data()[fuel].input_data["thermo"]
     ranges, data = list(thermo["temperature-ranges"]), [[float(a) for a in row] for row in thermo["data"]]
     names = ", ".join(dict.fromkeys((*EQUILIBRIUM, fuel)))
-    return ct.Solution(yaml=f"""
+    text = f"""
 elements: [{{symbol: Fu, atomic-weight: {_species(fuel)[0]}}}]
 phases:
 - {{name: gas, thermo: ideal-gas, elements: [N, O, Ar, C, H, Fu], species: [{{nasa_gas.yaml/species: [{names}]}}, {{species: [inert]}}]}}
 species:
 - {{name: inert, composition: {{Fu: 1}}, thermo: {{model: NASA7, temperature-ranges: {ranges}, data: {data}}}}}
-""")
+"""
+    return ct.Solution(yaml=text)

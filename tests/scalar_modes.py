@@ -87,16 +87,19 @@ def _fullest(duct: Duct, found: Core) -> tuple[float, int, float]:
 
 
 def try_train(duct: Duct) -> tuple[Flow | None, str, dict[str, float]]:
-    pressures = np.geomspace(duct.pressure * (1.0 + 1e-6), duct.normal_shock() * (1.0 - 1e-9), 4 * TRIED)
-    before = _fullest(duct, core(duct, pressures[0]))[0] - 1.0
-    for a, b in pairwise(pressures):
-        after = _fullest(duct, core(duct, b))[0] - 1.0
+    def lacks(pressure: float) -> float:
+        return _fullest(duct, core(duct, pressure))[0] - 1.0
+
+    pressures = np.geomspace(duct.pressure * (1.0 + 1e-6), duct.normal_shock() * (1.0 - 1e-9), 2 * TRIED)
+    before = lacks(pressures[0])
+    for i, pressure in enumerate(pressures[1:]):
+        after = lacks(pressure)
         if before * after <= 0.0:
+            p3 = float(brentq(lacks, pressures[i], pressure, xtol=1e-12 * pressure, rtol=1e-13))
             break
         before = after
     else:
         return None, f"train: no p3 whose core just fills the duct (last Ac/A {after + 1.0:.4g})", {"train_fill": after}
-    p3 = float(brentq(lambda p: _fullest(duct, core(duct, p))[0] - 1.0, a, b, xtol=1e-12 * a, rtol=1e-13))
     found = core(duct, p3)
     return _train(duct, found, *_fullest(duct, found)[1:])
 
@@ -118,7 +121,7 @@ def _train(duct: Duct, found: Core, k: int, x: float) -> tuple[Flow | None, str,
 
 
 def other_train(duct: Duct, pressure: float) -> Flow | None:
-    """The flow behind a core of this pressure that just fills the duct at a place, and would overfill it behind, were it still separated."""
+    """The flow behind a core that just fills the duct at a place, whatever it would do further on, were it separated there still."""
     found = core(duct, pressure)
     for k, (part, fill) in enumerate(zip(duct.pieces, found.fill, strict=True)):
         x, top = _top(np.array([place.x for place in part.places]), fill)
