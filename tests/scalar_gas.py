@@ -103,7 +103,7 @@ class Burning(_Real):
             for _ in range(12):
                 step = (_enthalpy(low, high, T) - enthalpy) / _heat_capacity(low, high, T)
                 T = np.maximum(T - step, 10.0)
-                if np.all(np.abs(step) < 1e-9 * T):
+                if np.all(np.abs(step) < 1e-6 * T):
                     break
             return R * T
 
@@ -132,8 +132,8 @@ class Equilibrium(_Real):
         return Burning(self.fuel, self.air).coldest(ratio, burnt)
 
     def thermal(self, ratio: float, burnt: tuple[float, float], total: float, pressures: tuple[float, float]) -> Thermal:
-        along = np.mean(burnt) + 0.5 * (burnt[1] - burnt[0]) * _nodes(10 if burnt[1] > burnt[0] else 1)
-        heights, logs = 0.5 + 0.5 * _nodes(18), np.log(pressures)
+        along = np.mean(burnt) + 0.5 * (burnt[1] - burnt[0]) * _nodes(12 if burnt[1] > burnt[0] else 1)
+        heights, logs = 0.5 + 0.5 * _nodes(22), np.log(pressures)
         across = np.mean(logs) + 0.5 * (logs[1] - logs[0]) * _nodes(8)
         table = np.empty((along.size, heights.size, across.size))
         for i, b in enumerate(along):
@@ -171,13 +171,17 @@ def _shares(nodes: np.ndarray, at: np.ndarray) -> np.ndarray:
 
 
 def _enthalpy(low: np.ndarray, high: np.ndarray, T: np.ndarray) -> np.ndarray:
-    a = np.moveaxis(np.where(T[..., None] >= 1000.0, high, low), -1, 0)
-    return np.asarray(RU * (a[5] + T * (a[0] + T * (a[1] / 2 + T * (a[2] / 3 + T * (a[3] / 4 + T * a[4] / 5))))))
+    """J per unit of the coefficients, whose last axis is that of the powers."""
+    found = []
+    for c in (low, high):
+        a = [c[..., k] for k in range(6)]
+        found.append(a[5] + T * (a[0] + T * (a[1] / 2 + T * (a[2] / 3 + T * (a[3] / 4 + T * (a[4] / 5))))))
+    return np.asarray(RU * np.where(T >= 1000.0, found[1], found[0]))
 
 
 def _heat_capacity(low: np.ndarray, high: np.ndarray, T: np.ndarray) -> np.ndarray:
-    a = np.moveaxis(np.where(T[..., None] >= 1000.0, high, low), -1, 0)
-    return np.asarray(RU * (a[0] + T * (a[1] + T * (a[2] + T * (a[3] + T * a[4])))))
+    found = [c[..., 0] + T * (c[..., 1] + T * (c[..., 2] + T * (c[..., 3] + T * c[..., 4]))) for c in (low, high)]
+    return np.asarray(RU * np.where(T >= 1000.0, found[1], found[0]))
 
 
 @cache

@@ -10,6 +10,7 @@ A polynomial holds it: a straight line at constant gamma, and the impulse per ma
 from __future__ import annotations
 
 import math
+from collections.abc import Sequence
 from dataclasses import dataclass, field
 from functools import cached_property
 from itertools import pairwise
@@ -19,9 +20,10 @@ from numpy.polynomial import chebyshev
 
 from tests.scalar_gas import Burning, Equilibrium, Perfect, Thermal
 
-_NODES = -np.cos(np.pi * np.arange(18) / 17)
-_POWERS = np.linalg.inv(chebyshev.chebvander(_NODES, 17)).T @ np.array(
-    [np.pad(chebyshev.cheb2poly([0.0] * k + [1.0]), (0, 17 - k))[::-1] for k in range(18)]
+_COUNT = 24
+_NODES = -np.cos(np.pi * np.arange(_COUNT) / (_COUNT - 1))
+_POWERS = np.linalg.inv(chebyshev.chebvander(_NODES, _COUNT - 1)).T @ np.array(
+    [np.pad(chebyshev.cheb2poly([0.0] * k + [1.0]), (0, _COUNT - 1 - k))[::-1] for k in range(_COUNT)]
 )
 """From values at the nodes to the powers of the polynomial through them, the highest first."""
 
@@ -125,6 +127,8 @@ class Piece:
     kick: float
     """Impulse of the fuel that enters at a, N."""
     places: tuple[Place, ...]
+    known: tuple[np.ndarray, ...]
+    """x, area, burnt fuel per air and total enthalpy at the places."""
 
 
 @dataclass(frozen=True)
@@ -216,7 +220,8 @@ class Duct:
         x = np.sort(np.concatenate([ends, 0.5 * (ends[1:] + ends[:-1])]))
         kick = sum(self.mass_flow * self.ratio * i.share * i.speed for i in self.injections if i.x == a)
         inside = 0.5 * (a + b)
-        return Piece(a, b, self._thermal(inside), kick, self.places(x, inside))
+        known = x, self.area(x, inside)[0], self.burnt_ratio(x), self.total_enthalpy(x, inside)
+        return Piece(a, b, self._thermal(inside), kick, self.places(x, inside), known)
 
     def places(self, x: np.ndarray, inside: float) -> tuple[Place, ...]:
         """Places at x in the piece in which `inside` lies."""
@@ -227,7 +232,7 @@ class Duct:
         top = np.full_like(x, self.pressures[1])
         low = (m * thermal(burnt, total, top) / (A * top)) ** 2
         w = (0.5 * (low + high))[:, None] + (0.5 * (high - low))[:, None] * _NODES
-        values = np.tile(thermal(burnt, total, np.full_like(x, self.pressure))[:, None], _NODES.size)
+        values = np.tile(thermal(burnt, total, np.full_like(x, self.pressure))[:, None], _COUNT)
         for _ in range(8):
             pressure = np.clip(m * values / (np.sqrt(w) * A[:, None]), *self.pressures)
             values, before = thermal(burnt[:, None], total[:, None] - 0.5 * w, pressure), values
@@ -320,35 +325,38 @@ class Core:
     fill: tuple[np.ndarray, ...]
 
 
-def core(duct: Duct, pressure: float) -> Core:
-    momentum, fill, now = [], [], duct.impulse - pressure * duct.entry_area
+def cores(duct: Duct, pressures: Sequence[float]) -> list[Core]:
+    """The cores at some pressures, in one go; the drag depends on the momentum and is found by going over it."""
+    p = np.array(pressures)[:, None]
+    now = duct.impulse - p * duct.entry_area
+    momentum, fill = [], []
     for part in duct.pieces:
-        x = np.array([place.x for place in part.places])
-        inside, m = 0.5 * (part.a + part.b), part.places[0].mass_flow
-        A, _ = duct.area(x, inside)
-        burnt, total = duct.burnt_ratio(x), duct.total_enthalpy(x, inside)
-        floor = 1e-3 * duct.impulse
-        values = np.full_like(x, now + part.kick)
+        x, A, burnt, total = part.known
+        m, values = part.places[0].mass_flow, now + part.kick + 0.0 * x
         for _ in range(20):
-            u = np.maximum(values, floor) / m
-            RT = part.thermal(burnt, total - 0.5 * u * u, np.full_like(x, pressure))
+            u = np.maximum(values, 1e-3 * duct.impulse) / m
+            RT = part.thermal(burnt, total - 0.5 * u * u, p)
             if not duct.friction:
                 break
-            drag = pressure / RT * u * u * duct.friction * np.sqrt(np.pi * A)
+            drag = p / RT * u * u * duct.friction * np.sqrt(np.pi * A)
             values, before = now + part.kick - _integral(x, drag), values
             if np.all(np.abs(values - before) < 1e-12 * duct.impulse):
                 break
         momentum.append(values)
-        fill.append(m * RT / (pressure * u * A))
-        now = float(values[-1])
-    return Core(pressure, tuple(momentum), tuple(fill))
+        fill.append(m * RT / (p * u * A))
+        now = values[:, -1:]
+    return [Core(float(p[i, 0]), tuple(each[i] for each in momentum), tuple(each[i] for each in fill)) for i in range(p.size)]
+
+
+def core(duct: Duct, pressure: float) -> Core:
+    return cores(duct, [pressure])[0]
 
 
 def _integral(x: np.ndarray, y: np.ndarray) -> np.ndarray:
-    """Of y from x[0] on, by the parabola through the three places of each step."""
+    """Of y along its last axis from x[0] on, by the parabola through the three places of each step."""
     h = x[2::2] - x[:-2:2]
-    a, b, c = y[:-2:2], y[1::2], y[2::2]
-    found = np.zeros_like(x)
-    found[2::2] = np.cumsum(h / 6.0 * (a + 4.0 * b + c))
-    found[1::2] = found[:-2:2] + h / 24.0 * (5.0 * a + 8.0 * b - c)
+    a, b, c = y[..., :-2:2], y[..., 1::2], y[..., 2::2]
+    found = np.zeros_like(y)
+    found[..., 2::2] = np.cumsum(h / 6.0 * (a + 4.0 * b + c), -1)
+    found[..., 1::2] = found[..., :-2:2] + h / 24.0 * (5.0 * a + 8.0 * b - c)
     return found

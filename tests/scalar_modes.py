@@ -13,7 +13,7 @@ from itertools import pairwise
 import numpy as np
 from scipy.optimize import brentq
 
-from tests.scalar_march import Core, Duct, Place, Row, attached, core
+from tests.scalar_march import Core, Duct, Place, Row, attached, core, cores
 
 TRIED = 60
 """Pressures tried between that of station 2 and that behind a normal shock there."""
@@ -91,15 +91,12 @@ def try_train(duct: Duct) -> tuple[Flow | None, str, dict[str, float]]:
         return _fullest(duct, core(duct, pressure))[0] - 1.0
 
     pressures = np.geomspace(duct.pressure * (1.0 + 1e-6), duct.normal_shock() * (1.0 - 1e-9), 2 * TRIED)
-    before = lacks(pressures[0])
-    for i, pressure in enumerate(pressures[1:]):
-        after = lacks(pressure)
-        if before * after <= 0.0:
-            p3 = float(brentq(lacks, pressures[i], pressure, xtol=1e-12 * pressure, rtol=1e-13))
-            break
-        before = after
-    else:
-        return None, f"train: no p3 whose core just fills the duct (last Ac/A {after + 1.0:.4g})", {"train_fill": after}
+    tops = np.array([_fullest(duct, found)[0] - 1.0 for found in cores(duct, pressures)])
+    crossed = np.flatnonzero(tops[:-1] * tops[1:] <= 0.0)
+    if crossed.size == 0:
+        return None, f"train: no p3 whose core just fills the duct (last Ac/A {tops[-1] + 1.0:.4g})", {"train_fill": tops[-1]}
+    a, b = pressures[crossed[0] : crossed[0] + 2]
+    p3 = float(brentq(lacks, a, b, xtol=1e-12 * a, rtol=1e-13))
     found = core(duct, p3)
     return _train(duct, found, *_fullest(duct, found)[1:])
 
@@ -148,8 +145,9 @@ class Shot:
     rows: tuple[Row, ...] = ()
 
 
-def shoot(duct: Duct, pressure: float) -> Shot:
-    found = core(duct, pressure)
+def shoot(duct: Duct, found: Core) -> Shot:
+    """The attached subsonic stream behind a core."""
+    pressure = found.pressure
     for k, part in enumerate(duct.pieces):
         over = np.flatnonzero(found.fill[k] >= 1.0)
         if over.size == 0:
@@ -244,7 +242,7 @@ def try_throats(duct: Duct) -> tuple[list[Flow], list[str], dict[str, float]]:
     """All flows with a thermal throat."""
     low, high = duct.pressure, duct.normal_shock()
     spread = np.concatenate([np.linspace(0.0, 0.98, TRIED)[1:], 1.0 - np.geomspace(0.015, 1e-8, 12)])
-    shots = [shoot(duct, low + float(s) * (high - low)) for s in spread] + [at_entry(duct)]
+    shots = [shoot(duct, found) for found in cores(duct, low + spread * (high - low))] + [at_entry(duct)]
     flows, tried = [], []
     kinds = [shot.kind for shot in shots]
     tried.append("p3 tried: " + ", ".join(f"{kinds.count(kind)} {kind}" for kind in dict.fromkeys(kinds)))
@@ -270,9 +268,9 @@ def _borders(duct: Duct, a: Shot, b: Shot) -> list[tuple[Shot, Shot]]:
     differ = _differ(duct, a, b)
     if not differ and a.kind == b.kind:
         return []
-    if abs(b.pressure - a.pressure) <= (2e-13 if differ else 1e-9) * b.pressure:
+    if abs(b.pressure - a.pressure) <= (1e-10 if differ else 1e-8) * b.pressure:
         return [(a, b)] if differ else []
-    half = shoot(duct, 0.5 * (a.pressure + b.pressure))
+    half = shoot(duct, core(duct, 0.5 * (a.pressure + b.pressure)))
     return _borders(duct, a, half) + _borders(duct, half, b)
 
 
