@@ -6,7 +6,8 @@ import pytest
 
 import cycle
 from tests import scalar_march
-from tests.heavy_rigs import confirm, heavy_rig, scalar_duct
+from tests.dual_mode_rigs import scalar_duct
+from tests.heavy_rigs import confirm, heavy_rig
 from tests.random_flowpath import loaded
 
 CHOKED = (82, 127, 129, 399, 492, 582, 590, 638, 861, 891, 942)
@@ -24,7 +25,7 @@ UNSTARTED = (
 )  # fmt: skip
 """The first that are unstarted, so that there are two hundred without a mode; constant gamma and frozen gas."""
 
-BLOCKS = 10
+BLOCKS = 20
 
 WITH_MODE = {
     17: "scramjet", 2: "scramjet", 1: "scramjet-shock-train", 3: "scramjet-shock-train", 6: "ramjet-thermal-throat",
@@ -38,9 +39,12 @@ def test_choked_and_unstarted_have_no_flow_in_a_plain_march(block: int) -> None:
     """No attached supersonic flow, no shock train and no throat within the impulse that arrives."""
     expected = dict.fromkeys(CHOKED, "choked") | dict.fromkeys(UNSTARTED, "unstarted")
     seeds = sorted(expected)[block::BLOCKS]
-    assert len(expected) == 200 and len(seeds) == 20
+    assert len(expected) == 200 and len(seeds) == 10
     found = {seed: confirm(seed) for seed in seeds}
-    assert found == {seed: (expected[seed], "none", "none") for seed in seeds}
+    assert {seed: status for seed, (status, *_) in found.items()} == {seed: expected[seed] for seed in seeds}
+    for seed, (status, own, plain) in found.items():
+        # a plain march names "none" what neither chokes at the entry nor has a passage within the impulse
+        assert own == "none" and plain in (("unstarted",) if status == "unstarted" else ("choked", "none")), seed
 
 
 @pytest.mark.parametrize("seed", WITH_MODE)
@@ -50,11 +54,14 @@ def test_mode_found_is_that_of_a_plain_march(seed: int) -> None:
 
 
 def test_plain_march_meets_the_program_where_the_flow_is_attached() -> None:
-    """The two share no code: exit pressure and speed of an attached duct to the plain march's own tolerance, 1e-6."""
+    """The two share no code: exit pressure and speed of an attached duct to the plain march's own error.
+
+    Its polynomials pass over the joint of the species data at 1000 K, which costs some 1e-6.
+    """
     walks = [cycle.solve(loaded(heavy_rig(seed))) for seed in range(20)]
     attached = [walk for walk in walks if walk.mode == "rig" and walk.processes[0].figures.get("mode_scramjet") == 1.0]
     assert len(attached) >= 3
     for walk in attached:
         duct = scalar_duct(walk)
-        last = scalar_march.attached(duct, 0.0, duct.impulse, fast=True).rows[-1]
-        assert last[1:3] == pytest.approx([walk.station["4"].pressure, walk.station["4"].velocity], rel=1e-6)
+        last = scalar_march.attached(duct, 0, 0.0, duct.impulse + duct.pieces[0].kick, fast=True)[0][-1]
+        assert [last.pressure, last.w**0.5] == pytest.approx([walk.station["4"].pressure, walk.station["4"].velocity], rel=1e-5)
