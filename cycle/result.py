@@ -185,11 +185,8 @@ class Walk:
                 self._potentials[position] - self._potentials[position - 1], self._thrust_scale
             )
         own: dict[str, Callable[[], Array]] = {k: partial(spread, self.march, record.index, v) for k, v in record.process.figures.items()}
-        if (
-            "fuel_air_ratio" in own
-            and record.process.solves_momentum
-            and self.march.setting.choices["combustor.process"] == "constant-area"
-        ):
+        heated = "fuel_air_ratio" in own and record.process.solves_momentum
+        if heated and self.march.setting.choices["combustor.process"] == "constant-area":
             own["choking_margin"] = on(lambda: self._choking_margin(position))
         booking = record.process.booking
         if booking is not None:
@@ -311,13 +308,10 @@ class Walk:
     @property
     def limits_so_far(self) -> tuple[Limit, ...]:
         """All limits; of a duct, or of a batch, without the largest heat unless `heat_limits` has been asked for."""
-        if not self._has_duct:
-            largest, cause = (np.array([self._largest]) if self.shape == () else None), ""
-        elif self.__dict__.get("_heat_ends"):
+        largest, cause = (np.array([self._largest]), "") if self.shape == () and not self._has_duct else (None, "")
+        if self.__dict__.get("_heat_ends"):
             largest, codes = self._heat_ends["unstart"]
             cause = CAUSES.get(duct_limits.CAUSES[codes[0]], "") if (codes == codes[0]).all() else ""
-        else:
-            largest, cause = None, ""
         return tuple(self._limit(row) for row in margins.limits(self.march, largest, cause))
 
     @property
