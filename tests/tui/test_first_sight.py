@@ -191,11 +191,7 @@ def test_the_corridor_is_told_in_the_unit_of_its_input_and_once(tidegate: Sessio
     corridor, ignition = (margins.limit(tidegate, key) for key in ("corridor_high", "ignition_temperature"))
     assert corridor is not None and ignition is not None
     assert margins.against(corridor, "us") == "1044 of at most 2005 psf"
-<<<<<<< HEAD
     assert margins.against(ignition, "us") == "1363 of at least 1260 degR"
-=======
-    assert margins.against(ignition, "us") == "1363 of at least 2160 degR"
->>>>>>> w-nozzle
 
 
 def test_the_verdict_of_the_referee_is_never_its_name_alone() -> None:
