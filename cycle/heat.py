@@ -21,8 +21,8 @@ _SEARCH = {"combustor.equivalence_ratio": 3.0, "combustor.fuel_air_ratio": 0.5, 
 
 def ends_of_modes(walked: March) -> dict[str, tuple[Array, Codes]]:
     """The heat input, SI, at which each mode of the duct ends, (N,), and what sets it, codes of `duct_limits.CAUSES` (N,). NaN where it is
-    not known, as where the heat is no fuel ratio; {} where no point reached station 2."""
-    record = walked.named("gas change") or walked.reached("2")
+    not known, as where the heat is no fuel ratio; {} where no point reached the duct."""
+    record = walked.named("gas change") or walked.reached("2") or walked.reached("3")
     if record is None or not record.index.size:
         return {}
     key, setting = limits.heat_key(walked.setting), walked.setting.take(record.index)

@@ -148,9 +148,10 @@ def _entry(setting: Setting) -> list[tuple[str, Part]]:
 
 def _to_burner_exit(setting: Setting) -> list[tuple[str, Part]]:
     """From station 2 (or a rig's 3) to 4."""
+    at_3 = assembly.enters_at_3(setting)
     if setting.choices["combustor.process"] == "duct":
-        return [("gas change", _to_combustion("2")), (RELEASED, _release("2")), ("duct", isolator.ahead_of(assembly.duct))]
-    at_3 = setting.choices["start"] == "entry" and setting.choices["entry.station"] == "3"
+        start = "3" if at_3 else "2"
+        return [("gas change", _to_combustion(start)), (RELEASED, _release(start)), ("duct", isolator.ahead_of(assembly.duct))]
     diffuser = assembly.diffuser if setting.has("nozzle.throat_area") else isolator.straight
     ahead: list[tuple[str, Part]] = [] if at_3 else [("isolator", diffuser)]
     return [*ahead, ("gas change", _to_combustion("3")), (RELEASED, _release("3")), ("burner", _burn)]

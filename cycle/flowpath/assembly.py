@@ -136,11 +136,12 @@ def _injectors(setting: Setting) -> Injectors:
     share = one if share is None else share / share.sum(0)  # a sum of 1 to the digits that were typed
     own = setting.get("combustor.burning_length", np.nan)
     length = np.array([setting.get(f"combustor.injector.{i + 1}.length", np.nan) for i in range(count)])
+    theta = np.array([setting.get(f"combustor.injector.{i + 1}.theta", np.nan) * one[0] for i in range(count)])
     return Injectors(
         0.0 * one if x is None else x,
         share,
         0.0 * one if speed is None else speed,
-        setting["combustor.burning_theta"] * one,
+        np.where(np.isnan(theta), setting["combustor.burning_theta"], theta),
         np.where(np.isnan(length), own, length),
     )
 
@@ -183,6 +184,11 @@ def _isolator(entering: Stream, setting: Setting) -> Isolator | None:
     return Isolator(setting["isolator.length"], height, thickness, mu, setting.choices["isolator.shape"])
 
 
+def enters_at_3(setting: Setting) -> bool:
+    """Whether the stream is a rig's that enters at the burner: no isolator holds a shock train ahead of it."""
+    return setting.choices["start"] == "entry" and setting.choices["entry.station"] == "3"
+
+
 def flow_of(entering: Stream, setting: Setting, ratio: Array, total_pressures: bool = False) -> Flow:
     """The duct at the fuel-air ratio `ratio` (N,); entering: station 2 with the gas that burns."""
     return solve_duct(
@@ -193,6 +199,7 @@ def flow_of(entering: Stream, setting: Setting, ratio: Array, total_pressures: b
         _walls(setting, ratio),
         separation=setting["combustor.separation_limit"] if setting.has("combustor.separation_limit") else None,
         isolator=_isolator(entering, setting),
+        isolated=not enters_at_3(setting),
         asked=setting.choices["engine.mode"],
         panels=_panels(setting),
         total_pressures=total_pressures,
@@ -212,7 +219,7 @@ def _panels(setting: Setting) -> int:
 
 
 def duct(stream: Stream, setting: Setting) -> Steps:
-    """Station 2 to 3 to 4: isolator and burner as one duct, in whatever mode it runs."""
+    """Station 2 (or a rig's 3) to 3 to 4: isolator and burner as one duct, in whatever mode it runs."""
     entering = combustor.burner_gas(stream, setting)
     ratio = _heat(entering, setting)
     lacking = ~np.isfinite(ratio)
@@ -224,7 +231,8 @@ def duct(stream: Stream, setting: Setting) -> Steps:
     mode = {f"mode_{name}": (found.mode == i).astype(float) for i, name in enumerate(DUCT_MODES)}
     shared = {k: v for k, v in found.figures.items() if k in _ISOLATOR_FIGURES}
     own = {k: v for k, v in found.figures.items() if k not in _ISOLATOR_FIGURES}
-    ahead_of_it = Process("isolator", "2", "3", {**shared, **mode}, found.isolator, solves_momentum=True)
+    start = "3" if enters_at_3(setting) else "2"
+    ahead_of_it = Process("isolator", start, "3", {**shared, **mode}, found.isolator, solves_momentum=True)
     burner = Process("burner", "3", "4", {**own, "fuel_air_ratio": usable}, found.burner, solves_momentum=True, profile=found.rows)
     return Steps((Step(found.entry, ahead_of_it, np.where(ahead, SOLVED, status)), Step(found.exit, burner, status)))
 

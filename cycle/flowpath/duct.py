@@ -17,7 +17,20 @@ from cycle.flow.duct.cooling import with_loss
 from cycle.flow.duct.core import core_at
 from cycle.flow.duct.layout import AreaLaw, Duct, Injectors, Supply, Walls, duct_of
 from cycle.flow.duct.modes import PANELS, solve_block
-from cycle.flow.duct.solution import MODES, PROFILE, SOLVED, STATUSES, UNSTARTED, Solution, core_places, core_rows, refuse, side_by_side
+from cycle.flow.duct.solution import (
+    MODES,
+    PROFILE,
+    SOLVED,
+    STATUSES,
+    THROAT,
+    TRAIN,
+    UNSTARTED,
+    Solution,
+    core_places,
+    core_rows,
+    refuse,
+    side_by_side,
+)
 from cycle.flow.duct.summits import CORNER, ENTRY, EXIT, SMOOTH
 from cycle.flowpath.stream import Booking, Stream, stream
 
@@ -99,6 +112,7 @@ def solve_duct(
     *,
     separation: Array | None = None,
     isolator: Isolator | None = None,
+    isolated: bool = True,
     asked: str = "auto",
     panels: int = PANELS,
     second: bool = False,
@@ -107,7 +121,8 @@ def solve_duct(
     """Run N ducts from station 2, whose stream holds the burner's gas already.
 
     separation: pressure ratio over p2 at which the boundary layer separates (N,), after Korkegi (1975) where None;
-    isolator: None leaves the train's length unknown; asked: "auto", "supersonic" or "thermal-throat"; panels: of a march,
+    isolator: None leaves the train's length unknown; isolated: False where the stream enters at 3, so that any shock train is too long;
+    asked: "auto", "supersonic" or "thermal-throat"; panels: of a march,
     four nodes each; second: look for a shock train where the attached flow stands, too ("train" in `tried` says);
     total_pressures: also along the duct. A stream that is not supersonic is refused. ValueError as `duct_of`; a point
     without a flow has its status, never an exception.
@@ -125,10 +140,10 @@ def solve_duct(
     if found.lost_heat is not None:
         duct = with_loss(duct, found.lost_heat)
     with np.errstate(all="ignore"):
-        return _flow(entering, duct, found, limit, isolator, total_pressures)
+        return _flow(entering, duct, found, limit, _train(entering, found, isolator, isolated), total_pressures)
 
 
-def _flow(entering: Stream, duct: Duct, found: Solution, limit: Array, isolator: Isolator | None, total_pressures: bool) -> Flow:
+def _flow(entering: Stream, duct: Duct, found: Solution, limit: Array, train: Mapping[str, Array], total_pressures: bool) -> Flow:
     p2, mass = duct.pressure, duct.mass_flow
     core = _core(entering, duct, found.pressure_3)
     share = core.area / duct.entry_area
@@ -156,7 +171,7 @@ def _flow(entering: Stream, duct: Duct, found: Solution, limit: Array, isolator:
         "wall_force": found.wall_force,
         "friction": found.friction,
         "impulse_error": found.error,
-        **_train(entering, found, isolator),
+        **train,
     }
     tried = {"attached": found.attached, "train": found.train, "throat": found.throat}
     rows = _rows(duct, found, total_pressures)
@@ -181,10 +196,12 @@ def _exit(duct: Duct, found: Solution) -> Stream:
     return stream(here.gas, found.state, found.velocity, here.mass_flow[0])
 
 
-def _train(entering: Stream, found: Solution, isolator: Isolator | None) -> dict[str, Array]:
+def _train(entering: Stream, found: Solution, isolator: Isolator | None, isolated: bool) -> dict[str, Array]:
+    """Length of the shock train and its margin; without an isolator the margin is -1 where there is any train."""
     if isolator is None:
         unknown = np.full(found.mode.shape, np.nan)
-        return {"train_length": unknown, "isolator_margin": unknown}
+        separated = np.isin(found.mode, [TRAIN, THROAT])
+        return {"train_length": unknown, "isolator_margin": unknown if isolated else np.where(separated, -1.0, np.nan)}
     thickness = np.asarray(isolator.momentum_thickness, dtype=np.float64)
     reynolds = entering.flux * thickness / isolator.viscosity
     ratio = found.pressure_3 / entering.state.pressure

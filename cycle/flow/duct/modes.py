@@ -19,6 +19,7 @@ from cycle.flow.duct.cooling import first_loss, lost_heat
 from cycle.flow.duct.core import Train, find_train
 from cycle.flow.duct.layout import Cooling, Duct
 from cycle.flow.duct.march import Branch, march, spot
+from cycle.flow.duct.profile import profile_of
 from cycle.flow.duct.reattach import Miss, miss_along, reattachment, throat_lacks
 from cycle.flow.duct.scan import PANELS as SCANNED
 from cycle.flow.duct.scan import Scan, scan_of
@@ -36,7 +37,6 @@ from cycle.flow.duct.solution import (
     NONE,
     NOT_TRIED,
     OUTSIDE,
-    PROFILE,
     REFUSED,
     SEPARATES,
     SOLVED,
@@ -270,23 +270,12 @@ class Solver:
                 force, total = force - run.integrated_to(run.wall_force, fill), total - run.integrated_to(run.friction, fill)
             error = error + run.error()
         found.wall_force[w], found.friction[w], found.error[w] = force[good], total[good], error[good]
-        self._profile(w, good, runs, fill)
+        self._profile(index, good, runs, duct)
 
-    def _profile(self, w: Codes, good: Flags, runs: list[tuple[Branch, bool]], fill: Array) -> None:
-        blocks = {name: [] for name in PROFILE}  # type: dict[str, list[Array]]
-        for run, whole in runs:
-            m, flow = run.mixture, run.flow
-            columns = (
-                run.x, flow.pressure, flow.state.temperature.reshape(run.x.shape), flow.u, np.sqrt(flow.mach_squared),
-                m.area, m.area, m.burnt, m.ratio,
-            )  # fmt: skip
-            for name, values in zip(PROFILE, columns, strict=True):
-                part = values[:, good]
-                blocks[name].append(part if whole else part[::-1])
-        rows = self.found.rows
-        for name, parts in blocks.items():
-            stacked = np.concatenate(parts)
-            rows[name][-stacked.shape[0] :, w] = stacked
+    def _profile(self, index: Codes, good: Flags, runs: list[tuple[Branch, bool]], duct: Duct) -> None:
+        w, rows = index[good], self.found.rows
+        for name, values in profile_of(duct, self.scan, index, good, runs).items():
+            rows[name][-len(values) :, w] = values
 
 
 def _taken(found: Kept, index: Codes) -> Kept:

@@ -81,7 +81,8 @@ def nothing_yet(duct: Duct, scan: Scan, panels: int) -> Solution:
     """A solution of N points without a mode; panels of a march."""
     n, rows = duct.size, scan.segment.shape[0]
     state = scan.sonic.state.take(np.arange((rows - 1) * n, rows * n)).flagged(np.ones(n, np.bool_))
-    profile = {name: np.full((core_rows(duct) + 2 * (1 + STAGES * panels), n), np.nan) for name in PROFILE}
+    most = core_rows(duct) + 2 * (1 + STAGES * panels + len(duct.edges) - 2)
+    profile = {name: np.full((most, n), np.nan) for name in PROFILE}
     lost = None if duct.cooling is None else duct.cooling.lost.copy()
     mode, status, attached, train, throat, places = np.zeros((6, n), np.int64)
     a, b, c, d, e, f, g, h, i, j = np.full((10, n), np.nan)
