@@ -141,12 +141,19 @@ def find_train(duct: Duct, scan: Scan) -> Train:
 _OVER = 1e-7
 """Core area over the duct's, less 1, at which a core is too large."""
 
-_PLACES = 3
+_PLACES, _AGAIN = 3, 3
 
 
 def _confirmed(duct: Duct, scan: Scan, ln_p: Array, x: Array, segment: Codes, smooth: Flags, lost: Array) -> Train:
     """Polish, then look at the whole core: where it is larger than the duct elsewhere, that is the place where it fills it."""
     found = _polished(duct, scan, ln_p, x, segment, smooth, lost)
+    for _ in range(_AGAIN):
+        # near Mach 1 the core's friction settles slowly
+        w = np.flatnonzero(~found.found & np.isfinite(found.pressure))
+        if not w.size:
+            break
+        last = np.log(found.pressure[w]), found.x[w], found.segment[w], smooth[w], lost[:, w]
+        _replace(found, w, _polished(duct.take(w), scan.take(w), *last))
     for _ in range(_PLACES):
         w = np.flatnonzero(found.found)
         if not w.size:
@@ -158,10 +165,13 @@ def _confirmed(duct: Duct, scan: Scan, ln_p: Array, x: Array, segment: Codes, sm
         if not over.any():
             break
         v, tops = w[over], (top.x[0][over], top.segment[0][over], top.kind[0][over] == SMOOTH)
-        again = _polished(duct.take(v), scan.take(v), np.log(found.pressure[v]), *tops, lost[:, v])
-        for f in fields(Train):
-            getattr(found, f.name)[v] = getattr(again, f.name)
+        _replace(found, v, _polished(duct.take(v), scan.take(v), np.log(found.pressure[v]), *tops, lost[:, v]))
     return found
+
+
+def _replace(whole: Train, index: Codes, part: Train) -> None:
+    for f in fields(Train):
+        getattr(whole, f.name)[index] = getattr(part, f.name)
 
 
 def _nowhere(n: int) -> Train:
@@ -172,8 +182,7 @@ def _nowhere(n: int) -> Train:
 def _spread(found: Train, index: Codes, n: int) -> Train:
     """The trains of the points `index` among n points; the others have none."""
     whole = _nowhere(n)
-    for f in fields(Train):
-        getattr(whole, f.name)[index] = getattr(found, f.name)
+    _replace(whole, index, found)
     return whole
 
 
