@@ -17,9 +17,15 @@ EQUILIBRIUM = (8, 26)
 
 NAMED = (
     (dual_mode_rigs.ethylene_engine, 0.64, "scramjet-shock-train"),
+    (dual_mode_rigs.ethylene_engine, 0.66, "ramjet-thermal-throat"),
+    (dual_mode_rigs.ethylene_engine, 0.75, "ramjet-thermal-throat"),
+    (dual_mode_rigs.ethylene_engine, 0.90, "ramjet-thermal-throat"),
     (dual_mode_rigs.ethylene_engine, 0.94, "ramjet-thermal-throat"),
+    (dual_mode_rigs.hydrogen_engine, 6.0, "ramjet-thermal-throat"),
+    (dual_mode_rigs.hydrogen_engine, 6.5, "ramjet-thermal-throat"),
     (dual_mode_rigs.hydrogen_engine, 7.0, "ramjet-thermal-throat"),
     (dual_mode_rigs.direct_connect_rig, 0.41, "scramjet-shock-train"),
+    (dual_mode_rigs.direct_connect_rig, 0.42, "scramjet-shock-train"),
 )  # fmt: skip
 
 
