@@ -6,10 +6,9 @@ account, a difference of two figures against the larger of them, a potential aga
 
 from __future__ import annotations
 
+import math
 from collections.abc import Iterable, Sequence
 from typing import Any
-
-import numpy as np
 
 FIGURE = 1e-9
 """Error of a solved figure over its scale: what the audit allows a balance."""
@@ -23,9 +22,18 @@ def settled(value: Any, scale: Any, error: float = FIGURE) -> Any:
     Parameters: value and scale, floats or arrays that broadcast, in one unit; NaN stays, and a scale of NaN or infinity settles nothing;
     error, relative to the scale. Returns: a float for floats, else an array.
     """
+    if _plain(value, scale):
+        return 0.0 if math.isfinite(scale) and abs(value) <= error * abs(scale) else float(value)
+    import numpy as np
+
     size = np.abs(scale)
     out = np.where(np.isfinite(size) & (np.abs(value) <= error * size), 0.0, value)
     return float(out) if out.ndim == 0 else out
+
+
+def _plain(*values: Any) -> bool:
+    """Whether all are single numbers: the screen is painted before numpy is there."""
+    return all(isinstance(value, float | int) for value in values)
 
 
 def rows(values: Sequence[Any], error: float = FIGURE) -> list[Any]:
@@ -40,8 +48,13 @@ def rows(values: Sequence[Any], error: float = FIGURE) -> list[Any]:
 
 def largest(values: Iterable[Any]) -> Any:
     """The largest size of some figures, point by point; 0 where there is none. values: floats or arrays of one shape."""
+    every = list(values)
+    if _plain(*every):
+        return max((abs(float(value)) for value in every if math.isfinite(value)), default=0.0)
+    import numpy as np
+
     out: Any = 0.0
-    for value in values:
+    for value in every:
         size = np.abs(value)
         out = np.fmax(out, np.where(np.isfinite(size), size, 0.0))
     return float(out) if np.ndim(out) == 0 else out
@@ -49,4 +62,4 @@ def largest(values: Iterable[Any]) -> Any:
 
 def change(value: Any, base: Any, error: float = FIGURE) -> Any:
     """The change of a figure, 0 where it is below the error of the larger of both. Parameters: see `settled`."""
-    return settled(np.subtract(value, base), np.fmax(np.abs(value), np.abs(base)), error)
+    return settled(value - base, largest((value, base)), error)
