@@ -22,7 +22,7 @@ _SEARCH = {"combustor.equivalence_ratio": 3.0, "combustor.fuel_air_ratio": 0.5, 
 def ends_of_modes(walked: March) -> dict[str, tuple[Array, Codes]]:
     """The heat input, SI, at which each mode of the duct ends, (N,), and what sets it, codes of `duct_limits.CAUSES` (N,). NaN where it is
     not known, as where the heat is no fuel ratio; {} where no point reached the duct."""
-    record = walked.named("gas change") or walked.reached("2") or walked.reached("3")
+    record = walked.reached("2") or walked.reached("3")
     if record is None or not record.index.size:
         return {}
     key, setting = limits.heat_key(walked.setting), walked.setting.take(record.index)
@@ -31,7 +31,7 @@ def ends_of_modes(walked: March) -> dict[str, tuple[Array, Codes]]:
     size = walked.setting.size
     if unit is None:
         return dict.fromkeys(duct_limits.ENDS, (np.full(size, np.nan), np.zeros(size, np.int64)))
-    entering = combustor.burner_gas(record.stream, setting)
+    entering = record.stream if setting.constant_gamma else combustor.burner_gas(record.stream, setting)
     worn = isolator.worn(entering, setting)
     found = assembly.heat_limits(entering if worn is None else worn.stream, setting, _SEARCH[key] * unit)
     causes = {name: np.zeros(size, np.int64) for name in found}

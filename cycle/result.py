@@ -184,7 +184,7 @@ class Walk:
             sources["thrust_potential_change"] = lambda: noise.settled(
                 self._potentials[position] - self._potentials[position - 1], self._thrust_scale
             )
-        own: dict[str, Callable[[], Array]] = {k: partial(spread, self.march, record.index, v) for k, v in record.process.figures.items()}
+        own: dict[str, Callable[[], Array]] = {k: partial(self.march.figure_of, record, k) for k in record.process.figures}
         heated = "fuel_air_ratio" in own and record.process.solves_momentum
         if heated and self.march.setting.choices["combustor.process"] == "constant-area":
             own["choking_margin"] = on(lambda: self._choking_margin(position))

@@ -55,13 +55,19 @@ class March:
 
     def figure(self, process: str, figure: str) -> Array:
         """A figure of a process over all points (N,), also of those that it ended; NaN where it has none."""
+        return self._figure(process, figure, self.named(process))
+
+    def figure_of(self, record: Record, figure: str) -> Array:
+        """A figure of one record's process, (N,), also of the points that it ended."""
+        return self._figure(record.process.name, figure, record)
+
+    def _figure(self, process: str, figure: str, record: Record | None) -> Array:
         found = np.full(self.setting.size, np.nan)
-        record = self.named(process)
-        if record is not None and figure in record.process.figures:
-            found[record.index] = record.process.figures[figure]
         for name, index, figures in self.ended:
             if name == process and figure in figures:
                 found[index] = figures[figure]
+        if record is not None and figure in record.process.figures:
+            found[record.index] = record.process.figures[figure]
         return found
 
     @property
@@ -105,11 +111,8 @@ def _burn(stream: Stream, setting: Setting) -> Step:
     return combustor.burner(combustor.burner_gas(stream, setting), setting)
 
 
-def _to_combustion(station: str) -> Part:
-    def change(stream: Stream, setting: Setting) -> Step | None:
-        return combustor.gas_change(stream, combustor.combustion_cp(setting), station) if setting.constant_gamma else None
-
-    return change
+def _to_combustion(stream: Stream, setting: Setting) -> Step | None:
+    return combustor.gas_change(stream, combustor.combustion_cp(setting), "3") if setting.constant_gamma else None
 
 
 def _to_expansion(stream: Stream, setting: Setting) -> Step | None:
@@ -150,11 +153,10 @@ def _to_burner_exit(setting: Setting) -> list[tuple[str, Part]]:
     """From station 2 (or a rig's 3) to 4."""
     at_3 = assembly.enters_at_3(setting)
     if setting.choices["combustor.process"] == "duct":
-        start = "3" if at_3 else "2"
-        return [("gas change", _to_combustion(start)), (RELEASED, _release(start)), ("duct", isolator.ahead_of(assembly.duct))]
+        return [(RELEASED, _release("3" if at_3 else "2")), ("duct", isolator.ahead_of(assembly.duct))]
     diffuser = assembly.diffuser if setting.has("nozzle.throat_area") else isolator.straight
     ahead: list[tuple[str, Part]] = [] if at_3 else [("isolator", diffuser)]
-    return [*ahead, ("gas change", _to_combustion("3")), (RELEASED, _release("3")), ("burner", _burn)]
+    return [*ahead, ("gas change", _to_combustion), (RELEASED, _release("3")), ("burner", _burn)]
 
 
 def _parts(setting: Setting) -> list[tuple[str, Part]]:

@@ -108,3 +108,70 @@ def test_friction_on_the_separated_core_refines_with_the_slices() -> None:
     exit_ = [walk.station["4"].mach for walk in (coarse, fine, finest)]
     assert exit_[1] == pytest.approx(exit_[2], rel=1e-8)
     assert exit_[0] == pytest.approx(exit_[2], rel=1e-6)
+
+
+PAIRS = """
+format = 1
+title = "Two pairs, invented"
+[entry]
+station = "2"
+mach = 2.6
+pressure = "50 kPa"
+temperature = 600.0
+area = 0.02
+[gas]
+model = "constant-gamma"
+cp_compression = 1004.5
+cp_combustion = 1180.0
+cp_expansion = 1250.0
+fuel_energy = "mass-only"
+[fuel]
+heating_value = 120e6
+[combustor]
+process = "duct"
+fuel_air_ratio = 0.01
+[[combustor.area]]
+x = 0.0
+area_ratio = 1.0
+[[combustor.area]]
+x = 1.0
+area_ratio = 2.2
+[[combustor.injector]]
+x = 0.05
+"""
+
+
+def test_the_pair_of_compression_changes_at_burner_entry() -> None:
+    """Up to 3 the stream keeps cp of the compression, whatever the mode; there p, T and u are kept. Every step of the fuel is audited, the
+    limits go by the Mach number shown at 2, and the modes change as with one pair: each once."""
+    ratio = np.linspace(0.004, 0.03, 60)
+    walk = cycle.solve(cycle.loads(PAIRS), {"combustor.fuel_air_ratio": ratio})
+    solved = walk.status == "solved"
+    isolator = next(p.figures for p in walk.processes if p.name == "isolator")
+    names = ("scramjet", "scramjet-shock-train", "ramjet-thermal-throat")
+    modes = np.array([isolator[f"mode_{name}"] == 1.0 for name in names])[:, solved]
+    assert modes.any(1).all() and set(walk.status) == {"solved", "unstarted"}
+    assert (np.diff(modes.argmax(0)) >= 0).all() and (np.diff(solved.astype(int)) <= 0).all()
+    assert walk.audit.ok, walk.audit.worst
+    two, three = walk.station["2"], walk.station["3"]
+    assert isolator["separation_limit"] == pytest.approx(1.0 + 0.3 * 2.6**2, rel=1e-12)
+    # cp T + u^2/2 of the compression pair, p A + m u: what a frictionless isolator keeps
+    for at in (two, three):
+        rest = 1004.5 * at.temperature + 0.5 * at.velocity**2
+        assert rest[solved] == pytest.approx(two.total_enthalpy[solved], rel=1e-12)
+    assert [p.name for p in walk.processes[:3]] == ["isolator", "gas change", "burner"]
+    assert [(p.start, p.end) for p in walk.processes[:3]] == [("2", "3"), ("3", "3"), ("3", "4")]
+    # energy behind the hand-over, of the combustion pair at the temperature of 3: the burner adds f q and nothing else
+    behind = 1180.0 * three.temperature + 0.5 * three.velocity**2
+    four = walk.station["4"]
+    after = (1.0 + ratio) * (1180.0 * four.temperature + 0.5 * four.velocity**2)
+    assert after[solved] == pytest.approx((behind + ratio * 120e6)[solved], rel=1e-10)
+    impulse = np.abs(np.diff(four.stream_thrust[solved], 2)) / four.stream_thrust[solved][1:-1]
+    assert np.sort(impulse)[-3:].max() < 2e-2 and np.median(impulse) < 1e-4
+
+
+def test_with_one_pair_nothing_is_handed_over() -> None:
+    one = cycle.loads(PAIRS).replace({"gas.cp_combustion": 1004.5})
+    walk = cycle.solve(one)
+    assert [p.name for p in walk.processes[:2]] == ["isolator", "burner"]
+    assert walk.audit.ok

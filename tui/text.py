@@ -105,6 +105,8 @@ def mode_sentences(walk: Walk, system: str) -> tuple[str, ...]:
     sentences: list[str] = []
     if walk.status == "solved" and "separated_pressure" in isolator:
         sentences += _duct_sentences(walk, isolator, system)
+    elif walk.status == "unstarted":
+        sentences += _unstarted_sentences(walk)
     if walk.status == "solved" and "throat_margin" in isolator:
         sentences += _throat_sentences(isolator, system)
     if walk.heat_limits:
@@ -125,6 +127,17 @@ def _duct_sentences(walk: Walk, isolator: Mapping[str, float], system: str) -> I
     length = "" if math.isnan(train) else f" (shock train {with_unit(train, 'length', system)})"
     yield f"Isolator margin {_margin(isolator, 'isolator_margin')}{length}."
     yield f"Unstart margin {_margin(isolator, 'unstart_margin')}."
+
+
+def _unstarted_sentences(walk: Walk) -> Iterable[str]:
+    """The margins at which a duct unstarts, where they are known."""
+    for key, words in (("unstart_margin", "Unstart margin"), ("isolator_margin", "Isolator margin")):
+        margin = float(walk.march.figure("isolator", key)[0])
+        if not math.isnan(margin):
+            yield f"{words} {100.0 * margin:+.1f} %."
+    limit = float(walk.march.figure("isolator", "separation_limit")[0])
+    if not math.isnan(limit):
+        yield f"A pressure ratio of {format_number(limit, 3)} separates the attached flow."
 
 
 def _throat_sentences(isolator: Mapping[str, float], system: str) -> Iterable[str]:

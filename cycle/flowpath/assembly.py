@@ -189,8 +189,9 @@ def enters_at_3(setting: Setting) -> bool:
     return setting.choices["start"] == "entry" and setting.choices["entry.station"] == "3"
 
 
-def flow_of(entering: Stream, setting: Setting, ratio: Array, total_pressures: bool = False) -> Flow:
-    """The duct at the fuel-air ratio `ratio` (N,); entering: station 2 with the gas that burns."""
+def flow_of(ahead: Stream, setting: Setting, ratio: Array, total_pressures: bool = False) -> Flow:
+    """The duct at the fuel-air ratio `ratio` (N,); ahead: station 2, at constant gamma with the pair of the compression."""
+    entering = combustor.burner_gas(ahead, setting)
     return solve_duct(
         entering,
         _area_law(setting, entering.area),
@@ -198,7 +199,8 @@ def flow_of(entering: Stream, setting: Setting, ratio: Array, total_pressures: b
         fuel_supply(entering, setting, ratio),
         _walls(setting, ratio),
         separation=setting["combustor.separation_limit"] if setting.has("combustor.separation_limit") else None,
-        isolator=_isolator(entering, setting),
+        ahead=ahead,
+        isolator=_isolator(ahead, setting),
         isolated=not enters_at_3(setting),
         asked=setting.choices["engine.mode"],
         panels=_panels(setting),
@@ -208,9 +210,8 @@ def flow_of(entering: Stream, setting: Setting, ratio: Array, total_pressures: b
 
 def heat_limits(stream: Stream, setting: Setting, upper: Array) -> dict[str, duct_limits.End]:
     """The fuel-air ratios at which the modes of N ducts end, up to `upper`, (N,); stream: station 2."""
-    entering = combustor.burner_gas(stream, setting)
     return duct_limits.heat_limits(
-        lambda points, ratio: flow_of(entering.take(points), setting.take(points), ratio), _heat(entering, setting), upper
+        lambda points, ratio: flow_of(stream.take(points), setting.take(points), ratio), _heat(stream, setting), upper
     )
 
 
@@ -220,13 +221,12 @@ def _panels(setting: Setting) -> int:
 
 def duct(stream: Stream, setting: Setting) -> Steps:
     """Station 2 (or a rig's 3) to 3 to 4: isolator and burner as one duct, in whatever mode it runs."""
-    entering = combustor.burner_gas(stream, setting)
-    ratio = _heat(entering, setting)
+    ratio = _heat(stream, setting)
     lacking = ~np.isfinite(ratio)
     usable = np.where(lacking, 0.0, ratio)
-    found = flow_of(entering, setting, usable, setting.size <= _FEW)
+    found = flow_of(stream, setting, usable, setting.size <= _FEW)
     status = np.where(lacking, STATUS_CODE["no-fuel"], named_status(found.status, DUCT_STATUSES, {}))
-    status = np.where(_steps_at_entry(setting, entering.area), STATUS_CODE["area-step"], status)
+    status = np.where(_steps_at_entry(setting, stream.area), STATUS_CODE["area-step"], status)
     ahead = np.isin(status, [SOLVED, STATUS_CODE["choked"], STATUS_CODE["no-fuel"]]) & found.entry.state.good
     mode = {f"mode_{name}": (found.mode == i).astype(float) for i, name in enumerate(DUCT_MODES)}
     shared = {k: v for k, v in found.figures.items() if k in _ISOLATOR_FIGURES}
@@ -234,19 +234,23 @@ def duct(stream: Stream, setting: Setting) -> Steps:
     start = "3" if enters_at_3(setting) else "2"
     ahead_of_it = Process("isolator", start, "3", {**shared, **mode}, found.isolator, solves_momentum=True)
     burner = Process("burner", "3", "4", {**own, "fuel_air_ratio": usable}, found.burner, solves_momentum=True, profile=found.rows)
-    return Steps((Step(found.entry, ahead_of_it, np.where(ahead, SOLVED, status)), Step(found.exit, burner, status)))
+    change = combustor.gas_change(found.entry, combustor.combustion_cp(setting), "3") if setting.constant_gamma else None
+    held = np.where(ahead, SOLVED, status)
+    changes = () if change is None else (replace(change, status=held),)
+    return Steps((Step(found.entry, ahead_of_it, held), *changes, Step(found.exit, burner, status)))
 
 
-def _heat(entering: Stream, setting: Setting) -> Array:
+def _heat(stream: Stream, setting: Setting) -> Array:
     """Fuel-air ratio of the duct (N,); NaN where no ratio gives the exit total temperature asked for."""
+    entering = combustor.burner_gas(stream, setting)
     if setting.choices["combustor.heat"] != "exit_total_temperature":
         return combustor.heat_ratio(entering, setting)
     first = combustor.ratio_at_rest(entering, setting)
     usable = np.where(np.isfinite(first), first, 0.0)
-    runs = np.flatnonzero(np.isfinite(first) & (flow_of(entering, setting, usable).status == 0))
+    runs = np.flatnonzero(np.isfinite(first) & (flow_of(stream, setting, usable).status == 0))
     if not runs.size:
         return first
-    part, cut = entering.take(runs), setting.take(runs)
+    part, cut = stream.take(runs), setting.take(runs)
 
     def temperature(ratio: Array) -> Array:
         found = flow_of(part, cut, ratio)

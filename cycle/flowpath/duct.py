@@ -7,7 +7,7 @@ A frictionless isolator of constant area keeps the impulse: p3 A3 + m u3 = p2 A2
 from __future__ import annotations
 
 from collections.abc import Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 
@@ -15,8 +15,9 @@ from cycle.arrays import Array, Codes
 from cycle.flow import limits
 from cycle.flow.duct.cooling import with_loss
 from cycle.flow.duct.core import core_at
+from cycle.flow.duct.coupling import solve_block
 from cycle.flow.duct.layout import AreaLaw, Duct, Injectors, Supply, Walls, duct_of
-from cycle.flow.duct.modes import PANELS, solve_block
+from cycle.flow.duct.modes import PANELS
 from cycle.flow.duct.solution import (
     MODES,
     PROFILE,
@@ -33,6 +34,7 @@ from cycle.flow.duct.solution import (
 )
 from cycle.flow.duct.summits import CORNER, ENTRY, EXIT, SMOOTH
 from cycle.flowpath.stream import Booking, Stream, stream
+from cycle.gas.constant import ConstantGas
 
 BLOCK = 1024
 """Points solved together: as many as keep the states of a march in the processor's cache."""
@@ -110,6 +112,7 @@ def solve_duct(
     supply: Supply,
     walls: Walls,
     *,
+    ahead: Stream | None = None,
     separation: Array | None = None,
     isolator: Isolator | None = None,
     isolated: bool = True,
@@ -120,27 +123,33 @@ def solve_duct(
 ) -> Flow:
     """Run N ducts from station 2, whose stream holds the burner's gas already.
 
-    separation: pressure ratio over p2 at which the boundary layer separates (N,), after Korkegi (1975) where None;
+    ahead: station 2 as it leaves the inlet, where its constant-gamma pair is another one: it changes at 3, and the limits go by its Mach
+    number; separation: pressure ratio over p2 at which the boundary layer separates (N,), after Korkegi (1975) where None;
     isolator: None leaves the train's length unknown; isolated: False where the stream enters at 3, so that any shock train is too long;
     asked: "auto", "supersonic" or "thermal-throat"; panels: of a march,
     four nodes each; second: look for a shock train where the attached flow stands, too ("train" in `tried` says);
     total_pressures: also along the duct. A stream that is not supersonic is refused. ValueError as `duct_of`; a point
     without a flow has its status, never an exception.
     """
+    ahead = entering if ahead is None else ahead
     duct = duct_of(
         entering.gas, entering.total_enthalpy, entering.velocity, entering.state.pressure, entering.mass_flow,
         entering.area, law, injectors, supply, walls,
     )  # fmt: skip
-    limit = limits.separation_pressure_ratio(entering.mach) if separation is None else np.broadcast_to(separation, (duct.size,))
+    if isinstance(ahead.gas, ConstantGas) and isinstance(entering.gas, ConstantGas) and not np.array_equal(ahead.gas.cp, entering.gas.cp):
+        duct = replace(duct, entry_heat=ahead.gas.cp, heat_capacity=entering.gas.cp)
+    limit = limits.separation_pressure_ratio(ahead.mach) if separation is None else np.broadcast_to(separation, (duct.size,))
     threshold = limit if asked == "auto" else np.full(duct.size, np.inf)
     blocks = [np.arange(low, min(low + BLOCK, duct.size)) for low in range(0, max(duct.size, 1), BLOCK)]
     parts = [solve_block(duct.take(w), threshold[w], asked, panels, second) for w in blocks]
     found = side_by_side(parts)
-    refuse(found, ~(entering.mach > 1.0))
+    refuse(found, ~(ahead.mach > 1.0))
+    if duct.entry_heat is not None:
+        duct = replace(duct, total_enthalpy=found.total_enthalpy)
     if found.lost_heat is not None:
         duct = with_loss(duct, found.lost_heat)
     with np.errstate(all="ignore"):
-        return _flow(entering, duct, found, limit, _train(entering, found, isolator, isolated), total_pressures)
+        return _flow(ahead, duct, found, limit, _train(ahead, found, isolator, isolated), total_pressures)
 
 
 def _flow(entering: Stream, duct: Duct, found: Solution, limit: Array, train: Mapping[str, Array], total_pressures: bool) -> Flow:
@@ -184,10 +193,10 @@ def _flow(entering: Stream, duct: Duct, found: Solution, limit: Array, train: Ma
 
 
 def _core(entering: Stream, duct: Duct, pressure: Array) -> Stream:
-    """The core at burner entry before any fuel: station 2 itself where the pressure has not risen."""
+    """The core at burner entry before any fuel, with the gas of station 2: that itself where the pressure has not risen."""
     u = duct.velocity - (pressure - duct.pressure) * duct.entry_area / duct.mass_flow
-    state = duct.gas.at("hp", duct.total_enthalpy - 0.5 * u**2, pressure, start=entering.state)
-    return stream(duct.gas, state, u, duct.mass_flow)
+    state = entering.gas.at("hp", entering.total_enthalpy - 0.5 * u**2, pressure, start=entering.state)
+    return stream(entering.gas, state, u, duct.mass_flow)
 
 
 def _exit(duct: Duct, found: Solution) -> Stream:

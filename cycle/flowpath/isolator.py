@@ -151,7 +151,7 @@ def ahead_of(duct: Duct) -> Duct:
     """A duct from station 2 by 3 to 4 whose stream has the isolator's friction behind it; what enters the isolator is in its figures."""
 
     def whole(entering: Stream, setting: Setting) -> Steps:
-        entering = combustor.burner_gas(entering, setting)
+        entering = entering if setting.constant_gamma else combustor.burner_gas(entering, setting)
         found = worn(entering, setting)
         steps = duct(entering if found is None else found.stream, setting)
         first, *rest = steps.steps

@@ -11,8 +11,9 @@ from hypothesis import strategies as st
 
 from cycle.flow.duct import modes
 from cycle.flow.duct.core import find_train
+from cycle.flow.duct.coupling import solve_block
 from cycle.flow.duct.march import march
-from cycle.flow.duct.modes import MODES, STATUSES, TRIED, solve_block
+from cycle.flow.duct.modes import MODES, STATUSES, TRIED
 from cycle.flow.duct.scan import scan_of
 from cycle.flow.duct.summits import CORNER, EXIT, SMOOTH
 from cycle.flow.duct.throat import candidates, throat

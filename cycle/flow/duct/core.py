@@ -55,6 +55,20 @@ def core_at(duct: Duct, mixture: Mixture, pressure: Array, lost: Array, start: S
     return Core(u, share, by_pressure, friction, (u / state.sound_speed.reshape(shape)) ** 2, state)
 
 
+def behind_handover(duct: Duct, pressure: Array) -> Array:
+    """Total enthalpy behind burner entry, J/kg (N,), where the constant-gamma pair changes at the temperature of a core of p3 `pressure`
+    Pa (N,); NaN: of the subsonic stream of the same impulse (normal shock, Shapiro (1953), ch. 5)."""
+    assert duct.entry_heat is not None and duct.heat_capacity is not None
+    own, after = duct.entry_heat, duct.heat_capacity
+    total = duct.total_enthalpy + (own - after) / after * (duct.total_enthalpy - 0.5 * duct.velocity**2)
+    # F/m = u + R T/u with cp T = ht - u^2/2: a quadratic whose two roots are the streams on both sides of the shock
+    R = duct.pressure * duct.entry_area * duct.velocity / duct.mass_flow * own / (total - 0.5 * duct.velocity**2)
+    subsonic = R / own * total / (1.0 - 0.5 * R / own) / duct.velocity
+    u = duct.velocity - (pressure - duct.pressure) * duct.entry_area / duct.mass_flow
+    u = np.where(np.isnan(pressure), subsonic, u)
+    return after / own * (total - 0.5 * u**2) + 0.5 * u**2
+
+
 @dataclass(frozen=True, eq=False)
 class Train:
     """Where a core fills the duct, each (N,): pressure p3 Pa, x m, segment downstream, corner: not tangential; friction of

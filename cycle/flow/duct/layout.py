@@ -140,7 +140,8 @@ class Duct:
     of the segments, m; grades: (G + 1, N), the edges and the places between which a burning law hardly
     bends; at their left ends, each (K, N): area m2, perimeter m (tabulated), and both slopes; injected: share
     of the fuel upstream of a segment; brought: its axial impulse, N. Injectors: inject_x, share, theta, length (J, N). The walls: see
-    `Walls`.
+    `Walls`. entry_heat, heat_capacity: cp of the constant-gamma pairs ahead of burner entry and behind it, J/(kg K) (N,), where they
+    differ: total_enthalpy is then that behind the hand-over at the temperature of station 2.
     """
 
     gas: Gas
@@ -174,6 +175,8 @@ class Duct:
     wall_power: Array
     grades: Array
     cooling: Cooling | None = None
+    entry_heat: Array | None = None
+    heat_capacity: Array | None = None
 
     @property
     def size(self) -> int:

@@ -9,15 +9,15 @@ the critical section, the separated core joining the subsonic one. Else the duct
 from __future__ import annotations
 
 from collections.abc import Callable
-from dataclasses import fields, replace
+from dataclasses import fields
 from typing import TypeVar
 
 import numpy as np
 
 from cycle.arrays import Array, Codes, Flags
-from cycle.flow.duct.cooling import first_loss, lost_heat
+from cycle.flow.duct.cooling import lost_heat
 from cycle.flow.duct.core import Train, find_train
-from cycle.flow.duct.layout import Cooling, Duct
+from cycle.flow.duct.layout import Duct
 from cycle.flow.duct.march import Branch, march, spot
 from cycle.flow.duct.profile import profile_of
 from cycle.flow.duct.reattach import Miss, miss_along, reattachment, throat_lacks
@@ -49,14 +49,13 @@ from cycle.flow.duct.solution import (
     UNSETTLED,
     UNSTARTED,
     Solution,
-    merge,
     nothing_yet,
 )  # fmt: skip
 from cycle.flow.duct.summits import SMOOTH, Summits
 from cycle.flow.duct.throat import CANDIDATES, Throat, candidates, throat
 from cycle.gas.state import scatter
 
-__all__ = ["ASKED", "MODES", "PANELS", "STATUSES", "TRIED", "Solution", "Solver", "solve_block"]
+__all__ = ["ASKED", "MODES", "PANELS", "STATUSES", "TRIED", "Solution", "Solver", "solve_once"]
 
 PANELS = 12
 """Panels of a march, of four nodes each."""
@@ -290,82 +289,8 @@ ASKED: dict[str, tuple[Callable[[Solver], None], ...]] = {
 """What is tried, in order, for the mode asked for."""
 
 
-def solve_block(duct: Duct, separation: Array, asked: str = "auto", panels: int = PANELS, second: bool = False) -> Solution:
-    """How N ducts run. separation: pressure ratio over p2 that separates (N,); asked: a key of `ASKED`; panels of a march;
-    second: whether to look for a shock train where the attached flow stands."""
-    with np.errstate(all="ignore"):
-        if np.isfinite(duct.wall_temperature).any():
-            return _cooled(first_loss(duct), separation, asked, panels, second)
-        return _solved(duct, separation, asked, panels, second, np.full(duct.size, NONE))
-
-
-def _cooled(duct: Duct, separation: Array, asked: str, panels: int, second: bool) -> Solution:
-    """The flow and the heat it loses, in turn until the heat stands still; each point stops on its own.
-
-    Near a border the heat of either mode may call for the other. A mode that its own heat has refuted twice does not stand and is not
-    tried again: the first time the heat may still be the first guess's.
-    """
-    assert duct.cooling is not None
-    live, lost = np.arange(duct.size), duct.cooling.lost
-    mode, least, refuted = np.full(duct.size, len(MODES)), np.full(duct.size, NONE), np.zeros(duct.size, np.bool_)
-    history: list[tuple[Array, Array]] = []
-    whole: Solution | None = None
-    for _ in range(_COOLING_TURNS):
-        part = replace(duct.take(live), cooling=Cooling(duct.cooling.grid.take(live), lost[:, live]))
-        found = _solved(part, separation[live], asked, panels, second, least[live])
-        following = found.lost_heat
-        assert following is not None
-        # what is booked is the heat that was marched with, so that the energy closes to rounding
-        found = replace(found, lost_heat=lost[:, live].copy())
-        change = following - lost[:, live]
-        moved = np.abs(change).max(0)
-        size = part.mass_flow * part.velocity**2
-        if whole is None:
-            whole = found
-        else:
-            merge(whole, live, found)
-        falls = found.mode > mode[live]
-        least[live] = np.where(falls & refuted[live], found.mode, least[live])
-        refuted[live] |= falls
-        mode[live] = found.mode
-        going = (moved > _COOLED * size) & (found.mode != NONE)
-        lost[:, live] = _ahead(following, change, history)
-        history = [(g[:, going], f[:, going]) for g, f in ((following, change), *history[:1])]
-        live = live[going]
-        if not live.size:
-            break
-    assert whole is not None
-    whole.status[live], whole.mode[live] = LOST, NONE
-    return whole
-
-
-def _ahead(following: Array, change: Array, history: list[tuple[Array, Array]]) -> Array:
-    """The heat (R, N) to march with next: what followed, moved on by as much of the last turns' differences as leaves the least
-    change. history: what followed and its change in earlier turns, the latest first. Source: D. G. Anderson, Journal of the ACM
-    12 (1965) 547 (from memory)."""
-    left, kept = change, list[tuple[Array, Array]]()
-    for earlier, its_change in history:
-        bend, move = change - its_change, following - earlier
-        for b, m in kept:
-            share = (bend * b).sum(0) / (b * b).sum(0)
-            bend, move = bend - share * b, move - share * m
-        kept.append((bend, move))
-    for bend, move in kept:
-        share = (left * bend).sum(0) / (bend * bend).sum(0)
-        share = np.where(np.abs(share) < _FARTHEST, share, 0.0)
-        left, following = left - share * bend, following - share * move
-    return following
-
-
-_FARTHEST = 0.3
-"""Largest share moved on: the changes of the plain turns shrink by more than this, or the flow changes its mode meanwhile."""
-
-_COOLING_TURNS = 20
-_COOLED = 1e-9
-"""Change of the heat lost, over m u2^2, at which it stands still."""
-
-
-def _solved(duct: Duct, separation: Array, asked: str, panels: int, second: bool, least: Codes) -> Solution:
+def solve_once(duct: Duct, separation: Array, asked: str, panels: int, second: bool, least: Codes) -> Solution:
+    """How N ducts run whose wall heat and total enthalpy are known: see `coupling.solve_block`. least: see `Solver`."""
     solver = Solver(duct, separation, panels, least)
     for attempt in ASKED[asked]:
         attempt(solver)

@@ -47,7 +47,8 @@ class Solution:
     mode, status, attached, train, throat: codes of `MODES`, `STATUSES`, `TRIED`; throat_kind: see `summits`, -1 none.
     places: where the core of a thermal throat may fill the duct, the first is taken.
     x_throat, x_fill m; pressure_3 Pa of the separated zone; peak: highest wall pressure Pa; needed: impulse that the
-    critical flow asks at the entry, N; velocity m/s and state at the exit; wall_force, friction N; error: estimate of the
+    critical flow asks at the entry, N; velocity m/s and state at the exit; total_enthalpy J/kg of the entering
+    stream, behind the hand-over to the burner's pair; wall_force, friction N; error: estimate of the
     discretisation error of the exit impulse, over it; lost_heat: to a wall of stated temperature, at the rows of
     the duct's lattice, W, as the flow found would lose it; rows: profile by name, (R, N).
     """
@@ -70,6 +71,7 @@ class Solution:
     friction: Array
     error: Array
     state: State
+    total_enthalpy: Array
     lost_heat: Array | None
     rows: dict[str, Array]
 
@@ -86,7 +88,29 @@ def nothing_yet(duct: Duct, scan: Scan, panels: int) -> Solution:
     lost = None if duct.cooling is None else duct.cooling.lost.copy()
     mode, status, attached, train, throat, places = np.zeros((6, n), np.int64)
     a, b, c, d, e, f, g, h, i, j = np.full((10, n), np.nan)
-    return Solution(mode, status, attached, train, throat, mode - 1, places, a, b, c, d, e, f, g, h, i, j, state, lost, profile)
+    return Solution(
+        mode,
+        status,
+        attached,
+        train,
+        throat,
+        mode - 1,
+        places,
+        a,
+        b,
+        c,
+        d,
+        e,
+        f,
+        g,
+        h,
+        i,
+        j,
+        state,
+        duct.total_enthalpy.copy(),
+        lost,
+        profile,
+    )
 
 
 def refuse(found: Solution, points: Flags) -> None:

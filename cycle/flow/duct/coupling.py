@@ -1,0 +1,120 @@
+"""What a duct gives its stream that depends on how it runs: heat to a wall of stated temperature, and the hand-over to another
+constant-gamma pair at burner entry. Flow and coupling are found in turn."""
+
+from __future__ import annotations
+
+from dataclasses import replace
+
+import numpy as np
+
+from cycle.arrays import Array, Codes
+from cycle.flow.duct.cooling import first_loss
+from cycle.flow.duct.core import behind_handover
+from cycle.flow.duct.layout import Cooling, Duct
+from cycle.flow.duct.modes import PANELS, solve_once
+from cycle.flow.duct.solution import ATTACHED, LOST, MODES, NONE, TRAIN, Solution, merge
+
+
+def solve_block(duct: Duct, separation: Array, asked: str = "auto", panels: int = PANELS, second: bool = False) -> Solution:
+    """How N ducts run. separation: pressure ratio over p2 that separates (N,); asked: a key of `ASKED`; panels of a march;
+    second: whether to look for a shock train where the attached flow stands."""
+    with np.errstate(all="ignore"):
+        if np.isfinite(duct.wall_temperature).any():
+            return _cooled(first_loss(duct), separation, asked, panels, second)
+        return _solved(duct, separation, asked, panels, second, np.full(duct.size, NONE))
+
+
+def _cooled(duct: Duct, separation: Array, asked: str, panels: int, second: bool) -> Solution:
+    """The flow and the heat it loses, in turn until the heat stands still; each point stops on its own.
+
+    Near a border the heat of either mode may call for the other. A mode that its own heat has refuted twice does not stand and is not
+    tried again: the first time the heat may still be the first guess's.
+    """
+    assert duct.cooling is not None
+    live, lost = np.arange(duct.size), duct.cooling.lost
+    mode, least, refuted = np.full(duct.size, len(MODES)), np.full(duct.size, NONE), np.zeros(duct.size, np.bool_)
+    history: list[tuple[Array, Array]] = []
+    whole: Solution | None = None
+    for _ in range(_COOLING_TURNS):
+        part = replace(duct.take(live), cooling=Cooling(duct.cooling.grid.take(live), lost[:, live]))
+        found = _solved(part, separation[live], asked, panels, second, least[live])
+        following = found.lost_heat
+        assert following is not None
+        # what is booked is the heat that was marched with, so that the energy closes to rounding
+        found = replace(found, lost_heat=lost[:, live].copy())
+        change = following - lost[:, live]
+        moved = np.abs(change).max(0)
+        size = part.mass_flow * part.velocity**2
+        if whole is None:
+            whole = found
+        else:
+            merge(whole, live, found)
+        falls = found.mode > mode[live]
+        least[live] = np.where(falls & refuted[live], found.mode, least[live])
+        refuted[live] |= falls
+        mode[live] = found.mode
+        going = (moved > _COOLED * size) & (found.mode != NONE)
+        lost[:, live] = _ahead(following, change, history)
+        history = [(g[:, going], f[:, going]) for g, f in ((following, change), *history[:1])]
+        live = live[going]
+        if not live.size:
+            break
+    assert whole is not None
+    whole.status[live], whole.mode[live] = LOST, NONE
+    return whole
+
+
+def _ahead(following: Array, change: Array, history: list[tuple[Array, Array]]) -> Array:
+    """The heat (R, N) to march with next: what followed, moved on by as much of the last turns' differences as leaves the least
+    change. history: what followed and its change in earlier turns, the latest first. Source: D. G. Anderson, Journal of the ACM
+    12 (1965) 547 (from memory)."""
+    left, kept = change, list[tuple[Array, Array]]()
+    for earlier, its_change in history:
+        bend, move = change - its_change, following - earlier
+        for b, m in kept:
+            share = (bend * b).sum(0) / (b * b).sum(0)
+            bend, move = bend - share * b, move - share * m
+        kept.append((bend, move))
+    for bend, move in kept:
+        share = (left * bend).sum(0) / (bend * bend).sum(0)
+        share = np.where(np.abs(share) < _FARTHEST, share, 0.0)
+        left, following = left - share * bend, following - share * move
+    return following
+
+
+_FARTHEST = 0.3
+"""Largest share moved on: the changes of the plain turns shrink by more than this, or the flow changes its mode meanwhile."""
+
+_COOLING_TURNS = 20
+_COOLED = 1e-9
+"""Change of the heat lost, over m u2^2, at which it stands still."""
+
+
+def _solved(duct: Duct, separation: Array, asked: str, panels: int, second: bool, least: Codes) -> Solution:
+    """The flow; where the constant-gamma pair changes at burner entry, with the enthalpy that it has behind the hand-over.
+
+    T is kept there, and depends on p3: what is not attached is solved again until it stands still. A point without a solution is judged
+    with the subsonic stream that its impulse allows.
+    """
+    whole = solve_once(duct, separation, asked, panels, second, least)
+    if duct.entry_heat is None:
+        return whole
+    live = np.flatnonzero(whole.mode != ATTACHED)
+    tried, peak = whole.attached.copy(), whole.attached_peak.copy()
+    before = np.full(duct.size, np.nan)
+    for _ in range(_HANDOVERS):
+        part = duct.take(live)
+        ht = behind_handover(part, whole.pressure_3[live])
+        going = ~(np.abs(ht - before[live]) <= _HANDED * ht)
+        before[live], live = ht, live[going]
+        if not live.size:
+            break
+        part = replace(part.take(going), total_enthalpy=ht[going])
+        merge(whole, live, solve_once(part, separation[live], asked, panels, second, np.maximum(least[live], TRAIN)))
+    whole.status[live], whole.mode[live] = LOST, NONE
+    whole.attached[:], whole.attached_peak[:] = tried, peak
+    return whole
+
+
+_HANDOVERS, _HANDED = 60, 1e-13
+"""Turns of the hand-over between two pairs, and change of the total enthalpy over itself at which it stands still."""
