@@ -24,6 +24,10 @@ CLIMB = np.array([4.2, 4.4, 4.6, 4.8])
 """Thermal throat twice, shock train, attached."""
 
 
+RELEASED = 1e-6
+"""The train stands in the stream whose held composition is released, 5e-8 of the Mach number beside station 2."""
+
+
 def figures(walk: cycle.Walk, name: str = "isolator") -> Any:
     return next(p.figures for p in walk.processes if p.name == name)
 
@@ -49,13 +53,13 @@ def test_a_rectangular_train_scales_with_the_height(side: str) -> None:
     walk = cycle.solve(case)
     height = 0.3 if side == "height" else walk.station["2"].area / 0.3
     assert figures(walk).isolator_height == pytest.approx(height, rel=1e-12)
-    assert figures(walk).train_length == pytest.approx(train_length(walk, height, 0.2), rel=1e-9)
+    assert figures(walk).train_length == pytest.approx(train_length(walk, height, 0.2), rel=RELEASED)
 
 
 def test_a_circular_train_scales_with_the_diameter_of_the_area() -> None:
     walk = cycle.solve(PLAIN)
     diameter = math.sqrt(4.0 * walk.station["2"].area / math.pi)
-    assert figures(walk).train_length == pytest.approx(train_length(walk, diameter, 0.25), rel=1e-9)
+    assert figures(walk).train_length == pytest.approx(train_length(walk, diameter, 0.25), rel=RELEASED)
     assert not any(limit.key == "isolator_section" for limit in walk.limits)
 
 

@@ -44,7 +44,9 @@ def test_the_first_case_stays_lit_and_breaks_no_limit_about_its_point(mach: floa
     assert {"ignition_temperature", "ignition_pressure", "thermal_choking", "corridor_low", "corridor_high"} <= set(margins)
     assert walk.station["3"].temperature > 1000.0
     assert [key for key, margin in margins.items() if margin < 0.0] == []
-    assert [key for key, margin in margins.items() if margin <= CLOSE] == ["ignition_temperature"]
+    close = {key for key, margin in margins.items() if margin <= CLOSE}
+    # both speak of self-ignition: by temperature, and by the pressure above which hydrogen lights slowly
+    assert "ignition_temperature" in close and close <= {"ignition_temperature", "slow_ignition"}
 
 
 @pytest.mark.parametrize(("mach", "phi"), box())

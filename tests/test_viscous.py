@@ -10,10 +10,11 @@ import pytest
 
 import cycle
 from cycle.flow import limits
+from tests.case_files import case_file
 from tests.random_flowpath import one_point
 
 CASES = Path(__file__).parents[1] / "cases"
-MERIT = cycle.load(CASES / "saltmarsh.toml").replace({"inlet.viscous_correlation": True})
+MERIT = cycle.load(case_file("plain")).replace({"inlet.viscous_correlation": True})
 RAMPS = cycle.load(CASES / "breakwater.toml")
 POINTS = 200
 ENDS = {"pressure_ratio": (5.0, 60.0), "contraction_ratio": (2.0, 8.0), "exit_mach": (2.5, 4.0), "temperature_ratio": (1.5, 5.0)}

@@ -211,8 +211,9 @@ def flow_of(ahead: Stream, setting: Setting, ratio: Array, total_pressures: bool
 def heat_limits(stream: Stream, setting: Setting, upper: Array) -> dict[str, duct_limits.End]:
     """The fuel-air ratios at which the modes of N ducts end, up to `upper`, (N,); stream: station 2."""
     return duct_limits.heat_limits(
-        lambda points, ratio: flow_of(stream.take(points), setting.take(points), ratio), _heat(stream, setting), upper
-    )
+        lambda points, ratio: flow_of(stream.take(points), setting.take(points), ratio), _heat(stream, setting), upper,
+        cooled=setting.has("combustor.wall_temperature"),
+    )  # fmt: skip
 
 
 def _panels(setting: Setting) -> int:

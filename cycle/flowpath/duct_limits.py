@@ -26,8 +26,8 @@ isolator length at unstart; or the status of the points beyond."""
 _SCANNED = 25
 _BUNCHED = 1.5
 """Exponent of the scan's ratios over the even ones: denser at little heat."""
-_SETTLED = 3e-9
-"""Width of the last bracket, over the ratio."""
+_SETTLED, _SETTLED_COOLED = 3e-9, 1e-6
+"""Width of the last bracket, over the ratio; where heat to a wall of stated temperature is found at every ratio."""
 _TURNS = 30
 _PROBES = 48
 """Ducts of a turn below which more of them cost little: the brackets share them."""
@@ -82,11 +82,11 @@ def _seen(flow: Flow) -> _Seen:
     return _Seen(stands, np.array([attached, np.where(mode == NONE, ended, choking), ended]), margins)
 
 
-def heat_limits(at: At, now: Array, upper: Array) -> dict[str, End]:
+def heat_limits(at: At, now: Array, upper: Array, cooled: bool = False) -> dict[str, End]:
     """The end of each mode nearest to the fuel ratio of each point; see `ENDS` and `End`.
 
     at: the ducts of some points at some ratios; now: the ratio of each point, (N,), NaN unknown; upper: end of the search,
-    (N,).
+    (N,); cooled: whether the ducts lose heat to a wall of stated temperature, which makes them dear.
     """
     n = now.size
     even = upper * ((np.arange(_SCANNED) / (_SCANNED - 1.0)) ** _BUNCHED)[:, None]
@@ -98,7 +98,8 @@ def heat_limits(at: At, now: Array, upper: Array) -> dict[str, End]:
     limits[:, np.isnan(now)] = np.nan
     e, point = np.nonzero((lows >= 0) & ~np.isnan(now))
     low, high = lows[e, point], highs[e, point]
-    search = _Search(e, point, ratio[low, point], ratio[high, point], scan.at(low, point), scan.at(high, point))
+    narrow = _SETTLED_COOLED if cooled else _SETTLED
+    search = _Search(narrow, e, point, ratio[low, point], ratio[high, point], scan.at(low, point), scan.at(high, point))
     search.close(at)
     causes = np.zeros(limits.shape, np.int64)
     limits[e, point], causes[e, point] = search.low, search.cause
@@ -123,10 +124,11 @@ def _bracket(stands: Array, here: Codes) -> tuple[Codes, Codes, Array]:
 
 
 class _Search:
-    """Brackets (K,) of ends of modes, closed in on together. end: which mode; point: of which point; low stands, high does not."""
+    """Brackets (K,) of ends of modes, closed in on together. narrow: width over the ratio at which one is
+    closed; end: which mode; point: of which point; low stands, high does not."""
 
-    def __init__(self, end: Codes, point: Codes, low: Array, high: Array, at_low: _Seen, at_high: _Seen) -> None:
-        own = np.arange(end.size)
+    def __init__(self, narrow: float, end: Codes, point: Codes, low: Array, high: Array, at_low: _Seen, at_high: _Seen) -> None:
+        own, self.narrow = np.arange(end.size), narrow
         self.end, self.point, self.low, self.high = end, point, low, high
         self.margins = np.stack([at_low.margins, at_high.margins])
         self.cause = at_high.cause[end, own]
@@ -134,7 +136,7 @@ class _Search:
     @property
     def open(self) -> Codes:
         """Which are not narrow yet."""
-        return np.flatnonzero(self.high - self.low > _SETTLED * self.high)
+        return np.flatnonzero(self.high - self.low > self.narrow * self.high)
 
     def close(self, at: At) -> None:
         """Narrow all brackets, a batch of ducts a turn."""

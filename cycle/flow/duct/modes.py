@@ -233,8 +233,12 @@ class Solver:
             good, places = fill.found & ~fill.over, along.rises.sum(0)[runs]
             # so close to unstart, or to a plane in which fuel enters, the rows of a march do not show that the core nowhere has more
             hair = along.least[runs] > -_UNSURE * cut.impulse
-            code[runs] = np.select([good, ~fill.found & hair, ~fill.found & (places > 0)], [STANDS, NO_START, UNSETTLED], NO_CORE)
-            needed[runs] = np.maximum(needed[runs], np.where(code[runs] == NO_START, cut.impulse, -np.inf))
+            # a core that overfills the duct: unstarted where the subsonic stream of the whole impulse chokes, too
+            whole = np.where((fill.over | ~fill.found) & (along.reached[runs] == 0.0), along.bare[0, runs], -1.0)
+            lacks = np.where(whole >= 0.0, whole, 0.0)
+            unstarts = (whole >= 0.0) | (~fill.found & hair)
+            code[runs] = np.select([good, unstarts, ~fill.found & (places > 0)], [STANDS, NO_START, UNSETTLED], NO_CORE)
+            needed[runs] = np.where(code[runs] == NO_START, np.maximum(needed[runs], cut.impulse + lacks), needed[runs])
             w = index[runs][good]
             found.pressure_3[w], found.x_fill[w], found.places[w] = fill.pressure[good], fill.x[good], places[good]
             found.peak[w] = np.maximum(fill.pressure, above.flow.pressure.max(0))[good]
