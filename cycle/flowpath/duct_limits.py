@@ -28,7 +28,7 @@ _BUNCHED = 1.5
 """Exponent of the scan's ratios over the even ones: denser at little heat."""
 _SETTLED, _SETTLED_COOLED = 3e-9, 1e-6
 """Width of the last bracket, over the ratio; where heat to a wall of stated temperature is found at every ratio."""
-_TURNS = 30
+_TURNS = 40
 _PROBES = 48
 """Ducts of a turn below which more of them cost little: the brackets share them."""
 _NEAREST = 1e-6
@@ -149,15 +149,18 @@ class _Search:
             self._learn(w, tried, _seen(at(points, tried.ravel())).shaped(*tried.shape))
 
     def _probes(self, w: Codes, count: int) -> Array:
-        """Ratios to look at (len(w), count), rising: even ones, or dense about the zero of a margin that is known at both ends."""
+        """Ratios to look at (len(w), count), rising: even ones, or dense about the zero of a margin that is known at both ends, and the
+        middle, so that a bent margin cannot hold the search up."""
         low, high = self.low[w, None], self.high[w, None]
         even = np.arange(1.0, count + 1.0) / (count + 1.0)
         which = _WHICH[self.cause[w]]
         a, b = self.margins[:, which, w]
         known = (which >= 0) & (a > 0.0) & (b < 0.0)
         zero = np.where(known, a / np.where(known, a - b, 1.0), 0.5)[:, None]
-        side = _NEAREST ** (1.0 - np.abs(2.0 * even - 1.0)) * np.sign(2.0 * even - 1.0)
+        span = np.linspace(-1.0, 1.0, count + 1)[1:-1] * count / (count - 1.0)
+        side = _NEAREST ** (1.0 - np.abs(span)) * np.sign(span)
         about = zero + side * np.where(side < 0.0, zero, 1.0 - zero) * (1.0 - 1e-3)
+        about = np.sort(np.hstack([about, np.full((w.size, 1), 0.5)]), axis=1)
         return low + (high - low) * np.where(known[:, None], about, even)
 
     def _learn(self, w: Codes, tried: Array, seen: _Seen) -> None:

@@ -63,6 +63,9 @@ PANELS = 12
 _SURE = 0.02
 """Momentum lacking at the throat, over the impulse, above which no shock train needs to be looked for."""
 
+_SUBSONIC = 0.999
+"""Square of the Mach number below which a row of the supersonic branch is none: rounding at a throat is less."""
+
 _NEAR_SONIC = 1.2
 """Square of the Mach number below which a march may have less impulse at a critical section than it shows."""
 
@@ -157,8 +160,8 @@ class Solver:
     def _short(self, index: Codes, run: Branch) -> Flags:
         """Where a march that passes close to Mach 1 has less impulse at a critical section than the flow needs there, (index.size,): the
         march alone tells only to about a thousandth of the heat."""
-        short = np.zeros(index.size, np.bool_)
-        near = np.flatnonzero(run.passes & (run.flow.mach_squared.min(0) < _NEAR_SONIC))
+        short: Flags = run.passes & (run.flow.mach_squared.min(0) < _SUBSONIC)
+        near = np.flatnonzero(run.passes & ~short & (run.flow.mach_squared.min(0) < _NEAR_SONIC))
         for rank in range(CANDIDATES if near.size else 0):
             behind = self.summits.x[rank, index[near]] > run.x[0, near] + _WIDTH * self.duct.end[index[near]]
             w = near[self.summits.there[rank, index[near]] & behind]

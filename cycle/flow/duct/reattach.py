@@ -13,7 +13,7 @@ from dataclasses import dataclass, fields
 import numpy as np
 
 from cycle.arrays import Array, Codes, Flags
-from cycle.flow.duct.core import FRICTION_TURNS, Lost, core_at, core_friction, friction_turn, unlost
+from cycle.flow.duct.core import FRICTION_TURNS, core_at, core_friction, friction_turn, unlost
 from cycle.flow.duct.layout import Duct
 from cycle.flow.duct.march import Branch, spot
 from cycle.flow.duct.scan import Scan
@@ -198,27 +198,44 @@ def _bracketed(duct: Duct, scan: Scan, up: Branch, low: Array, high: Array, x: A
             break
         before, x = np.stack([x, miss]), np.where(done, x, new)
     found = done & solved & ((x < up.x[0]) | (miss >= 0.0))
-    plane = ((np.abs(duct.edges - x) < _PLANE * duct.end)[1:-1] & (np.diff(duct.injected, axis=0) > 0.0)).any(0)
+    near = (np.abs(duct.edges - x) < _PLANE * duct.end)[1:-1] & (np.diff(duct.injected, axis=0) > 0.0)
     off = np.abs(miss) > _NEAR * duct.impulse
-    found &= ~off | plane
-    jumps = np.flatnonzero(found & off)
+    jumps = np.flatnonzero(found & off & near.any(0))
+    found &= ~off
     if jumps.size:
-        cut, own, taken = duct.take(jumps), scan.take(jumps), lost.take(jumps)
-        p[jumps], friction[jumps] = _at_plane(cut, own, segment[jumps], x[jumps], up.free_at(x)[jumps], p[jumps], taken)
+        cut, own, part = duct.take(jumps), scan.take(jumps), up.take(jumps)
+        p[jumps], friction[jumps], found[jumps] = _at_plane(cut, own, part, near.argmax(0)[jumps])
     core = core_at(duct, scan.mixture, p, lost.rows, lost.state)
     ahead = scan.grid.x < x - _ROOM * duct.end
     largest = np.where(ahead, core.ln_share, -1.0).max(0)
     return Fill(x, p, friction, found, largest > _OVER)
 
 
-def _at_plane(duct: Duct, scan: Scan, segment: Codes, x: Array, free: Array, pressure: Array, lost: Lost) -> tuple[Array, Array]:
-    """p3 Pa and friction of the core N where it fills the duct in the plane in which fuel enters: by the impulse that the attached flow
-    behind it has, F - B = F2 + p3 (A - A2) - friction."""
-    rise = duct.area_at(segment[None], x[None])[0] - duct.entry_area
-    for _ in range(FRICTION_TURNS):
-        lost, moved = friction_turn(duct, scan, pressure, lost)
-        friction = lost.at(scan, segment, x)
-        pressure = (free - duct.impulse + friction) / rise
-        if (moved < _STILL * duct.impulse).all():
+def _at_plane(duct: Duct, scan: Scan, up: Branch, plane: Codes) -> tuple[Array, Array, Flags]:
+    """p3 Pa and friction of the core N where it fills the duct in the plane in which fuel enters, and whether it does.
+
+    The attached flow behind the plane has the impulse F - B = F2 + p3 (A - A2) - friction; p3 lies between its pressures on both sides of
+    the plane. plane: which inner edge, (N,). Regula falsi, halving in turn.
+    """
+    x = duct.edges[plane + 1, np.arange(plane.size)]
+    free, rise = up.free_at(x), duct.area_at(plane[None], x[None])[0] - duct.entry_area
+    slow = np.full(x.shape, -1.0)
+    low, high = (spot(duct, plane + side, x, free, slow, scan)[1].pressure[0] for side in (0, 1))
+
+    def over(pressure: Array) -> tuple[Array, Array]:
+        taken = core_friction(duct, scan, pressure).at(scan, plane, x)
+        return free - duct.impulse - pressure * rise + taken, taken
+
+    (f_low, _), (f_high, friction) = over(low), over(high)
+    between: Flags = f_low * f_high <= 0.0
+    p = high
+    for turn in range(_TURNS):
+        p = 0.5 * (low + high) if turn % 2 else low - f_low * (high - low) / (f_high - f_low)
+        p = np.where(np.isfinite(p), p, low)
+        miss, friction = over(p)
+        first = miss * f_low > 0.0
+        low, f_low = np.where(first, p, low), np.where(first, miss, f_low)
+        high, f_high = np.where(first, high, p), np.where(first, f_high, miss)
+        if (~between | (np.abs(high - low) < _SETTLED * p) | (np.abs(miss) < _STILL * duct.impulse)).all():
             break
-    return pressure, friction
+    return p, friction, between
