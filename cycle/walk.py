@@ -123,7 +123,9 @@ def _to_expansion(stream: Stream, setting: Setting) -> Step | None:
 
 def _release(station: str) -> Part:
     def release(stream: Stream, setting: Setting) -> Step | None:
-        released = stream if setting.constant_gamma else combustor.burner_gas(stream, setting)
+        if not isinstance(stream.gas, FrozenGas):
+            return None
+        released = combustor.burner_gas(stream, setting)
         if released is stream:
             return None
         return Step(released, Process(RELEASED, station, station), np.zeros(setting.size, np.int64))

@@ -14,12 +14,13 @@ from cycle.case import differences, json_schema, template
 from cycle.limit_solving import solve_for_limit
 from cycle.quantities import INPUT
 from cycle.record import dumps, record
+from tests.case_files import case_file
 from tui.entries import facts
 from tui.figures import assess, take
 from tui.text import limit_words
 
 CASES = Path(__file__).parents[1] / "cases"
-RIG, SALTMARSH = cycle.load(CASES / "bench-three.toml"), cycle.load(CASES / "saltmarsh.toml")
+RIG, SALTMARSH = cycle.load(CASES / "bench-three.toml"), cycle.load(case_file("plain"))
 KEY = "limits.ignition_temperature"
 OWN = {
     "fuel.name": None, "fuel.formula": "C7H16", "fuel.phase": "gas", "fuel.heating_value": 44.6e6, "fuel.vapour_specific_heat": 2e3,
@@ -132,7 +133,7 @@ def test_shipped_hydrogen_case_at_more_heat_is_over_its_separation() -> None:
     ],
 )
 def test_burner_without_that_separation_says_why(name: str, changes: dict[str, object], why: str) -> None:
-    found = row(cycle.solve(cycle.load(CASES / f"{name}.toml").replace(changes)), "burner_separation")
+    found = row(cycle.solve(cycle.load(case_file(name)).replace(changes)), "burner_separation")
     assert found.state == "not assessed" and why in found.restore
 
 

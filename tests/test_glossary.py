@@ -27,7 +27,7 @@ TEXTS |= {path.stem: path.read_text(encoding="utf-8") for path in sorted((ROOT /
 CONSTANT_PRESSURE = QUICK.replace("fuel_air_ratio", 'process = "constant-pressure"\nfuel_air_ratio')
 SEVERAL_PAIRS = QUICK.replace('fuel_energy = "neglected"', 'fuel_energy = "neglected"\ncp_combustion = 1500')
 TEXTS["shock in the nozzle"] = TEXTS["sandbar"].replace("exit_area_ratio = 2.4", "exit_area_ratio = 70.0")
-TEXTS["viscous correlation"] = TEXTS["saltmarsh"].replace("kinetic_energy_efficiency = 0.975", "viscous_correlation = true")
+TEXTS["viscous correlation"] = TEXTS["saltmarsh"].replace("kinetic_energy_efficiency = 0.98", "viscous_correlation = true")
 TEXTS["viscous throat"] = TEXTS["breakwater"].replace("lip_x", "viscous_efficiency = 0.99\nlip_x")
 TEXTS |= {"internal": INTERNAL, "constant pressure": CONSTANT_PRESSURE, "several pairs": SEVERAL_PAIRS}
 

@@ -13,13 +13,14 @@ import pytest
 import cycle
 from cycle import result
 from cycle.record import dumps, record
+from tests.case_files import case_file
 from tui.figures import assess, take
 from tui.tables import as_text
 from tui.text import walk_blocks
 from tui.views import margins
 
 CASES = Path(__file__).parents[1] / "cases"
-SALTMARSH, TIDEGATE, BREAKWATER = (cycle.load(CASES / f"{name}.toml") for name in ("saltmarsh", "tidegate", "breakwater"))
+SALTMARSH, TIDEGATE, BREAKWATER = (cycle.load(case_file(name)) for name in ("plain", "tidegate", "breakwater"))
 
 
 def hot(temperature: float = 900.0, **changes: object) -> cycle.Case:

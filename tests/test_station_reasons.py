@@ -13,6 +13,7 @@ import cycle
 from cycle.explain import find, numbers
 from cycle.quantities import OUTPUTS, Output
 from cycle.record import dumps, record
+from tests.case_files import case_file
 from tui.tables import as_text
 from tui.text import walk_blocks
 
@@ -22,7 +23,7 @@ ABOVE_TOTAL, ABOVE_SONIC = (f"above the data: {name} temperature over 6000 K" fo
 
 def fast(model: str, mach: float) -> cycle.Case:
     other = {} if model == "equilibrium" else {"inlet.chemistry": None, "nozzle.chemistry": None}
-    return cycle.load(CASES / "saltmarsh.toml").replace({"gas.model": model, "flight.mach": mach, **other})
+    return cycle.load(case_file("plain")).replace({"gas.model": model, "flight.mach": mach, **other})
 
 
 @pytest.mark.parametrize("model", ["frozen", "equilibrium"])

@@ -11,6 +11,7 @@ from pathlib import Path
 import pytest
 
 import cycle
+from cycle.quantities import CAUSES
 from tests.tui.command_support import DETACHED, DUCT, DUCT_RIG, INTERNAL, QUICK, THROAT, written
 from tui.commands import main
 from tui.tables import columns
@@ -67,8 +68,12 @@ def test_the_margins_of_a_duct_stand_in_sentences(capsys: pytest.CaptureFixture[
     assert f"Separation margin {100 * isolator['separation_margin']:+.1f} % (attached peak " in text
     assert f"Isolator margin {100 * isolator['isolator_margin']:+.1f} % (shock train {isolator['train_length']:.4g} m)." in text
     assert "Unstart margin not assessed: no critical section." in text
-    borders = [f"{walk.heat_limits[name]:.4g}" for name in ("attached-separates", "train", "unstart")]
-    assert "With rising equivalence ratio (here 1.6): attached to {}, shock train to {}, before unstart {}.".format(*borders) in text
+    borders = [f"{walk.heat_limits[name]:.4g}" for name in ("attached", "train", "unstart")]
+    causes = [CAUSES[walk.heat_limit_causes[name]] for name in ("attached", "train", "unstart")]
+    ends = [part for pair in zip(borders, causes, strict=True) for part in pair]
+    assert (
+        "With rising equivalence ratio (here 1.6): attached to {} ({}), shock train to {} ({}), unstart at {} ({}).".format(*ends) in text
+    )
 
 
 def test_a_rig_says_how_its_duct_runs(capsys: pytest.CaptureFixture[str], folder: Path) -> None:
@@ -95,8 +100,12 @@ def test_failures_of_the_flowpath_are_said_and_end_with_3(capsys: pytest.Capture
 
 def test_what_restores_an_unstarted_inlet_is_said_with_its_heat(capsys: pytest.CaptureFixture[str], folder: Path) -> None:
     text = words(output(capsys, "solve", "unstarted.toml", status=3))
-    assert "largest equivalence ratio before unstart 1.679; less heat, heat further downstream" in text
-    assert "With rising equivalence ratio (here 1.9): attached to 1.227, shock train to 1.661, before unstart 1.679." in text
+    walk = cycle.solve(cycle.load("unstarted.toml"))
+    ends = [f"{walk.heat_limits[name]:.4g} ({CAUSES[walk.heat_limit_causes[name]]})" for name in ("attached", "train", "unstart")]
+    assert f"equivalence ratio 1.9, at most {walk.heat_limits['unstart']:.4g} (" in text and "less heat, heat further downstream" in text
+    assert "With rising equivalence ratio (here 1.9): attached to {}, shock train to {}, unstart at {}.".format(*ends) in text
+    margin = walk.march.figure("isolator", "unstart_margin")[0]
+    assert margin < 0.0 and f"Unstart margin {100.0 * margin:+.1f} %." in text
 
 
 def test_a_heat_that_is_no_fuel_ratio_has_no_borders(capsys: pytest.CaptureFixture[str], folder: Path) -> None:
@@ -210,7 +219,7 @@ def test_markdown_has_the_flow_along_the_duct(capsys: pytest.CaptureFixture[str]
         ("loss.burner", "heat at speed, mixing, friction, wall heat = "),
         ("potential.isolator", "isolator = -"),
         ("profile.mach", "x 1.2 m: M = "),
-        ("heat.unstart", "before unstart = 1.67"),
+        ("heat.unstart", "before unstart = 1.66"),
         ("wave_angle", "external compression 0 to 1, 3: wave angle = "),
         ("combustor.area", "3: x 1.2, area_ratio 1.8"),
         ("combustor.area.area_ratio", "row by row: 1, 1, 1.8."),

@@ -101,9 +101,9 @@ def test_along_the_duct_marks_where_something_happens() -> None:
     assert [s.label for s in chart.series] == ["this walk", "core, this walk"]
     assert all(core <= area * (1 + 1e-12) for area, core in zip(chart.series[0].y, chart.series[1].y, strict=True))
     words = " ".join(r.words for r in chart.rules)
-    assert all(part in words for part in ("fuel, 0.05 m", "shock train begins, -0.2", "core fills the duct", "thermal throat"))
+    assert all(part in words for part in ("fuel, 0.05 m", "shock train begins, -0.45", "core fills the duct", "thermal throat"))
     pressure = pictures.along_duct(now, "pressure", True)
-    assert pressure.y_axis.log and pressure.spots[0].x == -0.6
+    assert pressure.y_axis.log and pressure.spots[0].x == -1.0
     assert len(pictures.views(now)) == 4 and len(pictures.views(walked("narrows"))) == 3
 
 

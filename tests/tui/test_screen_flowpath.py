@@ -308,4 +308,4 @@ def test_what_restores_an_unstarted_inlet_comes_with_the_second_pass(duct: Case)
     assert "the inlet does not stay started" in quick.reason
     assert "less heat" in quick.reason
     assert "heat_limits" not in vars(walk)
-    assert "largest fuel-air ratio before unstart" in figures.assess(quick).reason
+    assert "fuel-air ratio 0.4, at most 0." in figures.assess(quick).reason
