@@ -33,10 +33,6 @@ HELD = 0.25
 """Seconds between two steps up to which the key counts as held; sensitivities wait until it has rested for as long."""
 
 
-RESTED = 1.0
-"""Seconds without an edit after which the heat limits of a duct are looked for: they take as long themselves."""
-
-
 def fault_words(error: CaseError, beside: str = "") -> tuple[str, ...]:
     """Faults of an edit in words, without the file's name, and without the key of the field they stand beside."""
     out = []
@@ -180,17 +176,16 @@ class Desk(Screen[None], inherit_bindings=False):
         self.session = new
         if not found.assessed:
             self.call_after_refresh(self._second_pass, generation, found)
-        else:
-            if self._slow is not None:
-                self._slow.cancel()
-            self.after(RESTED, lambda: self.ask_heat_limits(generation))
+        elif self._slow is not None:
+            self._slow.cancel()
         self.paint_spaced()
 
-    def ask_heat_limits(self, generation: int | None = None) -> None:
-        """Ask for the heat at which the modes of a duct end, unless it is known; generation: of the case that it is asked for."""
+    def ask_heat_limits(self) -> None:
+        """Ask for the heat at which the modes of a duct end, unless it is known: a search that costs many solutions, so a page asks for
+        it and no edit waits for it."""
         found, case = self.session.figures, self.session.case
         wanted = case is not None and case.value("combustor.process") == "duct" and self.session.borders is None
-        if wanted and found is not None and self.session.settled and generation in (None, self.session.generation):
+        if wanted and found is not None and self.session.settled:
             self.engine.newest("borders", self.session.generation, lambda: figures.heat_limits(found))
 
     def paint_spaced(self) -> None:

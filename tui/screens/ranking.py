@@ -102,6 +102,7 @@ class Ranking(Desk, inherit_bindings=False):
             act=lambda key, name: LIMIT_VERBS[key](self, name),
         )
         self.app.push_screen(list_, self._limits_done)
+        self.ask_heat_limits()
 
     def _limit_told(self, name: str, wide: int) -> list[Line]:
         return margins.told(self.session, name, wide, self._search_words(name))
