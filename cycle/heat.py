@@ -12,8 +12,10 @@ from cycle.account import spread
 from cycle.arrays import Array, Codes
 from cycle.flow import roots
 from cycle.flowpath import assembly, combustor, duct_limits, isolator
+from cycle.flowpath.setting import Setting
+from cycle.flowpath.stream import STATUS_NAMES, Stream
 from cycle.quantities import INPUT
-from cycle.walk import March
+from cycle.walk import March, Record
 
 _SEARCH = {"combustor.equivalence_ratio": 3.0, "combustor.fuel_air_ratio": 0.5, "combustor.exit_total_temperature": 5000.0}
 """Where the search for the largest heat ends, SI."""
@@ -22,22 +24,52 @@ _SEARCH = {"combustor.equivalence_ratio": 3.0, "combustor.fuel_air_ratio": 0.5, 
 def ends_of_modes(walked: March) -> dict[str, tuple[Array, Codes]]:
     """The heat input, SI, at which each mode of the duct ends, (N,), and what sets it, codes of `duct_limits.CAUSES` (N,). NaN where it is
     not known, as where the heat is no fuel ratio; {} where no point reached the duct."""
-    record = walked.reached("2") or walked.reached("3")
+    record, size = walked.reached("2") or walked.reached("3"), walked.setting.size
     if record is None or not record.index.size:
         return {}
     key, setting = limits.heat_key(walked.setting), walked.setting.take(record.index)
-    units = {"equivalence_ratio": setting.stoichiometric_ratio, "fuel_air_ratio": np.ones(record.index.size)}
-    unit = units.get(setting.choices["combustor.heat"])
-    size = walked.setting.size
+    unit = _unit(setting)
     if unit is None:
         return dict.fromkeys(duct_limits.ENDS, (np.full(size, np.nan), np.zeros(size, np.int64)))
-    entering = record.stream if setting.constant_gamma else combustor.burner_gas(record.stream, setting)
-    worn = isolator.worn(entering, setting)
-    found = assembly.heat_limits(entering if worn is None else worn.stream, setting, _SEARCH[key] * unit)
+    found = assembly.heat_limits(_entering(record, setting), setting, _SEARCH[key] * unit)
     causes = {name: np.zeros(size, np.int64) for name in found}
     for name, end in found.items():
         causes[name][record.index] = end.cause
     return {name: (spread(walked, record.index, end.ratio / unit), causes[name]) for name, end in found.items()}
+
+
+def _unit(setting: Setting) -> Array | None:
+    """Fuel-air ratio of one unit of the heat input, (N,); None where that is no fuel ratio."""
+    units = {"equivalence_ratio": setting.stoichiometric_ratio, "fuel_air_ratio": np.ones(setting.size)}
+    return units.get(setting.choices["combustor.heat"])
+
+
+def _entering(record: Record, setting: Setting) -> Stream:
+    """The stream that a duct takes in: that of station 2 with the gas that burns, behind the isolator's friction."""
+    entering = record.stream if setting.constant_gamma else combustor.burner_gas(record.stream, setting)
+    worn = isolator.worn(entering, setting)
+    return entering if worn is None else worn.stream
+
+
+def starts_again(walked: March) -> float:
+    """The heat, SI, above that of one point without a mode from which its duct has one again, to about 1e-4; NaN where none does."""
+    record, key = walked.reached("2") or walked.reached("3"), limits.heat_key(walked.setting)
+    unit = _unit(walked.setting)
+    if record is None or unit is None:
+        return np.nan
+    same = np.zeros(_STEPS, np.int64)
+    stream, setting = _entering(record, walked.setting).take(same), walked.setting.take(same)
+    low, high = float(walked.setting[key][0]), 2.0 * float(walked.setting[key][0])
+    for _ in range(3):
+        tried = low + (high - low) * np.arange(1, _STEPS + 1) / _STEPS
+        runs = np.flatnonzero(assembly.flow_of(stream, setting, tried * unit[0]).status == 0)
+        if not runs.size:
+            return np.nan
+        low, high = (tried[runs[0] - 1] if runs[0] else low), float(tried[runs[0]])
+    return high
+
+
+_STEPS = 40
 
 
 def words(walked: March, ends: Mapping[str, float], causes: Mapping[str, str]) -> str:
@@ -48,6 +80,9 @@ def words(walked: March, ends: Mapping[str, float], causes: Mapping[str, str]) -
         return "no heat below the search's end starts it" if most == 0.0 else "the heat at which it starts is not known"
     here = float(walked.setting[limits.heat_key(walked.setting)][0])
     why = {"impulse": "impulse at burner entry", "isolator-length": "the shock train is longer than the isolator"}.get(cause, cause)
+    again = starts_again(walked) if STATUS_NAMES[walked.status[0]] == "no-mode" else np.nan
+    if np.isfinite(again):
+        return f"{label} {here:.4g}, at most {most:.4g} or at least {again:.4g}: no mode is consistent between"
     return f"{label} {here:.4g}, at most {most:.4g} ({why})" if here > most else f"{label} {here:.4g}, at least {most:.4g}"
 
 

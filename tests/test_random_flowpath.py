@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import re
 from pathlib import Path
 
 import numpy as np
@@ -88,3 +89,17 @@ def test_every_point_close_to_unstart_finds_where_its_core_fills_the_duct() -> N
     unstart = cycle.solve(case).heat_limits["unstart"]
     walk = cycle.solve(case, {"combustor.equivalence_ratio": unstart * (1.0 - np.linspace(1e-9, 3e-4, 60))})
     assert set(walk.status) == {"solved"}
+
+
+def test_a_point_without_a_consistent_mode_says_the_interval() -> None:
+    """Both ends of the interval of the fuel sweep in which the place where the core fills the duct jumps."""
+    case = swept_case(SWEPT["hydrogen"]).replace({"combustor.equivalence_ratio": 1.1})
+    walk = cycle.solve(case)
+    assert walk.status == "no-mode"
+    low = walk.heat_limits["unstart"]
+    sentence = re.search(r"equivalence ratio 1\.1, at most ([0-9.]+) or at least ([0-9.]+): no mode", walk.reason)
+    assert sentence is not None and float(sentence[1]) == pytest.approx(low, rel=1e-3)
+    high = float(sentence[2])
+    assert 1.08 < low < 1.1 < high < 1.12
+    ends = cycle.solve(case, {"combustor.equivalence_ratio": np.array([low * 0.999, low * 1.001, high * 0.998, high * 1.001])})
+    assert list(ends.status) == ["solved", "no-mode", "no-mode", "solved"]
