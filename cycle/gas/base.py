@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from abc import ABC, abstractmethod
+from collections.abc import Callable
 from dataclasses import replace
 from typing import TYPE_CHECKING, Self
 
@@ -11,7 +12,8 @@ import numpy as np
 from cycle.arrays import Array, ArrayLike, Codes, Flags
 from cycle.constants import GAS_CONSTANT, REFERENCE_PRESSURE
 from cycle.gas.closures import CLOSURES, Local
-from cycle.gas.state import INSIDE, NOT_CONVERGED, State, scatter
+from cycle.gas.species import COLDEST, HIGHEST
+from cycle.gas.state import INSIDE, NOT_CONVERGED, OUT_OF_RANGE, State, scatter
 
 if TYPE_CHECKING:
     from cycle.gas.fuels import Fuel
@@ -38,7 +40,7 @@ class Gas(ABC):
         """
         arrays = tuple(_spread(t, self.size) for t in targets)
         if not CLOSURES[kind].branched:
-            return self._at(kind, arrays, start)
+            return self._blamed(self._at(kind, arrays, start), kind, arrays, start)
         if start is None:
             raise ValueError(f"the closure {kind} has two branches: it needs a state to start from")
         with np.errstate(all="ignore"):
@@ -48,7 +50,28 @@ class Gas(ABC):
                 chosen = tuple(t[astray] for t in arrays)
                 back = mirrored(state.take(astray), chosen)
                 state = scatter(state, astray, self.take(astray)._at(kind, chosen, back))
-            return state.flagged(strayed(state, arrays, start))
+            return self._blamed(state.flagged(strayed(state, arrays, start)), kind, arrays, start)
+
+    def _blamed(self, state: State, kind: str, targets: tuple[Array, ...], start: State | None) -> State:
+        """The state, out of range instead of not converged where the data end before the targets are met."""
+        lost = np.flatnonzero((state.range == NOT_CONVERGED) & np.isfinite(targets).all(0))
+        if not lost.size or kind not in BEYOND:
+            return state
+        gas, cut = self.take(lost), tuple(t[lost] for t in targets)
+        fast = np.zeros(lost.size, np.bool_)
+        if start is not None and CLOSURES[kind].branched:
+            fast = cut[-1] > (start.density * start.sound_speed)[lost]
+        with np.errstate(all="ignore"):
+            cold, hot = (BEYOND[kind](gas, cut, np.full(lost.size, T), fast) for T in gas.temperatures)
+        beyond = (cold < 0.0) & fast if kind == "flux" else cold > 0.0
+        code = state.range.copy()
+        code[lost[beyond | (hot < 0.0) & ~(fast & (kind == "flux"))]] = OUT_OF_RANGE
+        return replace(state, range=code)
+
+    @property
+    def temperatures(self) -> tuple[float, float]:
+        """The coldest and the hottest temperature of the data, K."""
+        return COLDEST, HIGHEST
 
     @abstractmethod
     def _at(self, kind: str, targets: tuple[Array, ...], start: State | None) -> State:
@@ -126,11 +149,20 @@ class FixedGas(Gas):
             ln_T, ln_p, done = self._iterate(kind, np.log(T), np.log(p), targets)
             return self._state(np.where(done, np.exp(ln_T), np.nan), np.exp(ln_p), done)
 
-    def _iterate(self, kind: str, ln_T: Array, ln_p: Array, targets: tuple[Array, ...]) -> tuple[Array, Array, Flags]:
+    def _iterate(
+        self, kind: str, ln_T: Array, ln_p: Array, targets: tuple[Array, ...], turns: int = 60
+    ) -> tuple[Array, Array, Flags]:
         closure, R = CLOSURES[kind], self.gas_constant
         done = np.full(ln_T.shape, closure.fixes_T and closure.fixes_p)
-        for _ in range(60):
-            if done.all():
+        over = done.copy()
+        for turn in range(turns):
+            if over.all():
+                break
+            if turn == _LONG and over.any():
+                left = np.flatnonzero(~over)
+                rest = self.take(left)._iterate(kind, ln_T[left], ln_p[left], tuple(t[left] for t in targets), turns - turn)
+                for whole, part in zip((ln_T, ln_p, done), rest, strict=True):
+                    whole[left] = part
                 break
             h, s0, cp = self.caloric(np.exp(ln_T))
             at = Local(
@@ -139,9 +171,10 @@ class FixedGas(Gas):
             )  # fmt: skip
             d_T, d_p = closure.step(at, targets)
             size = np.maximum(np.abs(d_T) / 0.7, np.abs(d_p) / 1.5)
-            scale = np.where(done, 0.0, 1.0 / np.maximum(size, 1.0))
-            ln_T, ln_p = ln_T + np.nan_to_num(d_T * scale), ln_p + np.nan_to_num(d_p * scale)
-            done |= (np.abs(d_T) < 3e-9) & (np.abs(d_p) < 3e-9)
+            scale = np.where(over | ~np.isfinite(size), 0.0, 1.0 / np.maximum(size, 1.0))
+            ln_T, ln_p = ln_T + np.where(scale > 0.0, d_T * scale, 0.0), ln_p + np.where(scale > 0.0, d_p * scale, 0.0)
+            done |= ~over & (np.abs(d_T) < 3e-9) & (np.abs(d_p) < 3e-9)
+            over |= done | ~np.isfinite(size) | (np.abs(ln_T - _MIDDLE) > _FAR_OFF)
         return ln_T, ln_p, done
 
     def _state(self, T: Array, p: Array, done: Flags) -> State:
@@ -153,6 +186,48 @@ class FixedGas(Gas):
             T, p, p / (R * T), h, s0 - R * np.log(p / REFERENCE_PRESSURE), np.sqrt(gamma * R * T), gamma, gamma, cp,
             GAS_CONSTANT / R, one, -one, self.composition, code,
         )  # fmt: skip
+
+
+_LONG = 8
+"""Turns of the iteration after which only what is left is iterated on."""
+_MIDDLE, _FAR_OFF = 7.0, 14.0
+"""ln T in K, and the distance from it at which an iteration leads nowhere."""
+
+
+def _by_entropy(gas: Gas, T: Array, entropy: Array) -> State:
+    return gas._at("ts", (T, entropy), None)
+
+
+def _by_pressure(gas: Gas, T: Array, pressure: Array) -> State:
+    return gas._at("tp", (T, pressure), None)
+
+
+def _energy(state: State, flux: Array) -> Array:
+    energy: Array = state.enthalpy + 0.5 * (flux / state.density) ** 2
+    return energy
+
+
+def _on_line(gas: Gas, targets: tuple[Array, ...], T: Array, fast: Flags) -> Array:
+    """Total enthalpy of the line p + G^2 v = F at T over the one asked for; NaN where the line is not that warm."""
+    F, G, ht, E = targets
+    state = _by_pressure(gas, T, F)
+    for _ in range(2):
+        root = np.sqrt(F**2 - 4.0 * G**2 * state.pressure / state.density)
+        state = _by_pressure(gas, T, F - 0.5 * (F + np.where(fast, root, -root)))
+    return _energy(state, E) - ht
+
+
+BEYOND: dict[str, Callable[[Gas, tuple[Array, ...], Array, Flags], Array]] = {
+    "hp": lambda gas, t, T, fast: _by_pressure(gas, T, t[1]).enthalpy - t[0],
+    "sp": lambda gas, t, T, fast: _by_pressure(gas, T, t[1]).entropy - t[0],
+    "vp": lambda gas, t, T, fast: 1.0 / _by_pressure(gas, T, t[1]).density - t[0],
+    "hs": lambda gas, t, T, fast: _by_entropy(gas, T, t[1]).enthalpy - t[0],
+    "passage": lambda gas, t, T, fast: _energy(_by_pressure(gas, T, t[2]), t[1]) - t[0],
+    "flux": lambda gas, t, T, fast: _energy(_by_entropy(gas, T, t[0]), t[2]) - t[1],
+    "momentum": _on_line,
+}
+"""What the last target lacks at a temperature (N,) K where the others are met: of one sign at both ends of the data where it is met
+nowhere between. At given flux energy falls with the temperature on the supersonic branch."""
 
 
 def strayed(state: State, targets: tuple[Array, ...], start: State) -> Flags:

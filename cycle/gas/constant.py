@@ -40,6 +40,11 @@ class ConstantGas(FixedGas):
         """Inside everywhere."""
         return inside_everywhere(temperature)
 
+    @property
+    def temperatures(self) -> tuple[float, float]:
+        """No data limit it; what asks for less than nothing lies beyond."""
+        return 1e-6, 1e9
+
     def take(self, index: Codes | Flags) -> Self:
         """The gas of the chosen points."""
         return type(self)(self.cp[index], self.gas_constant[index])
