@@ -7,6 +7,9 @@ from dataclasses import dataclass
 from typing import Literal
 
 Kind = Literal["number", "choice", "text", "flag", "fractions", "rows"]
+NEGLIGIBLE = 1e-12
+"""Share of the upper bound of an input that counts as 0 where 0 is no value: figures so far apart lose each other to rounding."""
+
 When = tuple[tuple[str, tuple[str, ...]], ...]
 
 
@@ -53,6 +56,11 @@ class Input:
         """The default beside these choices of a case."""
         fuels = dict(self.by_fuel)
         return fuels.get(choices.get("fuel.name") or "", fuels[""]) if fuels else self.default
+
+    @property
+    def over(self) -> float | None:
+        """What a value must exceed: `above`, of which 0 means more than a negligible part of the upper bound."""
+        return NEGLIGIBLE * self.upper if self.above == 0.0 and self.upper is not None else self.above
 
     @property
     def section(self) -> str:

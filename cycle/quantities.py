@@ -124,7 +124,8 @@ STATUSES: dict[str, str] = {
     "throat-too-large": "the choked throat passes more than the stream: no shock stands ahead of the burner",
     "area-step": "the duct's area at its entry is not that of the stream at station 2",
     "no-altitude": "no altitude of the standard atmosphere gives the dynamic pressure asked for at this speed",
-    "out-of-range": "a state left the range of the data (150 to 6000 K)",
+    "overcooled": "the walls take more heat than the stream has to give",
+    "out-of-range": "a state left the range of the data (150 to 6000 K; at constant gamma above 0 K)",
     "not-converged": "an iteration ended without an answer: a defect of the program, please report it",
 }
 """Closed list of the statuses of a point, with the words for each."""
@@ -150,6 +151,7 @@ RESTORES: dict[str, str] = {
     "throat-too-large": "a smaller throat or more heat",
     "area-step": "area_ratio = 1 in the first row, or the area of the inlet throat",
     "no-altitude": "a dynamic pressure that this speed has between 0 and 86 km",
+    "overcooled": "less wall heat or more fuel",
     "out-of-range": "less heat, less compression or a warmer stream",
     "not-converged": "a slightly different input",
 }

@@ -180,6 +180,18 @@ def moved(rng: Rng, base: Mapping[str, Any]) -> Flat:
     return flat
 
 
+def _gases(rng: Rng, flat: Flat) -> Flat:
+    """Constant-gamma pairs that are gases, the least and the largest exponent among them."""
+    if flat.get("gas.model") != "constant-gamma":
+        return flat
+    constant = flat.setdefault("gas.gas_constant", 287.0)
+    for key in ("gas.cp_compression", "gas.cp_combustion", "gas.cp_expansion"):
+        if key in flat or key == "gas.cp_compression":
+            gamma = pick(rng, (1.02, 5.0 / 3.0, 1.4, rng.uniform(1.02, 5.0 / 3.0), rng.uniform(1.2, 1.4)))
+            flat[key] = min(2e4, constant * gamma / (gamma - 1.0))
+    return flat
+
+
 def full_case(seed: int) -> tuple[cycle.Case, int]:
     """A valid case of this seed, and how many draws the rules refused."""
     rng = np.random.default_rng([seed, 9])
@@ -189,6 +201,7 @@ def full_case(seed: int) -> tuple[cycle.Case, int]:
             flat = from_schema(rng)
         else:
             flat = moved(rng, pick(rng, (random_case, random_flowpath))(int(rng.integers(1 << 30))))
+        flat = _gases(rng, flat)
         try:
             return build({"format": 1, "title": f"full bounds {seed}, invented", **nest(flat)}, "a random case"), tries
         except CaseError:

@@ -8,7 +8,7 @@ from dataclasses import replace
 from typing import TYPE_CHECKING
 
 from cycle.case.case import Case
-from cycle.case.joint import has_lip_circle, lip_circle
+from cycle.case.joint import PAIRS, has_lip_circle, lip_circle, pairs
 from cycle.case.rows import ROW_RULES, view
 from cycle.case.rules import bounds
 from cycle.errors import CaseError, Fault, UnitError, shown
@@ -52,7 +52,24 @@ def check_batch(case: Case, values: Mapping[str, ArrayLike | str]) -> tuple[Case
         arrays["engine.capture_area"] = math.pi * arrays["inlet.lip_y"] ** 2
     _check_rows(file, chosen, arrays)
     _check_lip(file, chosen, arrays)
+    _check_pairs(file, chosen, arrays)
     return chosen, arrays
+
+
+def _check_pairs(file: str, case: Case, arrays: Mapping[str, Array]) -> None:
+    """Hold every element of the constant-gamma pairs to what a gas has; arrays that do not fit each other are not compared."""
+    constant = arrays.get("gas.gas_constant", case.numbers.get("gas.gas_constant"))
+    if constant is None:
+        return
+    for key in PAIRS:
+        if key not in case.numbers or not {key, "gas.gas_constant"}.intersection(arrays):
+            continue
+        try:
+            faults = [replace(fault, file=file) for fault in pairs({key: arrays.get(key, case.numbers[key])}, constant)]
+        except ValueError:
+            continue
+        if faults:
+            raise CaseError(faults)
 
 
 def _check_lip(file: str, case: Case, arrays: Mapping[str, Array]) -> None:
@@ -127,7 +144,7 @@ def _outside(entry: Input, array: Array) -> Flags:
     outside = np.zeros(array.shape, dtype=np.bool_)
     for limit, beyond in (
         (entry.lower, np.less),
-        (entry.above, np.less_equal),
+        (entry.over, np.less_equal),
         (entry.upper, np.greater),
         (entry.below, np.greater_equal),
     ):

@@ -235,9 +235,12 @@ def _out_of_bounds(problem: Problem, key: str) -> Fault:
 
 
 def _given_number(given: object, entry: Input | None) -> str:
-    if entry is None or not isinstance(given, str):
+    if entry is None:
         return shown(given)
-    return f"{shown(given)}, which is {format_number(read(given, entry.unit), 6)} {si_unit(entry.unit)}".rstrip()
+    negligible = ", which counts as 0" if entry.above == 0.0 and 0.0 < read(given, entry.unit) <= (entry.over or 0.0) else ""
+    if not isinstance(given, str):
+        return shown(given) + negligible
+    return f"{shown(given)}, which is {format_number(read(given, entry.unit), 6)} {si_unit(entry.unit)}".rstrip() + negligible
 
 
 def _choice(problem: Problem, key: str) -> Fault:

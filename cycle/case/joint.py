@@ -175,6 +175,36 @@ def _formula(facts: Facts) -> Iterator[Fault]:
         yield Fault("", "fuel.formula", str(error))
 
 
+LEAST_EXPONENT, LARGEST_EXPONENT = 1.02, 5.0 / 3.0
+"""Ratio of specific heats of a constant-gamma pair: that of large vapour molecules, rounded down (common practice), and of atoms
+(kinetic theory)."""
+PAIRS = ("gas.cp_compression", "gas.cp_combustion", "gas.cp_expansion")
+
+
+def pairs(values: Mapping[str, Any], constant: Any) -> Iterator[Fault]:
+    """The faults of constant-gamma pairs that are no gas: gamma = cp/(cp - R) out of bounds.
+
+    Parameters: values, key of a specific heat -> J/(kg K); constant, R; numbers or arrays.
+    """
+    lowest, highest = (g / (g - 1.0) for g in (LARGEST_EXPONENT, LEAST_EXPONENT))
+    for key, cp in values.items():
+        share = cp / constant
+        wrong = (share < lowest * (1.0 - 1e-9)) | (share > highest * (1.0 + 1e-9))
+        if not (wrong.any() if hasattr(wrong, "any") else wrong):
+            continue
+        given = "some points" if hasattr(wrong, "any") else f"cp = {cp:.6g} with R = {constant:.6g} J/(kg K)"
+        allowed = f"cp from {lowest:.4g} R to {highest:.4g} R: gamma from {LEAST_EXPONENT:.4g} to {LARGEST_EXPONENT:.4g}"
+        yield Fault("", key, "no gas has this ratio of specific heats", given, allowed)
+
+
+def _pairs(facts: Facts) -> Iterator[Fault]:
+    if facts.choices.get("gas.model") == "constant-gamma":
+        constant = facts.number("gas.gas_constant")
+        stated = {key: facts.number(key) for key in PAIRS if key in facts.values or key == PAIRS[0]}
+        if constant is not None:
+            yield from pairs({key: cp for key, cp in stated.items() if cp is not None}, constant)
+
+
 def corridor(facts: Facts) -> Iterator[Fault]:
     """The lowest and the highest dynamic pressure of the corridor. Parameters: facts."""
     low, high = facts.number("limits.dynamic_pressure_low"), facts.number("limits.dynamic_pressure_high")
@@ -195,7 +225,7 @@ def _in_flight(facts: Facts) -> Iterator[Fault]:
 
 
 JOINT_RULES = (
-    _fractions, _throat, _given_throat, _freezing, _mode, _lip, _cone_lip, _isolator, _rows, _perimeter, _fuel, _formula, corridor,
-    _in_flight,
+    _fractions, _throat, _given_throat, _freezing, _mode, _lip, _cone_lip, _isolator, _rows, _perimeter, _fuel, _formula, _pairs,
+    corridor, _in_flight,
 )  # fmt: skip
 """Rules that join several values; each takes Facts and yields faults."""

@@ -308,7 +308,7 @@ def outside(entry: Input, value: float) -> bool:
     """Whether a number lies beyond the bounds of its input, or is none where only whole ones are."""
     beyond = (
         entry.lower is not None and value < entry.lower,
-        entry.above is not None and value <= entry.above,
+        entry.over is not None and value <= entry.over,
         entry.upper is not None and value > entry.upper,
         entry.below is not None and value >= entry.below,
         entry.whole and not value.is_integer(),

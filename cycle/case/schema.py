@@ -62,7 +62,7 @@ def _reader(dimension: str) -> Any:
 
 
 def _number(entry: Input) -> Any:
-    field = Field(gt=entry.above, ge=entry.lower, lt=entry.below, le=entry.upper, multiple_of=1.0 if entry.whole else None)
+    field = Field(gt=entry.over, ge=entry.lower, lt=entry.below, le=entry.upper, multiple_of=1.0 if entry.whole else None)
     return Annotated[float, field, _reader(entry.unit), _Quantity(entry.unit)]
 
 

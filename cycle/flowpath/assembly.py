@@ -227,6 +227,7 @@ def duct(stream: Stream, setting: Setting) -> Steps:
     usable = np.where(lacking, 0.0, ratio)
     found = flow_of(stream, setting, usable, setting.size <= _FEW)
     status = np.where(lacking, STATUS_CODE["no-fuel"], named_status(found.status, DUCT_STATUSES, {}))
+    status = combustor.overcooled(status, stream, setting, usable)
     status = np.where(_steps_at_entry(setting, stream.area), STATUS_CODE["area-step"], status)
     ahead = np.isin(status, [SOLVED, STATUS_CODE["choked"], STATUS_CODE["no-fuel"]]) & found.entry.state.good
     mode = {f"mode_{name}": (found.mode == i).astype(float) for i, name in enumerate(DUCT_MODES)}

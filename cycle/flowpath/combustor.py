@@ -210,7 +210,8 @@ def _pressure_loss(entering: Stream, setting: Setting, mixed: Mixed) -> Burnt:
     total = mixed.gas.at("hp", mixed.total_enthalpy, p)
     critical = states.sonic(mixed.gas, mixed.total_enthalpy, total.entropy, total)
     state, passes = _EXIT[setting.choices["combustor.exit"]](entering, setting, mixed, critical, total.entropy)
-    status = status_of(state, (total.range == 2, "out-of-range"), (~passes, "choked"))
+    state = state.after(before, total, critical)
+    status = status_of(state, (~passes & critical.good, "choked"))
     return state, states.velocity(mixed.total_enthalpy, state), status, {}, mixed.booking
 
 
@@ -228,7 +229,13 @@ def _with_ratio(entering: Stream, setting: Setting, ratio: Array) -> Step:
         state, u, status, figures, booking = _PROCESS[name](entering, setting, mixed)
     figures = {**figures, "fuel_air_ratio": ratio}
     process = Process("burner", "3", "4", figures, booking, solves_momentum=name != "pressure-loss")
-    return Step(stream(mixed.gas, state, u, mixed.mass_flow), process, status)
+    return Step(stream(mixed.gas, state, u, mixed.mass_flow), process, overcooled(status, entering, setting, ratio))
+
+
+def overcooled(status: Codes, entering: Stream, setting: Setting, ratio: Array) -> Codes:
+    """The status codes (N,) of a burner with `ratio` of fuel, where its walls take more than the fuel's heat and the data end: so named."""
+    more = setting.get("combustor.wall_heat", 0.0) > ratio * entering.mass_flow * setting.heating_value
+    return np.where((status == STATUS_CODE["out-of-range"]) & more, STATUS_CODE["overcooled"], status)
 
 
 def _total_temperature(step: Step) -> Array:

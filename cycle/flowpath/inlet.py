@@ -20,39 +20,40 @@ Ended = tuple[State, Flags]
 """State at 2 and whether the end of compression can be reached on the isentrope."""
 
 
-def _kinetic_energy(flight: Stream, setting: Setting) -> Array:
+def _kinetic_energy(flight: Stream, setting: Setting) -> State:
     """h(s2, p0) = ht - eta u0^2/2. Heiser and Pratt (1994), ch. 5 (from memory)."""
     h = flight.total_enthalpy - setting["inlet.kinetic_energy_efficiency"] * 0.5 * flight.velocity**2
-    return flight.gas.at("hp", h, flight.state.pressure).entropy
+    return flight.gas.at("hp", h, flight.state.pressure)
 
 
-def _from_recovery(flight: Stream, recovery: Array) -> Array:
+def _from_recovery(flight: Stream, recovery: Array) -> State:
     total = states.rest(flight.gas, flight.total_enthalpy, flight.state.entropy)
-    return flight.gas.at("hp", flight.total_enthalpy, total.pressure * recovery).entropy
+    return flight.gas.at("hp", flight.total_enthalpy, total.pressure * recovery).after(total)
 
 
-def _recovery(flight: Stream, setting: Setting) -> Array:
+def _recovery(flight: Stream, setting: Setting) -> State:
     return _from_recovery(flight, setting["inlet.total_pressure_recovery"])
 
 
-def _military(flight: Stream, setting: Setting) -> Array:
+def _military(flight: Stream, setting: Setting) -> State:
     """MIL-E-5008B, from the flight Mach number."""
     return _from_recovery(flight, limits.ram_recovery(flight.mach))
 
 
-def _diffuser(flight: Stream, setting: Setting) -> Array:
+def _diffuser(flight: Stream, setting: Setting) -> State:
     """h(pt2, s0) = h0 + eta (ht - h0). Hill and Peterson (from memory)."""
     h = flight.state.enthalpy + setting["inlet.diffuser_efficiency"] * 0.5 * flight.velocity**2
     reached = states.rest(flight.gas, h, flight.state.entropy)
-    return flight.gas.at("hp", flight.total_enthalpy, reached.pressure).entropy
+    return flight.gas.at("hp", flight.total_enthalpy, reached.pressure).after(reached)
 
 
-_ENTROPY: dict[str, Callable[[Stream, Setting], Array]] = {
+_OF_ENTROPY: dict[str, Callable[[Stream, Setting], State]] = {
     "kinetic_energy_efficiency": _kinetic_energy,
     "total_pressure_recovery": _recovery,
     "military_recovery": _military,
     "diffuser_efficiency": _diffuser,
 }
+"""Quality -> a state that has the entropy of station 2."""
 
 
 def _always(state: State) -> Flags:
@@ -72,14 +73,15 @@ def _to_temperature(flight: Stream, setting: Setting, entropy: Array) -> Ended:
 def _to_mach(flight: Stream, setting: Setting, entropy: Array) -> Ended:
     at_rest = states.rest(flight.gas, flight.total_enthalpy, entropy)
     state = states.at_mach(flight.gas, flight.total_enthalpy, entropy, setting["inlet.exit_mach"], at_rest)
-    return state, _always(state)
+    return state.after(at_rest), _always(state)
 
 
 def _to_contraction(flight: Stream, setting: Setting, entropy: Array) -> Ended:
     at_rest = states.rest(flight.gas, flight.total_enthalpy, entropy)
     critical = states.sonic(flight.gas, flight.total_enthalpy, entropy, at_rest)
     flux = flight.flux * setting["inlet.contraction_ratio"]
-    return states.at_flux(flight.gas, flight.total_enthalpy, entropy, flux, _always(critical), critical)
+    state, reached = states.at_flux(flight.gas, flight.total_enthalpy, entropy, flux, _always(critical), critical)
+    return state.after(at_rest, critical), reached | ~critical.good
 
 
 End = Callable[[Stream, Setting, Array], Ended]
@@ -143,7 +145,7 @@ def _settled(flight: Stream, miss: Callable[[Array], Missed]) -> Ended:
                 break
             before, at = np.where(done, before, value), np.where(done, at, entropy)
             entropy = np.where(done, entropy, entropy + np.clip(step, -span, span))
-    return state, reached & done
+    return state, reached & (done | ~state.good)
 
 
 _TIED: dict[str, Callable[[Stream, Setting, End], Ended]] = {"adiabatic_efficiency": _adiabatic, "viscous_correlation": _viscous}
@@ -161,7 +163,9 @@ def inlet(flight: Stream, setting: Setting) -> Step:
         if quality in _TIED:
             state, reached = _TIED[quality](flight, setting, end)
         else:
-            state, reached = end(flight, setting, _ENTROPY[quality](flight, setting))
+            like = _OF_ENTROPY[quality](flight, setting)
+            state, reached = end(flight, setting, like.entropy)
+            state, reached = state.after(like), reached | ~like.good
         u = states.velocity(flight.total_enthalpy, state)
         lost = state.enthalpy >= flight.total_enthalpy
         weak = state.pressure < flight.state.pressure * (1.0 - 1e-9)

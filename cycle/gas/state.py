@@ -60,6 +60,13 @@ class State:
         """The same state with `code` wherever `bad` holds and it was usable so far."""
         return replace(self, range=np.where(bad & (self.range <= EXTRAPOLATED), code, self.range))
 
+    def after(self, *earlier: State) -> State:
+        """The same state, with the range code of the first of the states that it follows from which may not be used."""
+        code = self.range
+        for state in reversed(earlier):
+            code = np.where(state.good, code, state.range)
+        return replace(self, range=code)
+
 
 _FIELDS = attrgetter(*(f.name for f in fields(State)))
 
