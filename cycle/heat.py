@@ -3,8 +3,6 @@
 from __future__ import annotations
 
 from collections.abc import Mapping
-from dataclasses import replace
-
 import numpy as np
 
 from cycle import limits
@@ -87,32 +85,39 @@ def words(walked: March, ends: Mapping[str, float], causes: Mapping[str, str]) -
 
 
 _SCAN = 25
+_JUST = 1e-7
+"""How far below the choking ratio the exit total temperature is read, over it."""
 
 
 def largest_before_choking(walked: March) -> float:
     """Largest heat input of one point before the burner chokes.
 
     walked: a march of one point that reached the burner. NaN where nothing chokes below the end of the search. The
-    room left before choking is scanned over the input in one batch; its first change of sign is then a root.
+    room left before choking is scanned over the fuel ratio in one batch; its first change of sign is then a root. An exit
+    total temperature is that of the root.
     """
-    entry = walked.stations()["3"]
-    before = combustor.burner_gas(entry.stream, walked.setting)
-    key = limits.heat_key(walked.setting)
-    bound = INPUT[key].upper
+    entry, key = walked.stations()["3"], limits.heat_key(walked.setting)
+    before, bound = combustor.burner_gas(entry.stream, walked.setting), INPUT[key].upper
     assert bound is not None
-    ceiling = min(bound, _SEARCH[key])
-    # below the entering total temperature there is no heat to add
-    floor = ceiling / 4.0 if walked.setting.choices["combustor.heat"] == "exit_total_temperature" else 0.0
+    unit = _unit(walked.setting)
+    hot = unit is None
+    ceiling = _SEARCH["combustor.fuel_air_ratio"] if unit is None else min(bound, _SEARCH[key]) * float(unit[0])
+
+    def many(values: Array) -> tuple[Stream, Setting]:
+        points = np.zeros(values.size, np.int64)
+        return before.take(points), walked.setting.take(points)
 
     def room(values: Array) -> Array:
-        points = np.zeros(values.size, np.int64)
-        many = walked.setting.take(points)
-        return combustor.choking_room(before.take(points), replace(many, numbers={**many.numbers, key: values}))
+        return combustor.choking_room(*many(values), values)
 
-    tried = np.linspace(floor, ceiling, _SCAN)
+    tried = np.linspace(0.0, ceiling, _SCAN)
     left = room(tried)
     choked = np.flatnonzero(left < 0.0)
     if not choked.size or choked[0] == 0 or not left[choked[0] - 1] >= 0.0:
         return np.nan
     low, high = tried[choked[0] - 1], tried[choked[0]]
-    return float(roots.bracketed(room, np.array([low]), np.array([high]), 1e-9)[0])
+    root = roots.bracketed(room, np.array([low]), np.array([high]), 1e-9)
+    if not hot:
+        return float((root / unit)[0])
+    most = float(combustor.exit_total_temperature(*many(root), root * (1.0 - _JUST))[0])
+    return most if most <= _SEARCH[key] else np.nan

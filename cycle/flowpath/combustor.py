@@ -390,14 +390,17 @@ _ROOM: dict[str, Callable[[Stream, Mixed, Setting], Array]] = {
 }
 
 
-def choking_room(entering: Stream, setting: Setting) -> Array:
-    """How far the heat asked for is from choking the burner, (N,): positive passes, negative chokes, NaN unknown.
+def choking_room(entering: Stream, setting: Setting, ratio: Array) -> Array:
+    """How far the burner is from choking with `ratio` of fuel, (N,): positive passes, negative chokes, NaN unknown.
 
     At constant area the total enthalpy left to the sonic point over a*^2; with a stated loss the critical over the
     actual mass flux, less 1.
     """
     with np.errstate(all="ignore"):
-        ratio = _HEAT[setting.choices["combustor.heat"]](entering, setting)
-        mixed = mix(entering, setting, np.where(np.isfinite(ratio), ratio, 0.0))
-        room = _ROOM[setting.choices["combustor.process"]](entering, mixed, setting)
-    return np.where(np.isfinite(ratio), room, np.nan)
+        return _ROOM[setting.choices["combustor.process"]](entering, mix(entering, setting, ratio), setting)
+
+
+def exit_total_temperature(entering: Stream, setting: Setting, ratio: Array) -> Array:
+    """Total temperature (N,) K behind the burner with `ratio` of fuel; NaN without a state."""
+    step = _with_ratio(entering, setting, ratio)
+    return np.where(step.status == SOLVED, _total_temperature(step), np.nan)

@@ -7,6 +7,7 @@ isentrope. The adiabatic efficiency and the viscous correlation tie both and are
 from __future__ import annotations
 
 from collections.abc import Callable
+from dataclasses import replace
 
 import numpy as np
 
@@ -131,7 +132,8 @@ def _viscous(flight: Stream, setting: Setting, end: End) -> Ended:
 def _settled(flight: Stream, miss: Callable[[Array], Missed]) -> Ended:
     """End of the compression where nothing lacks: secant in the entropy."""
     at = flight.state.entropy
-    before, state, reached, _ = miss(at)
+    before, first, _, _ = miss(at)
+    state, reached = first, np.ones(at.shape, np.bool_)
     done = np.zeros(at.shape, np.bool_)
     with np.errstate(all="ignore"):
         entropy = at - before / flight.state.temperature
@@ -145,6 +147,8 @@ def _settled(flight: Stream, miss: Callable[[Array], Missed]) -> Ended:
                 break
             before, at = np.where(done, before, value), np.where(done, at, entropy)
             entropy = np.where(done, entropy, entropy + np.clip(step, -span, span))
+    # where the first state lies beyond the data, what follows from it says nothing
+    state = replace(state, range=np.where(state.good | first.good, state.range, first.range))
     return state, reached & (done | ~state.good)
 
 
