@@ -189,8 +189,9 @@ def enters_at_3(setting: Setting) -> bool:
     return setting.choices["start"] == "entry" and setting.choices["entry.station"] == "3"
 
 
-def flow_of(ahead: Stream, setting: Setting, ratio: Array, total_pressures: bool = False) -> Flow:
-    """The duct at the fuel-air ratio `ratio` (N,); ahead: station 2, at constant gamma with the pair of the compression."""
+def flow_of(ahead: Stream, setting: Setting, ratio: Array, total_pressures: bool = False, most: Codes | None = None) -> Flow:
+    """The duct at the fuel-air ratio `ratio` (N,); ahead: station 2, at constant gamma with the pair of the compression; most: see
+    `solve_duct`."""
     entering = combustor.burner_gas(ahead, setting)
     return solve_duct(
         entering,
@@ -205,15 +206,19 @@ def flow_of(ahead: Stream, setting: Setting, ratio: Array, total_pressures: bool
         asked=setting.choices["engine.mode"],
         panels=_panels(setting),
         total_pressures=total_pressures,
+        most=most,
     )
 
 
 def heat_limits(stream: Stream, setting: Setting, upper: Array) -> dict[str, duct_limits.End]:
     """The fuel-air ratios at which the modes of N ducts end, up to `upper`, (N,); stream: station 2."""
-    return duct_limits.heat_limits(
-        lambda points, ratio: flow_of(stream.take(points), setting.take(points), ratio), _heat(stream, setting), upper,
-        cooled=setting.has("combustor.wall_temperature"),
-    )  # fmt: skip
+    pair = setting.constant_gamma and not np.array_equal(combustor.combustion_cp(setting), setting["gas.cp_compression"])
+    coupled = pair or setting.has("combustor.wall_temperature")
+
+    def at(points: Codes, ratio: Array, most: Codes) -> Flow:
+        return flow_of(stream.take(points), setting.take(points), ratio, most=None if coupled else most)
+
+    return duct_limits.heat_limits(at, _heat(stream, setting), upper, coupled)
 
 
 def _panels(setting: Setting) -> int:

@@ -63,7 +63,8 @@ class Flow:
     unstarted. entry, exit: streams at 3 and 4; where the status is not solved
     they mean nothing. isolator, burner: what crosses the control surfaces 2-3 and 3-4. figures: each (N,), NaN where it
     has no meaning: see `FIGURES`. tried: codes (N,) of `TRIED` of "attached", "train", "throat". throat: codes (N,), keys
-    of `THROATS`. rows: the flow along x by name (R, N), `PROFILE` and "total_pressure" if asked for; rows before the
+    of `THROATS`. spare: momentum of the core beyond that of the critical flow over the impulse of station 2, (N,), NaN where no train was
+    looked for: a train ends where it vanishes. rows: the flow along x by name (R, N), `PROFILE` and "total_pressure" if asked for; rows before the
     first are NaN.
     """
 
@@ -76,6 +77,7 @@ class Flow:
     figures: Mapping[str, Array]
     tried: Mapping[str, Codes]
     throat: Codes
+    spare: Array
     rows: Mapping[str, Array]
 
     def names(self) -> list[str]:
@@ -120,6 +122,7 @@ def solve_duct(
     panels: int = PANELS,
     second: bool = False,
     total_pressures: bool = False,
+    most: Codes | None = None,
 ) -> Flow:
     """Run N ducts from station 2, whose stream holds the burner's gas already.
 
@@ -128,7 +131,7 @@ def solve_duct(
     isolator: None leaves the train's length unknown; isolated: False where the stream enters at 3, so that any shock train is too long;
     asked: "auto", "supersonic" or "thermal-throat"; panels: of a march,
     four nodes each; second: look for a shock train where the attached flow stands, too ("train" in `tried` says);
-    total_pressures: also along the duct. A stream that is not supersonic is refused. ValueError as `duct_of`; a point
+    total_pressures: also along the duct; most: the last mode that is asked for, see `coupling.solve_block`. A stream that is not supersonic is refused. ValueError as `duct_of`; a point
     without a flow has its status, never an exception.
     """
     ahead = entering if ahead is None else ahead
@@ -141,7 +144,7 @@ def solve_duct(
     limit = limits.separation_pressure_ratio(ahead.mach) if separation is None else np.broadcast_to(separation, (duct.size,))
     threshold = limit if asked == "auto" else np.full(duct.size, np.inf)
     blocks = [np.arange(low, min(low + BLOCK, duct.size)) for low in range(0, max(duct.size, 1), BLOCK)]
-    parts = [solve_block(duct.take(w), threshold[w], asked, panels, second) for w in blocks]
+    parts = [solve_block(duct.take(w), threshold[w], asked, panels, second, None if most is None else most[w]) for w in blocks]
     found = side_by_side(parts)
     refuse(found, ~(ahead.mach > 1.0))
     if duct.entry_heat is not None:
@@ -188,7 +191,7 @@ def _flow(entering: Stream, duct: Duct, found: Solution, limit: Array, train: Ma
     isolated = Booking(zero, zero, zero, zero, zero, zero, -beside)
     return Flow(
         found.mode, np.where(short, UNSTARTED, found.status), core, behind, isolated, burner, figures, tried,
-        found.throat_kind, rows,
+        found.throat_kind, found.spare, rows,
     )  # fmt: skip
 
 

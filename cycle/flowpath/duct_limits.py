@@ -18,6 +18,7 @@ from cycle.flowpath.duct import Flow
 
 ENDS: dict[str, int] = {"attached": ATTACHED, "train": TRAIN, "unstart": THROAT}
 """Each limit, and the last mode that stands before it."""
+_LASTS = np.array(list(ENDS.values()))
 
 CAUSES = ("", "separation", "choking", "impulse", "isolator-length", *STATUSES)
 """What sets a limit, by code: separation or choking of the attached flow, choking of the stream behind the shock train, impulse or
@@ -26,16 +27,18 @@ isolator length at unstart; or the status of the points beyond."""
 _SCANNED = 25
 _BUNCHED = 1.5
 """Exponent of the scan's ratios over the even ones: denser at little heat."""
-_SETTLED, _SETTLED_COOLED = 3e-9, 1e-6
-"""Width of the last bracket, over the ratio; where heat to a wall of stated temperature is found at every ratio."""
+_SETTLED, _SETTLED_COUPLED = 3e-9, 1e-6
+"""Width of the last bracket, over the ratio; where the flow and what it is given are found in turn at every ratio."""
 _TURNS = 40
-_PROBES = 48
-"""Ducts of a turn below which more of them cost little: the brackets share them."""
+_STRAIGHT = 1e-5
+"""Width of a bracket over the ratio, below which its margin is straight."""
+_AIMED, _SPREAD = 6, 16
+"""Ratios of a turn that are looked at in a bracket whose margin is known at both ends, and in another one."""
 _NEAREST = 1e-6
 """How near the nearest probes stand to the zero of a straight line, over the bracket."""
 
-At = Callable[[Codes, Array], Flow]
-"""The ducts of the points (K,) at fuel ratios (K,)."""
+At = Callable[[Codes, Array, Codes], Flow]
+"""The ducts of the points (K,) at fuel ratios (K,), with the last mode that is asked for, codes (K,)."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -48,8 +51,8 @@ class End:
 
 
 _MARGINS = ("separation_margin", "unstart_margin", "isolator_margin")
-_WHICH = np.array([{"separation": 0, "impulse": 1, "isolator-length": 2}.get(cause, -1) for cause in CAUSES])
-"""By cause, which of them tells how far a point is from it; -1: none."""
+_WHICH = np.array([{"separation": 0, "impulse": 1, "isolator-length": 2, "choking": 3, "no-mode": 3}.get(cause, -1) for cause in CAUSES])
+"""By cause, which of them, or `Flow.spare`, tells how far a point is from it; -1: none."""
 
 
 @dataclass(frozen=True, eq=False)
@@ -65,6 +68,17 @@ class _Seen:
         """Of chosen ducts: (ends, K)."""
         return _Seen(self.stands[:, row, point], self.cause[:, row, point], self.margins[:, row, point])
 
+    def placed(self, row: Codes, column: Codes, shape: tuple[int, ...]) -> _Seen:
+        """These ducts (ends, K) at their places of a table; not known elsewhere."""
+        whole = _Seen(
+            np.full((len(self.stands), *shape), np.nan),
+            np.zeros((len(self.cause), *shape), np.int64),
+            np.full((len(self.margins), *shape), np.nan),
+        )
+        for table, values in ((whole.stands, self.stands), (whole.cause, self.cause), (whole.margins, self.margins)):
+            table[:, row, column] = values
+        return whole
+
     def shaped(self, *shape: int) -> _Seen:
         """The ducts in rows."""
         return _Seen(self.stands.reshape(-1, *shape), self.cause.reshape(-1, *shape), self.margins.reshape(-1, *shape))
@@ -74,7 +88,7 @@ def _seen(flow: Flow) -> _Seen:
     mode = np.where(flow.status == SOLVED, flow.mode, NONE)
     unknown = (flow.status == LOST) | (flow.tried["attached"] == UNSETTLED)
     stands = np.array([np.where(unknown, np.nan, (mode != NONE) & (mode <= last)) for last in ENDS.values()])
-    margins = np.array([flow.figures[name] for name in _MARGINS])
+    margins = np.array([*(flow.figures[name] for name in _MARGINS), flow.spare])
     unstarted = np.where(margins[2] < 0.0, CAUSES.index("isolator-length"), CAUSES.index("impulse"))
     ended = np.where(flow.status == STATUSES.index("unstarted"), unstarted, CAUSES.index("solved") + flow.status)
     choking = np.full(mode.shape, CAUSES.index("choking"))
@@ -82,27 +96,27 @@ def _seen(flow: Flow) -> _Seen:
     return _Seen(stands, np.array([attached, np.where(mode == NONE, ended, choking), ended]), margins)
 
 
-def heat_limits(at: At, now: Array, upper: Array, cooled: bool = False) -> dict[str, End]:
+def heat_limits(at: At, now: Array, upper: Array, coupled: bool = False) -> dict[str, End]:
     """The end of each mode nearest to the fuel ratio of each point; see `ENDS` and `End`.
 
     at: the ducts of some points at some ratios; now: the ratio of each point, (N,), NaN unknown; upper: end of the search,
-    (N,); cooled: whether the ducts lose heat to a wall of stated temperature, which makes them dear.
+    (N,); coupled: whether what a duct is given depends on its mode, which makes it dear.
     """
     n = now.size
     even = upper * ((np.arange(_SCANNED) / (_SCANNED - 1.0)) ** _BUNCHED)[:, None]
     ratio = np.sort(np.vstack([even, np.clip(np.nan_to_num(now), 0.0, upper)]), axis=0)
     rows = len(ratio)
-    scan = _seen(at(np.tile(np.arange(n), rows), ratio.ravel())).shaped(rows, n)
+    scan = _seen(at(np.tile(np.arange(n), rows), ratio.ravel(), np.full(ratio.size, THROAT))).shaped(rows, n)
     here = (ratio < now).sum(0)
     lows, highs, limits = (np.array(rows) for rows in zip(*(_bracket(stands, here) for stands in scan.stands), strict=True))
     limits[:, np.isnan(now)] = np.nan
     e, point = np.nonzero((lows >= 0) & ~np.isnan(now))
     low, high = lows[e, point], highs[e, point]
-    narrow = _SETTLED_COOLED if cooled else _SETTLED
+    narrow = _SETTLED_COUPLED if coupled else _SETTLED
     search = _Search(narrow, e, point, ratio[low, point], ratio[high, point], scan.at(low, point), scan.at(high, point))
     search.close(at)
     causes = np.zeros(limits.shape, np.int64)
-    limits[e, point], causes[e, point] = search.low, search.cause
+    limits[e, point], causes[e, point] = search.ends(), search.cause
     return {name: End(limits[i], causes[i]) for i, name in enumerate(ENDS)}
 
 
@@ -135,33 +149,53 @@ class _Search:
 
     @property
     def open(self) -> Codes:
-        """Which are not narrow yet."""
-        return np.flatnonzero(self.high - self.low > self.narrow * self.high)
+        """Which are not narrow yet; a straight line through margins that are known at both ends is as good as a hundredth of the bracket
+        or better once that is short."""
+        width = (self.high - self.low) / self.high
+        return np.flatnonzero(width > np.where(np.isfinite(self._zero()), np.minimum(_STRAIGHT, 1e2 * self.narrow), self.narrow))
+
+    def _zero(self) -> Array:
+        """Where a margin that is known at both ends vanishes on a straight line, part of the bracket (K,); NaN where none is known."""
+        which = _WHICH[self.cause]
+        a, b = self.margins[:, which, np.arange(which.size)]
+        known = (which >= 0) & (a > 0.0) & (b < 0.0)
+        return np.where(known, a / np.where(known, a - b, 1.0), np.nan)
+
+    def ends(self) -> Array:
+        """The ends of the modes, (K,)."""
+        return self.low + (self.high - self.low) * np.nan_to_num(self._zero())
 
     def close(self, at: At) -> None:
-        """Narrow all brackets, a batch of ducts a turn."""
+        """Narrow all brackets, a batch of ducts a turn; what sets an end of which only the modes before were asked for is asked last."""
         for _ in range(_TURNS):
             w = self.open
             if not w.size:
-                return
-            tried = self._probes(w, max(3, _PROBES // w.size))
-            points = np.repeat(self.point[w], tried.shape[1])
-            self._learn(w, tried, _seen(at(points, tried.ravel())).shaped(*tried.shape))
+                break
+            tried = self._probes(w)
+            self._learn(w, tried, self._look(at, w, tried, _LASTS[self.end[w]]))
+        w = np.flatnonzero(self.cause == CAUSES.index("no-mode"))
+        if w.size:
+            seen = self._look(at, w, self.high[w, None], np.full(w.size, THROAT))
+            self.cause[w] = seen.cause[self.end[w], np.arange(w.size), 0]
 
-    def _probes(self, w: Codes, count: int) -> Array:
-        """Ratios to look at (len(w), count), rising: even ones, or dense about the zero of a margin that is known at both ends, and the
-        middle, so that a bent margin cannot hold the search up."""
+    def _look(self, at: At, w: Codes, tried: Array, most: Codes) -> _Seen:
+        """The ducts of the brackets `w` at ratios (len(w), C), NaN where none is looked at, up to the modes `most`."""
+        row, column = np.nonzero(np.isfinite(tried))
+        return _seen(at(self.point[w[row]], tried[row, column], most[row])).placed(row, column, tried.shape)
+
+    def _probes(self, w: Codes) -> Array:
+        """Ratios to look at (len(w), C), rising, NaN behind the last: even ones, or dense about the zero of a margin that is known at both
+        ends, and the middle, so that a bent margin cannot hold the search up."""
         low, high = self.low[w, None], self.high[w, None]
-        even = np.arange(1.0, count + 1.0) / (count + 1.0)
-        which = _WHICH[self.cause[w]]
-        a, b = self.margins[:, which, w]
-        known = (which >= 0) & (a > 0.0) & (b < 0.0)
-        zero = np.where(known, a / np.where(known, a - b, 1.0), 0.5)[:, None]
-        span = np.linspace(-1.0, 1.0, count + 1)[1:-1] * count / (count - 1.0)
+        part = self._zero()[w]
+        known, zero = np.isfinite(part), np.where(np.isfinite(part), part, 0.5)[:, None]
+        span = np.linspace(-1.0, 1.0, _AIMED + 1)[1:-1] * _AIMED / (_AIMED - 1.0)
         side = _NEAREST ** (1.0 - np.abs(span)) * np.sign(span)
         about = zero + side * np.where(side < 0.0, zero, 1.0 - zero) * (1.0 - 1e-3)
-        about = np.sort(np.hstack([about, np.full((w.size, 1), 0.5)]), axis=1)
-        return low + (high - low) * np.where(known[:, None], about, even)
+        tried = np.tile(np.arange(1.0, _SPREAD + 1.0) / (_SPREAD + 1.0), (w.size, 1))
+        tried[known] = np.nan
+        tried[known, :_AIMED] = np.sort(np.hstack([about, np.full((w.size, 1), 0.5)]), axis=1)[known]
+        return low + (high - low) * tried
 
     def _learn(self, w: Codes, tried: Array, seen: _Seen) -> None:
         own = np.arange(w.size)

@@ -149,9 +149,7 @@ class FixedGas(Gas):
             ln_T, ln_p, done = self._iterate(kind, np.log(T), np.log(p), targets)
             return self._state(np.where(done, np.exp(ln_T), np.nan), np.exp(ln_p), done)
 
-    def _iterate(
-        self, kind: str, ln_T: Array, ln_p: Array, targets: tuple[Array, ...], turns: int = 60
-    ) -> tuple[Array, Array, Flags]:
+    def _iterate(self, kind: str, ln_T: Array, ln_p: Array, targets: tuple[Array, ...], turns: int = 60) -> tuple[Array, Array, Flags]:
         closure, R = CLOSURES[kind], self.gas_constant
         done = np.full(ln_T.shape, closure.fixes_T and closure.fixes_p)
         over = done.copy()

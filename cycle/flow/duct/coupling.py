@@ -12,16 +12,19 @@ from cycle.flow.duct.cooling import first_loss
 from cycle.flow.duct.core import behind_handover
 from cycle.flow.duct.layout import Cooling, Duct
 from cycle.flow.duct.modes import PANELS, solve_once
-from cycle.flow.duct.solution import ATTACHED, LOST, MODES, NONE, TRAIN, Solution, merge
+from cycle.flow.duct.solution import ATTACHED, LOST, MODES, NONE, THROAT, TRAIN, Solution, merge
 
 
-def solve_block(duct: Duct, separation: Array, asked: str = "auto", panels: int = PANELS, second: bool = False) -> Solution:
+def solve_block(
+    duct: Duct, separation: Array, asked: str = "auto", panels: int = PANELS, second: bool = False, most: Codes | None = None
+) -> Solution:
     """How N ducts run. separation: pressure ratio over p2 that separates (N,); asked: a key of `ASKED`; panels of a march;
-    second: whether to look for a shock train where the attached flow stands."""
+    second: whether to look for a shock train where the attached flow stands; most: the last mode that is asked for, code (N,), of ducts
+    without a coupling: what a mode is coupled to depends on those behind it."""
     with np.errstate(all="ignore"):
         if np.isfinite(duct.wall_temperature).any():
             return _cooled(first_loss(duct), separation, asked, panels, second)
-        return _solved(duct, separation, asked, panels, second, np.full(duct.size, NONE))
+        return _solved(duct, separation, asked, panels, second, np.full(duct.size, NONE), most)
 
 
 def _cooled(duct: Duct, separation: Array, asked: str, panels: int, second: bool) -> Solution:
@@ -90,13 +93,14 @@ _COOLED = 1e-9
 """Change of the heat lost, over m u2^2, at which it stands still."""
 
 
-def _solved(duct: Duct, separation: Array, asked: str, panels: int, second: bool, least: Codes) -> Solution:
+def _solved(duct: Duct, separation: Array, asked: str, panels: int, second: bool, least: Codes, most: Codes | None = None) -> Solution:
     """The flow; where the constant-gamma pair changes at burner entry, with the enthalpy that it has behind the hand-over.
 
     T is kept there, and depends on p3: what is not attached is solved again until it stands still. A point without a solution is judged
     with the subsonic stream that its impulse allows.
     """
-    whole = solve_once(duct, separation, asked, panels, second, least)
+    last = np.full(duct.size, THROAT)
+    whole = solve_once(duct, separation, asked, panels, second, least, last if most is None or duct.entry_heat is not None else most)
     if duct.entry_heat is None:
         return whole
     live = np.flatnonzero(whole.mode != ATTACHED)
@@ -110,7 +114,7 @@ def _solved(duct: Duct, separation: Array, asked: str, panels: int, second: bool
         if not live.size:
             break
         part = replace(part.take(going), total_enthalpy=ht[going])
-        merge(whole, live, solve_once(part, separation[live], asked, panels, second, np.maximum(least[live], TRAIN)))
+        merge(whole, live, solve_once(part, separation[live], asked, panels, second, np.maximum(least[live], TRAIN), last[live]))
     whole.status[live], whole.mode[live] = LOST, NONE
     whole.attached[:], whole.attached_peak[:] = tried, peak
     return whole

@@ -63,6 +63,9 @@ PANELS = 12
 _SURE = 0.02
 """Momentum lacking at the throat, over the impulse, above which no shock train needs to be looked for."""
 
+_JUDGED = 1e-6
+"""Momentum over the impulse to which what lacks is known there: it also tells the search for the largest heat where to look."""
+
 _SUBSONIC = 0.999
 """Square of the Mach number below which a row of the supersonic branch is none: rounding at a throat is less."""
 
@@ -86,10 +89,11 @@ Kept = TypeVar("Kept", Train, Throat)
 
 
 class Solver:
-    """One block of points under solution. least: the first mode that may be taken, code (N,); those before it are refuted."""
+    """One block of points under solution. least, most: the first and the last mode that may be taken, codes (N,); those before are
+    refuted, those behind are not asked for."""
 
-    def __init__(self, duct: Duct, separation: Array, panels: int, least: Codes) -> None:
-        self.duct, self.separation, self.least = duct, separation, least
+    def __init__(self, duct: Duct, separation: Array, panels: int, least: Codes, most: Codes) -> None:
+        self.duct, self.separation, self.least, self.most = duct, separation, least, most
         self.count = max(panels, duct.grades.shape[0] - 1)
         self.scan = scan_of(duct, self.count * SCANNED // PANELS)
         self.summits = candidates(duct, self.scan)
@@ -124,7 +128,7 @@ class Solver:
 
     def try_train(self) -> None:
         """Separated core up to where it fills the duct, supersonic from there."""
-        index = np.flatnonzero(self.open & (self.least <= TRAIN))
+        index = np.flatnonzero(self.open & (self.least <= TRAIN) & (self.most >= TRAIN))
         index = index[~self._surely_choked(index)] if index.size else index
         looked = self._look_for_train(index)
         if looked is None:
@@ -176,7 +180,9 @@ class Solver:
         """Where the throat lacks so much momentum that no shock train reaches past it, (index.size,)."""
         duct, scan = self.part(index)
         first = self._throat(index, duct, scan, 0)
-        surely: Flags = first.there & (throat_lacks(duct, scan, first, 1e-3) > _SURE * duct.impulse)
+        lacks = throat_lacks(duct, scan, first, _JUDGED) / duct.impulse
+        self.found.spare[index] = np.where(first.there, -lacks, np.nan)
+        surely: Flags = first.there & (lacks > _SURE)
         return surely
 
     def _throat(self, index: Codes, duct: Duct, scan: Scan, rank: int) -> Throat:
@@ -186,7 +192,7 @@ class Solver:
     def try_throat(self) -> None:
         """Both ways from the critical section; the candidates in turn until one stands."""
         for rank in range(CANDIDATES):
-            index = np.flatnonzero(self.open & self.summits.there[rank])
+            index = np.flatnonzero(self.open & self.summits.there[rank] & (self.most >= THROAT))
             if not index.size:
                 continue
             duct, scan = self.part(index)
@@ -296,9 +302,9 @@ ASKED: dict[str, tuple[Callable[[Solver], None], ...]] = {
 """What is tried, in order, for the mode asked for."""
 
 
-def solve_once(duct: Duct, separation: Array, asked: str, panels: int, second: bool, least: Codes) -> Solution:
-    """How N ducts run whose wall heat and total enthalpy are known: see `coupling.solve_block`. least: see `Solver`."""
-    solver = Solver(duct, separation, panels, least)
+def solve_once(duct: Duct, separation: Array, asked: str, panels: int, second: bool, least: Codes, most: Codes) -> Solution:
+    """How N ducts run whose wall heat and total enthalpy are known: see `coupling.solve_block`. least, most: see `Solver`."""
+    solver = Solver(duct, separation, panels, least, most)
     for attempt in ASKED[asked]:
         attempt(solver)
     if second:

@@ -70,6 +70,7 @@ class Solution:
     wall_force: Array
     friction: Array
     error: Array
+    spare: Array
     state: State
     total_enthalpy: Array
     lost_heat: Array | None
@@ -87,7 +88,7 @@ def nothing_yet(duct: Duct, scan: Scan, panels: int) -> Solution:
     profile = {name: np.full((most, n), np.nan) for name in PROFILE}
     lost = None if duct.cooling is None else duct.cooling.lost.copy()
     mode, status, attached, train, throat, places = np.zeros((6, n), np.int64)
-    a, b, c, d, e, f, g, h, i, j = np.full((10, n), np.nan)
+    a, b, c, d, e, f, g, h, i, j, k = np.full((11, n), np.nan)
     return Solution(
         mode,
         status,
@@ -106,6 +107,7 @@ def nothing_yet(duct: Duct, scan: Scan, panels: int) -> Solution:
         h,
         i,
         j,
+        k,
         state,
         duct.total_enthalpy.copy(),
         lost,
