@@ -27,7 +27,7 @@ def ends_of_modes(walked: March) -> dict[str, tuple[Array, Codes]]:
         return {}
     key, setting = limits.heat_key(walked.setting), walked.setting.take(record.index)
     unit = _unit(setting)
-    if unit is None:
+    if unit is None or not (record.stream.mach > 1.0).any():
         return dict.fromkeys(duct_limits.ENDS, (np.full(size, np.nan), np.zeros(size, np.int64)))
     found = assembly.heat_limits(_entering(record, setting), setting, _SEARCH[key] * unit)
     causes = {name: np.zeros(size, np.int64) for name in found}

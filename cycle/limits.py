@@ -319,9 +319,9 @@ def _viscous(walked: March) -> tuple[Limit, ...]:
     """The range of the correlation that says the quality of the inlet."""
     if walked.setting.choices.get("inlet.quality") != "viscous_correlation":
         return ()
-    two, flight = walked.stations().get("2"), walked.records[0]
+    two, flight = walked.stations().get("2"), walked.named("flight")
     slowed = np.full(walked.setting.size, np.nan)
-    if two is not None:
+    if two is not None and flight is not None:
         slowed = spread(walked, two.index, two.stream.mach / flight.taken(two.index).stream.mach)
     row = isolator_limits.within("viscous_data", "viscous correlation, M2/M0", slowed, MACH_LOSS_DATA, _inlet_key(walked.setting))
     restore = "beyond the data: the efficiency is an extrapolation"

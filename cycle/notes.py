@@ -1,4 +1,5 @@
-"""What is to be known of a solution beside its figures, as sentences: fuel that is heated for nothing."""
+"""What is to be known of a solution beside its figures, as sentences: what was asked for and is not met, what the model leaves out, fuel
+that is heated for nothing."""
 
 from __future__ import annotations
 
@@ -7,6 +8,8 @@ from dataclasses import dataclass
 
 from cycle.arrays import Array
 from cycle.constants import REFERENCE_TEMPERATURE
+from cycle.gas.fuels import oxygen_need
+from cycle.gas.species import atoms_of
 from cycle.units import format_number, show
 from cycle.walk import March
 
@@ -30,6 +33,7 @@ class HeatedFuel:
     stored: float
     status: str
     key: str = "heated_fuel"
+    unit: str = "time"
 
     @property
     def gain(self) -> float:
@@ -48,9 +52,65 @@ class HeatedFuel:
         return f"{start}: it {does} {_told(abs(self.gain), 'time', system)} ({share} %) {to} the specific impulse."
 
 
+@dataclass(frozen=True, slots=True)
+class Remark:
+    """What a solution does that its inputs do not show.
+
+    key: of `REMARKS`; value: what came of it; against: what it is held against, NaN where nothing is; unit: dimension of both.
+    """
+
+    key: str
+    value: float
+    against: float = math.nan
+    unit: str = "ratio"
+
+    @property
+    def gain(self) -> float:
+        """Its value, SI."""
+        return self.value
+
+    def words(self, system: str = "si") -> str:
+        """The note as a sentence. system: of the units, "si" or "us"."""
+        value, against = (_told(x, self.unit, system) for x in (self.value, self.against))
+        return REMARKS[self.key].format(value=value, against=against)
+
+
+REMARKS = {
+    "over_expanded": "The internal nozzle ends at {value}, below the exit pressure of {against} asked for: nothing expands outside it.",
+    "inert_air": "The gas is frozen: the combustibles of the entering stream, {value} of its moles, do not burn.",
+    "no_dissociation": "The hottest static temperature is {value}: above {against} a gas dissociates, which constant gamma leaves out.",
+    "beyond_fuel": "Thrust power is {value} of the fuel's heating value: more than the fuel brings, so the inputs cannot all be true.",
+}
+"""Key of a remark -> its sentence."""
+DISSOCIATION = 2500.0
+"""Static temperature above which dissociation counts, K; common practice."""
+
+
+def remarks(march: March, efficiency: float) -> tuple[Remark, ...]:
+    """What is to be remarked of a solution of one point; efficiency: its overall efficiency, NaN where it has none."""
+    if not march.solved.size:
+        return ()
+    found = []
+    over = march.figure("nozzle", "over_expanded")
+    if over[0] == 1.0:
+        nine = march.stations()["9"].stream.state.pressure[0]
+        ideal = march.setting.choices["nozzle.exit"] == "ideal"
+        asked = march.ambient_pressure(march.solved) if ideal else march.setting["nozzle.exit_pressure"]
+        found.append(Remark("over_expanded", float(nine), float(asked[0]), "pressure"))
+    own = sum(x for name, x in march.setting.air.items() if oxygen_need(atoms_of(name)) > 0.0)
+    if march.setting.choices["gas.model"] == "frozen" and own > 0.0:
+        found.append(Remark("inert_air", own))
+    hottest = max(float(record.stream.state.temperature[0]) for record in march.records)
+    if march.setting.constant_gamma and hottest > DISSOCIATION:
+        found.append(Remark("no_dissociation", hottest, DISSOCIATION, "temperature"))
+    if efficiency > 1.0:
+        found.append(Remark("beyond_fuel", efficiency))
+    return tuple(found)
+
+
 def _told(value: float, dimension: str, system: str, digits: int = 4) -> str:
     shown, unit = show(value, dimension, system)
-    return f"{format_number(shown, digits)} {unit}"
+    return f"{format_number(shown, digits)} {unit}".rstrip()
 
 
 def heats_fuel(march: March, wall_heat: Array) -> bool:

@@ -18,7 +18,7 @@ from cycle.flowpath import combustor, duct_limits
 from cycle.flowpath.setting import setting, why_fixed
 from cycle.flowpath.stream import SOLVED, STATUS_NAMES
 from cycle.gas.state import State
-from cycle.notes import STORAGE, HeatedFuel, heats_fuel
+from cycle.notes import STORAGE, HeatedFuel, Remark, heats_fuel, remarks
 from cycle.quantities import CAUSES, OUTPUTS, RESTORES, STATUSES
 from cycle.resting import rest
 from cycle.walk import RELEASED, March, Record, march, modes
@@ -196,7 +196,7 @@ class Walk:
     def _total(self, position: int, station: str, points: Codes) -> State:
         """Stagnation state of `points` at a station; of the record itself where the station's own figures lie before or behind it."""
         record = self.march.records[position]
-        if record.process.name in (RELEASED, "internal compression"):
+        if record.process.name in (RELEASED, "internal compression", "gas change"):
             return rest(record.taken(points).stream)
         return self._totals[station].take(np.searchsorted(self._records[station].index, points))
 
@@ -329,10 +329,13 @@ class Walk:
         )  # fmt: skip
 
     @cached_property
-    def notes(self) -> tuple[HeatedFuel, ...]:
-        """What is to be known of the solution beside its figures; one more solution when first asked for, () in a batch."""
+    def notes(self) -> tuple[HeatedFuel | Remark, ...]:
+        """What is to be known of the solution beside its figures; with heated fuel one more solution when first asked for, () in a batch."""
+        return () if self.shape != () else (*remarks(self.march, self.performance.overall_efficiency), *self._heated_fuel())
+
+    def _heated_fuel(self) -> tuple[HeatedFuel, ...]:
         burner = self.march.named("burner")
-        if self.shape != () or burner is None or burner.process.booking is None:
+        if burner is None or burner.process.booking is None:
             return ()
         booking = burner.process.booking
         if not heats_fuel(self.march, booking.wall_heat) or not booking.fuel_flow[0] > 0.0:

@@ -14,7 +14,7 @@ from cycle.quantities import OUTPUTS, RESTORES, STATUSES
 if TYPE_CHECKING:
     from cycle.case import Case
     from cycle.limit_solving import Reached
-    from cycle.notes import HeatedFuel
+    from cycle.notes import HeatedFuel, Remark
     from cycle.sensitivity import Sensitivities
 
 STATION_KEYS = tuple(o.key for o in OUTPUTS if o.where == "station")
@@ -95,7 +95,7 @@ class Figures:
     altitude: float
     walk: Any
     limits: tuple[Margin, ...] = ()
-    notes: tuple[HeatedFuel, ...] = ()
+    notes: tuple[HeatedFuel | Remark, ...] = ()
     audit_ok: bool = False
     audit: str = ""
     assessed: bool = False

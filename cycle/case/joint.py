@@ -41,6 +41,18 @@ def _fractions(facts: Facts) -> Iterator[Fault]:
         yield Fault("", "air.mole_fractions", "mole fractions do not sum to 1", f"a sum of {total:.9g}", "1 within 1e-6")
     if not values.get("O2", 0.0) > 0.0:
         yield Fault("", "air.mole_fractions", "the stream has no oxygen", "O2 = 0 or none", "O2 above 0")
+        return
+    from cycle.gas.fuels import oxygen_need
+    from cycle.gas.species import atoms_of
+
+    left = -sum(oxygen_need(atoms_of(name)) * share for name, share in values.items())
+    if not left > LEAST_OXYGEN:
+        text = "the stream's own combustibles leave no oxygen for the fuel"
+        yield Fault("", "air.mole_fractions", text, f"{left:.4g} mol of O2 left a mol", f"above {LEAST_OXYGEN:g}")
+
+
+LEAST_OXYGEN = 1e-6
+"""Free oxygen of a stream, mol of O2 a mol, below which there is none: as exact as its fractions are held to sum to 1."""
 
 
 def _throat(facts: Facts) -> Iterator[Fault]:
@@ -170,9 +182,34 @@ def _formula(facts: Facts) -> Iterator[Fault]:
     from cycle.gas.fuels import parse_formula
 
     try:
-        parse_formula(text)
+        atoms = parse_formula(text)
     except ValueError as error:
         yield Fault("", "fuel.formula", str(error))
+    else:
+        yield from _burns(facts, dict(atoms))
+
+
+HOTTEST_FLAME = 3000.0
+"""About the hottest static temperature of a flame with air, K; common practice."""
+
+
+def _burns(facts: Facts, atoms: Mapping[str, float]) -> Iterator[Fault]:
+    """The stated data of a fuel: burning must give heat, and must raise entropy even where that heat is given off as hot as a flame."""
+    from cycle.gas.fuels import entropy_of_burning, molar_heat
+
+    energy = "heating_value" if "fuel.heating_value" in facts.values else "formation_enthalpy"
+    given = facts.number(f"fuel.{energy}")
+    if given is None:
+        return
+    heat = molar_heat(atoms, **{energy: given})
+    if not heat > 0.0:
+        text = f"this fuel takes {-heat:.4g} J/mol to burn"
+        yield Fault("", f"fuel.{energy}", text, f"{given:.6g} {si_unit(INPUT[f'fuel.{energy}'].unit)}", "a fuel that gives heat")
+    entropy = facts.number("fuel.standard_entropy")
+    most = heat / HOTTEST_FLAME + entropy_of_burning(atoms)
+    if heat > 0.0 and entropy is not None and entropy > most:
+        text = "a fuel with so much entropy breaks the second law when it burns"
+        yield Fault("", "fuel.standard_entropy", text, f"{entropy:.6g} J/(mol K)", f"at most {most:.5g} J/(mol K)")
 
 
 LEAST_EXPONENT, LARGEST_EXPONENT = 1.02, 5.0 / 3.0

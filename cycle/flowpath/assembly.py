@@ -290,6 +290,10 @@ def diffuser(stream: Stream, setting: Setting) -> Steps:
     found = geometric_throat.match_throat(stream, area_3, burner, setting["nozzle.throat_area"])
     status = named_status(found.fault, geometric_throat.FAULT_NAMES, _THROAT_FAULTS)
     status = np.where(found.fault == _BURNER, found.burner_status, status)
+    if setting.choices["start"] == "entry":  # nothing spills ahead of a rig: a shock driven out of it does not leave its entry as stated
+        status = np.where(
+            (status == SOLVED) & (found.mode == geometric_throat.MODE_NAMES.index("subcritical")), STATUS_CODE["unstarted"], status
+        )
     figures = {
         "throat_margin": found.margin,
         "shock_mach": found.shock_mach,

@@ -233,9 +233,16 @@ def _with_ratio(entering: Stream, setting: Setting, ratio: Array) -> Step:
 
 
 def overcooled(status: Codes, entering: Stream, setting: Setting, ratio: Array) -> Codes:
-    """The status codes (N,) of a burner with `ratio` of fuel, where its walls take more than the fuel's heat and the data end: so named."""
+    """The status codes (N,) of a burner with `ratio` of fuel, so named where its walls take more than the fuel's heat and the data end, or
+    leave less than the coldest state has."""
     more = setting.get("combustor.wall_heat", 0.0) > ratio * entering.mass_flow * setting.heating_value
-    return np.where((status == STATUS_CODE["out-of-range"]) & more, STATUS_CODE["overcooled"], status)
+    out, lost = (status == STATUS_CODE[name] for name in ("out-of-range", "not-converged"))
+    if not (lost & more).any():
+        return np.where(out & more, STATUS_CODE["overcooled"], status)
+    with np.errstate(all="ignore"):
+        mixed = mix(entering, setting, ratio)
+        coldest = mixed.gas.at("tp", np.full(setting.size, mixed.gas.temperatures[0]), entering.state.pressure).enthalpy
+    return np.where(more & (out | lost & (mixed.total_enthalpy < coldest)), STATUS_CODE["overcooled"], status)
 
 
 def _total_temperature(step: Step) -> Array:

@@ -63,9 +63,9 @@ class Flow:
     unstarted. entry, exit: streams at 3 and 4; where the status is not solved
     they mean nothing. isolator, burner: what crosses the control surfaces 2-3 and 3-4. figures: each (N,), NaN where it
     has no meaning: see `FIGURES`. tried: codes (N,) of `TRIED` of "attached", "train", "throat". throat: codes (N,), keys
-    of `THROATS`. spare: momentum of the core beyond that of the critical flow over the impulse of station 2, (N,), NaN where no train was
-    looked for: a train ends where it vanishes. rows: the flow along x by name (R, N), `PROFILE` and "total_pressure" if asked for; rows before the
-    first are NaN.
+    of `THROATS`. spare: momentum of the core beyond that of the critical flow over the impulse of station 2, (N,), NaN where
+    no train was looked for: a train ends where it vanishes. rows: the flow along x by name (R, N), `PROFILE` and
+    "total_pressure" if asked for; rows before the first are NaN.
     """
 
     mode: Codes
@@ -143,8 +143,9 @@ def solve_duct(
         duct = replace(duct, entry_heat=ahead.gas.cp, heat_capacity=entering.gas.cp)
     limit = limits.separation_pressure_ratio(ahead.mach) if separation is None else np.broadcast_to(separation, (duct.size,))
     threshold = limit if asked == "auto" else np.full(duct.size, np.inf)
+    tried = asked if (ahead.mach > 1.0).any() else "nothing"
     blocks = [np.arange(low, min(low + BLOCK, duct.size)) for low in range(0, max(duct.size, 1), BLOCK)]
-    parts = [solve_block(duct.take(w), threshold[w], asked, panels, second, None if most is None else most[w]) for w in blocks]
+    parts = [solve_block(duct.take(w), threshold[w], tried, panels, second, None if most is None else most[w]) for w in blocks]
     found = side_by_side(parts)
     refuse(found, ~(ahead.mach > 1.0))
     if duct.entry_heat is not None:

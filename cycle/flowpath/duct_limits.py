@@ -24,15 +24,15 @@ CAUSES = ("", "separation", "choking", "impulse", "isolator-length", *STATUSES)
 """What sets a limit, by code: separation or choking of the attached flow, choking of the stream behind the shock train, impulse or
 isolator length at unstart; or the status of the points beyond."""
 
-_SCANNED = 25
+_SCANNED, _SCANNED_COUPLED = 25, 13
 _BUNCHED = 1.5
 """Exponent of the scan's ratios over the even ones: denser at little heat."""
-_SETTLED, _SETTLED_COUPLED = 3e-9, 1e-6
+_SETTLED, _SETTLED_COUPLED = 3e-9, 3e-6
 """Width of the last bracket, over the ratio; where the flow and what it is given are found in turn at every ratio."""
 _TURNS = 40
 _STRAIGHT = 1e-5
 """Width of a bracket over the ratio, below which its margin is straight."""
-_AIMED, _SPREAD = 6, 16
+_AIMED, _SPREAD, _SPREAD_COUPLED = 6, 16, 8
 """Ratios of a turn that are looked at in a bracket whose margin is known at both ends, and in another one."""
 _NEAREST = 1e-6
 """How near the nearest probes stand to the zero of a straight line, over the bracket."""
@@ -103,17 +103,18 @@ def heat_limits(at: At, now: Array, upper: Array, coupled: bool = False) -> dict
     (N,); coupled: whether what a duct is given depends on its mode, which makes it dear.
     """
     n = now.size
-    even = upper * ((np.arange(_SCANNED) / (_SCANNED - 1.0)) ** _BUNCHED)[:, None]
+    count = _SCANNED_COUPLED if coupled else _SCANNED
+    even = upper * ((np.arange(count) / (count - 1.0)) ** _BUNCHED)[:, None]
     ratio = np.sort(np.vstack([even, np.clip(np.nan_to_num(now), 0.0, upper)]), axis=0)
     rows = len(ratio)
     scan = _seen(at(np.tile(np.arange(n), rows), ratio.ravel(), np.full(ratio.size, THROAT))).shaped(rows, n)
-    here = (ratio < now).sum(0)
+    here = np.minimum((ratio < now).sum(0), rows - 1)
     lows, highs, limits = (np.array(rows) for rows in zip(*(_bracket(stands, here) for stands in scan.stands), strict=True))
     limits[:, np.isnan(now)] = np.nan
     e, point = np.nonzero((lows >= 0) & ~np.isnan(now))
     low, high = lows[e, point], highs[e, point]
     narrow = _SETTLED_COUPLED if coupled else _SETTLED
-    search = _Search(narrow, e, point, ratio[low, point], ratio[high, point], scan.at(low, point), scan.at(high, point))
+    search = _Search(narrow, _SPREAD_COUPLED if coupled else _SPREAD, e, point, ratio[low, point], ratio[high, point], scan.at(low, point), scan.at(high, point))
     search.close(at)
     causes = np.zeros(limits.shape, np.int64)
     limits[e, point], causes[e, point] = search.ends(), search.cause
@@ -138,11 +139,11 @@ def _bracket(stands: Array, here: Codes) -> tuple[Codes, Codes, Array]:
 
 
 class _Search:
-    """Brackets (K,) of ends of modes, closed in on together. narrow: width over the ratio at which one is
-    closed; end: which mode; point: of which point; low stands, high does not."""
+    """Brackets (K,) of ends of modes, closed in on together. narrow: width over the ratio at which one is closed; spread: ratios looked at
+    in a turn where no margin is known; end: which mode; point: of which point; low stands, high does not."""
 
-    def __init__(self, narrow: float, end: Codes, point: Codes, low: Array, high: Array, at_low: _Seen, at_high: _Seen) -> None:
-        own, self.narrow = np.arange(end.size), narrow
+    def __init__(self, narrow: float, spread: int, end: Codes, point: Codes, low: Array, high: Array, at_low: _Seen, at_high: _Seen) -> None:
+        own, self.narrow, self.spread = np.arange(end.size), narrow, spread
         self.end, self.point, self.low, self.high = end, point, low, high
         self.margins = np.stack([at_low.margins, at_high.margins])
         self.cause = at_high.cause[end, own]
@@ -173,10 +174,11 @@ class _Search:
                 break
             tried = self._probes(w)
             self._learn(w, tried, self._look(at, w, tried, _LASTS[self.end[w]]))
-        w = np.flatnonzero(self.cause == CAUSES.index("no-mode"))
+        w = np.flatnonzero((self.cause == CAUSES.index("no-mode")) & (_LASTS[self.end] < THROAT))
         if w.size:
-            seen = self._look(at, w, self.high[w, None], np.full(w.size, THROAT))
-            self.cause[w] = seen.cause[self.end[w], np.arange(w.size), 0]
+            seen, own = self._look(at, w, self.high[w, None], np.full(w.size, THROAT)), np.arange(w.size)
+            fails = seen.stands[self.end[w], own, 0] == 0.0
+            self.cause[w[fails]] = seen.cause[self.end[w], own, 0][fails]
 
     def _look(self, at: At, w: Codes, tried: Array, most: Codes) -> _Seen:
         """The ducts of the brackets `w` at ratios (len(w), C), NaN where none is looked at, up to the modes `most`."""
@@ -192,7 +194,7 @@ class _Search:
         span = np.linspace(-1.0, 1.0, _AIMED + 1)[1:-1] * _AIMED / (_AIMED - 1.0)
         side = _NEAREST ** (1.0 - np.abs(span)) * np.sign(span)
         about = zero + side * np.where(side < 0.0, zero, 1.0 - zero) * (1.0 - 1e-3)
-        tried = np.tile(np.arange(1.0, _SPREAD + 1.0) / (_SPREAD + 1.0), (w.size, 1))
+        tried = np.tile(np.arange(1.0, self.spread + 1.0) / (self.spread + 1.0), (w.size, 1))
         tried[known] = np.nan
         tried[known, :_AIMED] = np.sort(np.hstack([about, np.full((w.size, 1), 0.5)]), axis=1)[known]
         return low + (high - low) * tried

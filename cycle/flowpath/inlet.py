@@ -67,8 +67,10 @@ def _to_pressure(flight: Stream, setting: Setting, entropy: Array) -> Ended:
 
 
 def _to_temperature(flight: Stream, setting: Setting, entropy: Array) -> Ended:
-    state = flight.gas.at("ts", flight.state.temperature * setting["inlet.temperature_ratio"], entropy, start=flight.state)
-    return state, _always(state)
+    temperature = flight.state.temperature * setting["inlet.temperature_ratio"]
+    state = flight.gas.at("ts", temperature, entropy, start=flight.state)
+    cold = flight.gas.at("tp", temperature, flight.state.pressure).enthalpy < flight.total_enthalpy
+    return state, state.good | cold
 
 
 def _to_mach(flight: Stream, setting: Setting, entropy: Array) -> Ended:
@@ -149,7 +151,7 @@ def _settled(flight: Stream, miss: Callable[[Array], Missed]) -> Ended:
             entropy = np.where(done, entropy, entropy + np.clip(step, -span, span))
     # where the first state lies beyond the data, what follows from it says nothing
     state = replace(state, range=np.where(state.good | first.good, state.range, first.range))
-    return state, reached & (done | ~state.good)
+    return state, reached & (done | ~first.good)
 
 
 _TIED: dict[str, Callable[[Stream, Setting, End], Ended]] = {"adiabatic_efficiency": _adiabatic, "viscous_correlation": _viscous}
@@ -172,8 +174,8 @@ def inlet(flight: Stream, setting: Setting) -> Step:
             state, reached = state.after(like), reached | ~like.good
         u = states.velocity(flight.total_enthalpy, state)
         lost = state.enthalpy >= flight.total_enthalpy
-        weak = state.pressure < flight.state.pressure * (1.0 - 1e-9)
-    status = status_of(
-        state, (lost & state.good, "over-compressed"), (~reached, "over-compressed"), (weak & state.good, "under-compressed")
-    )
+        weak = (state.pressure < flight.state.pressure * (1.0 - 1e-9)) & state.good
+        if setting.choices["inlet.end"] in ("pressure_ratio", "temperature_ratio"):
+            weak |= setting[f"inlet.{setting.choices['inlet.end']}"] < 1.0
+    status = status_of(state, (weak, "under-compressed"), (lost & state.good, "over-compressed"), (~reached, "over-compressed"))
     return Step(stream(flight.gas, state, u, flight.mass_flow), Process("inlet", "0", "2"), status)

@@ -55,6 +55,8 @@ class Gas(ABC):
     def _blamed(self, state: State, kind: str, targets: tuple[Array, ...], start: State | None) -> State:
         """The state, out of range instead of not converged where the data end before the targets are met."""
         lost = np.flatnonzero((state.range == NOT_CONVERGED) & np.isfinite(targets).all(0))
+        if kind == "ts" and lost.size:  # every temperature has every entropy: only numbers end
+            return replace(state, range=np.where((state.range == NOT_CONVERGED) & np.isfinite(targets).all(0), OUT_OF_RANGE, state.range))
         if not lost.size or kind not in BEYOND:
             return state
         gas, cut = self.take(lost), tuple(t[lost] for t in targets)
@@ -143,6 +145,9 @@ class FixedGas(Gas):
         p = np.broadcast_to(named.get("pressure", REFERENCE_PRESSURE if start is None else start.pressure), shape)
         if kind == "vp":
             T = named["volume"] * p / self.gas_constant
+        if kind == "ts":
+            with np.errstate(all="ignore"):
+                p = REFERENCE_PRESSURE * np.exp((self.caloric(T)[1] - named["entropy"]) / self.gas_constant)
         if kind == "hv":
             p = self.gas_constant * T / named["volume"]
         with np.errstate(all="ignore"):

@@ -130,6 +130,19 @@ def products_enthalpy(atoms: Mapping[str, float]) -> float:
     return sum(n * at_reference[name] for name, n in amounts.items()) - oxygen_need(atoms) * at_reference["O2"]
 
 
+def molar_heat(atoms: Mapping[str, float], heating_value: float | None = None, formation_enthalpy: float | None = None) -> float:
+    """Heat of burning one molecule at 298.15 K, J/mol, by the one that is given: J/kg, or J/mol of formation."""
+    if formation_enthalpy is None:
+        return float(heating_value or 0.0) * mass_of(atoms)
+    return formation_enthalpy - products_enthalpy(atoms)
+
+
+def entropy_of_burning(atoms: Mapping[str, float]) -> float:
+    """Entropy at 298.15 K and 1 bar of the CO2, H2O vapour and N2 from one molecule less that of the O2 it takes, J/(mol K)."""
+    amounts = {"CO2": atoms.get("C", 0.0), "H2O": atoms.get("H", 0.0) / 2.0, "N2": atoms.get("N", 0.0) / 2.0, "O2": -oxygen_need(atoms)}
+    return sum(n * _standard_entropy(name) for name, n in amounts.items())
+
+
 @cache
 def _formation_enthalpy(species: str) -> float:
     return float(evaluate(listed_rows(species), REFERENCE_TEMPERATURE)[0])

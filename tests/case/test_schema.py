@@ -48,7 +48,7 @@ def check_said(schema: dict[str, Any], entry: Input, said: dict[str, Any]) -> No
         stated = {name: number.get(name) for name in ("minimum", "exclusiveMinimum", "maximum", "exclusiveMaximum")}
         assert stated == {
             "minimum": entry.lower,
-            "exclusiveMinimum": entry.above,
+            "exclusiveMinimum": entry.over,
             "maximum": entry.upper,
             "exclusiveMaximum": entry.below,
         }

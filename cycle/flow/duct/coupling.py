@@ -12,7 +12,7 @@ from cycle.flow.duct.cooling import first_loss
 from cycle.flow.duct.core import behind_handover
 from cycle.flow.duct.layout import Cooling, Duct
 from cycle.flow.duct.modes import PANELS, solve_once
-from cycle.flow.duct.solution import ATTACHED, LOST, MODES, NONE, THROAT, TRAIN, Solution, merge
+from cycle.flow.duct.solution import ATTACHED, LOST, MODES, NO_MODE, NONE, THROAT, TRAIN, Solution, merge
 
 
 def solve_block(
@@ -36,11 +36,13 @@ def _cooled(duct: Duct, separation: Array, asked: str, panels: int, second: bool
     assert duct.cooling is not None
     live, lost = np.arange(duct.size), duct.cooling.lost
     mode, least, refuted = np.full(duct.size, len(MODES)), np.full(duct.size, NONE), np.zeros(duct.size, np.bool_)
+    handed = np.full(duct.size, np.nan)
     history: list[tuple[Array, Array]] = []
     whole: Solution | None = None
     for _ in range(_COOLING_TURNS):
         part = replace(duct.take(live), cooling=Cooling(duct.cooling.grid.take(live), lost[:, live]))
-        found = _solved(part, separation[live], asked, panels, second, least[live])
+        found = _solved(part, separation[live], asked, panels, second, least[live], handed=handed[live])
+        handed[live] = np.where(found.mode == ATTACHED, np.nan, found.total_enthalpy)
         following = found.lost_heat
         assert following is not None
         # what is booked is the heat that was marched with, so that the energy closes to rounding
@@ -93,11 +95,20 @@ _COOLED = 1e-9
 """Change of the heat lost, over m u2^2, at which it stands still."""
 
 
-def _solved(duct: Duct, separation: Array, asked: str, panels: int, second: bool, least: Codes, most: Codes | None = None) -> Solution:
+def _solved(
+    duct: Duct,
+    separation: Array,
+    asked: str,
+    panels: int,
+    second: bool,
+    least: Codes,
+    most: Codes | None = None,
+    handed: Array | None = None,
+) -> Solution:
     """The flow; where the constant-gamma pair changes at burner entry, with the enthalpy that it has behind the hand-over.
 
     T is kept there, and depends on p3: what is not attached is solved again until it stands still. A point without a solution is judged
-    with the subsonic stream that its impulse allows.
+    with the subsonic stream that its impulse allows. handed: total enthalpy behind a hand-over to start from, (N,), NaN: not known.
     """
     last = np.full(duct.size, THROAT)
     whole = solve_once(duct, separation, asked, panels, second, least, last if most is None or duct.entry_heat is not None else most)
@@ -105,20 +116,31 @@ def _solved(duct: Duct, separation: Array, asked: str, panels: int, second: bool
         return whole
     live = np.flatnonzero(whole.mode != ATTACHED)
     tried, peak = whole.attached.copy(), whole.attached_peak.copy()
-    before = np.full(duct.size, np.nan)
-    for _ in range(_HANDOVERS):
-        part = duct.take(live)
-        ht = behind_handover(part, whole.pressure_3[live])
-        going = ~(np.abs(ht - before[live]) <= _HANDED * ht)
-        before[live], live = ht, live[going]
+    used, moves = duct.total_enthalpy.copy(), np.zeros(duct.size, np.int64)
+    before, its_result = np.full((2, duct.size), np.nan)
+    for turn in range(_HANDOVERS):
+        part, ht = duct.take(live), used[live]
+        following = behind_handover(part, whole.pressure_3[live])
+        if turn == 0 and handed is not None:
+            following = np.where(np.isfinite(handed[live]), handed[live], following)
+        going = ~(np.abs(following - ht) <= _HANDED * following)
+        slope = (following - its_result[live]) / (ht - before[live])
+        ahead = np.where(slope < _STEEPEST, ht + (following - ht) / (1.0 - slope), following)
+        if turn:
+            before[live], its_result[live] = ht, following
+        used[live], live = ahead, live[going]
         if not live.size:
             break
-        part = replace(part.take(going), total_enthalpy=ht[going])
+        part = replace(part.take(going), total_enthalpy=ahead[going])
+        mode = whole.mode[live]
         merge(whole, live, solve_once(part, separation[live], asked, panels, second, np.maximum(least[live], TRAIN), last[live]))
-    whole.status[live], whole.mode[live] = LOST, NONE
+        moves[live] += whole.mode[live] != mode
+    whole.status[live], whole.mode[live] = np.where(moves[live] >= _UNDECIDED, NO_MODE, LOST), NONE
     whole.attached[:], whole.attached_peak[:] = tried, peak
     return whole
 
 
-_HANDOVERS, _HANDED = 60, 1e-13
+_HANDOVERS, _HANDED = 30, 1e-12
 """Turns of the hand-over between two pairs, and change of the total enthalpy over itself at which it stands still."""
+_STEEPEST, _UNDECIDED = 0.9, 4
+"""Slope of what follows over what was handed on, above which no step ahead is taken; changes of the mode after which none is consistent."""

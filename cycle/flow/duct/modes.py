@@ -298,6 +298,7 @@ ASKED: dict[str, tuple[Callable[[Solver], None], ...]] = {
     "auto": (Solver.try_attached, Solver.try_train, Solver.try_throat),
     "supersonic": (Solver.try_attached, Solver.try_train),
     "thermal-throat": (Solver.try_throat,),
+    "nothing": (),
 }
 """What is tried, in order, for the mode asked for."""
 
