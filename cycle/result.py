@@ -182,7 +182,7 @@ class Walk:
         status beyond; "" where the limit is not reached or not known."""
         return {name: self._words([duct_limits.CAUSES[code] for code in cause]) for name, (_, cause) in self._derived.heat_ends.items()}
 
-    @cached_property
+    @property
     def limits(self) -> tuple[Limit, ...]:
         """All limits with their margins; for one point the largest heat is solved for."""
         if self.shape == () and self._derived.has_duct:
@@ -192,10 +192,19 @@ class Walk:
     @property
     def limits_so_far(self) -> tuple[Limit, ...]:
         """All limits; of a duct, or of a batch, without the largest heat unless `heat_limits` has been asked for."""
-        largest, cause = (np.array([self._derived.largest_heat]), "") if self.shape == () and not self._derived.has_duct else (None, "")
-        if ends := self._derived.known_ends:
-            largest, codes = ends["unstart"]
-            cause = CAUSES.get(duct_limits.CAUSES[codes[0]], "") if (codes == codes[0]).all() else ""
+        return self._limits_with_heat if self._derived.known_ends else self._limits_without_heat
+
+    @cached_property
+    def _limits_without_heat(self) -> tuple[Limit, ...]:
+        alone = self.shape == () and not self._derived.has_duct
+        return self._limits(np.array([self._derived.largest_heat]) if alone else None, "")
+
+    @cached_property
+    def _limits_with_heat(self) -> tuple[Limit, ...]:
+        largest, codes = self._derived.known_ends["unstart"]
+        return self._limits(largest, CAUSES.get(duct_limits.CAUSES[codes[0]], "") if (codes == codes[0]).all() else "")
+
+    def _limits(self, largest: Array | None, cause: str) -> tuple[Limit, ...]:
         return tuple(self._limit(row) for row in margins.limits(self._march, largest, cause))
 
     def _limit(self, row: margins.Limit) -> Limit:
