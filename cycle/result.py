@@ -263,8 +263,9 @@ def solve(case: Case, changes: Mapping[str, ArrayLike] | None = None) -> Walk:
     """Walk a case, or a batch of it.
 
     changes: arrays (SI) for any numeric inputs by key, broadcast together; figures of the walk then have that shape. A
-    member of an exactly-one-of group replaces the group. Raises CaseError for unknown keys and values out of bounds; a
-    point without a solution never raises: see `Walk.status`.
+    member of an exactly-one-of group replaces the group. They are copied. Raises CaseError for unknown keys, values out of
+    bounds, arrays that hold no plain numbers and shapes that do not broadcast; a point without a solution never raises: see
+    `Walk.status`.
     """
     arrays: Mapping[str, Array] = {}
     if changes:

@@ -52,6 +52,7 @@ def test_a_solution_is_freed_when_dropped(path: object, batch: bool) -> None:
 def test_heat_limits_leave_nothing_behind() -> None:
     walk = cycle.solve(cycle.load(case_file("tidegate")))
     gone = weakref.ref(walk)
+    assert walk.march.solved.size  # read-only from here on, for the search too
     assert walk.heat_limits and walk.limits and walk.reason == ""
     del walk
     assert gone() is None and gc.collect() == 0

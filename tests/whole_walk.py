@@ -97,13 +97,14 @@ def differing(walks: Sequence[cycle.Walk], searched: bool = True) -> list[str]:
 
 
 def random_walks(seed: int) -> list[cycle.Walk]:
-    """Two random cases of a seed, each as one point and as a batch of 2 by 3; of the batch a part is asked for before it is pickled."""
+    """Two random cases of a seed, each as one point and as a batch of 2 by 3; of the batch a part is asked for before it is pickled,
+    its march made read-only first."""
     found = []
     for case in (cycle.loads(written(random_case(seed), f"simple {seed}"), str(seed)), loaded(random_flowpath(seed))):
         fuel = case.numbers["fuel.temperature"]
         changes = {"combustor.burnt_fraction": np.array([[0.8], [0.95]]), "fuel.temperature": fuel + np.array([0.0, 1.0, 2.0])}
         batch = cycle.solve(case, changes)
-        assert batch.performance is not None and batch.audit is not None and batch.limits is not None
+        assert batch.march.setting.size == 6 and batch.audit is not None and batch.limits is not None
         found += [cycle.solve(case), batch]
     return found
 
