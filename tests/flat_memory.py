@@ -62,17 +62,17 @@ def read(walk: cycle.Walk) -> None:
 def main(count: int, seed: int = 1) -> int:
     """Solve `count` times and print the memory; 1 where it grew by more than a tenth behind the first tenth."""
     marks = {max(1, count * k // 10) for k in range(1, 11)} | {1}
-    sizes: dict[int, float] = {}
+    sizes: list[float] = []
     gc.disable()
     for number, make in enumerate(islice(solutions(seed), count), 1):
         if number == count // 2:
             gc.enable()
         read(make())
         if number in marks:
-            sizes[number] = resident()
-            print(f"{number:7d} solutions: {sizes[number]:7.1f} MiB, collector {'on' if gc.isenabled() else 'off'}", flush=True)
+            sizes.append(resident())
+            print(f"{number:7d} solutions: {sizes[-1]:7.1f} MiB, collector {'on' if gc.isenabled() else 'off'}", flush=True)
     gc.enable()
-    first, *_, last = [size for number, size in sizes.items() if number > 1]
+    first, last = sizes[:2][-1], sizes[-1]
     print(f"seed {seed}: grown by {last - first:.1f} MiB behind the first tenth")
     return int(last > 1.1 * first)
 
