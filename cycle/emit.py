@@ -25,22 +25,19 @@ def _dynamic_pressure(s: Stream) -> Array:
     return 0.5 * s.state.density * s.velocity**2
 
 
-_OWN: dict[str, Callable[[Stream], Array]] = {
-    "velocity": lambda s: s.velocity,
-    "mach": lambda s: s.mach,
-    "total_enthalpy": lambda s: s.total_enthalpy,
-    "area": lambda s: s.area,
-    "mass_flow": lambda s: s.mass_flow,
-    "stream_thrust": lambda s: s.stream_thrust,
-    "dynamic_pressure": _dynamic_pressure,
-    "unit_reynolds_number": lambda s: s.flux / viscosity(s.state.temperature),
-}
+def _unit_reynolds_number(s: Stream) -> Array:
+    return s.flux / viscosity(s.state.temperature)
+
+
+_OWN: dict[str, Callable[[Stream], Array]] = {"dynamic_pressure": _dynamic_pressure, "unit_reynolds_number": _unit_reynolds_number}
+_STREAM = ("velocity", "mach", "total_enthalpy", "area", "mass_flow", "stream_thrust")
 
 
 def cheap(stream: Stream) -> dict[str, Callable[[], Array]]:
     """Station figures that need no further state, of the stream's own points."""
     state = {name: partial(getattr, stream.state, name) for name in _STATE}
-    return {**state, **{name: partial(f, stream) for name, f in _OWN.items()}}
+    own = {name: partial(getattr, stream, name) for name in _STREAM}
+    return {**state, **own, **{name: partial(f, stream) for name, f in _OWN.items()}}
 
 
 def fractions(stream: Stream) -> Array:
@@ -123,15 +120,20 @@ def _fuel_entropy(march: March, points: Codes) -> Array:
     return setting.fuel.entropy(setting["fuel.temperature"], supply)
 
 
-def station_sources(march: March, name: str, record: Record) -> dict[str, Callable[[], Array]]:
+def station_sources(march: March, record: Record) -> dict[str, Callable[[], Array]]:
     """Figures of a station over all points of the march, NaN where a point did not reach it."""
-    first = march.records[0]
-    sources = {k: (lambda make=make: spread(march, record.index, make())) for k, make in cheap(record.stream).items()}
+    sources: dict[str, Callable[[], Array]] = {
+        key: partial(_over_all, march, record.index, make) for key, make in cheap(record.stream).items()
+    }
+    return sources | {"area_ratio": partial(_area_ratio, march, record)}
 
-    def ratio() -> Array:
-        return spread(march, record.index, record.stream.area / first.taken(record.index).stream.area)
 
-    return sources | {"area_ratio": ratio}
+def _over_all(march: March, index: Codes, make: Callable[[], Array]) -> Array:
+    return spread(march, index, make())
+
+
+def _area_ratio(march: March, record: Record) -> Array:
+    return spread(march, record.index, record.stream.area / march.records[0].taken(record.index).stream.area)
 
 
 def profile(march: March) -> dict[str, Array]:

@@ -1,4 +1,4 @@
-"""Figures by name, computed when first asked for, floats for one point and arrays of the batch's shape otherwise."""
+"""Figures by name, computed when first asked for, floats for one point and read-only arrays of the batch's shape otherwise."""
 
 from __future__ import annotations
 
@@ -8,12 +8,12 @@ from typing import Any
 
 import numpy as np
 
-from cycle.arrays import Array
+from cycle.arrays import Array, sealed
 
 
 def shaped(values: Array, shape: tuple[int, ...]) -> Any:
-    """Values (N,) as a float where the batch is one point, else in its shape."""
-    return float(values[0]) if shape == () else values.reshape(shape)
+    """Values (N,) as a float where the batch is one point, else in its shape, read-only."""
+    return float(values[0]) if shape == () else sealed(values.reshape(shape))
 
 
 class Figures(Mapping[str, Any]):
@@ -21,6 +21,9 @@ class Figures(Mapping[str, Any]):
 
     def __init__(self, source: Mapping[str, Callable[[], Array]], shape: tuple[int, ...]) -> None:
         self._source, self._shape, self._made = source, shape, dict[str, Any]()
+
+    def __reduce__(self) -> tuple[Any, ...]:
+        return type(self), (self._source, self._shape)
 
     def __getitem__(self, key: str) -> Any:
         if key not in self._made:
@@ -47,6 +50,9 @@ class Station(Figures):
     ) -> None:
         super().__init__(source, shape)
         self._fractions = fractions
+
+    def __reduce__(self) -> tuple[Any, ...]:
+        return type(self), (self._source, self._shape, self._fractions)
 
     @property
     def mole_fractions(self) -> dict[str, Any]:

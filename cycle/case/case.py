@@ -43,6 +43,13 @@ def _frozen(data: object) -> Any:
     return tuple(_frozen(part) for part in data) if isinstance(data, (list, tuple)) else data
 
 
+def _hashable(data: object) -> Any:
+    """Read-only data as something with a hash, the same for equal data."""
+    if isinstance(data, Mapping):
+        return frozenset((name, _hashable(part)) for name, part in data.items())
+    return tuple(_hashable(part) for part in data) if isinstance(data, tuple) else data
+
+
 def thawed(data: object) -> Any:
     """Plain dicts and lists again of what a case holds read-only.
 
@@ -55,7 +62,7 @@ def thawed(data: object) -> Any:
 
 @dataclass(frozen=True, slots=True)
 class Case:
-    """One validated case. Made by `load`, `loads` and `replace`; every mapping is read-only.
+    """One validated case. Made by `load`, `loads` and `replace`; every mapping is read-only, so that a case can be a key of a table.
 
     numbers: SI values of all number inputs and cells of rows ("combustor.area.2.x", rows from 1) that apply and have a value;
     choices: choice inputs, groups (name -> tag) and
@@ -83,6 +90,9 @@ class Case:
 
     def __reduce__(self) -> tuple[Callable[[dict[str, Any]], Case], tuple[dict[str, Any]]]:
         return _restore, ({f.name: thawed(getattr(self, f.name)) for f in fields(self)},)
+
+    def __hash__(self) -> int:
+        return hash(tuple(_hashable(getattr(self, f.name)) for f in fields(self) if f.compare))
 
     def replace(self, changes: Mapping[str, object]) -> Case:
         """The case with other values, validated again.

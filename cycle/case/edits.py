@@ -10,13 +10,13 @@ from cycle.units import respell
 
 
 def plain(value: object) -> object:
-    """A value as plain Python data: numpy scalars and subclasses of float or str become float, int, bool or str.
+    """A value as plain Python data: arrays become lists, numpy scalars and subclasses of float or str become float, int, bool or str.
 
     Parameters: value, anything. Returns: plain data where the value is data, the value itself otherwise.
     """
-    item = getattr(value, "item", None)
-    if callable(item) and getattr(value, "ndim", 1) == 0:
-        return item()
+    listed = getattr(value, "tolist", None)
+    if callable(listed) and not any(hasattr(value, name) for name in ("mask", "unit", "units")):
+        return listed()
     if isinstance(value, Mapping):
         return {str(name): plain(part) for name, part in value.items()}
     if isinstance(value, (list, tuple)):

@@ -15,10 +15,10 @@ from __future__ import annotations
 import hashlib
 import json
 from collections.abc import Mapping
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, fields
 from functools import cache, lru_cache
 from pathlib import Path
-from typing import TYPE_CHECKING
+from typing import TYPE_CHECKING, Any
 
 import numpy as np
 
@@ -192,6 +192,15 @@ class SpeciesTable:
     fuel: Fuel | None
     fuel_in_basis: Array
     index: dict[str, int] = field(repr=False)
+    whole: bool = True
+    """Whether it is a table as made, not a part of one."""
+
+    def __reduce__(self) -> tuple[Any, ...]:
+        """Tables are kept once and known by identity: a pickled one is found again, or made again from its names."""
+        if not self.whole:
+            return SpeciesTable, tuple(getattr(self, f.name) for f in fields(self))
+        last = len(self.names) - (self.fuel is not None)
+        return _assembled, (self.names[: self.reacting], self.basis, self.names[self.reacting : last], self.fuel)
 
     @property
     def inert(self) -> int:
@@ -206,7 +215,7 @@ class SpeciesTable:
         return SpeciesTable(
             names, basis.size, reacting, self.elements, self.atoms[rows], self.molar_mass[rows],
             np.ascontiguousarray(self.in_basis[np.ix_(rows[:reacting], basis)]), self.h[rows], self.s[rows], self.cp[rows],
-            self.fuel, self.fuel_in_basis[basis], {name: i for i, name in enumerate(names)},
+            self.fuel, self.fuel_in_basis[basis], {name: i for i, name in enumerate(names)}, False,
         )  # fmt: skip
 
     def moles(self, mole_fractions: Mapping[str, ArrayLike], n: int) -> Array:
@@ -243,7 +252,7 @@ def species_table(air_species: tuple[str, ...], fuel: Fuel | None = None, only: 
     reacting = [name for name in allowed if set(atoms_of(name)) <= present]
     basis = _choose_basis(reacting, sorted(present))
     rest = [name for name in reacting if name not in basis]
-    return _assemble([*basis, *rest], len(basis), inert, fuel)
+    return _assembled((*basis, *rest), len(basis), tuple(inert), fuel)
 
 
 def _choose_basis(reacting: list[str], elements: list[str]) -> list[str]:
@@ -257,7 +266,8 @@ def _choose_basis(reacting: list[str], elements: list[str]) -> list[str]:
     return chosen
 
 
-def _assemble(reacting: list[str], basis: int, inert: list[str], fuel: Fuel | None) -> SpeciesTable:
+@lru_cache(maxsize=64)
+def _assembled(reacting: tuple[str, ...], basis: int, inert: tuple[str, ...], fuel: Fuel | None) -> SpeciesTable:
     names = [*reacting, *inert]
     molecules = [atoms_of(name) for name in names]
     rows = [listed_rows(name) for name in names]
