@@ -10,11 +10,10 @@ from pathlib import Path
 from typing import Any
 
 from cycle import toml
-from cycle.atomic import Irregular, read_file, replace_file
+from cycle.atomic import read_named, replace_file, trouble
 from cycle.case.case import Case, Stamp, build
 from cycle.errors import CaseError, Fault, FileChanged, shown
 
-_DEVICE = ("not a case file", "a device or pipe", "a file, or - for standard input")
 _SETTING = re.compile(r"\s*([A-Za-z0-9_.-]{1,80})\s*=\s*(.*?)\s*", re.DOTALL)
 
 
@@ -76,24 +75,9 @@ def _one(file: str, text: str, given: str = "", allowed: str = "") -> CaseError:
     return CaseError([Fault(file, "", text, given, allowed)])
 
 
-def _trouble(file: str, doing: str, error: OSError) -> CaseError:
-    return _one(file, f"cannot be {doing}: {(error.strerror or str(error)).lower()}")
-
-
 def _read(name: str) -> tuple[bytes, float]:
     """Bytes and modification time of a regular file."""
-    try:
-        data, status = read_file(name, toml.LARGEST)
-    except Irregular:
-        raise _one(name, *_DEVICE) from None
-    except IsADirectoryError:
-        raise _one(name, "not a case file", "a directory", _DEVICE[-1]) from None
-    except OSError as error:
-        raise _trouble(name, "read", error) from None
-    except ValueError:
-        raise _one(name, "no name of a file", shown(name), "a path") from None
-    if len(data) > toml.LARGEST:
-        raise _one(name, "too large", f"{max(status.st_size, len(data))} bytes", f"at most {toml.LARGEST} bytes")
+    data, status = read_named(name, toml.LARGEST, "a case file")
     return data, status.st_mtime
 
 
@@ -111,13 +95,13 @@ def _stamp(path: str) -> Stamp | None:
     try:
         # a pipe would be waited for, and a device has no end
         if not stat.S_ISREG((status := os.stat(path)).st_mode) and not stat.S_ISDIR(status.st_mode):
-            raise _one(path, *_DEVICE)
+            raise _one(path, "not a case file", "a device or pipe", "a file")
         with open(path, "rb") as stream:
             return Stamp(hashlib.file_digest(stream, "sha256").hexdigest(), os.fstat(stream.fileno()).st_mtime)
     except FileNotFoundError:
         return None
     except OSError as error:
-        raise _trouble(path, "read", error) from None
+        raise trouble(path, "read", error) from None
 
 
 def _is_foreign(there: Stamp | None, expect: Stamp | None) -> bool:
@@ -151,7 +135,7 @@ def save(case: Case, path: str | os.PathLike[str], expect: Stamp | None = None) 
     try:
         return _write(target, data, name, expect)
     except OSError as error:
-        raise _trouble(name, "written", error) from None
+        raise trouble(name, "written", error) from None
 
 
 def _write(target: str, data: bytes, name: str, expect: Stamp | None) -> Stamp:
