@@ -14,11 +14,11 @@ from typing import Any, NoReturn
 
 from cycle.atomic import new_file, trouble
 from cycle.errors import CaseError, DuctwalkError
-from tui import crash, shipped
+from tui import crash, interrupt, shipped
 from tui.output import STANDARD_INPUT, emit, load_case, near, prepare_streams, tell
 
 PROGRAM = "ductwalk"
-BAD_INPUT, INTERRUPTED = 2, 130
+BAD_INPUT = 2
 STANDARD_OUTPUT = "-"
 LATER = ("study", "optimise", "report")
 """Commands that are planned and refused in this version."""
@@ -279,6 +279,7 @@ def _screen(name: str | None) -> int:
     if _has_terminal() and path != STANDARD_INPUT:
         from tui.app import run
 
+        interrupt.release()
         return run(path)
     status = _parsed(["solve", path])
     if status != BAD_INPUT and path != STANDARD_INPUT:
@@ -327,7 +328,7 @@ def main(argv: Sequence[str] | None = None) -> int:
         return BAD_INPUT
     except KeyboardInterrupt:
         tell("interrupted")
-        return INTERRUPTED
+        return interrupt.STATUS
 
 
 if __name__ == "__main__":
