@@ -26,7 +26,7 @@ def _end(number: int, frame: FrameType | None) -> None:
     # an exception would be lost, or told in many lines, where it meets the import of a library; only what writes a file must clear up
     writers = sys.modules.get("cycle.atomic")
     while frame is not None and writers is not None:
-        if frame.f_code.co_filename == writers.__file__:
+        if frame.f_code.co_filename == writers.__file__ and frame.f_code.co_name != "<module>":
             raise KeyboardInterrupt
         frame = frame.f_back
     if sys.stderr is not None:
