@@ -13,10 +13,16 @@ from cycle.errors import CaseError, Fault, shown
 
 LARGEST = 1 << 20
 """Bytes of a TOML file that are read."""
-MOST_PARTS = 20_000
+MOST_PARTS = 10_000
 """Keys, tables, values of arrays and lines, outside of strings, that are read together."""
+LONGEST_NAME = 8
+"""Names joined by points."""
+MOST_POINTS = 1000
+"""Points between names; one in a key counts as four: where a file is edited, keys of joined names cost the cube of their number."""
+MOST_ESCAPES = 50_000
+"""Backslashes."""
 DEEPEST = 32
-"""Names joined by points, and brackets inside each other."""
+"""Brackets inside each other."""
 LONGEST_WORD = 1000
 """Characters of a number or of a bare name."""
 
@@ -49,7 +55,9 @@ def bounded(text: str, file: str) -> None:
 
     Parameters: text, TOML or meant to be; file, the name that messages use. Errors: CaseError with the line.
     """
-    parts = joined = depth = 0
+    if text.count("\\") > MOST_ESCAPES:
+        raise _much(text, 0, file, "too many backslashes", f"{MOST_ESCAPES}")
+    parts = points = joined = depth = 0
     for match in _PART.finditer(text):
         kind, sign, at = match.lastgroup, match.group(), match.start()
         if kind == "open":
@@ -59,10 +67,13 @@ def bounded(text: str, file: str) -> None:
         if kind != "sign":
             continue
         parts += sign not in "]}"
-        joined = joined + 1 if sign == "." else 0 if sign in "=,[\n" else joined
+        points += joined * {"=": 4, "]": 1}.get(sign, 0)
+        joined = joined + 1 if sign == "." else 0 if sign in "=,[]\n" else joined
         depth += (sign in "[{") - (sign in "]}")
-        if joined >= DEEPEST:
-            raise _much(text, at, file, "names are nested too deeply", f"{DEEPEST} names joined by points")
+        if joined >= LONGEST_NAME:
+            raise _much(text, at, file, "names are nested too deeply", f"{LONGEST_NAME} names joined by points")
+        if points > MOST_POINTS:
+            raise _much(text, at, file, "too many names joined by points", f"{MOST_POINTS} points, one in a key counted as four")
         if depth > DEEPEST:
             raise _much(text, at, file, "tables or arrays are nested too deeply", f"{DEEPEST} levels")
         if parts > MOST_PARTS:
@@ -78,6 +89,7 @@ def _syntax(message: str, text: str, file: str) -> Fault:
     lines = text.split("\n")
     what = message[: found.start()] if found else message
     what = _KEY_TWICE.sub("a key is stated twice", what[:1].lower() + what[1:])
+    what = what.replace("invalid date or datetime", "no such date or time")
     what = _TABLE_TWICE.sub("a table is stated twice, or added to where it stands in one line", what)
     if found is None:
         return Fault(file, "", f"not TOML: {what}")
