@@ -13,7 +13,7 @@ from collections.abc import Callable, Sequence
 from typing import Any, NoReturn
 
 from cycle.atomic import new_file, trouble
-from cycle.errors import CaseError, DuctwalkError
+from cycle.errors import CaseError, DuctwalkError, printable
 from tui import crash, interrupt, shipped
 from tui.output import STANDARD_INPUT, emit, load_case, near, prepare_streams, tell
 
@@ -136,7 +136,7 @@ def _check(options: argparse.Namespace) -> int:
             tell(str(error))
             status = BAD_INPUT
         else:
-            emit(f"{name}: ok\n")
+            emit(f"{printable(name, None)}: ok\n")
     return status
 
 

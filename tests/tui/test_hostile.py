@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+import subprocess
+import sys
 from pathlib import Path
 
 import pytest
@@ -9,7 +11,8 @@ import pytest
 from tests import hostile_files
 from tests.hostile import large
 from tests.hostile.running import TYPES, Trial, expected, furnish, run, shortened, trials
-from tests.tui.command_support import QUICK
+from tests.tui.command_support import QUICK, environment
+from tui import line, output
 
 KINDS = ("case", "trajectory", "walk", "setting", "place")
 
@@ -54,3 +57,72 @@ def test_a_stored_walk_of_many_values_takes_no_memory(tmp_path: Path, name: str)
     found = hostile_files.cost(Trial(name, ("compare", "quick.toml", "x.json"), "x.json", trial.content), tmp_path)
     assert found.status == 2
     assert found.megabytes <= hostile_files.MOST_MEGABYTES
+
+
+EVIL = "\x1b[2J\x9b\u202e\u2066\u200e\u061c\u200b\u034f\ufeff"
+ESCAPED = r"\x1b[2J\x9b\u202e\u2066\u200e\u061c\u200b\u034f\ufeff"
+
+
+@pytest.mark.parametrize("form", ["text", "markdown", "csv", "json"])
+def test_titles_notes_and_names_of_files_reach_no_output_raw(tmp_path: Path, monkeypatch: pytest.MonkeyPatch, form: str) -> None:
+    monkeypatch.chdir(tmp_path)
+    text = 'notes = "{evil}"\n' + QUICK.replace("invented", "{evil}")
+    (tmp_path / f"{EVIL}.toml").write_text(text.replace("{evil}", "".join(f"\\u{ord(c):04x}" for c in EVIL)), encoding="utf-8")
+    for more in ((), ("--along", "t.csv")):
+        (tmp_path / "t.csv").write_text("flight.mach\n7\n0.01\n")
+        status, out, told = run("solve", f"{EVIL}.toml", "--format", form, *more)
+        assert status == (3 if more else 0)
+        assert all(line.isprintable() for line in (out + told).split("\n"))
+        assert "\\u202e" in out or "\\\\u202e" in out
+    for command in (("compare", f"{EVIL}.toml", f"{EVIL}.toml"), ("explain", "thrust", f"{EVIL}.toml"), ("check", f"{EVIL}.toml")):
+        status, out, told = run(*command)
+        assert status == 0
+        assert all(line.isprintable() for line in (out + told).split("\n"))
+
+
+def test_a_terminal_gets_nothing_raw_and_a_file_all(capsys: pytest.CaptureFixture[str], monkeypatch: pytest.MonkeyPatch) -> None:
+    output.emit(f"a\t{EVIL}\n")
+    assert capsys.readouterr().out == f"a\t{EVIL}\n"
+    monkeypatch.setattr(sys.stdout, "isatty", lambda: True)
+    output.emit(f"a\t{EVIL}\n")
+    assert capsys.readouterr().out == f"a\t{ESCAPED}\n"
+    output.tell(f"written: {EVIL}")
+    assert capsys.readouterr().err == f"written: {ESCAPED}\n"
+
+
+def test_the_screen_paints_no_control_character_whatever_it_is_given() -> None:
+    assert all(character.isprintable() for character, _ in line.cells(line.line(EVIL + "x\n\t\x00"), 30))
+
+
+def test_standard_output_is_no_name_of_a_stored_walk_and_an_empty_name_is_none(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    monkeypatch.chdir(tmp_path)
+    (tmp_path / "q.toml").write_text(QUICK)
+    assert run("solve", "q.toml", "-o", "-")[::2] == (
+        2, "-o takes the name of a file: standard output has the results; for JSON there use --format json\n",
+    )  # fmt: skip
+    status, out, told = run("fix-geometry", "q.toml", "-o", "-")
+    assert (status, told) == (0, "") and "(fixed)" in out
+    for command in (("solve", "q.toml", "--along", ""), ("explain", "thrust", ""), ("cases", "narrows", "-o", "")):
+        assert run(*command)[0] == 2
+    assert [path.name for path in tmp_path.iterdir()] == ["q.toml"]
+
+
+def test_a_device_is_written_and_a_full_one_is_said(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
+    monkeypatch.chdir(tmp_path)
+    (tmp_path / "q.toml").write_text(QUICK)
+    assert run("solve", "q.toml", "-o", "/dev/null")[::2] == (0, "stored in /dev/null\n")
+    assert run("solve", "q.toml", "-o", "/dev/full")[::2] == (2, "/dev/full: cannot be written: no space left on device\n")
+
+
+@pytest.mark.parametrize("command", [("solve", "{}", "-o", "w.json"), ("new", "-o", "n.toml"), ("cases", "narrows"), ("check", "q.toml")])
+def test_a_deleted_working_folder_is_one_line(tmp_path: Path, command: tuple[str, ...]) -> None:
+    (tmp_path / "q.toml").write_text(QUICK)
+    gone = tmp_path / "gone"
+    gone.mkdir()
+    code = f"import os, sys\nos.rmdir({str(gone)!r})\nfrom tui.__main__ import main\nsys.exit(main())"
+    arguments = [part.format(tmp_path / "q.toml") for part in command]
+    done = subprocess.run(
+        [sys.executable, "-c", code, *arguments], capture_output=True, text=True, cwd=gone, env=environment(tmp_path), check=False
+    )
+    assert done.returncode == 2
+    assert done.stderr.endswith("no such file or directory\n") and done.stderr.count("\n") == 1
