@@ -8,6 +8,8 @@ import stat
 from collections.abc import Callable
 from contextlib import suppress
 
+from cycle.errors import CaseError, Fault, shown
+
 _ROOT = os.path.dirname(os.path.dirname(os.path.realpath(__file__)))
 OWN = tuple(os.path.join(_ROOT, name) for name in ("cycle", "tui", "cases"))
 """Folders of the installed program, without links."""
@@ -46,6 +48,70 @@ def read_file(path: str | os.PathLike[str], most: int) -> tuple[bytes, os.stat_r
         if not stat.S_ISREG(status.st_mode):
             raise Irregular("it is no ordinary file")
         return stream.read(most + 1), status
+
+
+def read_named(name: str, most: int, kind: str) -> tuple[bytes, os.stat_result]:
+    """Content of a file that a user names, and its status.
+
+    name: its path; most: bytes that it may have; kind: what it should be, such as "a case file". Raises CaseError where it cannot be
+    read, is no regular file or is larger.
+    """
+    try:
+        data, status = read_file(name, most)
+    except Irregular:
+        raise _fault(name, f"not {kind}", "a device or pipe", "a file, or - for standard input") from None
+    except IsADirectoryError:
+        raise _fault(name, f"not {kind}", "a directory", "a file, or - for standard input") from None
+    except (OSError, ValueError) as error:
+        raise trouble(name, "read", error) from None
+    if len(data) > most:
+        raise _fault(name, "too large", f"{max(status.st_size, len(data))} bytes", f"at most {most} bytes")
+    return data, status
+
+
+def trouble(name: str, doing: str, error: OSError | ValueError) -> CaseError:
+    """What keeps a file from being read or written as a CaseError. name: its path; doing: "read" or "written"; error: as raised."""
+    if isinstance(error, OSError):
+        return _fault(name, f"cannot be {doing}: {(error.strerror or str(error)).lower()}")
+    return _fault(name, "no name of a file", shown(name), "a path")
+
+
+def _fault(file: str, text: str, given: str = "", allowed: str = "") -> CaseError:
+    return CaseError([Fault(file, "", text, given, allowed)])
+
+
+def place_of(name: str) -> tuple[str, os.stat_result | None]:
+    """Where a file that a user names is written, links followed, and the status of what is there, None for nothing.
+
+    name: its path. Raises CaseError where no file can be: in a missing folder, or in the place of anything but a file or a device of
+    characters. A pipe would be waited for, and a disk is no file.
+    """
+    try:
+        target = os.path.realpath(name)
+        os.stat(os.path.dirname(target))
+        status = os.stat(target) if os.path.lexists(target) else None
+    except (OSError, ValueError) as error:
+        raise trouble(name, "written", error) from None
+    if status is not None and not (stat.S_ISREG(status.st_mode) or stat.S_ISCHR(status.st_mode)):
+        given = "a directory" if stat.S_ISDIR(status.st_mode) else "a pipe, socket or disk"
+        raise _fault(name, "cannot be written", given, "a file")
+    return target, status
+
+
+def write_named(name: str, data: bytes) -> None:
+    """Write a file that a user names: a regular one or none yet whole or not at all, a device of characters without waiting for it.
+
+    name: its path, a link is followed. Raises CaseError where it cannot be written; an existing file is then untouched.
+    """
+    target, status = place_of(name)
+    try:
+        if status is None or stat.S_ISREG(status.st_mode):
+            replace_file(target, data)
+        else:
+            with os.fdopen(os.open(target, os.O_WRONLY | os.O_NONBLOCK | os.O_NOCTTY), "wb") as device:
+                device.write(data)
+    except OSError as error:
+        raise trouble(name, "written", error) from error
 
 
 def new_file(path: str | os.PathLike[str], data: bytes) -> None:

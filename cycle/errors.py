@@ -2,8 +2,10 @@
 
 from __future__ import annotations
 
+import re
 from collections.abc import Iterable, Mapping
 from dataclasses import dataclass
+from datetime import date, time
 
 MOST_FAULTS = 50
 """Faults printed of one file; the rest is counted."""
@@ -13,14 +15,21 @@ class DuctwalkError(Exception):
     """Base of every error that the program raises on purpose."""
 
 
-def printable(text: str, longest: int = 80) -> str:
+# fillers and selectors that count as printable and show nothing
+_HIDDEN = re.compile("[\u034f\u115f\u1160\u17b4\u17b5\u180b-\u180f\u3164\ufe00-\ufe0f\uffa0\U000e0100-\U000e01ef]")
+
+
+def printable(text: str, longest: int | None = 80) -> str:
     """Text safe and short enough for one line of a terminal.
 
-    Parameters: text, any string; longest, number of characters kept.
-    Returns: the text with control characters and line ends escaped, cut with "..." where it is longer.
+    Parameters: text, any string; longest, number of characters kept, None for all.
+    Returns: the text with line ends, control characters, marks of direction and what has no width escaped, cut with "..." where it is
+    longer.
     """
-    cut = text if len(text) <= longest else text[: longest - 3] + "..."
-    return "".join(c if c.isprintable() else c.encode("unicode_escape").decode("ascii") for c in cut)
+    cut = text if longest is None or len(text) <= longest else text[: longest - 3] + "..."
+    if cut.isprintable() and _HIDDEN.search(cut) is None:
+        return cut
+    return "".join(c if c.isprintable() and not _HIDDEN.match(c) else c.encode("unicode_escape").decode("ascii") for c in cut)
 
 
 def shown(value: object, longest: int = 64) -> str:
@@ -35,6 +44,10 @@ def shown(value: object, longest: int = 64) -> str:
         return "true" if value else "false"
     if isinstance(value, int) and value.bit_length() > 128:
         return "an integer beyond the range of numbers"
+    if value is None:
+        return "none"
+    if isinstance(value, (date, time)):
+        return value.isoformat()
     if isinstance(value, Mapping):
         return "a table"
     if isinstance(value, (list, tuple)):
@@ -59,7 +72,8 @@ class Fault:
         if self.line is not None:
             where = f"line {self.line}" + ("" if self.column is None else f", column {self.column}")
         head = ": ".join(printable(part, 200) for part in (self.file, where, self.text) if part)
-        tail = "; ".join(f"{word} {what}" for word, what in (("given", self.given), ("allowed", self.allowed)) if what)
+        told = (("given", self.given), ("allowed", self.allowed))
+        tail = "; ".join(f"{word} {printable(what, None)}" for word, what in told if what)
         return f"{head}: {tail}" if tail else head
 
 

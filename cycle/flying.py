@@ -20,7 +20,7 @@ from collections.abc import Iterator, Mapping
 from dataclasses import dataclass, replace
 from typing import TYPE_CHECKING
 
-from cycle.atomic import Irregular, read_file
+from cycle.atomic import read_named
 from cycle.case.rules import bounds, groups_of, members_present, outside
 from cycle.errors import CaseError, Fault, UnitError, shown
 from cycle.quantities import GROUPS, INPUTS, Input, input_of
@@ -36,6 +36,7 @@ LARGEST = 1 << 20
 MOST_ROWS = 20_000
 MOST_COLUMNS = 32
 
+_LINE_END = re.compile(r"\r\n|\n|\r")
 _HEAD = re.compile(r"\s*([A-Za-z0-9_.]{1,80})\s*(?:\[([^\[\]]{0,40})\])?\s*")
 
 
@@ -82,14 +83,7 @@ def read_trajectory(path: str | os.PathLike[str]) -> Trajectory:
     Errors: CaseError with every fault: file, line, column, what was given and what is allowed; also where it cannot be read.
     """
     name = os.fspath(path)
-    try:
-        data, _ = read_file(name, LARGEST)
-    except Irregular:
-        raise _one(name, "not a file of rows", "a device or pipe", "a CSV file") from None
-    except OSError as error:
-        raise _one(name, f"cannot be read: {(error.strerror or str(error)).lower()}") from None
-    except ValueError:
-        raise _one(name, "no name of a file", shown(name), "a path") from None
+    data, _ = read_named(name, LARGEST, "a file of rows")
     return parse_trajectory(data, name)
 
 
@@ -121,15 +115,15 @@ def _one(file: str, text: str, given: str = "", allowed: str = "") -> CaseError:
 def _lines(text: str, name: str) -> list[tuple[int, list[str]]]:
     """Line number and cells of every line that says something; the first one is the header."""
     found: list[tuple[int, list[str]]] = []
-    for number, line in enumerate(text.splitlines(), 1):
+    for number, line in enumerate(_LINE_END.split(text), 1):
         if not line.strip() or line.lstrip().startswith("#"):
             continue
         if len(found) > MOST_ROWS:
             raise _one(name, "too many rows", f"more than {MOST_ROWS}", f"at most {MOST_ROWS}")
         try:
             cells = next(csv.reader(io.StringIO(line), skipinitialspace=True, strict=True))
-        except csv.Error as error:
-            raise _one(name, f"line {number} is not CSV", shown(line), str(error)) from None
+        except csv.Error:
+            raise _one(name, f"line {number} is not CSV", shown(line), "cells between commas, quotes in pairs") from None
         found.append((number, [cell.strip() for cell in cells]))
     if not found:
         raise _one(name, "the file is empty", "nothing", "a row of keys, then rows of numbers")

@@ -5,16 +5,16 @@ from __future__ import annotations
 import json
 import math
 import os
-import stat
+import re
 import sys
 from collections.abc import Callable, Iterable, Mapping
 from dataclasses import dataclass
 from datetime import UTC, datetime
-from pathlib import Path
+from itertools import islice
 from typing import TYPE_CHECKING, Any
 
-from cycle.atomic import replace_file
-from cycle.errors import CaseError, Fault
+from cycle.atomic import write_named
+from cycle.errors import CaseError, Fault, shown
 from cycle.glossary import ENTRIES, mode_of, no_value, process_figure
 from cycle.quantities import INPUTS, OUTPUTS, Input
 from cycle.units import si_unit
@@ -27,6 +27,11 @@ FORMAT = 1
 KIND = "stored walk"
 LARGEST_FILE = 16 * 1024 * 1024
 """Bytes of the largest stored file that is read."""
+
+MOST_PARTS = 2_000_000
+"""Commas, colons and brackets of a stored file that is read."""
+LONGEST_INTEGER = 1000
+_JSON_PART = re.compile(r'"(?:[^"\\]|\\.)*+"?|[,:\[{]', re.DOTALL)
 
 Json = dict[str, Any]
 
@@ -250,25 +255,51 @@ def read_stored(content: bytes, file: str) -> tuple[Stored, ...]:
     """
     if len(content) > LARGEST_FILE:
         raise _fault(file, "", "too large for stored walks", f"{len(content)} bytes", f"{LARGEST_FILE} bytes")
-    try:
-        data = json.loads(content, parse_constant=_no_constant)
-    except (ValueError, RecursionError) as error:
-        raise _fault(file, "", f"not a stored walk: {str(error) or 'nested too deeply'}") from error
+    data = _parsed(content, file)
     found = data if isinstance(data, list) else [data]
     if not found:
         raise _fault(file, "", "holds no stored walk")
     return tuple(_stored(item, file) for item in found)
 
 
-def _no_constant(text: str) -> float:
+def _parsed(content: bytes, file: str) -> Any:
+    """Plain data of JSON, with the work of reading it bounded before it starts."""
+    try:
+        text = content.decode("utf-8-sig")
+        if sum(map(text.count, ",:[{")) > MOST_PARTS and _has_too_many(text):
+            raise _fault(file, "", "too much for stored walks", f"more than {MOST_PARTS} values", f"at most {MOST_PARTS}")
+        return json.loads(text, parse_constant=_no_number, parse_int=_integer)
+    except UnicodeDecodeError as error:
+        raise _fault(file, "", "not UTF-8 text", f"byte 0x{content[error.start]:02x}", "UTF-8") from None
+    except json.JSONDecodeError as error:
+        raise CaseError((Fault(file, "", "not a stored walk: not JSON", "", "", error.lineno, error.colno),)) from None
+    except RecursionError:
+        raise _fault(file, "", "not a stored walk: nested too deeply") from None
+    except ValueError as error:
+        raise _fault(file, "", f"not a stored walk: {error}") from None
+
+
+def _has_too_many(text: str) -> bool:
+    """Whether JSON text has more signs than a reader is given, those in strings not counted."""
+    signs = (match for match in _JSON_PART.finditer(text) if match[0][0] != '"')
+    return next(islice(signs, MOST_PARTS, None), None) is not None
+
+
+def _integer(text: str) -> int:
+    if len(text) > LONGEST_INTEGER:
+        raise ValueError(f"a number has more than {LONGEST_INTEGER} digits")
+    return int(text)
+
+
+def _no_number(text: str) -> float:
     raise ValueError(f"{text} is not a number")
 
 
 def _stored(item: Any, file: str) -> Stored:
     if not isinstance(item, dict) or item.get("kind") != KIND:
-        raise _fault(file, "kind", "not a stored walk", allowed=repr(KIND))
+        raise _fault(file, "kind", "not a stored walk", allowed=shown(KIND))
     if item.get("format") != FORMAT:
-        raise _fault(file, "format", "not a format of stored walks that this version reads", repr(item.get("format"))[:40], "1")
+        raise _fault(file, "format", "not a format of stored walks that this version reads", shown(item.get("format")), "1")
     words = ("name", "version", "species_data", "date", "case_text")
     for key in words:
         if not isinstance(item.get(key), str):
@@ -306,7 +337,7 @@ def _check_figures(walk: Json, file: str) -> None:
 def _check_table(table: Json, keys: Iterable[str], where: str, file: str) -> None:
     for key in keys:
         if not is_figure(table.get(key)):
-            raise _fault(file, f"{where}.{key}", "neither a number nor null", repr(table.get(key))[:40])
+            raise _fault(file, f"{where}.{key}", "neither a number nor null", shown(table.get(key)))
 
 
 def _check_inputs(case: Json, file: str) -> None:
@@ -316,7 +347,7 @@ def _check_inputs(case: Json, file: str) -> None:
         if value is _NO_TABLE:
             raise _fault(file, f"walk.case.{entry.section}", "not a table of a case")
         if value is not None and not _KINDS[entry.kind](value):
-            raise _fault(file, f"walk.case.{entry.key}", f"no {entry.kind}", repr(value)[:40])
+            raise _fault(file, f"walk.case.{entry.key}", f"no {entry.kind}", shown(value))
 
 
 _NO_TABLE = object()
@@ -358,16 +389,8 @@ def _fault(file: str, key: str, text: str, given: str = "", allowed: str = "") -
 
 
 def write(path: str | os.PathLike[str], text: str) -> None:
-    """Write a file whole or not at all: a temporary file beside it, synced, then put in its place.
+    """Write a file whole or not at all. path: a link is followed to its target; a device of characters is written directly.
 
-    A link is followed to its target; what is no regular file (a device, a pipe) is written directly.
     Raises CaseError where the file cannot be written; an existing one is then untouched.
     """
-    target = Path(path).resolve()
-    try:
-        if target.exists() and not stat.S_ISREG(target.stat().st_mode):
-            target.write_text(text, encoding="utf-8")
-            return
-        replace_file(str(target), text.encode("utf-8"))
-    except OSError as error:
-        raise _fault(str(path), "", f"cannot be written: {error.strerror or error}") from error
+    write_named(os.fspath(path), text.encode("utf-8"))

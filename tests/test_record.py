@@ -102,7 +102,7 @@ def changed(kept: dict[str, Any], path: str, value: Any) -> bytes:
         ("walk", None, "walk: not a stored walk"),
         ("walk/stations", [], "walk.stations: not a stored walk"),
         ("walk/stations/4", "hot", "walk.stations.4: not a stored walk"),
-        ("walk/stations/4/pressure", "high", "walk.stations.4.pressure: neither a number nor null: given 'high'"),
+        ("walk/stations/4/pressure", "high", 'walk.stations.4.pressure: neither a number nor null: given "high"'),
         ("walk/performance/thrust", True, "walk.performance.thrust: neither a number nor null"),
         ("walk/performance/thrust", 10**400, "walk.performance.thrust: neither a number nor null"),
         ("walk/processes", {}, "walk.processes: not a stored walk"),
@@ -115,7 +115,7 @@ def changed(kept: dict[str, Any], path: str, value: Any) -> bytes:
         ("walk/case/combustor", {"area": [{"x": "far"}]}, "walk.case.combustor.area: no rows"),
         ("walk/case/combustor", {"area": [{}] * 65}, "walk.case.combustor.area: no rows"),
         ("walk/case/flight", 8.0, "walk.case.flight: not a table of a case"),
-        ("walk/case/flight/mach", "fast", "walk.case.flight.mach: no number: given 'fast'"),
+        ("walk/case/flight/mach", "fast", 'walk.case.flight.mach: no number: given "fast"'),
         ("walk/case/flight/mach", 10**400, "walk.case.flight.mach: no number"),
         ("walk/case/fuel/name", 7, "walk.case.fuel.name: no choice: given 7"),
     ],
@@ -190,7 +190,7 @@ def test_a_failed_write_leaves_the_old_file(tmp_path: Path, monkeypatch: pytest.
         raise OSError(28, os.strerror(28))
 
     monkeypatch.setattr(os, "fsync", full)
-    with pytest.raises(CaseError, match="cannot be written: No space left on device"):
+    with pytest.raises(CaseError, match="cannot be written: no space left on device"):
         write(target, "new")
     assert target.read_text() == "old"
     assert [p.name for p in tmp_path.iterdir()] == ["walk.json"]

@@ -42,7 +42,7 @@ class Flight:
 
 def run(options: argparse.Namespace) -> int:
     """Fly the cases of the command line along the trajectory and write them; returns the highest exit status."""
-    if options.output or options.referee or options.sensitivities or options.rows != "stations":
+    if options.output is not None or options.referee or options.sensitivities or options.rows != "stations":
         raise DuctwalkError("--along takes none of -o, --referee, --sensitivities and --rows: those are for single points")
     trajectory = read(options.along)
     changes = settings(options.set)
@@ -85,7 +85,8 @@ def status(flight: Flight) -> int:
 
 def flight_blocks(walk: Walk, trajectory: Trajectory, system: str) -> list[Block]:
     """The flight as blocks: a row a point, what the words mean, why points have no solution."""
-    heads, columns = zip(*_columns(walk, trajectory, system), strict=True)
+    told = list(_columns(walk, trajectory, system))
+    heads, columns = [head for head, _ in told], [cells for _, cells in told]
     outcome = [mode if found == "solved" else f"no: {found}" for mode, found in zip(_modes(walk), walk.status, strict=True)]
     numbers = [str(i + 1) for i in range(walk.size)]
     rows = tuple(zip(numbers, outcome, *columns, strict=True))

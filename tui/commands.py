@@ -12,13 +12,13 @@ import sys
 from collections.abc import Callable, Sequence
 from typing import Any, NoReturn
 
-from cycle.atomic import new_file
-from cycle.errors import CaseError, DuctwalkError, Fault
-from tui import crash, shipped
+from cycle.atomic import new_file, trouble
+from cycle.errors import CaseError, DuctwalkError, printable
+from tui import crash, interrupt, shipped
 from tui.output import STANDARD_INPUT, emit, load_case, near, prepare_streams, tell
 
 PROGRAM = "ductwalk"
-BAD_INPUT, INTERRUPTED = 2, 130
+BAD_INPUT = 2
 STANDARD_OUTPUT = "-"
 LATER = ("study", "optimise", "report")
 """Commands that are planned and refused in this version."""
@@ -120,7 +120,7 @@ def _compare_options(parser: argparse.ArgumentParser) -> None:
 
 
 def _solve(options: argparse.Namespace) -> int:
-    if options.along:
+    if options.along is not None:
         from tui.along import run
     else:
         from tui.solve import run
@@ -136,7 +136,7 @@ def _check(options: argparse.Namespace) -> int:
             tell(str(error))
             status = BAD_INPUT
         else:
-            emit(f"{name}: ok\n")
+            emit(f"{printable(name, None)}: ok\n")
     return status
 
 
@@ -149,13 +149,13 @@ def _new(options: argparse.Namespace) -> int:
 
 def _write_new(text: str, path: str | None) -> None:
     """A case to a file that is not there yet, or to standard output."""
-    if not path:
+    if path is None or path == STANDARD_OUTPUT:
         emit(text)
         return
     try:
         new_file(path, text.encode("utf-8"))
-    except OSError as error:
-        raise CaseError((Fault(path, "", f"cannot be written: {error.strerror}"),)) from error
+    except (OSError, ValueError) as error:
+        raise trouble(path, "written", error) from error
     tell(f"written: {path}")
 
 
@@ -166,8 +166,8 @@ def _cases(options: argparse.Namespace) -> int:
         emit(shipped.listing())
         return 0
     text = shipped.content(options.name).decode("utf-8")
-    target = options.output or os.path.basename(shipped.path_of(options.name))
-    _write_new(text, None if target == STANDARD_OUTPUT else target)
+    own = os.path.basename(shipped.path_of(options.name))
+    _write_new(text, own if options.output is None else options.output)
     return 0
 
 
@@ -279,6 +279,7 @@ def _screen(name: str | None) -> int:
     if _has_terminal() and path != STANDARD_INPUT:
         from tui.app import run
 
+        interrupt.release()
         return run(path)
     status = _parsed(["solve", path])
     if status != BAD_INPUT and path != STANDARD_INPUT:
@@ -327,7 +328,7 @@ def main(argv: Sequence[str] | None = None) -> int:
         return BAD_INPUT
     except KeyboardInterrupt:
         tell("interrupted")
-        return INTERRUPTED
+        return interrupt.STATUS
 
 
 if __name__ == "__main__":

@@ -25,7 +25,7 @@ _DIGITS = 6
 def run(options: argparse.Namespace) -> int:
     """Explain the quantity of the command line; the exit status is that of the case, 0 without one."""
     named = find(options.quantity)
-    found = outcome(options.case, {}) if options.case else None
+    found = outcome(options.case, {}) if options.case is not None else None
     if found is not None and found.walk is None:
         return exit_status(found)
     blocks = [block for entry in named for block in explanation(entry, found)]

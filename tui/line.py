@@ -81,7 +81,8 @@ def cells(content: Line, columns: int) -> list[Cell]:
         for character in text:
             size = breadth(character)
             if size and len(out) + size <= columns:
-                out.append((character, style))
+                # the last gate: whatever a view forgot to clean, no control character is sent
+                out.append((character if character.isprintable() else "?", style))
                 out.extend([("", style)] * (size - 1))
     out.extend([(" ", PLAIN)] * (columns - len(out)))
     return out

@@ -5,16 +5,19 @@ from __future__ import annotations
 import contextlib
 import difflib
 import os
+import re
 import sys
 from collections.abc import Iterable
 from typing import TYPE_CHECKING, TextIO
 
-from cycle.errors import CaseError, Fault
+from cycle.atomic import read_named, trouble
+from cycle.errors import CaseError, Fault, printable
 
 if TYPE_CHECKING:
     from cycle.case import Case
 
 STANDARD_INPUT = "-"
+_RUN = re.compile(r"[^\n\t]+")
 LARGEST_CASE = 1024 * 1024
 """Bytes of a case that are read from standard input."""
 
@@ -32,6 +35,11 @@ def prepare_streams() -> None:
             stream.reconfigure(errors="backslashreplace")
 
 
+def harmless(text: str) -> str:
+    """`text` with all but its line ends and tabs escaped that would drive a terminal."""
+    return _RUN.sub(lambda run: printable(run[0], None), text)
+
+
 def emit(text: str) -> bool:
     """Write results to standard output at once.
 
@@ -40,14 +48,14 @@ def emit(text: str) -> bool:
     if sys.stdout is None:
         return False
     try:
-        sys.stdout.write(text)
+        sys.stdout.write(harmless(text) if sys.stdout.isatty() else text)
         sys.stdout.flush()
     except BrokenPipeError:
         _discard(sys.stdout)
         return False
     except OSError as error:
         _discard(sys.stdout)
-        raise CaseError((Fault("standard output", "", f"cannot be written: {error.strerror}"),)) from error
+        raise trouble("standard output", "written", error) from error
     return True
 
 
@@ -56,7 +64,7 @@ def tell(text: str) -> None:
     if sys.stderr is None:
         return
     try:
-        print(text, file=sys.stderr, flush=True)
+        print(harmless(text), file=sys.stderr, flush=True)
     except OSError:
         _discard(sys.stderr)
 
@@ -72,15 +80,14 @@ def read_content(name: str, largest: int = LARGEST_CASE) -> bytes:
 
     Raises CaseError where it cannot be read.
     """
+    if name != STANDARD_INPUT:
+        return read_named(name, largest, "a case file or stored walks")[0]
     try:
-        if name != STANDARD_INPUT:
-            with open(name, "rb") as file:
-                return file.read(largest + 1)
         if sys.stdin is None:
             raise CaseError((Fault("standard input", "", "is closed"),))
         return sys.stdin.buffer.read(largest + 1)
     except OSError as error:
-        raise CaseError((Fault(name, "", f"cannot be read: {error.strerror}"),)) from error
+        raise trouble("standard input", "read", error) from error
 
 
 def load_case(name: str) -> Case:

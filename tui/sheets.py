@@ -7,6 +7,7 @@ import io
 from collections.abc import Callable, Iterable, Sequence
 from typing import Any
 
+from cycle.errors import printable
 from cycle.glossary import PROFILE
 from cycle.quantities import OUTPUT, OUTPUTS, Input, Output, input_of
 from cycle.record import ENTERING, Json
@@ -117,5 +118,5 @@ def _text(heads: Sequence[str], rows: Iterable[Sequence[Any]]) -> str:
     text = io.StringIO()
     writer = csv.writer(text, lineterminator="\n")
     writer.writerow(heads)
-    writer.writerows(rows)
+    writer.writerows([printable(cell, None) if isinstance(cell, str) else cell for cell in row] for row in rows)
     return text.getvalue()

@@ -3,12 +3,14 @@
 from __future__ import annotations
 
 import argparse
+import os
+import stat
 from collections.abc import Callable, Iterable, Sequence
 from dataclasses import dataclass, field
-from pathlib import Path
 from typing import TYPE_CHECKING
 
 import cycle
+from cycle.atomic import place_of, trouble
 from cycle.case import read_setting
 from cycle.errors import CaseError, DuctwalkError, Fault
 from cycle.record import Json, dumps, is_stored, record, refused, stored, write
@@ -23,6 +25,7 @@ if TYPE_CHECKING:
     from cycle.result import Walk
     from cycle.sensitivity import Sensitivities
 
+STANDARD_OUTPUT = "-"
 SOLVED, BAD_INPUT, NO_SOLUTION, AUDIT_FAILED = 0, 2, 3, 4
 
 
@@ -41,7 +44,7 @@ def run(options: argparse.Namespace) -> int:
         raise DuctwalkError(f"--rows {options.rows} is for --format csv")
     if options.sensitivities and options.format == "csv":
         raise DuctwalkError("--sensitivities is for text, json and markdown; for csv use --rows sensitivities")
-    if options.output:
+    if options.output is not None:
         _check_output(options.output, options.cases)
     changes = settings(options.set)
     write_all = FORMS[options.format]
@@ -55,7 +58,7 @@ def run(options: argparse.Namespace) -> int:
             yield outcomes[-1]
 
     write_all(solved(), len(options.cases), options)
-    if options.output:
+    if options.output is not None:
         _store(options.output, outcomes, options.referee)
     return max((exit_status(o) for o in outcomes), default=SOLVED)
 
@@ -90,17 +93,19 @@ def exit_status(found: Outcome) -> int:
 
 
 def _check_output(path: str, cases: Iterable[str]) -> None:
-    """Refuse to put stored walks in the place of anything else."""
-    target = Path(path)
-    if target.is_file() and any(Path(c).exists() and target.samefile(c) for c in cases):
-        raise CaseError((Fault(path, "", "is a case being solved; give -o another name"),))
-    if not target.is_file():
+    """Refuse to put stored walks where none can be, or in the place of anything else."""
+    if path == STANDARD_OUTPUT:
+        raise DuctwalkError("-o takes the name of a file: standard output has the results; for JSON there use --format json")
+    target, status = place_of(path)
+    if status is None or not stat.S_ISREG(status.st_mode):
         return
+    if any(os.path.exists(name) and os.path.samefile(name, target) for name in cases):
+        raise CaseError((Fault(path, "", "is a case being solved; give -o another name"),))
     try:
-        with target.open("rb") as file:
+        with open(target, "rb") as file:
             start = file.read(256)
     except OSError as error:
-        raise CaseError((Fault(path, "", f"cannot be read: {error.strerror}"),)) from error
+        raise trouble(path, "read", error) from error
     if start.strip() and not is_stored(start):
         raise CaseError((Fault(path, "", "exists and holds no stored walk; give -o another name"),))
 

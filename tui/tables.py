@@ -17,7 +17,7 @@ _NARROWEST = 20  # columns of a column of words
 
 def plain(text: str) -> str:
     """`text` of any length without control characters, so that a file's own words cannot drive the terminal."""
-    return printable(text, len(text))
+    return printable(text, None)
 
 
 def columns(text: str) -> int:

@@ -6,7 +6,9 @@ from collections.abc import Iterable, Mapping
 from typing import Any
 
 import tomlkit
+from tomlkit.exceptions import TOMLKitError
 
+from cycle import toml
 from cycle.case.case import Case, thawed
 from cycle.case.checking import FORMAT, flatten, home
 from cycle.case.leaves import Body, Path, add, is_inline, item, remove, write
@@ -14,19 +16,24 @@ from cycle.case.row_text import change_rows, drop_rows, row_tables
 from cycle.case.rows import TABLES
 from cycle.case.rules import groups_of
 from cycle.case.study_text import change_studies
+from cycle.errors import CaseError, Fault
 from cycle.quantities import INPUT
 
 
 def edited(text: str, case: Case) -> str:
     """Text of a case file that says what the case says.
 
-    Parameters: text, sound TOML; case. Returns: the text with changed, added and removed leaves only.
+    Parameters: text, sound TOML; case. Returns: the text with changed, added and removed leaves only. Errors: CaseError where the text
+    is no TOML or more than is read.
     """
     windows = "\r\n" in text and text.count("\r\n") == text.count("\n")
     source = text.replace("\r\n", "\n") if windows else text
     ended = source.endswith("\n")
-    document = tomlkit.parse(source if ended else source + "\n")
-    data = document.unwrap()
+    data = toml.tables(source, case.name)
+    try:
+        document = tomlkit.parse(source if ended else source + "\n")
+    except TOMLKitError:
+        raise CaseError([Fault(case.name, "", "the text is written in a way that cannot be changed in place; save a copy")]) from None
     before, after = flatten(data), {key: thawed(value) for key, value in case.spelled.items()}
     old, new = _leaves(before), _leaves(after)
     old.update({(name,): data[name] for name in ("format", "title", "notes") if name in data})

@@ -144,7 +144,7 @@ def test_a_fixed_flowpath_solves_to_the_sized_thrust(capsys: pytest.CaptureFixtu
     text = output(capsys, "fix-geometry", "duct.toml")
     assert text == (folder / "fixed.toml").read_text()
     assert main(["fix-geometry", "duct.toml", "-o", "fixed.toml"]) == 2
-    assert "File exists" in capsys.readouterr().err
+    assert "file exists" in capsys.readouterr().err
 
 
 def test_a_fixed_flowpath_has_nothing_left_to_fix(capsys: pytest.CaptureFixture[str], folder: Path) -> None:

@@ -156,7 +156,7 @@ def test_a_full_disk_on_standard_output_is_one_line_and_2(tmp_path: Path) -> Non
             check=False,
         )
     assert done.returncode == 2
-    assert done.stderr == "standard output: cannot be written: No space left on device\n"
+    assert done.stderr == "standard output: cannot be written: no space left on device\n"
 
 
 def test_an_interrupt_ends_with_130(tmp_path: Path) -> None:

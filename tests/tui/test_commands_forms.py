@@ -173,7 +173,7 @@ def test_a_stored_walk_is_not_put_in_the_place_of_anything_else(capsys: pytest.C
 
 def test_an_output_that_cannot_be_written_is_said_and_2(capsys: pytest.CaptureFixture[str], folder: Path) -> None:
     assert main(["solve", "quick.toml", "-o", "missing/walk.json"]) == 2
-    assert capsys.readouterr().err == "missing/walk.json: cannot be written: No such file or directory\n"
+    assert capsys.readouterr().err == "missing/walk.json: cannot be written: no such file or directory\n"
 
 
 def test_an_audit_that_fails_ends_with_4(capsys: pytest.CaptureFixture[str], folder: Path, monkeypatch: pytest.MonkeyPatch) -> None:

@@ -42,7 +42,7 @@ def test_a_shipped_case_is_copied_out_and_nothing_is_overwritten(tmp_path: Path,
     target.write_text("mine")
     again = run(tmp_path, "cases", "narrows", *more)
     assert again.returncode == 2
-    assert "File exists" in again.stderr
+    assert "file exists" in again.stderr
     assert target.read_text() == "mine"
 
 

@@ -1,0 +1,1 @@
+"""Files and words that nobody writes by accident: what they hold, and the lines that the program says of them."""
