@@ -10,7 +10,7 @@ from collections.abc import Callable, Mapping
 from dataclasses import dataclass, field, replace
 from typing import TYPE_CHECKING, Any, Literal, TypeGuard
 
-from cycle.quantities import HEADLINE
+from cycle.quantities import GROUP, HEADLINE
 from tui.actions import ACTIONS, Action
 from tui.figures import STATIONS, Figures, carried
 
@@ -76,7 +76,7 @@ class Session:
     `figures` belong to; good: the last walk with a solution; saved: the case as it stands in the file; borders: the heat input at
     which a duct leaves each regime, None until they are solved for; influence: sensitivities, those of the case before until the new
     ones are there, None before the first; watched: the figure that graphs and sensitivities show, "" for the case's own first choice;
-    actions: with the keys that hold."""
+    unkept: why edits are not kept on disk, "" while they are; actions: with the keys that hold."""
 
     path: str
     case: Case | None = None
@@ -102,6 +102,7 @@ class Session:
     watched: str = ""
     note: str = "reading the case ..."
     faults: tuple[str, ...] = ()
+    unkept: str = ""
     actions: tuple[Action, ...] = ACTIONS
 
     @property
@@ -125,7 +126,8 @@ def _is_set(said: Any) -> bool:
 
 
 def _is_switch(said: Any) -> bool:
-    return isinstance(said, list | tuple) and len(said) == 3 and all(isinstance(word, str) for word in said[:2])
+    known = isinstance(said, list | tuple) and len(said) == 3 and all(isinstance(word, str) for word in said[:2])
+    return known and said[0] in GROUP
 
 
 def _is_study(said: Any) -> bool:

@@ -69,7 +69,7 @@ class Asking(Desk, inherit_bindings=False):
     def _ask(self, place: Place) -> None:
         """Have the worker put the walk's numbers into an equation."""
         found = self.session.figures
-        if found is not None:
+        if found is not None and found.walk is not None:
             walk = found.walk
             self.engine.newest("explain", self.session.generation, lambda: (place, walk, tracing.worked(place, walk)))
 

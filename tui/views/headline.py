@@ -6,7 +6,7 @@ import os
 
 from cycle.quantities import MODES, OUTPUT
 from cycle.units import format_number, show
-from tui.figures import NAN, Figures, Margin
+from tui.figures import DEFECT, NAN, Figures, Margin
 from tui.line import BOLD, DIM, NEAR, OVER, PLAIN, Line, clean, fit, line, width, wrap
 from tui.session import Session, performance_keys
 from tui.views.numbers import LIMIT_FIGURES, difference, figure, quantity, unit
@@ -88,7 +88,8 @@ def _figures(session: Session, columns: int) -> list[Line]:
     if found is None:
         return [line("first walk not solved yet"), line("")]
     if not found.solved:
-        words = wrap(clean(f"NO SOLUTION: {found.reason or found.status}").split(), columns)
+        head = "NO FIGURES" if found.status == DEFECT else "NO SOLUTION"
+        words = wrap(clean(f"{head}: {found.reason or found.status}").split(), columns)
         words = [*words[:2], fit(" ".join(words[2:]), columns)]
         return [line((w, OVER)) for w in words]
     return [_headline(session, found, columns), _against(session, columns)]

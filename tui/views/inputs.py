@@ -114,6 +114,12 @@ def answer(session: Session, wide: int, height: int) -> list[Line]:
 
 
 def _words(session: Session, room: int) -> tuple[str, Style]:
+    if session.unkept and not (session.entry is not None and session.entry.fault):
+        return f"{session.unkept} | {_said(session, room)[0]}", OVER
+    return _said(session, room)
+
+
+def _said(session: Session, room: int) -> tuple[str, Style]:
     if session.entry is not None and session.entry.fault:
         return session.entry.fault, OVER
     if session.faults and session.case is not None:
