@@ -6,19 +6,15 @@ import hashlib
 import os
 import re
 import stat
-import tomllib
 from pathlib import Path
 from typing import Any
 
+from cycle import toml
 from cycle.atomic import Irregular, read_file, replace_file
 from cycle.case.case import Case, Stamp, build
 from cycle.errors import CaseError, Fault, FileChanged, shown
 
-LARGEST = 1 << 20
-"""Bytes read of a case file at most."""
 _DEVICE = ("not a case file", "a device or pipe", "a file, or - for standard input")
-_CHAIN = re.compile(r"(?<![\w\"'-])(?:[\w\"'-]++[ \t]*+\.[ \t]*+){32}")
-_POSITION = re.compile(r" \(at (?:line (\d+), column (\d+)|end of document)\)$")
 _SETTING = re.compile(r"\s*([A-Za-z0-9_.-]{1,80})\s*=\s*(.*?)\s*", re.DOTALL)
 
 
@@ -42,8 +38,8 @@ def loads(text: str | bytes, name: str = "-") -> Case:
     Errors: CaseError with every fault.
     """
     data = text.encode("utf-8", "surrogatepass") if isinstance(text, str) else text
-    if len(data) > LARGEST:
-        raise _one(name, "too large", f"more than {LARGEST} bytes", f"at most {LARGEST} bytes")
+    if len(data) > toml.LARGEST:
+        raise _one(name, "too large", f"more than {toml.LARGEST} bytes", f"at most {toml.LARGEST} bytes")
     decoded = _decode(data, name)
     return build(parse(decoded, name), name, None, None, decoded)
 
@@ -59,39 +55,21 @@ def read_setting(text: str) -> tuple[str, object]:
         raise _one("setting", "not a setting", shown(text), "section.key=VALUE, such as flight.mach=7.5 or flight.altitude=27 km")
     key, value = match.groups()
     try:
-        return key, tomllib.loads(f"value = {value}")["value"]
-    except (ValueError, RecursionError):
-        return key, value
+        found = toml.tables(f"value = {value}", "setting")
+    except CaseError:
+        found = {}
+    # more lines than one would bring keys of their own
+    return key, found["value"] if len(found) == 1 else value
 
 
 def parse(text: str, file: str) -> dict[str, Any]:
-    """Tables of TOML text.
+    """Tables of a case file.
 
     Parameters: text; file, the name that messages use. Returns: nested plain data. Errors: CaseError with line and column.
     """
     if not text.strip():
         raise _one(file, "the file is empty", "nothing", "a case; ductwalk new writes one")
-    # a chain of thousands of dotted names costs the reader quadratic time and memory
-    if _CHAIN.search(text):
-        raise _one(file, "names are nested too deeply", "more than 32 names joined by points", "32")
-    try:
-        return tomllib.loads(text)
-    except RecursionError:
-        raise _one(file, "tables or arrays are nested too deeply", "hundreds of levels", "32 levels") from None
-    except ValueError as error:
-        raise CaseError([_syntax(str(error), text, file)]) from None
-
-
-def _syntax(message: str, text: str, file: str) -> Fault:
-    found = _POSITION.search(message)
-    lines = text.split("\n")
-    if found is None:
-        return Fault(file, "", f"not TOML: {message}")
-    line = int(found[1]) if found[1] else len(lines)
-    column = int(found[2]) if found[2] else len(lines[-1]) + 1
-    quoted = lines[line - 1] if line <= len(lines) else ""
-    what = message[: found.start()]
-    return Fault(file, "", f"not TOML: {what[:1].lower()}{what[1:]}", shown(quoted), "", line, column)
+    return toml.tables(text, file)
 
 
 def _one(file: str, text: str, given: str = "", allowed: str = "") -> CaseError:
@@ -105,7 +83,7 @@ def _trouble(file: str, doing: str, error: OSError) -> CaseError:
 def _read(name: str) -> tuple[bytes, float]:
     """Bytes and modification time of a regular file."""
     try:
-        data, status = read_file(name, LARGEST)
+        data, status = read_file(name, toml.LARGEST)
     except Irregular:
         raise _one(name, *_DEVICE) from None
     except IsADirectoryError:
@@ -114,8 +92,8 @@ def _read(name: str) -> tuple[bytes, float]:
         raise _trouble(name, "read", error) from None
     except ValueError:
         raise _one(name, "no name of a file", shown(name), "a path") from None
-    if len(data) > LARGEST:
-        raise _one(name, "too large", f"{max(status.st_size, len(data))} bytes", f"at most {LARGEST} bytes")
+    if len(data) > toml.LARGEST:
+        raise _one(name, "too large", f"{max(status.st_size, len(data))} bytes", f"at most {toml.LARGEST} bytes")
     return data, status.st_mtime
 
 
@@ -168,8 +146,8 @@ def save(case: Case, path: str | os.PathLike[str], expect: Stamp | None = None) 
     if again != case:
         raise _one(name, "not saved: the text would not read back as the same case; save under another name")
     data = text.encode("utf-8")
-    if len(data) > LARGEST:
-        raise _one(name, "not saved: too large", f"{len(data)} bytes", f"at most {LARGEST} bytes")
+    if len(data) > toml.LARGEST:
+        raise _one(name, "not saved: too large", f"{len(data)} bytes", f"at most {toml.LARGEST} bytes")
     try:
         return _write(target, data, name, expect)
     except OSError as error:
