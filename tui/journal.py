@@ -221,6 +221,11 @@ class Journal:
     """All records since the case was last saved, whether they are on disk or not."""
     _kept: int = 0
     """How many of them are in the file."""
+    _saved: int = 0
+    """How many of them are in the file of the case, once the save that runs is done."""
+    _made: int = 0
+    _undone: int = 0
+    """Edits of the journal that may be taken back, and that may be made again."""
     _refused: str = ""
     _out: Written | None = None
 
@@ -234,7 +239,17 @@ class Journal:
         """Write one record, and before it those that the disk refused. It survives the end of this process at once, that of the
         machine within a moment: a thread of its own brings it to the disk, so that a slow home folder never holds the screen up."""
         self._lines.append((json.dumps(record) + "\n").encode())
+        step = ("undo" in record) - ("redo" in record)
+        self._made, self._undone = (self._made - step, self._undone + step) if step else (self._made + 1, 0)
         self._catch_up()
+
+    def knows(self, record: Record) -> bool:
+        """Whether a record can be made again from this journal: what an undo or redo goes back to may be older than the last save."""
+        return self._made > 0 if "undo" in record else self._undone > 0 if "redo" in record else True
+
+    def saving(self) -> None:
+        """The case as it is now is being saved: nothing that follows may go back behind it."""
+        self._saved, self._made, self._undone = len(self._lines), 0, 0
 
     def _catch_up(self) -> None:
         """Write the records that are not in the file; all of them into a new one where there is none, or where it is lost."""
@@ -255,13 +270,10 @@ class Journal:
         self._take(Written.begun(state_directory(), stem(self.path), b"".join(((json.dumps(head) + "\n").encode(), *self._lines))))
 
     def _take(self, new: Written | None, keep: bool = False) -> None:
-        """Go on with another file. keep: whether the one before stays; one that cannot be removed is offered again, which loses nothing."""
+        """Go on with another file. keep: whether the one before stays."""
         old, self._out = self._out, new
         if old is not None:
-            with suppress(OSError):
-                if not keep:
-                    old.file.unlink(missing_ok=True)
-            old.close()
+            old.close(remove=not keep)
 
     def settle(self) -> bool:
         """Bring everything to the disk and wait for it. Returns: whether it is there."""
@@ -272,9 +284,13 @@ class Journal:
         return not self.failure
 
     def restart(self, path: str, content: str) -> None:
-        """Begin again after a save: what was journalled is in the file now."""
-        self.remove()
+        """Begin again after a save: what was journalled until `saving` is in the file now."""
         self.path, self.content = path, content
+        self._lines, self._saved, self._kept = self._lines[self._saved :], 0, 0
+        old, self._out = self._out, None
+        self._catch_up()
+        if old is not None:
+            old.close(remove=not self._refused)
 
     def turn_to(self, path: str, keep: bool) -> None:
         """Begin for another case. keep: whether what is journalled stays on disk, to be offered when the case is opened again."""
@@ -294,3 +310,4 @@ class Journal:
     def _forget(self, keep: bool) -> None:
         self._take(None, keep)
         self._lines, self._kept, self._refused = [], 0, ""
+        self._saved = self._made = self._undone = 0

@@ -16,7 +16,7 @@ from cycle.atomic import read_file
 
 LARGEST = 16 * 1024 * 1024
 """Bytes of a journal that are read at most."""
-MOST_RECORDS, LONGEST_RECORD, DEEPEST = 100_000, 1 << 20, 16
+MOST_RECORDS, LONGEST_RECORD, DEEPEST = 100_000, 4 << 20, 16
 """Records of a journal, bytes of one and levels of tables and arrays in it that are read at most."""
 
 Record = dict[str, Any]
@@ -109,8 +109,7 @@ class Written:
         try:
             new.append(data)
         except OSError:
-            new.close()
-            file.unlink(missing_ok=True)
+            new.close(remove=True)
             raise
         threading.Thread(target=new._bring, name="journal", daemon=True).start()
         return new
@@ -139,8 +138,11 @@ class Written:
         """Whether what was written is still there: another hand may remove the file."""
         return not self.trouble and os.fstat(self.descriptor).st_nlink > 0
 
-    def close(self) -> None:
-        """Close the file and leave it where it is."""
+    def close(self, remove: bool = False) -> None:
+        """Close the file. remove: whether it goes; one that cannot be removed is offered again, which loses nothing."""
         self._closed = True
+        if remove:
+            with suppress(OSError):
+                self.file.unlink(missing_ok=True)
         os.close(self.descriptor)
         self._dirty.set()

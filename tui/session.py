@@ -19,7 +19,8 @@ if TYPE_CHECKING:
     from cycle.sensitivity import Sensitivities
 
 Change = dict[str, Any]
-"""What a user asked of a case, as plain data: {"set": {key: value}}, {"switch": [group, tag, value]} or {"study": [name, study]}."""
+"""What a user asked of a case, as plain data: {"set": {key: value}}, {"switch": [group, tag, value]}, {"study": [name, study]},
+or, where an undo or redo went back behind a save, {"case": its TOML}."""
 
 VIEWS = ("figures", "change against the pin", "change against the pin, %")
 WATCHED_FIRST = ("specific_impulse", "stream_thrust_gain")
@@ -140,7 +141,12 @@ def _is_study(said: Any) -> bool:
 
 
 _VARIED: dict[str, Any] = {"input": str, "from": int | float | str, "to": int | float | str, "points": int}
-_KINDS: dict[str, Callable[[Any], bool]] = {"set": _is_set, "switch": _is_switch, "study": _is_study}
+_KINDS: dict[str, Callable[[Any], bool]] = {
+    "set": _is_set,
+    "switch": _is_switch,
+    "study": _is_study,
+    "case": lambda said: isinstance(said, str),
+}
 
 
 def is_change(said: Any) -> TypeGuard[Change]:
@@ -155,6 +161,10 @@ def apply(case: Case, change: Change) -> Case:
     """
     if "study" in change:
         return case.with_study(*change["study"])
+    if "case" in change:
+        from cycle.case import loads
+
+        return replace(loads(change["case"], case.name), path=case.path, stamp=case.stamp, text=case.text)
     if "switch" in change:
         group, tag, value = change["switch"]
         return case.switch(group, tag, value)

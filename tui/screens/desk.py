@@ -143,7 +143,7 @@ class Desk(Steady[None], inherit_bindings=False):
         changed = new.generation != self.session.generation
         self.session = new
         if changed:
-            self.journal.append(record)
+            self.journal.append(record if self.journal.knows(record) else self._whole())
             self.solve()
         self._rapid = rapid and changed
         if changed:
@@ -154,6 +154,13 @@ class Desk(Steady[None], inherit_bindings=False):
             self._paint_within(MOMENT)
         else:
             self.paint_now()
+
+    def _whole(self) -> dict[str, object]:
+        """The record of an undo or redo that goes back behind a save: the whole case."""
+        from cycle.case.document import edited
+
+        assert self.session.case is not None
+        return {"edit": {"case": edited(self.session.case.text, self.session.case)}}
 
     def solve(self) -> None:
         """Ask the worker for the walk of the present case."""

@@ -278,7 +278,11 @@ class Filing(Desk, inherit_bindings=False):
         case = self.session.case
         if case is None:
             return
+        if self._saving:
+            self.put(replace(self.session, note="saving ...; save again when the file is written"))
+            return
         self._saving += 1
+        self.journal.saving()
         self.engine.do("write", self.session.generation, lambda: write(case, path, stamp))
 
     def was_written(self, result: Result) -> None:
@@ -295,8 +299,7 @@ class Filing(Desk, inherit_bindings=False):
         got: Saved = result.value
         note, moved = f"saved {clean(got.path)}", got.path != self.session.path
         self.session = replace(self.session, path=got.path, saved=got.case, stamp=got.stamp, note=note, faults=())
-        if not self.session.unsaved:
-            self.journal.restart(got.path, got.content)
+        self.journal.restart(got.path, got.content)
         self.paint_now()
         if moved:
             self.case_named()

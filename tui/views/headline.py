@@ -63,7 +63,7 @@ def _title(session: Session, columns: int) -> Line:
     case, found = session.case, session.figures
     assert case is not None
     right = _flight(session, found) if found is not None else ""
-    mark = " *" if session.unsaved else ""
+    mark = f" *{' NOT ON DISK' if session.unkept else ''}" if session.unsaved else ""
     room = columns - width(right) - len(mark) - 2
     left = fit(clean(case.title or case.name), max(room, 8)) + mark
     gap = max(2, columns - width(left) - width(right))

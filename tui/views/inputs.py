@@ -114,9 +114,8 @@ def answer(session: Session, wide: int, height: int) -> list[Line]:
 
 
 def _words(session: Session, room: int) -> tuple[str, Style]:
-    if session.unkept and not (session.entry is not None and session.entry.fault):
-        return f"{session.unkept} | {_said(session, room)[0]}", OVER
-    return _said(session, room)
+    words, style = _said(session, room)
+    return (f"{session.unkept} | {words}", OVER) if session.unkept and style != OVER else (words, style)
 
 
 def _said(session: Session, room: int) -> tuple[str, Style]:
