@@ -2,12 +2,14 @@
 
 from __future__ import annotations
 
+import asyncio
 import os
 import sys
 import termios
 from collections import deque
 from collections.abc import Iterator
 from contextlib import contextmanager
+from functools import partial
 from typing import Any, ClassVar
 
 from textual import events
@@ -16,10 +18,15 @@ from textual.binding import BindingType
 from textual.message import Message
 
 from tui import leaving
+from tui.crash import caught
 from tui.engine import Engine, Result
 from tui.journal import Journal
 from tui.screens.main import MainScreen
 from tui.screens.overlay import Overlay
+from tui.terminal import TerminalDriver
+
+MOMENT = 0.05
+"""Seconds within which a new size of the terminal is taken."""
 
 
 def terminal_settings() -> list[Any] | None:
@@ -58,10 +65,10 @@ class DuctwalkApp(App[None], inherit_bindings=False):
             self.result = result
 
     def __init__(self, path: str, attributes: list[Any] | None = None) -> None:
-        super().__init__(ansi_color=True)
+        super().__init__(driver_class=TerminalDriver, ansi_color=True)
         self.theme = "ansi-dark"
         self.path = path
-        self.defect: Exception | None = None
+        self.defect: BaseException | None = None
         self._attributes = attributes
         self._keys: deque[events.Key] = deque()
         self.main: MainScreen | None = None
@@ -75,36 +82,68 @@ class DuctwalkApp(App[None], inherit_bindings=False):
 
     async def on_event(self, event: events.Event) -> None:
         """Keep the order of what is typed: keys that come in one piece may open a screen and be meant for it."""
-        if isinstance(event, events.Key) and isinstance(self.screen, MainScreen | Overlay):
+        if isinstance(event, events.Key) and self.screen_stack and isinstance(self.screen, MainScreen | Overlay):
             self._keys.append(event)
             self.type_on()
         else:
-            await super().on_event(event)
+            with caught(self.tell_defect):
+                await super().on_event(event)
 
     def type_on(self) -> None:
         """Hand the keys typed to the screen that stands, one by one; one that is not painted yet holds them back."""
         while self._keys and isinstance(self.screen, MainScreen | Overlay) and self.screen.ready:
             event = self._keys.popleft()
             taker = self.main if self.main is not None and self.main.everywhere(event) else self.screen
-            taker.typed(event)
+            with caught(partial(self._typed_wrong, taker)):
+                taker.typed(event)
+
+    def _typed_wrong(self, taker: MainScreen | Overlay[Any], words: str) -> None:
+        """A key met a defect: a page that took it is closed, for it may meet it at every key."""
+        if isinstance(taker, Overlay) and taker.ready:
+            taker.leave(None)
+        self.tell_defect(words)
+
+    def tell_defect(self, words: str) -> None:
+        """Say on the main screen that something went wrong inside; the screen goes on."""
+        if self.main is not None:
+            self.main.tell_defect(words)
+
+    def push_screen(self, screen: Any, callback: Any = None, *more: Any, **named: Any) -> Any:
+        """Put a screen over the others; what takes its answer may meet a defect, which is told."""
+
+        def answered(answer: Any) -> None:
+            with caught(self.tell_defect):
+                if callback is not None:
+                    callback(answer)
+
+        return super().push_screen(screen, answered, *more, **named)
 
     def on_mount(self) -> None:
         """Guard against ends nobody asked for."""
         if not self.is_headless:
             leaving.guard(lambda code: self.exit(return_code=code), self._attributes)
 
+    def on_resize(self) -> None:
+        """Hand a new size on for certain: the library's own timer for it skips a call that comes late, and all sizes after it."""
+        asyncio.get_running_loop().call_later(MOMENT, self.call_later, self._check_resize)
+
     def on_ductwalk_app_came(self, message: Came) -> None:
         """Hand a result to the main screen."""
-        if self.main is not None:
-            self.main.came_back(message.result)
+        with caught(self.tell_defect):
+            if self.main is not None and self.screen_stack:  # none stands while the program ends
+                self.main.came_back(message.result)
+
+    def give_up(self, error: BaseException) -> None:
+        """End after an error behind which the screen cannot go on. The caller of `run` writes the crash file."""
+        self.defect = self.defect or error
+        self.exit(return_code=1)
 
     def _handle_exception(self, error: Exception) -> None:
-        # The caller of `run` writes the crash file; a traceback with all locals over the user's terminal helps nobody.
+        # a traceback with all locals over the user's terminal helps nobody
         if self.is_headless:
             super()._handle_exception(error)
         else:
-            self.defect = self.defect or error
-            self.exit(return_code=1)
+            self.give_up(error)
 
 
 def run(path: str | None) -> int:
@@ -121,4 +160,6 @@ def run(path: str | None) -> int:
         app.run(mouse="SSH_CONNECTION" not in os.environ)
     if app.defect is not None:
         raise app.defect
-    return app.return_code or 0
+    if app.return_code is None:
+        raise RuntimeError("the screen ended without being asked to")
+    return app.return_code

@@ -28,6 +28,8 @@ QUICK = tuple(k for k in STATION_KEYS if k not in DEAR)
 PERFORMANCE_KEYS = tuple(o.key for o in OUTPUTS if o.where == "performance")
 STATIONS = ("0", "1", "2", "3", "4", "5", "9", "10")
 NAN = float("nan")
+DEFECT = "internal-error"
+"""Status of a case whose solve met a defect of the program."""
 LATE_REASONS = ("unstarted", "no-mode")
 """Statuses whose reason names a solved limit, which costs more than the walk; it comes with the assessment."""
 
@@ -212,6 +214,19 @@ def solve(case: Case) -> Figures:
     import cycle
 
     return take(cycle.solve(case))
+
+
+def defective(words: str) -> Figures:
+    """Figures of a case whose solve met a defect of the program: none. words: what is said instead."""
+    return Figures(DEFECT, "", words, "", {}, {}, {}, {}, (), (), NAN, None, assessed=True)
+
+
+def unassessed(figures: Figures, words: str) -> Figures:
+    """Figures whose assessment met a defect of the program: nothing of it is known. words: what is said instead."""
+    stations = {s: {k: v for k, v in known.items() if k not in DEAR} for s, known in figures.stations.items()}
+    every = Margin(DEFECT, "all limits", "not assessed", NAN, NAN, NAN, "none", True, words, "")
+    why_not = {**figures.why_not, **dict.fromkeys(ACCOUNTS, words)}
+    return replace(figures, stations=stations, limits=(every,), why_not=why_not, audit=words, audit_ok=False, assessed=True)
 
 
 @dataclass(frozen=True, slots=True)

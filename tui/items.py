@@ -271,6 +271,8 @@ def bounds(spec: Input, system: str, step: bool = True) -> str:
 
 def describe(before: Case, after: Case, change: Change, system: str) -> str:
     """Words for an edit: the input's label with its old and new value, the way a group is said now, or the study made."""
+    if "case" in change:
+        return "back behind the last save"
     if "study" in change:
         return f"study {change['study'][0]} made"
     if "switch" in change:

@@ -6,27 +6,21 @@ record an edit, undo or redo. A running session holds a lock on its journal; one
 
 from __future__ import annotations
 
-import fcntl
 import hashlib
-import itertools
 import json
 import os
-import threading
 from collections.abc import Iterable
 from contextlib import suppress
 from dataclasses import dataclass, field
 from pathlib import Path
 from typing import Any
 
-from cycle.atomic import read_file
+from tui import journal_file
+from tui.journal_file import Record, Written
 
 FORMAT = 1
-LARGEST = 16 * 1024 * 1024
-"""Bytes of a journal that are read at most."""
 MOST = 200
 """Journals that are looked through at most, the newest ones."""
-
-Record = dict[str, Any]
 
 
 def state_directory() -> Path:
@@ -97,34 +91,9 @@ def standing(records: Iterable[Record]) -> int:
             made, undone = made - (made > 0), undone + (made > 0)
         elif "redo" in record:
             made, undone = made + (undone > 0), undone - (undone > 0)
-        else:
+        elif record:
             made, undone = made + 1, 0
     return made
-
-
-def _free(descriptor: int) -> bool:
-    """Whether no running session holds the journal; a file system without locks counts as free."""
-    try:
-        fcntl.flock(descriptor, fcntl.LOCK_EX | fcntl.LOCK_NB)
-    except BlockingIOError:
-        return False
-    except OSError:
-        return True
-    return True
-
-
-def _records(file: Path) -> list[Record]:
-    """Whole records of a journal; a last line cut off by a crash is left out, and so is all behind what is none. Errors: OSError."""
-    out: list[Record] = []
-    for raw in read_file(file, LARGEST)[0][:LARGEST].split(b"\n")[:-1]:
-        try:
-            record = json.loads(raw)
-        except (ValueError, RecursionError):
-            break
-        if not isinstance(record, dict):
-            break
-        out.append(record)
-    return out
 
 
 @dataclass(frozen=True, slots=True)
@@ -146,14 +115,14 @@ def _opened(file: Path) -> _Opened | None:
         return None
     try:
         # asked first: a session that ends meanwhile has written its last record by then
-        live = not _free(descriptor)
-        head, *records = _records(file) or [{}]
+        live = not journal_file.is_free(descriptor)
+        head, *records = journal_file.records(file) or [{}]
         written = os.fstat(descriptor).st_mtime
     except OSError:
         return None
     finally:
         os.close(descriptor)
-    return _Opened(live, written, head, tuple(records)) if records and head.get("format") == FORMAT else None
+    return _Opened(live, written, head, tuple(records)) if any(records) and head.get("format") == FORMAT else None
 
 
 def _read(file: Path, path: str) -> Left | None:
@@ -222,61 +191,19 @@ def move(left: Left, path: str) -> None:
     """Give a journal left behind to the case at `path`. Errors: OSError where it stays where it was."""
     if left.file.name.startswith(f"{stem(path)}-"):
         return
-    descriptor, new = _copied(left.file, path)
-    os.close(descriptor)
-    os.utime(new, (left.written, left.written))
+    new = _copied(left.file, path)
+    new.close()
+    os.utime(new.file, (left.written, left.written))
     left.file.unlink(missing_ok=True)
 
 
-def _copied(file: Path, path: str) -> tuple[int, Path]:
-    """A copy of a journal for the case at `path`: its descriptor, locked, and its file."""
+def _copied(file: Path, path: str) -> Written:
+    """A copy of a journal for the case at `path`, brought to the disk. Errors: OSError."""
     head, _, rest = file.read_bytes().partition(b"\n")
     told = {**json.loads(head), "case": os.path.realpath(path)}
-    return _begun(path, json.dumps(told).encode() + b"\n" + rest, flushed=True)
-
-
-def _begun(path: str, data: bytes, flushed: bool) -> tuple[int, Path]:
-    """A new journal for the case at `path` with this in it: its descriptor, locked, and its file. Errors: OSError; there is none then.
-
-    flushed: whether to wait until it is on the disk.
-    """
-    descriptor, new = _created(path)
-    try:
-        _write(descriptor, data)
-        if flushed:
-            os.fsync(descriptor)
-    except OSError:
-        os.close(descriptor)
-        new.unlink(missing_ok=True)
-        raise
-    return descriptor, new
-
-
-def _write(descriptor: int, data: bytes) -> None:
-    """Append all of it or nothing: a disk that fills up takes a part, behind which no record could be read. Errors: OSError."""
-    size = os.fstat(descriptor).st_size
-    try:
-        while data:
-            data = data[os.write(descriptor, data) :]
-    except OSError:
-        with suppress(OSError):
-            os.ftruncate(descriptor, size)
-        raise
-
-
-def _created(path: str) -> tuple[int, Path]:
-    """A new journal file for the case at `path`, never one that is there, and its descriptor, locked."""
-    folder = state_directory()
-    folder.mkdir(parents=True, exist_ok=True, mode=0o700)
-    for number in itertools.count():
-        file = folder / f"{stem(path)}-{os.getpid()}{f'-{number}' if number else ''}.journal"
-        try:
-            descriptor = os.open(file, os.O_WRONLY | os.O_CREAT | os.O_EXCL | os.O_APPEND, 0o600)
-        except FileExistsError:
-            continue
-        _free(descriptor)
-        return descriptor, file
-    raise AssertionError
+    new = Written.begun(state_directory(), stem(path), json.dumps(told).encode() + b"\n" + rest)
+    new.flush()
+    return new
 
 
 def discard(left: Left) -> None:
@@ -286,82 +213,101 @@ def discard(left: Left) -> None:
 
 @dataclass(slots=True)
 class Journal:
-    """The journal of this session. The file appears with the first record.
-
-    Parameters: path, the case file. `failure` says why edits are not kept on disk, "" while they are.
-    """
+    """The journal of this session. The file appears with the first record. Parameters: path, the case file; content, its hash."""
 
     path: str
     content: str = ""
-    failure: str = ""
-    _descriptor: int | None = None
-    _file: Path | None = None
-    _dirty: threading.Event = field(default_factory=threading.Event)
+    _lines: list[bytes] = field(default_factory=list)
+    """All records since the case was last saved, whether they are on disk or not."""
+    _kept: int = 0
+    """How many of them are in the file."""
+    _saved: int = 0
+    """How many of them are in the file of the case, once the save that runs is done."""
+    _made: int = 0
+    _undone: int = 0
+    """Edits of the journal that may be taken back, and that may be made again."""
+    _refused: str = ""
+    _out: Written | None = None
+
+    @property
+    def failure(self) -> str:
+        """Why edits are not kept on disk, "" while they are."""
+        trouble = self._refused or (self._out.trouble if self._out is not None else "")
+        return f"edits are not kept on disk: {trouble}" if trouble else ""
 
     def append(self, record: Record) -> None:
-        """Write one record. It survives the end of this process at once, that of the machine within a moment: a
-        thread of its own brings it to the disk, so that a slow home folder never holds the screen up."""
+        """Write one record, and before it those that the disk refused. It survives the end of this process at once, that of the
+        machine within a moment: a thread of its own brings it to the disk, so that a slow home folder never holds the screen up."""
+        self._lines.append((json.dumps(record) + "\n").encode())
+        step = ("undo" in record) - ("redo" in record)
+        self._made, self._undone = (self._made - step, self._undone + step) if step else (self._made + 1, 0)
+        self._catch_up()
+
+    def knows(self, record: Record) -> bool:
+        """Whether a record can be made again from this journal: what an undo or redo goes back to may be older than the last save."""
+        return self._made > 0 if "undo" in record else self._undone > 0 if "redo" in record else True
+
+    def saving(self) -> None:
+        """The case as it is now is being saved: nothing that follows may go back behind it."""
+        self._saved, self._made, self._undone = len(self._lines), 0, 0
+
+    def _catch_up(self) -> None:
+        """Write the records that are not in the file; all of them into a new one where there is none, or where it is lost."""
         try:
-            if self._descriptor is None:
-                self._open()
-            assert self._descriptor is not None
-            _write(self._descriptor, (json.dumps(record) + "\n").encode())
+            if self._out is None or not self._out.sound:
+                self._begin()
+            elif self._kept < len(self._lines):
+                self._out.append(b"".join(self._lines[self._kept :]))
         except OSError as error:
-            self.failure = f"edits are not kept on disk: {error.strerror or error}"
+            self._refused = str(error.strerror or error)
         else:
-            self.failure = ""
-            self._dirty.set()
+            self._kept, self._refused = len(self._lines), ""
 
-    def _open(self) -> None:
+    def _begin(self) -> None:
+        if not self._lines:
+            return
         head = {"format": FORMAT, "case": os.path.realpath(self.path), "content": self.content}
-        descriptor, self._file = _begun(self.path, (json.dumps(head) + "\n").encode(), flushed=False)
-        self._hold(descriptor)
+        self._take(Written.begun(state_directory(), stem(self.path), b"".join(((json.dumps(head) + "\n").encode(), *self._lines))))
 
-    def _hold(self, descriptor: int) -> None:
-        self._descriptor = descriptor
-        threading.Thread(target=self._sync, args=(descriptor,), name="journal", daemon=True).start()
+    def _take(self, new: Written | None, keep: bool = False) -> None:
+        """Go on with another file. keep: whether the one before stays."""
+        old, self._out = self._out, new
+        if old is not None:
+            old.close(remove=not keep)
 
-    def _sync(self, descriptor: int) -> None:
-        while self._dirty.wait():
-            self._dirty.clear()
-            try:
-                os.fsync(descriptor)
-            except OSError:
-                return
+    def settle(self) -> bool:
+        """Bring everything to the disk and wait for it. Returns: whether it is there."""
+        self._catch_up()
+        if self._out is not None:
+            with suppress(OSError):
+                self._out.flush()
+        return not self.failure
 
     def restart(self, path: str, content: str) -> None:
-        """Begin again after a save: what was journalled is in the file now."""
-        self.remove()
+        """Begin again after a save: what was journalled until `saving` is in the file now."""
         self.path, self.content = path, content
+        self._lines, self._saved, self._kept = self._lines[self._saved :], 0, 0
+        old, self._out = self._out, None
+        self._catch_up()
+        if old is not None:
+            old.close(remove=not self._refused)
 
     def turn_to(self, path: str, keep: bool) -> None:
         """Begin for another case. keep: whether what is journalled stays on disk, to be offered when the case is opened again."""
-        if keep:
-            self._let_go()
-        else:
-            self.remove()
-        self.path, self.content, self.failure = path, "", ""
+        self._forget(keep)
+        self.path, self.content = path, ""
 
     def moved(self, path: str) -> None:
         """Go on under the name of another file, to which the case was moved. Errors: OSError where it stays under the old one."""
-        old, self.path = self._file, path
-        if old is None or old.name.startswith(f"{stem(path)}-"):
-            return
-        descriptor, file = _copied(old, path)
-        self.remove()
-        self._file = file
-        self._hold(descriptor)
+        self.path = path
+        if self._out is not None and not self._out.file.name.startswith(f"{stem(path)}-"):
+            self._take(_copied(self._out.file, path))
 
     def remove(self) -> None:
-        """Remove the journal file; the next record makes a new one. One that cannot be removed is offered again, which loses nothing."""
-        if self._file is not None:
-            with suppress(OSError):
-                self._file.unlink(missing_ok=True)
-        self._let_go()
+        """Remove the journal file; the next record makes a new one."""
+        self._forget(keep=False)
 
-    def _let_go(self) -> None:
-        """Close the file and leave it where it is."""
-        if self._descriptor is not None:
-            os.close(self._descriptor)
-        self._descriptor = self._file = None
-        self._dirty.set()
+    def _forget(self, keep: bool) -> None:
+        self._take(None, keep)
+        self._lines, self._kept, self._refused = [], 0, ""
+        self._saved = self._made = self._undone = 0

@@ -19,6 +19,8 @@ FORMAT = 1
 RECENT = "recent.json"
 MOST_RECENT = 30
 """Cases in the list of those opened last."""
+MOST_PARTS = 100_000
+"""Tables and arrays of a file of the state directory that are read at most."""
 
 
 class Spoilt(OSError):  # noqa: N818 (a state of a file, not a defect)
@@ -60,7 +62,8 @@ def _read(file: Path) -> dict[str, Any] | None:
     except FileNotFoundError:
         return None
     try:
-        data = json.loads(content) if len(content) <= LARGEST_FILE else None
+        small = len(content) <= LARGEST_FILE and content.count(b"[") + content.count(b"{") <= MOST_PARTS
+        data = json.loads(content) if small else None
     except (ValueError, RecursionError):
         data = None
     if not isinstance(data, dict) or data.get("format") != FORMAT:

@@ -14,9 +14,10 @@ from __future__ import annotations
 import os
 import re
 from dataclasses import dataclass
+from itertools import islice
 
 from cycle.atomic import read_file
-from cycle.errors import Fault
+from cycle.errors import CaseError, Fault
 from cycle.errors import shown as quoted
 from tui.actions import ACTIONS, Action, bound
 from tui.journal import user_folder
@@ -41,6 +42,9 @@ KEPT = ("leave", "help")
 
 LARGEST = 64 * 1024
 """Bytes of a file of keys that are read."""
+
+MOST = 200
+"""Entries of a file of keys that are read."""
 
 _FUNCTION = re.compile(r"f([1-9]|1[0-9]|2[0-4])")
 _CONTROL = re.compile(r"ctrl\+[a-z]")
@@ -72,8 +76,10 @@ def read() -> Keymap:
         return parse(_text(name), name)
     except OSError as error:
         return Keymap(faults=(_told(name, "", f"cannot be read: {error.strerror or error}"),))
-    except ValueError as error:
-        return Keymap(faults=(_told(name, "", f"is no TOML: {error}"),))
+    except UnicodeDecodeError:
+        return Keymap(faults=(_told(name, "", "is no UTF-8 text"),))
+    except CaseError as error:
+        return Keymap(faults=(str(error),))
 
 
 def _text(name: str) -> str:
@@ -81,7 +87,7 @@ def _text(name: str) -> str:
     content, _ = read_file(name, LARGEST)
     if len(content) > LARGEST:
         raise OSError(f"it is larger than {LARGEST // 1024} kB")
-    return content.decode("utf-8")
+    return content.decode("utf-8-sig")
 
 
 def _told(name: str, key: str, text: str, given: object = None, allowed: str = "") -> str:
@@ -92,22 +98,24 @@ def _told(name: str, key: str, text: str, given: object = None, allowed: str = "
 def parse(text: str, name: str) -> Keymap:
     """The keys that a text asks for.
 
-    Parameters: text, TOML; name, of its file, for the faults. Returns: actions and faults. Errors: ValueError where it is no TOML.
+    Parameters: text, TOML; name, of its file, for the faults. Returns: actions and faults. Errors: CaseError where it is no TOML.
     """
-    import tomllib
+    from cycle import toml
 
-    table = tomllib.loads(text)
-    faults = [_told(name, key, "no such table", None, "[keys]") for key in table if key != "keys"]
+    table = toml.tables(text, os.path.basename(name))
+    faults = [_told(name, key, "no such table", None, "[keys]") for key in islice(table, MOST) if key != "keys"]
     asked = table.get("keys", {})
     if not isinstance(asked, dict):
         return Keymap(faults=(*faults, _told(name, "keys", "is no table", asked, "[keys]")))
     wanted: dict[str, tuple[str, ...]] = {}
-    for action, given in asked.items():
+    for action, given in islice(asked.items(), MOST):
         keys, fault = _keys(action, given)
         if fault is None:
             wanted[action] = keys
         else:
             faults.append(_told(name, action, *fault))
+    if len(asked) > MOST:
+        faults.append(_told(name, "keys", "has too many entries", f"{len(asked)}", f"{MOST}; the others are not read"))
     faults += [_told(name, action, *fault) for action, fault in _settle(wanted)]
     return Keymap(bound(ACTIONS, wanted), tuple(faults))
 

@@ -20,7 +20,7 @@ from typing import Any
 PATIENCE = 3.0
 """Seconds that an orderly end may take before the process is ended without it."""
 
-CODES = {signal.SIGHUP: 129, signal.SIGTERM: 143}
+CODES = {signal.SIGHUP: 129, signal.SIGINT: 130, signal.SIGTERM: 143}
 RESET = b"\x1b[?1000l\x1b[?1003l\x1b[?1004l\x1b[?2004l\x1b[<u\x1b[?7h\x1b[?1049l\x1b[?25h"
 """Mouse, focus reports, bracketed paste and key protocol off, line wrap on, main screen, cursor shown."""
 

@@ -10,7 +10,7 @@ from collections.abc import Callable, Mapping
 from dataclasses import dataclass, field, replace
 from typing import TYPE_CHECKING, Any, Literal, TypeGuard
 
-from cycle.quantities import HEADLINE
+from cycle.quantities import GROUP, HEADLINE
 from tui.actions import ACTIONS, Action
 from tui.figures import STATIONS, Figures, carried
 
@@ -19,7 +19,8 @@ if TYPE_CHECKING:
     from cycle.sensitivity import Sensitivities
 
 Change = dict[str, Any]
-"""What a user asked of a case, as plain data: {"set": {key: value}}, {"switch": [group, tag, value]} or {"study": [name, study]}."""
+"""What a user asked of a case, as plain data: {"set": {key: value}}, {"switch": [group, tag, value]}, {"study": [name, study]},
+or, where an undo or redo went back behind a save, {"case": its TOML}."""
 
 VIEWS = ("figures", "change against the pin", "change against the pin, %")
 WATCHED_FIRST = ("specific_impulse", "stream_thrust_gain")
@@ -76,7 +77,7 @@ class Session:
     `figures` belong to; good: the last walk with a solution; saved: the case as it stands in the file; borders: the heat input at
     which a duct leaves each regime, None until they are solved for; influence: sensitivities, those of the case before until the new
     ones are there, None before the first; watched: the figure that graphs and sensitivities show, "" for the case's own first choice;
-    actions: with the keys that hold."""
+    unkept: why edits are not kept on disk, "" while they are; actions: with the keys that hold."""
 
     path: str
     case: Case | None = None
@@ -102,6 +103,7 @@ class Session:
     watched: str = ""
     note: str = "reading the case ..."
     faults: tuple[str, ...] = ()
+    unkept: str = ""
     actions: tuple[Action, ...] = ACTIONS
 
     @property
@@ -125,7 +127,8 @@ def _is_set(said: Any) -> bool:
 
 
 def _is_switch(said: Any) -> bool:
-    return isinstance(said, list | tuple) and len(said) == 3 and all(isinstance(word, str) for word in said[:2])
+    known = isinstance(said, list | tuple) and len(said) == 3 and all(isinstance(word, str) for word in said[:2])
+    return known and said[0] in GROUP
 
 
 def _is_study(said: Any) -> bool:
@@ -138,7 +141,12 @@ def _is_study(said: Any) -> bool:
 
 
 _VARIED: dict[str, Any] = {"input": str, "from": int | float | str, "to": int | float | str, "points": int}
-_KINDS: dict[str, Callable[[Any], bool]] = {"set": _is_set, "switch": _is_switch, "study": _is_study}
+_KINDS: dict[str, Callable[[Any], bool]] = {
+    "set": _is_set,
+    "switch": _is_switch,
+    "study": _is_study,
+    "case": lambda said: isinstance(said, str),
+}
 
 
 def is_change(said: Any) -> TypeGuard[Change]:
@@ -153,6 +161,10 @@ def apply(case: Case, change: Change) -> Case:
     """
     if "study" in change:
         return case.with_study(*change["study"])
+    if "case" in change:
+        from cycle.case import loads
+
+        return replace(loads(change["case"], case.name), path=case.path, stamp=case.stamp, text=case.text)
     if "switch" in change:
         group, tag, value = change["switch"]
         return case.switch(group, tag, value)

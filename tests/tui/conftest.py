@@ -9,13 +9,17 @@ import pytest
 
 from tests.tui.pty_support import READY, Terminal
 from tests.tui.test_screen_parts import TEXT
+from tui import crash
 
 
 @pytest.fixture(autouse=True)
-def state(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> Path:
-    """Where the program keeps its journals in this test."""
+def state(tmp_path: Path, monkeypatch: pytest.MonkeyPatch) -> Iterator[Path]:
+    """Where the program keeps its journals in this test. A defect that the screen told, and that the test did not make, fails it."""
     monkeypatch.setenv("XDG_STATE_HOME", str(tmp_path / "state"))
-    return tmp_path / "state" / "ductwalk"
+    monkeypatch.setattr(crash, "_written", {})
+    folder = tmp_path / "state" / "ductwalk"
+    yield folder
+    assert [file.read_text() for file in folder.glob("crash-*.txt")] == []
 
 
 @pytest.fixture

@@ -193,6 +193,7 @@ def test_a_defect_leaves_a_crash_file_one_line_and_1(tmp_path: Path) -> None:
     assert done.stderr.count("\n") == 1
     (kept,) = (tmp_path / "state" / "ductwalk").glob("crash-*.txt")
     assert "Traceback" in kept.read_text() and "x.toml" in kept.read_text()
+    kept.unlink()
 
 
 def test_a_latin_locale_does_not_stop_a_title(tmp_path: Path) -> None:

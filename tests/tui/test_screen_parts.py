@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import inspect
+import os
 import threading
 from dataclasses import replace
 from pathlib import Path
@@ -259,8 +260,8 @@ def left_by_another(state: Path, path: str, *records: journal.Record, tail: str 
     writer = Journal(path, journal.content_hash(path))
     for record in records:
         writer.append(record)
-    assert writer._file is not None
-    text = writer._file.read_text()
+    (written,) = state.glob(f"{journal.stem(path)}-{os.getpid()}*.journal")
+    text = written.read_text()
     writer.remove()
     file = state / writer_name(path)
     file.write_text(text + tail)

@@ -292,16 +292,6 @@ async def test_every_shipped_case_opens_and_walks(name: str, tmp_path: Path, sta
         assert driver.app.is_running
 
 
-async def test_a_defect_of_the_model_is_raised_not_hidden(path: Path, monkeypatch: pytest.MonkeyPatch) -> None:
-    def broken(case: Case) -> Figures:
-        raise ZeroDivisionError("a defect made by the test")
-
-    monkeypatch.setattr(figures, "solve", broken)
-    with pytest.raises(ZeroDivisionError, match="made by the test"):
-        async with opened(path) as driver:
-            await driver.until(lambda: not driver.app.is_running)
-
-
 async def test_the_referee_is_asked_by_a_key_and_forgotten_with_the_next_edit(tmp_path: Path, state: Path) -> None:
     path = tmp_path / "saltmarsh.toml"
     path.write_bytes((CASES / "saltmarsh.toml").read_bytes())

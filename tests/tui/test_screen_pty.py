@@ -230,21 +230,6 @@ def test_the_model_does_not_know_the_terminal() -> None:
     assert done.stdout.strip() == "[]"
 
 
-def test_a_defect_sets_the_terminal_back_and_keeps_the_work(path: Path, env: dict[str, str]) -> None:
-    program = (
-        "import sys\nfrom tui import figures\nfrom tui.app import run\nsolve = figures.solve\n"
-        "def second(case):\n    if case.value('flight.mach') > 6.0: raise ZeroDivisionError('made by the test')\n    return solve(case)\n"
-        "figures.solve = second\nrun(sys.argv[1])\n"
-    )
-    with Terminal([str(path)], env=env, program=program) as terminal:
-        terminal.wait(READY)
-        terminal.press("tab", "+")
-        assert terminal.status() == 1
-        assert LEFT in terminal.raw
-        assert b"ZeroDivisionError: made by the test" in terminal.raw.split(LEFT)[-1]
-    assert len(journals(env)) == 1
-
-
 def test_another_case_is_opened_and_work_is_offered_on_return(terminal: Terminal, env: dict[str, str], path: Path) -> None:
     (path.parent / "other.toml").write_text(TEXT.replace("mach = 6.0", "mach = 7.0"))
     edit_mach(terminal, "6.5")

@@ -12,7 +12,9 @@ from textual import events
 from cycle.quantities import OUTPUT
 from tui import figures, finding, keymap, tracing
 from tui.actions import ACTIONS, Action, key_of
+from tui.crash import defect
 from tui.engine import Result
+from tui.keymap import Keymap
 from tui.line import BOLD, DIM, Line, clean, fit, line, width
 from tui.screens.desk import Desk
 from tui.screens.roster import Choice, Roster, Verb
@@ -40,7 +42,10 @@ class Asking(Desk, inherit_bindings=False):
 
     def take_keys(self) -> None:
         """Read the user's own keys and let them hold; what is wrong with them is told with the case."""
-        found = keymap.read()
+        try:
+            found = keymap.read()
+        except Exception as error:
+            found = Keymap(faults=(str(defect(error)),))
         self.key_faults = found.faults
         if found.actions is not self.session.actions:
             self.session = replace(self.session, actions=found.actions)
@@ -69,7 +74,7 @@ class Asking(Desk, inherit_bindings=False):
     def _ask(self, place: Place) -> None:
         """Have the worker put the walk's numbers into an equation."""
         found = self.session.figures
-        if found is not None:
+        if found is not None and found.walk is not None:
             walk = found.walk
             self.engine.newest("explain", self.session.generation, lambda: (place, walk, tracing.worked(place, walk)))
 

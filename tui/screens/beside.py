@@ -99,7 +99,9 @@ class Comparison:
 
         def then(found: Shares | None, error: BaseException | None) -> None:
             walk.shares = found
-            if found is None:
+            if error is not None:
+                self._say(f"where the difference comes from: {clean(trouble(error))}")
+            elif found is None:
                 self._share_on(walk, pieces)
             else:
                 self._repaint()

@@ -8,13 +8,12 @@ from dataclasses import replace
 from time import monotonic
 from typing import Any
 
-from textual.screen import Screen
-
 from cycle.errors import CaseError
 from tui import figures, items, session
 from tui.actions import key_of
 from tui.engine import Engine
 from tui.journal import Journal
+from tui.screens.overlay import Steady
 from tui.session import ASSESSING, SOLVING, Change, Session
 
 PAINT_EVERY = 0.25
@@ -44,7 +43,7 @@ def fault_words(error: CaseError, beside: str = "") -> tuple[str, ...]:
     return tuple(out)
 
 
-class Desk(Screen[None], inherit_bindings=False):
+class Desk(Steady[None], inherit_bindings=False):
     """The session and the ways to change it. The parts of the main screen are made from this one."""
 
     def __init__(self, path: str, engine: Engine, journal: Journal) -> None:
@@ -81,6 +80,10 @@ class Desk(Screen[None], inherit_bindings=False):
         """Paint the session. The main screen says how."""
         raise NotImplementedError
 
+    def tell_defect(self, words: str) -> None:
+        """Say that something went wrong inside; the session stays as it is."""
+        self.put(replace(self.session, faults=(words,)))
+
     def put(self, new: Session) -> None:
         """Take a session and paint it at once."""
         self.session = new
@@ -92,6 +95,8 @@ class Desk(Screen[None], inherit_bindings=False):
             self._later.cancel()
             self._later = None
         self._painted = monotonic()
+        if self.session.unkept != self.journal.failure:
+            self.session = replace(self.session, unkept=self.journal.failure)
         self.paint()
 
     def after(self, seconds: float, what: Callable[[], None]) -> asyncio.TimerHandle:
@@ -138,8 +143,7 @@ class Desk(Screen[None], inherit_bindings=False):
         changed = new.generation != self.session.generation
         self.session = new
         if changed:
-            self.journal.append(record)
-            self.session = replace(new, note=self.journal.failure or new.note)
+            self.journal.append(record if self.journal.knows(record) else self._whole())
             self.solve()
         self._rapid = rapid and changed
         if changed:
@@ -150,6 +154,13 @@ class Desk(Screen[None], inherit_bindings=False):
             self._paint_within(MOMENT)
         else:
             self.paint_now()
+
+    def _whole(self) -> dict[str, object]:
+        """The record of an undo or redo that goes back behind a save: the whole case."""
+        from cycle.case.document import edited
+
+        assert self.session.case is not None
+        return {"edit": {"case": edited(self.session.case.text, self.session.case)}}
 
     def solve(self) -> None:
         """Ask the worker for the walk of the present case."""
@@ -185,7 +196,7 @@ class Desk(Screen[None], inherit_bindings=False):
         it and no edit waits for it."""
         found, case = self.session.figures, self.session.case
         wanted = case is not None and case.value("combustor.process") == "duct" and self.session.borders is None
-        if wanted and found is not None and self.session.settled:
+        if wanted and found is not None and found.walk is not None and self.session.settled:
             self.engine.newest("borders", self.session.generation, lambda: figures.heat_limits(found))
 
     def paint_spaced(self) -> None:

@@ -13,10 +13,11 @@ from typing import TYPE_CHECKING, Any
 from rich.text import Text
 
 from cycle.errors import CaseError, FileChanged
-from tui import items, journal, keeping, session, shipped
+from tui import figures, items, journal, keeping, session, shipped
 from tui.actions import key_of
 from tui.engine import Result
-from tui.journal import Left, Record
+from tui.journal import Left
+from tui.journal_file import Record
 from tui.keeping import Kept
 from tui.line import OVER, PLAIN, Line, clean, line
 from tui.screens.desk import Desk, fault_words
@@ -90,30 +91,44 @@ def write(case: Case, path: str, stamp: Any) -> Saved:
 
 
 def replay(now: Session, left: Left) -> Restored:
-    """Make the records of a journal again, undo and redo among them; what no longer holds is left out."""
+    """Make the records of a journal again; edits that no longer hold are left out, and with them what took them back or made them
+    again. The case they give is solved once, so that one that meets a defect is never taken. Errors: whatever that solve raises."""
     kept: list[Record] = []
+    made: list[bool] = []
+    taken: list[bool] = []
+    refused = 0
     for record in left.records:
-        try:
+        again: Session | None = now
+        if "undo" in record or "redo" in record:
+            back = "undo" in record
+            source, target = (made, taken) if back else (taken, made)
+            if source:
+                target.append(source.pop())
+                again = (session.undone if back else session.redone)(now) if target[-1] else now
+        else:
             again = _again(now, record)
-        except CaseError:
-            continue
-        if again is None:
-            continue
-        now = again
-        kept.append(record)
-    return Restored(now, tuple(kept), len(left.records) - len(kept), left)
+            made.append(again is not None and again.generation != now.generation)
+            taken.clear()
+        refused += again is None
+        if again is not None and again.generation != now.generation:
+            now = again
+            kept.append(record)
+    if kept and now.case is not None:
+        figures.solve(now.case)
+    return Restored(now, tuple(kept), refused, left)
 
 
 def _again(now: Session, record: Record) -> Session | None:
-    """The session with a record made again, None where the record asks for nothing that this version knows. Errors: CaseError."""
-    if "undo" in record:
-        return session.undone(now)
-    if "redo" in record:
-        return session.redone(now)
-    assert now.case is not None
+    """The session with an edit made again, None where it no longer holds, or asks for nothing that this version knows."""
     change = record.get("edit")
-    if not session.is_change(change):
+    try:
+        return _edited(now, record, change) if session.is_change(change) else None
+    except CaseError:
         return None
+
+
+def _edited(now: Session, record: Record, change: session.Change) -> Session:
+    assert now.case is not None
     case = session.apply(now.case, change)
     back = record.get("back")
     if isinstance(back, dict):  # a session that saved in between had set it aside, and the file has it no more
@@ -148,7 +163,7 @@ class Filing(Desk, inherit_bindings=False):
         """Leave the present case, whose unsaved work stays in its journal, and read another."""
         if self._saving:
             self.put(replace(self.session, note="saving ...; open it when the file is written"))
-        elif self.session.unsaved and self.journal.failure:
+        elif self.session.unsaved and not self.journal.settle():
             self._ask_to_lose("Open another case?", lambda: self._turn_to(path))
         else:
             self._turn_to(path)
@@ -219,13 +234,19 @@ class Filing(Desk, inherit_bindings=False):
 
     def was_replayed(self, result: Result) -> None:
         """Take the restored session; its journal is written anew before the old one goes."""
+        if result.error is not None:
+            self.put(replace(self.session, faults=(f"not restored: {result.error}; the journal is kept",)))
+            return
         got: Restored = result.value
         if self.session.generation != result.generation:
             self.put(replace(self.session, note="not restored: the case was edited meanwhile; the journal is kept"))
             return
+        if not got.records:
+            self.put(replace(self.session, note=f"not restored: {got.refused} of {got.refused} edits no longer hold; the journal is kept"))
+            return
         for record in got.records:
             self.journal.append(record)
-        if not got.refused and not self.journal.failure:
+        if not got.refused and self.journal.settle():
             self._discarded(got.left)
         refused = f", {got.refused} no longer hold (their journal is kept)" if got.refused else ""
         note = f"restored {_counted(journal.standing(got.records))}{refused}; {key_of(self.session.actions, 'undo')} takes them back"
@@ -257,7 +278,11 @@ class Filing(Desk, inherit_bindings=False):
         case = self.session.case
         if case is None:
             return
+        if self._saving:
+            self.put(replace(self.session, note="saving ...; save again when the file is written"))
+            return
         self._saving += 1
+        self.journal.saving()
         self.engine.do("write", self.session.generation, lambda: write(case, path, stamp))
 
     def was_written(self, result: Result) -> None:
@@ -274,8 +299,7 @@ class Filing(Desk, inherit_bindings=False):
         got: Saved = result.value
         note, moved = f"saved {clean(got.path)}", got.path != self.session.path
         self.session = replace(self.session, path=got.path, saved=got.case, stamp=got.stamp, note=note, faults=())
-        if not self.session.unsaved:
-            self.journal.restart(got.path, got.content)
+        self.journal.restart(got.path, got.content)
         self.paint_now()
         if moved:
             self.case_named()
@@ -309,7 +333,7 @@ class Filing(Desk, inherit_bindings=False):
         if self._saving:
             self._leaving = True
             self.put(replace(self.session, note="saving, then leaving ..."))
-        elif self.session.unsaved and self.journal.failure:
+        elif self.session.unsaved and not self.journal.settle():
             self._ask_to_lose("Leave?", lambda: self.app.exit(return_code=0))
         elif self.session.unsaved:
             name = shipped.named(self.session.path) or "without a name"
@@ -320,7 +344,10 @@ class Filing(Desk, inherit_bindings=False):
 
     def _ask_to_lose(self, title: str, leave: Callable[[], object]) -> None:
         """Ask before edits that cannot be kept on disk are lost."""
-        told = [self.journal.failure, "Unsaved edits would be lost."]
+        told = [
+            f"{self.journal.failure}.",
+            "Unsaved edits would be lost. Stay and save the case, or save it under another name, to keep them.",
+        ]
         answers = (Answer("s", "stay", "stay"), Answer("l", "leave", "leave and lose them"))
         page = Page(title, text_body(told), answers)
 

@@ -16,6 +16,7 @@ from textual.containers import Horizontal
 from cycle.errors import CaseError, FileChanged
 from tui import figures, items, session
 from tui.actions import key_of
+from tui.crash import defect
 from tui.engine import Result
 from tui.line import Line
 from tui.screens import ducting, telling
@@ -111,16 +112,39 @@ class MainScreen(Editing, Filing, Peeking, Plotting, Ranking, Asking, Pinning, C
         self.paint()
 
     def came_back(self, result: Result) -> None:
-        """Take what the worker gave, by the kind of the job. An error that no handler expects is a defect: raised."""
+        """Take what the worker gave, by the kind of the job. An error that no handler expects is a defect: told, and the screen goes on."""
         if result.error is not None and not isinstance(result.error, EXPECTED.get(result.kind, ())):
-            raise result.error
-        HANDLERS[result.kind](self, result)
+            result = replace(result, error=defect(result.error))
+        (FAILED if result.error is not None else HANDLERS).get(result.kind, HANDLERS[result.kind])(self, result)
         if result.kind == "read":
             self.tell_keys()
 
     def walked(self, result: Result) -> None:
         """A solve or an assessment came back."""
         self.came(result.generation, result.value)
+        self.repaint_list()
+
+    def not_walked(self, result: Result) -> None:
+        """A solve met a defect: the case has no figures; the edit stands, and can be taken back."""
+        self._defective(result, "the edit is kept", figures.defective(str(result.error)))
+
+    def not_assessed(self, result: Result) -> None:
+        """Limits and audit met a defect: none of them is known."""
+        found = self.session.figures
+        if found is not None:
+            self._defective(result, "limits and audit; the edit is kept", figures.unassessed(found, str(result.error)))
+
+    def _defective(self, result: Result, what: str, found: figures.Figures) -> None:
+        if result.generation == self.session.generation:
+            self.came(result.generation, found)
+            self.repaint_list()
+            self.tell_defect(f"{result.error}; {what}")
+
+    def failed(self, result: Result) -> None:
+        """What a page or a list asked for met a defect."""
+        self.search_ended()
+        self.session = replace(self.session, referee="" if result.kind == "referee" else self.session.referee)
+        self.tell_defect(f"{result.error}; {WANTED[result.kind]}")
         self.repaint_list()
 
     def refereed(self, result: Result) -> None:
@@ -299,6 +323,22 @@ HANDLERS: dict[str, Callable[[MainScreen, Result], None]] = {
     "picture": MainScreen.picture_written,
 }
 """Kind of a job -> what takes its result."""
+
+WANTED = {
+    "referee": "referee",
+    "borders": "modes of the duct",
+    "explain": "explanation",
+    "influence": "sensitivities",
+    "limit": "search for the limit",
+}
+"""Kind of a job that gives a value only -> what it gives, for the words where it meets a defect."""
+
+FAILED: dict[str, Callable[[MainScreen, Result], None]] = {
+    "solve": MainScreen.not_walked,
+    "assess": MainScreen.not_assessed,
+    **dict.fromkeys(WANTED, MainScreen.failed),
+}
+"""Kind of a job -> what takes its error; the other kinds have handlers that take both."""
 
 EXPECTED: dict[str, tuple[type[BaseException], ...]] = {
     "read": (CaseError,),

@@ -3,15 +3,17 @@
 from __future__ import annotations
 
 from abc import abstractmethod
-from typing import Generic, Protocol, TypeVar, cast
+from collections.abc import Callable
+from typing import Any, Generic, Protocol, TypeVar, cast
 
 from textual import events
 from textual.app import ComposeResult
 from textual.geometry import Size
 from textual.screen import Screen
 
+from tui.crash import caught
 from tui.line import Line
-from tui.widgets.sheet import Sheet
+from tui.widgets.sheet import Sheet, painted
 
 Given = TypeVar("Given")
 
@@ -22,8 +24,32 @@ class Keyboard(Protocol):
     def type_on(self) -> None:
         """Hand over the keys that wait."""
 
+    def tell_defect(self, words: str) -> None:
+        """Say that something went wrong inside."""
 
-class Overlay(Screen[Given], Generic[Given]):
+
+class Steady(Screen[Given], Generic[Given]):
+    """A screen on which a defect is told and ends nothing."""
+
+    async def on_event(self, event: events.Event) -> None:
+        """Take an event, a call after some time among them."""
+        with caught(self._tell):
+            await super().on_event(event)
+
+    def call_after_refresh(self, callback: Callable[..., object], *args: Any, **more: Any) -> bool:
+        """Call after the next paint."""
+
+        def called() -> None:
+            with caught(self._tell):
+                callback(*args, **more)
+
+        return super().call_after_refresh(called)
+
+    def _tell(self, words: str) -> None:
+        cast(Keyboard, self.app).tell_defect(words)
+
+
+class Overlay(Steady[Given], Generic[Given]):
     """A screen of one sheet that gives one answer and is gone. It takes keys once it is painted."""
 
     ready = False
@@ -44,7 +70,8 @@ class Overlay(Screen[Given], Generic[Given]):
 
     def paint(self) -> None:
         """Paint what there is now; what is in hand stays in hand."""
-        self._sheet.show(self.lines_for(self.app.size), self.app.size)
+        size = self.app.size
+        self._sheet.show(painted(lambda: self.lines_for(size), size.width), size)
 
     def on_mount(self) -> None:
         """Take the keys that were typed before this screen stood."""
@@ -59,7 +86,7 @@ class Overlay(Screen[Given], Generic[Given]):
     def typed(self, event: events.Key) -> None:
         """Take a key."""
 
-    def leave(self, answer: Given) -> None:
+    def leave(self, answer: Given | None) -> None:
         """Give the answer and go."""
         self.ready = False
         self.dismiss(answer)

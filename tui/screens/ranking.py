@@ -127,7 +127,7 @@ class Ranking(Desk, inherit_bindings=False):
         )
 
     def _limits_done(self, chosen: tuple[str, str] | None) -> None:
-        self._seeking = self._wanted = None
+        self.search_ended()
         key, name = chosen or ("", "")
         goto = margins.limit(self.session, name) if key else None
         if goto is None:
@@ -206,6 +206,10 @@ class Ranking(Desk, inherit_bindings=False):
         takes = (Answer("t", "take", f"take it: {found.input.label}"),) if found.kind in ("zero", "jump") else ()
         answers = (*takes, Answer("l", "", "leave the case as it is"))
         self.app.push_screen(Page(head, text_body(said), answers), lambda name: self._value_answered(found, bool(name)))
+
+    def search_ended(self) -> None:
+        """No search goes on."""
+        self._seeking = self._wanted = None
 
     def _value_answered(self, found: Reached, taken: bool) -> None:
         """Take the value found as an edit, or not; the list below shows what holds then."""

@@ -6,7 +6,7 @@ import os
 
 from cycle.quantities import MODES, OUTPUT
 from cycle.units import format_number, show
-from tui.figures import NAN, Figures, Margin
+from tui.figures import DEFECT, NAN, Figures, Margin
 from tui.line import BOLD, DIM, NEAR, OVER, PLAIN, Line, clean, fit, line, width, wrap
 from tui.session import Session, performance_keys
 from tui.views.numbers import LIMIT_FIGURES, difference, figure, quantity, unit
@@ -63,7 +63,7 @@ def _title(session: Session, columns: int) -> Line:
     case, found = session.case, session.figures
     assert case is not None
     right = _flight(session, found) if found is not None else ""
-    mark = " *" if session.unsaved else ""
+    mark = f" *{' NOT ON DISK' if session.unkept else ''}" if session.unsaved else ""
     room = columns - width(right) - len(mark) - 2
     left = fit(clean(case.title or case.name), max(room, 8)) + mark
     gap = max(2, columns - width(left) - width(right))
@@ -88,7 +88,8 @@ def _figures(session: Session, columns: int) -> list[Line]:
     if found is None:
         return [line("first walk not solved yet"), line("")]
     if not found.solved:
-        words = wrap(clean(f"NO SOLUTION: {found.reason or found.status}").split(), columns)
+        head = "NO FIGURES" if found.status == DEFECT else "NO SOLUTION"
+        words = wrap(clean(f"{head}: {found.reason or found.status}").split(), columns)
         words = [*words[:2], fit(" ".join(words[2:]), columns)]
         return [line((w, OVER)) for w in words]
     return [_headline(session, found, columns), _against(session, columns)]

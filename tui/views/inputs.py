@@ -114,6 +114,11 @@ def answer(session: Session, wide: int, height: int) -> list[Line]:
 
 
 def _words(session: Session, room: int) -> tuple[str, Style]:
+    words, style = _said(session, room)
+    return (f"{session.unkept} | {words}", OVER) if session.unkept and style != OVER else (words, style)
+
+
+def _said(session: Session, room: int) -> tuple[str, Style]:
     if session.entry is not None and session.entry.fault:
         return session.entry.fault, OVER
     if session.faults and session.case is not None:

@@ -8,7 +8,7 @@ from textual.message import Message
 
 from tui.line import Line
 from tui.session import Session
-from tui.widgets.sheet import Sheet
+from tui.widgets.sheet import Sheet, painted
 
 View = Callable[[Session, int, int], list[Line]]
 """Session, columns, lines -> what to show."""
@@ -28,7 +28,7 @@ class Panel(Sheet):
         """Show the session."""
         columns, height = self.size
         if columns and height:
-            self.show(self._view(session, columns, height))
+            self.show(painted(lambda: self._view(session, columns, height), columns))
 
     def on_resize(self) -> None:
         """Ask for a paint."""

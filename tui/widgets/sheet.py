@@ -2,12 +2,15 @@
 
 from __future__ import annotations
 
+from collections.abc import Callable
+
 from rich.segment import Segment
 from textual.geometry import Region, Size
 from textual.strip import Strip
 from textual.widget import Widget
 
-from tui.line import PLAIN, Cell, Line, cells, reach
+from tui.crash import defect
+from tui.line import OVER, PLAIN, Cell, Line, cells, clean, line, reach, wrap
 
 
 def strip_of(row: list[Cell]) -> Strip:
@@ -21,6 +24,14 @@ def strip_of(row: list[Cell]) -> Strip:
         text, style = text + character, own
     segments.append(Segment(text, style))
     return Strip(segments, len(row))
+
+
+def painted(view: Callable[[], list[Line]], columns: int) -> list[Line]:
+    """What a view gives; the words for a defect where it meets one. columns: the width for these."""
+    try:
+        return view()
+    except Exception as error:
+        return [line((part, OVER)) for part in wrap(clean(str(defect(error))).split(), columns)]
 
 
 class Sheet(Widget):
