@@ -15,7 +15,7 @@ import numpy as np
 from cycle import account, emit, heat, noise
 from cycle.account import spread, usable
 from cycle.arrays import Array, Codes
-from cycle.flowpath import combustor
+from cycle.flowpath import choking, combustor
 from cycle.gas.state import State
 from cycle.quantities import OUTPUTS
 from cycle.resting import rest
@@ -203,7 +203,7 @@ def _choking_margin(march: March, position: int) -> Array:
     record = march.records[position]
     setting = march.setting.take(record.index)
     entering = march.records[position - 1].taken(record.index).stream
-    margin = combustor.choking_margin(combustor.burner_gas(entering, setting), setting, record.process.figures["fuel_air_ratio"])
+    margin = choking.choking_margin(combustor.burner_gas(entering, setting), setting, record.process.figures["fuel_air_ratio"])
     return spread(march, record.index, margin)
 
 

@@ -3,13 +3,14 @@
 from __future__ import annotations
 
 from collections.abc import Mapping
+
 import numpy as np
 
 from cycle import limits
 from cycle.account import spread
 from cycle.arrays import Array, Codes
 from cycle.flow import roots
-from cycle.flowpath import assembly, combustor, duct_limits, isolator
+from cycle.flowpath import assembly, choking, combustor, duct_limits, isolator
 from cycle.flowpath.setting import Setting
 from cycle.flowpath.stream import STATUS_NAMES, Stream
 from cycle.quantities import INPUT
@@ -100,7 +101,6 @@ def largest_before_choking(walked: March) -> float:
     before, bound = combustor.burner_gas(entry.stream, walked.setting), INPUT[key].upper
     assert bound is not None
     unit = _unit(walked.setting)
-    hot = unit is None
     ceiling = _SEARCH["combustor.fuel_air_ratio"] if unit is None else min(bound, _SEARCH[key]) * float(unit[0])
 
     def many(values: Array) -> tuple[Stream, Setting]:
@@ -108,7 +108,7 @@ def largest_before_choking(walked: March) -> float:
         return before.take(points), walked.setting.take(points)
 
     def room(values: Array) -> Array:
-        return combustor.choking_room(*many(values), values)
+        return choking.choking_room(*many(values), values)
 
     tried = np.linspace(0.0, ceiling, _SCAN)
     left = room(tried)
@@ -117,7 +117,7 @@ def largest_before_choking(walked: March) -> float:
         return np.nan
     low, high = tried[choked[0] - 1], tried[choked[0]]
     root = roots.bracketed(room, np.array([low]), np.array([high]), 1e-9)
-    if not hot:
+    if unit is not None:
         return float((root / unit)[0])
     most = float(combustor.exit_total_temperature(*many(root), root * (1.0 - _JUST))[0])
     return most if most <= _SEARCH[key] else np.nan

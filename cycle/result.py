@@ -219,7 +219,7 @@ class Walk:
 
     @cached_property
     def notes(self) -> tuple[HeatedFuel | Remark, ...]:
-        """What is to be known of the solution beside its figures; with heated fuel one more solution when first asked for, () in a batch."""
+        """What is to be known of the solution beside its figures; () in a batch. Heated fuel takes one more solution, once."""
         return () if self.shape != () else (*remarks(self._march, self.performance.overall_efficiency), *self._heated_fuel())
 
     def _heated_fuel(self) -> tuple[HeatedFuel, ...]:

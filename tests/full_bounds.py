@@ -150,7 +150,7 @@ def from_schema(rng: Rng) -> Flat:
             if INPUT[name].required or rng.random() < 0.5:
                 found[name] = choices[name] = value(rng, INPUT[name], choices)
             else:
-                choices[name] = INPUT[name].default_in(choices) and str(INPUT[name].default_in(choices)) or ""
+                choices[name] = str(INPUT[name].default_in(choices) or "")
         else:
             choices[name] = str(found.get(name, INPUT[name].default or ""))
     return found | _numbers(rng, found, bare)
@@ -197,10 +197,7 @@ def full_case(seed: int) -> tuple[cycle.Case, int]:
     rng = np.random.default_rng([seed, 9])
     whole = rng.random() < 0.35
     for tries in range(TRIES):
-        if whole:
-            flat = from_schema(rng)
-        else:
-            flat = moved(rng, pick(rng, (random_case, random_flowpath))(int(rng.integers(1 << 30))))
+        flat = from_schema(rng) if whole else moved(rng, pick(rng, (random_case, random_flowpath))(int(rng.integers(1 << 30))))
         flat = _gases(rng, flat)
         try:
             return build({"format": 1, "title": f"full bounds {seed}, invented", **nest(flat)}, "a random case"), tries

@@ -110,7 +110,8 @@ def test_walls_that_take_more_than_the_stream_has_are_named(model: str, process:
         tables["combustor"]["pressure_ratio"] = 0.9
     text = written(tables)
     if process == "duct":
-        text += "[[combustor.area]]\nx = 0.0\narea_ratio = 1.0\n[[combustor.area]]\nx = 1.0\narea_ratio = 2.0\n[[combustor.injector]]\nx = 0.1\n"
+        text += "[[combustor.area]]\nx = 0.0\narea_ratio = 1.0\n[[combustor.area]]\nx = 1.0\narea_ratio = 2.0\n"
+        text += "[[combustor.injector]]\nx = 0.1\n"
     walk = cycle.solve(cycle.loads(text, "overcooled"))
     assert walk.status == "overcooled" and "less wall heat" in walk.reason
     assert math.isnan(walk.performance.thrust)
@@ -135,7 +136,7 @@ def test_a_pair_that_is_no_gas_is_refused_in_a_batch() -> None:
     textbook = case(TEXTBOOK)
     with pytest.raises(cycle.CaseError, match="some points"):
         cycle.solve(textbook, {"gas.cp_compression": np.array([1004.5, 300.0])})
-    with pytest.raises(cycle.CaseError, match="gas.cp_combustion"):
+    with pytest.raises(cycle.CaseError, match=r"gas\.cp_combustion"):
         cycle.solve(textbook.replace({"gas.cp_combustion": 900.0}), {"gas.gas_constant": np.array([287.0, 380.0])})
     edge = 287.0 * np.array([2.5, 51.0])
     assert set(cycle.solve(textbook, {"gas.cp_compression": edge}).status) <= {"solved", "over-compressed", "choked"}

@@ -237,7 +237,11 @@ def _out_of_bounds(problem: Problem, key: str) -> Fault:
 def _given_number(given: object, entry: Input | None) -> str:
     if entry is None:
         return shown(given)
-    negligible = ", which counts as 0" if entry.above == 0.0 and 0.0 < read(given, entry.unit) <= (entry.over or 0.0) else ""
+    negligible = (
+        ", which counts as 0"
+        if entry.above == 0.0 and isinstance(given, int | float | str) and 0.0 < read(given, entry.unit) <= (entry.over or 0.0)
+        else ""
+    )
     if not isinstance(given, str):
         return shown(given) + negligible
     return f"{shown(given)}, which is {format_number(read(given, entry.unit), 6)} {si_unit(entry.unit)}".rstrip() + negligible

@@ -131,8 +131,8 @@ def solve_duct(
     isolator: None leaves the train's length unknown; isolated: False where the stream enters at 3, so that any shock train is too long;
     asked: "auto", "supersonic" or "thermal-throat"; panels: of a march,
     four nodes each; second: look for a shock train where the attached flow stands, too ("train" in `tried` says);
-    total_pressures: also along the duct; most: the last mode that is asked for, see `coupling.solve_block`. A stream that is not supersonic is refused. ValueError as `duct_of`; a point
-    without a flow has its status, never an exception.
+    total_pressures: also along the duct; most: the last mode that is asked for, see `coupling.solve_block`. A stream that is not
+    supersonic is refused. ValueError as `duct_of`; a point without a flow has its status, never an exception.
     """
     ahead = entering if ahead is None else ahead
     duct = duct_of(

@@ -114,7 +114,16 @@ def heat_limits(at: At, now: Array, upper: Array, coupled: bool = False) -> dict
     e, point = np.nonzero((lows >= 0) & ~np.isnan(now))
     low, high = lows[e, point], highs[e, point]
     narrow = _SETTLED_COUPLED if coupled else _SETTLED
-    search = _Search(narrow, _SPREAD_COUPLED if coupled else _SPREAD, e, point, ratio[low, point], ratio[high, point], scan.at(low, point), scan.at(high, point))
+    search = _Search(
+        narrow,
+        _SPREAD_COUPLED if coupled else _SPREAD,
+        e,
+        point,
+        ratio[low, point],
+        ratio[high, point],
+        scan.at(low, point),
+        scan.at(high, point),
+    )
     search.close(at)
     causes = np.zeros(limits.shape, np.int64)
     limits[e, point], causes[e, point] = search.ends(), search.cause
@@ -142,7 +151,9 @@ class _Search:
     """Brackets (K,) of ends of modes, closed in on together. narrow: width over the ratio at which one is closed; spread: ratios looked at
     in a turn where no margin is known; end: which mode; point: of which point; low stands, high does not."""
 
-    def __init__(self, narrow: float, spread: int, end: Codes, point: Codes, low: Array, high: Array, at_low: _Seen, at_high: _Seen) -> None:
+    def __init__(
+        self, narrow: float, spread: int, end: Codes, point: Codes, low: Array, high: Array, at_low: _Seen, at_high: _Seen
+    ) -> None:
         own, self.narrow, self.spread = np.arange(end.size), narrow, spread
         self.end, self.point, self.low, self.high = end, point, low, high
         self.margins = np.stack([at_low.margins, at_high.margins])

@@ -133,7 +133,7 @@ def products_enthalpy(atoms: Mapping[str, float]) -> float:
 def molar_heat(atoms: Mapping[str, float], heating_value: float | None = None, formation_enthalpy: float | None = None) -> float:
     """Heat of burning one molecule at 298.15 K, J/mol, by the one that is given: J/kg, or J/mol of formation."""
     if formation_enthalpy is None:
-        return float(heating_value or 0.0) * mass_of(atoms)
+        return float(heating_value or 0.0) * mass_of(dict(atoms))
     return formation_enthalpy - products_enthalpy(atoms)
 
 
