@@ -206,3 +206,9 @@ def test_thrust_power_beyond_the_fuel_is_told() -> None:
     assert walk.status == "solved" and walk.performance.overall_efficiency > 1.0
     (note,) = [n for n in walk.notes if n.key == "beyond_fuel"]
     assert "more than the fuel brings" in note.words()
+
+
+def test_a_duct_is_not_asked_for_a_geometric_throat() -> None:
+    """It ended in a KeyError."""
+    with pytest.raises(cycle.CaseError, match=r"engine\.mode: a duct finds its own throat"):
+        cycle.load(case_file("tidegate")).replace({"engine.mode": "geometric-throat", "nozzle.throat": "sized"})

@@ -93,6 +93,9 @@ def _mode(facts: Facts) -> Iterator[Fault]:
     process = facts.choices.get("combustor.process")
     if facts.choices.get("engine.mode") == "thermal-throat" and process not in ("duct", None):
         yield Fault("", "engine.mode", "a thermal throat needs a duct", f"combustor.process = {process}", "combustor.process = duct")
+    if facts.choices.get("engine.mode") == "geometric-throat" and process == "duct":
+        allowed = "another process, or engine.mode = auto, supersonic or thermal-throat"
+        yield Fault("", "engine.mode", "a duct finds its own throat", "combustor.process = duct", allowed)
 
 
 def _lip(facts: Facts) -> Iterator[Fault]:
