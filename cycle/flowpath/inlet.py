@@ -158,6 +158,10 @@ _TIED: dict[str, Callable[[Stream, Setting, End], Ended]] = {"adiabatic_efficien
 """Qualities that need the end of the compression."""
 
 
+_LEAST = {"pressure_ratio": 1.0, "temperature_ratio": 1.0}
+"""Ends of the compression below which nothing is compressed."""
+
+
 def inlet(flight: Stream, setting: Setting) -> Step:
     """Station 0 to 2 without heat exchange at full capture.
 
@@ -175,7 +179,7 @@ def inlet(flight: Stream, setting: Setting) -> Step:
         u = states.velocity(flight.total_enthalpy, state)
         lost = state.enthalpy >= flight.total_enthalpy
         weak = (state.pressure < flight.state.pressure * (1.0 - 1e-9)) & state.good
-        if setting.choices["inlet.end"] in ("pressure_ratio", "temperature_ratio"):
-            weak |= setting[f"inlet.{setting.choices['inlet.end']}"] < 1.0
+        name = setting.choices["inlet.end"]
+        weak |= setting["inlet.exit_mach"] > flight.mach if name == "exit_mach" else setting[f"inlet.{name}"] < _LEAST.get(name, 0.0)
     status = status_of(state, (weak, "under-compressed"), (lost & state.good, "over-compressed"), (~reached, "over-compressed"))
     return Step(stream(flight.gas, state, u, flight.mass_flow), Process("inlet", "0", "2"), status)
