@@ -187,7 +187,7 @@ def _gases(rng: Rng, flat: Flat) -> Flat:
     constant = flat.setdefault("gas.gas_constant", 287.0)
     for key in ("gas.cp_compression", "gas.cp_combustion", "gas.cp_expansion"):
         if key in flat or key == "gas.cp_compression":
-            gamma = pick(rng, (1.02, 5.0 / 3.0, 1.4, rng.uniform(1.02, 5.0 / 3.0), rng.uniform(1.2, 1.4)))
+            gamma = pick(rng, (1.05, 5.0 / 3.0, 1.4, rng.uniform(1.05, 5.0 / 3.0), rng.uniform(1.2, 1.4)))
             flat[key] = min(2e4, constant * gamma / (gamma - 1.0))
     return flat
 

@@ -121,9 +121,9 @@ def test_walls_that_take_more_than_the_stream_has_are_named(model: str, process:
     ("changes", "key", "words"),
     [
         ({"gas__cp_compression": 287.0}, "gas.cp_compression", "no gas has this ratio of specific heats"),
-        ({"gas__cp_compression": 200.0}, "gas.cp_compression", "gamma from 1.02 to 1.667"),
+        ({"gas__cp_compression": 200.0}, "gas.cp_compression", "gamma from 1.05 to 1.667"),
         ({"gas__cp_combustion": 300.0}, "gas.cp_combustion", "cp = 300 with R = 287"),
-        ({"gas__gas_constant": 5.0}, "gas.cp_compression", "cp from 2.5 R to 51 R"),
+        ({"gas__gas_constant": 5.0}, "gas.cp_compression", "cp from 2.5 R to 21 R"),
     ],
 )
 def test_a_pair_that_is_no_gas_is_refused(changes: Mapping[str, float], key: str, words: str) -> None:
@@ -138,7 +138,7 @@ def test_a_pair_that_is_no_gas_is_refused_in_a_batch() -> None:
         cycle.solve(textbook, {"gas.cp_compression": np.array([1004.5, 300.0])})
     with pytest.raises(cycle.CaseError, match=r"gas\.cp_combustion"):
         cycle.solve(textbook.replace({"gas.cp_combustion": 900.0}), {"gas.gas_constant": np.array([287.0, 380.0])})
-    edge = 287.0 * np.array([2.5, 51.0])
+    edge = 287.0 * np.array([2.5, 21.0])
     assert set(cycle.solve(textbook, {"gas.cp_compression": edge}).status) <= {"solved", "over-compressed", "choked"}
 
 

@@ -215,9 +215,9 @@ def _burns(facts: Facts, atoms: Mapping[str, float]) -> Iterator[Fault]:
         yield Fault("", "fuel.standard_entropy", text, f"{entropy:.6g} J/(mol K)", f"at most {most:.5g} J/(mol K)")
 
 
-LEAST_EXPONENT, LARGEST_EXPONENT = 1.02, 5.0 / 3.0
-"""Ratio of specific heats of a constant-gamma pair: that of large vapour molecules, rounded down (common practice), and of atoms
-(kinetic theory)."""
+LEAST_EXPONENT, LARGEST_EXPONENT = 1.05, 5.0 / 3.0
+"""Ratio of specific heats of a constant-gamma pair: below that of any burnt stream, dissociating ones included (common practice); that of
+atoms (kinetic theory)."""
 PAIRS = ("gas.cp_compression", "gas.cp_combustion", "gas.cp_expansion")
 
 
