@@ -15,7 +15,7 @@ if TYPE_CHECKING:
     from cycle.result import Walk, solve
     from cycle.sensitivity import sensitivities
 
-__version__ = "0.4.0"
+__version__ = "0.5.0"
 
 _HOME = {
     "Case": "cycle.case", "load": "cycle.case", "loads": "cycle.case", "CaseError": "cycle.errors", "Walk": "cycle.result",
