@@ -61,6 +61,7 @@ PROCESS_FIGURES: tuple[Output, ...] = (
     _process("isolator_margin", "isolator margin", "Isolator length that the shock train leaves free, over the isolator length.",
              source=_WALTRUP),
     _process("reattachment_x", "core fills the duct at", "Distance from burner entry where the core fills the duct again.", "length"),
+    _process("reattachments", "places where the core fits", "Places where the core would fill the duct and fit the throat; the first is taken."),
     _process("throat_x", "thermal throat at", "Distance from burner entry where the flow is critical.", "length",
              source="Shapiro, The Dynamics and Thermodynamics of Compressible Fluid Flow (1953), ch. 8 (from memory)"),
     _process("peak_pressure_ratio", "peak pressure over p2", "Highest wall pressure in the burner over p2."),
@@ -270,6 +271,7 @@ _NO_STATE = "a state it needs is out of range"
 _NO_VALUE = {
     "unstart_margin": "no critical section",
     "throat_x": "no critical section",
+    "reattachments": "no thermal throat",
     "train_length": "no shock train, or isolator.momentum_thickness is not given",
     "isolator_margin": "no shock train, or isolator.momentum_thickness is not given",
     "additive_drag": "needs the inlet's lip",

@@ -79,6 +79,7 @@ REMARKS = {
     "over_expanded": "The internal nozzle ends at {value}, below the exit pressure of {against} asked for: nothing expands outside it.",
     "inert_air": "The gas is frozen: the combustibles of the entering stream, {value} of its moles, do not burn.",
     "no_dissociation": "The hottest static temperature is {value}: above {against} a gas dissociates, which constant gamma leaves out.",
+    "several_places": "The core would fill the duct and fit the thermal throat at {value} places; the first, from the entry, is taken.",
     "beyond_fuel": "Thrust power is {value} of the fuel's heating value: more than the fuel brings, so the inputs cannot all be true.",
 }
 """Key of a remark -> its sentence."""
@@ -103,6 +104,9 @@ def remarks(march: March, efficiency: float) -> tuple[Remark, ...]:
     hottest = max(float(record.stream.state.temperature[0]) for record in march.records)
     if march.setting.constant_gamma and hottest > DISSOCIATION:
         found.append(Remark("no_dissociation", hottest, DISSOCIATION, "temperature"))
+    places = march.figure("burner", "reattachments")[0]
+    if places > 1.0:
+        found.append(Remark("several_places", float(places)))
     if efficiency > 1.0:
         found.append(Remark("beyond_fuel", efficiency))
     return tuple(found)

@@ -134,7 +134,7 @@ def _viscous(flight: Stream, setting: Setting, end: End) -> Ended:
 def _settled(flight: Stream, miss: Callable[[Array], Missed]) -> Ended:
     """End of the compression where nothing lacks: secant in the entropy."""
     at = flight.state.entropy
-    before, first, _, _ = miss(at)
+    before, first, lossless, _ = miss(at)
     state, reached = first, np.ones(at.shape, np.bool_)
     done = np.zeros(at.shape, np.bool_)
     with np.errstate(all="ignore"):
@@ -151,7 +151,8 @@ def _settled(flight: Stream, miss: Callable[[Array], Missed]) -> Ended:
             entropy = np.where(done, entropy, entropy + np.clip(step, -span, span))
     # where the first state lies beyond the data, what follows from it says nothing
     state = replace(state, range=np.where(state.good | first.good, state.range, first.range))
-    return state, reached & (done | ~first.good)
+    # what is not reached without loss is not reached with it
+    return state, lossless & reached & (done | ~first.good)
 
 
 _TIED: dict[str, Callable[[Stream, Setting, End], Ended]] = {"adiabatic_efficiency": _adiabatic, "viscous_correlation": _viscous}
