@@ -21,9 +21,11 @@ from typing import Any
 from cycle.case import load, thawed
 from tests.tui.pty_support import Terminal
 from tests.tui.test_screen_parts import TEXT
+from tests.tui.test_screen_pty import cpu_seconds
 from tui import journal
 from tui.screens.filing import replay
 from tui.session import Session, loaded
+from tui.terminal import PATIENCE
 
 PROGRAM = """
 import json, os, signal, sys
@@ -190,8 +192,8 @@ class Fuzz:
         """The program answers: once a paste without an end is over, the page of keys opens and closes."""
         self.terminal.process.setwinsize(24, 80)
         self.terminal.screen.resize(24, 80)
-        self.quiet(0.5, 60.0)
-        self.quiet(3.6, 60.0)  # a paste without an end is over then
+        self.rest()
+        self.rest(PATIENCE + 0.6)
         for _ in range(8):
             self.send(b"\x1b")
             self.terminal.pump(0.3)
@@ -200,14 +202,19 @@ class Fuzz:
         self.terminal.wait(lambda text: "Keys" in text.splitlines()[0], 20.0)
         self.send(b"\x1b")
         self.terminal.wait(lambda text: "Keys" not in text.splitlines()[0], 20.0)
-        self.quiet(0.5, 60.0)
+        self.rest()
 
-    def quiet(self, seconds: float, limit: float) -> None:
-        """Wait until nothing has come for some seconds."""
-        end = time.monotonic() + limit
-        while select.select([self.terminal.process.fd], [], [], seconds)[0]:
+    def rest(self, seconds: float = 0.5) -> None:
+        """Wait until the program has nothing to do: all that was sent is taken, and nothing is painted any more."""
+        pid, end = self.terminal.process.pid, time.monotonic() + 300.0
+        while True:
             assert time.monotonic() < end, "it never comes to rest"
-            self.terminal.pump(0.05)
+            used, until = cpu_seconds(pid), time.monotonic() + seconds
+            while (left := until - time.monotonic()) > 0:
+                if select.select([self.terminal.process.fd], [], [], left)[0]:
+                    self.terminal.pump(0.01)
+            if cpu_seconds(pid) - used <= 0.05 * seconds:
+                return
 
     def told(self) -> dict[str, Any]:
         """What the program says of its case."""
