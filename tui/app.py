@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import asyncio
 import os
 import sys
 import termios
@@ -23,6 +24,9 @@ from tui.journal import Journal
 from tui.screens.main import MainScreen
 from tui.screens.overlay import Overlay
 from tui.terminal import TerminalDriver
+
+MOMENT = 0.05
+"""Seconds within which a new size of the terminal is taken."""
 
 
 def terminal_settings() -> list[Any] | None:
@@ -118,6 +122,10 @@ class DuctwalkApp(App[None], inherit_bindings=False):
         """Guard against ends nobody asked for."""
         if not self.is_headless:
             leaving.guard(lambda code: self.exit(return_code=code), self._attributes)
+
+    def on_resize(self) -> None:
+        """Hand a new size on for certain: the library's own timer for it skips a call that comes late, and all sizes after it."""
+        asyncio.get_running_loop().call_later(MOMENT, self.call_later, self._check_resize)
 
     def on_ductwalk_app_came(self, message: Came) -> None:
         """Hand a result to the main screen."""

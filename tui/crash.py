@@ -36,7 +36,10 @@ def defect(error: BaseException) -> InternalError:
     """The words for an error that nothing expects; its crash file is written. One that is a `InternalError` already stays as it is."""
     if isinstance(error, InternalError):
         return error
-    return InternalError([Fault("", "", _words(error))])
+    where = crash_file(error)
+    home = os.path.join(os.path.expanduser("~"), "")
+    shown = f"~/{where.removeprefix(home)}" if where.startswith(home) else where or "no file could be written for the details"
+    return InternalError([Fault("", "", f"internal error ({type(error).__name__}): {shown}")])
 
 
 @contextlib.contextmanager
@@ -46,12 +49,6 @@ def caught(say: Callable[[str], object]) -> Iterator[None]:
         yield
     except Exception as error:
         say(str(defect(error)))
-
-
-def _words(error: BaseException) -> str:
-    where = crash_file(error)
-    kept = f"details are in {where}" if where else "no file could be written for the details"
-    return f"internal error, a defect of the program ({type(error).__name__}); {kept}"
 
 
 def crash_file(error: BaseException) -> str:
@@ -66,7 +63,9 @@ def crash_file(error: BaseException) -> str:
 
 
 def _report(kind: type[BaseException], error: BaseException, trace: TracebackType | None) -> None:
-    tell(f"ductwalk: {_words(error)}")
+    where = crash_file(error)
+    kept = f"details are in {where}" if where else "no file could be written for the details"
+    tell(f"ductwalk: internal error, a defect of the program ({kind.__name__}); {kept}")
 
 
 def _folders() -> list[Path]:

@@ -141,8 +141,8 @@ class Written:
     def close(self, remove: bool = False) -> None:
         """Close the file. remove: whether it goes; one that cannot be removed is offered again, which loses nothing."""
         self._closed = True
-        if remove:
-            with suppress(OSError):
+        with suppress(OSError):
+            if remove and os.fstat(self.descriptor).st_nlink:  # else its name may be that of the next one
                 self.file.unlink(missing_ok=True)
         os.close(self.descriptor)
         self._dirty.set()

@@ -11,6 +11,7 @@ import re
 import select
 from codecs import getincrementaldecoder
 from collections.abc import Iterable, Iterator
+from itertools import chain
 
 from textual import events
 from textual._xterm_parser import XTermParser
@@ -118,12 +119,13 @@ class TerminalDriver(LinuxDriver):
         self._reader = XTermParser()
         while not self.exit_event.is_set():
             there = select.select([self.fileno], [], [], TICK)[0]
-            for piece in sieve.take(decode(os.read(self.fileno, 4096))) if there else sieve.waited(TICK):
-                self._hand_on(self._reader.feed(piece))
+            pieces = sieve.take(decode(os.read(self.fileno, 4096))) if there else sieve.waited(TICK)
+            for character in chain.from_iterable(pieces):
+                self._hand_on(self._reader.feed(character))
             self._hand_on(self._reader.tick())
 
     def _hand_on(self, found: Iterable[Message]) -> None:
-        """Hand on what the library's reader makes of a piece; one that it stumbles on is dropped, and a new reader goes on."""
+        """Hand on what the library's reader makes of a character; what it stumbles on is dropped, and a new reader goes on."""
         try:
             messages = list(found)
         except Exception:

@@ -263,15 +263,13 @@ def run(seed: int, tokens: int) -> None:
             fuzz = Fuzz(Path(folder), random.Random(seed))
             with fuzz.terminal:
                 fuzz.terminal.wait("audit ok")
-                for number in range(tokens):
-                    try:
+                try:
+                    for _ in range(tokens):
                         fuzz.token()
-                    except (AssertionError, OSError) as error:
-                        crashes = [f.read_text() for f in (fuzz.state / "ductwalk").glob("crash-*")]
-                        raise AssertionError(f"token {number}: {error} {crashes} {bytes(fuzz.terminal.raw)[-2000:]!r}") from error
-                fuzz.check()
-    except AssertionError as error:
-        raise AssertionError(f"seed {seed}: {error}") from error
+                    fuzz.check()
+                except (AssertionError, OSError) as error:
+                    crashes = [f.read_text() for f in (fuzz.state / "ductwalk").glob("crash-*")]
+                    raise AssertionError(f"seed {seed}: {error}\n{crashes}\n{bytes(fuzz.terminal.raw)[-2000:]!r}") from error
     finally:
         os.environ.pop("XDG_STATE_HOME", None) if kept is None else os.environ.update(XDG_STATE_HOME=kept)
 

@@ -71,6 +71,17 @@ def test_a_storm_of_sizes_ends_in_the_screen_of_the_last_one(terminal: Terminal,
     assert [row for row in terminal.text.splitlines() if row.startswith(("Mach", "p, ", "T, ", "pt, "))] == rows
 
 
+def test_a_size_is_taken_where_a_timer_of_the_library_never_comes(path: Path, env: dict[str, str]) -> None:
+    """As on a busy machine: its one-shot timers skip a call that comes late."""
+    never = "from textual.app import App\nfrom tui.app import DuctwalkApp\nset_timer = App.set_timer\n"
+    never += "DuctwalkApp.set_timer = lambda self, delay, *given, **named: set_timer(self, 1e6)\n"
+    with Terminal([str(path)], env=env, program=f"{never}{START}") as terminal:
+        terminal.wait(READY)
+        for columns, rows in ((120, 40), (60, 20), (120, 40)):
+            terminal.resize(columns, rows)
+            terminal.wait(lambda text, wide=columns: ("limits by margin" in text) == (wide == 120))
+
+
 def test_a_dumb_terminal_gets_the_walk_as_text(path: Path, env: dict[str, str]) -> None:
     with Terminal([str(path)], env={**env, "TERM": "dumb"}, program=COMMAND) as terminal:
         assert terminal.status(20.0) == 0

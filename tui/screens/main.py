@@ -126,25 +126,25 @@ class MainScreen(Editing, Filing, Peeking, Plotting, Ranking, Asking, Pinning, C
 
     def not_walked(self, result: Result) -> None:
         """A solve met a defect: the case has no figures; the edit stands, and can be taken back."""
-        self._defective(result, "solution", figures.defective(str(result.error)))
+        self._defective(result, "the edit is kept", figures.defective(str(result.error)))
 
     def not_assessed(self, result: Result) -> None:
         """Limits and audit met a defect: none of them is known."""
         found = self.session.figures
         if found is not None:
-            self._defective(result, "limits and audit", figures.unassessed(found, str(result.error)))
+            self._defective(result, "limits and audit; the edit is kept", figures.unassessed(found, str(result.error)))
 
     def _defective(self, result: Result, what: str, found: figures.Figures) -> None:
         if result.generation == self.session.generation:
             self.came(result.generation, found)
             self.repaint_list()
-            self.tell_defect(f"{what}: {result.error}; the edit is kept")
+            self.tell_defect(f"{result.error}; {what}")
 
     def failed(self, result: Result) -> None:
         """What a page or a list asked for met a defect."""
         self.search_ended()
         self.session = replace(self.session, referee="" if result.kind == "referee" else self.session.referee)
-        self.tell_defect(f"{WANTED[result.kind]}: {result.error}")
+        self.tell_defect(f"{result.error}; {WANTED[result.kind]}")
         self.repaint_list()
 
     def refereed(self, result: Result) -> None:
