@@ -82,7 +82,7 @@ class DuctwalkApp(App[None], inherit_bindings=False):
 
     async def on_event(self, event: events.Event) -> None:
         """Keep the order of what is typed: keys that come in one piece may open a screen and be meant for it."""
-        if isinstance(event, events.Key) and isinstance(self.screen, MainScreen | Overlay):
+        if isinstance(event, events.Key) and self.screen_stack and isinstance(self.screen, MainScreen | Overlay):
             self._keys.append(event)
             self.type_on()
         else:
@@ -130,7 +130,7 @@ class DuctwalkApp(App[None], inherit_bindings=False):
     def on_ductwalk_app_came(self, message: Came) -> None:
         """Hand a result to the main screen."""
         with caught(self.tell_defect):
-            if self.main is not None:
+            if self.main is not None and self.screen_stack:  # none stands while the program ends
                 self.main.came_back(message.result)
 
     def give_up(self, error: BaseException) -> None:

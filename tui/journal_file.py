@@ -144,5 +144,7 @@ class Written:
         with suppress(OSError):
             if remove and os.fstat(self.descriptor).st_nlink:  # else its name may be that of the next one
                 self.file.unlink(missing_ok=True)
+        with suppress(OSError):
+            fcntl.flock(self.descriptor, fcntl.LOCK_UN)  # closed alone it is held while the thread waits for the disk
         os.close(self.descriptor)
         self._dirty.set()
