@@ -241,6 +241,8 @@ class Journal:
         self._lines.append((json.dumps(record) + "\n").encode())
         step = ("undo" in record) - ("redo" in record)
         self._made, self._undone = (self._made - step, self._undone + step) if step else (self._made + 1, 0)
+        if "case" in record.get("edit", ()):  # stands for an undo of the screen, and is an edit of the journal
+            self._made = self._undone = 0
         self._catch_up()
 
     def knows(self, record: Record) -> bool:

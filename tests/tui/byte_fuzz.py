@@ -239,7 +239,7 @@ class Fuzz:
         assert not crashes, crashes[0]
         os.environ["XDG_STATE_HOME"] = str(self.state)
         if told["case"] is not None:
-            kept = journalled(told["path"])
+            kept = journalled(str(self.case.parent / told["path"]))
             assert told["case"] == kept, f"{told} is shown, {kept} is kept"
 
 
