@@ -241,7 +241,9 @@ class Journal:
         self._lines.append((json.dumps(record) + "\n").encode())
         step = ("undo" in record) - ("redo" in record)
         self._made, self._undone = (self._made - step, self._undone + step) if step else (self._made + 1, 0)
-        if "case" in record.get("edit", ()):  # stands for an undo of the screen, and is an edit of the journal
+        if (
+            isinstance(record.get("edit"), dict) and "case" in record["edit"]
+        ):  # stands for an undo of the screen, and is an edit of the journal
             self._made = self._undone = 0
         self._catch_up()
 
