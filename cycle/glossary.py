@@ -61,7 +61,7 @@ PROCESS_FIGURES: tuple[Output, ...] = (
     _process("isolator_margin", "isolator margin", "Isolator length that the shock train leaves free, over the isolator length.",
              source=_WALTRUP),
     _process("reattachment_x", "core fills the duct at", "Distance from burner entry where the core fills the duct again.", "length"),
-    _process("reattachments", "places where the core fits", "Places where the core would fill the duct and fit the throat; the first is taken."),
+    _process("reattachments", "places where the core fits", "Where it would fill the duct and meet the throat's flow; the first counts."),
     _process("throat_x", "thermal throat at", "Distance from burner entry where the flow is critical.", "length",
              source="Shapiro, The Dynamics and Thermodynamics of Compressible Fluid Flow (1953), ch. 8 (from memory)"),
     _process("peak_pressure_ratio", "peak pressure over p2", "Highest wall pressure in the burner over p2."),
