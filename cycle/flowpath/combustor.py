@@ -19,7 +19,7 @@ from cycle.gas.base import Gas
 from cycle.gas.constant import ConstantGas
 from cycle.gas.equilibrium import EquilibriumGas
 from cycle.gas.frozen import FrozenGas
-from cycle.gas.state import State, merge
+from cycle.gas.state import OUT_OF_RANGE, State, merge
 
 
 @dataclass(frozen=True, slots=True)
@@ -211,7 +211,7 @@ def _pressure_loss(entering: Stream, setting: Setting, mixed: Mixed) -> Burnt:
     critical = states.sonic(mixed.gas, mixed.total_enthalpy, total.entropy, total)
     state, passes = _EXIT[setting.choices["combustor.exit"]](entering, setting, mixed, critical, total.entropy)
     state = state.after(before, total, critical)
-    status = status_of(state, (~passes & critical.good, "choked"))
+    status = status_of(state, (total.range == OUT_OF_RANGE, "out-of-range"), (~passes & critical.good, "choked"))
     return state, states.velocity(mixed.total_enthalpy, state), status, {}, mixed.booking
 
 

@@ -61,10 +61,10 @@ class State:
         return replace(self, range=np.where(bad & (self.range <= EXTRAPOLATED), code, self.range))
 
     def after(self, *earlier: State) -> State:
-        """The same state, with the range code of the first of the states that it follows from which may not be used."""
+        """The same state; where it may not be used, with the range code of the first of the states that it follows from which may not."""
         code = self.range
         for state in reversed(earlier):
-            code = np.where(state.good, code, state.range)
+            code = np.where(state.good | self.good, code, state.range)
         return replace(self, range=code)
 
 

@@ -81,7 +81,7 @@ def test_new_writes_a_case_that_solves_and_never_overwrites(capsys: pytest.Captu
     assert (folder / "mine.toml").read_text() == text
     assert main(["solve", "mine.toml"]) == 0
     capsys.readouterr()
-    assert "File exists" in said(capsys, "new", "-o", "mine.toml", status=2)
+    assert "file exists" in said(capsys, "new", "-o", "mine.toml", status=2)
     assert (folder / "mine.toml").read_text() == text
 
 
