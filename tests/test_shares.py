@@ -192,7 +192,7 @@ def test_where_no_order_is_left_the_combinations_are_named() -> None:
     found = shares(first, second, ("A", "B"))
     assert found.why_not == (
         "no group can be swapped without the others: "
-        "with flight (flight.mach) of B and all else of A there is no solution, out-of-range (inlet)"
+        "with flight (flight.mach) of B and all else of A there is no solution, under-compressed (inlet)"
     )
     assert found.notes == ("with inlet (inlet.exit_mach) of B and all else of A there is no solution, out-of-range (inlet)",)
 
