@@ -72,7 +72,7 @@ def test_an_interrupt_while_a_file_is_written_leaves_nothing_of_it(tmp_path: Pat
     written(tmp_path, hot=HOT)
     code = (
         "import os, signal, sys\nfrom tui import interrupt\ninterrupt.take()\n"
-        "os.fsync = lambda handle: os.kill(os.getpid(), signal.SIGINT)\n"
+        "os.fsync = lambda handle: signal.raise_signal(signal.SIGINT)\n"
         "from tui.__main__ import main\nsys.exit(main())"
     )
     (tmp_path / "hot.json").write_text("{}")
