@@ -71,7 +71,8 @@ def test_an_interrupt_while_a_file_is_written_leaves_nothing_of_it(tmp_path: Pat
     """The write raises as the handler does there: what was begun is taken away and the old file stands."""
     written(tmp_path, hot=HOT)
     code = (
-        "import os, signal, sys\nfrom tui import interrupt\ninterrupt.take()\n"
+        "import os, signal, sys\nsignal.signal(signal.SIGINT, signal.default_int_handler)  # a background job of a shell ignores it\n"
+        "from tui import interrupt\ninterrupt.take()\n"
         "os.fsync = lambda handle: signal.raise_signal(signal.SIGINT)\n"
         "from tui.__main__ import main\nsys.exit(main())"
     )
