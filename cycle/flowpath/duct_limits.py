@@ -27,7 +27,7 @@ isolator length at unstart; or the status of the points beyond."""
 _SCANNED, _SCANNED_COUPLED = 25, 13
 _BUNCHED = 1.5
 """Exponent of the scan's ratios over the even ones: denser at little heat."""
-_SETTLED, _SETTLED_COUPLED = 3e-9, 3e-6
+_SETTLED, _SETTLED_COUPLED = 3e-9, 3e-5
 """Width of the last bracket, over the ratio; where the flow and what it is given are found in turn at every ratio."""
 _TURNS = 40
 _STRAIGHT = 1e-5
