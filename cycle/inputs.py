@@ -81,7 +81,7 @@ INPUTS: tuple[Input, ...] = (
     Input("gas.cp_expansion", "cp,e", "cp, expansion", "Specific heat in the nozzle; that of combustion when absent.",
           unit="specific heat", above=0.0, upper=2e4, follows="gas.cp_combustion", step=1.0, when=_CG, source=_HEISER),
     Input("gas.gas_constant", "R", "gas constant", "Specific gas constant, one for the whole stream.", unit="specific heat",
-          above=0.0, upper=5e3, default=287.0, step=0.1, when=_CG),
+          lower=20.0, upper=5e3, default=287.0, step=0.1, when=_CG),
     Input("gas.fuel_energy", "", "fuel energy balance",
           "full: fuel mass and sensible enthalpy enter; mass-only: mass enters, no enthalpy; neglected: heat per kg of stream.",
           kind="choice", unit="none", choices=("full", "mass-only", "neglected"), default="full", when=_CG,

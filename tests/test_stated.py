@@ -123,7 +123,7 @@ def test_walls_that_take_more_than_the_stream_has_are_named(model: str, process:
         ({"gas__cp_compression": 287.0}, "gas.cp_compression", "no gas has this ratio of specific heats"),
         ({"gas__cp_compression": 200.0}, "gas.cp_compression", "gamma from 1.05 to 1.667"),
         ({"gas__cp_combustion": 300.0}, "gas.cp_combustion", "cp = 300 with R = 287"),
-        ({"gas__gas_constant": 5.0}, "gas.cp_compression", "cp from 2.5 R to 21 R"),
+        ({"gas__gas_constant": 40.0}, "gas.cp_compression", "cp from 2.5 R to 21 R"),
     ],
 )
 def test_a_pair_that_is_no_gas_is_refused(changes: Mapping[str, float], key: str, words: str) -> None:
