@@ -68,3 +68,10 @@ def test_numbers_are_drawn_within_their_bounds() -> None:
         beyond = [x for x in drawn if outside(entry, x)]
         assert all(0.0 <= x <= (entry.over or 0.0) for x in beyond), entry.key  # the ends that count as 0 are refused, and drawn again
         assert len(set(drawn)) > 8 or entry.whole
+
+
+def test_a_duct_that_expands_below_the_data_is_out_of_range() -> None:
+    """A rig that enters at 150 K and widens ahead of its fuel: it was "not converged: a defect of the program"."""
+    case, _ = full_case(20522)
+    assert case.numbers["entry.temperature"] == 150.0 and case.numbers["combustor.area.1.area_ratio"] > 1.4
+    assert judge(20522)[0] == "out-of-range"

@@ -53,7 +53,7 @@ from cycle.flow.duct.solution import (
 )  # fmt: skip
 from cycle.flow.duct.summits import SMOOTH, Summits
 from cycle.flow.duct.throat import CANDIDATES, Throat, candidates, throat
-from cycle.gas.state import scatter
+from cycle.gas.state import OUT_OF_RANGE, scatter
 
 __all__ = ["ASKED", "MODES", "PANELS", "STATUSES", "TRIED", "Solution", "Solver", "solve_once"]
 
@@ -99,6 +99,7 @@ class Solver:
         self.summits = candidates(duct, self.scan)
         self.found = nothing_yet(duct, self.scan, self.count)
         self.open = np.ones(duct.size, np.bool_)
+        self.outside: Flags = (scan_range(self.scan) == OUT_OF_RANGE).any(0)
 
     def part(self, index: Codes) -> tuple[Duct, Scan]:
         """Duct and scan of some points."""
@@ -119,6 +120,7 @@ class Solver:
         peak = np.maximum(peak, run.flow.pressure.max(0))
         separates = (peak > self.separation[index] * duct.pressure) | (self.least[index] > ATTACHED)
         short = self._short(index, run)
+        self.outside[index] |= run.lost & (run.flow.state.range.reshape(run.x.shape) == OUT_OF_RANGE).any(0)
         self.found.attached[index] = np.select([run.lost, run.chokes | short, separates], [UNSETTLED, CHOKES, SEPARATES], STANDS)
         self.found.attached_peak[index] = np.where(run.passes & ~short, peak, np.nan)
         stands = run.passes & ~short & ~separates
@@ -312,9 +314,8 @@ def solve_once(duct: Duct, separation: Array, asked: str, panels: int, second: b
         solver.look_for_second()
     found = solver.found
     unsolved = found.mode == NONE
-    outside = (scan_range(solver.scan) == 2).any(0)
     lost = (found.throat == UNSETTLED) | (found.attached == UNSETTLED) | (found.train == UNSETTLED) | ~solver.scan.sonic.good.all(0)
-    rules = [outside, found.throat == NO_START, lost]
+    rules = [solver.outside, found.throat == NO_START, lost]
     otherwise = {"supersonic": CHOKED, "thermal-throat": REFUSED}.get(asked, NO_MODE)
     found.status[unsolved] = np.select(rules, [OUTSIDE, UNSTARTED, LOST], otherwise)[unsolved]
     return found
