@@ -13,7 +13,6 @@ import numpy as np
 from cycle.arrays import Array, Codes, Flags
 from cycle.flow import inlet_shape, states
 from cycle.flow.duct.layout import AreaLaw, Injectors, Supply, Walls
-from cycle.flow.duct.modes import PANELS
 from cycle.flow.duct.solution import MODES as DUCT_MODES
 from cycle.flow.duct.solution import STATUSES as DUCT_STATUSES
 from cycle.flowpath import back_pressure, combustor, duct_limits, geometric_throat, inlet_geometry, isolator, nozzle
@@ -190,11 +189,9 @@ def enters_at_3(setting: Setting) -> bool:
     return setting.choices["start"] == "entry" and setting.choices["entry.station"] == "3"
 
 
-def flow_of(
-    ahead: Stream, setting: Setting, ratio: Array, total_pressures: bool = False, most: Codes | None = None, panels: int | None = None
-) -> Flow:
+def flow_of(ahead: Stream, setting: Setting, ratio: Array, total_pressures: bool = False, most: Codes | None = None) -> Flow:
     """The duct at the fuel-air ratio `ratio` (N,); ahead: station 2, at constant gamma with the pair of the compression; most: see
-    `solve_duct`; panels: of a march, those of the case where None."""
+    `solve_duct`."""
     entering = combustor.burner_gas(ahead, setting)
     return solve_duct(
         entering,
@@ -207,7 +204,7 @@ def flow_of(
         isolator=_isolator(ahead, setting),
         isolated=not enters_at_3(setting),
         asked=setting.choices["engine.mode"],
-        panels=_panels(setting) if panels is None else panels,
+        panels=_panels(setting),
         total_pressures=total_pressures,
         most=most,
     )
@@ -217,11 +214,9 @@ def heat_limits(stream: Stream, setting: Setting, upper: Array) -> dict[str, duc
     """The fuel-air ratios at which the modes of N ducts end, up to `upper`, (N,); stream: station 2."""
     pair = setting.constant_gamma and not np.array_equal(combustor.combustion_cp(setting), setting["gas.cp_compression"])
     coupled = pair or setting.has("combustor.wall_temperature")
-    # more of them move where a mode ends by a part in ten million
-    panels = min(_panels(setting), PANELS)
 
     def at(points: Codes, ratio: Array, most: Codes) -> Flow:
-        return flow_of(stream.take(points), setting.take(points), ratio, most=None if coupled else most, panels=panels)
+        return flow_of(stream.take(points), setting.take(points), ratio, most=None if coupled else most)
 
     return duct_limits.heat_limits(at, _heat(stream, setting), upper, coupled)
 
