@@ -21,7 +21,7 @@ NUMBERS = [entry for entry in INPUTS if entry.kind == "number" and not entry.who
 @given(st.sampled_from(NUMBERS), st.floats(0.0, 1.0), st.sampled_from([0.5, 1.0, 3.0]))
 def test_a_range_rises_through_its_value_and_stays_within_bounds(entry: object, place: float, factor: float) -> None:
     entry = INPUT[entry.key]  # type: ignore[attr-defined]
-    low = entry.lower if entry.lower is not None else entry.above
+    low = entry.lower if entry.lower is not None else entry.over
     assert low is not None and entry.upper is not None
     value = low + (0.02 + 0.9 * place) * (entry.upper - low)
     found = around(entry, value, factor)
