@@ -301,7 +301,7 @@ INPUTS: tuple[Input, ...] = (
     # engine
     Input("engine.capture_area", "Ac", "capture area", "Area of the captured stream tube at the lip; of a cone with a lip, its circle.",
           unit="area", above=0.0, upper=1e3, default=1.0, step=0.01, when=_FLIGHT),
-    Input("engine.mode", "", "mode asked for", "auto: as found; supersonic, thermal-throat, geometric-throat: that or none.", kind="choice",
+    Input("engine.mode", "", "mode", "auto: as found; supersonic, thermal-throat, geometric-throat: that or none.", kind="choice",
           unit="none", choices=("auto", "supersonic", "thermal-throat", "geometric-throat"), default="auto"),
     # limits: thresholds
     Input("limits.dynamic_pressure_low", "", "corridor, lowest q", "Lowest flight dynamic pressure.", unit="pressure", above=0.0, upper=1e6,

@@ -40,6 +40,11 @@ class HeatedFuel:
         """What the heat of the fuel adds to the specific impulse, s."""
         return self.impulse - self.stored
 
+    @property
+    def value(self) -> float:
+        """What is stored of the note: the gain."""
+        return self.gain
+
     def words(self, system: str = "si") -> str:
         """The note as a sentence. system: of the units, "si" or "us"."""
         now, cold = (_told(value, "temperature", system, 5) for value in (self.temperature, STORAGE))
@@ -64,11 +69,6 @@ class Remark:
     against: float = math.nan
     unit: str = "ratio"
 
-    @property
-    def gain(self) -> float:
-        """Its value, SI."""
-        return self.value
-
     def words(self, system: str = "si") -> str:
         """The note as a sentence. system: of the units, "si" or "us"."""
         value, against = (_told(x, self.unit, system) for x in (self.value, self.against))
@@ -78,13 +78,10 @@ class Remark:
 REMARKS = {
     "over_expanded": "The internal nozzle ends at {value}, below the exit pressure of {against} asked for: nothing expands outside it.",
     "inert_air": "The gas is frozen: the combustibles of the entering stream, {value} of its moles, do not burn.",
-    "no_dissociation": "The hottest static temperature is {value}: above {against} a gas dissociates, which constant gamma leaves out.",
     "several_places": "The core would fill the duct and fit the thermal throat at {value} places; the first, from the entry, is taken.",
     "beyond_fuel": "Thrust power is {value} of the fuel's heating value: more than the fuel brings, so the inputs cannot all be true.",
 }
 """Key of a remark -> its sentence."""
-DISSOCIATION = 2500.0
-"""Static temperature above which dissociation counts, K; common practice."""
 
 
 def remarks(march: March, efficiency: float) -> tuple[Remark, ...]:
@@ -101,9 +98,6 @@ def remarks(march: March, efficiency: float) -> tuple[Remark, ...]:
     own = sum(x for name, x in march.setting.air.items() if oxygen_need(atoms_of(name)) > 0.0)
     if march.setting.choices["gas.model"] == "frozen" and own > 0.0:
         found.append(Remark("inert_air", own))
-    hottest = max(float(record.stream.state.temperature[0]) for record in march.records)
-    if march.setting.constant_gamma and hottest > DISSOCIATION:
-        found.append(Remark("no_dissociation", hottest, DISSOCIATION, "temperature"))
     places = march.figure("burner", "reattachments")[0]
     if places > 1.0:
         found.append(Remark("several_places", float(places)))

@@ -82,7 +82,7 @@ def record(walk: Walk, referee: bool = False) -> Json:
         "losses": [_row(r) for r in walk.losses],
         "exergy": [_row(r) for r in walk.exergy],
         "limits": [_limit(limit) for limit in walk.limits],
-        "notes": [{"key": n.key, "words": n.words(), "value": _number(n.gain), "unit": si_unit(n.unit)} for n in walk.notes],
+        "notes": [{"key": n.key, "words": n.words(), "value": _number(n.value), "unit": si_unit(n.unit)} for n in walk.notes],
         "audit": _audit(walk),
         "referee": _referee(walk, referee),
         "units": _units(),

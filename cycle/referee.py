@@ -41,10 +41,10 @@ class Report:
 def report(march: March) -> Report:
     """Recompute every station of up to `SAMPLE` solved points; slow, and it imports cantera."""
     if march.setting.constant_gamma:
-        return Report((), 0, True, "referee: constant gamma has closed forms, nothing to recompute")
+        return Report((), 0, True, "Cantera check: constant gamma has closed forms, nothing to recompute")
     solved = march.solved
     if not solved.size:
-        return Report((), 0, True, "referee: no solved point")
+        return Report((), 0, True, "Cantera check: no solved point")
     points = solved[np.unique(np.linspace(0, solved.size - 1, min(SAMPLE, solved.size)).astype(int))]
     rows, compared, left_out = [], 0, 0
     for name, record in march.stations().items():
@@ -80,15 +80,15 @@ def _judged(rows: list[Row], compared: int, left_out: int) -> tuple[bool, str]:
         ),
     )
     if not compared:
-        return True, f"referee: no state compared ({left_out} outside 200-6000 K or not solved by it)"
+        return True, f"Cantera check: no state compared ({left_out} outside 200-6000 K or not solved by it)"
     agrees = (
         not worst.temperature > LIMITS["temperature"]
         and not worst.mole_fraction > LIMITS["mole fraction"]
         and not worst.sound_speed > LIMITS["sound speed"]
     )
-    verdict = "agrees" if agrees else "DISAGREES"
+    verdict = "agrees" if agrees else "DEVIATES"
     note = f"; {left_out} not compared" if left_out else ""
     return agrees, (
-        f"referee (Cantera) {verdict}: T within {worst.temperature:.1e} K, mole fractions {worst.mole_fraction:.1e}, "
+        f"Cantera check {verdict}: T within {worst.temperature:.1e} K, mole fractions {worst.mole_fraction:.1e}, "
         f"sound speed {worst.sound_speed:.1e}, {compared} states{note}"
     )

@@ -22,9 +22,9 @@ from cycle.case.case import build
 from cycle.case.checking import flatten, nest
 from cycle.case.rules import _order, alternatives, groups_of, in_case, resolve
 from cycle.errors import CaseError
-from cycle.quantities import GROUP, INPUT, INPUTS, MODES, STATUSES, Input, Member
+from cycle.quantities import GROUP, INPUT, INPUTS, Input, Member
 from tests.random_cases import pick, random_case
-from tests.random_flowpath import DEAR, STATION, Rng, random_flowpath
+from tests.random_flowpath import DEAR, STATION, Rng, in_order, random_flowpath
 
 TRIES = 200
 FORMULAS = ("H2", "CH4", "C2H4", "C3H8", "C12H23", "NH3", "CH4O", "C10H16", "CO", "C", "N2H4", "HCN", "H2O2", "C60", "H", "C2H2")
@@ -208,11 +208,7 @@ def full_case(seed: int) -> tuple[cycle.Case, int]:
 
 def wrong(walk: cycle.Walk) -> list[str]:
     """What is wrong with the walk of one point."""
-    found = [] if walk.status in STATUSES and walk.mode in MODES else [f"unknown: {walk.status}, {walk.mode}"]
-    if walk.status == "not-converged":
-        found.append(f"not converged: {walk.failed_process}")
-    if not walk.audit.ok:
-        found.append(f"audit: {walk.audit.worst.law}, {walk.audit.worst.where}: {walk.audit.worst.value:.3g}")
+    found = in_order(walk)
     for name, station in walk.station.items():
         for key in (*STATION, *DEAR):
             if not math.isfinite(station[key]) and not walk.why_not_at(name, key):

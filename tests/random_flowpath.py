@@ -331,15 +331,21 @@ def _open_accounts(walk: cycle.Walk) -> list[str]:
     return found
 
 
-def one_point(walk: cycle.Walk) -> list[str]:
-    """What is wrong with the walk of one point."""
+def in_order(walk: cycle.Walk) -> list[str]:
+    """What is wrong with the walk of one point whatever it was asked: names, iterations, audit; heat and accounts where it is solved."""
     found = [] if walk.status in STATUSES and walk.mode in MODES else [f"unknown: {walk.status}, {walk.mode}"]
     if walk.status == "not-converged":
         found.append(f"not converged: {walk.failed_process}")
     if not walk.audit.ok:
         found.append(f"audit: {walk.audit.worst.law}, {walk.audit.worst.where}: {walk.audit.worst.value:.3g}")
+    return found + _unmet(walk) + _open_accounts(walk) if walk.status == "solved" else found
+
+
+def one_point(walk: cycle.Walk) -> list[str]:
+    """What is wrong with the walk of one point of a plausible flowpath."""
+    found = in_order(walk)
     if walk.status == "solved":
-        return found + _blanks(walk) + _unmet(walk) + _open_accounts(walk)
+        return found + _blanks(walk)
     last = "4" if walk.case.choices["nozzle.exit"] == "absent" else "10"
     if not walk.reason or last in walk.station or not math.isnan(walk.performance.thrust):
         found.append(f"unsolved ({walk.status}) with an end or without a reason")

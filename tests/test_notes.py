@@ -58,8 +58,7 @@ def test_fuel_that_needs_no_note(case: cycle.Case, why: str) -> None:
 def test_balance_without_the_fuels_enthalpy_has_no_note() -> None:
     textbook = {"gas.model": "constant-gamma", "inlet.chemistry": None, "nozzle.chemistry": None, "combustor.equivalence_ratio": 0.3}
     for balance, count in (("full", 1), ("mass-only", 0), ("neglected", 0)):
-        notes = cycle.solve(hot().replace({**textbook, "gas.fuel_energy": balance})).notes
-        assert [n.key for n in notes].count("heated_fuel") == count
+        assert len(cycle.solve(hot().replace({**textbook, "gas.fuel_energy": balance})).notes) == count
 
 
 def test_note_says_so_where_the_stored_fuel_has_no_solution() -> None:

@@ -263,7 +263,7 @@ def referee(figures: Figures) -> str:
     Returns: one line that begins with the verdict, a colon behind it where more follows.
     """
     opinion = figures.walk.referee()
-    return str(opinion.words) if opinion else "referee has no say at constant gamma"
+    return str(opinion.words) if opinion else "Cantera check: none at constant gamma"
 
 
 Present = Callable[[Figures], float]

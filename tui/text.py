@@ -234,7 +234,7 @@ def _stations(walk: Walk, system: str) -> Iterable[Block]:
             cells = (figure(v, output.unit, system, output.key) for v in noise.rows(values))
             rows.append((named(output.label, output.unit, system, output.key), *cells))
     yield Heading("Stations")
-    yield Table(("reached through", *reached.values()), tuple(rows))
+    yield Table(("component", *reached.values()), tuple(rows))
     yield from _missing_at_stations(walk)
 
 

@@ -97,7 +97,7 @@ class Fuel:
 
     def lower_heating_value(self) -> float:
         """J/kg at 298.15 K, water as vapour, fuel as stored: enthalpy of formation of the fuel less its products."""
-        return (self.formation_enthalpy - products_enthalpy(self.atoms)) / self.molar_mass
+        return molar_heat(self.atoms, formation_enthalpy=self.formation_enthalpy) / self.molar_mass
 
     def oxygen_need(self) -> float:
         """mol O2 per mol of fuel for CO2, H2O and N2."""

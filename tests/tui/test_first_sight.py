@@ -195,8 +195,8 @@ def test_the_corridor_is_told_in_the_unit_of_its_input_and_once(tidegate: Sessio
 
 
 def test_the_verdict_of_the_referee_is_never_its_name_alone() -> None:
-    said = ("", "referee: no solved point", "referee (Cantera) agrees: T within 1 K")
-    assert [headline.verdict(s) for s in said] == ["referee not asked", "referee has no say", "referee (Cantera) agrees"]
+    said = ("", "Cantera check: no solved point", "Cantera check agrees: T within 1 K")
+    assert [headline.verdict(s) for s in said] == ["Cantera check: not run", "Cantera check: none", "Cantera check agrees"]
 
 
 def test_an_account_on_a_narrow_screen_shows_its_numbers(plain: Session) -> None:

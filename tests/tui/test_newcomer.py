@@ -60,7 +60,7 @@ def session(folder: Path, columns: int, rows: int) -> Iterator[tuple[str, str]]:
         terminal.settle()
         yield "w", terminal.text
         terminal.press("escape")
-        terminal.wait("reached through")
+        terminal.wait("component")
         terminal.press("tab")
         terminal.settle()
         press(terminal, "compare")
@@ -68,7 +68,7 @@ def session(folder: Path, columns: int, rows: int) -> Iterator[tuple[str, str]]:
         terminal.settle(1.0)
         yield "Tab, c", terminal.text
         terminal.press("escape")
-        terminal.wait("reached through")
+        terminal.wait("component")
         terminal.settle()
         press(terminal, "leave")
         assert terminal.status() == 0

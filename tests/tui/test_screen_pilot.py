@@ -297,11 +297,11 @@ async def test_the_referee_is_asked_by_a_key_and_forgotten_with_the_next_edit(tm
     path.write_bytes((CASES / "saltmarsh.toml").read_bytes())
     async with opened(path) as driver:
         await driver.settled()
-        assert "referee not asked" in driver.screen()
+        assert "Cantera check: not run" in driver.screen()
         await driver.press("r")
         await driver.until(lambda: "agrees" in driver.session.referee)
         assert "agrees" in driver.screen().splitlines()[2]
         await to_input(driver, "flight.mach")
         await driver.press("plus")
         await driver.settled()
-        await driver.until(lambda: "referee not asked" in driver.screen())
+        await driver.until(lambda: "Cantera check: not run" in driver.screen())

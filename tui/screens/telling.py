@@ -67,7 +67,7 @@ def accounts(session: Session) -> Body:
 
 def _accounts(found: Figures, session: Session) -> list[str]:
     out = [f"audit {'ok' if found.audit_ok else 'FAILED'}: {found.audit}"]
-    out.append(clean(session.referee) or f"referee not asked; {key_of(session.actions, 'referee')} asks")
+    out.append(clean(session.referee) or f"Cantera check: not run; {key_of(session.actions, 'referee')} asks")
     if found.reason:
         out += ["", f"no solution: {found.reason}"]
     if found.potentials:

@@ -124,7 +124,7 @@ def _figure(session: Session, found: Figures, key: str, digits: int, by_name: bo
 def verdict(words: str) -> str:
     """What the referee said, in short. Parameters: words, all it said, "" before it is asked."""
     first = clean(words.split(":")[0])
-    return {"": "referee not asked", "referee": "referee has no say"}.get(first, first)
+    return {"": "Cantera check: not run", "Cantera check": "Cantera check: none"}.get(first, first)
 
 
 def _against(session: Session, columns: int) -> Line:

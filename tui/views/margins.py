@@ -58,7 +58,14 @@ def head(session: Session, wide: int) -> list[Line]:
     audit = f"audit {'ok' if found.audit_ok else 'FAILED'}: {found.audit}" if found.audit else "audit not made yet"
     out = [line((fit(clean(audit), wide), STYLE["ok" if found.audit_ok else "over"]))]
     out.append(
-        line((fit(clean(session.referee) or f"referee not asked; {key_of(session.actions, 'referee')} on the main screen asks", wide), DIM))
+        line(
+            (
+                fit(
+                    clean(session.referee) or f"Cantera check: not run; {key_of(session.actions, 'referee')} on the main screen asks", wide
+                ),
+                DIM,
+            )
+        )
     )
     for note in found.notes:
         out += [line((part, STYLE["near"])) for part in wrap(clean(note.words(session.system)).split(), wide)[:3]]

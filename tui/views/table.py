@@ -127,7 +127,7 @@ def lines(session: Session, wide: int, height: int) -> list[Line]:
     if changes_shown(session):
         where = VIEWS[session.view].replace("against the pin", "vs pin")
     stale = next(words for words in STALE if len(words) < room or words == STALE[-1])
-    reached = stale if session.failed and session.good is not None else "reached through"
+    reached = stale if session.failed and session.good is not None else "component"
     head: list[Line] = [
         line((fit(reached, room).ljust(room), DIM), *((_head(_reached(session, s), column), DIM) for s in shown)),
         line(
@@ -238,7 +238,7 @@ def process_line(session: Session, wide: int, height: int) -> list[Line]:
     if not ending:
         lost = session.failed and session.station not in found.stations
         stale = "; figures in ( ) as of the previous inputs" if session.good is not None else ""
-        words = f"not reached by these inputs{stale}" if lost else "the stream as it arrives"
+        words = f"not reached by these inputs{stale}" if lost else "freestream" if session.station == "0" else "entry conditions"
         return [line((fit(words, wide), DIM))]
     first, *others = ending
     own, costs = told(first, session.system), _costs(first, session.system)
