@@ -225,6 +225,10 @@ def nozzle_thrust_coefficient(march: March, potential: list[Array]) -> Array:
 _POTENTIAL_LABELS = {"burner": "burner gain"}
 
 
+CLOSED = 1e-9
+"""Share of the stream thrust below which a potential is rounding: as the audit."""
+
+
 def potential_rows(march: March, potential: list[Array]) -> tuple[Row, ...]:
     """Where the thrust potential went, process by process to the thrust; the rows sum to it. For solved points."""
     nozzle = march.reached("10")
@@ -235,6 +239,10 @@ def potential_rows(march: March, potential: list[Array]) -> tuple[Row, ...]:
         changes[record.process.name] = changes.get(record.process.name, 0.0) + (after - before)
     rows = [Row(name.replace(" ", "_"), _POTENTIAL_LABELS.get(name, name), value) for name, value in changes.items()]
     points = march.solved
+    # hot ambient air enters with its stated composition: what it gains on the way to equilibrium is there from the start
+    own = np.nan_to_num(np.abs(potential[0])) > CLOSED * spread(march, points, nozzle.taken(points).stream.stream_thrust)
+    if own.any():
+        rows = [Row("freestream", "freestream off equilibrium", potential[0]), *rows]
     out = nozzle.taken(points).stream
     sideways = spread(march, points, (out.axial_factor - 1.0) * out.mass_flow * out.velocity)
     force = thrust(march)

@@ -12,6 +12,7 @@ from cycle.case.case import build
 from cycle.errors import CaseError
 from cycle.inputs import INPUTS
 from cycle.quantities import STATUSES
+from cycle.result import solve
 from tests.full_bounds import full_case, judge, number
 
 SEEDS = range(256, 330)
@@ -75,3 +76,13 @@ def test_a_duct_that_expands_below_the_data_is_out_of_range() -> None:
     case, _ = full_case(20522)
     assert case.numbers["entry.temperature"] == 150.0 and case.numbers["combustor.area.1.area_ratio"] > 1.4
     assert judge(20522)[0] == "out-of-range"
+
+
+@pytest.mark.parametrize(("seed", "temperature"), [(50130, 1403.7820786279115), (50137, 1285.9856150567284)])
+def test_the_thrust_potential_closes_in_hot_ambient_air(seed: int, temperature: float) -> None:
+    """Air of 1300 to 1400 K is off equilibrium as stated: what it gains on the way there was in no row."""
+    case, _ = full_case(seed)
+    assert case.numbers["flight.temperature"] == temperature
+    walk = solve(case)
+    assert walk.potentials[0].key == "freestream" and not judge(seed)[3]
+    assert [r.key for r in solve(case.replace({"flight.temperature": 300.0})).potentials][:1] != ["freestream"]
